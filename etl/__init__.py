@@ -1,0 +1,26 @@
+"""trialwright: from a session folder of fixation logs to trial-level reading outcomes.
+
+Examples
+--------
+>>> import etl
+>>> sorted(name for name in etl.__all__ if name[0].islower())
+['build', 'check', 'load_study']
+"""
+
+from etl.errors import DataError, FaultError, Finding, Findings, InputError, StudyError
+from etl.session import Result, build, check, load_study
+from etl.study import Study
+
+__all__ = [
+    "DataError",
+    "FaultError",
+    "Finding",
+    "Findings",
+    "InputError",
+    "Result",
+    "Study",
+    "StudyError",
+    "build",
+    "check",
+    "load_study",
+]

@@ -1,0 +1,159 @@
+"""The command ``trialwright``: arguments, progress, exit status, and nothing else."""
+
+from __future__ import annotations
+
+import sys
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from pathlib import Path
+from typing import Any, NoReturn
+
+import click
+from click.shell_completion import get_completion_class
+from rich.console import Console
+from rich.progress import BarColumn, MofNCompleteColumn, Progress, TextColumn, TimeRemainingColumn
+
+import etl
+from etl.session import told
+
+INPUT_WRONG = 2
+FAULT = 1
+
+_STUDY = click.argument("study", type=click.Path(path_type=Path))
+_WORKERS = click.option(
+    "--workers",
+    type=click.IntRange(1),
+    help="Number of processes. Found out from the size of the logs where absent; the tables are "
+    "the same with any number.",
+)
+_QUIET = click.option("--quiet", is_flag=True, help="Show no progress and no summary.")
+
+
+class _Command(click.Group):
+    """Turns what can go wrong into a message and an exit status."""
+
+    def invoke(self, ctx: click.Context) -> Any:
+        """Run a command; wrong input exits with 2, a fault of the program with 1."""
+        try:
+            return super().invoke(ctx)
+        except etl.InputError as wrong:
+            click.echo(str(wrong), err=True)
+            ctx.exit(INPUT_WRONG)
+        except (click.ClickException, click.Abort, click.exceptions.Exit):
+            raise
+        except BrokenPipeError:
+            ctx.exit(0)
+        except Exception as fault:
+            _tell_fault(fault)
+            ctx.exit(FAULT)
+
+
+def _tell_fault(fault: Exception) -> None:
+    """Say that the program is at fault, in one paragraph that can be reported."""
+    trace = fault.__traceback__
+    while trace is not None and trace.tb_next is not None:
+        trace = trace.tb_next
+    place = ""
+    if trace is not None:
+        code = trace.tb_frame.f_code
+        place = f" at {Path(code.co_filename).name}:{trace.tb_lineno} in {code.co_name}"
+    click.echo(
+        f"trialwright: a fault of the program, not of your data: {type(fault).__name__}: {fault}"
+        f"{place}; nothing was written. Please report this line with the study file.",
+        err=True,
+    )
+
+
+@click.group(cls=_Command, context_settings={"help_option_names": ["-h", "--help"]})
+@click.version_option(package_name="trialwright", prog_name="trialwright")
+def main() -> None:
+    """From a session folder of fixation logs to trial-level reading outcomes.
+
+    Readers' recordings are personal data: use pseudonyms, keep to your ethics approval and your
+    data-protection law. Nothing here is fit for diagnosis.
+    """
+
+
+@main.command()
+@_STUDY
+@_WORKERS
+@_QUIET
+def check(study: Path, workers: int | None, *, quiet: bool) -> None:
+    """Read everything that STUDY names, write nothing, list all findings."""
+    loaded = etl.load_study(study)
+    with _progress(quiet=quiet) as progress:
+        findings = etl.check(loaded, workers=workers, progress=progress)
+    if findings.failed:
+        raise etl.DataError(findings)
+    click.echo("\n".join([*findings.lines(), told.checked(findings)]))
+
+
+@main.command()
+@_STUDY
+@click.option(
+    "--into",
+    type=click.Path(path_type=Path),
+    help="The output folder, instead of the one that STUDY names.",
+)
+@_WORKERS
+@_QUIET
+def build(study: Path, into: Path | None, workers: int | None, *, quiet: bool) -> None:
+    """Build the tables of STUDY."""
+    loaded = etl.load_study(study)
+    with _progress(quiet=quiet) as progress:
+        result = etl.build(loaded, into=into, workers=workers, progress=progress)
+    if not quiet:
+        click.echo("\n".join([*result.findings.lines(), told.built(result)]))
+
+
+@main.command()
+@click.argument("name", required=False, shell_complete=lambda *_: told.measure_names())
+def measures(name: str | None) -> None:
+    """Say what each outcome means, or one of them by NAME."""
+    text = told.measure(name) if name else told.catalogue()
+    if text is None:
+        raise click.BadParameter(told.unknown_measure(name or ""), param_hint="NAME")
+    click.echo(text)
+
+
+@main.command()
+@click.argument("shell", type=click.Choice(["bash", "zsh", "fish"]))
+def completion(shell: str) -> None:
+    """Print the lines that make SHELL complete this command."""
+    kind = get_completion_class(shell)
+    if kind is None:
+        raise click.BadParameter(shell)
+    click.echo(kind(main, {}, "trialwright", "_TRIALWRIGHT_COMPLETE").source())
+
+
+@contextmanager
+def _progress(*, quiet: bool) -> Iterator[Callable[[str, int, int], None]]:
+    """A progress bar on stderr, only where that is a terminal."""
+    if quiet or not sys.stderr.isatty():
+        yield lambda _stage, _done, _total: None
+        return
+    columns = (
+        TextColumn("{task.description}"),
+        BarColumn(),
+        MofNCompleteColumn(),
+        TimeRemainingColumn(),
+    )
+    with Progress(*columns, console=Console(stderr=True), transient=True) as bars:
+        stages: dict[str, Any] = {}
+
+        def show(stage: str, done: int, total: int) -> None:
+            if stage not in stages:
+                stages[stage] = bars.add_task(stage, total=total)
+            bars.update(stages[stage], completed=done)
+
+        yield show
+
+
+def run() -> NoReturn:
+    """Run the command as a program."""
+    main(prog_name="trialwright")
+    sys.exit(0)
+
+
+if __name__ == "__main__":
+    run()

@@ -1,0 +1,206 @@
+"""What can be wrong, where it is, and how it is said.
+
+Every room reports what it finds as a :class:`Finding` in a :class:`Findings` list, so that one run
+lists every problem at once. Only this module turns findings into text.
+"""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Iterable, Iterator
+from dataclasses import dataclass, field
+from typing import Literal, TypedDict, Unpack
+
+Severity = Literal["error", "warning", "note"]
+
+#: How many findings of one kind (same file, same place, same problem) are spelled out. A column of
+#: words where numbers belong would otherwise bury every other problem under thousands of lines.
+SPELLED_OUT = 5
+
+
+class Place(TypedDict, total=False):
+    """Where a finding is and what belongs there; see :class:`Finding`."""
+
+    path: str
+    line: int | None
+    where: str
+    found: str | None
+    expected: str
+    fix: str
+
+
+@dataclass(frozen=True, slots=True)
+class Finding:
+    """One thing that is wrong, doubtful or worth knowing.
+
+    Attributes
+    ----------
+    problem : str
+        What is the matter, as a short sentence without a full stop.
+    severity : {"error", "warning", "note"}
+        An error stops the build; a warning and a note go into the run record.
+    path : str
+        The file, as the user would name it. Empty where no file is at fault.
+    line : int or None
+        The line in that file, from 1.
+    where : str
+        The column of a table (``column "dur"``) or the key of a study file (``screen.width_px``).
+    found : str or None
+        The value found.
+    expected : str
+        What was expected in its place.
+    fix : str
+        What to do about it.
+    """
+
+    problem: str
+    severity: Severity = "error"
+    path: str = ""
+    line: int | None = None
+    where: str = ""
+    found: str | None = None
+    expected: str = ""
+    fix: str = ""
+
+    def text(self) -> str:
+        """The finding as one or two lines of text."""
+        place = self.path + (f":{self.line}" if self.line is not None else "")
+        head = ": ".join(part for part in (place, self.where, self.problem) if part)
+        tail = []
+        if self.found is not None:
+            tail.append(f"found {shown(self.found)}")
+        if self.expected:
+            tail.append(f"expected {self.expected}")
+        says = head + ("; " + ", ".join(tail) if tail else "")
+        if self.severity != "error":
+            says = f"{self.severity}: {says}"
+        return says + (f"\n    fix: {self.fix}" if self.fix else "")
+
+
+def shown(value: str, most: int = 60) -> str:
+    """A value in quotes, with control characters spelled and long values cut."""
+    whole = "".join(c if c.isprintable() else repr(c)[1:-1] for c in value[: most + 1])
+    return f'"{whole[:most]}…"' if len(value) > most or len(whole) > most else f'"{whole}"'
+
+
+@dataclass(slots=True)
+class Findings:
+    """Findings in the order in which they were made; of a kind, only the first few are kept.
+
+    Examples
+    --------
+    >>> findings = Findings()
+    >>> findings.error("this is no number", path="p1.tsv", line=3, where='column "dur"',
+    ...                found="abc", expected="a number in ms", fix="correct the cell")
+    >>> print(findings.text())
+    p1.tsv:3: column "dur": this is no number; found "abc", expected a number in ms
+        fix: correct the cell
+    1 problem; nothing was written
+    """
+
+    items: list[Finding] = field(default_factory=list)
+    more: Counter[tuple[str, str, str, str]] = field(default_factory=Counter)
+
+    def add(self, finding: Finding, times: int = 1) -> None:
+        """Record a finding; ``times`` counts further ones of its kind that are not spelled out."""
+        kind = (finding.severity, finding.path, finding.where, finding.problem)
+        self.more[kind] += times
+        if self.more[kind] - times < SPELLED_OUT:
+            self.items.append(finding)
+
+    def error(self, problem: str, **place: Unpack[Place]) -> None:
+        """Record an error; see :class:`Finding` for the parameters."""
+        self.add(Finding(problem, "error", **place))
+
+    def warning(self, problem: str, **place: Unpack[Place]) -> None:
+        """Record a warning; see :class:`Finding` for the parameters."""
+        self.add(Finding(problem, "warning", **place))
+
+    def note(self, problem: str, **place: Unpack[Place]) -> None:
+        """Record something worth knowing; see :class:`Finding` for the parameters."""
+        self.add(Finding(problem, "note", **place))
+
+    def extend(self, others: Findings) -> None:
+        """Take over all that another list holds."""
+        kept = Counter((f.severity, f.path, f.where, f.problem) for f in others.items)
+        for kind, count in kept.items():
+            surplus = others.more[kind] - count
+            for finding in others.items:
+                if (finding.severity, finding.path, finding.where, finding.problem) == kind:
+                    self.add(finding)
+            self.more[kind] += surplus
+
+    def __iter__(self) -> Iterator[Finding]:
+        return iter(self.items)
+
+    def __len__(self) -> int:
+        return len(self.items)
+
+    def of(self, severity: Severity) -> list[Finding]:
+        """The findings of one severity."""
+        return [finding for finding in self.items if finding.severity == severity]
+
+    def count(self, severity: Severity) -> int:
+        """How many there are of one severity, those not spelled out included."""
+        return sum(times for kind, times in self.more.items() if kind[0] == severity)
+
+    @property
+    def failed(self) -> bool:
+        """Whether there is any error."""
+        return self.count("error") > 0
+
+    def lines(self, severities: Iterable[Severity] = ("error", "warning", "note")) -> list[str]:
+        """Each finding as text, followed by how many more of its kind there were."""
+        wanted = set(severities)
+        told: Counter[tuple[str, str, str, str]] = Counter()
+        shown_of_kind = Counter((f.severity, f.path, f.where, f.problem) for f in self.items)
+        out = []
+        for finding in self.items:
+            if finding.severity not in wanted:
+                continue
+            kind = (finding.severity, finding.path, finding.where, finding.problem)
+            out.append(finding.text())
+            told[kind] += 1
+            left = self.more[kind] - shown_of_kind[kind]
+            if told[kind] == shown_of_kind[kind] and left > 0:
+                out.append(f"    … and {left} more like this in {finding.path or 'this study'}")
+        return out
+
+    def text(self) -> str:
+        """The whole list as text, closed by a count of the problems."""
+        errors = self.count("error")
+        closing = f"{errors} problem{'' if errors == 1 else 's'}; nothing was written"
+        return "\n".join([*self.lines(), closing] if errors else self.lines())
+
+
+class TrialwrightError(Exception):
+    """The common parent of all errors that this package raises on purpose."""
+
+
+class InputError(TrialwrightError):
+    """The study file or an input is wrong; ``findings`` says where and what to do.
+
+    Attributes
+    ----------
+    findings : Findings
+        All problems of the run, in the order of the files.
+    """
+
+    def __init__(self, findings: Findings) -> None:
+        super().__init__(findings)
+        self.findings = findings
+
+    def __str__(self) -> str:
+        return self.findings.text()
+
+
+class StudyError(InputError):
+    """The study file itself is wrong."""
+
+
+class DataError(InputError):
+    """A log, a table or a region definition is wrong, or does not fit the others."""
+
+
+class FaultError(TrialwrightError):
+    """The program contradicts itself: a fault of ours, never of the input."""

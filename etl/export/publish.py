@@ -1,0 +1,136 @@
+"""The output folder: written beside its place, moved into place at the end, all or nothing."""
+
+from __future__ import annotations
+
+import contextlib
+import json
+import shutil
+import tempfile
+from collections.abc import Iterator
+from dataclasses import dataclass
+from pathlib import Path
+
+from etl.errors import DataError, Findings
+
+#: The file by which an output folder is known as one of ours.
+RECORD = "run.json"
+PROGRAM = "trialwright"
+
+
+def is_ours(folder: Path) -> bool:
+    """Whether a folder was written by this program."""
+    try:
+        record = json.loads((folder / RECORD).read_text(encoding="utf-8"))
+    except (OSError, ValueError):
+        return False
+    return isinstance(record, dict) and record.get("program") == PROGRAM
+
+
+def check_target(target: Path, shown: str) -> None:
+    """Refuse to replace anything that this program did not write.
+
+    Raises
+    ------
+    DataError
+        If the target is a file, or a folder with contents that is not one of ours.
+    """
+    findings = Findings()
+    if target.exists() and not target.is_dir():
+        findings.error(
+            "the output folder is a file",
+            path=shown,
+            fix="name a folder, by [output] folder or --into",
+        )
+    elif target.is_dir() and any(target.iterdir()) and not is_ours(target):
+        findings.error(
+            "the output folder holds something else than an earlier build",
+            path=shown,
+            expected=f"a new or empty folder, or one that {PROGRAM} wrote (it has a {RECORD})",
+            fix="name another folder, by [output] folder or --into, or empty this one yourself",
+        )
+    if findings.failed:
+        raise DataError(findings)
+
+
+@dataclass(frozen=True, slots=True)
+class Workshop:
+    """Where a build works, beside the place where its output will appear.
+
+    Attributes
+    ----------
+    fresh : Path
+        The folder that will be published.
+    kept : Path
+        A folder for what is put aside meanwhile.
+    """
+
+    fresh: Path
+    kept: Path
+
+
+@contextlib.contextmanager
+def published(target: Path, shown: str) -> Iterator[Workshop]:
+    """Give folders to work in; when all went well, move the result to its place.
+
+    Parameters
+    ----------
+    target : Path
+        Where the output is to appear. An earlier build there is replaced as a whole.
+    shown : str
+        Its name for messages.
+
+    Yields
+    ------
+    Workshop
+        Folders beside the target, gone at the end.
+
+    Raises
+    ------
+    DataError
+        If the target may not be replaced or its parent cannot be written.
+    """
+    check_target(target, shown)
+    # Beside the target, so that the last step is a renaming on one file system.
+    beside = next(folder for folder in target.absolute().parents if folder.is_dir())
+    try:
+        work = Path(tempfile.mkdtemp(prefix=f".{target.name}.", dir=beside))
+    except OSError as why:
+        raise _cannot_write(shown, why) from why
+    try:
+        shop = Workshop(work / "new", work / "kept")
+        shop.fresh.mkdir()
+        shop.kept.mkdir()
+        yield shop
+        check_target(target, shown)
+        try:
+            target.parent.mkdir(parents=True, exist_ok=True)
+            _swap(shop.fresh, target, work / "old")
+        except OSError as why:
+            raise _cannot_write(shown, why) from why
+    finally:
+        shutil.rmtree(work, ignore_errors=True)
+
+
+def _cannot_write(shown: str, why: OSError) -> DataError:
+    """What is said when the output cannot be put in its place."""
+    findings = Findings()
+    findings.error(
+        f"the output folder cannot be written ({why.strerror or type(why).__name__})",
+        path=shown,
+        fix="close programs that have files of it open, or name another folder in which you may "
+        "write, by [output] folder or --into",
+    )
+    return DataError(findings)
+
+
+def _swap(fresh: Path, target: Path, aside: Path) -> None:
+    """Put the fresh folder in the target's place; put the old one back if that fails."""
+    there = target.exists()
+    if there:
+        target.replace(aside)
+    try:
+        fresh.replace(target)
+    except OSError:
+        if there:
+            aside.replace(target)
+        raise

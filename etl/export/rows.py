@@ -1,0 +1,290 @@
+"""From a reader's arrays to rows of the tables.
+
+A :class:`RowMaker` lives once in every process and makes record batches whose coded columns all
+share the study's own lists of values, so that batches of different readers can be written one
+after the other without a look at their texts.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import pyarrow as pa
+from numpy.typing import NDArray
+
+from etl.tables import CODED, TABLES, TableDesign, written_schema
+
+
+@dataclass(frozen=True, slots=True)
+class TrialFacts:
+    """What is written about one trial in every row of it."""
+
+    ids: Mapping[str, str]
+    facts: Mapping[str, str]
+
+
+@dataclass(frozen=True, slots=True)
+class CellMeasures:
+    """Measures over cells: a cell is a trial × region, or a trial.
+
+    Attributes
+    ----------
+    values : dict of str to (cells,) float64 array
+        NaN where missing.
+    reasons : dict of str to (cells,) uint8 array
+        Index into the design's reasons.
+    """
+
+    values: Mapping[str, NDArray[np.float64]]
+    reasons: Mapping[str, NDArray[np.uint8]]
+
+
+@dataclass(frozen=True, slots=True)
+class FixationColumns:
+    """The columns of ``fixations`` for one reader; 0 in an order, line or visit is missing."""
+
+    trial: NDArray[np.int64]
+    number: NDArray[np.int64]
+    onset_ms: NDArray[np.float64]
+    duration_ms: NDArray[np.float64]
+    x_px: NDArray[np.float64]
+    y_px: NDArray[np.float64]
+    line: NDArray[np.int32]
+    region_code: NDArray[np.int32]
+    region_order: NDArray[np.int32]
+    visit: NDArray[np.int32]
+    first_pass: NDArray[np.bool_]
+    left_out_by: NDArray[np.int32]
+    file: NDArray[np.int32]
+    source_line: NDArray[np.int32]
+
+
+@dataclass(frozen=True, slots=True)
+class RegressionColumns:
+    """The columns of ``regressions`` for one reader."""
+
+    trial: NDArray[np.int64]
+    from_code: NDArray[np.int32]
+    from_order: NDArray[np.int32]
+    to_code: NDArray[np.int32]
+    to_order: NDArray[np.int32]
+    ends_first_pass: NDArray[np.bool_]
+    launch_number: NDArray[np.int64]
+    landing_number: NDArray[np.int64]
+    onset_ms: NDArray[np.float64]
+    amplitude_px: NDArray[np.float64]
+
+
+class RowMaker:
+    """Makes the rows of all tables of one study.
+
+    Parameters
+    ----------
+    design : TableDesign
+        What the study's tables have in common.
+    """
+
+    def __init__(self, design: TableDesign) -> None:
+        self.design = design
+        self.schemas = {name: written_schema(design.columns(name)) for name in TABLES}
+        self._ids = {
+            name: {text: code for code, text in enumerate(known.values)}
+            for name, known in design.ids.items()
+        }
+        self._id_values = {
+            name: pa.array([int(v) for v in known.values], pa.int64())
+            if known.type == "integer"
+            else pa.array(known.values, pa.string())
+            for name, known in design.ids.items()
+        }
+        self._levels = {n: pa.array(levels, pa.string()) for n, levels in design.factors.items()}
+        self._level_codes = {
+            name: {text: code for code, text in enumerate(levels)}
+            for name, levels in design.factors.items()
+        }
+        self._regions = pa.array(design.regions, pa.string())
+        self._reasons = pa.array(design.reasons[1:], pa.string())
+        self._left_out_by = pa.array(design.left_out_by, pa.string())
+        self._files = pa.array(design.files, pa.string())
+        by_name = sorted(design.measures, key=lambda m: m.name)
+        self._measures = tuple(m.name for m in by_name)
+        kinds = sorted({m.kind for m in design.measures})
+        self._kind_of_measure = np.array([kinds.index(m.kind) for m in by_name], dtype=np.int32)
+        self._measure_names = pa.array(self._measures, pa.string())
+        self._kinds = pa.array(kinds, pa.string())
+
+    def ids(self, trials: Sequence[TrialFacts]) -> dict[str, pa.Array]:
+        """The columns that identify trials, one row a trial."""
+        columns: dict[str, pa.Array] = {}
+        for name, known in self.design.ids.items():
+            own = self._ids[name]
+            codes = pa.array([own.get(t.ids[name]) for t in trials], pa.int32())
+            values = self._id_values[name]
+            columns[name] = (
+                values.take(codes)
+                if known.type == "integer"
+                else pa.DictionaryArray.from_arrays(codes, values)
+            )
+        return columns
+
+    def facts(self, trials: Sequence[TrialFacts]) -> dict[str, pa.Array]:
+        """The columns that describe trials of the study, ids first, one row a trial."""
+        columns = self.ids(trials)
+        for name in self.design.factors:
+            level = self._level_codes[name]
+            codes = pa.array([level[t.facts[name]] for t in trials], pa.int32())
+            columns[name] = pa.DictionaryArray.from_arrays(codes, self._levels[name])
+        for name, kind in self.design.covariates.items():
+            texts = [t.facts[name] or None for t in trials]
+            if kind == "number":
+                numbers = [None if text is None else float(text) for text in texts]
+                columns[name] = pa.array(numbers, pa.float64())
+            else:
+                columns[name] = pa.array(texts, pa.string()).dictionary_encode().cast(CODED)
+        return columns
+
+    def _repeated(
+        self, facts: Mapping[str, pa.Array], trial: NDArray[np.int64], names: Sequence[str]
+    ) -> list[pa.Array]:
+        """Facts of each row's trial."""
+        index = pa.array(trial)
+        return [facts[name].take(index) for name in names]
+
+    def _design_names(self) -> tuple[str, ...]:
+        return (*self.design.ids, *self.design.factors, *self.design.covariates)
+
+    def outcomes(
+        self,
+        facts: Mapping[str, pa.Array],
+        cells: tuple[NDArray[np.int64], NDArray[np.int32], NDArray[np.int32]],
+        measured: CellMeasures,
+    ) -> pa.RecordBatch:
+        """Long rows: one a cell and measure.
+
+        Parameters
+        ----------
+        facts : dict of str to pa.Array
+            From :meth:`facts`, of the kept trials.
+        cells : tuple of (cells,) arrays
+            Trial, region order and region code of each cell.
+        measured : CellMeasures
+            The measures by name.
+        """
+        trial, order, code = cells
+        width = len(self._measures)
+        values = np.stack([measured.values[n] for n in self._measures], axis=1).ravel()
+        reasons = np.stack([measured.reasons[n] for n in self._measures], axis=1).ravel()
+        tiled = np.tile(np.arange(width, dtype=np.int32), len(trial))
+        kinds = np.tile(self._kind_of_measure, len(trial))
+        columns = [
+            *self._repeated(facts, np.repeat(trial, width), self._design_names()),
+            _coded(np.repeat(code, width), self._regions),
+            pa.array(np.repeat(order, width).astype(np.int64)),
+            _coded(tiled, self._measure_names),
+            _coded(kinds, self._kinds),
+            pa.array(values, from_pandas=True),
+            _coded(reasons.astype(np.int32) - 1, self._reasons),
+        ]
+        return pa.RecordBatch.from_arrays(columns, schema=self.schemas["outcomes"])
+
+    def outcomes_wide(
+        self,
+        facts: Mapping[str, pa.Array],
+        cells: tuple[NDArray[np.int64], NDArray[np.int32], NDArray[np.int32]],
+        measured: CellMeasures,
+    ) -> pa.RecordBatch:
+        """Wide rows: one a cell; parameters as for :meth:`outcomes`."""
+        trial, order, code = cells
+        columns = [
+            *self._repeated(facts, trial, self._design_names()),
+            _coded(code, self._regions),
+            pa.array(order.astype(np.int64)),
+            *(_measure(measured.values[m.name], m.kind) for m in self.design.measures),
+        ]
+        return pa.RecordBatch.from_arrays(columns, schema=self.schemas["outcomes_wide"])
+
+    def trials(self, facts: Mapping[str, pa.Array], measured: CellMeasures) -> pa.RecordBatch:
+        """One row a kept trial."""
+        measures = self.design.trial_measures
+        columns = [
+            *(facts[name] for name in self._design_names()),
+            *(_measure(measured.values[m.name], m.kind) for m in measures),
+            self._why_missing(measured),
+        ]
+        return pa.RecordBatch.from_arrays(columns, schema=self.schemas["trials"])
+
+    def _why_missing(self, measured: CellMeasures) -> pa.Array:
+        """The reasons of a trial's missing outcomes in one text."""
+        names = [m.name for m in self.design.trial_measures if m.name in measured.reasons]
+        reasons = np.stack([measured.reasons[name] for name in names], axis=1)
+        texts: list[str | None] = [None] * len(reasons)
+        for row in np.flatnonzero(reasons.any(axis=1)).tolist():
+            texts[row] = "; ".join(
+                f"{name}: {self.design.reasons[code]}"
+                for name, code in zip(names, reasons[row].tolist(), strict=True)
+                if code
+            )
+        return pa.array(texts, pa.string()).dictionary_encode().cast(CODED)
+
+    def regressions(
+        self, facts: Mapping[str, pa.Array], columns: RegressionColumns
+    ) -> pa.RecordBatch:
+        """One row a regressive saccade."""
+        c = columns
+        names = (*self.design.ids, *self.design.factors)
+        arrays = [
+            *self._repeated(facts, c.trial, names),
+            _coded(c.from_code, self._regions),
+            pa.array(c.from_order.astype(np.int64)),
+            _coded(c.to_code, self._regions),
+            pa.array(c.to_order.astype(np.int64)),
+            pa.array((c.from_order - c.to_order).astype(np.int64)),
+            pa.array(c.ends_first_pass.astype(np.int8)),
+            pa.array(c.launch_number),
+            pa.array(c.landing_number),
+            pa.array(c.onset_ms, from_pandas=True),
+            pa.array(c.amplitude_px, from_pandas=True),
+        ]
+        return pa.RecordBatch.from_arrays(arrays, schema=self.schemas["regressions"])
+
+    def fixations(self, facts: Mapping[str, pa.Array], columns: FixationColumns) -> pa.RecordBatch:
+        """One row a fixation; ``facts`` are those of all trials of the reader."""
+        c = columns
+        kept = c.left_out_by < 0
+        inside = kept & (c.region_order > 0)
+        arrays = [
+            *self._repeated(facts, c.trial, tuple(self.design.ids)),
+            pa.array(c.number),
+            pa.array(c.onset_ms, from_pandas=True),
+            pa.array(c.duration_ms),
+            pa.array(c.x_px, from_pandas=True),
+            pa.array(c.y_px, from_pandas=True),
+            pa.array(c.line.astype(np.int64), mask=c.line == 0),
+            _coded(c.region_code, self._regions),
+            pa.array(c.region_order.astype(np.int64), mask=c.region_order == 0),
+            pa.array(c.visit.astype(np.int64), mask=c.visit == 0),
+            pa.array(c.first_pass.astype(np.int8), mask=~inside),
+            pa.array(kept.astype(np.int8)),
+            _coded(c.left_out_by, self._left_out_by),
+            _coded(c.file, self._files),
+            pa.array(c.source_line.astype(np.int64)),
+        ]
+        return pa.RecordBatch.from_arrays(arrays, schema=self.schemas["fixations"])
+
+
+def _coded(codes: NDArray[np.int32], values: pa.Array) -> pa.Array:
+    """Codes with their texts; a negative code is missing."""
+    absent = codes < 0
+    indices = pa.array(codes, mask=absent) if absent.any() else pa.array(codes)
+    return pa.DictionaryArray.from_arrays(indices, values)
+
+
+def _measure(values: NDArray[np.float64], kind: str) -> pa.Array:
+    """One measure in the type of its kind."""
+    if kind == "duration":
+        return pa.array(values, from_pandas=True)
+    absent = np.isnan(values)
+    whole = np.where(absent, 0, values).astype(np.int8 if kind == "binary" else np.int64)
+    return pa.array(whole, mask=absent)

@@ -1,0 +1,60 @@
+"""The run record ``run.json``: what was built, from what, by what, and what was noticed."""
+
+from __future__ import annotations
+
+import json
+import platform
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from importlib.metadata import version
+from pathlib import Path
+from typing import Any
+
+from etl.export.publish import PROGRAM, RECORD
+
+_LIBRARIES = ("numpy", "pandas", "pyarrow", "pydantic", "shapely")
+
+
+@dataclass(frozen=True, slots=True)
+class RunRecord:
+    """What goes into the record.
+
+    Attributes
+    ----------
+    study : mapping
+        The study as understood, defaults filled in.
+    inputs : sequence of mapping
+        Every file read: ``file``, ``role``, ``sha256``; logs also how they were understood.
+    counts : mapping
+        Readers, trials and fixations: read, left out, kept.
+    rows : mapping
+        Rows of each table.
+    warnings : sequence of str
+        What was noticed.
+    elapsed_s : float
+        How long the build took.
+    """
+
+    study: Mapping[str, Any]
+    inputs: Sequence[Mapping[str, Any]]
+    counts: Mapping[str, int]
+    rows: Mapping[str, int]
+    warnings: Sequence[str]
+    elapsed_s: float
+
+    def write(self, folder: Path) -> None:
+        """Write the record into a folder."""
+        record = {
+            "program": PROGRAM,
+            "version": version("trialwright"),
+            "python": platform.python_version(),
+            "libraries": {name: version(name) for name in _LIBRARIES},
+            "study": self.study,
+            "inputs": list(self.inputs),
+            "counts": dict(self.counts),
+            "rows": dict(self.rows),
+            "warnings": list(self.warnings),
+            "elapsed_s": round(self.elapsed_s, 3),
+        }
+        text = json.dumps(record, ensure_ascii=False, indent=2) + "\n"
+        (folder / RECORD).write_text(text, encoding="utf-8", newline="\n")

@@ -1,0 +1,125 @@
+"""Rows to files: Parquet always, CSV where asked for, a row group at a time."""
+
+from __future__ import annotations
+
+from collections.abc import Collection, Mapping
+from pathlib import Path
+from types import TracebackType
+
+import pyarrow as pa
+import pyarrow.parquet as pq
+from pyarrow import csv as arrow_csv
+
+from etl.tables import Column, TableDesign, read_schema, schema_note, written_schema
+
+#: Rows collected before a row group is written: enough for good compression, little enough for a
+#: laptop. It does not depend on workers, so that the bytes do not either.
+ROWS_A_GROUP = 262_144
+_COMPRESSION = "zstd"
+
+
+class TableWriter:
+    """Writes one table, group by group."""
+
+    def __init__(self, folder: Path, name: str, columns: tuple[Column, ...], csv: bool) -> None:  # noqa: FBT001
+        self._schema = written_schema(columns)
+        self._plain = read_schema(columns)
+        self._note = schema_note(columns)
+        self._parquet = pq.ParquetWriter(
+            folder / f"{name}.parquet",
+            self._schema,
+            store_schema=False,
+            compression=_COMPRESSION,
+            write_statistics=True,
+        )
+        text = pa.schema(
+            [
+                pa.field(f.name, pa.string() if pa.types.is_dictionary(f.type) else f.type)
+                for f in self._plain
+            ]
+        )
+        self._text = text
+        self._csv = arrow_csv.CSVWriter(folder / f"{name}.csv", text) if csv else None
+        self._batches: list[pa.RecordBatch] = []
+        self._waiting = 0
+        self.rows = 0
+
+    def add(self, batch: pa.RecordBatch) -> None:
+        """Take over some rows."""
+        self._batches.append(batch)
+        self._waiting += batch.num_rows
+        self.rows += batch.num_rows
+        if self._waiting >= ROWS_A_GROUP:
+            self._write()
+
+    def _write(self) -> None:
+        if not self._batches:
+            return
+        table = pa.Table.from_batches(self._batches, self._schema)
+        self._batches, self._waiting = [], 0
+        self._parquet.write_table(table, row_group_size=len(table) or None)
+        if self._csv is not None:
+            self._csv.write_table(table.cast(self._text))
+
+    def close(self) -> None:
+        """Write what is waiting and finish the files."""
+        self._write()
+        self._parquet.add_key_value_metadata(self._note)
+        self._parquet.close()
+        if self._csv is not None:
+            self._csv.close()
+
+    def abandon(self) -> None:
+        """Close the files without finishing the table."""
+        self._batches = []
+        self._parquet.close()
+        if self._csv is not None:
+            self._csv.close()
+
+
+class TableWriters:
+    """Writes all tables of a build side by side.
+
+    Parameters
+    ----------
+    folder : Path
+        Where the files go.
+    design : TableDesign
+        The study's tables.
+    tables : collection of str
+        Names of the tables.
+    csv : bool
+        Whether each is written as CSV too.
+    """
+
+    def __init__(
+        self, folder: Path, design: TableDesign, tables: Collection[str], *, csv: bool
+    ) -> None:
+        self._writers = {
+            name: TableWriter(folder, name, design.columns(name), csv) for name in tables
+        }
+
+    def __enter__(self) -> TableWriters:
+        return self
+
+    def add(self, batches: Mapping[str, pa.RecordBatch]) -> None:
+        """Take over the rows of one reader."""
+        for name, batch in batches.items():
+            self._writers[name].add(batch)
+
+    @property
+    def rows(self) -> dict[str, int]:
+        """How many rows each table has so far."""
+        return {name: writer.rows for name, writer in self._writers.items()}
+
+    def __exit__(
+        self,
+        kind: type[BaseException] | None,
+        error: BaseException | None,
+        trace: TracebackType | None,
+    ) -> None:
+        for writer in self._writers.values():
+            if kind is None:
+                writer.close()
+            else:
+                writer.abandon()

@@ -1,0 +1,17 @@
+"""Files as labs have them, turned into text cells that remember their line."""
+
+from etl.files.decoding import RawText, read_text
+from etl.files.delimited import Cells, cells_of, header_of, read_cells
+from etl.files.numbers import NumberReading, find_decimal, numbers_in
+
+__all__ = [
+    "Cells",
+    "NumberReading",
+    "RawText",
+    "cells_of",
+    "find_decimal",
+    "header_of",
+    "numbers_in",
+    "read_cells",
+    "read_text",
+]

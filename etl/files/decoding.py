@@ -1,0 +1,216 @@
+"""From a file's bytes to UTF-8 text with plain line ends, whatever the lab's computer wrote."""
+
+from __future__ import annotations
+
+import gzip
+import hashlib
+import zlib
+from dataclasses import dataclass
+from pathlib import Path
+
+from etl.errors import Findings
+
+#: Files that are no text, known by their first bytes (each signature is in the format's own
+#: standard: PNG ISO/IEC 15948, JPEG ISO/IEC 10918, GIF89a, PDF ISO 32000, ZIP APPNOTE).
+_SIGNATURES = (
+    (b"\x89PNG\r\n\x1a\n", "a picture (PNG)"),
+    (b"\xff\xd8\xff", "a picture (JPEG)"),
+    (b"GIF87a", "a picture (GIF)"),
+    (b"GIF89a", "a picture (GIF)"),
+    (b"BM", "a picture (BMP)"),
+    (b"%PDF-", "a PDF document"),
+    (b"PK\x03\x04", "a ZIP archive or a spreadsheet workbook"),
+    (b"PAR1", "a Parquet file"),
+)
+_BYTE_ORDER_MARKS = (
+    (b"\xff\xfe\x00\x00", "utf-32"),
+    (b"\x00\x00\xfe\xff", "utf-32"),
+    (b"\xef\xbb\xbf", "utf-8-sig"),
+    (b"\xff\xfe", "utf-16"),
+    (b"\xfe\xff", "utf-16"),
+)
+#: How much of a file is looked at to tell UTF-16 without a byte-order mark from other text.
+_PROBE_BYTES = 4096
+
+
+@dataclass(frozen=True, slots=True)
+class RawText:
+    """The text of a file.
+
+    Attributes
+    ----------
+    shown : str
+        The file as the user would name it.
+    data : bytes
+        The text in UTF-8, without byte-order mark, every line end a line feed.
+    sha256 : str
+        Digest of the file as it lies on the disk (compressed where it is compressed), in hex.
+    encoding : str
+        The encoding it was read with.
+    """
+
+    shown: str
+    data: bytes
+    sha256: str
+    encoding: str
+
+
+def read_text(
+    path: Path, shown: str, findings: Findings, *, encoding: str | None = None
+) -> RawText | None:
+    """Read a text file, plain or gzipped, in its own encoding.
+
+    Parameters
+    ----------
+    path : Path
+        The file.
+    shown : str
+        Its name for messages.
+    findings : Findings
+        Where problems are recorded.
+    encoding : str, optional
+        The encoding the study file states. Where it is absent, a byte-order mark decides, then
+        the pattern of zero bytes (UTF-16), then whether the bytes are valid UTF-8; what is left
+        is read as Windows-1252, with a note.
+
+    Returns
+    -------
+    RawText or None
+        None where a problem was recorded.
+
+    References
+    ----------
+    Byte-order marks: The Unicode Standard, section 23.8.
+    """
+    try:
+        stored = path.read_bytes()
+    except OSError as why:
+        findings.error(
+            f"the file cannot be read ({why.strerror or type(why).__name__})",
+            path=shown,
+            fix="check that the file is there and that you may read it",
+        )
+        return None
+    digest = hashlib.sha256(stored).hexdigest()
+    data = _unpacked(stored, shown, findings)
+    if data is None or not _is_text(data, shown, findings):
+        return None
+    found = encoding or _encoding_of(data)
+    text = _decoded(data, found, shown, findings, stated=encoding is not None)
+    if text is None:
+        return None
+    return RawText(shown, text, digest, found)
+
+
+def _unpacked(stored: bytes, shown: str, findings: Findings) -> bytes | None:
+    """The bytes inside a gzip file, or the bytes as they are."""
+    if not stored.startswith(b"\x1f\x8b"):
+        if shown.endswith(".gz") and stored:
+            findings.error(
+                "the name ends in .gz but the file is not gzipped",
+                path=shown,
+                fix="rename the file, or compress it again",
+            )
+            return None
+        return stored
+    try:
+        return gzip.decompress(stored)
+    except (EOFError, gzip.BadGzipFile, zlib.error) as why:
+        cut = isinstance(why, EOFError)
+        findings.error(
+            "the gzip file is cut short" if cut else f"the gzip file is damaged ({why})",
+            path=shown,
+            fix="copy the file again from where it was recorded",
+        )
+        return None
+
+
+def _is_text(data: bytes, shown: str, findings: Findings) -> bool:
+    """Whether the bytes can be text at all."""
+    if not data.strip(b"\xef\xbb\xbf\xff\xfe\x00 \t\r\n"):
+        findings.error(
+            "the file is empty", path=shown, fix="remove it from the folder, or copy it again"
+        )
+        return False
+    for signature, what in _SIGNATURES:
+        if data.startswith(signature) and (len(signature) > 2 or b"\x00" in data[:64]):
+            findings.error(
+                f"this is no text file: it begins like {what}",
+                path=shown,
+                expected="delimited text",
+                fix="correct the file pattern in the study file, or export the table as text",
+            )
+            return False
+    return True
+
+
+def _encoding_of(data: bytes) -> str:
+    """The encoding that the bytes themselves suggest."""
+    for mark, name in _BYTE_ORDER_MARKS:
+        if data.startswith(mark):
+            return name
+    probe = data[:_PROBE_BYTES]
+    even, odd = probe[0::2].count(0), probe[1::2].count(0)
+    # Text of any Latin script in UTF-16 has a zero in nearly every other byte, always on one side.
+    if odd > len(probe) // 4 and even == 0:
+        return "utf-16-le"
+    if even > len(probe) // 4 and odd == 0:
+        return "utf-16-be"
+    if data.isascii():
+        return "utf-8"
+    try:
+        data.decode("utf-8")
+    except UnicodeDecodeError:
+        return "cp1252"
+    return "utf-8"
+
+
+def _decoded(
+    data: bytes, encoding: str, shown: str, findings: Findings, *, stated: bool
+) -> bytes | None:
+    """The text in UTF-8 with plain line ends."""
+    try:
+        if encoding.lower().replace("_", "-") in ("utf-8", "utf8", "utf-8-sig"):
+            text = data.removeprefix(b"\xef\xbb\xbf")
+            if not text.isascii():
+                text.decode("utf-8")
+        else:
+            text = data.decode(encoding).removeprefix("\ufeff").encode("utf-8")
+    except UnicodeDecodeError as why:
+        findings.error(
+            f"the text is not valid {encoding}",
+            path=shown,
+            line=data.count(b"\n", 0, why.start) + 1,
+            found=f"byte {data[why.start]:#04x}",
+            fix="state the right encoding in [logs] encoding"
+            if stated
+            else "state the file's encoding in [logs] encoding, or save it as UTF-8",
+        )
+        return None
+    except LookupError:
+        findings.error(
+            "this encoding is not known",
+            path=shown,
+            found=encoding,
+            expected='a name such as "utf-8", "utf-16" or "cp1252"',
+            fix="correct [logs] encoding in the study file",
+        )
+        return None
+    if b"\r" in text:
+        text = text.replace(b"\r\n", b"\n").replace(b"\r", b"\n")
+    if b"\x00" in text:
+        findings.error(
+            "the text holds a zero byte",
+            path=shown,
+            line=text.count(b"\n", 0, text.index(b"\x00")) + 1,
+            expected="text only",
+            fix="the file is damaged or is no text: copy or export it again",
+        )
+        return None
+    if encoding == "cp1252" and not stated:
+        findings.warning(
+            "the text is not UTF-8 and was read as Windows-1252",
+            path=shown,
+            fix='check the letters with accents, and state [logs] encoding = "cp1252"',
+        )
+    return text

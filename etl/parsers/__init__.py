@@ -1,0 +1,6 @@
+"""From a log to canonical fixations: one module a kind of log."""
+
+from etl.parsers.canonical import CanonicalLog, Coded
+from etl.parsers.table_log import LogReader
+
+__all__ = ["CanonicalLog", "Coded", "LogReader"]

@@ -1,0 +1,121 @@
+"""The canonical fixations that every kind of log is turned into."""
+
+from __future__ import annotations
+
+import unicodedata
+from collections.abc import Collection
+from dataclasses import dataclass, field
+
+import numpy as np
+import pyarrow as pa
+import pyarrow.compute as pc
+from numpy.typing import NDArray
+
+
+@dataclass(frozen=True, slots=True)
+class Coded:
+    """A column of few distinct texts, kept as codes.
+
+    Attributes
+    ----------
+    codes : (n,) int32 array
+        Index into ``values``; -1 where the cell is missing.
+    values : tuple of str
+        The distinct texts, in order of first appearance.
+
+    Examples
+    --------
+    >>> Coded.of(pa.array(["b", " a", "NA", "b"]), {"", "NA"}).codes.tolist()
+    [0, 1, -1, 0]
+    """
+
+    codes: NDArray[np.int32]
+    values: tuple[str, ...]
+
+    @classmethod
+    def of(cls, column: pa.Array, missing: Collection[str]) -> Coded:
+        """Code a column of text: cells trimmed, composed (Unicode NFC), missing marks as -1."""
+        encoded = pc.dictionary_encode(column)
+        known: dict[str, int] = {}
+        new_code = np.empty(len(encoded.dictionary), dtype=np.int32)
+        for old, raw in enumerate(encoded.dictionary.to_pylist()):
+            text = unicodedata.normalize("NFC", raw.strip())
+            new_code[old] = -1 if text in missing else known.setdefault(text, len(known))
+        codes = encoded.indices.to_numpy(zero_copy_only=False)
+        return cls(new_code[codes] if len(new_code) else codes.astype(np.int32), tuple(known))
+
+    @classmethod
+    def constant(cls, text: str, length: int) -> Coded:
+        """The same text in every row."""
+        return cls(np.zeros(length, dtype=np.int32), (text,))
+
+    def take(self, rows: NDArray[np.int64]) -> Coded:
+        """Some of the rows."""
+        return Coded(self.codes[rows], self.values)
+
+    def text(self, row: int) -> str:
+        """The text of one row, empty where it is missing."""
+        code = int(self.codes[row])
+        return "" if code < 0 else self.values[code]
+
+
+@dataclass(frozen=True, slots=True)
+class CanonicalLog:
+    """The fixations of one log, or of one reader in it, in the order of the file.
+
+    Attributes
+    ----------
+    ids : dict of str to Coded
+        ``participant``, ``trial`` and, where the log has them, ``session`` and ``item``.
+    facts : dict of str to Coded
+        Facts about trials that stand in the log, by the header's own name.
+    onset_ms, duration_ms : (n,) float64 array, milliseconds
+        ``onset_ms`` is NaN throughout where the log has no onsets.
+    number : (n,) float64 array
+        The fixation's number in its trial as the log gives it; NaN throughout where it does not.
+    x_px, y_px : (n,) float64 array, pixels
+        From the top left corner of the screen, y downwards; NaN where the log has none.
+    label : Coded or None
+        The area that the log itself says was fixated.
+    source_line : (n,) int32 array
+        Line of the log, from 1.
+    """
+
+    ids: dict[str, Coded]
+    facts: dict[str, Coded]
+    onset_ms: NDArray[np.float64]
+    number: NDArray[np.float64]
+    duration_ms: NDArray[np.float64]
+    x_px: NDArray[np.float64]
+    y_px: NDArray[np.float64]
+    label: Coded | None
+    source_line: NDArray[np.int32]
+
+    def __len__(self) -> int:
+        return len(self.source_line)
+
+    def take(self, rows: NDArray[np.int64]) -> CanonicalLog:
+        """Some of the rows."""
+        return CanonicalLog(
+            {name: coded.take(rows) for name, coded in self.ids.items()},
+            {name: coded.take(rows) for name, coded in self.facts.items()},
+            self.onset_ms[rows],
+            self.number[rows],
+            self.duration_ms[rows],
+            self.x_px[rows],
+            self.y_px[rows],
+            None if self.label is None else self.label.take(rows),
+            self.source_line[rows],
+        )
+
+
+@dataclass(slots=True)
+class LogNote:
+    """What is told about a log that was read: how it was understood, and what was counted."""
+
+    shown: str
+    sha256: str = ""
+    encoding: str = ""
+    delimiter: str = ""
+    decimal: str = ""
+    counts: dict[str, int] = field(default_factory=dict)

@@ -1,0 +1,354 @@
+"""Logs that are tables: delimited text with one fixation a row."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Sequence
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import numpy as np
+import pyarrow as pa
+import pyarrow.compute as pc
+from numpy.typing import NDArray
+
+from etl.errors import Findings
+from etl.files import Cells, NumberReading, cells_of, find_decimal, numbers_in, read_text
+from etl.parsers.canonical import CanonicalLog, Coded, LogNote
+from etl.parsers.coordinates import to_screen_px
+
+if TYPE_CHECKING:
+    from etl.study.models import Column, Logs, Screen
+
+_TO_MS = {"ms": 1.0, "s": 1000.0, "us": 0.001}
+_IDS = ("participant", "session", "trial", "item")
+_NUMBERS = ("onset", "end", "duration", "fixation", "x", "y")
+#: Digits kept after the conversion of a time to milliseconds: nanoseconds, so that 0.3 s is
+#: 300 ms and not 299.99999999999994.
+_MS_DIGITS = 6
+
+
+@dataclass(frozen=True, slots=True)
+class LogReader:
+    """Reads one table log after another by the study's description.
+
+    Attributes
+    ----------
+    logs : Logs
+        The study's ``[logs]``.
+    screen : Screen or None
+        The study's ``[screen]``.
+    facts : tuple of str
+        Headers of facts about trials that are taken from the log.
+    """
+
+    logs: Logs
+    screen: Screen | None
+    facts: tuple[str, ...]
+
+    def read(
+        self, path: Path, shown: str, findings: Findings
+    ) -> tuple[CanonicalLog, LogNote] | None:
+        """Read one log.
+
+        Parameters
+        ----------
+        path : Path
+            The file, plain or gzipped.
+        shown : str
+            Its name for messages.
+        findings : Findings
+            Where problems are recorded, each with its line.
+
+        Returns
+        -------
+        CanonicalLog and LogNote, or None
+            None where a problem was recorded.
+        """
+        before = findings.count("error")
+        named = self._ids_in_name(path, shown, findings)
+        text = read_text(path, shown, findings, encoding=self.logs.encoding)
+        if text is None or findings.count("error") > before:
+            return None
+        columns = {name: column.column for name, column in self._columns().items()}
+        needed = [*columns.values(), *self.facts, *(h for h, _ in self._where())]
+        cells = cells_of(text, findings, delimiter=self.logs.delimiter, needed=needed)
+        if cells is None:
+            return None
+        if not len(cells):
+            findings.error(
+                "the log has a header but no fixation",
+                path=shown,
+                line=cells.header_line,
+                fix="remove the file from the folder, or copy it again",
+            )
+            return None
+        note = LogNote(shown, text.sha256, text.encoding, cells.delimiter)
+        note.counts["rows"] = len(cells)
+        kept, lines = self._kept(cells, findings)
+        note.counts["rows not asked for"] = note.counts["rows"] - len(lines)
+        if findings.count("error") > before:
+            return None
+        log = self._canonical(kept, lines, columns, named, note, findings)
+        return None if log is None or findings.count("error") > before else (log, note)
+
+    def _columns(self) -> dict[str, Column]:
+        """The columns that are read, by canonical name."""
+        described = self.logs.columns
+        wanted = (*_IDS, *_NUMBERS, "label", "eye", "blink")
+        found = {name: getattr(described, name) for name in wanted}
+        return {name: column for name, column in found.items() if column is not None}
+
+    def _where(self) -> list[tuple[str, Sequence[str]]]:
+        """Headers and values of ``[logs.where]``; a canonical name stands for its header."""
+        columns = self._columns()
+        return [
+            (columns[name].column if name in columns else name, values)
+            for name, values in self.logs.where.items()
+        ]
+
+    def _ids_in_name(self, path: Path, shown: str, findings: Findings) -> dict[str, str]:
+        """What the file's name says about reader, session, trial or item."""
+        pattern = self.logs.participant_from_name
+        if pattern is None:
+            return {}
+        found = re.search(pattern, path.name)
+        if found is None:
+            findings.error(
+                "the file's name does not say whose log it is",
+                path=shown,
+                where="logs.participant_from_name",
+                found=path.name,
+                expected=f"a name in which {pattern} is found",
+                fix="rename the file, correct the pattern, or narrow [logs] files",
+            )
+            return {}
+        return {name: text for name, text in found.groupdict().items() if text}
+
+    def _kept(
+        self, cells: Cells, findings: Findings
+    ) -> tuple[dict[str, pa.Array], NDArray[np.int32]]:
+        """The columns and lines of the rows that ``[logs.where]`` asks for."""
+        columns = {name: cells.column(name) for name in cells.table.column_names}
+        where = self._where()
+        if not where:
+            return columns, cells.lines
+        mask = np.ones(len(cells), dtype=bool)
+        for header, values in where:
+            asked = pc.is_in(
+                pc.utf8_trim_whitespace(columns[header]),
+                value_set=pa.array(list(values), pa.string()),
+            ).to_numpy(zero_copy_only=False)
+            if not asked.any():
+                findings.error(
+                    "no row has the value asked for",
+                    path=cells.shown,
+                    where=f'column "{header}"',
+                    found=", ".join(pc.unique(columns[header]).to_pylist()[:5]),
+                    expected=" or ".join(values),
+                    fix="correct [logs.where] in the study file, or remove the log",
+                )
+            mask &= asked
+        rows = np.flatnonzero(mask)
+        return {name: column.take(pa.array(rows)) for name, column in columns.items()}, cells.lines[
+            rows
+        ]
+
+    def _canonical(
+        self,
+        cells: dict[str, pa.Array],
+        lines: NDArray[np.int32],
+        columns: dict[str, str],
+        named: dict[str, str],
+        note: LogNote,
+        findings: Findings,
+    ) -> CanonicalLog | None:
+        """Cells into canonical columns."""
+        missing = frozenset(self.logs.missing) | {""}
+        ids = self._ids(cells, lines, columns, named, note.shown, findings)
+        numbers = self._numbers(cells, lines, columns, note, findings)
+        if numbers is None:
+            return None
+        _check_times(numbers, lines, columns, note.shown, findings)
+        nowhere = np.full(len(lines), np.nan)
+        x_px, y_px = to_screen_px(
+            numbers.get("x", nowhere),
+            numbers.get("y", nowhere),
+            units=(self._unit("x"), self._unit("y")),
+            screen=self.screen,
+        )
+        note.counts["fixations"] = len(lines)
+        if "x" in numbers:
+            note.counts["fixations without a position"] = int(
+                (np.isnan(x_px) | (np.isnan(y_px) if "y" in numbers else False)).sum()
+            )
+        label = Coded.of(cells[columns["label"]], missing) if "label" in columns else None
+        facts = {name: Coded.of(cells[name], missing) for name in self.facts}
+        return CanonicalLog(
+            ids,
+            facts,
+            numbers.get("onset", nowhere),
+            numbers.get("fixation", nowhere),
+            numbers["duration"],
+            x_px,
+            y_px,
+            label,
+            lines,
+        )
+
+    def _unit(self, name: str) -> str:
+        """The unit of a position column."""
+        column = self._columns().get(name)
+        return "px" if column is None else str(column.unit)
+
+    def _ids(
+        self,
+        cells: dict[str, pa.Array],
+        lines: NDArray[np.int32],
+        columns: dict[str, str],
+        named: dict[str, str],
+        shown: str,
+        findings: Findings,
+    ) -> dict[str, Coded]:
+        """Reader, session, trial and item of every row; a missing one is an error."""
+        missing = frozenset(self.logs.missing) | {""}
+        ids: dict[str, Coded] = {}
+        for name in _IDS:
+            if name not in columns:
+                if name in named:
+                    ids[name] = Coded.constant(named[name], len(lines))
+                continue
+            coded = Coded.of(cells[columns[name]], missing)
+            ids[name] = coded
+            where = f'column "{columns[name]}"'
+            for row in np.flatnonzero(coded.codes < 0).tolist():
+                findings.error(
+                    f"the {name} is missing",
+                    path=shown,
+                    line=int(lines[row]),
+                    where=where,
+                    found=cells[columns[name]][row].as_py(),
+                    expected=f"the {name} this fixation belongs to",
+                    fix="fill in the cell, or leave such rows out by [logs.where]",
+                )
+            if name in named:
+                for text in sorted(set(coded.values) - {named[name]}):
+                    row = int(np.flatnonzero(coded.codes == coded.values.index(text))[0])
+                    findings.error(
+                        f"the {name} is not the one in the file's name",
+                        path=shown,
+                        line=int(lines[row]),
+                        where=where,
+                        found=text,
+                        expected=named[name],
+                        fix="correct the log or its name, or remove logs.participant_from_name",
+                    )
+        return ids
+
+    def _numbers(
+        self,
+        cells: dict[str, pa.Array],
+        lines: NDArray[np.int32],
+        columns: dict[str, str],
+        note: LogNote,
+        findings: Findings,
+    ) -> dict[str, NDArray[np.float64]] | None:
+        """The columns of numbers, times in ms."""
+        present = {name: columns[name] for name in _NUMBERS if name in columns}
+        decimal = self.logs.decimal or find_decimal(
+            {header: cells[header] for header in present.values()},
+            note.shown,
+            lambda row: int(lines[row]),
+            findings,
+        )
+        if decimal is None:
+            return None
+        note.decimal = decimal
+        reading = NumberReading(note.shown, lines, frozenset(self.logs.missing) | {""}, decimal)
+        numbers: dict[str, NDArray[np.float64]] = {}
+        sound = True
+        for name, header in present.items():
+            unit = getattr(self._columns()[name], "unit", None)
+            expected = "a whole number" if name == "fixation" else f"a number in {unit}"
+            values = numbers_in(cells[header], header, reading, findings, expected=expected)
+            if values is None:
+                sound = False
+            elif name in ("onset", "end", "duration"):
+                numbers[name] = _in_ms(values, str(unit))
+            else:
+                numbers[name] = values
+        return numbers if sound else None
+
+
+def _in_ms(values: NDArray[np.float64], unit: str) -> NDArray[np.float64]:
+    """Times in milliseconds."""
+    return values if unit == "ms" else np.round(values * _TO_MS[unit], _MS_DIGITS)
+
+
+def _check_times(
+    numbers: dict[str, NDArray[np.float64]],
+    lines: NDArray[np.int32],
+    columns: dict[str, str],
+    shown: str,
+    findings: Findings,
+) -> None:
+    """Every fixation has a positive duration and something that says when it was."""
+    if "end" in numbers:
+        numbers["duration"] = numbers["end"] - numbers["onset"]
+    duration = numbers["duration"]
+    where = f'column "{columns.get("duration") or columns.get("end")}"'
+
+    def named(rows: NDArray[np.bool_], problem: str, expected: str, fix: str, where: str) -> None:
+        for row in np.flatnonzero(rows).tolist():
+            value = duration[row]
+            findings.error(
+                problem,
+                path=shown,
+                line=int(lines[row]),
+                where=where,
+                found=None if np.isnan(value) else f"{value:g} ms",
+                expected=expected,
+                fix=fix,
+            )
+
+    named(
+        np.isnan(duration),
+        "the fixation has no duration",
+        "a duration above 0",
+        "fill in the cell, or leave such rows out by [logs.where]",
+        where,
+    )
+    named(
+        duration <= 0,
+        "the duration is not above 0",
+        "a duration above 0",
+        "correct the row, or leave it out by [logs.where]",
+        where,
+    )
+    for name in ("onset", "fixation"):
+        values = numbers.get(name)
+        if values is None:
+            continue
+        column = f'column "{columns[name]}"'
+        for row in np.flatnonzero(np.isnan(values)).tolist():
+            findings.error(
+                f"the fixation has no {'onset' if name == 'onset' else 'number'}",
+                path=shown,
+                line=int(lines[row]),
+                where=column,
+                expected="a number",
+                fix="fill in the cell, or leave such rows out by [logs.where]",
+            )
+        if name == "fixation":
+            for row in np.flatnonzero(values != np.floor(values)).tolist():
+                if not np.isnan(values[row]):
+                    findings.error(
+                        "the fixation's number is not whole",
+                        path=shown,
+                        line=int(lines[row]),
+                        where=column,
+                        found=f"{values[row]:g}",
+                        expected="a whole number",
+                        fix="correct the cell, or name another column as [logs.columns] fixation",
+                    )

@@ -1,0 +1,123 @@
+"""Canonical fixations on disk between the reading of logs and the work on readers.
+
+Each log is read once, by whichever worker, and put aside sorted by reader; so a reader whose
+fixations are spread over several logs, or a log that holds many readers, costs no second reading,
+and memory holds one log or one reader at a time.
+"""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Sequence
+from pathlib import Path
+
+import numpy as np
+import pyarrow as pa
+from numpy.typing import NDArray
+
+from etl.parsers import CanonicalLog, Coded
+
+_NUMBERS = ("onset_ms", "number", "duration_ms", "x_px", "y_px")
+
+
+def keep_log(log: CanonicalLog, path: Path) -> dict[str, int]:
+    """Write a log's fixations, one batch a reader.
+
+    Parameters
+    ----------
+    log : CanonicalLog
+        The fixations of one log.
+    path : Path
+        The file to write.
+
+    Returns
+    -------
+    dict of str to int
+        For each reader, the number of the batch that holds the fixations.
+    """
+    participant = log.ids["participant"]
+    order = np.argsort(participant.codes, kind="stable")
+    several = len(participant.values) > 1
+    coded = {**log.ids, **{f"fact {name}": facts for name, facts in log.facts.items()}}
+    if log.label is not None:
+        coded["label"] = log.label
+    columns = {name: pa.array(column.codes) for name, column in coded.items()}
+    columns |= {name: pa.array(getattr(log, name)) for name in _NUMBERS}
+    columns["source_line"] = pa.array(log.source_line)
+    values = {name: column.values for name, column in coded.items()}
+    batch = pa.RecordBatch.from_pydict(columns, metadata={"values": json.dumps(values)})
+    if several:
+        batch = batch.take(pa.array(order))
+    present, starts = np.unique(participant.codes[order], return_index=True)
+    stops = np.append(starts[1:], len(log))
+    with pa.OSFile(str(path), "wb") as sink, pa.ipc.new_file(sink, batch.schema) as writer:
+        for start, stop in zip(starts.tolist(), stops.tolist(), strict=True):
+            writer.write_batch(batch.slice(start, stop - start))
+    return {participant.values[code]: number for number, code in enumerate(present.tolist())}
+
+
+def kept_log(parts: Sequence[tuple[Path, int]]) -> tuple[CanonicalLog, NDArray[np.int32]]:
+    """Read back the fixations of one reader.
+
+    Parameters
+    ----------
+    parts : sequence of (Path, int)
+        File and batch, in the order of the logs.
+
+    Returns
+    -------
+    CanonicalLog and (n,) int32 array
+        The fixations, and which part each is from.
+    """
+    logs = [_one(path, batch) for path, batch in parts]
+    file = np.repeat(np.arange(len(logs), dtype=np.int32), [len(log) for log in logs])
+    return (logs[0] if len(logs) == 1 else _joined(logs)), file
+
+
+def _one(path: Path, batch: int) -> CanonicalLog:
+    """One reader's fixations of one log."""
+    with pa.OSFile(str(path), "rb") as source, pa.ipc.open_file(source) as reader:
+        values = json.loads(reader.schema.metadata[b"values"])
+        columns = reader.get_batch(batch)
+        arrays = {
+            name: columns.column(i).to_numpy(zero_copy_only=False)
+            for i, name in enumerate(columns.schema.names)
+        }
+    coded = {name: Coded(arrays[name], tuple(texts)) for name, texts in values.items()}
+    label = coded.pop("label", None)
+    facts = {n.removeprefix("fact "): c for n, c in coded.items() if n.startswith("fact ")}
+    ids = {name: column for name, column in coded.items() if not name.startswith("fact ")}
+    return CanonicalLog(
+        ids=ids,
+        facts=facts,
+        label=label,
+        source_line=arrays["source_line"],
+        **{name: arrays[name] for name in _NUMBERS},
+    )
+
+
+def _joined(logs: Sequence[CanonicalLog]) -> CanonicalLog:
+    """Several logs of one reader as one."""
+    first = logs[0]
+    label = None
+    if first.label is not None:
+        label = _joined_codes([log.label for log in logs if log.label is not None])
+    return CanonicalLog(
+        ids={name: _joined_codes([log.ids[name] for log in logs]) for name in first.ids},
+        facts={name: _joined_codes([log.facts[name] for log in logs]) for name in first.facts},
+        label=label,
+        source_line=np.concatenate([log.source_line for log in logs]),
+        **{n: np.concatenate([getattr(log, n) for log in logs]) for n in _NUMBERS},
+    )
+
+
+def _joined_codes(parts: Sequence[Coded]) -> Coded:
+    """Coded columns under one list of texts."""
+    known: dict[str, int] = {}
+    codes = []
+    for part in parts:
+        new = np.array(
+            [*(known.setdefault(text, len(known)) for text in part.values), -1], dtype=np.int32
+        )
+        codes.append(new[part.codes])
+    return Coded(np.concatenate(codes), tuple(known))

@@ -1,0 +1,305 @@
+"""One reader: canonical fixations in, finished rows of every table out. A pure function."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+import pyarrow as pa
+from numpy.typing import NDArray
+
+from etl.errors import Findings
+from etl.export.rows import (
+    CellMeasures,
+    FixationColumns,
+    RegressionColumns,
+    RowMaker,
+    TrialFacts,
+)
+from etl.measures import NoOpportunity, Outcomes, Outside, Sequences, compute
+from etl.parsers import CanonicalLog
+from etl.regions import Assigned, RegionLibrary
+from etl.session.ordering import OrderedFixations, ReaderLog, order_fixations
+from etl.tables import TableDesign
+from etl.trials import KnownTrial
+
+#: What leaves a fixation out, in the order of :attr:`TableDesign.left_out_by`.
+SKIP, REPEATED = 0, 1
+LEFT_OUT_BY = ("skip", "repeated")
+
+
+@dataclass(frozen=True, slots=True)
+class Options:
+    """The decisions of the study that the work on a reader depends on."""
+
+    repeated: str
+    outside: Outside
+    no_opportunity: NoOpportunity
+
+
+@dataclass(frozen=True, slots=True)
+class Reader:
+    """All that is known of one reader before the work begins.
+
+    Attributes
+    ----------
+    participant : str
+        The reader's id.
+    log : CanonicalLog
+        The fixations, in the order of the logs.
+    file : (n,) int32 array
+        Index of each fixation's log into the study's logs.
+    trials : tuple of KnownTrial
+        The trials that were recorded, in the order of the tables.
+    texts : tuple of int
+        For each trial, its text in the region library; -1 for one that is no part of the study.
+    """
+
+    participant: str
+    log: CanonicalLog
+    file: NDArray[np.int32]
+    trials: tuple[KnownTrial, ...]
+    texts: tuple[int, ...]
+
+
+@dataclass(slots=True)
+class ReaderTables:
+    """The finished rows of one reader, and what was counted on the way."""
+
+    participant: str
+    batches: dict[str, pa.RecordBatch]
+    counts: dict[str, int]
+    findings: Findings = field(default_factory=Findings)
+
+
+class Bench:
+    """What the work on any reader needs, set up once in a process.
+
+    Parameters
+    ----------
+    design : TableDesign
+        The tables of the study.
+    library : RegionLibrary
+        Its texts.
+    options : Options
+        Its decisions.
+    """
+
+    def __init__(self, design: TableDesign, library: RegionLibrary, options: Options) -> None:
+        self.design = design
+        self.library = library
+        self.options = options
+        self.rows = RowMaker(design)
+
+    def ordered(self, reader: Reader, findings: Findings) -> tuple[ReaderLog, OrderedFixations]:
+        """The reader's fixations in time order."""
+        log = ReaderLog(reader.log, reader.file, self.design.files, _trial_of(reader))
+        return log, order_fixations(log, reader.trials, self.options.repeated, findings)
+
+    def tables(self, reader: Reader) -> ReaderTables:
+        """Compute all rows of one reader.
+
+        Parameters
+        ----------
+        reader : Reader
+            Fixations and trials.
+
+        Returns
+        -------
+        ReaderTables
+            Without rows where a problem was found.
+        """
+        findings = Findings()
+        _, ordered = self.ordered(reader, findings)
+        if findings.failed:
+            return ReaderTables(reader.participant, {}, {}, findings)
+        log = reader.log.take(ordered.rows)
+        texts = np.asarray(reader.texts, dtype=np.int64)
+        text = texts[ordered.trial]
+        skipped = text < 0
+        left_out_by = np.where(skipped, SKIP, np.where(ordered.repeated, REPEATED, -1))
+        kept = np.flatnonzero(left_out_by < 0)
+        line, order = self._assigned(log, text, skipped)
+        in_study = np.flatnonzero(texts >= 0)
+        place = np.zeros(len(texts), dtype=np.int64)
+        place[in_study] = np.arange(len(in_study))
+        region_count = self.library.region_count[texts[in_study]]
+        outcomes = compute(
+            Sequences(
+                place[ordered.trial[kept]],
+                order[kept],
+                log.duration_ms[kept],
+                region_count.astype(np.int32),
+            ),
+            outside=self.options.outside,
+            no_opportunity=self.options.no_opportunity,
+        )
+        described = [_described(reader.participant, trial) for trial in reader.trials]
+        own = self.rows.facts([described[trial] for trial in in_study.tolist()])
+        batches = self._outcome_rows(own, texts[in_study], outcomes)
+        code = np.full(len(order), -1, dtype=np.int32)
+        inside = order > 0
+        code[inside] = self.library.region_code[
+            self.library.region_offsets[text[inside]] + order[inside] - 1
+        ]
+        batches["regressions"] = self._regression_rows(
+            own, place, ordered, log, kept, (order, code), outcomes
+        )
+        visit, first_pass = _spread(outcomes, kept, len(order))
+        batches["fixations"] = self.rows.fixations(
+            self.rows.ids(described),
+            FixationColumns(
+                ordered.trial,
+                ordered.number,
+                log.onset_ms,
+                log.duration_ms,
+                log.x_px,
+                log.y_px,
+                line,
+                code,
+                order,
+                visit,
+                first_pass,
+                left_out_by.astype(np.int32),
+                reader.file[ordered.rows],
+                log.source_line,
+            ),
+        )
+        counts = {
+            "fixations read": len(order),
+            "fixations of skipped trials": int(skipped.sum()),
+            "fixations of repeated trials": int((ordered.repeated & ~skipped).sum()),
+            "fixations kept": len(kept),
+            "fixations kept outside every region": int((order[kept] == 0).sum()),
+            "overlaps taken for rounding": ordered.overlaps,
+            "trials read": len(texts),
+            "trials skipped": int((texts < 0).sum()),
+            "trials kept": len(in_study),
+        }
+        return ReaderTables(reader.participant, batches, counts, findings)
+
+    def _assigned(
+        self, log: CanonicalLog, text: NDArray[np.int64], skipped: NDArray[np.bool_]
+    ) -> tuple[NDArray[np.int32], NDArray[np.int32]]:
+        """Line and region order of every fixation; 0 where there is none."""
+        line = np.zeros(len(text), dtype=np.int32)
+        order = np.zeros(len(text), dtype=np.int32)
+        rows = np.flatnonzero(~skipped)
+        found: Assigned
+        if self.library.labels is not None and log.label is not None:
+            found = self.library.assign_labels(text[rows], log.label.codes[rows], log.label.values)
+        else:
+            found = self.library.assign_points(text[rows], log.x_px[rows], log.y_px[rows])
+        line[rows], order[rows] = found.line, found.order
+        return line, order
+
+    def _outcome_rows(
+        self,
+        facts: Mapping[str, pa.Array],
+        texts: NDArray[np.int64],
+        outcomes: Outcomes,
+    ) -> dict[str, pa.RecordBatch]:
+        """Rows of the three tables of outcomes."""
+        counts = np.diff(outcomes.cell_offsets)
+        trial = np.repeat(np.arange(len(texts)), counts)
+        within = np.arange(len(trial)) - np.repeat(outcomes.cell_offsets[:-1], counts)
+        code = self.library.region_code[self.library.region_offsets[texts][trial] + within]
+        cells = (trial, (within + 1).astype(np.int32), code)
+        regions = CellMeasures(
+            {m.name: outcomes.regions[m.name].values for m in self.design.measures},
+            {m.name: outcomes.regions[m.name].reasons for m in self.design.measures},
+        )
+        trials = CellMeasures(
+            {m.name: outcomes.trials[m.name].values for m in self.design.trial_measures},
+            {m.name: outcomes.trials[m.name].reasons for m in self.design.trial_measures},
+        )
+        return {
+            "outcomes": self.rows.outcomes(facts, cells, regions),
+            "outcomes_wide": self.rows.outcomes_wide(facts, cells, regions),
+            "trials": self.rows.trials(facts, trials),
+        }
+
+    def _regression_rows(
+        self,
+        facts: Mapping[str, pa.Array],
+        place: NDArray[np.int64],
+        ordered: OrderedFixations,
+        log: CanonicalLog,
+        kept: NDArray[np.int64],
+        regions: tuple[NDArray[np.int32], NDArray[np.int32]],
+        outcomes: Outcomes,
+    ) -> pa.RecordBatch:
+        """One row a regressive saccade."""
+        order, code = regions
+        launch = kept[outcomes.regressions.launch]
+        landing = kept[outcomes.regressions.landing]
+        return self.rows.regressions(
+            facts,
+            RegressionColumns(
+                place[ordered.trial[launch]],
+                code[launch],
+                order[launch],
+                code[landing],
+                order[landing],
+                outcomes.regressions.ends_first_pass,
+                ordered.number[launch],
+                ordered.number[landing],
+                log.onset_ms[landing],
+                log.x_px[landing] - log.x_px[launch],
+            ),
+        )
+
+
+def _described(participant: str, trial: KnownTrial) -> TrialFacts:
+    """What the tables say about a trial."""
+    ids = {
+        "participant": participant,
+        "session": trial.session,
+        "trial": trial.trial,
+        "item": trial.item,
+    }
+    return TrialFacts(ids, trial.facts)
+
+
+def _trial_of(reader: Reader) -> NDArray[np.int64]:
+    """Index of each fixation's trial into the reader's trials."""
+    trial = reader.log.ids["trial"]
+    session = reader.log.ids.get("session")
+    index = {(t.session, t.trial): i for i, t in enumerate(reader.trials)}
+    if session is None:
+        table = np.array([index.get(("", text), -1) for text in trial.values], dtype=np.int64)
+        return table[trial.codes]
+    width = len(trial.values)
+    pairs = session.codes.astype(np.int64) * width + trial.codes
+    present, inverse = np.unique(pairs, return_inverse=True)
+    table = np.array(
+        [
+            index.get((session.values[pair // width], trial.values[pair % width]), -1)
+            for pair in present.tolist()
+        ],
+        dtype=np.int64,
+    )
+    return table[inverse]
+
+
+def _spread(
+    outcomes: Outcomes, kept: NDArray[np.int64], count: int
+) -> tuple[NDArray[np.int32], NDArray[np.bool_]]:
+    """Visit and first pass of the kept fixations among all fixations."""
+    visit = np.zeros(count, dtype=np.int32)
+    first_pass = np.zeros(count, dtype=bool)
+    visit[kept] = outcomes.visit
+    first_pass[kept] = outcomes.first_pass
+    return visit, first_pass
+
+
+def sorted_trials(
+    trials: Sequence[tuple[KnownTrial, int]], design: TableDesign
+) -> tuple[tuple[KnownTrial, ...], tuple[int, ...]]:
+    """A reader's trials and their texts in the order of the tables: by session, then trial."""
+    trial_rank = {text: rank for rank, text in enumerate(design.ids["trial"].values)}
+    sessions = design.ids["session"].values if "session" in design.ids else ("",)
+    session_rank = {text: rank for rank, text in enumerate(sessions)}
+    both = sorted(trials, key=lambda t: (session_rank[t[0].session], trial_rank[t[0].trial]))
+    return tuple(t for t, _ in both), tuple(text for _, text in both)

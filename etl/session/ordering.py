@@ -1,0 +1,258 @@
+"""The fixations of one reader in time order, trial by trial; trials recorded twice."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from etl.errors import Findings
+from etl.parsers import CanonicalLog
+from etl.trials import KnownTrial
+
+#: How far a fixation may reach into the next one. Onset and duration are each rounded to a
+#: millisecond and recorders differ in whether the last sample counts (common practice, no source).
+OVERLAP_TOLERATED_MS = 2.0
+
+
+@dataclass(frozen=True, slots=True)
+class OrderedFixations:
+    """All fixations of a reader, sorted by trial and time.
+
+    Attributes
+    ----------
+    rows : (n,) int64 array
+        Row of each fixation in the log.
+    trial : (n,) int64 array
+        Index into the reader's trials; non-decreasing.
+    number : (n,) int64 array
+        Number of the fixation in its trial, from 1.
+    repeated : (n,) bool array
+        Whether it belongs to a recording of a trial that is not the one used.
+    overlaps : int
+        Fixations that reach into the next one by no more than is tolerated.
+    """
+
+    rows: NDArray[np.int64]
+    trial: NDArray[np.int64]
+    number: NDArray[np.int64]
+    repeated: NDArray[np.bool_]
+    overlaps: int
+
+
+@dataclass(frozen=True, slots=True)
+class ReaderLog:
+    """The log of one reader.
+
+    Attributes
+    ----------
+    log : CanonicalLog
+        Its rows, in the order of the files.
+    file : (n,) int32 array
+        Which file each row is from, as an index into ``shown``.
+    shown : sequence of str
+        The files' names for messages.
+    trial : (n,) int64 array
+        Index of each row's trial into the reader's trials.
+    """
+
+    log: CanonicalLog
+    file: NDArray[np.int32]
+    shown: Sequence[str]
+    trial: NDArray[np.int64]
+
+    def place(self, row: int) -> tuple[str, int]:
+        """File and line of a row."""
+        return self.shown[int(self.file[row])], int(self.log.source_line[row])
+
+
+def order_fixations(
+    reader: ReaderLog, trials: Sequence[KnownTrial], repeated: str, findings: Findings
+) -> OrderedFixations:
+    """Bring a reader's fixations into time order and find trials that were recorded twice.
+
+    Parameters
+    ----------
+    reader : ReaderLog
+        The fixations as logged.
+    trials : sequence of KnownTrial
+        The reader's trials, in the order of the tables.
+    repeated : {"error", "first", "last"}
+        What is done with a trial that was recorded more than once.
+    findings : Findings
+        Where fixations out of order, overlaps and repeated trials are recorded.
+
+    Returns
+    -------
+    OrderedFixations
+
+    Notes
+    -----
+    Where the log numbers the fixations, the numbers give the order and a number that comes again
+    begins another recording. Otherwise the onsets do: another recording begins where other
+    trials stand between in the same file, or where time falls back to the trial's first onset.
+    A trial that goes on in the next file is one recording.
+    """
+    log = reader.log
+    count = len(log)
+    by_trial = np.argsort(reader.trial, kind="stable")
+    trial = reader.trial[by_trial]
+    begins = np.ones(count, dtype=bool)
+    begins[1:] = trial[1:] != trial[:-1]
+    numbered = count > 0 and not np.isnan(log.number[0])
+    starts = (
+        _restarts_by_number(log.number[by_trial], trial, begins)
+        if numbered
+        else _restarts_by_onset(reader, by_trial, begins)
+    )
+    recording = np.cumsum(starts | begins)
+    key = log.number if numbered else log.onset_ms
+    order = np.lexsort((key[by_trial], recording))
+    # Recordings count up in file order, so sorting by recording keeps trials together.
+    rows = by_trial[order]
+    recording = recording[order]
+    trial = trial[order]
+    begins_recording = np.ones(count, dtype=bool)
+    begins_recording[1:] = recording[1:] != recording[:-1]
+    if not numbered:
+        _check_file_order(reader, by_trial, starts | begins, findings)
+    overlaps = 0
+    if count and not np.isnan(log.onset_ms[0]):
+        overlaps = _check_times(reader, rows, begins_recording, numbered, findings)
+    aside = _recordings_set_aside(
+        reader, trials, (rows, trial, begins_recording), repeated, findings
+    )
+    first = np.flatnonzero(begins)
+    number = np.arange(count) - np.repeat(first, np.diff(np.append(first, count))) + 1
+    return OrderedFixations(rows, trial, number, aside, overlaps)
+
+
+def _restarts_by_number(
+    number: NDArray[np.float64], trial: NDArray[np.int64], begins: NDArray[np.bool_]
+) -> NDArray[np.bool_]:
+    """Where a number comes again, or falls back, in a trial in which any number comes twice."""
+    by_number = np.lexsort((number, trial))
+    same = (np.diff(number[by_number]) == 0) & (np.diff(trial[by_number]) == 0)
+    twice = np.zeros(int(trial[-1]) + 1 if len(trial) else 0, dtype=bool)
+    twice[trial[by_number[1:][same]]] = True
+    starts = np.zeros(len(number), dtype=bool)
+    starts[1:] = (number[1:] <= number[:-1]) & ~begins[1:] & twice[trial[1:]]
+    return starts
+
+
+def _restarts_by_onset(
+    reader: ReaderLog, by_trial: NDArray[np.int64], begins: NDArray[np.bool_]
+) -> NDArray[np.bool_]:
+    """Where another recording of the same trial begins, judged by onsets and what lies between."""
+    onset = reader.log.onset_ms[by_trial]
+    file = reader.file[by_trial]
+    first = onset[begins][np.cumsum(begins) - 1]
+    starts = np.zeros(len(onset), dtype=bool)
+    falls = onset[1:] < onset[:-1]
+    other_file = file[1:] != file[:-1]
+    apart = (by_trial[1:] != by_trial[:-1] + 1) & ~other_file
+    starts[1:] = apart | (falls & (other_file | (onset[1:] <= first[1:])))
+    return starts & ~begins
+
+
+def _check_file_order(
+    reader: ReaderLog,
+    by_trial: NDArray[np.int64],
+    starts: NDArray[np.bool_],
+    findings: Findings,
+) -> None:
+    """Without numbers, onsets must not go back within a recording."""
+    onset = reader.log.onset_ms[by_trial]
+    falls = np.flatnonzero((onset[1:] < onset[:-1]) & ~starts[1:]) + 1
+    for at in falls.tolist():
+        shown, line = reader.place(int(by_trial[at]))
+        findings.error(
+            "the fixation begins before the one above it in the same trial",
+            path=shown,
+            line=line,
+            found=f"onset {onset[at]:g} ms after {onset[at - 1]:g} ms",
+            expected="onsets that never go back within a trial",
+            fix="sort the log by onset; if the trial was started again, give it a session or a "
+            "trial number of its own",
+        )
+
+
+def _check_times(
+    reader: ReaderLog,
+    rows: NDArray[np.int64],
+    begins: NDArray[np.bool_],
+    numbered: bool,  # noqa: FBT001
+    findings: Findings,
+) -> int:
+    """Fixations must not overlap; how many do within what is tolerated."""
+    log = reader.log
+    onset = log.onset_ms[rows]
+    end = onset + log.duration_ms[rows]
+    over = np.where(begins[1:], 0.0, end[:-1] - onset[1:])
+    back = np.flatnonzero((onset[1:] < onset[:-1]) & ~begins[1:]) + 1
+    if numbered:
+        for at in back.tolist():
+            shown, line = reader.place(int(rows[at]))
+            findings.error(
+                "the fixation begins before the one with the number before it",
+                path=shown,
+                line=line,
+                found=f"onset {onset[at]:g} ms after {onset[at - 1]:g} ms",
+                expected="onsets that never go back within a trial",
+                fix="correct the numbers or the onsets; if the trial was started again, give it "
+                "a session or a trial number of its own",
+            )
+    long = over > OVERLAP_TOLERATED_MS
+    long[back - 1] = False
+    for at in (np.flatnonzero(long) + 1).tolist():
+        shown, line = reader.place(int(rows[at]))
+        before = reader.place(int(rows[at - 1]))
+        findings.error(
+            f"the fixation begins before the one of line {before[1]} is over",
+            path=shown,
+            line=line,
+            found=f"onset {onset[at]:g} ms, {over[at - 1]:g} ms too early",
+            expected=f"no overlap beyond {OVERLAP_TOLERATED_MS:g} ms, which is taken for rounding",
+            fix="check that onset and duration are the right columns with the right units, and "
+            "that only one eye is read ([logs.where])",
+        )
+    return int(((over > 0) & (over <= OVERLAP_TOLERATED_MS)).sum())
+
+
+def _recordings_set_aside(
+    reader: ReaderLog,
+    trials: Sequence[KnownTrial],
+    ordered: tuple[NDArray[np.int64], NDArray[np.int64], NDArray[np.bool_]],
+    repeated: str,
+    findings: Findings,
+) -> NDArray[np.bool_]:
+    """Which fixations belong to recordings of a trial that are not used."""
+    rows, trial, begins_recording = ordered
+    which = np.cumsum(begins_recording) - 1
+    aside = np.zeros(len(rows), dtype=bool)
+    trial_of_recording = trial[begins_recording]
+    recordings_of = np.bincount(trial_of_recording, minlength=len(trials))
+    for index in np.flatnonzero(recordings_of > 1).tolist():
+        known = trials[index]
+        own = np.flatnonzero(trial_of_recording == index)
+        if known.skipped_by:
+            continue
+        if repeated == "error":
+            starts = np.flatnonzero(begins_recording)[own]
+            shown, line = reader.place(int(rows[starts[1]]))
+            first = reader.place(int(rows[starts[0]]))
+            findings.error(
+                f"trial {known.trial} is recorded a second time; the first begins in "
+                f"{first[0]}:{first[1]}",
+                path=shown,
+                line=line,
+                expected="one recording of each trial",
+                fix='say which counts by [trials] repeated = "first" or "last", or tell the two '
+                "apart by a session",
+            )
+            continue
+        used = own[0] if repeated == "first" else own[-1]
+        aside |= (trial == index) & (which != used)
+    return aside

@@ -1,0 +1,132 @@
+"""What is known before any log is read: which logs, which facts, which texts."""
+
+from __future__ import annotations
+
+import glob
+from dataclasses import dataclass
+from pathlib import Path
+
+from etl.errors import Findings
+from etl.export.publish import is_ours
+from etl.files import header_of, read_text
+from etl.measures import MEASURES, TRIAL_MEASURES
+from etl.parsers import LogReader
+from etl.regions import RegionLibrary, read_definitions
+from etl.study import Study
+from etl.tables import BARE_DESIGN, TABLES
+from etl.trials import FactBook, gather_facts
+from etl.trials.facts import IDS, shown_path
+
+
+@dataclass(frozen=True, slots=True)
+class Plan:
+    """A study made ready for its logs.
+
+    Attributes
+    ----------
+    study : Study
+        As loaded.
+    logs : tuple of (Path, str)
+        The logs and their names for messages, in the order in which they are read.
+    reader : LogReader
+        How they are read.
+    facts : FactBook
+        Where the facts about trials come from.
+    library : RegionLibrary
+        The texts and their regions.
+    """
+
+    study: Study
+    logs: tuple[tuple[Path, str], ...]
+    reader: LogReader
+    facts: FactBook
+    library: RegionLibrary
+
+
+def find_logs(study: Study, findings: Findings) -> tuple[tuple[Path, str], ...]:
+    """The logs that the study's patterns name, each once, sorted by name."""
+    found: dict[str, Path] = {}
+    for number, pattern in enumerate(study.logs.files):
+        # The folder's own name may hold a bracket, which only glob.escape tells from a pattern.
+        full = str(Path(glob.escape(str(study.folder))) / pattern)
+        paths = [Path(path) for path in glob.glob(full, recursive=True)]  # noqa: PTH207
+        files = [p for p in paths if p.is_file() and not any(is_ours(up) for up in p.parents[:2])]
+        if not files:
+            findings.error(
+                "no log has a name like this",
+                path=study.shown,
+                line=study.line_of("logs", "files", number),
+                where="logs.files",
+                found=pattern,
+                expected="a pattern relative to the study file that finds the logs",
+                fix="correct the pattern; * stands for any part of a name, ** for any folders",
+            )
+        for path in files:
+            found.setdefault(shown_path(study, path.absolute()), path)
+    return tuple((found[shown], shown) for shown in sorted(found))
+
+
+def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tuple[Path, str], ...]]:
+    """Read everything but the logs.
+
+    Parameters
+    ----------
+    study : Study
+        As loaded.
+    findings : Findings
+        Where problems are recorded.
+
+    Returns
+    -------
+    Plan or None, and the logs
+        No plan where tables or region definitions are wrong; the logs can be checked all the same.
+    """
+    logs = find_logs(study, findings)
+    log_header = _header(logs[0][0], study.logs.encoding, study.logs.delimiter) if logs else ()
+    region_path = study.folder / study.regions.file
+    facts = gather_facts(study, log_header, _header(region_path), findings)
+    if facts is None or not _names_are_free(study, findings):
+        return None, logs
+    wanted = {name for name, source in facts.sources.items() if source == "regions"}
+    library = read_definitions(
+        study.regions,
+        study.lines,
+        path=region_path,
+        shown=shown_path(study, study.regions.file),
+        known_facts=facts.known_facts(),
+        wanted_facts=wanted | set(facts.known_facts()),
+        findings=findings,
+    )
+    if library is None:
+        return None, logs
+    reader = LogReader(study.logs, study.screen, facts.from_log)
+    return Plan(study, logs, reader, facts, library), logs
+
+
+def _header(
+    path: Path, encoding: str | None = None, delimiter: str | None = None
+) -> tuple[str, ...]:
+    """The header of a file; empty where it cannot be read, which is told when it is read."""
+    text = read_text(path, path.name, Findings(), encoding=encoding)
+    return () if text is None else header_of(text, delimiter)
+
+
+def _names_are_free(study: Study, findings: Findings) -> bool:
+    """Factors and covariates become columns, so they must not bear the name of another one."""
+    taken = {column.name for table in TABLES for column in BARE_DESIGN.columns(table)}
+    taken |= {*MEASURES, *TRIAL_MEASURES, *IDS}
+    free = True
+    for key in ("factors", "covariates"):
+        for name in getattr(study.trials, key):
+            if name in taken:
+                free = False
+                findings.error(
+                    "the tables have a column of this name already",
+                    path=study.shown,
+                    line=study.line_of("trials", key),
+                    where=f"trials.{key}",
+                    found=name,
+                    expected="a name of its own for every factor and covariate",
+                    fix="rename the column in its table, and here",
+                )
+    return free

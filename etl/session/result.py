@@ -1,0 +1,79 @@
+"""What a build gives back to a Python program."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from pathlib import Path
+
+import pandas as pd
+import pyarrow.parquet as pq
+
+from etl.errors import Findings
+from etl.tables import TABLES
+
+
+@dataclass(frozen=True, slots=True)
+class Result:
+    """A finished build.
+
+    Attributes
+    ----------
+    folder : Path
+        Where the tables are.
+    counts : mapping of str to int
+        Readers, trials and fixations: read, left out, kept.
+    rows : mapping of str to int
+        Rows of each table.
+    findings : Findings
+        Warnings and notes.
+    """
+
+    folder: Path
+    counts: Mapping[str, int]
+    rows: Mapping[str, int]
+    findings: Findings
+
+    def table(self, name: str) -> pd.DataFrame:
+        """Read one table as a pandas frame.
+
+        Parameters
+        ----------
+        name : str
+            One of ``outcomes``, ``outcomes_wide``, ``trials``, ``regressions``, ``fixations``.
+
+        Raises
+        ------
+        KeyError
+            If there is no table of that name.
+        """
+        if name not in TABLES:
+            raise KeyError(f"{name}: the tables are {', '.join(TABLES)}")
+        with pq.ParquetFile(self.folder / f"{name}.parquet") as file:
+            frame: pd.DataFrame = file.read().to_pandas()
+        return frame
+
+    @property
+    def outcomes(self) -> pd.DataFrame:
+        """One row a participant × trial × region × measure."""
+        return self.table("outcomes")
+
+    @property
+    def outcomes_wide(self) -> pd.DataFrame:
+        """One row a participant × trial × region, one column a measure."""
+        return self.table("outcomes_wide")
+
+    @property
+    def trials(self) -> pd.DataFrame:
+        """One row a kept trial."""
+        return self.table("trials")
+
+    @property
+    def regressions(self) -> pd.DataFrame:
+        """One row a regressive saccade."""
+        return self.table("regressions")
+
+    @property
+    def fixations(self) -> pd.DataFrame:
+        """Every fixation read."""
+        return self.table("fixations")

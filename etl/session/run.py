@@ -1,0 +1,243 @@
+"""The main job: check a study, or build its tables."""
+
+from __future__ import annotations
+
+import hashlib
+import os
+import tempfile
+import time
+from collections import Counter
+from collections.abc import Iterable, Iterator
+from concurrent.futures.process import BrokenProcessPool
+from contextlib import contextmanager
+from pathlib import Path
+from typing import Any
+
+from etl.errors import DataError, FaultError, Findings
+from etl.export.publish import check_target, published
+from etl.export.run_record import RunRecord
+from etl.export.writers import TableWriters
+from etl.parsers import LogReader
+from etl.session.gather import Gathered, Progress, gather, notice_logs, read_logs
+from etl.session.one_reader import ReaderTables
+from etl.session.plan import Plan, make_plan
+from etl.session.result import Result
+from etl.session.work import LogAnswer, make_reader_work, map_tasks
+from etl.study import Study
+from etl.tables import TABLES
+from etl.trials.facts import shown_path
+
+#: A study whose logs are smaller than this is done sooner by one process than by starting more.
+_WORTH_WORKERS_BYTES = 20_000_000
+#: More than this share of kept fixations outside every region is worth a warning: it is a sign of
+#: a wrong layout (common practice, no source).
+_OUTSIDE_SHARE = 0.2
+
+
+def _silent(stage: str, done: int, total: int) -> None:
+    """Show no progress."""
+
+
+def check(study: Study, *, workers: int | None = None, progress: Progress = _silent) -> Findings:
+    """Read everything a study names, write nothing, and list all that was found.
+
+    Parameters
+    ----------
+    study : Study
+        From :func:`etl.load_study`.
+    workers : int, optional
+        Number of processes; found out from the size of the logs where absent.
+    progress : callable, optional
+        Called with a stage's name, how much of it is done, and how much there is.
+
+    Returns
+    -------
+    Findings
+        Errors, warnings and notes; ``findings.failed`` says whether a build would be refused.
+    """
+    findings = Findings()
+    with tempfile.TemporaryDirectory(prefix="trialwright-") as folder, _own_faults():
+        examined = _examine(study, Path(folder), workers, progress, findings)
+        counts: Counter[str] = Counter()
+        if examined is not None:
+            plan, gathered, _, count = examined
+            for tables in _finish(plan, gathered, count, progress, write=False):
+                findings.extend(tables.findings)
+                counts.update(tables.counts)
+        _notice_counts(study, counts, findings)
+    return findings
+
+
+def build(
+    study: Study,
+    *,
+    into: str | os.PathLike[str] | None = None,
+    workers: int | None = None,
+    progress: Progress = _silent,
+) -> Result:
+    """Build all tables of a study.
+
+    Parameters
+    ----------
+    study : Study
+        From :func:`etl.load_study`.
+    into : path, optional
+        The output folder; the study's ``[output] folder`` where absent. An earlier build there is
+        replaced as a whole, when everything else is done.
+    workers : int, optional
+        Number of processes; found out from the size of the logs where absent. The tables are the
+        same bytes with any number.
+    progress : callable, optional
+        Called with a stage's name, how much of it is done, and how much there is.
+
+    Returns
+    -------
+    Result
+        Where the tables are, what was counted and noticed.
+
+    Raises
+    ------
+    DataError
+        If anything is wrong with an input, or the output folder may not be replaced. Nothing is
+        written then.
+    """
+    started = time.perf_counter()
+    target = Path(into) if into is not None else study.folder / study.output.folder
+    shown = shown_path(study, study.output.folder) if into is None else str(into)
+    check_target(target, shown)
+    findings = Findings()
+    with published(target, shown) as shop, _own_faults():
+        examined = _examine(study, shop.kept, workers, progress, findings)
+        if examined is None:
+            raise DataError(findings)
+        plan, gathered, answers, count = examined
+        counts: Counter[str] = Counter()
+        csv = "csv" in study.output.formats
+        with TableWriters(shop.fresh, gathered.design, TABLES, csv=csv) as writers:
+            write = not findings.failed
+            for tables in _finish(plan, gathered, count, progress, write=write):
+                findings.extend(tables.findings)
+                counts.update(tables.counts)
+                if not findings.failed:
+                    writers.add(tables.batches)
+            if findings.failed:
+                raise DataError(findings)
+        rows = writers.rows
+        _notice_counts(study, counts, findings)
+        told = {"readers": len(gathered.tasks), **_log_counts(answers), **counts}
+        RunRecord(
+            study.understood(),
+            _inputs(plan, answers),
+            told,
+            rows,
+            findings.lines(("warning", "note")),
+            time.perf_counter() - started,
+        ).write(shop.fresh)
+    return Result(target, told, rows, findings)
+
+
+@contextmanager
+def _own_faults() -> Iterator[None]:
+    """Turn the death of a worker process into an error that says so."""
+    try:
+        yield
+    except BrokenProcessPool as dead:
+        raise FaultError(
+            "a worker process ended before its work was done, most often for want of memory; "
+            "try again with fewer --workers"
+        ) from dead
+
+
+def _examine(
+    study: Study, kept: Path, workers: int | None, progress: Progress, findings: Findings
+) -> tuple[Plan, Gathered, list[LogAnswer], int] | None:
+    """Everything up to the work on readers; None where that makes no sense."""
+    plan, logs = make_plan(study, findings)
+    count = _workers(workers, logs)
+    reader = plan.reader if plan is not None else LogReader(study.logs, study.screen, ())
+    answers = read_logs(logs, reader, kept, count, progress)
+    for answer in answers:
+        findings.extend(answer.findings)
+    notice_logs(study, answers, findings)
+    if plan is None:
+        return None
+    gathered = gather(plan, answers, kept, findings)
+    return None if gathered is None else (plan, gathered, answers, count)
+
+
+def _workers(asked: int | None, logs: Iterable[tuple[Path, str]]) -> int:
+    """How many processes to use."""
+    if asked is not None:
+        return max(1, asked)
+    size = sum(path.stat().st_size for path, _ in logs)
+    return (os.cpu_count() or 1) if size >= _WORTH_WORKERS_BYTES else 1
+
+
+def _finish(
+    plan: Plan, gathered: Gathered, workers: int, progress: Progress, *, write: bool
+) -> Iterable[ReaderTables]:
+    """Work on one reader after the other."""
+    arguments = ((gathered.design, plan.library, gathered.options), write)
+    finished = map_tasks(make_reader_work, arguments, gathered.tasks, workers)
+    for done, tables in enumerate(finished, start=1):
+        yield tables
+        progress("working on readers", done, len(gathered.tasks))
+
+
+def _notice_counts(study: Study, counts: Counter[str], findings: Findings) -> None:
+    """Warn of what the counts of the whole study show."""
+    kept = counts["fixations kept"]
+    outside = counts["fixations kept outside every region"]
+    if kept and outside / kept > _OUTSIDE_SHARE:
+        findings.warning(
+            f"{outside / kept:.0%} of the fixations lie outside every region",
+            path=study.shown,
+            line=study.line_of("regions"),
+            where="regions",
+            fix="if that is more than the texts leave free, check the layout, the screen's "
+            "origin and the boxes",
+        )
+    if counts["overlaps taken for rounding"]:
+        findings.note(
+            f"{counts['overlaps taken for rounding']} fixations reach into the next one by no "
+            "more than is taken for rounding",
+        )
+
+
+def _log_counts(answers: list[LogAnswer]) -> dict[str, int]:
+    """What was counted while reading logs."""
+    counts: Counter[str] = Counter({"logs": len(answers)})
+    for answer in answers:
+        counts.update({f"log {name}": count for name, count in answer.note.counts.items()})
+    return dict(counts)
+
+
+def _inputs(plan: Plan, answers: list[LogAnswer]) -> list[dict[str, Any]]:
+    """Every file read, with its digest."""
+    study = plan.study
+    files = [(study.path, study.path.name, "study file")]
+    files.append(
+        (study.folder / study.regions.file, shown_path(study, study.regions.file), "regions")
+    )
+    inputs: list[dict[str, Any]] = [
+        {"file": shown, "role": role, "sha256": hashlib.sha256(path.read_bytes()).hexdigest()}
+        for path, shown, role in files
+    ]
+    inputs += [
+        {"file": table.shown, "role": "facts", "sha256": table.sha256}
+        for table in plan.facts.tables()
+    ]
+    for answer in answers:
+        note = answer.note
+        inputs.append(
+            {
+                "file": note.shown,
+                "role": "log",
+                "sha256": note.sha256,
+                "encoding": note.encoding,
+                "delimiter": note.delimiter,
+                "decimal": note.decimal,
+                **note.counts,
+            }
+        )
+    return inputs

@@ -1,0 +1,90 @@
+"""What the commands print about a check, a build or a measure."""
+
+from __future__ import annotations
+
+from difflib import get_close_matches
+
+from etl.errors import Findings
+from etl.measures import MEASURES, REASON_MEANINGS, TRIAL_MEASURES, Measure
+from etl.session.result import Result
+
+
+def checked(findings: Findings) -> str:
+    """The closing line of a check without errors."""
+    warnings = findings.count("warning")
+    if warnings:
+        return f"No errors; {warnings} warning{'' if warnings == 1 else 's'}. Nothing was written."
+    return "All is well. Nothing was written."
+
+
+def built(result: Result) -> str:
+    """The summary of a build: what was read, what was left out, what was written."""
+    counts = result.counts
+    skipped = counts.get("trials skipped", 0)
+    left = [f"{skipped:,} trials are no part of the study" if skipped else ""]
+    repeated = counts.get("fixations of repeated trials", 0)
+    left.append(f"{repeated:,} fixations of trials recorded twice left out" if repeated else "")
+    kept, outside = counts["fixations kept"], counts["fixations kept outside every region"]
+    lines = [
+        f"{counts['readers']:,} readers, {counts['trials kept']:,} trials, "
+        f"{kept:,} fixations, {outside:,} of them outside every region"
+        + "".join(f"; {part}" for part in left if part),
+        f"Written to {result.folder}:",
+    ]
+    width = max(len(name) for name in result.rows)
+    lines += [f"  {name:<{width}}  {rows:>11,} rows" for name, rows in result.rows.items()]
+    return "\n".join([*lines, "  run.json"])
+
+
+def measure_names() -> list[str]:
+    """The names of all outcomes."""
+    return list(dict.fromkeys([*MEASURES, *TRIAL_MEASURES]))
+
+
+def catalogue() -> str:
+    """All outcomes, a line each, in their groups."""
+    lines: list[str] = []
+    for title, measures in (
+        ("Outcomes of a region in a trial", MEASURES),
+        ("Outcomes of a trial", TRIAL_MEASURES),
+    ):
+        width = max(len(name) for name in measures)
+        lines += ["", title, ""] if lines else [title, ""]
+        lines += [
+            f"  {name:<{width}}  {one.kind:<8}  {one.definition}" for name, one in measures.items()
+        ]
+    return "\n".join([*lines, "", "trialwright measures NAME tells all about one of them."])
+
+
+def measure(name: str) -> str | None:
+    """All about one outcome; None where there is none of that name."""
+    found = [m[name] for m in (MEASURES, TRIAL_MEASURES) if name in m]
+    return "\n\n".join(_one(m) for m in found) or None
+
+
+def _one(measure: Measure) -> str:
+    """All about one outcome."""
+    lines = [
+        f"{measure.name} ({measure.kind}, {measure.unit}; one value a "
+        + ("region of a trial)" if measure.level == "region" else "trial)"),
+        "",
+        f"  {measure.definition}",
+    ]
+    if measure.interrupted:
+        lines.append(f'  With outside = "interrupt": {measure.interrupted}')
+    if measure.zeroed:
+        lines.append(f'  With no_opportunity = "zero": {measure.zeroed}')
+    if measure.reasons:
+        lines += ["", "  Missing:"]
+        width = max(len(reason) for reason in measure.reasons)
+        lines += [f"    {r:<{width}}  {REASON_MEANINGS[r]}" for r in measure.reasons]
+    else:
+        lines += ["", "  Never missing."]
+    return "\n".join([*lines, "", f"  Source: {measure.source}"])
+
+
+def unknown_measure(name: str) -> str:
+    """What is said to a name that no outcome has."""
+    near = get_close_matches(name, measure_names(), n=1)
+    hint = f' Did you mean "{near[0]}"?' if near else ""
+    return f'there is no outcome "{name}".{hint} trialwright measures lists them all.'

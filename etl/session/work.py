@@ -1,0 +1,172 @@
+"""What workers do: read one log, or finish one reader. Every task and answer can be pickled."""
+
+from __future__ import annotations
+
+import multiprocessing
+from collections import deque
+from collections.abc import Callable, Iterator, Sequence
+from concurrent.futures import Future, ProcessPoolExecutor
+from dataclasses import dataclass, field
+from pathlib import Path
+from typing import Any, TypeVar
+
+import numpy as np
+
+from etl.errors import Findings
+from etl.parsers import LogReader
+from etl.parsers.canonical import LogNote
+from etl.session.kept_logs import keep_log, kept_log
+from etl.session.one_reader import Bench, Reader, ReaderTables
+from etl.session.seen import seen_trials
+from etl.trials import KnownTrial, SeenTrial
+
+Task = TypeVar("Task")
+Answer = TypeVar("Answer")
+
+
+@dataclass(frozen=True, slots=True)
+class LogTask:
+    """A log to be read and put aside."""
+
+    path: Path
+    shown: str
+    kept: Path
+
+
+@dataclass(slots=True)
+class LogAnswer:
+    """What a log holds."""
+
+    note: LogNote
+    batches: dict[str, int] = field(default_factory=dict)
+    trials: list[SeenTrial] = field(default_factory=list)
+    durations_ms: tuple[float, float] = (0.0, 0.0)
+    findings: Findings = field(default_factory=Findings)
+
+
+@dataclass(frozen=True, slots=True)
+class ReaderTask:
+    """A reader to be finished: where the fixations lie, and the trials with their texts."""
+
+    participant: str
+    parts: tuple[tuple[Path, int], ...]
+    files: tuple[int, ...]
+    trials: tuple[KnownTrial, ...]
+    texts: tuple[int, ...]
+
+
+class LogWork:
+    """Reads logs."""
+
+    def __init__(self, reader: LogReader) -> None:
+        self._reader = reader
+
+    def __call__(self, task: LogTask) -> LogAnswer:
+        """Read one log and put its fixations aside."""
+        findings = Findings()
+        read = self._reader.read(task.path, task.shown, findings)
+        if read is None:
+            return LogAnswer(LogNote(task.shown), findings=findings)
+        log, note = read
+        trials = seen_trials(log, task.shown, findings)
+        middle = float(np.median(log.duration_ms))
+        return LogAnswer(
+            note,
+            keep_log(log, task.kept),
+            trials,
+            (middle, float(log.duration_ms.max())),
+            findings,
+        )
+
+
+class ReaderWork:
+    """Finishes readers.
+
+    Parameters
+    ----------
+    bench : Bench
+        The study's texts, tables and decisions.
+    write : bool
+        Whether rows are wanted; if not, only what is wrong with the reader's fixations.
+    """
+
+    def __init__(self, bench: Bench, *, write: bool) -> None:
+        self._bench = bench
+        self._write = write
+
+    def __call__(self, task: ReaderTask) -> ReaderTables:
+        """Finish one reader."""
+        log, part = kept_log(task.parts)
+        file = np.asarray(task.files, dtype=np.int32)[part]
+        reader = Reader(task.participant, log, file, task.trials, task.texts)
+        tables = self._bench.tables(reader)
+        if not self._write:
+            tables.batches = {}
+        return tables
+
+
+_work: Callable[[Any], Any] | None = None
+
+
+def _begin(make: Callable[..., Callable[[Any], Any]], arguments: tuple[Any, ...]) -> None:
+    """Set up a worker process once."""
+    global _work  # noqa: PLW0603  (the one thing a worker process keeps between tasks)
+    _work = make(*arguments)
+
+
+def _do(task: Any) -> Any:
+    """Do one task in a worker process."""
+    assert _work is not None  # noqa: S101
+    return _work(task)
+
+
+def make_reader_work(arguments: tuple[Any, ...], write: bool) -> ReaderWork:  # noqa: FBT001
+    """Set up the work on readers in whichever process."""
+    return ReaderWork(Bench(*arguments), write=write)
+
+
+def map_tasks(
+    make: Callable[..., Callable[[Task], Answer]],
+    arguments: tuple[Any, ...],
+    tasks: Sequence[Task],
+    workers: int,
+) -> Iterator[Answer]:
+    """Answers in the order of the tasks, from this process or from worker processes.
+
+    Parameters
+    ----------
+    make : callable
+        Gives the function that does a task, from ``arguments``; called once in each process.
+    arguments : tuple
+        What ``make`` needs; pickled once for each worker.
+    tasks : sequence
+        The tasks.
+    workers : int
+        Number of processes; 1 works in this one.
+
+    Yields
+    ------
+    answers
+        One a task. At most four tasks a worker are under way or waiting to be taken, so that
+        memory does not grow with the number of tasks.
+    """
+    if workers <= 1 or len(tasks) <= 1:
+        work = make(*arguments)
+        for task in tasks:
+            yield work(task)
+        return
+    # Workers start afresh ("spawn") on every system, as they do on Windows and macOS.
+    context = multiprocessing.get_context("spawn")
+    with ProcessPoolExecutor(
+        min(workers, len(tasks)), context, initializer=_begin, initargs=(make, arguments)
+    ) as pool:
+        waiting: deque[Future[Answer]] = deque()
+        try:
+            for task in tasks:
+                waiting.append(pool.submit(_do, task))
+                if len(waiting) >= 4 * workers:
+                    yield waiting.popleft().result()
+            while waiting:
+                yield waiting.popleft().result()
+        finally:
+            pool.shutdown(wait=True, cancel_futures=True)

@@ -1,0 +1,59 @@
+"""The rules that look at several keys of the study file; none reads a file.
+
+A rule is left out where a key it reads is wrong in itself, and run otherwise: so a slip in one
+table hides nothing in another, and no rule complains of a key whose own mistake is reported
+already.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Collection, Iterator
+
+from etl.study import log_rules, place_rules, trial_rules
+from etl.study.models import StudyFile
+from etl.study.positions import KeyPath
+from etl.study.rule import Problem
+
+RULES = (
+    log_rules.reader_is_named,
+    log_rules.trial_is_named,
+    log_rules.order_is_known,
+    log_rules.duration_is_known_once,
+    log_rules.end_has_its_onset,
+    log_rules.measured_columns_differ,
+    log_rules.delimiter_is_no_decimal_sign,
+    place_rules.place_is_known,
+    place_rules.positions_share_a_unit,
+    place_rules.degrees_have_a_screen,
+    place_rules.degrees_have_a_width,
+    place_rules.degrees_have_a_distance,
+    place_rules.degrees_count_from_the_centre,
+    place_rules.axis_fits_the_origin,
+    place_rules.layout_goes_with_text,
+    place_rules.lines_have_a_height,
+    place_rules.labels_have_no_geometry,
+    trial_rules.keys_have_a_table,
+    trial_rules.levels_belong_to_factors,
+    trial_rules.factors_are_no_covariates,
+    trial_rules.facts_keep_their_own_names,
+)
+
+
+def broken_rules(study: StudyFile, wrong: Collection[KeyPath]) -> Iterator[Problem]:
+    """Run every rule whose keys are sound.
+
+    Parameters
+    ----------
+    study : StudyFile
+        The study, with defaults or examples in place of what is wrong.
+    wrong : collection of tuple
+        The keys that are wrong in themselves; a wrong table makes all its keys wrong.
+
+    Yields
+    ------
+    Problem
+        What contradicts a rule, in the order of the rules.
+    """
+    for rule in RULES:
+        if rule.applies(wrong):
+            yield from rule.check(study)

@@ -1,0 +1,347 @@
+"""Join what the logs, the trial list, the reader table and the item table say about each trial."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Collection, Iterable, Mapping
+from dataclasses import dataclass, field
+from difflib import get_close_matches
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from etl.errors import Findings
+from etl.trials.fact_tables import FactTable, read_fact_table
+
+if TYPE_CHECKING:
+    from etl.study import Study
+
+#: What identifies a fixation's trial; every log or table may carry these under canonical names.
+IDS = ("participant", "session", "trial", "item")
+
+
+@dataclass(frozen=True, slots=True)
+class SeenTrial:
+    """A trial as one log shows it.
+
+    Attributes
+    ----------
+    participant, session, trial, item : str
+        Its identity; ``session`` and ``item`` are empty where the log has none.
+    facts : tuple of str
+        Facts that stand in the log, in the order of :attr:`FactBook.from_log`.
+    shown : str
+        The log.
+    line : int
+        The first line of the trial in that log.
+    """
+
+    participant: str
+    session: str
+    trial: str
+    item: str
+    facts: tuple[str, ...]
+    shown: str
+    line: int
+
+
+@dataclass(frozen=True, slots=True)
+class KnownTrial:
+    """A trial with all that is known about it.
+
+    Attributes
+    ----------
+    session, trial, item : str
+        Its identity within its reader.
+    facts : dict of str to str
+        Every fact that the study uses, by name; empty texts where unknown.
+    skipped_by : str
+        The fact by which the trial is no part of the study (``block``), or empty.
+    shown, line : str, int
+        Where it was first seen.
+    """
+
+    session: str
+    trial: str
+    item: str
+    facts: dict[str, str]
+    skipped_by: str
+    shown: str
+    line: int
+
+
+@dataclass(frozen=True, slots=True)
+class FactBook:
+    """The tables of a study and where each fact comes from.
+
+    Attributes
+    ----------
+    trial_list, participants, items : FactTable or None
+        The lab's tables.
+    sources : dict of str to str
+        For each fact that the study names: ``"trials"``, ``"participants"``, ``"items"``,
+        ``"log"`` or ``"regions"``.
+    from_log : tuple of str
+        Facts that are columns of the logs.
+    skip : dict of str to tuple of str
+        Values by which trials are no part of the study.
+    """
+
+    trial_list: FactTable | None
+    participants: FactTable | None
+    items: FactTable | None
+    sources: dict[str, str]
+    from_log: tuple[str, ...]
+    skip: dict[str, tuple[str, ...]] = field(default_factory=dict)
+
+    def known_facts(self) -> frozenset[str]:
+        """What is known of a trial before its text is looked up."""
+        own = {name for name, source in self.sources.items() if source != "regions"}
+        return frozenset(own | set(IDS))
+
+    def tables(self) -> list[FactTable]:
+        """The tables there are."""
+        return [t for t in (self.trial_list, self.participants, self.items) if t is not None]
+
+    def know(self, seen: SeenTrial, findings: Findings) -> KnownTrial | None:
+        """Join all that is known about one trial.
+
+        Returns None, with a finding, where a table has no row for a trial that belongs to the
+        study, or where log and trial list name different items.
+        """
+        facts = dict(zip(self.from_log, seen.facts, strict=True))
+        identity = {
+            name: text
+            for name, text in zip(
+                IDS, (seen.participant, seen.session, seen.trial, seen.item), strict=True
+            )
+            if text
+        }
+        good = self._join(self.participants, "participants", identity, facts, seen, findings)
+        good &= self._join(self.trial_list, "trials", identity, facts, seen, findings)
+        # A practice trial may stand in no item table: whether it counts is asked first.
+        unknown_item = Findings()
+        has_item = self._join(self.items, "items", identity, facts, seen, unknown_item)
+        skipped_by = next(
+            (
+                name
+                for name, values in self.skip.items()
+                if (identity.get(name) or facts.get(name, "")) in values
+            ),
+            "",
+        )
+        if not skipped_by:
+            findings.extend(unknown_item)
+            good &= has_item
+        if not good:
+            return None
+        return KnownTrial(
+            seen.session,
+            seen.trial,
+            identity.get("item", ""),
+            facts,
+            skipped_by,
+            seen.shown,
+            seen.line,
+        )
+
+    def _join(
+        self,
+        table: FactTable | None,
+        source: str,
+        identity: dict[str, str],
+        facts: dict[str, str],
+        seen: SeenTrial,
+        findings: Findings,
+    ) -> bool:
+        """Add one table's facts; False where it has no row for the trial."""
+        if table is None:
+            return True
+        key = tuple(identity.get(name) or facts.get(name, "") for name in table.keys)
+        if key not in table.rows:
+            spelled = ", ".join(f"{n} {k}" for n, k in zip(table.keys, key, strict=True))
+            near = _near_key(key, table)
+            findings.error(
+                f"{table.shown} has no row for {spelled}",
+                path=seen.shown,
+                line=seen.line,
+                expected=f"a row of {table.shown} for every trial of the logs",
+                fix=f"add the row to {table.shown}{near}, or leave the trial out by [logs.where]",
+            )
+            return False
+        good = True
+        for name in IDS:
+            if name in table.keys or name not in table.columns:
+                continue
+            text = table.value(key, name)
+            if not text:
+                continue
+            if identity.setdefault(name, text) != text and name == "item":
+                good = False
+                findings.error(
+                    f"the log and {table.shown} (line {table.lines[key]}) name different items",
+                    path=seen.shown,
+                    line=seen.line,
+                    found=identity[name],
+                    expected=text,
+                    fix="correct one of the two, or take item out of [logs.columns]",
+                )
+        for name, origin in self.sources.items():
+            if origin == source:
+                facts[name] = table.value(key, name)
+        return good
+
+    def origin(self, name: str, participant: str, trial: KnownTrial) -> tuple[str, int]:
+        """File and line from which a trial has a fact: a row of a table, or the trial's log."""
+        table = {
+            "trials": self.trial_list,
+            "participants": self.participants,
+            "items": self.items,
+        }.get(self.sources.get(name, ""))
+        if table is None:
+            return trial.shown, trial.line
+        identity = {
+            "participant": participant,
+            "session": trial.session,
+            "trial": trial.trial,
+            "item": trial.item,
+        }
+        key = tuple(identity.get(n) or trial.facts.get(n, "") for n in table.keys)
+        return table.shown, table.lines.get(key, 1)
+
+    def unrecorded(self, seen: Mapping[str, Collection[tuple[str, str]]]) -> list[tuple[str, int]]:
+        """Rows of the trial list that no log has, as their spelled key and line.
+
+        Only where the list is joined by reader and trial does a row stand for one trial.
+        """
+        table = self.trial_list
+        if table is None or not {"participant", "trial"} <= set(table.keys):
+            return []
+        if not set(table.keys) <= set(IDS):
+            return []
+        by_own_fact = [
+            (name, values) for name, values in self.skip.items() if name in table.columns
+        ]
+        places = [table.keys.index(n) if n in table.keys else None for n in IDS[:3]]
+        found = []
+        for key in table.rows:
+            participant, session, trial = ("" if p is None else key[p] for p in places)
+            trials = seen.get(participant, ())
+            there = (
+                (session, trial) in trials
+                if session
+                else any(trial == other for _, other in trials)
+            )
+            if any(table.value(key, name) in values for name, values in by_own_fact):
+                continue
+            if not there:
+                spelled = ", ".join(f"{n} {k}" for n, k in zip(table.keys, key, strict=True))
+                found.append((spelled, table.lines[key]))
+        return found
+
+
+def _near_key(key: tuple[str, ...], table: FactTable) -> str:
+    """A hint at the nearest key of a table with one key column."""
+    if len(key) != 1:
+        return ""
+    near = get_close_matches(key[0], [k[0] for k in table.rows], n=1, cutoff=0.75)
+    return f' (it has "{near[0]}")' if near else ""
+
+
+def gather_facts(
+    study: Study, log_header: Iterable[str], region_header: Iterable[str], findings: Findings
+) -> FactBook | None:
+    """Read the study's tables and find out where each fact comes from.
+
+    Parameters
+    ----------
+    study : Study
+        The study as loaded.
+    log_header : iterable of str
+        The header of one of its logs.
+    region_header : iterable of str
+        The header of its region file.
+    findings : Findings
+        Where problems are recorded.
+
+    Returns
+    -------
+    FactBook or None
+        None where a table cannot be read or a named fact is nowhere to be found. A fact that
+        stands in several places is taken from the trial list, the reader table, the item table,
+        the logs, the region file, in this order.
+    """
+    before = findings.count("error")
+    columns = study.logs.columns
+    synonyms = {
+        name: column.column for name in IDS if (column := getattr(columns, name)) is not None
+    }
+    missing = study.logs.missing
+    header = set(log_header)
+
+    def table(given: str | None, keys: tuple[str, ...]) -> FactTable | None:
+        if given is None:
+            return None
+        return read_fact_table(
+            study.folder / given, shown_path(study, given), keys, synonyms, missing, findings
+        )
+
+    participants = study.participants and table(study.participants.table, ("participant",))
+    items = study.items and table(study.items.table, ("item",))
+    trials = study.trials
+    back = {header_: name for name, header_ in synonyms.items()}
+    keys = tuple(back.get(key, key) if key not in IDS else key for key in trials.keys)
+    trial_list = table(trials.table, keys)
+    if findings.count("error") > before:
+        return None
+    skip = {name: tuple(values) for name, values in trials.skip.items()}
+    named = [
+        *((name, ("trials", "factors")) for name in trials.factors),
+        *((name, ("trials", "covariates")) for name in trials.covariates),
+        *((name, ("trials", "skip", name)) for name in skip),
+        *((name, ("trials", "keys")) for name in keys if name not in IDS),
+    ]
+    single = {
+        "answer_correct": trials.answer_correct,
+        "onset": trials.onset,
+        "offset": trials.offset,
+    }
+    named += [(name, ("trials", key)) for key, name in single.items() if name is not None]
+    places = [
+        ("trials", trial_list.columns if trial_list else ()),
+        ("participants", participants.columns if participants else ()),
+        ("items", items.columns if items else ()),
+        ("log", tuple(header)),
+        ("regions", tuple(region_header)),
+    ]
+    sources: dict[str, str] = {}
+    for name, loc in named:
+        if name in IDS and name not in sources:
+            continue
+        source = next((where for where, has in places if name in has), None)
+        if source is None or (source == "regions" and loc[1] == "skip"):
+            everything = sorted({n for _, has in places for n in has if n})
+            near = get_close_matches(name, everything, n=1)
+            findings.error(
+                f'no table, log or region file has a column "{name}"',
+                path=study.shown,
+                line=study.line_of(*loc),
+                where=".".join(loc[:2]),
+                found=name,
+                expected="one of " + ", ".join(everything),
+                fix=f'did you mean "{near[0]}"?' if near else "correct the name",
+            )
+            continue
+        sources[name] = source
+    if findings.count("error") > before:
+        return None
+    from_log = tuple(name for name, source in sources.items() if source == "log")
+    return FactBook(trial_list, participants or None, items or None, sources, from_log, skip)
+
+
+def shown_path(study: Study, given: str | Path) -> str:
+    """A path as the user would name it: relative to the study file, with forward slashes."""
+    path = study.folder / given
+    try:
+        return Path(os.path.relpath(path, study.folder)).as_posix()
+    except ValueError:  # another drive on Windows
+        return path.as_posix()

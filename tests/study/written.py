@@ -1,0 +1,109 @@
+"""Study files that the tests begin from."""
+
+#: The least that makes a sound study. Its line numbers are those in the expected messages.
+SOUND = """\
+[logs]
+files = ["logs/*.tsv"]
+
+[logs.columns]
+participant = "reader"
+trial = "trial_no"
+onset = "t_start"
+duration = "dur"
+x = "gx"
+y = "gy"
+
+[regions]
+file = "boxes.csv"
+kind = "boxes"
+"""
+
+#: The whole study file of the design, without what is not in this version.
+EXAMPLE = r"""
+title = "Orchard study"
+
+[logs]
+files = ["logs/*.tsv"]            # globs, relative to this file; .gz read as it is
+kind = "table"
+participant_from_name = '(?P<participant>P\d+)'   # optional; a regex on the file's name
+delimiter = "\t"                  # these four are found out when absent
+decimal = "."
+encoding = "utf-8"
+missing = ["", ".", "NA"]
+
+[logs.columns]                    # canonical name = the log's own header, or a table with its unit
+participant = "reader"
+trial = "trial_no"
+item = "sentence"
+session = "session"
+onset = { column = "t_start", unit = "ms" }        # "ms" | "s" | "us"
+fixation = "n"
+duration = { column = "dur", unit = "ms" }
+x = { column = "gx", unit = "px" }
+y = { column = "gy", unit = "px" }
+label = "area"
+eye = "eye"
+blink = "blink"
+
+[logs.where]
+eye = ["R"]
+
+[participants]
+table = "participants.csv"
+[items]
+table = "items.csv"
+
+[trials]
+table = "trial_list.csv"
+keys = ["participant", "trial"]
+factors = ["cue", "fit", "group"]
+covariates = ["age"]
+levels = { cue = ["early", "late"] }
+repeated = "error"
+answer_correct = "answer_ok"
+onset = "t_text_on"
+offset = "t_text_off"
+skip = { block = ["practice"], role = ["filler"] }
+
+[screen]
+width_px = 1920
+height_px = 1080
+width_cm = 53.0
+distance_cm = 65.0
+y_axis = "down"
+origin = "top-left"
+
+[regions]
+file = "../../region_definitions/orchard.csv"
+kind = "marked_text"
+vertical = "box"
+tolerance_px = 20
+overlap = "error"
+
+[regions.layout]
+left_px = 200
+top_px = 500
+character_width_px = 14
+line_height_px = 60
+space = "following"
+direction = "ltr"
+
+[lines]
+method = "nearest"
+
+[measures]
+outcomes = ["binary", "count"]
+outside = "ignore"
+no_opportunity = "missing"
+
+[output]
+folder = "out"
+formats = ["parquet", "csv"]
+pseudonyms = false
+"""
+
+
+def changed(old: str, new: str, text: str = SOUND) -> str:
+    """The sound study with one place changed; the place must be there once."""
+    assert text.count(old) == 1, old
+    return text.replace(old, new)
