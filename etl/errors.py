@@ -122,6 +122,8 @@ class Findings:
 
     def extend(self, others: Findings) -> None:
         """Take over all that another list holds."""
+        if not others.items:
+            return
         kept = Counter((f.severity, f.path, f.where, f.problem) for f in others.items)
         for kind, count in kept.items():
             surplus = others.more[kind] - count

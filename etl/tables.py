@@ -8,6 +8,7 @@ from __future__ import annotations
 import base64
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
+from functools import cached_property
 from typing import Literal
 
 import pyarrow as pa
@@ -65,7 +66,7 @@ class MeasureColumn:
     definition: str
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class IdColumn:
     """An identifier: all values that the study has, in the order in which rows are sorted."""
 
@@ -89,6 +90,11 @@ class IdColumn:
         ):
             return cls(tuple(sorted(distinct, key=int)), "integer")
         return cls(tuple(sorted(distinct)), "text")
+
+    @cached_property
+    def ranks(self) -> dict[str, int]:
+        """The place of each value."""
+        return {text: rank for rank, text in enumerate(self.values)}
 
 
 @dataclass(frozen=True, slots=True)

@@ -9,6 +9,8 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from operator import attrgetter
+from typing import Protocol
 
 import numpy as np
 import pyarrow as pa
@@ -17,12 +19,17 @@ from numpy.typing import NDArray
 from etl.tables import CODED, TABLES, TableDesign, written_schema
 
 
-@dataclass(frozen=True, slots=True)
-class TrialFacts:
+class Trial(Protocol):
     """What is written about one trial in every row of it."""
 
-    ids: Mapping[str, str]
-    facts: Mapping[str, str]
+    @property
+    def session(self) -> str: ...  # noqa: D102
+    @property
+    def trial(self) -> str: ...  # noqa: D102
+    @property
+    def item(self) -> str: ...  # noqa: D102
+    @property
+    def facts(self) -> tuple[str, ...]: ...  # noqa: D102
 
 
 @dataclass(frozen=True, slots=True)
@@ -84,15 +91,14 @@ class RowMaker:
     ----------
     design : TableDesign
         What the study's tables have in common.
+    facts : tuple of str
+        Names of the facts of a trial, in its order.
     """
 
-    def __init__(self, design: TableDesign) -> None:
+    def __init__(self, design: TableDesign, facts: tuple[str, ...]) -> None:
         self.design = design
+        self._place = {name: place for place, name in enumerate(facts)}
         self.schemas = {name: written_schema(design.columns(name)) for name in TABLES}
-        self._ids = {
-            name: {text: code for code, text in enumerate(known.values)}
-            for name, known in design.ids.items()
-        }
         self._id_values = {
             name: pa.array([int(v) for v in known.values], pa.int64())
             if known.type == "integer"
@@ -115,12 +121,16 @@ class RowMaker:
         self._measure_names = pa.array(self._measures, pa.string())
         self._kinds = pa.array(kinds, pa.string())
 
-    def ids(self, trials: Sequence[TrialFacts]) -> dict[str, pa.Array]:
-        """The columns that identify trials, one row a trial."""
+    def ids(self, participant: str, trials: Sequence[Trial]) -> dict[str, pa.Array]:
+        """The columns that identify a reader's trials, one row a trial."""
         columns: dict[str, pa.Array] = {}
         for name, known in self.design.ids.items():
-            own = self._ids[name]
-            codes = pa.array([own.get(t.ids[name]) for t in trials], pa.int32())
+            ranks = known.ranks
+            if name == "participant":
+                codes = pa.array(np.full(len(trials), ranks[participant], dtype=np.int32))
+            else:
+                get = attrgetter(name)
+                codes = pa.array([ranks.get(get(trial)) for trial in trials], pa.int32())
             values = self._id_values[name]
             columns[name] = (
                 values.take(codes)
@@ -129,15 +139,29 @@ class RowMaker:
             )
         return columns
 
-    def facts(self, trials: Sequence[TrialFacts]) -> dict[str, pa.Array]:
-        """The columns that describe trials of the study, ids first, one row a trial."""
-        columns = self.ids(trials)
+    def facts(
+        self, ids: Mapping[str, pa.Array], trials: Sequence[Trial], rows: NDArray[np.int64]
+    ) -> dict[str, pa.Array]:
+        """The columns that describe trials of the study, ids first, one row a trial.
+
+        Parameters
+        ----------
+        ids : dict of str to pa.Array
+            From :meth:`ids`, of all trials of the reader.
+        trials : sequence of Trial
+            The trials of the study.
+        rows : (trials,) int64 array
+            Their rows in ``ids``.
+        """
+        index = pa.array(rows)
+        columns = {name: column.take(index) for name, column in ids.items()}
         for name in self.design.factors:
-            level = self._level_codes[name]
-            codes = pa.array([level[t.facts[name]] for t in trials], pa.int32())
+            level, place = self._level_codes[name], self._place[name]
+            codes = pa.array([level[trial.facts[place]] for trial in trials], pa.int32())
             columns[name] = pa.DictionaryArray.from_arrays(codes, self._levels[name])
         for name, kind in self.design.covariates.items():
-            texts = [t.facts[name] or None for t in trials]
+            place = self._place[name]
+            texts = [trial.facts[place] or None for trial in trials]
             if kind == "number":
                 numbers = [None if text is None else float(text) for text in texts]
                 columns[name] = pa.array(numbers, pa.float64())

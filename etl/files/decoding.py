@@ -11,13 +11,16 @@ from pathlib import Path
 from etl.errors import Findings
 
 #: Files that are no text, known by their first bytes (each signature is in the format's own
-#: standard: PNG ISO/IEC 15948, JPEG ISO/IEC 10918, GIF89a, PDF ISO 32000, ZIP APPNOTE).
+#: standard: PNG ISO/IEC 15948, JPEG ISO/IEC 10918, GIF89a, TIFF 6.0, PDF ISO 32000, ZIP
+#: APPNOTE).
 _SIGNATURES = (
     (b"\x89PNG\r\n\x1a\n", "a picture (PNG)"),
     (b"\xff\xd8\xff", "a picture (JPEG)"),
     (b"GIF87a", "a picture (GIF)"),
     (b"GIF89a", "a picture (GIF)"),
     (b"BM", "a picture (BMP)"),
+    (b"II*\x00", "a picture (TIFF)"),
+    (b"MM\x00*", "a picture (TIFF)"),
     (b"%PDF-", "a PDF document"),
     (b"PK\x03\x04", "a ZIP archive or a spreadsheet workbook"),
     (b"PAR1", "a Parquet file"),
@@ -85,21 +88,43 @@ def read_text(
     try:
         stored = path.read_bytes()
     except OSError as why:
-        findings.error(
-            f"the file cannot be read ({why.strerror or type(why).__name__})",
-            path=shown,
-            fix="check that the file is there and that you may read it",
-        )
+        _tell_unreadable(path, shown, why, findings)
         return None
     digest = hashlib.sha256(stored).hexdigest()
     data = _unpacked(stored, shown, findings)
     if data is None or not _is_text(data, shown, findings):
+        return None
+    if encoding is not None and _contradicted(data, encoding, shown, findings):
         return None
     found = encoding or _encoding_of(data)
     text = _decoded(data, found, shown, findings, stated=encoding is not None)
     if text is None:
         return None
     return RawText(shown, text, digest, found)
+
+
+def _tell_unreadable(path: Path, shown: str, why: OSError, findings: Findings) -> None:
+    """Record why a file cannot be read."""
+    if isinstance(why, FileNotFoundError):
+        findings.error(
+            "there is no such file",
+            path=shown,
+            fix="correct the name in the study file, or put the file there",
+        )
+    elif path.is_dir():
+        # Not told from the kind of error, which differs between operating systems.
+        findings.error(
+            "this is a folder",
+            path=shown,
+            expected="a file",
+            fix="name the file in it that is meant",
+        )
+    else:
+        findings.error(
+            f"the file cannot be read ({why.strerror or type(why).__name__})",
+            path=shown,
+            fix="check that you may read the file and that no other program holds it",
+        )
 
 
 def _unpacked(stored: bytes, shown: str, findings: Findings) -> bytes | None:
@@ -128,8 +153,13 @@ def _unpacked(stored: bytes, shown: str, findings: Findings) -> bytes | None:
 def _is_text(data: bytes, shown: str, findings: Findings) -> bool:
     """Whether the bytes can be text at all."""
     if not data.strip(b"\xef\xbb\xbf\xff\xfe\x00 \t\r\n"):
+        lost = data.count(0) > len(data) // 2 + 1
         findings.error(
-            "the file is empty", path=shown, fix="remove it from the folder, or copy it again"
+            "the file holds nothing but zero bytes" if lost else "the file is empty",
+            path=shown,
+            fix="copy it again from where it was recorded"
+            if lost
+            else "remove it from the folder, or copy it again",
         )
         return False
     for signature, what in _SIGNATURES:
@@ -138,7 +168,8 @@ def _is_text(data: bytes, shown: str, findings: Findings) -> bool:
                 f"this is no text file: it begins like {what}",
                 path=shown,
                 expected="delimited text",
-                fix="correct the file pattern in the study file, or export the table as text",
+                fix="export the table as text; or name another file, or another pattern, in the "
+                "study file",
             )
             return False
     return True
@@ -151,10 +182,11 @@ def _encoding_of(data: bytes) -> str:
             return name
     probe = data[:_PROBE_BYTES]
     even, odd = probe[0::2].count(0), probe[1::2].count(0)
-    # Text of any Latin script in UTF-16 has a zero in nearly every other byte, always on one side.
-    if odd > len(probe) // 4 and even == 0:
+    # Text of any Latin script in UTF-16 has a zero in nearly every other byte, and nearly always
+    # on one side: a few letters, such as the A with macron (U+0100), have theirs on the other.
+    if odd > len(probe) // 4 and even < odd // 10:
         return "utf-16-le"
-    if even > len(probe) // 4 and odd == 0:
+    if even > len(probe) // 4 and odd < even // 10:
         return "utf-16-be"
     if data.isascii():
         return "utf-8"
@@ -165,27 +197,41 @@ def _encoding_of(data: bytes) -> str:
     return "utf-8"
 
 
+def _contradicted(data: bytes, encoding: str, shown: str, findings: Findings) -> bool:
+    """Whether a byte-order mark says another encoding than the study file; says so."""
+    marked = next((name for mark, name in _BYTE_ORDER_MARKS if data.startswith(mark)), None)
+    stated = _plain_name(encoding)
+    if marked is None or stated.startswith(_plain_name(marked).removesuffix("sig")):
+        return False
+    findings.error(
+        "the file's byte-order mark contradicts the study file",
+        path=shown,
+        line=1,
+        found=marked.removesuffix("-sig"),
+        expected=f"{encoding}, as [logs] encoding says",
+        fix="correct [logs] encoding, or remove it: the encoding is then found out file by file",
+    )
+    return True
+
+
+def _plain_name(encoding: str) -> str:
+    """The name of an encoding without the signs in which its spellings differ."""
+    return "".join(letter for letter in encoding.lower() if letter.isalnum())
+
+
 def _decoded(
     data: bytes, encoding: str, shown: str, findings: Findings, *, stated: bool
 ) -> bytes | None:
     """The text in UTF-8 with plain line ends."""
     try:
-        if encoding.lower().replace("_", "-") in ("utf-8", "utf8", "utf-8-sig"):
+        if _plain_name(encoding) in ("utf8", "utf8sig"):
             text = data.removeprefix(b"\xef\xbb\xbf")
             if not text.isascii():
                 text.decode("utf-8")
         else:
             text = data.decode(encoding).removeprefix("\ufeff").encode("utf-8")
-    except UnicodeDecodeError as why:
-        findings.error(
-            f"the text is not valid {encoding}",
-            path=shown,
-            line=data.count(b"\n", 0, why.start) + 1,
-            found=f"byte {data[why.start]:#04x}",
-            fix="state the right encoding in [logs] encoding"
-            if stated
-            else "state the file's encoding in [logs] encoding, or save it as UTF-8",
-        )
+    except UnicodeError as why:
+        _tell_undecodable(why, encoding, shown, findings, stated=stated)
         return None
     except LookupError:
         findings.error(
@@ -197,7 +243,7 @@ def _decoded(
         )
         return None
     if b"\r" in text:
-        text = text.replace(b"\r\n", b"\n").replace(b"\r", b"\n")
+        text = _with_plain_line_ends(text)
     if b"\x00" in text:
         findings.error(
             "the text holds a zero byte",
@@ -211,6 +257,35 @@ def _decoded(
         findings.warning(
             "the text is not UTF-8 and was read as Windows-1252",
             path=shown,
-            fix='check the letters with accents, and state [logs] encoding = "cp1252"',
+            fix="check the letters with accents; save the file as UTF-8, or, if it is a log, "
+            'state [logs] encoding = "cp1252"',
         )
     return text
+
+
+def _with_plain_line_ends(text: bytes) -> bytes:
+    """The text with a line feed for every line end."""
+    return text.replace(b"\r\n", b"\n").replace(b"\r", b"\n")
+
+
+def _tell_undecodable(
+    why: UnicodeError, encoding: str, shown: str, findings: Findings, *, stated: bool
+) -> None:
+    """Record which byte cannot be text in this encoding."""
+    line: int | None = None
+    found: str | None = None
+    if isinstance(why, UnicodeDecodeError):
+        before = why.object[: why.start].decode(encoding, errors="replace").encode("utf-8")
+        line = _with_plain_line_ends(before).count(b"\n") + 1
+        found = f"byte {why.object[why.start]:#04x}"
+    findings.error(
+        f"the text is not valid {encoding}"
+        if stated or encoding != "cp1252"
+        else "the text is neither UTF-8 nor Windows-1252",
+        path=shown,
+        line=line,
+        found=found,
+        fix="state the right encoding in [logs] encoding"
+        if stated
+        else "save the file as UTF-8, or, if it is a log, state its encoding in [logs] encoding",
+    )

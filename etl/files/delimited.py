@@ -16,6 +16,7 @@ from pathlib import Path
 
 import numpy as np
 import pyarrow as pa
+import pyarrow.compute as pc
 from numpy.typing import NDArray
 from pyarrow import csv as arrow_csv
 
@@ -71,7 +72,8 @@ class Cells:
 
     def texts(self, name: str) -> list[str]:
         """One column as trimmed strings, a string per row."""
-        return [cell.strip() for cell in self.column(name).to_pylist()]
+        texts: list[str] = pc.utf8_trim_whitespace(self.column(name)).to_pylist()
+        return texts
 
     def position(self, name: str) -> int:
         """Where the column stands in the file, from 1."""
@@ -205,6 +207,8 @@ def _separator_of(sample: str) -> str:
     """The separator that splits the header, and the lines after it into as many fields."""
     best, best_score = "\t", (0.0, 0)
     for separator in SEPARATORS:
+        if separator not in sample:
+            continue
         try:
             rows = [row for row in csv.reader(io.StringIO(sample), delimiter=separator) if row]
         except csv.Error:

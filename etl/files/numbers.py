@@ -121,6 +121,8 @@ def find_decimal(
     commas: dict[str, int] = {}
     points: dict[str, int] = {}
     grouped = True
+    if not any(_may_hold(column, b",") for column in columns.values()):
+        return "."
     for name, column in columns.items():
         with_comma = pc.match_substring(column, ",")
         with_point = pc.match_substring_regex(column, r"[0-9]\.[0-9]")
@@ -159,6 +161,12 @@ def find_decimal(
         )
         return None
     return ","
+
+
+def _may_hold(column: pa.Array, sign: bytes) -> bool:
+    """Whether a sign can occur in a column: a look at its bytes, without one at its cells."""
+    texts = column.buffers()[2]
+    return texts is not None and sign in bytes(texts)
 
 
 def _parses(text: str) -> bool:

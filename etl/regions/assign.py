@@ -117,7 +117,8 @@ def assign(
     on_line = by_line[texts]
     slot = geometry.line_offsets[texts]
     if not manner.only_x:
-        slot = np.where(on_line, nearest_line(geometry, texts, y), slot)
+        rows = np.flatnonzero(on_line)
+        slot[rows] = nearest_line(geometry, texts[rows], y[rows])
     points = _Points(
         x,
         y,

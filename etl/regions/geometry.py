@@ -204,13 +204,14 @@ def rows_of(extents_px: Floats) -> tuple[Integers, tuple[Line, ...]]:
                 continue
         rows.append([i])
         common.append((top, bottom))
-    by_middle = sorted(range(len(rows)), key=lambda row: sum(common[row]))
+    # The middle of what shapes have in common lies between the least and the greatest of their own
+    # middles, so rows come out in the order of theirs.
     numbers = np.zeros(len(extents_px), dtype=np.int32)
     lines = []
-    for number, row in enumerate(by_middle, start=1):
-        numbers[rows[row]] = number
-        box = (float(tops[rows[row]].min()), float(bottoms[rows[row]].max()))
-        lines.append(Line(number, *box, sum(common[row]) / 2))
+    for number, (row, shared) in enumerate(zip(rows, common, strict=True), start=1):
+        numbers[row] = number
+        box = (float(tops[row].min()), float(bottoms[row].max()))
+        lines.append(Line(number, *box, sum(shared) / 2))
     return numbers, tuple(lines)
 
 

@@ -82,7 +82,7 @@ class RegionLibrary:
         Parameters
         ----------
         values : tuple of str
-            One value for each of ``keys``, in their order.
+            One value for each of ``keys``, in their order, without white space around it.
 
         Returns
         -------
@@ -104,10 +104,10 @@ class RegionLibrary:
         Returns
         -------
         Assigned
-            Order of each point's region (0 outside) and number of its line. In laid-out texts
-            that is the line whose box, or in texts of several lines whose nearness, the point is
-            in; for boxes and polygons the line of the region hit, with ``[lines]`` the nearest
-            line. 0 on no line, and without a coordinate.
+            Order of each point's region (0 outside) and number of its line (0 on none). Laid-out
+            text of one line: the point is on the line at the height of its box. Of several lines,
+            or with ``[lines]``: on the nearest. Boxes and polygons: on the line of the region hit,
+            with ``[lines]`` on the nearest. Without a coordinate: on none.
 
         Raises
         ------

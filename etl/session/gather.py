@@ -52,7 +52,7 @@ class _Trials:
 
     seen: dict[str, dict[tuple[str, str], SeenTrial]] = field(default_factory=dict)
     parts: dict[str, list[tuple[Path, int, int]]] = field(default_factory=dict)
-    known: dict[str, list[tuple[KnownTrial, int]]] = field(default_factory=dict)
+    known: dict[str, list[KnownTrial]] = field(default_factory=dict)
     spoiled: set[str] = field(default_factory=set)
 
 
@@ -108,7 +108,7 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
         _know_reader(plan, participant, shown.values(), trials, findings)
     levels = _levels(plan, trials.known, findings)
     _notice_what_is_missing(plan, trials, findings)
-    kept_trials = [trial for own in trials.known.values() for trial, text in own if text >= 0]
+    kept_trials = [trial for own in trials.known.values() for trial in own if trial.text >= 0]
     if not kept_trials:
         if not findings.failed:
             findings.error(
@@ -124,7 +124,7 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
     for participant in design.ids["participant"].values:
         if participant in trials.spoiled:
             continue
-        own, texts = sorted_trials(trials.known[participant], design)
+        own = sorted_trials(trials.known[participant], design)
         parts = trials.parts[participant]
         tasks.append(
             ReaderTask(
@@ -132,7 +132,6 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
                 tuple((path, batch) for path, batch, _ in parts),
                 tuple(number for _, _, number in parts),
                 own,
-                texts,
             )
         )
     study = plan.study
@@ -154,46 +153,42 @@ def _know_reader(
         if known is None:
             trials.spoiled.add(participant)
             continue
-        text = -1
         if not known.skipped_by:
-            text = _text_of(plan, participant, known, findings)
-            if text < 0:
+            known = _with_text(plan, participant, known, findings)
+            if known.text < 0:
                 trials.spoiled.add(participant)
                 continue
-        own.append((known, text))
+        own.append(known)
 
 
-def _text_of(plan: Plan, participant: str, known: KnownTrial, findings: Findings) -> int:
-    """The text of a trial; -1, with a finding, where there is none."""
-    identity = {
-        "participant": participant,
-        "session": known.session,
-        "trial": known.trial,
-        "item": known.item,
-    }
-    library = plan.library
-    values = tuple(identity.get(key) or known.facts.get(key, "") for key in library.keys)
+def _with_text(plan: Plan, participant: str, known: KnownTrial, findings: Findings) -> KnownTrial:
+    """A trial with its text, and what the region file says about it; a finding where it has none."""
+    library, names = plan.library, plan.facts.names
+    identity = plan.facts.identity(participant, known)
+    values = tuple([identity[key] for key in library.keys])
     text = library.find(values)
-    shown = plan.study.regions.file
     if text < 0:
+        shown = plan.study.regions.file
         spelled = ", ".join(f'{k} "{v}"' for k, v in zip(library.keys, values, strict=True))
         findings.error(
-            f"trial {known.trial} of reader {participant} has no text",
+            f"the trial has no text in {shown}",
             path=known.shown,
             line=known.line,
-            expected=f"a text in {shown}" + (f" for {spelled}" if spelled else ""),
+            found=f"trial {known.trial} of reader {participant}",
+            expected="a text" + (f" for {spelled}" if spelled else ""),
             fix=f"add the text to {shown}, correct the trial's facts, or name such trials in "
             "[trials] skip",
         )
-        return -1
-    for name in library.supplies:
-        if plan.facts.sources.get(name) == "regions":
-            known.facts[name] = library.texts[text].facts[name]
-    return text
+        return known
+    supplied = {n: library.texts[text].facts[n] for n in library.supplies if n in plan.supplied}
+    if not supplied:
+        return known._replace(text=text)
+    facts = tuple(supplied.get(name, fact) for name, fact in zip(names, known.facts, strict=True))
+    return known._replace(text=text, facts=facts)
 
 
 def _levels(
-    plan: Plan, known: dict[str, list[tuple[KnownTrial, int]]], findings: Findings
+    plan: Plan, known: dict[str, list[KnownTrial]], findings: Findings
 ) -> dict[str, tuple[str, ...]]:
     """The levels of every factor in order; missing and unlisted values are errors."""
     trials = plan.study.trials
@@ -201,12 +196,11 @@ def _levels(
     for name in trials.factors:
         stated = trials.levels.get(name)
         found: set[str] = set()
+        place = plan.facts.names.index(name)
         for participant, own in known.items():
-            for trial, text in own:
-                if text < 0:
-                    continue
-                value = trial.facts.get(name, "")
-                if value in found:
+            for trial in own:
+                value = trial.facts[place]
+                if value in found or trial.text < 0:
                     continue
                 if value and (stated is None or value in stated):
                     found.add(value)
@@ -266,7 +260,8 @@ def _design(
 ) -> TableDesign:
     """What all tables of the study have in common."""
     study = plan.study
-    every = [trial for own in trials.known.values() for trial, _ in own]
+    every = [trial for own in trials.known.values() for trial in own]
+    place = {name: i for i, name in enumerate(plan.facts.names)}
     ids = {"participant": IdColumn.of(trials.seen)}
     sessions = {trial.session for trial in every}
     if sessions != {""}:
@@ -277,7 +272,7 @@ def _design(
     return TableDesign(
         ids,
         levels,
-        {name: _type_of(trial.facts[name] for trial in kept) for name in study.trials.covariates},
+        {name: _type_of(t.facts[place[name]] for t in kept) for name in study.trials.covariates},
         plan.library.region_names,
         tuple(_measure_column(m) for m in chosen),
         tuple(_measure_column(m) for m in TRIAL_MEASURES.values()),

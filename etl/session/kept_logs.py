@@ -36,19 +36,19 @@ def keep_log(log: CanonicalLog, path: Path) -> dict[str, int]:
         For each reader, the number of the batch that holds the fixations.
     """
     participant = log.ids["participant"]
-    order = np.argsort(participant.codes, kind="stable")
-    several = len(participant.values) > 1
     coded = {**log.ids, **{f"fact {name}": facts for name, facts in log.facts.items()}}
     if log.label is not None:
         coded["label"] = log.label
     columns = {name: pa.array(column.codes) for name, column in coded.items()}
     columns |= {name: pa.array(getattr(log, name)) for name in _NUMBERS}
     columns["source_line"] = pa.array(log.source_line)
-    values = {name: column.values for name, column in coded.items()}
-    batch = pa.RecordBatch.from_pydict(columns, metadata={"values": json.dumps(values)})
-    if several:
+    values = json.dumps({name: column.values for name, column in coded.items()})
+    batch = pa.RecordBatch.from_pydict(columns, metadata={"values": values})
+    present, starts = np.zeros(1, dtype=np.int64), np.zeros(1, dtype=np.int64)
+    if len(participant.values) > 1:
+        order = np.argsort(participant.codes, kind="stable")
         batch = batch.take(pa.array(order))
-    present, starts = np.unique(participant.codes[order], return_index=True)
+        present, starts = np.unique(participant.codes[order], return_index=True)
     stops = np.append(starts[1:], len(log))
     with pa.OSFile(str(path), "wb") as sink, pa.ipc.new_file(sink, batch.schema) as writer:
         for start, stop in zip(starts.tolist(), stops.tolist(), strict=True):

@@ -15,7 +15,6 @@ from etl.export.rows import (
     FixationColumns,
     RegressionColumns,
     RowMaker,
-    TrialFacts,
 )
 from etl.measures import NoOpportunity, Outcomes, Outside, Sequences, compute
 from etl.parsers import CanonicalLog
@@ -52,15 +51,12 @@ class Reader:
         Index of each fixation's log into the study's logs.
     trials : tuple of KnownTrial
         The trials that were recorded, in the order of the tables.
-    texts : tuple of int
-        For each trial, its text in the region library; -1 for one that is no part of the study.
     """
 
     participant: str
     log: CanonicalLog
     file: NDArray[np.int32]
     trials: tuple[KnownTrial, ...]
-    texts: tuple[int, ...]
 
 
 @dataclass(slots=True)
@@ -80,17 +76,25 @@ class Bench:
     ----------
     design : TableDesign
         The tables of the study.
+    facts : tuple of str
+        Names of the facts of a trial, in its order.
     library : RegionLibrary
         Its texts.
     options : Options
         Its decisions.
     """
 
-    def __init__(self, design: TableDesign, library: RegionLibrary, options: Options) -> None:
+    def __init__(
+        self,
+        design: TableDesign,
+        facts: tuple[str, ...],
+        library: RegionLibrary,
+        options: Options,
+    ) -> None:
         self.design = design
         self.library = library
         self.options = options
-        self.rows = RowMaker(design)
+        self.rows = RowMaker(design, facts)
 
     def ordered(self, reader: Reader, findings: Findings) -> tuple[ReaderLog, OrderedFixations]:
         """The reader's fixations in time order."""
@@ -115,7 +119,7 @@ class Bench:
         if findings.failed:
             return ReaderTables(reader.participant, {}, {}, findings)
         log = reader.log.take(ordered.rows)
-        texts = np.asarray(reader.texts, dtype=np.int64)
+        texts = np.array([trial.text for trial in reader.trials], dtype=np.int64)
         text = texts[ordered.trial]
         skipped = text < 0
         left_out_by = np.where(skipped, SKIP, np.where(ordered.repeated, REPEATED, -1))
@@ -135,8 +139,8 @@ class Bench:
             outside=self.options.outside,
             no_opportunity=self.options.no_opportunity,
         )
-        described = [_described(reader.participant, trial) for trial in reader.trials]
-        own = self.rows.facts([described[trial] for trial in in_study.tolist()])
+        ids = self.rows.ids(reader.participant, reader.trials)
+        own = self.rows.facts(ids, [reader.trials[t] for t in in_study.tolist()], in_study)
         batches = self._outcome_rows(own, texts[in_study], outcomes)
         code = np.full(len(order), -1, dtype=np.int32)
         inside = order > 0
@@ -148,7 +152,7 @@ class Bench:
         )
         visit, first_pass = _spread(outcomes, kept, len(order))
         batches["fixations"] = self.rows.fixations(
-            self.rows.ids(described),
+            ids,
             FixationColumns(
                 ordered.trial,
                 ordered.number,
@@ -251,17 +255,6 @@ class Bench:
         )
 
 
-def _described(participant: str, trial: KnownTrial) -> TrialFacts:
-    """What the tables say about a trial."""
-    ids = {
-        "participant": participant,
-        "session": trial.session,
-        "trial": trial.trial,
-        "item": trial.item,
-    }
-    return TrialFacts(ids, trial.facts)
-
-
 def _trial_of(reader: Reader) -> NDArray[np.int64]:
     """Index of each fixation's trial into the reader's trials."""
     trial = reader.log.ids["trial"]
@@ -294,12 +287,10 @@ def _spread(
     return visit, first_pass
 
 
-def sorted_trials(
-    trials: Sequence[tuple[KnownTrial, int]], design: TableDesign
-) -> tuple[tuple[KnownTrial, ...], tuple[int, ...]]:
-    """A reader's trials and their texts in the order of the tables: by session, then trial."""
-    trial_rank = {text: rank for rank, text in enumerate(design.ids["trial"].values)}
-    sessions = design.ids["session"].values if "session" in design.ids else ("",)
-    session_rank = {text: rank for rank, text in enumerate(sessions)}
-    both = sorted(trials, key=lambda t: (session_rank[t[0].session], trial_rank[t[0].trial]))
-    return tuple(t for t, _ in both), tuple(text for _, text in both)
+def sorted_trials(trials: Sequence[KnownTrial], design: TableDesign) -> tuple[KnownTrial, ...]:
+    """A reader's trials in the order of the tables: by session, then trial."""
+    trial_rank = design.ids["trial"].ranks
+    if "session" not in design.ids:
+        return tuple(sorted(trials, key=lambda t: trial_rank[t.trial]))
+    session_rank = design.ids["session"].ranks
+    return tuple(sorted(trials, key=lambda t: (session_rank[t.session], trial_rank[t.trial])))

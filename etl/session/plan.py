@@ -15,7 +15,8 @@ from etl.regions import RegionLibrary, read_definitions
 from etl.study import Study
 from etl.tables import BARE_DESIGN, TABLES
 from etl.trials import FactBook, gather_facts
-from etl.trials.facts import IDS, shown_path
+from etl.trials.facts import shown_path
+from etl.trials.joining import IDS
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,6 +42,11 @@ class Plan:
     reader: LogReader
     facts: FactBook
     library: RegionLibrary
+
+    @property
+    def supplied(self) -> frozenset[str]:
+        """The facts that only the region file knows."""
+        return frozenset(n for n, source in self.facts.sources.items() if source == "regions")
 
 
 def find_logs(study: Study, findings: Findings) -> tuple[tuple[Path, str], ...]:

@@ -177,7 +177,10 @@ def _finish(
     plan: Plan, gathered: Gathered, workers: int, progress: Progress, *, write: bool
 ) -> Iterable[ReaderTables]:
     """Work on one reader after the other."""
-    arguments = ((gathered.design, plan.library, gathered.options), write)
+    arguments = (
+        (gathered.design, plan.facts.names, plan.library, gathered.options),
+        write,
+    )
     finished = map_tasks(make_reader_work, arguments, gathered.tasks, workers)
     for done, tables in enumerate(finished, start=1):
         yield tables

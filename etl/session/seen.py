@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.parsers import CanonicalLog, Coded
@@ -31,21 +32,29 @@ def seen_trials(log: CanonicalLog, shown: str, findings: Findings) -> list[SeenT
     changes[:1] = True
     for coded in columns.values():
         changes[1:] |= coded.codes[1:] != coded.codes[:-1]
+    rows = np.flatnonzero(changes)
+    ids = [_texts(log.ids.get(n), rows) for n in ("participant", "session", "trial", "item")]
+    facts = [_texts(coded, rows) for coded in log.facts.values()]
+    together = list(zip(*facts, strict=True)) if facts else [()] * len(rows)
+    lines = log.source_line[rows].tolist()
     found: dict[tuple[str, str, str], SeenTrial] = {}
-
-    def text(coded: Coded | None, row: int) -> str:
-        return "" if coded is None else coded.text(row)
-
-    ids = [log.ids.get(name) for name in ("participant", "session", "trial", "item")]
-    for row in np.flatnonzero(changes).tolist():
-        participant, session, trial, item = (text(coded, row) for coded in ids)
-        facts = tuple(coded.text(row) for coded in log.facts.values())
-        line = int(log.source_line[row])
-        seen = SeenTrial(participant, session, trial, item, facts, shown, line)
-        known = found.setdefault((participant, session, trial), seen)
-        if known is not seen and (known.item, known.facts) != (item, facts):
+    for participant, session, trial, item, own, line in zip(*ids, together, lines, strict=True):
+        key = (participant, session, trial)
+        known = found.get(key)
+        if known is None:
+            found[key] = SeenTrial(participant, session, trial, item, own, shown, line)
+        elif (known.item, known.facts) != (item, own):
+            seen = SeenTrial(participant, session, trial, item, own, shown, line)
             tell_variation(known, seen, tuple(log.facts), findings)
     return list(found.values())
+
+
+def _texts(coded: Coded | None, rows: NDArray[np.int64]) -> list[str]:
+    """The texts of some rows, empty where missing."""
+    if coded is None:
+        return [""] * len(rows)
+    values = (*coded.values, "")
+    return [values[code] for code in coded.codes[rows].tolist()]
 
 
 def tell_variation(

@@ -46,13 +46,12 @@ class LogAnswer:
 
 @dataclass(frozen=True, slots=True)
 class ReaderTask:
-    """A reader to be finished: where the fixations lie, and the trials with their texts."""
+    """A reader to be finished: where the fixations lie, and what is known of the trials."""
 
     participant: str
     parts: tuple[tuple[Path, int], ...]
     files: tuple[int, ...]
     trials: tuple[KnownTrial, ...]
-    texts: tuple[int, ...]
 
 
 class LogWork:
@@ -98,7 +97,7 @@ class ReaderWork:
         """Finish one reader."""
         log, part = kept_log(task.parts)
         file = np.asarray(task.files, dtype=np.int32)[part]
-        reader = Reader(task.participant, log, file, task.trials, task.texts)
+        reader = Reader(task.participant, log, file, task.trials)
         tables = self._bench.tables(reader)
         if not self._write:
             tables.batches = {}

@@ -117,8 +117,8 @@ def _mended(data: Mapping[str, Any], errors: list[ErrorDetails]) -> StudyFile:
     """The study with what is wrong removed, and examples for what must be there."""
     draft = copy.deepcopy(dict(data))
     for _ in range(_ROUNDS):
-        for error in errors:
-            path = _key_of(_at_fault(error, draft))
+        # Two errors may lie in one value: find all places before anything is taken out.
+        for error, path in [(error, _key_of(_at_fault(error, draft))) for error in errors]:
             table = _inside(draft, path[:-1])
             if not _is(error, "missing"):
                 table.pop(path[-1], None)

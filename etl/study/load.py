@@ -135,8 +135,8 @@ def load_study(path: str | Path, *, known_outcomes: Collection[str] | None = Non
     path : str or Path
         The study file: TOML, UTF-8, with or without a byte-order mark.
     known_outcomes : collection of str, optional
-        The names of all measures. Where given, an outcome of another name is refused, and so is a
-        factor or covariate that is called like a measure.
+        The names of all measures, with or without the groups. Where given, an outcome of another
+        name is refused, and so is a factor or covariate that is called like a measure.
 
     Returns
     -------

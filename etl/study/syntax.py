@@ -14,28 +14,45 @@ from etl.study.values import WrittenFloat
 
 _PLACE = re.compile(r" \(at (?:line (\d+), column (\d+)|end of document)\)$")
 
+_BACKSLASH = (
+    "a backslash in double quotes begins a special character",
+    "write the text in single quotes, where a backslash is only itself",
+)
+
 #: Beginnings of what the reader of TOML says, in the words of somebody who writes a study file:
 #: the problem, and what to do. What is not listed is passed on as it stands.
 _SAID = (
-    (
-        "Unescaped '\\'",
-        "a backslash in double quotes begins a special character",
-        "write the text in single quotes, where a backslash is only itself",
-    ),
+    ("Unescaped '\\'", *_BACKSLASH),
+    ("Invalid hex value", *_BACKSLASH),
+    ("Escaped character", *_BACKSLASH),
     (
         "Cannot overwrite a value",
         "this key is given a second time",
         "keep one of the two, or put the second under its own [table]",
     ),
+    ("Duplicate inline table key", "this key is given a second time", "keep one of the two"),
     ("Cannot declare", "this table is begun a second time", "put its keys under one header"),
+    ("Cannot redefine namespace", "this is given a second time", "keep one of the two"),
     (
         "Cannot mutate immutable namespace",
         "this adds to what is already complete",
         "put all its keys in one place",
     ),
     ("Unterminated string", "a text has no closing quote", "close the quotes"),
+    ('Expected "\'"', "a text has no closing quote", "close the quotes"),
     ("Found invalid character '\\n'", "a text has no closing quote", "close the quotes"),
     ("Illegal character '\\n'", "a text has no closing quote", "close the quotes"),
+    ("Invalid statement", "this is no line of a study file", "write key = value, or [table]"),
+    (
+        "Invalid initial character for a key part",
+        "this is no key",
+        "write a key in letters, digits, - and _; put any other in quotes",
+    ),
+    (
+        "Expected ']'",
+        "the name of a table has no closing bracket",
+        "write [table] on a line of its own",
+    ),
     (
         "Invalid value",
         "this is no value",

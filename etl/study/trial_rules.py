@@ -115,17 +115,18 @@ def facts_called_like_measures(known: Collection[str]) -> Rule:
     Parameters
     ----------
     known : collection of str
-        The names of all measures; the tables have a column for each.
+        The names of all measures; the tables have a column for each. Groups may be among them.
 
     Returns
     -------
     Rule
         It reports each factor or covariate with such a name.
     """
+    names = set(known) - set(OUTCOME_GROUPS)
 
     @rule("trials.factors", "trials.covariates")
     def facts_are_no_measures(study: StudyFile) -> Iterator[Problem]:
-        yield from _taken(study, known, "a measure has this name, and the tables give it a column")
+        yield from _taken(study, names, "a measure has this name, and the tables give it a column")
 
     return facts_are_no_measures
 

@@ -179,7 +179,7 @@ def _table_name(path: KeyPath) -> str:
 
 def _first_sentence(description: str) -> str:
     """The first sentence of a description, to stand inside another."""
-    sentence = description.split(". ")[0].rstrip(".")
+    sentence = description.split(". ", 1)[0].rstrip(".")
     return sentence[:1].lower() + sentence[1:]
 
 

@@ -106,10 +106,7 @@ def read_fact_table(
         return None
     absent = frozenset(missing) | {""}
     texts = [
-        ["" if cell in absent else unicodedata.normalize("NFC", cell) for cell in cells.texts(name)]
-        if name
-        else [""] * len(cells)
-        for name in cells.header
+        _composed(cells.texts(name), absent) if name else [""] * len(cells) for name in cells.header
     ]
     place = {name: i for i, name in enumerate(columns)}
     rows: dict[tuple[str, ...], tuple[str, ...]] = {}
@@ -147,3 +144,11 @@ def read_fact_table(
     if findings.count("error") > before:
         return None
     return FactTable(shown, cells.text.sha256, keys, columns, rows, lines, place)
+
+
+def _composed(texts: list[str], absent: Collection[str]) -> list[str]:
+    """Cells in Unicode NFC, missing marks as empty texts."""
+    distinct = {
+        text: "" if text in absent else unicodedata.normalize("NFC", text) for text in set(texts)
+    }
+    return [distinct[text] for text in texts]

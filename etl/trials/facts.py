@@ -6,22 +6,22 @@ import os
 from collections.abc import Collection, Iterable, Mapping
 from dataclasses import dataclass, field
 from difflib import get_close_matches
+from functools import cached_property
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, NamedTuple
 
 from etl.errors import Findings
 from etl.trials.fact_tables import FactTable, read_fact_table
+from etl.trials.joining import IDS, Join
 
 if TYPE_CHECKING:
     from etl.study import Study
 
-#: What identifies a fixation's trial; every log or table may carry these under canonical names.
-IDS = ("participant", "session", "trial", "item")
 
-
-@dataclass(frozen=True, slots=True)
-class SeenTrial:
+class SeenTrial(NamedTuple):
     """A trial as one log shows it.
+
+    Tuples of texts are no burden to the garbage collector, however many trials there are.
 
     Attributes
     ----------
@@ -44,16 +44,18 @@ class SeenTrial:
     line: int
 
 
-@dataclass(frozen=True, slots=True)
-class KnownTrial:
+class KnownTrial(NamedTuple):
     """A trial with all that is known about it.
 
     Attributes
     ----------
     session, trial, item : str
         Its identity within its reader.
-    facts : dict of str to str
-        Every fact that the study uses, by name; empty texts where unknown.
+    facts : tuple of str
+        Every fact that the study uses, in the order of :attr:`FactBook.names`; empty texts where
+        unknown.
+    text : int
+        Its text among the study's texts; -1 where it is no part of the study or not yet known.
     skipped_by : str
         The fact by which the trial is no part of the study (``block``), or empty.
     shown, line : str, int
@@ -63,13 +65,14 @@ class KnownTrial:
     session: str
     trial: str
     item: str
-    facts: dict[str, str]
+    facts: tuple[str, ...]
+    text: int
     skipped_by: str
     shown: str
     line: int
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class FactBook:
     """The tables of a study and where each fact comes from.
 
@@ -93,6 +96,17 @@ class FactBook:
     from_log: tuple[str, ...]
     skip: dict[str, tuple[str, ...]] = field(default_factory=dict)
 
+    @cached_property
+    def names(self) -> tuple[str, ...]:
+        """The facts that the study uses, in the order in which a trial has them."""
+        return tuple(self.sources)
+
+    def identity(self, participant: str, trial: KnownTrial) -> dict[str, str]:
+        """Everything that is known of a trial, by name."""
+        known = dict(zip(self.names, trial.facts, strict=True))
+        ids = (participant, trial.session, trial.trial, trial.item)
+        return known | dict(zip(IDS, ids, strict=True))
+
     def known_facts(self) -> frozenset[str]:
         """What is known of a trial before its text is looked up."""
         own = {name for name, source in self.sources.items() if source != "regions"}
@@ -109,86 +123,58 @@ class FactBook:
         study, or where log and trial list name different items.
         """
         facts = dict(zip(self.from_log, seen.facts, strict=True))
-        identity = {
-            name: text
-            for name, text in zip(
-                IDS, (seen.participant, seen.session, seen.trial, seen.item), strict=True
-            )
-            if text
-        }
-        good = self._join(self.participants, "participants", identity, facts, seen, findings)
-        good &= self._join(self.trial_list, "trials", identity, facts, seen, findings)
+        identity = {"participant": seen.participant, "trial": seen.trial}
+        if seen.session:
+            identity["session"] = seen.session
+        if seen.item:
+            identity["item"] = seen.item
+        place = (seen.shown, seen.line)
+        good = True
+        for join in self._joins:
+            good &= join.add(identity, facts, place, findings)
         # A practice trial may stand in no item table: whether it counts is asked first.
-        unknown_item = Findings()
-        has_item = self._join(self.items, "items", identity, facts, seen, unknown_item)
-        skipped_by = next(
-            (
-                name
-                for name, values in self.skip.items()
-                if (identity.get(name) or facts.get(name, "")) in values
-            ),
-            "",
-        )
-        if not skipped_by:
-            findings.extend(unknown_item)
-            good &= has_item
+        skipped_by = ""
+        items = self._item_join
+        if items is not None and items.key(identity, facts) in items.table.rows:
+            good &= items.add(identity, facts, place, findings)
+            items = None
+        for name, values in self.skip.items():
+            if (identity.get(name) or facts.get(name, "")) in values:
+                skipped_by = name
+                break
+        else:
+            if items is not None:
+                good &= items.add(identity, facts, place, findings)
         if not good:
             return None
         return KnownTrial(
             seen.session,
             seen.trial,
             identity.get("item", ""),
-            facts,
+            tuple([facts.get(name, "") for name in self.sources]),
+            -1,
             skipped_by,
             seen.shown,
             seen.line,
         )
 
-    def _join(
-        self,
-        table: FactTable | None,
-        source: str,
-        identity: dict[str, str],
-        facts: dict[str, str],
-        seen: SeenTrial,
-        findings: Findings,
-    ) -> bool:
-        """Add one table's facts; False where it has no row for the trial."""
-        if table is None:
-            return True
-        key = tuple(identity.get(name) or facts.get(name, "") for name in table.keys)
-        if key not in table.rows:
-            spelled = ", ".join(f"{n} {k}" for n, k in zip(table.keys, key, strict=True))
-            near = _near_key(key, table)
-            findings.error(
-                f"{table.shown} has no row for {spelled}",
-                path=seen.shown,
-                line=seen.line,
-                expected=f"a row of {table.shown} for every trial of the logs",
-                fix=f"add the row to {table.shown}{near}, or leave the trial out by [logs.where]",
-            )
-            return False
-        good = True
-        for name in IDS:
-            if name in table.keys or name not in table.columns:
-                continue
-            text = table.value(key, name)
-            if not text:
-                continue
-            if identity.setdefault(name, text) != text and name == "item":
-                good = False
-                findings.error(
-                    f"the log and {table.shown} (line {table.lines[key]}) name different items",
-                    path=seen.shown,
-                    line=seen.line,
-                    found=identity[name],
-                    expected=text,
-                    fix="correct one of the two, or take item out of [logs.columns]",
-                )
-        for name, origin in self.sources.items():
-            if origin == source:
-                facts[name] = table.value(key, name)
-        return good
+    @cached_property
+    def _joins(self) -> tuple[Join, ...]:
+        """The tables that are joined to every trial, in the order in which they are."""
+        return tuple(
+            Join.of(table, self._facts_from(source))
+            for source, table in (("participants", self.participants), ("trials", self.trial_list))
+            if table is not None
+        )
+
+    @cached_property
+    def _item_join(self) -> Join | None:
+        """The item table, joined to trials that are not skipped."""
+        return None if self.items is None else Join.of(self.items, self._facts_from("items"))
+
+    def _facts_from(self, source: str) -> tuple[str, ...]:
+        """The facts that come from one source."""
+        return tuple(name for name, origin in self.sources.items() if origin == source)
 
     def origin(self, name: str, participant: str, trial: KnownTrial) -> tuple[str, int]:
         """File and line from which a trial has a fact: a row of a table, or the trial's log."""
@@ -199,13 +185,8 @@ class FactBook:
         }.get(self.sources.get(name, ""))
         if table is None:
             return trial.shown, trial.line
-        identity = {
-            "participant": participant,
-            "session": trial.session,
-            "trial": trial.trial,
-            "item": trial.item,
-        }
-        key = tuple(identity.get(n) or trial.facts.get(n, "") for n in table.keys)
+        known = self.identity(participant, trial)
+        key = tuple(known.get(n, "") for n in table.keys)
         return table.shown, table.lines.get(key, 1)
 
     def unrecorded(self, seen: Mapping[str, Collection[tuple[str, str]]]) -> list[tuple[str, int]]:
@@ -222,29 +203,20 @@ class FactBook:
             (name, values) for name, values in self.skip.items() if name in table.columns
         ]
         places = [table.keys.index(n) if n in table.keys else None for n in IDS[:3]]
+        by_trial = {participant: {trial for _, trial in own} for participant, own in seen.items()}
+        none: frozenset[str] = frozenset()
         found = []
         for key in table.rows:
-            participant, session, trial = ("" if p is None else key[p] for p in places)
-            trials = seen.get(participant, ())
-            there = (
-                (session, trial) in trials
-                if session
-                else any(trial == other for _, other in trials)
-            )
-            if any(table.value(key, name) in values for name, values in by_own_fact):
+            participant, session, trial = ["" if p is None else key[p] for p in places]
+            if session:
+                there = (session, trial) in seen.get(participant, ())
+            else:
+                there = trial in by_trial.get(participant, none)
+            if there or any(table.value(key, name) in values for name, values in by_own_fact):
                 continue
-            if not there:
-                spelled = ", ".join(f"{n} {k}" for n, k in zip(table.keys, key, strict=True))
-                found.append((spelled, table.lines[key]))
+            spelled = ", ".join(f"{n} {k}" for n, k in zip(table.keys, key, strict=True))
+            found.append((spelled, table.lines[key]))
         return found
-
-
-def _near_key(key: tuple[str, ...], table: FactTable) -> str:
-    """A hint at the nearest key of a table with one key column."""
-    if len(key) != 1:
-        return ""
-    near = get_close_matches(key[0], [k[0] for k in table.rows], n=1, cutoff=0.75)
-    return f' (it has "{near[0]}")' if near else ""
 
 
 def gather_facts(

@@ -25,15 +25,19 @@ class Read:
 
     @property
     def text(self) -> str:
+        """All that was found, as the user sees it."""
         return self.findings.text()
 
     def orders(self, points: list[tuple[float, float]], text: int = 0) -> list[int]:
+        """The order of each point's region, 0 outside."""
         return self.assigned(points, text).order.tolist()
 
     def line_numbers(self, points: list[tuple[float, float]], text: int = 0) -> list[int]:
+        """The number of each point's line, 0 on none."""
         return self.assigned(points, text).line.tolist()
 
     def assigned(self, points: list[tuple[float, float]], text: int = 0) -> Any:
+        """What the library says about points on one of its texts."""
         assert self.library is not None, self.findings.text()
         x, y = np.array(points, dtype=np.float64).reshape(-1, 2).T
         return self.library.assign_points(np.full(len(x), text, dtype=np.int32), x, y)

@@ -79,6 +79,25 @@ def test_nearest_line_takes_points_to_the_nearest_row(read: Read) -> None:
     assert got.orders(points) == [1, 2, 3, 0, 2]
 
 
+def test_boxes_that_barely_share_a_height_are_on_two_lines(read: Read) -> None:
+    """Descenders reach into the next line: 2 px of 30 in common make no row."""
+    got = read("boxes", HEADER + "1,a,1,0,0,40,30\n1,b,2,50,28,90,58\n", lines=True)
+    assert got.line_numbers([(60, 28.9), (60, 29)]) == [1, 2]
+
+
+def test_middle_of_a_row_is_that_of_the_height_its_boxes_share(read: Read) -> None:
+    """A tall box does not move its line: 10-30 is shared, middle 20; with 60, half-way is 40."""
+    content = HEADER + "1,a,1,0,0,40,30\n1,b,2,50,10,90,30\n1,c,3,0,50,40,70\n"
+    assert read("boxes", content, lines=True).line_numbers([(5, 39.9), (5, 40)]) == [1, 2]
+
+
+def test_nearest_centre_is_horizontal_where_the_line_is_known(read: Read) -> None:
+    """Centres (10, 15) and (25, 40): from (19, 15) the second is nearer in x alone."""
+    content = HEADER + "1,a,1,0,0,20,30\n1,b,2,10,10,40,70\n"
+    got = read("boxes", content, overlap="nearest", lines=True)
+    assert got.orders([(17.5, 15), (19, 15)]) == [1, 2]
+
+
 def test_tolerance_on_a_row_is_horizontal(read: Read) -> None:
     """On the nearest row only x decides."""
     got = read("boxes", TWO_ROWS, lines=True, tolerance_px=5)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 import unicodedata
 from types import SimpleNamespace
@@ -47,14 +48,10 @@ def test_only_characters_with_a_width_take_room(line: str, width: int) -> None:
         pytest.param("ab  cd", "110022", "following", [(1, 1, 0, 2), (2, 1, 2, 6)], id="two"),
         pytest.param("ab  cd", "110022", "preceding", [(1, 1, 0, 4), (2, 1, 4, 6)], id="two-p"),
         pytest.param("ab  cd", "110222", "following", [(1, 1, 0, 2), (2, 1, 2, 6)], id="half-own"),
-        pytest.param(
-            "ab  cd", "111022", "following", [(1, 1, 0, 3), (2, 1, 3, 6)], id="other-half"
-        ),
+        pytest.param("ab  cd", "111022", "following", [(1, 1, 0, 3), (2, 1, 3, 6)], id="half-2"),
         pytest.param("ab\ncd", "11022", "following", [(1, 1, 0, 2), (2, 2, 0, 2)], id="lines"),
         pytest.param("ab \ncd", "110022", "preceding", [(1, 1, 0, 3), (2, 2, 0, 2)], id="trailing"),
-        pytest.param(
-            "ab \ncd", "110022", "following", [(1, 1, 0, 2), (2, 2, 0, 2)], id="trailing-f"
-        ),
+        pytest.param("ab \ncd", "110022", "following", [(1, 1, 0, 2), (2, 2, 0, 2)], id="trail-f"),
         pytest.param("  ab", "0011", "following", [(1, 1, 0, 4)], id="indented"),
         pytest.param("  ab", "0011", "preceding", [(1, 1, 2, 4)], id="indented-p"),
         pytest.param("ab\ncd", "11111", "following", [(1, 1, 0, 2), (1, 2, 0, 2)], id="two-lines"),
@@ -102,7 +99,7 @@ def test_neighbours_share_their_edge_exactly(width: float, left: float, directio
     spans, _ = lay_out(words.text, words.owners, "following")
     extents = [span_extent_px(layout, span) for span in spans]
     ends, starts = (2, 0) if direction == "ltr" else (0, 2)
-    for before, after in zip(extents, extents[1:], strict=False):
+    for before, after in itertools.pairwise(extents):
         assert before[ends] == after[starts]
 
 

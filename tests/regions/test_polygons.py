@@ -24,7 +24,8 @@ HEADER = "item\tregion\torder\twkt\n"
 #: A square of 20 px cut by its diagonal from (0, 0) to (20, 20).
 DIAGONAL = (
     HEADER
-    + "1\ta\t1\tPOLYGON ((0 0, 20 20, 0 20, 0 0))\n1\tb\t2\tPOLYGON ((0 0, 20 0, 20 20, 0 0))\n"
+    + "1\ta\t1\tPOLYGON ((0 0, 20 20, 0 20, 0 0))\n"
+    + "1\tb\t2\tPOLYGON ((0 0, 20 0, 20 20, 0 0))\n"
 )
 
 #: b starts at the end of line 1 and goes on at the start of line 2.

@@ -91,6 +91,7 @@ def test_blank_line_takes_height_but_no_fixation(read: Read) -> None:
     got = read("words", 'item,text\n1,"one\n\ntwo"\n')
     points = [(205, 559), (205, 560), (205, 561)]
     assert (got.orders(points), got.line_numbers(points)) == ([1, 2, 2], [1, 3, 3])
+    assert got.library.texts[0].lines == 3
 
 
 def test_trailing_line_break_makes_no_second_line(read: Read) -> None:

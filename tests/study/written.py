@@ -107,3 +107,11 @@ def changed(old: str, new: str, text: str = SOUND) -> str:
     """The sound study with one place changed; the place must be there once."""
     assert text.count(old) == 1, old
     return text.replace(old, new)
+
+
+def changed_at(changes: dict[str, str]) -> str:
+    """The sound study with several places changed."""
+    text = SOUND
+    for old, new in changes.items():
+        text = changed(old, new, text)
+    return text

@@ -1,0 +1,41 @@
+"""The sample studies as committed, built once for all end-to-end checks."""
+
+from __future__ import annotations
+
+import pytest
+
+from tests.end_to_end.building import PROJECT, Sample, build
+from tests.simulator import write_orchard, write_passages
+from tests.simulator.__main__ import sample_orchard, sample_passages
+from tests.simulator.orchard import laboratory_logs
+
+
+def pytest_configure(config: pytest.Config) -> None:
+    """Name the mark of tests that start worker processes."""
+    config.addinivalue_line("markers", "slow: starts processes and takes seconds")
+
+
+@pytest.fixture(scope="session")
+def orchard(tmp_path_factory: pytest.TempPathFactory) -> Sample:
+    """The orchard study."""
+    root = tmp_path_factory.mktemp("orchard")
+    truth = sample_orchard()
+    places = write_orchard(truth, root / "again", root / "again.csv", laboratory_logs(truth))
+    result = build(PROJECT / "sample_logs" / "orchard" / "study.toml", root / "built")
+    return Sample("orchard", truth, places, result)
+
+
+@pytest.fixture(scope="session")
+def passages(tmp_path_factory: pytest.TempPathFactory) -> Sample:
+    """The passages study."""
+    root = tmp_path_factory.mktemp("passages")
+    truth = sample_passages()
+    places = write_passages(truth, root / "again", root / "again.csv")
+    result = build(PROJECT / "sample_logs" / "passages" / "study.toml", root / "built")
+    return Sample("passages", truth, places, result)
+
+
+@pytest.fixture(params=["orchard", "passages"])
+def sample(request: pytest.FixtureRequest) -> Sample:
+    """Each of the sample studies in turn."""
+    return request.getfixturevalue(request.param)
