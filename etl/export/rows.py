@@ -118,8 +118,10 @@ class RowMaker:
         self._measures = tuple(m.name for m in by_name)
         kinds = sorted({m.kind for m in design.measures})
         self._kind_of_measure = np.array([kinds.index(m.kind) for m in by_name], dtype=np.int32)
-        self._measure_names = pa.array(self._measures, pa.string())
+        self._names = pa.array(self._measures, pa.string())
         self._kinds = pa.array(kinds, pa.string())
+        none = pa.array([], CODED)
+        self._tiles = (none, none)
 
     def ids(self, participant: str, trials: Sequence[Trial]) -> dict[str, pa.Array]:
         """The columns that identify a reader's trials, one row a trial."""
@@ -200,18 +202,27 @@ class RowMaker:
         width = len(self._measures)
         values = np.stack([measured.values[n] for n in self._measures], axis=1).ravel()
         reasons = np.stack([measured.reasons[n] for n in self._measures], axis=1).ravel()
-        tiled = np.tile(np.arange(width, dtype=np.int32), len(trial))
-        kinds = np.tile(self._kind_of_measure, len(trial))
+        names, kinds = self._tiled_names(len(trial))
         columns = [
             *self._repeated(facts, np.repeat(trial, width), self._design_names()),
             _coded(np.repeat(code, width), self._regions),
             pa.array(np.repeat(order, width).astype(np.int64)),
-            _coded(tiled, self._measure_names),
-            _coded(kinds, self._kinds),
+            names,
+            kinds,
             pa.array(values, from_pandas=True),
             _coded(reasons.astype(np.int32) - 1, self._reasons),
         ]
         return pa.RecordBatch.from_arrays(columns, schema=self.schemas["outcomes"])
+
+    def _tiled_names(self, cells: int) -> tuple[pa.Array, pa.Array]:
+        """Names and kinds of the measures, over and over: the same for every reader."""
+        rows = cells * len(self._measures)
+        if len(self._tiles[0]) < rows:
+            self._tiles = (
+                _coded(np.tile(np.arange(len(self._measures), dtype=np.int32), cells), self._names),
+                _coded(np.tile(self._kind_of_measure, cells), self._kinds),
+            )
+        return self._tiles[0].slice(0, rows), self._tiles[1].slice(0, rows)
 
     def outcomes_wide(
         self,

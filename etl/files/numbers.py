@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Collection
 from dataclasses import dataclass
 
@@ -13,7 +14,11 @@ from numpy.typing import NDArray
 from etl.errors import Findings
 
 _NUMBER = r"^[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?$"
-_GROUPED = r"^[+-]?[0-9]{1,3}(?:,[0-9]{3})+$"
+#: Numbers whose commas may mark thousands; none is written with a leading zero.
+_GROUPED = r"^[+-]?[1-9][0-9]{0,2}(?:,[0-9]{3})+$"
+
+#: Digits with signs between them that were meant as a number.
+_SPOILED = re.compile(r"[+-]?[0-9][0-9]*(?:[.,' \u00a0\u202f][0-9]+)+(?:[eE][+-]?[0-9]+)?")
 
 
 @dataclass(frozen=True, slots=True)
@@ -86,13 +91,13 @@ def numbers_in(
     for row in wrong.tolist():
         cell = column[row].as_py()
         findings.error(
-            "this is no number" if cell.strip() else "the cell is empty",
+            "this is no number",
             path=reading.shown,
             line=int(reading.lines[row]),
             where=f'column "{name}"',
             found=cell,
             expected=expected,
-            fix="correct the cell, or add the word to [logs] missing if it stands for no value",
+            fix=_way_out(cell, reading.decimal),
         )
     return None if wrong.size else values
 
@@ -167,6 +172,16 @@ def _may_hold(column: pa.Array, sign: bytes) -> bool:
     """Whether a sign can occur in a column: a look at its bytes, without one at its cells."""
     texts = column.buffers()[2]
     return texts is not None and sign in bytes(texts)
+
+
+def _way_out(cell: str, decimal: str) -> str:
+    """What to do about a cell that is no number."""
+    if _SPOILED.fullmatch(cell.strip()):
+        return (
+            f'the log is read with "{decimal}" as decimal sign and without thousands signs: '
+            "correct the cell, or [logs] decimal in the study file"
+        )
+    return "correct the cell, or add the word to [logs] missing if it stands for no value"
 
 
 def _parses(text: str) -> bool:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+import unicodedata
 from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
@@ -17,6 +18,7 @@ from etl.errors import Findings
 from etl.files import Cells, NumberReading, cells_of, find_decimal, numbers_in, read_text
 from etl.parsers.canonical import CanonicalLog, Coded, LogNote
 from etl.parsers.coordinates import to_screen_px
+from etl.parsers.time_checks import check_times
 
 if TYPE_CHECKING:
     from etl.study.models import Column, Logs, Screen
@@ -66,10 +68,19 @@ class LogReader:
         CanonicalLog and LogNote, or None
             None where a problem was recorded.
         """
-        before = findings.count("error")
+        own = Findings()
+        read = self._read(path, shown, own)
+        own.items.sort(key=lambda finding: finding.line or 0)
+        findings.extend(own)
+        return None if own.failed else read
+
+    def _read(
+        self, path: Path, shown: str, findings: Findings
+    ) -> tuple[CanonicalLog, LogNote] | None:
+        """Read one log; what is wrong is recorded as it is found."""
         named = self._ids_in_name(path, shown, findings)
         text = read_text(path, shown, findings, encoding=self.logs.encoding)
-        if text is None or findings.count("error") > before:
+        if text is None or findings.failed:
             return None
         columns = {name: column.column for name, column in self._columns().items()}
         needed = [*columns.values(), *self.facts, *(h for h, _ in self._where())]
@@ -88,10 +99,21 @@ class LogReader:
         note.counts["rows"] = len(cells)
         kept, lines = self._kept(cells, findings)
         note.counts["rows not asked for"] = note.counts["rows"] - len(lines)
-        if findings.count("error") > before:
+        if cells.comments:
+            note.counts["comment lines below the header"] = cells.comments
+        if findings.failed:
+            return None
+        if not len(lines):
+            findings.error(
+                "no row is left by [logs.where]",
+                path=shown,
+                expected="a row that has "
+                + " and ".join(f"{header} {' or '.join(v)}" for header, v in self._where()),
+                fix="correct [logs.where] in the study file, or remove the log",
+            )
             return None
         log = self._canonical(kept, lines, columns, named, note, findings)
-        return None if log is None or findings.count("error") > before else (log, note)
+        return None if log is None else (log, note)
 
     def _columns(self) -> dict[str, Column]:
         """The columns that are read, by canonical name."""
@@ -99,6 +121,10 @@ class LogReader:
         wanted = (*_IDS, *_NUMBERS, "label", "eye", "blink")
         found = {name: getattr(described, name) for name in wanted}
         return {name: column for name, column in found.items() if column is not None}
+
+    def _missing(self) -> frozenset[str]:
+        """What stands in a cell that has no value; cells are compared without blanks around."""
+        return frozenset(mark.strip() for mark in self.logs.missing) | {""}
 
     def _where(self) -> list[tuple[str, Sequence[str]]]:
         """Headers and values of ``[logs.where]``; a canonical name stands for its header."""
@@ -113,7 +139,8 @@ class LogReader:
         pattern = self.logs.participant_from_name
         if pattern is None:
             return {}
-        found = re.search(pattern, path.name)
+        # One operating system keeps letters with accents decomposed in the names of files.
+        found = re.search(pattern, unicodedata.normalize("NFC", path.name))
         if found is None:
             findings.error(
                 "the file's name does not say whose log it is",
@@ -124,7 +151,20 @@ class LogReader:
                 fix="rename the file, correct the pattern, or narrow [logs] files",
             )
             return {}
-        return {name: text for name, text in found.groupdict().items() if text}
+        named = {name: text for name, text in found.groupdict().items() if text}
+        for name in sorted(found.groupdict().keys() - named.keys() - self._columns().keys()):
+            if name in ("session", "item"):
+                named[name] = ""
+                continue
+            findings.error(
+                f"the file's name does not say the {name}",
+                path=shown,
+                where="logs.participant_from_name",
+                found=path.name,
+                expected=f"a name in which the group {name} of {pattern} is not empty",
+                fix="rename the file, correct the pattern, or narrow [logs] files",
+            )
+        return named
 
     def _kept(
         self, cells: Cells, findings: Findings
@@ -138,7 +178,10 @@ class LogReader:
         for header, values in where:
             asked = pc.is_in(
                 pc.utf8_trim_whitespace(columns[header]),
-                value_set=pa.array(list(values), pa.string()),
+                value_set=pa.array(
+                    [unicodedata.normalize(form, v) for form in ("NFC", "NFD") for v in values],
+                    pa.string(),
+                ),
             ).to_numpy(zero_copy_only=False)
             if not asked.any():
                 findings.error(
@@ -165,12 +208,12 @@ class LogReader:
         findings: Findings,
     ) -> CanonicalLog | None:
         """Cells into canonical columns."""
-        missing = frozenset(self.logs.missing) | {""}
+        missing = self._missing()
         ids = self._ids(cells, lines, columns, named, note.shown, findings)
         numbers = self._numbers(cells, lines, columns, note, findings)
         if numbers is None:
             return None
-        _check_times(numbers, lines, columns, note.shown, findings)
+        duration_ms = check_times(numbers, cells, lines, columns, note.shown, findings)
         nowhere = np.full(len(lines), np.nan)
         x_px, y_px = to_screen_px(
             numbers.get("x", nowhere),
@@ -190,7 +233,7 @@ class LogReader:
             facts,
             numbers.get("onset", nowhere),
             numbers.get("fixation", nowhere),
-            numbers["duration"],
+            duration_ms,
             x_px,
             y_px,
             label,
@@ -212,7 +255,7 @@ class LogReader:
         findings: Findings,
     ) -> dict[str, Coded]:
         """Reader, session, trial and item of every row; a missing one is an error."""
-        missing = frozenset(self.logs.missing) | {""}
+        missing = self._missing()
         ids: dict[str, Coded] = {}
         for name in _IDS:
             if name not in columns:
@@ -230,7 +273,7 @@ class LogReader:
                     where=where,
                     found=cells[columns[name]][row].as_py(),
                     expected=f"the {name} this fixation belongs to",
-                    fix="fill in the cell, or leave such rows out by [logs.where]",
+                    fix="fill in the cell, remove the row, or leave such rows out by [logs.where]",
                 )
             if name in named:
                 for text in sorted(set(coded.values) - {named[name]}):
@@ -265,7 +308,7 @@ class LogReader:
         if decimal is None:
             return None
         note.decimal = decimal
-        reading = NumberReading(note.shown, lines, frozenset(self.logs.missing) | {""}, decimal)
+        reading = NumberReading(note.shown, lines, self._missing(), decimal)
         numbers: dict[str, NDArray[np.float64]] = {}
         sound = True
         for name, header in present.items():
@@ -284,71 +327,3 @@ class LogReader:
 def _in_ms(values: NDArray[np.float64], unit: str) -> NDArray[np.float64]:
     """Times in milliseconds."""
     return values if unit == "ms" else np.round(values * _TO_MS[unit], _MS_DIGITS)
-
-
-def _check_times(
-    numbers: dict[str, NDArray[np.float64]],
-    lines: NDArray[np.int32],
-    columns: dict[str, str],
-    shown: str,
-    findings: Findings,
-) -> None:
-    """Every fixation has a positive duration and something that says when it was."""
-    if "end" in numbers:
-        numbers["duration"] = numbers["end"] - numbers["onset"]
-    duration = numbers["duration"]
-    where = f'column "{columns.get("duration") or columns.get("end")}"'
-
-    def named(rows: NDArray[np.bool_], problem: str, expected: str, fix: str, where: str) -> None:
-        for row in np.flatnonzero(rows).tolist():
-            value = duration[row]
-            findings.error(
-                problem,
-                path=shown,
-                line=int(lines[row]),
-                where=where,
-                found=None if np.isnan(value) else f"{value:g} ms",
-                expected=expected,
-                fix=fix,
-            )
-
-    named(
-        np.isnan(duration),
-        "the fixation has no duration",
-        "a duration above 0",
-        "fill in the cell, or leave such rows out by [logs.where]",
-        where,
-    )
-    named(
-        duration <= 0,
-        "the duration is not above 0",
-        "a duration above 0",
-        "correct the row, or leave it out by [logs.where]",
-        where,
-    )
-    for name in ("onset", "fixation"):
-        values = numbers.get(name)
-        if values is None:
-            continue
-        column = f'column "{columns[name]}"'
-        for row in np.flatnonzero(np.isnan(values)).tolist():
-            findings.error(
-                f"the fixation has no {'onset' if name == 'onset' else 'number'}",
-                path=shown,
-                line=int(lines[row]),
-                where=column,
-                expected="a number",
-                fix="fill in the cell, or leave such rows out by [logs.where]",
-            )
-        if name == "fixation":
-            for row in np.flatnonzero(values != np.floor(values)).tolist():
-                if not np.isnan(values[row]):
-                    findings.error(
-                        "the fixation's number is not whole",
-                        path=shown,
-                        line=int(lines[row]),
-                        where=column,
-                        found=f"{values[row]:g}",
-                        expected="a whole number",
-                        fix="correct the cell, or name another column as [logs.columns] fixation",
-                    )

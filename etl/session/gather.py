@@ -18,7 +18,7 @@ from etl.session.seen import tell_variation
 from etl.session.work import LogAnswer, LogTask, LogWork, ReaderTask, map_tasks
 from etl.study import Study
 from etl.tables import IdColumn, MeasureColumn, TableDesign
-from etl.trials import KnownTrial, SeenTrial
+from etl.trials import Facts, KnownTrial, SeenTrial
 
 Progress = Callable[[str, int, int], None]
 
@@ -148,43 +148,53 @@ def _know_reader(
 ) -> None:
     """Join what is known of a reader's trials and look up their texts."""
     own = trials.known.setdefault(participant, [])
+    names = plan.facts.names
     for one in seen:
         known = plan.facts.know(one, findings)
-        if known is None:
+        text = -1
+        if known is not None and not known.skipped_by:
+            text = _text_of(plan, participant, one, known, findings)
+        if known is None or (text < 0 and not known.skipped_by):
             trials.spoiled.add(participant)
             continue
-        if not known.skipped_by:
-            known = _with_text(plan, participant, known, findings)
-            if known.text < 0:
-                trials.spoiled.add(participant)
-                continue
-        own.append(known)
+        facts = known.facts
+        own.append(
+            KnownTrial(
+                one.session,
+                one.trial,
+                known.identity.get("item", ""),
+                tuple([facts.get(name, "") for name in names]),
+                text,
+                known.skipped_by,
+                one.shown,
+                one.line,
+            )
+        )
 
 
-def _with_text(plan: Plan, participant: str, known: KnownTrial, findings: Findings) -> KnownTrial:
-    """A trial with its text, and what the region file says about it; a finding where it has none."""
-    library, names = plan.library, plan.facts.names
-    identity = plan.facts.identity(participant, known)
-    values = tuple([identity[key] for key in library.keys])
+def _text_of(
+    plan: Plan, participant: str, seen: SeenTrial, known: Facts, findings: Findings
+) -> int:
+    """The text of a trial, whose own facts are added; -1, with a finding, where there is none."""
+    library = plan.library
+    values = tuple([known.get(key) for key in library.keys])
     text = library.find(values)
     if text < 0:
         shown = plan.study.regions.file
         spelled = ", ".join(f'{k} "{v}"' for k, v in zip(library.keys, values, strict=True))
         findings.error(
             f"the trial has no text in {shown}",
-            path=known.shown,
-            line=known.line,
-            found=f"trial {known.trial} of reader {participant}",
+            path=seen.shown,
+            line=seen.line,
+            found=f"trial {seen.trial} of reader {participant}",
             expected="a text" + (f" for {spelled}" if spelled else ""),
             fix=f"add the text to {shown}, correct the trial's facts, or name such trials in "
             "[trials] skip",
         )
-        return known
-    supplied = {n: library.texts[text].facts[n] for n in library.supplies if n in plan.supplied}
-    if not supplied:
-        return known._replace(text=text)
-    facts = tuple(supplied.get(name, fact) for name, fact in zip(names, known.facts, strict=True))
-    return known._replace(text=text, facts=facts)
+        return -1
+    for name in plan.supplied:
+        known.facts[name] = library.texts[text].facts[name]
+    return text
 
 
 def _levels(

@@ -109,11 +109,11 @@ def order_fixations(
     )
     recording = np.cumsum(starts | begins)
     key = log.number if numbered else log.onset_ms
-    order = np.lexsort((key[by_trial], recording))
-    # Recordings count up in file order, so sorting by recording keeps trials together.
-    rows = by_trial[order]
-    recording = recording[order]
-    trial = trial[order]
+    rows = by_trial
+    if ((np.diff(key[by_trial]) < 0) & (np.diff(recording) == 0)).any():
+        # Recordings count up in file order, so sorting by recording keeps trials together.
+        order = np.lexsort((key[by_trial], recording))
+        rows, recording, trial = by_trial[order], recording[order], trial[order]
     begins_recording = np.ones(count, dtype=bool)
     begins_recording[1:] = recording[1:] != recording[:-1]
     if not numbered:
@@ -133,6 +133,8 @@ def _restarts_by_number(
     number: NDArray[np.float64], trial: NDArray[np.int64], begins: NDArray[np.bool_]
 ) -> NDArray[np.bool_]:
     """Where a number comes again, or falls back, in a trial in which any number comes twice."""
+    if not ((np.diff(number) <= 0) & ~begins[1:]).any():
+        return np.zeros(len(number), dtype=bool)
     by_number = np.lexsort((number, trial))
     same = (np.diff(number[by_number]) == 0) & (np.diff(trial[by_number]) == 0)
     twice = np.zeros(int(trial[-1]) + 1 if len(trial) else 0, dtype=bool)
@@ -172,7 +174,7 @@ def _check_file_order(
             "the fixation begins before the one above it in the same trial",
             path=shown,
             line=line,
-            found=f"onset {onset[at]:g} ms after {onset[at - 1]:g} ms",
+            found=f"onset {_ms(onset[at])} after {_ms(onset[at - 1])}",
             expected="onsets that never go back within a trial",
             fix="sort the log by onset; if the trial was started again, give it a session or a "
             "trial number of its own",
@@ -199,7 +201,7 @@ def _check_times(
                 "the fixation begins before the one with the number before it",
                 path=shown,
                 line=line,
-                found=f"onset {onset[at]:g} ms after {onset[at - 1]:g} ms",
+                found=f"onset {_ms(onset[at])} after {_ms(onset[at - 1])}",
                 expected="onsets that never go back within a trial",
                 fix="correct the numbers or the onsets; if the trial was started again, give it "
                 "a session or a trial number of its own",
@@ -210,15 +212,21 @@ def _check_times(
         shown, line = reader.place(int(rows[at]))
         before = reader.place(int(rows[at - 1]))
         findings.error(
-            f"the fixation begins before the one of line {before[1]} is over",
+            "the fixation begins before the one before it is over",
             path=shown,
             line=line,
-            found=f"onset {onset[at]:g} ms, {over[at - 1]:g} ms too early",
-            expected=f"no overlap beyond {OVERLAP_TOLERATED_MS:g} ms, which is taken for rounding",
+            found=f"onset {_ms(onset[at])}, {_ms(over[at - 1])} too early",
+            expected=f"no overlap with {before[0]}:{before[1]} beyond {OVERLAP_TOLERATED_MS:g} ms, "
+            "which is taken for rounding",
             fix="check that onset and duration are the right columns with the right units, and "
             "that only one eye is read ([logs.where])",
         )
     return int(((over > 0) & (over <= OVERLAP_TOLERATED_MS)).sum())
+
+
+def _ms(time_ms: np.float64) -> str:
+    """A time with all its digits: seven are usual where a recorder counts from its start."""
+    return f"{np.format_float_positional(time_ms, precision=3, trim='-')} ms"
 
 
 def _recordings_set_aside(
@@ -244,11 +252,12 @@ def _recordings_set_aside(
             shown, line = reader.place(int(rows[starts[1]]))
             first = reader.place(int(rows[starts[0]]))
             findings.error(
-                f"trial {known.trial} is recorded a second time; the first begins in "
-                f"{first[0]}:{first[1]}",
+                "a trial is recorded a second time",
                 path=shown,
                 line=line,
-                expected="one recording of each trial",
+                found=f"trial {known.trial}"
+                + (f", session {known.session}" if known.session else ""),
+                expected=f"one recording of each trial; the first begins in {first[0]}:{first[1]}",
                 fix='say which counts by [trials] repeated = "first" or "last", or tell the two '
                 "apart by a session",
             )

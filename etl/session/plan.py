@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import glob
 from dataclasses import dataclass
+from functools import cached_property
 from pathlib import Path
 
 from etl.errors import Findings
@@ -19,7 +20,7 @@ from etl.trials.facts import shown_path
 from etl.trials.joining import IDS
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class Plan:
     """A study made ready for its logs.
 
@@ -43,10 +44,10 @@ class Plan:
     facts: FactBook
     library: RegionLibrary
 
-    @property
-    def supplied(self) -> frozenset[str]:
+    @cached_property
+    def supplied(self) -> tuple[str, ...]:
         """The facts that only the region file knows."""
-        return frozenset(n for n, source in self.facts.sources.items() if source == "regions")
+        return tuple(n for n, source in self.facts.sources.items() if source == "regions")
 
 
 def find_logs(study: Study, findings: Findings) -> tuple[tuple[Path, str], ...]:

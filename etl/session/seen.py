@@ -69,9 +69,10 @@ def tell_variation(
                 f"{name} varies within a trial",
                 path=seen.shown,
                 line=seen.line,
+                where=f'column "{name}"' if name in names else "logs.columns.item",
                 found=text,
-                expected=f'"{before[name]}" as in {known.shown}:{known.line}, for trial '
-                f"{seen.trial} of reader {seen.participant}",
+                expected=f'"{before[name]}" in all rows of trial {seen.trial} of reader '
+                f"{seen.participant}, as in {known.shown}:{known.line}",
                 fix="correct the cells; if these are two trials, number them apart or name a "
                 "session column",
             )

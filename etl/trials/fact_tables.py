@@ -99,12 +99,12 @@ def read_fact_table(
                 line=cells.header_line,
                 found=", ".join(listed),
                 expected=f'a column "{name}"{also} to join the table by',
-                fix=(f'did you mean "{near[0]}"? ' if near else "")
-                + "Rename the column, or correct the keys in the study file",
+                fix=(f'did you mean "{near[0]}"? Rename' if near else "rename")
+                + " the column, or correct the keys in the study file",
             )
     if findings.count("error") > before:
         return None
-    absent = frozenset(missing) | {""}
+    absent = frozenset(mark.strip() for mark in missing) | {""}
     texts = [
         _composed(cells.texts(name), absent) if name else [""] * len(cells) for name in cells.header
     ]
@@ -119,18 +119,19 @@ def read_fact_table(
                     f"the {name} is missing",
                     path=shown,
                     line=line,
-                    where=f'column "{name}"',
+                    where=f'column "{cells.header[place[name]]}"',
                     expected="a value to join the row by",
                     fix="fill in the cell, or remove the row",
                 )
-        if key in rows:
+        if key in rows and all(key):
             findings.error(
-                f"the row has the same {' and '.join(keys)} as line {lines[key]}",
+                f"two rows have the same {' and '.join(keys)}",
                 path=shown,
                 line=line,
-                found=", ".join(key),
-                expected="one row for each",
-                fix="remove one of the two rows, or add a column to the keys",
+                found=", ".join(f"{name} {text}" for name, text in zip(keys, key, strict=True)),
+                expected=f"one row for each; line {lines[key]} holds the other",
+                fix="remove one of the two rows"
+                + (", or add a column to [trials] keys" if len(keys) > 1 else ""),
             )
         rows.setdefault(key, row)
         lines.setdefault(key, line)

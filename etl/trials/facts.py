@@ -5,7 +5,6 @@ from __future__ import annotations
 import os
 from collections.abc import Collection, Iterable, Mapping
 from dataclasses import dataclass, field
-from difflib import get_close_matches
 from functools import cached_property
 from pathlib import Path
 from typing import TYPE_CHECKING, NamedTuple
@@ -13,6 +12,7 @@ from typing import TYPE_CHECKING, NamedTuple
 from etl.errors import Findings
 from etl.trials.fact_tables import FactTable, read_fact_table
 from etl.trials.joining import IDS, Join
+from etl.trials.sources import check_ids, find_sources
 
 if TYPE_CHECKING:
     from etl.study import Study
@@ -72,6 +72,18 @@ class KnownTrial(NamedTuple):
     line: int
 
 
+class Facts(NamedTuple):
+    """What is known of a trial, by name, and the fact by which it is skipped, or empty."""
+
+    identity: dict[str, str]
+    facts: dict[str, str]
+    skipped_by: str
+
+    def get(self, name: str) -> str:
+        """One fact or identifier; empty where unknown."""
+        return self.identity.get(name) or self.facts.get(name, "")
+
+
 @dataclass(frozen=True)
 class FactBook:
     """The tables of a study and where each fact comes from.
@@ -101,12 +113,6 @@ class FactBook:
         """The facts that the study uses, in the order in which a trial has them."""
         return tuple(self.sources)
 
-    def identity(self, participant: str, trial: KnownTrial) -> dict[str, str]:
-        """Everything that is known of a trial, by name."""
-        known = dict(zip(self.names, trial.facts, strict=True))
-        ids = (participant, trial.session, trial.trial, trial.item)
-        return known | dict(zip(IDS, ids, strict=True))
-
     def known_facts(self) -> frozenset[str]:
         """What is known of a trial before its text is looked up."""
         own = {name for name, source in self.sources.items() if source != "regions"}
@@ -116,7 +122,7 @@ class FactBook:
         """The tables there are."""
         return [t for t in (self.trial_list, self.participants, self.items) if t is not None]
 
-    def know(self, seen: SeenTrial, findings: Findings) -> KnownTrial | None:
+    def know(self, seen: SeenTrial, findings: Findings) -> Facts | None:
         """Join all that is known about one trial.
 
         Returns None, with a finding, where a table has no row for a trial that belongs to the
@@ -129,48 +135,55 @@ class FactBook:
         if seen.item:
             identity["item"] = seen.item
         place = (seen.shown, seen.line)
+        absent = []
         good = True
         for join in self._joins:
-            good &= join.add(identity, facts, place, findings)
-        # A practice trial may stand in no item table: whether it counts is asked first.
+            row = join.row(identity, facts)
+            if row is None:
+                absent.append(join)
+            else:
+                good &= join.take(row, identity, facts, place, findings)
         skipped_by = ""
-        items = self._item_join
-        if items is not None and items.key(identity, facts) in items.table.rows:
-            good &= items.add(identity, facts, place, findings)
-            items = None
         for name, values in self.skip.items():
-            if (identity.get(name) or facts.get(name, "")) in values:
+            # A fact of a table without a row for the trial is unknown, and nothing is skipped by
+            # that; an identifier that the trial does not have is an empty text.
+            if (identity.get(name) or facts.get(name, "" if name in IDS else None)) in values:
                 skipped_by = name
                 break
-        else:
-            if items is not None:
-                good &= items.add(identity, facts, place, findings)
-        if not good:
-            return None
-        return KnownTrial(
-            seen.session,
-            seen.trial,
-            identity.get("item", ""),
-            tuple([facts.get(name, "") for name in self.sources]),
-            -1,
-            skipped_by,
-            seen.shown,
-            seen.line,
-        )
+        # A trial that is no part of the study, such as one for practice, may stand in no table.
+        if absent and not skipped_by:
+            good = False
+            # The item of a trial may have to come from the very list that has no row for it.
+            for join in absent[:1] if "item" not in identity else absent:
+                self._tell_absent(join, join.key(identity, facts), place, findings)
+        return Facts(identity, facts, skipped_by) if good else None
+
+    def _tell_absent(
+        self, join: Join, key: tuple[str, ...], place: tuple[str, int], findings: Findings
+    ) -> None:
+        """Record that a table has no row for a trial; once for each reader or item."""
+        if (join.table.shown, key) not in self._told:
+            self._told.add((join.table.shown, key))
+            join.tell_absent(key, place, findings)
+
+    @cached_property
+    def _told(self) -> set[tuple[str, tuple[str, ...]]]:
+        """The missing rows that have been reported."""
+        return set()
 
     @cached_property
     def _joins(self) -> tuple[Join, ...]:
         """The tables that are joined to every trial, in the order in which they are."""
         return tuple(
             Join.of(table, self._facts_from(source))
-            for source, table in (("participants", self.participants), ("trials", self.trial_list))
+            for source, table in (
+                ("participants", self.participants),
+                ("trials", self.trial_list),
+                # The trial list may say which item was shown.
+                ("items", self.items),
+            )
             if table is not None
         )
-
-    @cached_property
-    def _item_join(self) -> Join | None:
-        """The item table, joined to trials that are not skipped."""
-        return None if self.items is None else Join.of(self.items, self._facts_from("items"))
 
     def _facts_from(self, source: str) -> tuple[str, ...]:
         """The facts that come from one source."""
@@ -185,7 +198,9 @@ class FactBook:
         }.get(self.sources.get(name, ""))
         if table is None:
             return trial.shown, trial.line
-        known = self.identity(participant, trial)
+        known = dict(zip(self.names, trial.facts, strict=True))
+        ids = (participant, trial.session, trial.trial, trial.item)
+        known |= dict(zip(IDS, ids, strict=True))
         key = tuple(known.get(n, "") for n in table.keys)
         return table.shown, table.lines.get(key, 1)
 
@@ -229,9 +244,9 @@ def gather_facts(
     study : Study
         The study as loaded.
     log_header : iterable of str
-        The header of one of its logs.
+        The header of one of its logs; empty where that could not be read.
     region_header : iterable of str
-        The header of its region file.
+        The header of its region file; empty where that could not be read.
     findings : Findings
         Where problems are recorded.
 
@@ -248,7 +263,6 @@ def gather_facts(
         name: column.column for name in IDS if (column := getattr(columns, name)) is not None
     }
     missing = study.logs.missing
-    header = set(log_header)
 
     def table(given: str | None, keys: tuple[str, ...]) -> FactTable | None:
         if given is None:
@@ -265,47 +279,22 @@ def gather_facts(
     trial_list = table(trials.table, keys)
     if findings.count("error") > before:
         return None
-    skip = {name: tuple(values) for name, values in trials.skip.items()}
-    named = [
-        *((name, ("trials", "factors")) for name in trials.factors),
-        *((name, ("trials", "covariates")) for name in trials.covariates),
-        *((name, ("trials", "skip", name)) for name in skip),
-        *((name, ("trials", "keys")) for name in keys if name not in IDS),
-    ]
-    single = {
-        "answer_correct": trials.answer_correct,
-        "onset": trials.onset,
-        "offset": trials.offset,
-    }
-    named += [(name, ("trials", key)) for key, name in single.items() if name is not None]
-    places = [
-        ("trials", trial_list.columns if trial_list else ()),
-        ("participants", participants.columns if participants else ()),
-        ("items", items.columns if items else ()),
-        ("log", tuple(header)),
-        ("regions", tuple(region_header)),
-    ]
-    sources: dict[str, str] = {}
-    for name, loc in named:
-        if name in IDS and name not in sources:
-            continue
-        source = next((where for where, has in places if name in has), None)
-        if source is None or (source == "regions" and loc[1] == "skip"):
-            everything = sorted({n for _, has in places for n in has if n})
-            near = get_close_matches(name, everything, n=1)
-            findings.error(
-                f'no table, log or region file has a column "{name}"',
-                path=study.shown,
-                line=study.line_of(*loc),
-                where=".".join(loc[:2]),
-                found=name,
-                expected="one of " + ", ".join(everything),
-                fix=f'did you mean "{near[0]}"?' if near else "correct the name",
-            )
-            continue
-        sources[name] = source
+    sources = find_sources(
+        study,
+        keys if trial_list else (),
+        {
+            "trials": trial_list.columns if trial_list else (),
+            "participants": participants.columns if participants else (),
+            "items": items.columns if items else (),
+            "log": tuple(log_header),
+            "regions": tuple(region_header),
+        },
+        findings,
+    )
+    check_ids(study, keys, trial_list is not None and "item" in trial_list.columns, findings)
     if findings.count("error") > before:
         return None
+    skip = {name: tuple(values) for name, values in trials.skip.items()}
     from_log = tuple(name for name, source in sources.items() if source == "log")
     return FactBook(trial_list, participants or None, items or None, sources, from_log, skip)
 

@@ -41,34 +41,36 @@ class Join:
             tuple((name, table.columns.index(name)) for name in facts),
         )
 
-    def add(
+    def row(self, identity: Mapping[str, str], facts: Mapping[str, str]) -> tuple[str, ...] | None:
+        """The table's row for a trial, None where it has none."""
+        return self.table.rows.get(self.key(identity, facts))
+
+    def take(
         self,
+        row: tuple[str, ...],
         identity: dict[str, str],
         facts: dict[str, str],
         place: tuple[str, int],
         findings: Findings,
     ) -> bool:
-        """Add what the table says about one trial.
+        """Take what a row says about its trial.
 
         Parameters
         ----------
+        row : tuple of str
+            From :meth:`row`.
         identity, facts : dict of str to str
             What is known of the trial; completed in place.
         place : tuple of (str, int)
             File and line where the trial was seen.
         findings : Findings
-            Where a missing row, or another item than the log's, is recorded.
+            Where another item than the log's is recorded.
 
         Returns
         -------
         bool
-            Whether the table has a row for the trial and agrees with the log.
+            Whether the table agrees with the log.
         """
-        key = self.key(identity, facts)
-        row = self.table.rows.get(key)
-        if row is None:
-            self._tell_missing(key, place, findings)
-            return False
         for name, column in self.facts:
             facts[name] = row[column]
         good = True
@@ -76,12 +78,13 @@ class Join:
             text = row[column]
             if text and identity.setdefault(name, text) != text and name == "item":
                 good = False
+                line = self.table.lines[self.key(identity, facts)]
                 findings.error(
                     f"the log and {self.table.shown} name different items",
                     path=place[0],
                     line=place[1],
                     found=identity[name],
-                    expected=f'"{text}" as in {self.table.shown}:{self.table.lines[key]}',
+                    expected=f'"{text}" as in {self.table.shown}:{line}',
                     fix="correct one of the two, or take item out of [logs.columns]",
                 )
         return good
@@ -90,9 +93,7 @@ class Join:
         """The key values of a trial."""
         return tuple([identity.get(name) or facts.get(name, "") for name in self.table.keys])
 
-    def _tell_missing(
-        self, key: tuple[str, ...], place: tuple[str, int], findings: Findings
-    ) -> None:
+    def tell_absent(self, key: tuple[str, ...], place: tuple[str, int], findings: Findings) -> None:
         """Record that the table has no row for a trial."""
         shown, keys = self.table.shown, self.table.keys
         near: list[str] = []

@@ -25,9 +25,7 @@ def make(folder: Path, readers: int, trials: int, fixations: int) -> Path:
     """Write the study and give its study file."""
     from tests.simulator import write_bulk_study
 
-    study = write_bulk_study(
-        folder, readers=readers, trials=trials, fixations=fixations, regions=6
-    )
+    study = write_bulk_study(folder, readers=readers, trials=trials, fixations=fixations, regions=6)
     return study.study_file
 
 
@@ -79,8 +77,8 @@ def build(study: Path, into: Path) -> None:
 def loop(study: Path, readers: int) -> None:
     """What a lab would write: pandas, groupby over trials, a Python loop in each.
 
-    It computes the same outcomes of the same regions for some readers and writes them to CSV-free
-    Parquet. It does less than the build: no checks, no line numbers, no ledger.
+    It computes the same outcomes of some readers and writes the one table; it does less than the
+    build: no checks, no line numbers, no table of fixations or regressions.
     """
     from tests.benchmarks.lab_loop import outcomes_of
 

@@ -1,7 +1,7 @@
 """The worked example of the definitions as a study of one trial, in every kind of region file.
 
-The cells are those of ``tests/measures/test_worked_example.py``, typed in from the definitions; here
-they must come out of the published files, by the whole way from a log and a region file.
+The cells are those of ``tests/measures/test_worked_example.py``, typed in from the definitions;
+here they must come out of the published files, by the whole way from a log and a region file.
 """
 
 from __future__ import annotations
@@ -168,8 +168,11 @@ def test_wide_outcomes_are_those_worked_by_hand(example: Example) -> None:
     """A row a region, a column a measure, nothing where there is no value."""
     expected = [
         {
-            **{"participant": "R1", "trial": 1, "item": "example"},
-            **{"region": name, "region_order": order},
+            "participant": "R1",
+            "trial": 1,
+            "item": "example",
+            "region": name,
+            "region_order": order,
             **{
                 measure: None if isinstance(cells[order - 1], str) else cells[order - 1]
                 for measure, cells in REGION_TABLE.items()
@@ -193,19 +196,30 @@ def test_regressions_are_those_worked_by_hand(example: Example) -> None:
     6 at 1970 + 190 + 30 = 2190, 9 at 2190 + (210 + 230 + 300) + 3 * 30 = 3020. One region is 50 px
     wide. A log of labels has neither.
     """
-    one, two, three, four, five = example.names
-    assert one != two
-    saccades = [(four, 4, three, 3, 1, 4, 5), (three, 3, two, 2, 0, 5, 6), (five, 5, three, 3, 1, 8, 9)]
+    _, two, three, four, five = example.names
+    saccades = [
+        (four, 4, three, 3, 1, 4, 5),
+        (three, 3, two, 2, 0, 5, 6),
+        (five, 5, three, 3, 1, 8, 9),
+    ]
     amounts = [(1970.0, -50.0), (2190.0, -50.0), (3020.0, -100.0)]
     if example.kind == "labels":
         amounts = [(None, None)] * 3
     expected = [
         {
-            **{"participant": "R1", "trial": 1, "item": "example"},
-            **{"from_region": origin, "from_order": a, "to_region": goal, "to_order": b},
-            **{"regions_crossed": a - b, "ends_first_pass": ends},
-            **{"launch_fixation": launch, "landing_fixation": landing},
-            **{"onset_ms": onset_ms, "amplitude_px": amplitude_px},
+            "participant": "R1",
+            "trial": 1,
+            "item": "example",
+            "from_region": origin,
+            "from_order": a,
+            "to_region": goal,
+            "to_order": b,
+            "regions_crossed": a - b,
+            "ends_first_pass": ends,
+            "launch_fixation": launch,
+            "landing_fixation": landing,
+            "onset_ms": onset_ms,
+            "amplitude_px": amplitude_px,
         }
         for (origin, a, goal, b, ends, launch, landing), (onset_ms, amplitude_px) in zip(
             saccades, amounts, strict=True
