@@ -98,6 +98,14 @@ class IdColumn:
 
 
 @dataclass(frozen=True, slots=True)
+class CovariateColumn:
+    """A fact that is carried along: a number, or one of some texts."""
+
+    type: Literal["text", "number"]
+    values: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
 class TableDesign:
     """What a study's tables have in common.
 
@@ -107,7 +115,7 @@ class TableDesign:
         ``participant``, ``session`` where readers came more than once, ``trial``, ``item``.
     factors : dict of str to tuple of str
         Levels in order.
-    covariates : dict of str to {"text", "number"}
+    covariates : dict of str to CovariateColumn
         Facts that are carried along.
     regions : tuple of str
         All names of regions.
@@ -123,7 +131,7 @@ class TableDesign:
 
     ids: Mapping[str, IdColumn]
     factors: Mapping[str, tuple[str, ...]]
-    covariates: Mapping[str, Literal["text", "number"]]
+    covariates: Mapping[str, CovariateColumn]
     regions: tuple[str, ...]
     measures: tuple[MeasureColumn, ...]
     trial_measures: tuple[MeasureColumn, ...]
@@ -154,8 +162,8 @@ class TableDesign:
     def covariate_columns(self) -> tuple[Column, ...]:
         """The facts that are carried along."""
         return tuple(
-            Column(name, type_, "covariate, carried along", nullable=True)
-            for name, type_ in self.covariates.items()
+            Column(name, known.type, "covariate, carried along", nullable=True)
+            for name, known in self.covariates.items()
         )
 
     def columns(self, table: str) -> tuple[Column, ...]:

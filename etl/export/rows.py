@@ -9,8 +9,6 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from operator import attrgetter
-from typing import Protocol
 
 import numpy as np
 import pyarrow as pa
@@ -19,17 +17,38 @@ from numpy.typing import NDArray
 from etl.tables import CODED, TABLES, TableDesign, written_schema
 
 
-class Trial(Protocol):
-    """What is written about one trial in every row of it."""
+@dataclass(frozen=True, slots=True)
+class TrialColumns:
+    """What is known of a reader's trials, one row a trial, in the order of the tables.
 
-    @property
-    def session(self) -> str: ...  # noqa: D102
-    @property
-    def trial(self) -> str: ...  # noqa: D102
-    @property
-    def item(self) -> str: ...  # noqa: D102
-    @property
-    def facts(self) -> tuple[str, ...]: ...  # noqa: D102
+    Attributes
+    ----------
+    ids : dict of str to (trials,) int32 array
+        Place of each id in the design's list of values; -1 where a trial has none.
+    factors : dict of str to (trials,) int32 array
+        Place of each level in the design's list; of no meaning for trials that are skipped.
+    covariates : dict of str to (trials,) array
+        Numbers, NaN where missing, or places in the design's list of texts, -1 where missing.
+    text : (trials,) int32 array
+        The text that was read; -1 for a trial that is no part of the study.
+    """
+
+    ids: Mapping[str, NDArray[np.int32]]
+    factors: Mapping[str, NDArray[np.int32]]
+    covariates: Mapping[str, NDArray[np.float64] | NDArray[np.int32]]
+    text: NDArray[np.int32]
+
+    def __len__(self) -> int:
+        return len(self.text)
+
+    def take(self, rows: NDArray[np.int64]) -> TrialColumns:
+        """Some of the trials."""
+        return TrialColumns(
+            {name: codes[rows] for name, codes in self.ids.items()},
+            {name: codes[rows] for name, codes in self.factors.items()},
+            {name: values[rows] for name, values in self.covariates.items()},
+            self.text[rows],
+        )
 
 
 @dataclass(frozen=True, slots=True)
@@ -91,13 +110,10 @@ class RowMaker:
     ----------
     design : TableDesign
         What the study's tables have in common.
-    facts : tuple of str
-        Names of the facts of a trial, in its order.
     """
 
-    def __init__(self, design: TableDesign, facts: tuple[str, ...]) -> None:
+    def __init__(self, design: TableDesign) -> None:
         self.design = design
-        self._place = {name: place for place, name in enumerate(facts)}
         self.schemas = {name: written_schema(design.columns(name)) for name in TABLES}
         self._id_values = {
             name: pa.array([int(v) for v in known.values], pa.int64())
@@ -106,9 +122,8 @@ class RowMaker:
             for name, known in design.ids.items()
         }
         self._levels = {n: pa.array(levels, pa.string()) for n, levels in design.factors.items()}
-        self._level_codes = {
-            name: {text: code for code, text in enumerate(levels)}
-            for name, levels in design.factors.items()
+        self._covariates = {
+            n: pa.array(c.values, pa.string()) for n, c in design.covariates.items()
         }
         self._regions = pa.array(design.regions, pa.string())
         self._reasons = pa.array(design.reasons[1:], pa.string())
@@ -123,52 +138,25 @@ class RowMaker:
         none = pa.array([], CODED)
         self._tiles = (none, none)
 
-    def ids(self, participant: str, trials: Sequence[Trial]) -> dict[str, pa.Array]:
-        """The columns that identify a reader's trials, one row a trial."""
+    def ids(self, trials: TrialColumns) -> dict[str, pa.Array]:
+        """The columns that identify trials, one row a trial."""
         columns: dict[str, pa.Array] = {}
         for name, known in self.design.ids.items():
-            ranks = known.ranks
-            if name == "participant":
-                codes = pa.array(np.full(len(trials), ranks[participant], dtype=np.int32))
-            else:
-                get = attrgetter(name)
-                codes = pa.array([ranks.get(get(trial)) for trial in trials], pa.int32())
-            values = self._id_values[name]
-            columns[name] = (
-                values.take(codes)
-                if known.type == "integer"
-                else pa.DictionaryArray.from_arrays(codes, values)
-            )
+            column = _coded(trials.ids[name], self._id_values[name])
+            columns[name] = column.dictionary_decode() if known.type == "integer" else column
         return columns
 
-    def facts(
-        self, ids: Mapping[str, pa.Array], trials: Sequence[Trial], rows: NDArray[np.int64]
-    ) -> dict[str, pa.Array]:
-        """The columns that describe trials of the study, ids first, one row a trial.
-
-        Parameters
-        ----------
-        ids : dict of str to pa.Array
-            From :meth:`ids`, of all trials of the reader.
-        trials : sequence of Trial
-            The trials of the study.
-        rows : (trials,) int64 array
-            Their rows in ``ids``.
-        """
-        index = pa.array(rows)
-        columns = {name: column.take(index) for name, column in ids.items()}
-        for name in self.design.factors:
-            level, place = self._level_codes[name], self._place[name]
-            codes = pa.array([level[trial.facts[place]] for trial in trials], pa.int32())
-            columns[name] = pa.DictionaryArray.from_arrays(codes, self._levels[name])
-        for name, kind in self.design.covariates.items():
-            place = self._place[name]
-            texts = [trial.facts[place] or None for trial in trials]
-            if kind == "number":
-                numbers = [None if text is None else float(text) for text in texts]
-                columns[name] = pa.array(numbers, pa.float64())
-            else:
-                columns[name] = pa.array(texts, pa.string()).dictionary_encode().cast(CODED)
+    def facts(self, trials: TrialColumns) -> dict[str, pa.Array]:
+        """The columns that describe trials of the study, ids first, one row a trial."""
+        columns = self.ids(trials)
+        for name, levels in self._levels.items():
+            columns[name] = _coded(trials.factors[name], levels)
+        for name, values in trials.covariates.items():
+            columns[name] = (
+                pa.array(values, from_pandas=True)
+                if self.design.covariates[name].type == "number"
+                else _coded(values.astype(np.int32), self._covariates[name])
+            )
         return columns
 
     def _repeated(

@@ -12,9 +12,9 @@ from pyarrow import csv as arrow_csv
 
 from etl.tables import Column, TableDesign, read_schema, schema_note, written_schema
 
-#: Rows collected before a row group is written: enough for good compression, little enough for a
-#: laptop. It does not depend on workers, so that the bytes do not either.
-ROWS_A_GROUP = 262_144
+#: Cells (rows times columns) collected before a row group is written: enough for good compression,
+#: little enough for a laptop. It does not depend on workers, so that the bytes do not either.
+CELLS_A_GROUP = 3_000_000
 _COMPRESSION = "zstd"
 
 
@@ -49,7 +49,7 @@ class TableWriter:
         self._batches.append(batch)
         self._waiting += batch.num_rows
         self.rows += batch.num_rows
-        if self._waiting >= ROWS_A_GROUP:
+        if self._waiting * len(self._schema) >= CELLS_A_GROUP:
             self._write()
 
     def _write(self) -> None:

@@ -1,17 +1,21 @@
 """Files as labs have them, turned into text cells that remember their line."""
 
+from etl.files.coded import Coded, group_rows, place_rows
 from etl.files.decoding import RawText, read_text
 from etl.files.delimited import Cells, cells_of, header_of, read_cells
 from etl.files.numbers import NumberReading, find_decimal, numbers_in
 
 __all__ = [
     "Cells",
+    "Coded",
     "NumberReading",
     "RawText",
     "cells_of",
     "find_decimal",
+    "group_rows",
     "header_of",
     "numbers_in",
+    "place_rows",
     "read_cells",
     "read_text",
 ]

@@ -1,6 +1,6 @@
 """From a log to canonical fixations: one module a kind of log."""
 
-from etl.parsers.canonical import CanonicalLog, Coded
+from etl.parsers.canonical import CanonicalLog
 from etl.parsers.table_log import LogReader
 
-__all__ = ["CanonicalLog", "Coded", "LogReader"]
+__all__ = ["CanonicalLog", "LogReader"]

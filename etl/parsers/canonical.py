@@ -2,61 +2,12 @@
 
 from __future__ import annotations
 
-import unicodedata
-from collections.abc import Collection
 from dataclasses import dataclass, field
 
 import numpy as np
-import pyarrow as pa
-import pyarrow.compute as pc
 from numpy.typing import NDArray
 
-
-@dataclass(frozen=True, slots=True)
-class Coded:
-    """A column of few distinct texts, kept as codes.
-
-    Attributes
-    ----------
-    codes : (n,) int32 array
-        Index into ``values``; -1 where the cell is missing.
-    values : tuple of str
-        The distinct texts, in order of first appearance.
-
-    Examples
-    --------
-    >>> Coded.of(pa.array(["b", " a", "NA", "b"]), {"", "NA"}).codes.tolist()
-    [0, 1, -1, 0]
-    """
-
-    codes: NDArray[np.int32]
-    values: tuple[str, ...]
-
-    @classmethod
-    def of(cls, column: pa.Array, missing: Collection[str]) -> Coded:
-        """Code a column of text: cells trimmed, composed (Unicode NFC), missing marks as -1."""
-        encoded = pc.dictionary_encode(column)
-        known: dict[str, int] = {}
-        new_code = np.empty(len(encoded.dictionary), dtype=np.int32)
-        for old, raw in enumerate(encoded.dictionary.to_pylist()):
-            text = unicodedata.normalize("NFC", raw.strip())
-            new_code[old] = -1 if text in missing else known.setdefault(text, len(known))
-        codes = encoded.indices.to_numpy(zero_copy_only=False)
-        return cls(new_code[codes] if len(new_code) else codes.astype(np.int32), tuple(known))
-
-    @classmethod
-    def constant(cls, text: str, length: int) -> Coded:
-        """The same text in every row."""
-        return cls(np.zeros(length, dtype=np.int32), (text,))
-
-    def take(self, rows: NDArray[np.int64]) -> Coded:
-        """Some of the rows."""
-        return Coded(self.codes[rows], self.values)
-
-    def text(self, row: int) -> str:
-        """The text of one row, empty where it is missing."""
-        code = int(self.codes[row])
-        return "" if code < 0 else self.values[code]
+from etl.files import Coded
 
 
 @dataclass(frozen=True, slots=True)

@@ -15,8 +15,8 @@ import pyarrow.compute as pc
 from numpy.typing import NDArray
 
 from etl.errors import Findings
-from etl.files import Cells, NumberReading, cells_of, find_decimal, numbers_in, read_text
-from etl.parsers.canonical import CanonicalLog, Coded, LogNote
+from etl.files import Cells, Coded, NumberReading, cells_of, find_decimal, numbers_in, read_text
+from etl.parsers.canonical import CanonicalLog, LogNote
 from etl.parsers.coordinates import to_screen_px
 from etl.parsers.time_checks import check_times
 
@@ -260,7 +260,12 @@ class LogReader:
         for name in _IDS:
             if name not in columns:
                 if name in named:
-                    ids[name] = Coded.constant(named[name], len(lines))
+                    unsaid = name == "item" and not named[name]
+                    ids[name] = (
+                        Coded.absent(len(lines))
+                        if unsaid
+                        else Coded.constant(named[name], len(lines))
+                    )
                 continue
             coded = Coded.of(cells[columns[name]], missing)
             ids[name] = coded

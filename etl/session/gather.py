@@ -4,21 +4,25 @@ from __future__ import annotations
 
 import math
 from collections import Counter
-from collections.abc import Callable, Iterable
-from dataclasses import dataclass, field
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
 from pathlib import Path
-from typing import Literal
+
+import numpy as np
+import pyarrow as pa
+from numpy.typing import NDArray
 
 from etl.errors import Findings
+from etl.export.rows import TrialColumns
+from etl.files import Coded, group_rows
 from etl.measures import MEASURES, REASONS, TRIAL_MEASURES, Measure, select
 from etl.parsers import LogReader
-from etl.session.one_reader import LEFT_OUT_BY, Options, sorted_trials
+from etl.session.one_reader import LEFT_OUT_BY, Options
 from etl.session.plan import Plan
-from etl.session.seen import tell_variation
 from etl.session.work import LogAnswer, LogTask, LogWork, ReaderTask, map_tasks
 from etl.study import Study
-from etl.tables import IdColumn, MeasureColumn, TableDesign
-from etl.trials import Facts, KnownTrial, SeenTrial
+from etl.tables import CovariateColumn, IdColumn, MeasureColumn, TableDesign
+from etl.trials import IDS, KnownTrials, SeenTrials
 
 Progress = Callable[[str, int, int], None]
 
@@ -44,16 +48,6 @@ class Gathered:
     design: TableDesign
     options: Options
     tasks: list[ReaderTask]
-
-
-@dataclass(slots=True)
-class _Trials:
-    """The trials of all readers while they are gathered."""
-
-    seen: dict[str, dict[tuple[str, str], SeenTrial]] = field(default_factory=dict)
-    parts: dict[str, list[tuple[Path, int, int]]] = field(default_factory=dict)
-    known: dict[str, list[KnownTrial]] = field(default_factory=dict)
-    spoiled: set[str] = field(default_factory=set)
 
 
 def read_logs(
@@ -93,23 +87,31 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
     Gathered or None
         None where no reader is left to work on. Readers with a problem are not among the tasks.
     """
-    trials = _Trials()
+    shown = [name for _, name in plan.logs]
+    parts: dict[str, list[tuple[Path, int, int]]] = {}
     for number, answer in enumerate(answers):
         for participant, batch in answer.batches.items():
-            trials.parts.setdefault(participant, []).append(
-                (kept / f"{number}.arrow", batch, number)
-            )
-        for seen in answer.trials:
-            listed = trials.seen.setdefault(seen.participant, {})
-            known = listed.setdefault((seen.session, seen.trial), seen)
-            if known is not seen and (known.item, known.facts) != (seen.item, seen.facts):
-                tell_variation(known, seen, plan.facts.from_log, findings)
-    for participant, shown in trials.seen.items():
-        _know_reader(plan, participant, shown.values(), trials, findings)
-    levels = _levels(plan, trials.known, findings)
-    _notice_what_is_missing(plan, trials, findings)
-    kept_trials = [trial for own in trials.known.values() for trial in own if trial.text >= 0]
-    if not kept_trials:
+            parts.setdefault(participant, []).append((kept / f"{number}.arrow", batch, number))
+    every = [
+        replace(answer.trials, file=answer.trials.file + number)
+        for number, answer in enumerate(answers)
+        if answer.trials is not None
+    ]
+    if not every:
+        return None
+    for answer in answers:
+        answer.trials = None  # joined below; twice would be too much for a large study
+    seen = SeenTrials.joined(every).once(shown, findings)
+    del every
+    trials = plan.facts.know(seen, shown, findings)
+    text = _texts(plan, trials, shown, findings)
+    for name in plan.supplied:
+        supplied = pa.array([known.facts[name] for known in plan.library.texts], pa.string())
+        trials.known[name] = Coded.of(supplied, {""}).take(text)
+    good = trials.good & (trials.skipped | (text >= 0))
+    levels = _levels(plan, trials, text >= 0, shown, findings)
+    _notice_what_is_missing(plan, seen, findings)
+    if not (text >= 0).any():
         if not findings.failed:
             findings.error(
                 "no trial is left: every one that was recorded is skipped",
@@ -119,118 +121,78 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
                 fix="correct [trials] skip, or name the logs of the study in [logs] files",
             )
         return None
-    design = _design(plan, trials, kept_trials, levels)
-    tasks = []
-    for participant in design.ids["participant"].values:
-        if participant in trials.spoiled:
-            continue
-        own = sorted_trials(trials.known[participant], design)
-        parts = trials.parts[participant]
-        tasks.append(
-            ReaderTask(
-                participant,
-                tuple((path, batch) for path, batch, _ in parts),
-                tuple(number for _, _, number in parts),
-                own,
-            )
-        )
+    design = _design(plan, trials, text >= 0, levels)
+    tasks = _tasks(design, trials, (text, good), parts)
     study = plan.study
     options = Options(study.trials.repeated, study.measures.outside, study.measures.no_opportunity)
     return Gathered(design, options, tasks)
 
 
-def _know_reader(
-    plan: Plan,
-    participant: str,
-    seen: Iterable[SeenTrial],
-    trials: _Trials,
-    findings: Findings,
-) -> None:
-    """Join what is known of a reader's trials and look up their texts."""
-    own = trials.known.setdefault(participant, [])
-    names = plan.facts.names
-    for one in seen:
-        known = plan.facts.know(one, findings)
-        text = -1
-        if known is not None and not known.skipped_by:
-            text = _text_of(plan, participant, one, known, findings)
-        if known is None or (text < 0 and not known.skipped_by):
-            trials.spoiled.add(participant)
-            continue
-        facts = known.facts
-        own.append(
-            KnownTrial(
-                one.session,
-                one.trial,
-                known.identity.get("item", ""),
-                tuple([facts.get(name, "") for name in names]),
-                text,
-                known.skipped_by,
-                one.shown,
-                one.line,
-            )
+def _texts(
+    plan: Plan, trials: KnownTrials, shown: Sequence[str], findings: Findings
+) -> NDArray[np.int32]:
+    """The text of each trial; -1, with a finding where the trial is part of the study, for none."""
+    library, seen = plan.library, trials.seen
+    keys = [trials.known.get(key, Coded.absent(len(seen))) for key in library.keys]
+    # One look-up for each combination of key values there is; a text without keys suits any trial.
+    first, group = group_rows(keys or [Coded.constant("", len(seen))])
+    found = [library.find(tuple([key.text(row) for key in keys])) for row in first.tolist()]
+    text = np.array(found, dtype=np.int32)[group]
+    text[trials.skipped] = -1
+    file = plan.study.regions.file
+    for row in np.flatnonzero((text < 0) & ~trials.skipped & trials.good).tolist():
+        spelled = ", ".join(
+            f'{name} "{key.text(row)}"' for name, key in zip(library.keys, keys, strict=True)
         )
-
-
-def _text_of(
-    plan: Plan, participant: str, seen: SeenTrial, known: Facts, findings: Findings
-) -> int:
-    """The text of a trial, whose own facts are added; -1, with a finding, where there is none."""
-    library = plan.library
-    values = tuple([known.get(key) for key in library.keys])
-    text = library.find(values)
-    if text < 0:
-        shown = plan.study.regions.file
-        spelled = ", ".join(f'{k} "{v}"' for k, v in zip(library.keys, values, strict=True))
         findings.error(
-            f"the trial has no text in {shown}",
-            path=seen.shown,
-            line=seen.line,
-            found=f"trial {seen.trial} of reader {participant}",
+            f"the trial has no text in {file}",
+            path=shown[int(seen.file[row])],
+            line=int(seen.line[row]),
+            found=f"trial {seen.ids['trial'].text(row)} of reader "
+            f"{seen.ids['participant'].text(row)}",
             expected="a text" + (f" for {spelled}" if spelled else ""),
-            fix=f"add the text to {shown}, correct the trial's facts, or name such trials in "
+            fix=f"add the text to {file}, correct the trial's facts, or name such trials in "
             "[trials] skip",
         )
-        return -1
-    for name in plan.supplied:
-        known.facts[name] = library.texts[text].facts[name]
     return text
 
 
 def _levels(
-    plan: Plan, known: dict[str, list[KnownTrial]], findings: Findings
+    plan: Plan,
+    trials: KnownTrials,
+    in_study: NDArray[np.bool_],
+    shown: Sequence[str],
+    findings: Findings,
 ) -> dict[str, tuple[str, ...]]:
     """The levels of every factor in order; missing and unlisted values are errors."""
-    trials = plan.study.trials
+    settings = plan.study.trials
     levels: dict[str, tuple[str, ...]] = {}
-    for name in trials.factors:
-        stated = trials.levels.get(name)
-        found: set[str] = set()
-        place = plan.facts.names.index(name)
-        for participant, own in known.items():
-            for trial in own:
-                value = trial.facts[place]
-                if value in found or trial.text < 0:
-                    continue
-                if value and (stated is None or value in stated):
-                    found.add(value)
-                    continue
-                shown, line = plan.facts.origin(name, participant, trial)
-                findings.error(
-                    f"the factor {name} has "
-                    + ("a level that is not listed" if value else "no value"),
-                    path=shown,
-                    line=line,
-                    where=f'column "{name}"',
-                    found=value or None,
-                    expected=("one of " + ", ".join(stated)) if stated else "a level",
-                    fix="correct the cell"
-                    + (", or add the level to [trials] levels" if value else "")
-                    + "; trials that are no part of the study belong in [trials] skip",
-                )
-        levels[name] = tuple(stated) if stated is not None else tuple(sorted(found))
+    for name in settings.factors:
+        stated = settings.levels.get(name)
+        column = trials.known[name]
+        found = {column.values[code] for code in np.unique(column.codes[in_study]) if code >= 0}
+        allowed = found if stated is None else set(stated)
+        told: set[tuple[str | None, int]] = set()
+        for row in np.flatnonzero(in_study & trials.good & ~column.among(allowed)).tolist():
+            value = column.text(row)
+            path, line = plan.facts.origin(name, trials, row)
+            if (path, line) in told:
+                continue
+            told.add((path, line))
+            findings.error(
+                f"the factor {name} has " + ("a level that is not listed" if value else "no value"),
+                path=path or shown[int(trials.seen.file[row])],
+                line=line,
+                where=f'column "{name}"',
+                found=value or None,
+                expected=("one of " + ", ".join(stated)) if stated else "a level",
+                fix="correct the cell"
+                + (", or add the level to [trials] levels" if value else "")
+                + "; trials that are no part of the study belong in [trials] skip",
+            )
+        levels[name] = tuple(sorted(found)) if stated is None else tuple(stated)
         for level in levels[name]:
-            if level not in found and found:
+            if found and level not in found:
                 findings.warning(
                     f"the level {level} of {name} occurs in no trial",
                     path=plan.study.shown,
@@ -239,50 +201,50 @@ def _levels(
     return levels
 
 
-def _notice_what_is_missing(plan: Plan, trials: _Trials, findings: Findings) -> None:
+def _notice_what_is_missing(plan: Plan, seen: SeenTrials, findings: Findings) -> None:
     """Warn of trials of the list, and readers of the table, that no log has."""
     book = plan.facts
-    seen = {participant: own.keys() for participant, own in trials.seen.items()}
     if book.trial_list is not None:
-        for spelled, line in book.unrecorded(seen):
+        for row in book.unrecorded(seen):
             findings.warning(
                 "the trial is in the list but in no log",
                 path=book.trial_list.shown,
-                line=line,
-                found=spelled,
+                line=int(book.trial_list.lines[row]),
+                found=book.trial_list.spelled(row),
             )
     if book.participants is not None:
-        for (participant,) in book.participants.rows:
-            if participant not in trials.seen:
-                findings.warning(
-                    "the reader is in the table but in no log",
-                    path=book.participants.shown,
-                    line=book.participants.lines[(participant,)],
-                    found=participant,
-                )
+        readers = book.participants.columns["participant"]
+        for row in np.flatnonzero(~readers.among(seen.ids["participant"].values)).tolist():
+            findings.warning(
+                "the reader is in the table but in no log",
+                path=book.participants.shown,
+                line=int(book.participants.lines[row]),
+                found=readers.text(row),
+            )
 
 
 def _design(
     plan: Plan,
-    trials: _Trials,
-    kept: list[KnownTrial],
+    trials: KnownTrials,
+    in_study: NDArray[np.bool_],
     levels: dict[str, tuple[str, ...]],
 ) -> TableDesign:
     """What all tables of the study have in common."""
     study = plan.study
-    every = [trial for own in trials.known.values() for trial in own]
-    place = {name: i for i, name in enumerate(plan.facts.names)}
-    ids = {"participant": IdColumn.of(trials.seen)}
-    sessions = {trial.session for trial in every}
-    if sessions != {""}:
-        ids["session"] = IdColumn.of(sessions)
-    ids["trial"] = IdColumn.of(trial.trial for trial in every)
-    ids["item"] = IdColumn.of(trial.item for trial in every if trial.item)
+    known = trials.known
+    ids = {
+        name: IdColumn.of(_present(known[name]) if name in known else ())
+        for name in IDS
+        if name in known or name == "item"
+    }
     chosen = [MEASURES[name] for name in select(study.measures.outcomes)]
     return TableDesign(
         ids,
         levels,
-        {name: _type_of(t.facts[place[name]] for t in kept) for name in study.trials.covariates},
+        {
+            name: _covariate(_present(known[name].take(in_study)))
+            for name in study.trials.covariates
+        },
         plan.library.region_names,
         tuple(_measure_column(m) for m in chosen),
         tuple(_measure_column(m) for m in TRIAL_MEASURES.values()),
@@ -292,16 +254,74 @@ def _design(
     )
 
 
-def _type_of(texts: Iterable[str]) -> Literal["text", "number"]:
-    """Number where every value that is there is one."""
-    present = {text for text in texts if text}
-    for text in present:
-        try:
-            if not math.isfinite(float(text)):
-                return "text"
-        except ValueError:
-            return "text"
-    return "number" if present else "text"
+def _present(column: Coded) -> tuple[str, ...]:
+    """The texts that occur in a column."""
+    return tuple(column.values[code] for code in np.unique(column.codes).tolist() if code >= 0)
+
+
+def _covariate(texts: tuple[str, ...]) -> CovariateColumn:
+    """Numbers where every value that is there is one."""
+    try:
+        if texts and all(math.isfinite(float(text)) for text in texts):
+            return CovariateColumn("number")
+    except ValueError:
+        pass
+    return CovariateColumn("text", tuple(sorted(texts)))
+
+
+def _tasks(
+    design: TableDesign,
+    trials: KnownTrials,
+    looked_up: tuple[NDArray[np.int32], NDArray[np.bool_]],
+    parts: dict[str, list[tuple[Path, int, int]]],
+) -> list[ReaderTask]:
+    """The readers with their trials in the order of the tables; readers with a problem left out."""
+    text, good = looked_up
+    known = trials.known
+    length = len(trials)
+    ids = {
+        name: known[name].recoded(design.ids[name].values)
+        if name in known
+        else np.full(length, -1, dtype=np.int32)
+        for name in design.ids
+    }
+    covariates: dict[str, NDArray[np.float64] | NDArray[np.int32]] = {}
+    for name, covariate in design.covariates.items():
+        column = known[name]
+        if covariate.type == "number":
+            # Values of skipped trials need not be numbers; they are not carried along.
+            present = set(_present(column.take(text >= 0)))
+            numbers = [float(v) if v in present else np.nan for v in column.values]
+            covariates[name] = np.array([*numbers, np.nan])[column.codes]
+        else:
+            covariates[name] = column.recoded(covariate.values)
+    columns = TrialColumns(
+        ids,
+        {name: known[name].recoded(levels) for name, levels in design.factors.items()},
+        covariates,
+        text,
+    )
+    keys = [ids[name] for name in ("trial", "session", "participant") if name in ids]
+    order = np.lexsort(keys)
+    readers = ids["participant"][order]
+    starts = np.flatnonzero(np.diff(readers, prepend=-1))
+    stops = np.append(starts[1:], length)
+    tasks = []
+    for start, stop in zip(starts.tolist(), stops.tolist(), strict=True):
+        rows = order[start:stop]
+        if not good[rows].all():
+            continue
+        participant = design.ids["participant"].values[int(readers[start])]
+        own = parts[participant]
+        tasks.append(
+            ReaderTask(
+                participant,
+                tuple((path, batch) for path, batch, _ in own),
+                tuple(number for _, _, number in own),
+                columns.take(rows),
+            )
+        )
+    return tasks
 
 
 def _measure_column(measure: Measure) -> MeasureColumn:

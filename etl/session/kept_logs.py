@@ -15,7 +15,8 @@ import numpy as np
 import pyarrow as pa
 from numpy.typing import NDArray
 
-from etl.parsers import CanonicalLog, Coded
+from etl.files import Coded
+from etl.parsers import CanonicalLog
 
 _NUMBERS = ("onset_ms", "number", "duration_ms", "x_px", "y_px")
 
@@ -36,7 +37,8 @@ def keep_log(log: CanonicalLog, path: Path) -> dict[str, int]:
         For each reader, the number of the batch that holds the fixations.
     """
     participant = log.ids["participant"]
-    coded = {**log.ids, **{f"fact {name}": facts for name, facts in log.facts.items()}}
+    # What is known about trials is gathered apart; only which trial it is must stay with each row.
+    coded = {name: column for name, column in log.ids.items() if name != "item"}
     if log.label is not None:
         coded["label"] = log.label
     columns = {name: pa.array(column.codes) for name, column in coded.items()}
@@ -83,13 +85,11 @@ def _one(path: Path, batch: int) -> CanonicalLog:
             name: columns.column(i).to_numpy(zero_copy_only=False)
             for i, name in enumerate(columns.schema.names)
         }
-    coded = {name: Coded(arrays[name], tuple(texts)) for name, texts in values.items()}
-    label = coded.pop("label", None)
-    facts = {n.removeprefix("fact "): c for n, c in coded.items() if n.startswith("fact ")}
-    ids = {name: column for name, column in coded.items() if not name.startswith("fact ")}
+    ids = {name: Coded(arrays[name], tuple(texts)) for name, texts in values.items()}
+    label = ids.pop("label", None)
     return CanonicalLog(
         ids=ids,
-        facts=facts,
+        facts={},
         label=label,
         source_line=arrays["source_line"],
         **{name: arrays[name] for name in _NUMBERS},
@@ -101,23 +101,11 @@ def _joined(logs: Sequence[CanonicalLog]) -> CanonicalLog:
     first = logs[0]
     label = None
     if first.label is not None:
-        label = _joined_codes([log.label for log in logs if log.label is not None])
+        label = Coded.joined([log.label for log in logs if log.label is not None])
     return CanonicalLog(
-        ids={name: _joined_codes([log.ids[name] for log in logs]) for name in first.ids},
-        facts={name: _joined_codes([log.facts[name] for log in logs]) for name in first.facts},
+        ids={name: Coded.joined([log.ids[name] for log in logs]) for name in first.ids},
+        facts={},
         label=label,
         source_line=np.concatenate([log.source_line for log in logs]),
         **{n: np.concatenate([getattr(log, n) for log in logs]) for n in _NUMBERS},
     )
-
-
-def _joined_codes(parts: Sequence[Coded]) -> Coded:
-    """Coded columns under one list of texts."""
-    known: dict[str, int] = {}
-    codes = []
-    for part in parts:
-        new = np.array(
-            [*(known.setdefault(text, len(known)) for text in part.values), -1], dtype=np.int32
-        )
-        codes.append(new[part.codes])
-    return Coded(np.concatenate(codes), tuple(known))

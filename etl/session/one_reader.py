@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -15,13 +15,13 @@ from etl.export.rows import (
     FixationColumns,
     RegressionColumns,
     RowMaker,
+    TrialColumns,
 )
 from etl.measures import NoOpportunity, Outcomes, Outside, Sequences, compute
 from etl.parsers import CanonicalLog
 from etl.regions import Assigned, RegionLibrary
-from etl.session.ordering import OrderedFixations, ReaderLog, order_fixations
+from etl.session.ordering import OrderedFixations, ReaderLog, TrialNames, order_fixations
 from etl.tables import TableDesign
-from etl.trials import KnownTrial
 
 #: What leaves a fixation out, in the order of :attr:`TableDesign.left_out_by`.
 SKIP, REPEATED = 0, 1
@@ -49,14 +49,14 @@ class Reader:
         The fixations, in the order of the logs.
     file : (n,) int32 array
         Index of each fixation's log into the study's logs.
-    trials : tuple of KnownTrial
+    trials : TrialColumns
         The trials that were recorded, in the order of the tables.
     """
 
     participant: str
     log: CanonicalLog
     file: NDArray[np.int32]
-    trials: tuple[KnownTrial, ...]
+    trials: TrialColumns
 
 
 @dataclass(slots=True)
@@ -76,8 +76,6 @@ class Bench:
     ----------
     design : TableDesign
         The tables of the study.
-    facts : tuple of str
-        Names of the facts of a trial, in its order.
     library : RegionLibrary
         Its texts.
     options : Options
@@ -87,19 +85,28 @@ class Bench:
     def __init__(
         self,
         design: TableDesign,
-        facts: tuple[str, ...],
         library: RegionLibrary,
         options: Options,
     ) -> None:
         self.design = design
         self.library = library
         self.options = options
-        self.rows = RowMaker(design, facts)
+        self.rows = RowMaker(design)
 
     def ordered(self, reader: Reader, findings: Findings) -> tuple[ReaderLog, OrderedFixations]:
         """The reader's fixations in time order."""
-        log = ReaderLog(reader.log, reader.file, self.design.files, _trial_of(reader))
-        return log, order_fixations(log, reader.trials, self.options.repeated, findings)
+        trial = _trial_of(reader, self.design)
+        log = ReaderLog(reader.log, reader.file, self.design.files, trial)
+        trials = TrialNames(reader.trials.text >= 0, lambda t: self._spelled(reader.trials, t))
+        return log, order_fixations(log, trials, self.options.repeated, findings)
+
+    def _spelled(self, trials: TrialColumns, index: int) -> str:
+        """A trial in words, for messages."""
+        return ", ".join(
+            f"{name} {self.design.ids[name].values[int(trials.ids[name][index])]}"
+            for name in ("trial", "session")
+            if name in self.design.ids
+        )
 
     def tables(self, reader: Reader) -> ReaderTables:
         """Compute all rows of one reader.
@@ -120,7 +127,7 @@ class Bench:
             return ReaderTables(reader.participant, {}, {}, findings)
         in_order = bool((ordered.rows[1:] > ordered.rows[:-1]).all())
         log = reader.log if in_order else reader.log.take(ordered.rows)
-        texts = np.array([trial.text for trial in reader.trials], dtype=np.int64)
+        texts = reader.trials.text.astype(np.int64)
         text = texts[ordered.trial]
         skipped = text < 0
         left_out_by = np.where(skipped, SKIP, np.where(ordered.repeated, REPEATED, -1))
@@ -140,8 +147,8 @@ class Bench:
             outside=self.options.outside,
             no_opportunity=self.options.no_opportunity,
         )
-        ids = self.rows.ids(reader.participant, reader.trials)
-        own = self.rows.facts(ids, [reader.trials[t] for t in in_study.tolist()], in_study)
+        every = len(in_study) == len(texts)
+        own = self.rows.facts(reader.trials if every else reader.trials.take(in_study))
         batches = self._outcome_rows(own, texts[in_study], outcomes)
         code = np.full(len(order), -1, dtype=np.int32)
         inside = order > 0
@@ -153,7 +160,7 @@ class Bench:
         )
         visit, first_pass = _spread(outcomes, kept, len(order))
         batches["fixations"] = self.rows.fixations(
-            ids,
+            own if every else self.rows.ids(reader.trials),
             FixationColumns(
                 ordered.trial,
                 ordered.number,
@@ -256,25 +263,22 @@ class Bench:
         )
 
 
-def _trial_of(reader: Reader) -> NDArray[np.int64]:
+def _trial_of(reader: Reader, design: TableDesign) -> NDArray[np.int64]:
     """Index of each fixation's trial into the reader's trials."""
-    trial = reader.log.ids["trial"]
-    session = reader.log.ids.get("session")
-    index = {(t.session, t.trial): i for i, t in enumerate(reader.trials)}
-    if session is None:
-        table = np.array([index.get(("", text), -1) for text in trial.values], dtype=np.int64)
-        return table[trial.codes]
-    width = len(trial.values)
-    pairs = session.codes.astype(np.int64) * width + trial.codes
-    present, inverse = np.unique(pairs, return_inverse=True)
-    table = np.array(
-        [
-            index.get((session.values[pair // width], trial.values[pair % width]), -1)
-            for pair in present.tolist()
-        ],
-        dtype=np.int64,
-    )
-    return table[inverse]
+    ids, own = reader.log.ids, reader.trials.ids
+
+    def places(name: str) -> NDArray[np.int64]:
+        ranks = design.ids[name].ranks
+        table = np.array([ranks[text] for text in ids[name].values], dtype=np.int64)
+        return table[ids[name].codes]
+
+    keys, wanted = own["trial"].astype(np.int64), places("trial")
+    if "session" in ids:
+        width = len(design.ids["trial"].values)
+        keys = keys + own["session"] * width
+        wanted += places("session") * width
+    # The trials are sorted by session and trial, so their keys ascend.
+    return np.searchsorted(keys, wanted).astype(np.int64)
 
 
 def _spread(
@@ -286,12 +290,3 @@ def _spread(
     visit[kept] = outcomes.visit
     first_pass[kept] = outcomes.first_pass
     return visit, first_pass
-
-
-def sorted_trials(trials: Sequence[KnownTrial], design: TableDesign) -> tuple[KnownTrial, ...]:
-    """A reader's trials in the order of the tables: by session, then trial."""
-    trial_rank = design.ids["trial"].ranks
-    if "session" not in design.ids:
-        return tuple(sorted(trials, key=lambda t: trial_rank[t.trial]))
-    session_rank = design.ids["session"].ranks
-    return tuple(sorted(trials, key=lambda t: (session_rank[t.session], trial_rank[t.trial])))

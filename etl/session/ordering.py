@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -10,7 +10,6 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.parsers import CanonicalLog
-from etl.trials import KnownTrial
 
 #: How far a fixation may reach into the next one. Onset and duration are each rounded to a
 #: millisecond and recorders differ in whether the last sample counts (common practice, no source).
@@ -43,6 +42,22 @@ class OrderedFixations:
 
 
 @dataclass(frozen=True, slots=True)
+class TrialNames:
+    """The trials of a reader, for messages.
+
+    Attributes
+    ----------
+    in_study : (trials,) bool array
+        Whether each is part of the study.
+    spelled : callable
+        From a trial's index to its name, such as ``trial 7, session 2``.
+    """
+
+    in_study: NDArray[np.bool_]
+    spelled: Callable[[int], str]
+
+
+@dataclass(frozen=True, slots=True)
 class ReaderLog:
     """The log of one reader.
 
@@ -69,7 +84,7 @@ class ReaderLog:
 
 
 def order_fixations(
-    reader: ReaderLog, trials: Sequence[KnownTrial], repeated: str, findings: Findings
+    reader: ReaderLog, trials: TrialNames, repeated: str, findings: Findings
 ) -> OrderedFixations:
     """Bring a reader's fixations into time order and find trials that were recorded twice.
 
@@ -77,7 +92,7 @@ def order_fixations(
     ----------
     reader : ReaderLog
         The fixations as logged.
-    trials : sequence of KnownTrial
+    trials : TrialNames
         The reader's trials, in the order of the tables.
     repeated : {"error", "first", "last"}
         What is done with a trial that was recorded more than once.
@@ -231,7 +246,7 @@ def _ms(time_ms: np.float64) -> str:
 
 def _recordings_set_aside(
     reader: ReaderLog,
-    trials: Sequence[KnownTrial],
+    trials: TrialNames,
     ordered: tuple[NDArray[np.int64], NDArray[np.int64], NDArray[np.bool_]],
     repeated: str,
     findings: Findings,
@@ -241,11 +256,10 @@ def _recordings_set_aside(
     which = np.cumsum(begins_recording) - 1
     aside = np.zeros(len(rows), dtype=bool)
     trial_of_recording = trial[begins_recording]
-    recordings_of = np.bincount(trial_of_recording, minlength=len(trials))
+    recordings_of = np.bincount(trial_of_recording, minlength=len(trials.in_study))
     for index in np.flatnonzero(recordings_of > 1).tolist():
-        known = trials[index]
         own = np.flatnonzero(trial_of_recording == index)
-        if known.skipped_by:
+        if not trials.in_study[index]:
             continue
         if repeated == "error":
             starts = np.flatnonzero(begins_recording)[own]
@@ -255,8 +269,7 @@ def _recordings_set_aside(
                 "a trial is recorded a second time",
                 path=shown,
                 line=line,
-                found=f"trial {known.trial}"
-                + (f", session {known.session}" if known.session else ""),
+                found=trials.spelled(index),
                 expected=f"one recording of each trial; the first begins in {first[0]}:{first[1]}",
                 fix='say which counts by [trials] repeated = "first" or "last", or tell the two '
                 "apart by a session",

@@ -15,9 +15,8 @@ from etl.parsers import LogReader
 from etl.regions import RegionLibrary, read_definitions
 from etl.study import Study
 from etl.tables import BARE_DESIGN, TABLES
-from etl.trials import FactBook, gather_facts
+from etl.trials import IDS, FactBook, gather_facts
 from etl.trials.facts import shown_path
-from etl.trials.joining import IDS
 
 
 @dataclass(frozen=True)

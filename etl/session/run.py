@@ -198,7 +198,7 @@ def _finish(
 ) -> Iterable[ReaderTables]:
     """Work on one reader after the other."""
     arguments = (
-        (gathered.design, plan.facts.names, plan.library, gathered.options),
+        (gathered.design, plan.library, gathered.options),
         write,
     )
     finished = map_tasks(make_reader_work, arguments, gathered.tasks, workers)

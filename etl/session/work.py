@@ -13,12 +13,13 @@ from typing import Any, TypeVar
 import numpy as np
 
 from etl.errors import Findings
+from etl.export.rows import TrialColumns
 from etl.parsers import LogReader
 from etl.parsers.canonical import LogNote
 from etl.session.kept_logs import keep_log, kept_log
 from etl.session.one_reader import Bench, Reader, ReaderTables
 from etl.session.seen import seen_trials
-from etl.trials import KnownTrial, SeenTrial
+from etl.trials import SeenTrials
 
 Task = TypeVar("Task")
 Answer = TypeVar("Answer")
@@ -39,7 +40,7 @@ class LogAnswer:
 
     note: LogNote
     batches: dict[str, int] = field(default_factory=dict)
-    trials: list[SeenTrial] = field(default_factory=list)
+    trials: SeenTrials | None = None
     durations_ms: tuple[float, float] = (0.0, 0.0)
     findings: Findings = field(default_factory=Findings)
 
@@ -51,7 +52,7 @@ class ReaderTask:
     participant: str
     parts: tuple[tuple[Path, int], ...]
     files: tuple[int, ...]
-    trials: tuple[KnownTrial, ...]
+    trials: TrialColumns
 
 
 class LogWork:

@@ -2,14 +2,16 @@
 
 from __future__ import annotations
 
-import unicodedata
 from collections.abc import Collection, Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, replace
 from difflib import get_close_matches
 from pathlib import Path
 
+import numpy as np
+from numpy.typing import NDArray
+
 from etl.errors import Findings
-from etl.files import read_cells
+from etl.files import Cells, Coded, group_rows, place_rows, read_cells
 
 
 @dataclass(frozen=True, slots=True)
@@ -24,30 +26,32 @@ class FactTable:
         Digest of the file.
     keys : tuple of str
         What joins it to the trials, by canonical name (``participant``) or fact.
-    columns : tuple of str
+    columns : dict of str to Coded
         The facts it holds, keys included, by canonical name where they have one.
-    rows : dict of tuple of str to tuple of str
-        Key values to the whole row, in the order of ``columns``.
-    lines : dict of tuple of str to int
-        Key values to the line in the file.
+    lines : (rows,) int32 array
+        The line of each row in the file.
     """
 
     shown: str
     sha256: str
     keys: tuple[str, ...]
-    columns: tuple[str, ...]
-    rows: dict[tuple[str, ...], tuple[str, ...]]
-    lines: dict[tuple[str, ...], int]
-    _place: dict[str, int] = field(default_factory=dict)
+    columns: dict[str, Coded]
+    lines: NDArray[np.int32]
 
-    def value(self, key: tuple[str, ...], name: str) -> str:
-        """One fact of the row with these key values."""
-        return self.rows[key][self._place[name]]
+    def find(self, known: Mapping[str, Coded]) -> NDArray[np.int64]:
+        """The row for each trial, by what is known of the trials; -1 where there is none."""
+        length = len(next(iter(known.values())))
+        wanted = [known.get(key, Coded.absent(length)) for key in self.keys]
+        return place_rows(wanted, [self.columns[key] for key in self.keys])
 
-    def values(self, name: str) -> list[str]:
-        """One column, in the order of the file."""
-        place = self._place[name]
-        return [row[place] for row in self.rows.values()]
+    def only(self, names: Collection[str]) -> FactTable:
+        """The table with its keys and some other columns: what else it holds is let go."""
+        kept = {n: c for n, c in self.columns.items() if n in names or n in self.keys}
+        return replace(self, columns=kept)
+
+    def spelled(self, row: int) -> str:
+        """The key of a row, for messages."""
+        return ", ".join(f"{key} {self.columns[key].text(row)}" for key in self.keys)
 
 
 def read_fact_table(
@@ -58,7 +62,7 @@ def read_fact_table(
     missing: Collection[str],
     findings: Findings,
 ) -> FactTable | None:
-    """Read a table of facts and index it by its keys.
+    """Read a table of facts.
 
     Parameters
     ----------
@@ -72,7 +76,7 @@ def read_fact_table(
         The logs' own header for a canonical name. A lab often uses its header in every file, so
         a table without a column ``participant`` is read by that header.
     missing : collection of str
-        Cells that stand for no value; kept as an empty text.
+        Cells that stand for no value.
     findings : Findings
         Where problems are recorded.
 
@@ -86,70 +90,74 @@ def read_fact_table(
     if cells is None:
         return None
     canonical = {header: name for name, header in synonyms.items() if name not in cells.header}
-    columns = tuple(canonical.get(name, name) for name in cells.header)
+    names = {canonical.get(header, header): header for header in cells.header if header}
     for name in keys:
-        if name not in columns:
-            listed = [n for n in cells.header if n]
-            near = get_close_matches(name, listed, n=1)
-            header = synonyms.get(name)
-            also = f' (or "{header}", as in the logs)' if header and header != name else ""
-            findings.error(
-                f'there is no column "{name}"',
-                path=shown,
-                line=cells.header_line,
-                found=", ".join(listed),
-                expected=f'a column "{name}"{also} to join the table by',
-                fix=(f'did you mean "{near[0]}"? Rename' if near else "rename")
-                + " the column, or correct the keys in the study file",
-            )
+        if name not in names:
+            _tell_missing_column(name, cells, synonyms, findings)
     if findings.count("error") > before:
         return None
-    absent = frozenset(mark.strip() for mark in missing) | {""}
-    texts = [
-        _composed(cells.texts(name), absent) if name else [""] * len(cells) for name in cells.header
-    ]
-    place = {name: i for i, name in enumerate(columns)}
-    rows: dict[tuple[str, ...], tuple[str, ...]] = {}
-    lines: dict[tuple[str, ...], int] = {}
-    for line, row in zip(cells.lines.tolist(), zip(*texts, strict=True), strict=True):
-        key = tuple(row[place[name]] for name in keys)
-        for name, text in zip(keys, key, strict=True):
-            if not text:
-                findings.error(
-                    f"the {name} is missing",
-                    path=shown,
-                    line=line,
-                    where=f'column "{cells.header[place[name]]}"',
-                    expected="a value to join the row by",
-                    fix="fill in the cell, or remove the row",
-                )
-        if key in rows and all(key):
-            findings.error(
-                f"two rows have the same {' and '.join(keys)}",
-                path=shown,
-                line=line,
-                found=", ".join(f"{name} {text}" for name, text in zip(keys, key, strict=True)),
-                expected=f"one row for each; line {lines[key]} holds the other",
-                fix="remove one of the two rows"
-                + (", or add a column to [trials] keys" if len(keys) > 1 else ""),
-            )
-        rows.setdefault(key, row)
-        lines.setdefault(key, line)
-    if not rows:
+    if not len(cells):
         findings.error(
             "the table has a header but no row",
             path=shown,
             line=cells.header_line,
             fix="fill the table, or take it out of the study file",
         )
-    if findings.count("error") > before:
         return None
-    return FactTable(shown, cells.text.sha256, keys, columns, rows, lines, place)
+    absent = frozenset(mark.strip() for mark in missing) | {""}
+    columns = {name: Coded.of(cells.column(header), absent) for name, header in names.items()}
+    table = FactTable(shown, cells.text.sha256, keys, columns, cells.lines)
+    _check_keys(table, names, findings)
+    return None if findings.count("error") > before else table
 
 
-def _composed(texts: list[str], absent: Collection[str]) -> list[str]:
-    """Cells in Unicode NFC, missing marks as empty texts."""
-    distinct = {
-        text: "" if text in absent else unicodedata.normalize("NFC", text) for text in set(texts)
-    }
-    return [distinct[text] for text in texts]
+def _tell_missing_column(
+    name: str, cells: Cells, synonyms: Mapping[str, str], findings: Findings
+) -> None:
+    """Record that a table lacks a column it is to be joined by."""
+    listed = [header for header in cells.header if header]
+    near = get_close_matches(name, listed, n=1)
+    header = synonyms.get(name)
+    also = f' (or "{header}", as in the logs)' if header and header != name else ""
+    findings.error(
+        f'there is no column "{name}"',
+        path=cells.shown,
+        line=cells.header_line,
+        found=", ".join(listed),
+        expected=f'a column "{name}"{also} to join the table by',
+        fix=(f'did you mean "{near[0]}"? Rename' if near else "rename")
+        + " the column, or correct the keys in the study file",
+    )
+
+
+def _check_keys(table: FactTable, headers: Mapping[str, str], findings: Findings) -> None:
+    """Every row needs its key, and no two may have the same."""
+    keys = [table.columns[name] for name in table.keys]
+    complete = np.ones(len(table.lines), dtype=bool)
+    problems: list[tuple[int, str | None]] = []
+    for name, column in zip(table.keys, keys, strict=True):
+        complete &= column.codes >= 0
+        problems += [(row, name) for row in np.flatnonzero(column.codes < 0).tolist()]
+    first, group = group_rows(keys)
+    again = np.flatnonzero(complete & (first[group] != np.arange(len(group))))
+    problems += [(row, None) for row in again.tolist()]
+    for row, lacking in sorted(problems, key=lambda problem: problem[0]):
+        if lacking is not None:
+            findings.error(
+                f"the {lacking} is missing",
+                path=table.shown,
+                line=int(table.lines[row]),
+                where=f'column "{headers[lacking]}"',
+                expected="a value to join the row by",
+                fix="fill in the cell, or remove the row",
+            )
+            continue
+        findings.error(
+            f"two rows have the same {' and '.join(table.keys)}",
+            path=table.shown,
+            line=int(table.lines[row]),
+            found=table.spelled(row),
+            expected=f"one row for each; line {table.lines[first[group[row]]]} holds the other",
+            fix="remove one of the two rows"
+            + (", or add a column to [trials] keys" if len(keys) > 1 else ""),
+        )

@@ -3,88 +3,51 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Collection, Iterable, Mapping
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field
-from functools import cached_property
+from difflib import get_close_matches
 from pathlib import Path
-from typing import TYPE_CHECKING, NamedTuple
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import NDArray
 
 from etl.errors import Findings
+from etl.files import Coded, group_rows, place_rows
 from etl.trials.fact_tables import FactTable, read_fact_table
-from etl.trials.joining import IDS, Join
+from etl.trials.seen import IDS, SeenTrials
 from etl.trials.sources import check_ids, find_sources
 
 if TYPE_CHECKING:
     from etl.study import Study
 
 
-class SeenTrial(NamedTuple):
-    """A trial as one log shows it.
-
-    Tuples of texts are no burden to the garbage collector, however many trials there are.
-
-    Attributes
-    ----------
-    participant, session, trial, item : str
-        Its identity; ``session`` and ``item`` are empty where the log has none.
-    facts : tuple of str
-        Facts that stand in the log, in the order of :attr:`FactBook.from_log`.
-    shown : str
-        The log.
-    line : int
-        The first line of the trial in that log.
-    """
-
-    participant: str
-    session: str
-    trial: str
-    item: str
-    facts: tuple[str, ...]
-    shown: str
-    line: int
-
-
-class KnownTrial(NamedTuple):
-    """A trial with all that is known about it.
+@dataclass(frozen=True, slots=True)
+class KnownTrials:
+    """Trials with all that is known about them, one row a trial.
 
     Attributes
     ----------
-    session, trial, item : str
-        Its identity within its reader.
-    facts : tuple of str
-        Every fact that the study uses, in the order of :attr:`FactBook.names`; empty texts where
-        unknown.
-    text : int
-        Its text among the study's texts; -1 where it is no part of the study or not yet known.
-    skipped_by : str
-        The fact by which the trial is no part of the study (``block``), or empty.
-    shown, line : str, int
-        Where it was first seen.
+    seen : SeenTrials
+        Where and how the logs show them.
+    known : dict of str to Coded
+        Identifiers and facts, by name.
+    skipped : (trials,) bool array
+        Whether the trial is no part of the study.
+    good : (trials,) bool array
+        Whether all that must be known of the trial is known.
     """
 
-    session: str
-    trial: str
-    item: str
-    facts: tuple[str, ...]
-    text: int
-    skipped_by: str
-    shown: str
-    line: int
+    seen: SeenTrials
+    known: dict[str, Coded]
+    skipped: NDArray[np.bool_]
+    good: NDArray[np.bool_]
+
+    def __len__(self) -> int:
+        return len(self.seen)
 
 
-class Facts(NamedTuple):
-    """What is known of a trial, by name, and the fact by which it is skipped, or empty."""
-
-    identity: dict[str, str]
-    facts: dict[str, str]
-    skipped_by: str
-
-    def get(self, name: str) -> str:
-        """One fact or identifier; empty where unknown."""
-        return self.identity.get(name) or self.facts.get(name, "")
-
-
-@dataclass(frozen=True)
+@dataclass(frozen=True, slots=True)
 class FactBook:
     """The tables of a study and where each fact comes from.
 
@@ -108,11 +71,6 @@ class FactBook:
     from_log: tuple[str, ...]
     skip: dict[str, tuple[str, ...]] = field(default_factory=dict)
 
-    @cached_property
-    def names(self) -> tuple[str, ...]:
-        """The facts that the study uses, in the order in which a trial has them."""
-        return tuple(self.sources)
-
     def known_facts(self) -> frozenset[str]:
         """What is known of a trial before its text is looked up."""
         own = {name for name, source in self.sources.items() if source != "regions"}
@@ -122,116 +80,147 @@ class FactBook:
         """The tables there are."""
         return [t for t in (self.trial_list, self.participants, self.items) if t is not None]
 
-    def know(self, seen: SeenTrial, findings: Findings) -> Facts | None:
-        """Join all that is known about one trial.
+    def know(self, seen: SeenTrials, shown: Sequence[str], findings: Findings) -> KnownTrials:
+        """Join all that is known about trials.
 
-        Returns None, with a finding, where a table has no row for a trial that belongs to the
-        study, or where log and trial list name different items.
+        Parameters
+        ----------
+        seen : SeenTrials
+            The trials of the logs.
+        shown : sequence of str
+            The names of the logs, for messages.
+        findings : Findings
+            Where trials of the study without a row in a table are recorded, and trials for which
+            log and table name different items.
+
+        Returns
+        -------
+        KnownTrials
         """
-        facts = dict(zip(self.from_log, seen.facts, strict=True))
-        identity = {"participant": seen.participant, "trial": seen.trial}
-        if seen.session:
-            identity["session"] = seen.session
-        if seen.item:
-            identity["item"] = seen.item
-        place = (seen.shown, seen.line)
-        absent = []
-        good = True
-        for join in self._joins:
-            row = join.row(identity, facts)
-            if row is None:
-                absent.append(join)
-            else:
-                good &= join.take(row, identity, facts, place, findings)
-        skipped_by = ""
+        known = {**seen.ids, **seen.facts}
+        good = np.ones(len(seen), dtype=bool)
+        missing: list[tuple[FactTable, NDArray[np.bool_]]] = []
+        for source, table in (
+            ("participants", self.participants),
+            ("trials", self.trial_list),
+            ("items", self.items),
+        ):
+            if table is None:
+                continue
+            rows = table.find(known)
+            missing.append((table, rows < 0))
+            for name in (n for n, origin in self.sources.items() if origin == source):
+                known[name] = _looked_up(table.columns[name], rows)
+            if "item" in table.columns and "item" not in table.keys:
+                good &= self._agree_on_item(known, table, rows, (seen, shown), findings)
+        skipped = np.zeros(len(seen), dtype=bool)
         for name, values in self.skip.items():
-            # A fact of a table without a row for the trial is unknown, and nothing is skipped by
-            # that; an identifier that the trial does not have is an empty text.
-            if (identity.get(name) or facts.get(name, "" if name in IDS else None)) in values:
-                skipped_by = name
-                break
-        # A trial that is no part of the study, such as one for practice, may stand in no table.
-        if absent and not skipped_by:
-            good = False
-            # The item of a trial may have to come from the very list that has no row for it.
-            for join in absent[:1] if "item" not in identity else absent:
-                self._tell_absent(join, join.key(identity, facts), place, findings)
-        return Facts(identity, facts, skipped_by) if good else None
+            if name in known:
+                skipped |= known[name].among(values)
+        for table, absent in missing:
+            # A practice trial need not stand in any table.
+            lacking = absent & ~skipped
+            good &= ~lacking
+            rows = np.flatnonzero(lacking)
+            if rows.size:
+                # A reader or an item that is not in its table is told once, not for every trial.
+                keys = [known[key].take(rows) for key in table.keys if key in known]
+                for row in rows[np.sort(group_rows(keys)[0])].tolist():
+                    _tell_missing_row(table, known, row, (seen, shown), findings)
+        return KnownTrials(seen, known, skipped, good | skipped)
 
-    def _tell_absent(
-        self, join: Join, key: tuple[str, ...], place: tuple[str, int], findings: Findings
-    ) -> None:
-        """Record that a table has no row for a trial; once for each reader or item."""
-        if (join.table.shown, key) not in self._told:
-            self._told.add((join.table.shown, key))
-            join.tell_absent(key, place, findings)
-
-    @cached_property
-    def _told(self) -> set[tuple[str, tuple[str, ...]]]:
-        """The missing rows that have been reported."""
-        return set()
-
-    @cached_property
-    def _joins(self) -> tuple[Join, ...]:
-        """The tables that are joined to every trial, in the order in which they are."""
-        return tuple(
-            Join.of(table, self._facts_from(source))
-            for source, table in (
-                ("participants", self.participants),
-                ("trials", self.trial_list),
-                # The trial list may say which item was shown.
-                ("items", self.items),
+    def _agree_on_item(
+        self,
+        known: dict[str, Coded],
+        table: FactTable,
+        rows: NDArray[np.int64],
+        place: tuple[SeenTrials, Sequence[str]],
+        findings: Findings,
+    ) -> NDArray[np.bool_]:
+        """Take the item from a table; where the log has one too, say whether they agree."""
+        theirs = _looked_up(table.columns["item"], rows)
+        own = known.get("item")
+        if own is None:
+            known["item"] = theirs
+            return np.ones(len(rows), dtype=bool)
+        both = Coded.joined([own, theirs])
+        mine, other = both.codes[: len(rows)], both.codes[len(rows) :]
+        known["item"] = Coded(np.where(mine >= 0, mine, other), both.values)
+        clash: NDArray[np.bool_] = (mine >= 0) & (other >= 0) & (mine != other)
+        seen, shown = place
+        for row in np.flatnonzero(clash).tolist():
+            findings.error(
+                f"the log and {table.shown} name different items",
+                path=shown[int(seen.file[row])],
+                line=int(seen.line[row]),
+                found=own.text(row),
+                expected=f'"{theirs.text(row)}" as in {table.shown}:{table.lines[rows[row]]}',
+                fix="correct one of the two, or take item out of [logs.columns]",
             )
-            if table is not None
-        )
+        agreed: NDArray[np.bool_] = ~clash
+        return agreed
 
-    def _facts_from(self, source: str) -> tuple[str, ...]:
-        """The facts that come from one source."""
-        return tuple(name for name, origin in self.sources.items() if origin == source)
-
-    def origin(self, name: str, participant: str, trial: KnownTrial) -> tuple[str, int]:
-        """File and line from which a trial has a fact: a row of a table, or the trial's log."""
+    def origin(self, name: str, trials: KnownTrials, row: int) -> tuple[str | None, int]:
+        """File and line from which a trial has a fact; None for the trial's own log."""
         table = {
             "trials": self.trial_list,
             "participants": self.participants,
             "items": self.items,
         }.get(self.sources.get(name, ""))
-        if table is None:
-            return trial.shown, trial.line
-        known = dict(zip(self.names, trial.facts, strict=True))
-        ids = (participant, trial.session, trial.trial, trial.item)
-        known |= dict(zip(IDS, ids, strict=True))
-        key = tuple(known.get(n, "") for n in table.keys)
-        return table.shown, table.lines.get(key, 1)
+        if table is not None:
+            one = {key: column.take(np.array([row])) for key, column in trials.known.items()}
+            at = int(table.find(one)[0])
+            if at >= 0:
+                return table.shown, int(table.lines[at])
+        return None, int(trials.seen.line[row])
 
-    def unrecorded(self, seen: Mapping[str, Collection[tuple[str, str]]]) -> list[tuple[str, int]]:
-        """Rows of the trial list that no log has, as their spelled key and line.
+    def unrecorded(self, seen: SeenTrials) -> list[int]:
+        """Rows of the trial list that no log has.
 
         Only where the list is joined by reader and trial does a row stand for one trial.
         """
         table = self.trial_list
-        if table is None or not {"participant", "trial"} <= set(table.keys):
+        if table is None or not {"participant", "trial"} <= set(table.keys) <= set(IDS[:3]):
             return []
-        if not set(table.keys) <= set(IDS):
-            return []
-        by_own_fact = [
-            (name, values) for name, values in self.skip.items() if name in table.columns
-        ]
-        places = [table.keys.index(n) if n in table.keys else None for n in IDS[:3]]
-        by_trial = {participant: {trial for _, trial in own} for participant, own in seen.items()}
-        none: frozenset[str] = frozenset()
-        found = []
-        for key in table.rows:
-            participant, session, trial = ["" if p is None else key[p] for p in places]
-            if session:
-                there = (session, trial) in seen.get(participant, ())
-            else:
-                there = trial in by_trial.get(participant, none)
-            if there or any(table.value(key, name) in values for name, values in by_own_fact):
-                continue
-            spelled = ", ".join(f"{n} {k}" for n, k in zip(table.keys, key, strict=True))
-            found.append((spelled, table.lines[key]))
-        return found
+        own = [table.columns[key] for key in table.keys]
+        nowhere = Coded.absent(len(seen))
+        lacking = place_rows(own, [seen.ids.get(key, nowhere) for key in table.keys]) < 0
+        for name, values in self.skip.items():
+            if name in table.columns:
+                lacking &= ~table.columns[name].among(values)
+        rows: list[int] = np.flatnonzero(lacking).tolist()
+        return rows
+
+
+def _looked_up(column: Coded, rows: NDArray[np.int64]) -> Coded:
+    """The texts of a table's column for trials; missing where there is no row."""
+    return Coded(np.where(rows >= 0, column.codes[rows], -1).astype(np.int32), column.values)
+
+
+def _tell_missing_row(
+    table: FactTable,
+    known: dict[str, Coded],
+    row: int,
+    place: tuple[SeenTrials, Sequence[str]],
+    findings: Findings,
+) -> None:
+    """Record that a table has no row for a trial."""
+    seen, shown = place
+    texts = {key: known[key].text(row) if key in known else "" for key in table.keys}
+    near: list[str] = []
+    if len(table.keys) == 1:
+        (key,) = table.keys
+        near = get_close_matches(texts[key], table.columns[key].values, n=1, cutoff=0.75)
+    findings.error(
+        f"{table.shown} has no row for this {' and '.join(table.keys)}",
+        path=shown[int(seen.file[row])],
+        line=int(seen.line[row]),
+        found=", ".join(f"{key} {text}" for key, text in texts.items()),
+        expected=f"a row of {table.shown} for every trial of the logs",
+        fix=f"add the row to {table.shown}"
+        + (f' (it has "{near[0]}")' if near else "")
+        + ", or leave the trial out by [trials] skip or [logs.where]",
+    )
 
 
 def gather_facts(
@@ -262,20 +251,19 @@ def gather_facts(
     synonyms = {
         name: column.column for name in IDS if (column := getattr(columns, name)) is not None
     }
-    missing = study.logs.missing
 
     def table(given: str | None, keys: tuple[str, ...]) -> FactTable | None:
         if given is None:
             return None
-        return read_fact_table(
-            study.folder / given, shown_path(study, given), keys, synonyms, missing, findings
-        )
+        shown = shown_path(study, given)
+        missing = study.logs.missing
+        return read_fact_table(study.folder / given, shown, keys, synonyms, missing, findings)
 
-    participants = study.participants and table(study.participants.table, ("participant",))
-    items = study.items and table(study.items.table, ("item",))
+    participants = table(study.participants.table if study.participants else None, ("participant",))
+    items = table(study.items.table if study.items else None, ("item",))
     trials = study.trials
-    back = {header_: name for name, header_ in synonyms.items()}
-    keys = tuple(back.get(key, key) if key not in IDS else key for key in trials.keys)
+    canonical = {header: name for name, header in synonyms.items()}
+    keys = tuple(key if key in IDS else canonical.get(key, key) for key in trials.keys)
     trial_list = table(trials.table, keys)
     if findings.count("error") > before:
         return None
@@ -283,9 +271,9 @@ def gather_facts(
         study,
         keys if trial_list else (),
         {
-            "trials": trial_list.columns if trial_list else (),
-            "participants": participants.columns if participants else (),
-            "items": items.columns if items else (),
+            "trials": tuple(trial_list.columns) if trial_list else (),
+            "participants": tuple(participants.columns) if participants else (),
+            "items": tuple(items.columns) if items else (),
             "log": tuple(log_header),
             "regions": tuple(region_header),
         },
@@ -296,7 +284,15 @@ def gather_facts(
         return None
     skip = {name: tuple(values) for name, values in trials.skip.items()}
     from_log = tuple(name for name, source in sources.items() if source == "log")
-    return FactBook(trial_list, participants or None, items or None, sources, from_log, skip)
+    used = {*sources, "item"}
+    return FactBook(
+        trial_list.only(used) if trial_list else None,
+        participants.only(used) if participants else None,
+        items.only(used) if items else None,
+        sources,
+        from_log,
+        skip,
+    )
 
 
 def shown_path(study: Study, given: str | Path) -> str:

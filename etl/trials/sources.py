@@ -7,7 +7,7 @@ from difflib import get_close_matches
 from typing import TYPE_CHECKING
 
 from etl.errors import Findings
-from etl.trials.joining import IDS
+from etl.trials.seen import IDS
 
 if TYPE_CHECKING:
     from etl.study import Study

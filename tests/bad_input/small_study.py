@@ -24,16 +24,18 @@ duration = "dur_ms"
 x = "x"
 y = "y"
 
+[regions]
+file = "regions.csv"
+kind = "boxes"
+"""
+#: What is added to the study file where a test is about tables of facts.
+TABLES = """
 [participants]
 table = "participants.csv"
 
 [trials]
 table = "trial_list.csv"
 factors = ["cue", "group"]
-
-[regions]
-file = "regions.csv"
-kind = "boxes"
 """
 PARTICIPANTS = "participant,group\nP01,volunteer\nP02,visitor\n"
 TRIAL_LIST = "participant,trial,cue\nP01,1,early\nP01,2,late\nP02,1,late\nP02,2,early\n"
@@ -74,7 +76,7 @@ def log(reader: str, *, trials: Iterable[int] = (1, 2), fixations: int = 3) -> s
 
 @dataclass(frozen=True, slots=True)
 class SmallStudy:
-    """A study file with two logs, two tables, a region file and an earlier build beside it."""
+    """A study file with two logs, a region file and an earlier build beside it."""
 
     folder: Path
 
@@ -83,14 +85,33 @@ class SmallStudy:
         """Write the study."""
         study = cls(folder)
         study.write("study.toml", STUDY)
-        study.write("participants.csv", PARTICIPANTS)
-        study.write("trial_list.csv", TRIAL_LIST)
         study.write("regions.csv", REGIONS)
         study.write("logs/P01.tsv", log("P01"))
         study.write("logs/P02.tsv", log("P02"))
         for name, text in EARLIER.items():
             study.write(f"out/{name}", text)
         return study
+
+    def add_tables(self) -> None:
+        """Add a trial list and a table of readers."""
+        self.add("study.toml", TABLES)
+        self.write("participants.csv", PARTICIPANTS)
+        self.write("trial_list.csv", TRIAL_LIST)
+
+    def define_texts(self, text: str) -> None:
+        """Define regions by texts with marks in braces instead of boxes."""
+        self.change("study.toml", 'kind = "boxes"', 'kind = "marked_text"')
+        self.add("study.toml", LAYOUT)
+        self.write("regions.csv", text)
+
+    def define_polygon(self, wkt: str) -> None:
+        """Define regions by polygons instead of boxes; the first one is as given."""
+        self.change("study.toml", 'kind = "boxes"', 'kind = "wkt"')
+        right = "POLYGON ((100 0, 200 0, 200 50, 100 50, 100 0))"
+        left = "POLYGON ((0 0, 100 0, 100 50, 0 50, 0 0))"
+        rows = [f'pear,who,1,"{wkt}"', f'pear,verb,2,"{right}"']
+        rows += [f'plum,who,1,"{left}"', f'plum,verb,2,"{right}"']
+        self.write("regions.csv", "\n".join(["item,region,order,wkt", *rows, ""]))
 
     def write(self, name: str, content: str | bytes) -> None:
         """Write a file, byte for byte."""

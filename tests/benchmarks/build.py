@@ -17,14 +17,23 @@ import time
 from collections.abc import Sequence
 from pathlib import Path
 
+import pyarrow as pa
+import pyarrow.parquet as pq
+from pyarrow import csv
+
 ROOT = Path(__file__).resolve().parents[2]
+sys.path.insert(0, str(ROOT))
+
+import etl  # noqa: E402
+from tests.benchmarks.lab_loop import in_numpy, in_pandas, outcomes_of  # noqa: E402
+from tests.simulator import write_bulk_study  # noqa: E402
+
+LOOPS = {"pandas": in_pandas, "numpy": in_numpy}
 TABLES = ("outcomes", "outcomes_wide", "trials", "regressions", "fixations")
 
 
 def make(folder: Path, readers: int, trials: int, fixations: int) -> Path:
     """Write the study and give its study file."""
-    from tests.simulator import write_bulk_study
-
     study = write_bulk_study(folder, readers=readers, trials=trials, fixations=fixations, regions=6)
     return study.study_file
 
@@ -35,17 +44,14 @@ def floor(study: Path, built: Path) -> None:
     The tables are read into memory beforehand, texts as codes, which is the fastest form to write;
     only the reading of logs and the writing of tables is reported.
     """
-    import pyarrow as pa
-    import pyarrow.parquet as pq
-    from pyarrow import csv
-
     pa.set_cpu_count(1)
     pa.set_io_thread_count(1)
-    tables = {}
+    tables, groups = {}, {}
     for name in TABLES:
         path = built / f"{name}.parquet"
         texts = [f.name for f in pq.read_schema(path) if pa.types.is_string(f.type)]
         tables[name] = pq.read_table(path, read_dictionary=texts)
+        groups[name] = pq.read_metadata(path).row_group(0).num_rows
     started = time.perf_counter()
     for log in sorted((study.parent / "logs").iterdir()):
         csv.read_csv(
@@ -56,17 +62,16 @@ def floor(study: Path, built: Path) -> None:
     with tempfile.TemporaryDirectory(dir=built.parent) as folder:
         for name, table in tables.items():
             pq.write_table(
-                table, Path(folder) / f"{name}.parquet", compression="zstd", row_group_size=262_144
+                table,
+                Path(folder) / f"{name}.parquet",
+                compression="zstd",
+                row_group_size=groups[name],
             )
         print(time.perf_counter() - started)
 
 
 def build(study: Path, into: Path) -> None:
     """The whole build, from the study file to the published folder."""
-    import pyarrow as pa
-
-    import etl
-
     pa.set_cpu_count(1)
     pa.set_io_thread_count(1)
     started = time.perf_counter()
@@ -74,18 +79,16 @@ def build(study: Path, into: Path) -> None:
     print(time.perf_counter() - started)
 
 
-def loop(study: Path, readers: int) -> None:
-    """What a lab would write: pandas, groupby over trials, a Python loop in each.
+def loop(study: Path, readers: int, style: str) -> None:
+    """What a lab would write: pandas, groupby over trials, a function for each trial.
 
     It computes the same outcomes of some readers and writes the one table; it does less than the
     build: no checks, no line numbers, no table of fixations or regressions.
     """
-    from tests.benchmarks.lab_loop import outcomes_of
-
     started = time.perf_counter()
     logs = sorted((study.parent / "logs").iterdir())[:readers]
     with tempfile.TemporaryDirectory() as folder:
-        outcomes_of(study, logs).to_parquet(Path(folder) / "outcomes.parquet")
+        outcomes_of(study, logs, LOOPS[style]).to_parquet(Path(folder) / "outcomes.parquet")
         print(time.perf_counter() - started)
 
 
@@ -98,7 +101,7 @@ def seconds(arguments: Sequence[str]) -> float:
         capture_output=True,
         text=True,
         env=environment,
-        preexec_fn=_one_core if hasattr(os, "sched_setaffinity") else None,  # noqa: PLW1509
+        preexec_fn=_one_core if hasattr(os, "sched_setaffinity") else None,
     )
     return float(done.stdout.split()[-1])
 
@@ -138,13 +141,14 @@ def main() -> None:
         folder = Path(name)
         study = make(folder / "study", given.readers, given.trials, given.fixations)
         into = folder / "built"
-        times: dict[str, list[float]] = {"floor": [], "build": [], "loop": []}
+        times: dict[str, list[float]] = {"floor": [], "build": [], "pandas": [], "numpy": []}
         seconds(["build", str(study), str(into)])
         for _ in range(given.rounds):
             times["floor"].append(seconds(["floor", str(study), str(into)]))
             times["build"].append(seconds(["build", str(study), str(into)]))
-            part = seconds(["loop", str(study), str(given.loop_readers)])
-            times["loop"].append(part * given.readers / given.loop_readers)
+            for style in LOOPS:
+                part = seconds(["loop", str(study), str(given.loop_readers), style])
+                times[style].append(part * given.readers / given.loop_readers)
         middle = {name: statistics.median(values) for name, values in times.items()}
         total = given.readers * given.trials * given.fixations
         print(f"{given.readers} readers x {given.trials} trials x {given.fixations}: {total:,}")
@@ -152,7 +156,11 @@ def main() -> None:
             spread = ", ".join(f"{value:.2f}" for value in sorted(values))
             print(f"  {part:<6} median {middle[part]:8.2f} s  ({spread})")
         print(f"  build / floor  {middle['build'] / middle['floor']:.2f}")
-        print(f"  loop / build   {middle['loop'] / middle['build']:.0f}  (loop scaled up)")
+        for style in LOOPS:
+            ratio = middle[style] / middle["build"]
+            print(
+                f"  loop over trials in {style} / build  {ratio:.0f}  (scaled up from some readers)"
+            )
         print("  peak memory of a build, one log a reader:")
         for readers in (given.readers // 10, given.readers, given.readers * 2):
             one = make(folder / f"study{readers}", readers, given.trials, given.fixations)
@@ -164,7 +172,6 @@ if __name__ == "__main__":
     if len(sys.argv) > 3 and sys.argv[1] in parts:
         parts[sys.argv[1]](Path(sys.argv[2]), Path(sys.argv[3]))
     elif len(sys.argv) > 3 and sys.argv[1] == "loop":
-        loop(Path(sys.argv[2]), int(sys.argv[3]))
+        loop(Path(sys.argv[2]), int(sys.argv[3]), sys.argv[4])
     else:
-        sys.path.insert(0, str(ROOT))
         main()

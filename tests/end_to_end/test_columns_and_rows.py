@@ -9,7 +9,7 @@ import pyarrow.parquet as pq
 import pytest
 
 from etl.measures import MEASURES, REASONS, TRIAL_MEASURES, Measure
-from etl.tables import IdColumn, MeasureColumn, TableDesign, read_schema
+from etl.tables import CovariateColumn, IdColumn, MeasureColumn, TableDesign, read_schema
 from tests.end_to_end.building import TABLES, Sample, build, rows_of
 from tests.end_to_end.odd_study import odd_study
 
@@ -75,7 +75,7 @@ def declared(sample: Sample) -> TableDesign:
             "fit": ("fitting", "odd"),
             "group": ("volunteer", "visitor"),
         },
-        {"age": "number", "verb_letters": "number"},
+        {"age": CovariateColumn("number"), "verb_letters": CovariateColumn("number")},
         (),
         columns(MEASURES),
         columns(TRIAL_MEASURES),

@@ -1,0 +1,167 @@
+"""Columns of few distinct texts as codes, and look-ups of rows by several such columns."""
+
+from __future__ import annotations
+
+import unicodedata
+from collections.abc import Collection, Iterable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import pyarrow as pa
+import pyarrow.compute as pc
+from numpy.typing import NDArray
+
+
+@dataclass(frozen=True, slots=True)
+class Coded:
+    """A column of few distinct texts, kept as codes.
+
+    Attributes
+    ----------
+    codes : (n,) int32 array
+        Index into ``values``; -1 where the cell is missing.
+    values : tuple of str
+        The distinct texts, in order of first appearance.
+
+    Examples
+    --------
+    >>> Coded.of(pa.array(["b", " a", "NA", "b"]), {"", "NA"}).codes.tolist()
+    [0, 1, -1, 0]
+    """
+
+    codes: NDArray[np.int32]
+    values: tuple[str, ...]
+
+    @classmethod
+    def of(cls, column: pa.Array, missing: Collection[str]) -> Coded:
+        """Code a column of text: cells trimmed, composed (Unicode NFC), missing marks as -1."""
+        encoded = pc.dictionary_encode(column)
+        known: dict[str, int] = {}
+        new_code = np.empty(len(encoded.dictionary), dtype=np.int32)
+        for old, raw in enumerate(encoded.dictionary.to_pylist()):
+            text = unicodedata.normalize("NFC", raw.strip())
+            new_code[old] = -1 if text in missing else known.setdefault(text, len(known))
+        codes = encoded.indices.to_numpy(zero_copy_only=False)
+        return cls(new_code[codes] if len(new_code) else codes.astype(np.int32), tuple(known))
+
+    @classmethod
+    def constant(cls, text: str, length: int) -> Coded:
+        """The same text in every row."""
+        return cls(np.zeros(length, dtype=np.int32), (text,))
+
+    @classmethod
+    def absent(cls, length: int) -> Coded:
+        """No text in any row."""
+        return cls(np.full(length, -1, dtype=np.int32), ())
+
+    @classmethod
+    def joined(cls, parts: Sequence[Coded]) -> Coded:
+        """Several columns, one below the other, under one list of texts."""
+        if len(parts) == 1:
+            return parts[0]
+        known: dict[str, int] = {}
+        codes = []
+        for part in parts:
+            new = [known.setdefault(text, len(known)) for text in part.values]
+            codes.append(np.array([*new, -1], dtype=np.int32)[part.codes])
+        return cls(np.concatenate(codes), tuple(known))
+
+    def __len__(self) -> int:
+        return len(self.codes)
+
+    def take(self, rows: NDArray[np.integer] | NDArray[np.bool_]) -> Coded:
+        """Some of the rows."""
+        return Coded(self.codes[rows], self.values)
+
+    def text(self, row: int) -> str:
+        """The text of one row, empty where it is missing."""
+        code = int(self.codes[row])
+        return "" if code < 0 else self.values[code]
+
+    def recoded(self, values: Iterable[str]) -> NDArray[np.int32]:
+        """The codes that the rows have under another list of texts; -1 for a text not on it."""
+        place = {text: code for code, text in enumerate(values)}
+        new = [place.get(text, -1) for text in self.values]
+        return np.array([*new, -1], dtype=np.int32)[self.codes]
+
+    def among(self, texts: Collection[str]) -> NDArray[np.bool_]:
+        """Whether each row's text is one of some."""
+        listed = [text in texts for text in self.values]
+        return np.array([*listed, False], dtype=bool)[self.codes]
+
+
+def place_rows(wanted: Sequence[Coded], table: Sequence[Coded]) -> NDArray[np.int64]:
+    """Find for each row the row of a table that has the same texts in all key columns.
+
+    Parameters
+    ----------
+    wanted : sequence of Coded, each of length n
+        The key columns of the rows to be placed.
+    table : sequence of Coded, each of length m
+        The same columns of the table; no two rows alike.
+
+    Returns
+    -------
+    (n,) int64 array
+        Row of the table; -1 where there is none or a key is missing.
+
+    Examples
+    --------
+    >>> numbers = Coded.of(pa.array(["1", "2", "3"]), {""})
+    >>> place_rows([Coded.of(pa.array(["3", "9"]), {""})], [numbers]).tolist()
+    [2, -1]
+    """
+    known = np.ones(len(wanted[0]), dtype=bool)
+    keys = np.zeros(len(wanted[0]), dtype=np.int64)
+    own = np.zeros(len(table[0]), dtype=np.int64)
+    for ask, have in zip(wanted, table, strict=True):
+        codes = ask.recoded(have.values)
+        known &= codes >= 0
+        keys, own = _paired(keys, own, codes, have)
+    order = np.argsort(own, kind="stable")
+    at = np.searchsorted(own[order], keys)
+    at = np.minimum(at, len(own) - 1)
+    rows = order[at] if len(own) else np.zeros(len(keys), dtype=np.int64)
+    known &= own[rows] == keys if len(own) else False
+    return np.where(known, rows, -1)
+
+
+def _paired(
+    keys: NDArray[np.int64], own: NDArray[np.int64], codes: NDArray[np.int32], have: Coded
+) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
+    """One more column in the keys, which are numbered anew so that they never overflow."""
+    width = len(have.values) + 1
+    keys = keys * width + codes + 1
+    own = own * width + have.codes + 1
+    distinct, place = np.unique(np.concatenate([own, keys]), return_inverse=True)
+    del distinct
+    return place[len(own) :], place[: len(own)]
+
+
+def group_rows(columns: Sequence[Coded]) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
+    """Group rows that have the same texts in all columns.
+
+    Parameters
+    ----------
+    columns : sequence of Coded, each of length n
+        At least one.
+
+    Returns
+    -------
+    first : (groups,) int64 array
+        The first row of each group.
+    group : (n,) int64 array
+        The group of each row.
+
+    Examples
+    --------
+    >>> first, group = group_rows([Coded.of(pa.array(["b", "a", "b"]), {""})])
+    >>> first.tolist(), group.tolist()
+    ([0, 1], [0, 1, 0])
+    """
+    group = np.zeros(len(columns[0]), dtype=np.int64)
+    first = np.zeros(0, dtype=np.int64)
+    for column in columns:
+        keys = group * (len(column.values) + 1) + column.codes + 1
+        _, first, group = np.unique(keys, return_index=True, return_inverse=True)
+    return first, group
