@@ -79,7 +79,10 @@ def main() -> None:
 @_WORKERS
 @_QUIET
 def check(study: Path, workers: int | None, *, quiet: bool) -> None:
-    """Read everything that STUDY names, write nothing, list all findings."""
+    """Read everything that STUDY names, write nothing, list all findings.
+
+    Each finding names file and line, what was found, what was expected and what to do.
+    """
     loaded = etl.load_study(study)
     with _progress(quiet=quiet) as progress:
         findings = etl.check(loaded, workers=workers, progress=progress)
@@ -98,7 +101,12 @@ def check(study: Path, workers: int | None, *, quiet: bool) -> None:
 @_WORKERS
 @_QUIET
 def build(study: Path, into: Path | None, workers: int | None, *, quiet: bool) -> None:
-    """Build the tables of STUDY."""
+    """Build the tables of STUDY.
+
+    They appear all at once in the output folder that STUDY names, beside the study file. An earlier
+    build there is replaced as a whole; if anything is wrong, it stays as it was and every problem
+    is listed.
+    """
     loaded = etl.load_study(study)
     with _progress(quiet=quiet) as progress:
         result = etl.build(loaded, into=into, workers=workers, progress=progress)
@@ -107,7 +115,13 @@ def build(study: Path, into: Path | None, workers: int | None, *, quiet: bool) -
 
 
 @main.command()
-@click.argument("name", required=False, shell_complete=lambda *_: told.measure_names())
+@click.argument(
+    "name",
+    required=False,
+    shell_complete=lambda _context, _parameter, typed: [
+        name for name in told.measure_names() if name.startswith(typed)
+    ],
+)
 def measures(name: str | None) -> None:
     """Say what each outcome means, or one of them by NAME."""
     text = told.measure(name) if name else told.catalogue()

@@ -18,6 +18,12 @@ Severity = Literal["error", "warning", "note"]
 SPELLED_OUT = 5
 
 
+#: How many files with one and the same problem are spelled out.
+FILES_SPELLED_OUT = 10
+
+Kind = tuple[str, str, str, str]
+
+
 class Place(TypedDict, total=False):
     """Where a finding is and what belongs there; see :class:`Finding`."""
 
@@ -62,6 +68,11 @@ class Finding:
     expected: str = ""
     fix: str = ""
 
+    @property
+    def kind(self) -> Kind:
+        """What makes findings alike: how grave, which file, which place, what is the matter."""
+        return (self.severity, self.path, self.where, self.problem)
+
     def text(self) -> str:
         """The finding as one or two lines of text."""
         place = self.path + (f":{self.line}" if self.line is not None else "")
@@ -99,11 +110,11 @@ class Findings:
     """
 
     items: list[Finding] = field(default_factory=list)
-    more: Counter[tuple[str, str, str, str]] = field(default_factory=Counter)
+    more: Counter[Kind] = field(default_factory=Counter)
 
     def add(self, finding: Finding, times: int = 1) -> None:
         """Record a finding; ``times`` counts further ones of its kind that are not spelled out."""
-        kind = (finding.severity, finding.path, finding.where, finding.problem)
+        kind = finding.kind
         self.more[kind] += times
         if self.more[kind] - times < SPELLED_OUT:
             self.items.append(finding)
@@ -121,16 +132,13 @@ class Findings:
         self.add(Finding(problem, "note", **place))
 
     def extend(self, others: Findings) -> None:
-        """Take over all that another list holds."""
-        if not others.items:
-            return
-        kept = Counter((f.severity, f.path, f.where, f.problem) for f in others.items)
-        for kind, count in kept.items():
-            surplus = others.more[kind] - count
-            for finding in others.items:
-                if (finding.severity, finding.path, finding.where, finding.problem) == kind:
-                    self.add(finding)
-            self.more[kind] += surplus
+        """Take over all that another list holds, in its order."""
+        told: Counter[Kind] = Counter()
+        for finding in others.items:
+            self.add(finding)
+            told[finding.kind] += 1
+        for kind, count in told.items():
+            self.more[kind] += others.more[kind] - count
 
     def __iter__(self) -> Iterator[Finding]:
         return iter(self.items)
@@ -152,21 +160,39 @@ class Findings:
         return self.count("error") > 0
 
     def lines(self, severities: Iterable[Severity] = ("error", "warning", "note")) -> list[str]:
-        """Each finding as text, followed by how many more of its kind there were."""
+        """Each finding as text, followed by how many more of its kind there were.
+
+        Of one problem that many files have, the first few files are spelled out.
+        """
         wanted = set(severities)
-        told: Counter[tuple[str, str, str, str]] = Counter()
-        shown_of_kind = Counter((f.severity, f.path, f.where, f.problem) for f in self.items)
+        left = Counter(finding.kind for finding in self.items)
+        files: dict[tuple[str, str, str], dict[str, int]] = {}
         out = []
         for finding in self.items:
             if finding.severity not in wanted:
                 continue
-            kind = (finding.severity, finding.path, finding.where, finding.problem)
+            kind = finding.kind
+            own = files.setdefault((finding.severity, finding.where, finding.problem), {})
+            own[finding.path] = self.more[kind]
+            if len(own) > FILES_SPELLED_OUT:
+                continue
             out.append(finding.text())
-            told[kind] += 1
-            left = self.more[kind] - shown_of_kind[kind]
-            if told[kind] == shown_of_kind[kind] and left > 0:
-                out.append(f"    … and {left} more like this in {finding.path or 'this study'}")
+            left[kind] -= 1
+            more = self.more[kind] - self._spelled(kind)
+            if left[kind] == 0 and more > 0:
+                out.append(f"    … and {more:,} more like this in {finding.path or 'this study'}")
+        for (_, where, problem), own in files.items():
+            rest = list(own.values())[FILES_SPELLED_OUT:]
+            if rest:
+                place = f"{where}: " if where else ""
+                out.append(
+                    f"    … and {sum(rest):,} more in {len(rest):,} more files: {place}{problem}"
+                )
         return out
+
+    def _spelled(self, kind: Kind) -> int:
+        """How many findings of a kind are spelled out."""
+        return min(self.more[kind], sum(finding.kind == kind for finding in self.items))
 
     def text(self) -> str:
         """The whole list as text, closed by a count of the problems."""

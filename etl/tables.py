@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import base64
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import Literal
 
@@ -293,3 +293,25 @@ def schema_note(columns: tuple[Column, ...]) -> dict[str, str]:
     would make every reader get codes back, also for ids, where categories are a nuisance.
     """
     return {"ARROW:schema": base64.b64encode(read_schema(columns).serialize()).decode("ascii")}
+
+
+def table_reference() -> str:
+    """The columns of every table as Markdown, as the README shows them.
+
+    Returns
+    -------
+    str
+        A heading and a table for each; measures, factors and covariates, which differ from study
+        to study, are named in a sentence.
+    """
+    ids = {name: IdColumn((), "text") for name in ("participant", "session", "trial", "item")}
+    design = replace(BARE_DESIGN, ids=ids)
+    units = {"flag": "0 or 1", "number": "number", "integer": "whole number"}
+    parts = []
+    for name in TABLES:
+        lines = [f"#### `{name}`", "", "| Column | Holds | Meaning |", "|---|---|---|"]
+        for column in design.columns(name):
+            holds = column.unit or units.get(column.type, "text")
+            lines.append(f"| `{column.name}` | {holds} | {column.meaning} |")
+        parts.append("\n".join(lines))
+    return "\n\n".join(parts) + "\n"

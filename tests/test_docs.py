@@ -15,10 +15,9 @@ from etl.measures import GROUPS, MEASURES, REASON_MEANINGS, TRIAL_MEASURES, Meas
 from etl.session import told
 from etl.study.schema import study_schema
 from etl.tables import BARE_DESIGN, TABLES
+from tests.documents import README, with_parts
 
 PROJECT = Path(__file__).resolve().parents[1]
-#: A lock file names the public index by its nature; it is checked for other hosts only.
-LOCK_FILE = "uv.lock"
 EVERY_MEASURE = [
     pytest.param(one, id=f"{one.level}-{one.name}")
     for group in (MEASURES, TRIAL_MEASURES)
@@ -107,12 +106,11 @@ def texts() -> Iterator[tuple[str, str]]:
             continue
 
 
-def places(pattern: re.Pattern[str], *, besides: str = "") -> list[str]:
+def places(pattern: re.Pattern[str]) -> list[str]:
     """File, line and words wherever a pattern occurs."""
     return [
         f"{name}:{text.count(chr(10), 0, found.start()) + 1}: {found.group()}"
         for name, text in texts()
-        if name != besides
         for found in pattern.finditer(text)
     ]
 
@@ -134,16 +132,7 @@ def test_no_file_names_the_host_of_a_package_index() -> None:
     """Where packages are fetched from is the reader's own affair."""
     hosts = any_of("py_pi.org python_hosted.org np_mjs.org golan_g.org ana_conda.org cr_an.r-")
     proxies = r"\b(?:index|proxy|mirror|registry|artifactory|nexus)[\w.-]*\.[a-z]{2,}/"
-    assert places(re.compile(f"{hosts}|https?://{proxies}"), besides=LOCK_FILE) == []
-
-
-def test_lock_file_names_no_host_but_the_public_index() -> None:
-    """A lock file made behind a mirror would be of no use elsewhere."""
-    path = PROJECT / LOCK_FILE
-    if not path.is_file():
-        pytest.skip("there is no lock file")
-    hosts = set(re.findall(r"https?://([^/\"]+)", path.read_text(encoding="utf-8")))
-    assert hosts <= {"py" + "pi.org", "files.python" + "hosted.org"}
+    assert places(re.compile(f"{hosts}|https?://{proxies}")) == []
 
 
 def test_no_file_speaks_of_how_it_was_written() -> None:
@@ -169,7 +158,8 @@ def test_measure_is_documented_in_full(measure: Measure) -> None:
     text = told.measure(measure.name)
     assert text is not None
     assert measure.definition.endswith(".")
-    assert f"{measure.name} ({measure.kind}, {measure.unit}" in text
+    unit = "" if measure.unit == measure.kind else f", {measure.unit}"
+    assert f"{measure.name} ({measure.kind}{unit};" in text
     assert measure.definition in text
     for reason in measure.reasons:
         assert reason in text
@@ -249,3 +239,9 @@ def test_keys_of_the_study_file_are_in_the_documents() -> None:
     text = documents()
     last = {key.rpartition(".")[2] for key in KEYS}
     assert sorted(name for name in last if not re.search(rf"\b{name}\b", text)) == []
+
+
+def test_made_parts_of_the_readme_are_current() -> None:
+    """The tables of columns and of keys are what the code declares."""
+    text = README.read_text(encoding="utf-8")
+    assert text == with_parts(text), "run python -m tests.documents"

@@ -179,7 +179,7 @@ def test_modules_are_named_after_what_they_do() -> None:
 def test_top_level_holds_what_the_design_names() -> None:
     """Nothing else lies beside the package, but for hidden files and what tools leave behind."""
     named = {
-        *("README.md", "DEVELOPERS.md", "pyproject.toml", "LICENSE", "uv.lock"),
+        *("README.md", "DEVELOPERS.md", "pyproject.toml", "LICENSE", "requirements.lock"),
         *("etl", "tests", "region_definitions", "sample_logs"),
     }
     left_behind = {"build", "dist", "out", "venv", "__pycache__"}

@@ -89,9 +89,11 @@ def published(target: Path, shown: str) -> Iterator[Workshop]:
     DataError
         If the target may not be replaced or its parent cannot be written.
     """
+    # A link is followed, so that the tables land where it points.
+    target = target.resolve()
     check_target(target, shown)
     # Beside the target, so that the last step is a renaming on one file system.
-    beside = next(folder for folder in target.absolute().parents if folder.is_dir())
+    beside = next(folder for folder in target.parents if folder.is_dir())
     try:
         work = Path(tempfile.mkdtemp(prefix=f".{target.name}.", dir=beside))
     except OSError as why:
@@ -102,11 +104,11 @@ def published(target: Path, shown: str) -> Iterator[Workshop]:
         shop.kept.mkdir()
         yield shop
         check_target(target, shown)
-        try:
-            target.parent.mkdir(parents=True, exist_ok=True)
-            _swap(shop.fresh, target, work / "old")
-        except OSError as why:
-            raise _cannot_write(shown, why) from why
+        target.parent.mkdir(parents=True, exist_ok=True)
+        _swap(shop.fresh, target, work / "old")
+    except OSError as why:
+        # Inputs that cannot be read are findings long before this; what is left is the output.
+        raise _cannot_write(shown, why) from why
     finally:
         shutil.rmtree(work, ignore_errors=True)
 

@@ -3,7 +3,7 @@
 from etl.files.coded import Coded, group_rows, place_rows
 from etl.files.decoding import RawText, read_text
 from etl.files.delimited import Cells, cells_of, header_of, read_cells
-from etl.files.numbers import NumberReading, find_decimal, numbers_in
+from etl.files.numeric_cells import NumberReading, find_decimal, numbers_in
 
 __all__ = [
     "Cells",

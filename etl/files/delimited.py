@@ -165,7 +165,20 @@ def cells_of(
 
 
 def header_of(text: RawText, delimiter: str | None = None) -> tuple[str, ...]:
-    """The column names of a delimited text, trimmed, without reading its rows."""
+    """The column names of a delimited text, without reading its rows.
+
+    Parameters
+    ----------
+    text : RawText
+        From :func:`etl.files.read_text`.
+    delimiter : str, optional
+        Found out where absent.
+
+    Returns
+    -------
+    tuple of str
+        The names, trimmed.
+    """
     return find_header(text.data, delimiter).names
 
 

@@ -60,7 +60,7 @@ def find_header(data: bytes, delimiter: str | None) -> Header:
 
     Examples
     --------
-    >>> found = find_header(b"# recorded in May\\nreader;dur\\nP01;200\\n", None)
+    >>> found = find_header(b"# recorded in May\nreader;dur\nP01;200\n", None)
     >>> found.names, found.line, found.separator
     (('reader', 'dur'), 2, ';')
     """

@@ -99,6 +99,8 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
     ]
     if not every:
         return None
+    # A log that could not be read says nothing about what was not recorded.
+    complete = len(every) == len(answers)
     for answer in answers:
         answer.trials = None  # joined below; twice would be too much for a large study
     seen = SeenTrials.joined(every).once(shown, findings)
@@ -110,7 +112,8 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
         trials.known[name] = Coded.of(supplied, {""}).take(text)
     good = trials.good & (trials.skipped | (text >= 0))
     levels = _levels(plan, trials, text >= 0, shown, findings)
-    _notice_what_is_missing(plan, seen, findings)
+    if complete:
+        _notice_what_is_missing(plan, seen, findings)
     if not (text >= 0).any():
         if not findings.failed:
             findings.error(
@@ -346,6 +349,13 @@ def notice_logs(study: Study, answers: list[LogAnswer], findings: Findings) -> N
                     " most other logs are different",
                     path=note.shown,
                 )
+    for answer in answers:
+        comments = answer.note.counts.get("comment lines below the header", 0)
+        if comments:
+            findings.note(
+                f"{comments:,} lines below the header begin with # and were taken for remarks",
+                path=answer.note.shown,
+            )
     low, high = PLAUSIBLE_MEDIAN_MS
     for answer in answers:
         middle = answer.durations_ms[0]

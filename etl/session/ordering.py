@@ -131,10 +131,10 @@ def order_fixations(
         rows, recording, trial = by_trial[order], recording[order], trial[order]
     begins_recording = np.ones(count, dtype=bool)
     begins_recording[1:] = recording[1:] != recording[:-1]
-    if not numbered:
-        _check_file_order(reader, by_trial, starts | begins, findings)
     overlaps = 0
-    if count and not np.isnan(log.onset_ms[0]):
+    in_order = numbered or _file_order_is_right(reader, by_trial, starts | begins, findings)
+    # Onsets that go back are sorted by now, and what overlaps then says nothing more.
+    if in_order and count and not np.isnan(log.onset_ms[0]):
         overlaps = _check_times(reader, rows, begins_recording, numbered, findings)
     aside = _recordings_set_aside(
         reader, trials, (rows, trial, begins_recording), repeated, findings
@@ -174,13 +174,13 @@ def _restarts_by_onset(
     return starts & ~begins
 
 
-def _check_file_order(
+def _file_order_is_right(
     reader: ReaderLog,
     by_trial: NDArray[np.int64],
     starts: NDArray[np.bool_],
     findings: Findings,
-) -> None:
-    """Without numbers, onsets must not go back within a recording."""
+) -> bool:
+    """Whether, without numbers, no onset goes back within a recording; says where one does."""
     onset = reader.log.onset_ms[by_trial]
     falls = np.flatnonzero((onset[1:] < onset[:-1]) & ~starts[1:]) + 1
     for at in falls.tolist():
@@ -194,6 +194,7 @@ def _check_file_order(
             fix="sort the log by onset; if the trial was started again, give it a session or a "
             "trial number of its own",
         )
+    return not falls.size
 
 
 def _check_times(

@@ -91,19 +91,20 @@ def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tupl
     log_header = _header(logs[0][0], study.logs.encoding, study.logs.delimiter) if logs else ()
     region_path = study.folder / study.regions.file
     facts = gather_facts(study, log_header, _header(region_path), findings)
-    if facts is None or not _names_are_free(study, findings):
-        return None, logs
-    wanted = {name for name, source in facts.sources.items() if source == "regions"}
+    # Where the tables are wrong, the regions are read all the same, for what is wrong with them:
+    # every fact that the study names is then taken for a key.
+    named = {*study.trials.factors, *study.trials.covariates, *IDS}
+    known = facts.known_facts() if facts is not None else frozenset(named)
     library = read_definitions(
         study.regions,
         study.lines,
         path=region_path,
         shown=shown_path(study, study.regions.file),
-        known_facts=facts.known_facts(),
-        wanted_facts=wanted | set(facts.known_facts()),
+        known_facts=known,
+        wanted_facts=known if facts is None else known | set(facts.sources),
         findings=findings,
     )
-    if library is None:
+    if facts is None or library is None or not _names_are_free(study, findings):
         return None, logs
     reader = LogReader(study.logs, study.screen, facts.from_log)
     return Plan(study, logs, reader, facts, library), logs

@@ -21,8 +21,10 @@ from etl.export.writers import TableWriters
 from etl.parsers import LogReader
 from etl.session.gather import Gathered, Progress, gather, notice_logs, read_logs
 from etl.session.one_reader import ReaderTables
+from etl.session.ordering import OVERLAP_TOLERATED_MS
 from etl.session.plan import Plan, make_plan
 from etl.session.result import Result
+from etl.session.told import summary
 from etl.session.work import LogAnswer, make_reader_work, map_tasks
 from etl.study import Study
 from etl.tables import TABLES
@@ -65,6 +67,9 @@ def check(study: Study, *, workers: int | None = None, progress: Progress = _sil
             for tables in _finish(plan, gathered, count, progress, write=False):
                 findings.extend(tables.findings)
                 counts.update(tables.counts)
+            counts["readers"] = len(gathered.tasks)
+            if not findings.failed:
+                findings.note(summary(counts))
         _notice_counts(study, counts, findings)
     return findings
 
@@ -220,10 +225,11 @@ def _notice_counts(study: Study, counts: Counter[str], findings: Findings) -> No
             fix="if that is more than the texts leave free, check the layout, the screen's "
             "origin and the boxes",
         )
-    if counts["overlaps taken for rounding"]:
+    overlaps = counts["overlaps taken for rounding"]
+    if overlaps:
         findings.note(
-            f"{counts['overlaps taken for rounding']} fixations reach into the next one by no "
-            "more than is taken for rounding",
+            f"{overlaps:,} fixation{' reaches' if overlaps == 1 else 's reach'} into the next one "
+            f"by no more than {OVERLAP_TOLERATED_MS:g} ms, which is taken for rounding",
         )
 
 

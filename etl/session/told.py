@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from difflib import get_close_matches
 
 from etl.errors import Findings
@@ -13,24 +14,33 @@ def checked(findings: Findings) -> str:
     """The closing line of a check without errors."""
     warnings = findings.count("warning")
     if warnings:
-        return f"No errors; {warnings} warning{'' if warnings == 1 else 's'}. Nothing was written."
+        return f"No errors; {counted(warnings, 'warning')}. Nothing was written."
     return "All is well. Nothing was written."
+
+
+def counted(count: int, thing: str) -> str:
+    """A number of things, in the right number."""
+    return f"{count:,} {thing}{'' if count == 1 else 's'}"
+
+
+def summary(counts: Mapping[str, int]) -> str:
+    """What was read and what of it is no part of the outcomes, in one line."""
+    kept, outside = counts["fixations kept"], counts["fixations kept outside every region"]
+    line = (
+        f"{counted(counts['readers'], 'reader')}, {counted(counts['trials kept'], 'trial')}, "
+        f"{counted(kept, 'fixation')}, {outside:,} of them outside every region"
+    )
+    if counts["trials skipped"]:
+        line += f"; {counted(counts['trials skipped'], 'more trial')} skipped"
+    if counts["fixations of repeated trials"]:
+        repeated = counted(counts["fixations of repeated trials"], "fixation")
+        line += f"; {repeated} of trials recorded twice left out"
+    return line
 
 
 def built(result: Result) -> str:
     """The summary of a build: what was read, what was left out, what was written."""
-    counts = result.counts
-    skipped = counts.get("trials skipped", 0)
-    left = [f"{skipped:,} trials are no part of the study" if skipped else ""]
-    repeated = counts.get("fixations of repeated trials", 0)
-    left.append(f"{repeated:,} fixations of trials recorded twice left out" if repeated else "")
-    kept, outside = counts["fixations kept"], counts["fixations kept outside every region"]
-    lines = [
-        f"{counts['readers']:,} readers, {counts['trials kept']:,} trials, "
-        f"{kept:,} fixations, {outside:,} of them outside every region"
-        + "".join(f"; {part}" for part in left if part),
-        f"Written to {result.folder}:",
-    ]
+    lines = [summary(result.counts), f"Written to {result.folder}:"]
     width = max(len(name) for name in result.rows)
     lines += [f"  {name:<{width}}  {rows:>11,} rows" for name, rows in result.rows.items()]
     return "\n".join([*lines, "  run.json"])
@@ -64,8 +74,9 @@ def measure(name: str) -> str | None:
 
 def _one(measure: Measure) -> str:
     """All about one outcome."""
+    kind = measure.kind if measure.unit == measure.kind else f"{measure.kind}, {measure.unit}"
     lines = [
-        f"{measure.name} ({measure.kind}, {measure.unit}; one value a "
+        f"{measure.name} ({kind}; one value a "
         + ("region of a trial)" if measure.level == "region" else "trial)"),
         "",
         f"  {measure.definition}",

@@ -141,6 +141,7 @@ def load_study(path: str | Path, *, known_outcomes: Collection[str] | None = Non
     Returns
     -------
     Study
+        With every default filled in.
 
     Raises
     ------

@@ -47,7 +47,7 @@ def test_one_mistake_in_every_row_is_cut_short(study: SmallStudy) -> None:
     said = study.refusal().splitlines()
     assert [line.split(":")[1] for line in said if line.startswith("logs/")] == list("23456")
     assert said[-2:] == [
-        "    … and 1995 more like this in logs/P01.tsv",
+        "    … and 1,995 more like this in logs/P01.tsv",
         "2000 problems; nothing was written",
     ]
 

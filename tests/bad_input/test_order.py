@@ -72,8 +72,9 @@ def test_overlap_by_rounding_is_counted(study: SmallStudy) -> None:
     result = study.run("build", "study.toml")
     counts = json.loads(Path("out/run.json").read_text(encoding="utf-8"))["counts"]
     assert result.exit_code == 0
-    assert "1 fixations reach into the next one by no more than is taken for rounding" in (
-        result.stdout
+    assert (
+        "1 fixation reaches into the next one by no more than 2 ms, which is taken for rounding"
+        in (result.stdout)
     )
     assert counts["overlaps taken for rounding"] == 1
 

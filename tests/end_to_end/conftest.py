@@ -10,11 +10,6 @@ from tests.simulator.__main__ import sample_orchard, sample_passages
 from tests.simulator.orchard import laboratory_logs
 
 
-def pytest_configure(config: pytest.Config) -> None:
-    """Name the mark of tests that start worker processes."""
-    config.addinivalue_line("markers", "slow: starts processes and takes seconds")
-
-
 @pytest.fixture(scope="session")
 def orchard(tmp_path_factory: pytest.TempPathFactory) -> Sample:
     """The orchard study."""

@@ -112,8 +112,8 @@ def test_build_says_what_it_did(said: Said, study_file: Path) -> None:
     ran = said("build", study_file, "--workers", "1")
     assert (ran.status, ran.err) == (0, "")
     assert ran.out == (
-        "2 readers, 5 trials, 14 fixations, 1 of them outside every region; 2 trials are no part "
-        "of the study; 2 fixations of trials recorded twice left out\n"
+        "2 readers, 5 trials, 14 fixations, 1 of them outside every region; "
+        "2 more trials skipped; 2 fixations of trials recorded twice left out\n"
         f"Written to {study_file.parent / 'out'}:\n"
         "  outcomes               285 rows\n"
         "  outcomes_wide           15 rows\n"
@@ -146,9 +146,15 @@ def test_number_of_workers_is_a_positive_number(said: Said, study_file: Path, wo
 
 
 def test_check_of_a_sound_study_says_so(said: Said, study_file: Path) -> None:
-    """All is well, on stdout, with status 0, and nothing is written."""
+    """What was read and that all is well, on stdout, with status 0; nothing is written."""
     before = files_of(study_file.parent)
-    assert said("check", study_file) == Ran(0, "All is well. Nothing was written.\n", "")
+    assert said("check", study_file) == Ran(
+        0,
+        "note: 2 readers, 5 trials, 14 fixations, 1 of them outside every region; "
+        "2 more trials skipped; 2 fixations of trials recorded twice left out\n"
+        "All is well. Nothing was written.\n",
+        "",
+    )
     assert files_of(study_file.parent) == before
 
 
@@ -159,6 +165,8 @@ def test_check_of_the_sample_lists_its_oddities(said: Said) -> None:
     assert ran.out.endswith(
         "warning: trial_list.csv:464: the trial is in the list but in no log; "
         'found "participant P11, trial 23"\n'
+        "note: 24 readers, 767 trials, 10,744 fixations, 414 of them outside every region; "
+        "288 more trials skipped\n"
         "No errors; 1 warning. Nothing was written.\n"
     )
 

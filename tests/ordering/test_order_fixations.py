@@ -200,3 +200,9 @@ def test_time_that_goes_back_is_named_where_it_does() -> None:
     (finding,) = findings.items
     assert (finding.path, finding.line) == ("a.tsv", 4)
     assert finding.found == "onset 1200 ms after 1400 ms"
+
+
+def test_one_slip_in_an_onset_is_one_problem() -> None:
+    """An onset that lacks a digit is told as going back in time, not as an overlap too."""
+    _, findings = ordered([Fixation(0, onset_ms) for onset_ms in (1000, 1200, 1050, 1600)])
+    assert [finding.line for finding in findings] == [4]
