@@ -24,6 +24,8 @@ _WRITTEN: dict[str, pa.DataType] = {
     "integer": pa.int64(),
     "number": pa.float64(),
 }
+#: The ledger of everything left out, a CSV file.
+LEDGER = "exclusions"
 #: The tables, in the order in which they are described.
 TABLES = ("outcomes", "outcomes_wide", "trials", "regressions", "fixations")
 
@@ -186,7 +188,31 @@ class TableDesign:
             return (*ids, *factors, *self._regression_columns())
         if table == "fixations":
             return (*ids, *self._fixation_columns())
+        if table == LEDGER:
+            return self._ledger_columns()
         raise KeyError(table)
+
+    def _ledger_columns(self) -> tuple[Column, ...]:
+        ids = tuple(
+            replace(column, nullable=column.name != "participant") for column in self.id_columns()
+        )
+        what = "what was left out or changed: fixation, trial, participant or value"
+        where = "region of the value; empty where it is not about one"
+        which = "number of the fixation in its trial; empty where it is not about one"
+        later = "later rules that would have left it out too, separated by blanks"
+        return (
+            Column("level", "category", what, levels=("fixation", "trial", "participant", "value")),
+            *ids,
+            Column("region", "category", where, nullable=True, levels=self.regions),
+            Column("fixation", "integer", which, nullable=True),
+            Column("rule", "category", "the rule", levels=(*self.left_out_by, "outlier_sd")),
+            Column("limit", "text", "the limit that the study sets", nullable=True),
+            Column("observed", "text", "what was found", nullable=True),
+            Column("action", "text", "left out, merged into fixation n, or set missing"),
+            Column("source_file", "text", "the log; empty for a reader", nullable=True),
+            Column("source_line", "integer", "the line in that log", nullable=True),
+            Column("also", "text", later, nullable=True),
+        )
 
     def _long_columns(self) -> tuple[Column, ...]:
         names = tuple(sorted(m.name for m in self.measures))
@@ -308,7 +334,7 @@ def table_reference() -> str:
     design = replace(BARE_DESIGN, ids=ids)
     units = {"flag": "0 or 1", "number": "number", "integer": "whole number"}
     parts = []
-    for name in TABLES:
+    for name in (*TABLES, LEDGER):
         lines = [f"#### `{name}`", "", "| Column | Holds | Meaning |", "|---|---|---|"]
         for column in design.columns(name):
             holds = column.unit or units.get(column.type, "text")

@@ -14,7 +14,8 @@ import numpy as np
 import pyarrow as pa
 from numpy.typing import NDArray
 
-from etl.tables import CODED, TABLES, TableDesign, written_schema
+from etl.screening.ledger import LEVELS, Entry
+from etl.tables import CODED, LEDGER, TABLES, TableDesign, written_schema
 
 
 @dataclass(frozen=True, slots=True)
@@ -31,12 +32,23 @@ class TrialColumns:
         Numbers, NaN where missing, or places in the design's list of texts, -1 where missing.
     text : (trials,) int32 array
         The text that was read; -1 for a trial that is no part of the study.
+    came_ms, went_ms, answer : (trials,) float64 array
+        When the text came up and went away, and whether the answer was right; NaN where unknown.
+    notes : tuple of str
+        The experimenter's note on each trial, empty where there is none.
+    skipped_by : tuple of str
+        Why each trial is no part of the study, empty where it is.
     """
 
     ids: Mapping[str, NDArray[np.int32]]
     factors: Mapping[str, NDArray[np.int32]]
     covariates: Mapping[str, NDArray[np.float64] | NDArray[np.int32]]
     text: NDArray[np.int32]
+    came_ms: NDArray[np.float64]
+    went_ms: NDArray[np.float64]
+    answer: NDArray[np.float64]
+    notes: tuple[str, ...]
+    skipped_by: tuple[str, ...]
 
     def __len__(self) -> int:
         return len(self.text)
@@ -48,6 +60,11 @@ class TrialColumns:
             {name: codes[rows] for name, codes in self.factors.items()},
             {name: values[rows] for name, values in self.covariates.items()},
             self.text[rows],
+            self.came_ms[rows],
+            self.went_ms[rows],
+            self.answer[rows],
+            tuple([self.notes[row] for row in rows.tolist()]),
+            tuple([self.skipped_by[row] for row in rows.tolist()]),
         )
 
 
@@ -114,7 +131,7 @@ class RowMaker:
 
     def __init__(self, design: TableDesign) -> None:
         self.design = design
-        self.schemas = {name: written_schema(design.columns(name)) for name in TABLES}
+        self.schemas = {name: written_schema(design.columns(name)) for name in (*TABLES, LEDGER)}
         self._id_values = {
             name: pa.array([int(v) for v in known.values], pa.int64())
             if known.type == "integer"
@@ -295,6 +312,69 @@ class RowMaker:
             pa.array(c.source_line.astype(np.int64)),
         ]
         return pa.RecordBatch.from_arrays(arrays, schema=self.schemas["fixations"])
+
+    def ledger(
+        self,
+        participant: int,
+        trials: TrialColumns,
+        entries: Sequence[Entry],
+        source: tuple[NDArray[np.int32], NDArray[np.int32]],
+    ) -> pa.RecordBatch:
+        """One row a thing that was left out or changed.
+
+        Parameters
+        ----------
+        participant : int
+            Place of the reader among the study's readers.
+        trials : TrialColumns
+            All trials of the reader.
+        entries : sequence of Entry
+            The rows, in order.
+        source : tuple of two (n,) int32 arrays
+            Log and line of each fixation of the reader.
+        """
+        trial = np.array([entry.trial for entry in entries], dtype=np.int64)
+        row = np.array([entry.row for entry in entries], dtype=np.int64)
+        columns = [
+            _coded(
+                np.array([LEVELS.index(entry.level) for entry in entries], dtype=np.int32),
+                pa.array(LEVELS, pa.string()),
+            )
+        ]
+        for name, known in self.design.ids.items():
+            own = trials.ids[name][trial] if len(trials) else trial.astype(np.int32)
+            codes = np.where(trial >= 0, own, -1).astype(np.int32)
+            if name == "participant":
+                codes = np.full(len(entries), participant, dtype=np.int32)
+            column = _coded(codes, self._id_values[name])
+            columns.append(column.dictionary_decode() if known.type == "integer" else column)
+        file, line = (np.where(row >= 0, part[row], -1).astype(np.int32) for part in source)
+        rules = {rule: code for code, rule in enumerate((*self.design.left_out_by, "outlier_sd"))}
+        columns += [
+            _coded(np.array([e.region for e in entries], dtype=np.int32), self._regions),
+            _place([e.fixation for e in entries]),
+            _coded(
+                np.array([rules[e.rule] for e in entries], dtype=np.int32),
+                pa.array(list(rules), pa.string()),
+            ),
+            _text([e.limit for e in entries]),
+            _text([e.observed for e in entries]),
+            _text([e.action for e in entries]),
+            _coded(file, self._files),
+            _place(line.tolist()),
+            _text([e.also for e in entries]),
+        ]
+        return pa.RecordBatch.from_arrays(columns, schema=self.schemas[LEDGER])
+
+
+def _text(texts: Sequence[str]) -> pa.Array:
+    """Texts as codes; an empty one is missing."""
+    return pa.array([text or None for text in texts], pa.string()).dictionary_encode().cast(CODED)
+
+
+def _place(places: Sequence[int]) -> pa.Array:
+    """Whole numbers; a negative one is missing."""
+    return pa.array([place if place >= 0 else None for place in places], pa.int64())
 
 
 def _coded(codes: NDArray[np.int32], values: pa.Array) -> pa.Array:

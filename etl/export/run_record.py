@@ -31,6 +31,8 @@ class RunRecord:
         Rows of each table.
     warnings : sequence of str
         What was noticed.
+    not_recorded : sequence of str
+        Trials of the trial list that no log has.
     elapsed_s : float
         How long the build took.
     """
@@ -40,6 +42,7 @@ class RunRecord:
     counts: Mapping[str, int]
     rows: Mapping[str, int]
     warnings: Sequence[str]
+    not_recorded: Sequence[str]
     elapsed_s: float
 
     def write(self, folder: Path) -> None:
@@ -54,6 +57,7 @@ class RunRecord:
             "counts": dict(self.counts),
             "rows": dict(self.rows),
             "warnings": list(self.warnings),
+            "not_recorded": list(self.not_recorded),
             "elapsed_s": round(self.elapsed_s, 3),
         }
         text = json.dumps(record, ensure_ascii=False, indent=2) + "\n"

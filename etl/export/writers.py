@@ -1,4 +1,4 @@
-"""Rows to files: Parquet always, CSV where asked for, a row group at a time."""
+"""Rows to files: Parquet, CSV or both, a row group at a time."""
 
 from __future__ import annotations
 
@@ -21,16 +21,22 @@ _COMPRESSION = "zstd"
 class TableWriter:
     """Writes one table, group by group."""
 
-    def __init__(self, folder: Path, name: str, columns: tuple[Column, ...], csv: bool) -> None:  # noqa: FBT001
+    def __init__(
+        self, folder: Path, name: str, columns: tuple[Column, ...], formats: Collection[str]
+    ) -> None:
         self._schema = written_schema(columns)
         self._plain = read_schema(columns)
         self._note = schema_note(columns)
-        self._parquet = pq.ParquetWriter(
-            folder / f"{name}.parquet",
-            self._schema,
-            store_schema=False,
-            compression=_COMPRESSION,
-            write_statistics=True,
+        self._parquet = (
+            pq.ParquetWriter(
+                folder / f"{name}.parquet",
+                self._schema,
+                store_schema=False,
+                compression=_COMPRESSION,
+                write_statistics=True,
+            )
+            if "parquet" in formats
+            else None
         )
         text = pa.schema(
             [
@@ -39,7 +45,7 @@ class TableWriter:
             ]
         )
         self._text = text
-        self._csv = arrow_csv.CSVWriter(folder / f"{name}.csv", text) if csv else None
+        self._csv = arrow_csv.CSVWriter(folder / f"{name}.csv", text) if "csv" in formats else None
         self._batches: list[pa.RecordBatch] = []
         self._waiting = 0
         self.rows = 0
@@ -57,22 +63,25 @@ class TableWriter:
             return
         table = pa.Table.from_batches(self._batches, self._schema)
         self._batches, self._waiting = [], 0
-        self._parquet.write_table(table, row_group_size=len(table) or None)
+        if self._parquet is not None:
+            self._parquet.write_table(table, row_group_size=len(table) or None)
         if self._csv is not None:
             self._csv.write_table(table.cast(self._text))
 
     def close(self) -> None:
         """Write what is waiting and finish the files."""
         self._write()
-        self._parquet.add_key_value_metadata(self._note)
-        self._parquet.close()
+        if self._parquet is not None:
+            self._parquet.add_key_value_metadata(self._note)
+            self._parquet.close()
         if self._csv is not None:
             self._csv.close()
 
     def abandon(self) -> None:
         """Close the files without finishing the table."""
         self._batches = []
-        self._parquet.close()
+        if self._parquet is not None:
+            self._parquet.close()
         if self._csv is not None:
             self._csv.close()
 
@@ -86,17 +95,16 @@ class TableWriters:
         Where the files go.
     design : TableDesign
         The study's tables.
-    tables : collection of str
-        Names of the tables.
-    csv : bool
-        Whether each is written as CSV too.
+    formats : mapping of str to collection of str
+        For each table, the formats in which it is written.
     """
 
     def __init__(
-        self, folder: Path, design: TableDesign, tables: Collection[str], *, csv: bool
+        self, folder: Path, design: TableDesign, formats: Mapping[str, Collection[str]]
     ) -> None:
         self._writers = {
-            name: TableWriter(folder, name, design.columns(name), csv) for name in tables
+            name: TableWriter(folder, name, design.columns(name), wanted)
+            for name, wanted in formats.items()
         }
 
     def __enter__(self) -> TableWriters:

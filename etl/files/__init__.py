@@ -4,6 +4,7 @@ from etl.files.coded import Coded, group_rows, place_rows
 from etl.files.decoding import RawText, read_text
 from etl.files.delimited import Cells, cells_of, header_of, read_cells
 from etl.files.numeric_cells import NumberReading, find_decimal, numbers_in
+from etl.files.truths import truth_of
 
 __all__ = [
     "Cells",
@@ -18,4 +19,5 @@ __all__ = [
     "place_rows",
     "read_cells",
     "read_text",
+    "truth_of",
 ]

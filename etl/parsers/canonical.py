@@ -30,6 +30,8 @@ class CanonicalLog:
         The area that the log itself says was fixated.
     source_line : (n,) int32 array
         Line of the log, from 1.
+    blink : (n,) bool array
+        Whether a blink touches the fixation; False throughout where the log does not say.
     """
 
     ids: dict[str, Coded]
@@ -41,6 +43,7 @@ class CanonicalLog:
     y_px: NDArray[np.float64]
     label: Coded | None
     source_line: NDArray[np.int32]
+    blink: NDArray[np.bool_]
 
     def __len__(self) -> int:
         return len(self.source_line)
@@ -57,6 +60,7 @@ class CanonicalLog:
             self.y_px[rows],
             None if self.label is None else self.label.take(rows),
             self.source_line[rows],
+            self.blink[rows],
         )
 
 

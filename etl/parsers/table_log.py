@@ -15,7 +15,16 @@ import pyarrow.compute as pc
 from numpy.typing import NDArray
 
 from etl.errors import Findings
-from etl.files import Cells, Coded, NumberReading, cells_of, find_decimal, numbers_in, read_text
+from etl.files import (
+    Cells,
+    Coded,
+    NumberReading,
+    cells_of,
+    find_decimal,
+    numbers_in,
+    read_text,
+    truth_of,
+)
 from etl.parsers.canonical import CanonicalLog, LogNote
 from etl.parsers.coordinates import to_screen_px
 from etl.parsers.time_checks import check_times
@@ -238,7 +247,35 @@ class LogReader:
             y_px,
             label,
             lines,
+            self._blinks(cells, lines, columns, note.shown, findings),
         )
+
+    def _blinks(
+        self,
+        cells: dict[str, pa.Array],
+        lines: NDArray[np.int32],
+        columns: dict[str, str],
+        shown: str,
+        findings: Findings,
+    ) -> NDArray[np.bool_]:
+        """Whether a blink touches each fixation: a number that is not 0, or a word for yes."""
+        if "blink" not in columns:
+            return np.zeros(len(lines), dtype=bool)
+        coded = Coded.of(cells[columns["blink"]], self._missing())
+        known = [_touches(text) for text in coded.values]
+        for code, touches in enumerate(known):
+            if touches is None:
+                row = int(np.flatnonzero(coded.codes == code)[0])
+                findings.error(
+                    "this does not say whether a blink touches the fixation",
+                    path=shown,
+                    line=int(lines[row]),
+                    where=f'column "{columns["blink"]}"',
+                    found=coded.values[code],
+                    expected="a number (0 for no blink), or a word for yes or no",
+                    fix="correct the cells, or take blink out of [logs.columns]",
+                )
+        return np.array([*(bool(touches) for touches in known), False])[coded.codes]
 
     def _unit(self, name: str) -> str:
         """The unit of a position column."""
@@ -332,3 +369,14 @@ class LogReader:
 def _in_ms(values: NDArray[np.float64], unit: str) -> NDArray[np.float64]:
     """Times in milliseconds."""
     return values if unit == "ms" else np.round(values * _TO_MS[unit], _MS_DIGITS)
+
+
+def _touches(text: str) -> bool | None:
+    """Whether a cell says that there was a blink; None where it does not say."""
+    truth = truth_of(text)
+    if truth is not None:
+        return truth
+    try:
+        return float(text.replace(",", ".")) != 0
+    except ValueError:
+        return None

@@ -17,12 +17,16 @@ from etl.export.rows import TrialColumns
 from etl.files import Coded, group_rows
 from etl.measures import MEASURES, REASONS, TRIAL_MEASURES, Measure, select
 from etl.parsers import LogReader
-from etl.session.one_reader import LEFT_OUT_BY, Options
+from etl.screening.ledger import columns_of_accounts
+from etl.screening.rules import OUTLIER
+from etl.session.one_reader import Options
 from etl.session.plan import Plan
+from etl.session.trial_facts import TrialFacts, trial_facts
 from etl.session.work import LogAnswer, LogTask, LogWork, ReaderTask, map_tasks
 from etl.study import Study
 from etl.tables import CovariateColumn, IdColumn, MeasureColumn, TableDesign
 from etl.trials import IDS, KnownTrials, SeenTrials
+from etl.trials.notes import Notes
 
 Progress = Callable[[str, int, int], None]
 
@@ -43,11 +47,17 @@ class Gathered:
         Its decisions.
     tasks : list of ReaderTask
         The readers, in the order of the tables.
+    notes : list of Notes
+        The experimenter's notes that were read.
+    unrecorded : list of str
+        Trials of the trial list that no log has.
     """
 
     design: TableDesign
     options: Options
     tasks: list[ReaderTask]
+    notes: list[Notes]
+    unrecorded: list[str]
 
 
 def read_logs(
@@ -112,8 +122,7 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
         trials.known[name] = Coded.of(supplied, {""}).take(text)
     good = trials.good & (trials.skipped | (text >= 0))
     levels = _levels(plan, trials, text >= 0, shown, findings)
-    if complete:
-        _notice_what_is_missing(plan, seen, findings)
+    unrecorded = _notice_what_is_missing(plan, seen, findings) if complete else []
     if not (text >= 0).any():
         if not findings.failed:
             findings.error(
@@ -125,10 +134,13 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
             )
         return None
     design = _design(plan, trials, text >= 0, levels)
-    tasks = _tasks(design, trials, (text, good), parts)
+    facts = trial_facts(plan, trials, shown, findings)
+    tasks = _tasks(design, trials, (text, good), facts, parts)
     study = plan.study
-    options = Options(study.trials.repeated, study.measures.outside, study.measures.no_opportunity)
-    return Gathered(design, options, tasks)
+    options = Options(
+        study.trials.repeated, study.measures.outside, study.measures.no_opportunity, plan.limits
+    )
+    return Gathered(design, options, tasks, facts.inputs, unrecorded)
 
 
 def _texts(
@@ -204,9 +216,10 @@ def _levels(
     return levels
 
 
-def _notice_what_is_missing(plan: Plan, seen: SeenTrials, findings: Findings) -> None:
-    """Warn of trials of the list, and readers of the table, that no log has."""
+def _notice_what_is_missing(plan: Plan, seen: SeenTrials, findings: Findings) -> list[str]:
+    """Warn of trials of the list, and readers of the table, that no log has; name the trials."""
     book = plan.facts
+    unrecorded: list[str] = []
     if book.trial_list is not None:
         for row in book.unrecorded(seen):
             findings.warning(
@@ -215,6 +228,7 @@ def _notice_what_is_missing(plan: Plan, seen: SeenTrials, findings: Findings) ->
                 line=int(book.trial_list.lines[row]),
                 found=book.trial_list.spelled(row),
             )
+            unrecorded.append(book.trial_list.spelled(row))
     if book.participants is not None:
         readers = book.participants.columns["participant"]
         for row in np.flatnonzero(~readers.among(seen.ids["participant"].values)).tolist():
@@ -224,6 +238,7 @@ def _notice_what_is_missing(plan: Plan, seen: SeenTrials, findings: Findings) ->
                 line=int(book.participants.lines[row]),
                 found=readers.text(row),
             )
+    return unrecorded
 
 
 def _design(
@@ -251,8 +266,8 @@ def _design(
         plan.library.region_names,
         tuple(_measure_column(m) for m in chosen),
         tuple(_measure_column(m) for m in TRIAL_MEASURES.values()),
-        REASONS,
-        LEFT_OUT_BY,
+        (*REASONS, OUTLIER) if plan.limits.on("outlier_sd") else REASONS,
+        columns_of_accounts(plan.limits),
         tuple(shown for _, shown in plan.logs),
     )
 
@@ -276,6 +291,7 @@ def _tasks(
     design: TableDesign,
     trials: KnownTrials,
     looked_up: tuple[NDArray[np.int32], NDArray[np.bool_]],
+    facts: TrialFacts,
     parts: dict[str, list[tuple[Path, int, int]]],
 ) -> list[ReaderTask]:
     """The readers with their trials in the order of the tables; readers with a problem left out."""
@@ -303,6 +319,11 @@ def _tasks(
         {name: known[name].recoded(levels) for name, levels in design.factors.items()},
         covariates,
         text,
+        facts.came_ms,
+        facts.went_ms,
+        facts.answer,
+        tuple(facts.notes),
+        tuple(trials.skipped_by),
     )
     keys = [ids[name] for name in ("trial", "session", "participant") if name in ids]
     order = np.lexsort(keys)
@@ -322,6 +343,7 @@ def _tasks(
                 tuple((path, batch) for path, batch, _ in own),
                 tuple(number for _, _, number in own),
                 columns.take(rows),
+                facts.reader_notes.get(participant, ""),
             )
         )
     return tasks

@@ -18,7 +18,7 @@ from numpy.typing import NDArray
 from etl.files import Coded
 from etl.parsers import CanonicalLog
 
-_NUMBERS = ("onset_ms", "number", "duration_ms", "x_px", "y_px")
+_PLAIN = ("onset_ms", "number", "duration_ms", "x_px", "y_px", "source_line", "blink")
 
 
 def keep_log(log: CanonicalLog, path: Path) -> dict[str, int]:
@@ -42,8 +42,7 @@ def keep_log(log: CanonicalLog, path: Path) -> dict[str, int]:
     if log.label is not None:
         coded["label"] = log.label
     columns = {name: pa.array(column.codes) for name, column in coded.items()}
-    columns |= {name: pa.array(getattr(log, name)) for name in _NUMBERS}
-    columns["source_line"] = pa.array(log.source_line)
+    columns |= {name: pa.array(getattr(log, name)) for name in _PLAIN}
     values = json.dumps({name: column.values for name, column in coded.items()})
     batch = pa.RecordBatch.from_pydict(columns, metadata={"values": values})
     present, starts = np.zeros(1, dtype=np.int64), np.zeros(1, dtype=np.int64)
@@ -91,8 +90,7 @@ def _one(path: Path, batch: int) -> CanonicalLog:
         ids=ids,
         facts={},
         label=label,
-        source_line=arrays["source_line"],
-        **{name: arrays[name] for name in _NUMBERS},
+        **{name: arrays[name] for name in _PLAIN},
     )
 
 
@@ -106,6 +104,5 @@ def _joined(logs: Sequence[CanonicalLog]) -> CanonicalLog:
         ids={name: Coded.joined([log.ids[name] for log in logs]) for name in first.ids},
         facts={},
         label=label,
-        source_line=np.concatenate([log.source_line for log in logs]),
-        **{n: np.concatenate([getattr(log, n) for log in logs]) for n in _NUMBERS},
+        **{n: np.concatenate([getattr(log, n) for log in logs]) for n in _PLAIN},
     )

@@ -7,6 +7,7 @@ from dataclasses import dataclass, field
 
 import numpy as np
 import pyarrow as pa
+import pyarrow.compute as pc
 from numpy.typing import NDArray
 
 from etl.errors import Findings
@@ -20,12 +21,19 @@ from etl.export.rows import (
 from etl.measures import NoOpportunity, Outcomes, Outside, Sequences, compute
 from etl.parsers import CanonicalLog
 from etl.regions import Assigned, RegionLibrary
+from etl.screening import LEFT_OUT_BY, Limits, outlying
+from etl.screening.ledger import (
+    Accounts,
+    FarValue,
+    Screened,
+    check_balance,
+    entries_of,
+    with_values,
+)
+from etl.screening.rules import OUTLIER
 from etl.session.ordering import OrderedFixations, ReaderLog, TrialNames, order_fixations
-from etl.tables import TableDesign
-
-#: What leaves a fixation out, in the order of :attr:`TableDesign.left_out_by`.
-SKIP, REPEATED = 0, 1
-LEFT_OUT_BY = ("skip", "repeated")
+from etl.session.screening import Unscreened, screen
+from etl.tables import LEDGER, TableDesign
 
 
 @dataclass(frozen=True, slots=True)
@@ -35,6 +43,7 @@ class Options:
     repeated: str
     outside: Outside
     no_opportunity: NoOpportunity
+    limits: Limits
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,12 +60,15 @@ class Reader:
         Index of each fixation's log into the study's logs.
     trials : TrialColumns
         The trials that were recorded, in the order of the tables.
+    note : str
+        The experimenter's note on the reader, empty where there is none.
     """
 
     participant: str
     log: CanonicalLog
     file: NDArray[np.int32]
     trials: TrialColumns
+    note: str = ""
 
 
 @dataclass(slots=True)
@@ -66,6 +78,7 @@ class ReaderTables:
     participant: str
     batches: dict[str, pa.RecordBatch]
     counts: dict[str, int]
+    accounts: dict[str, Accounts] = field(default_factory=dict)
     findings: Findings = field(default_factory=Findings)
 
 
@@ -124,80 +137,130 @@ class Bench:
         findings = Findings()
         _, ordered = self.ordered(reader, findings)
         if findings.failed:
-            return ReaderTables(reader.participant, {}, {}, findings)
+            return ReaderTables(reader.participant, {}, {}, findings=findings)
         in_order = bool((ordered.rows[1:] > ordered.rows[:-1]).all())
         log = reader.log if in_order else reader.log.take(ordered.rows)
         texts = reader.trials.text.astype(np.int64)
-        text = texts[ordered.trial]
-        skipped = text < 0
-        left_out_by = np.where(skipped, SKIP, np.where(ordered.repeated, REPEATED, -1))
-        kept = np.flatnonzero(left_out_by < 0)
-        line, order = self._assigned(log, text, skipped)
-        in_study = np.flatnonzero(texts >= 0)
+        line, order = self._assigned(log, texts[ordered.trial])
+        screened = screen(
+            Unscreened(reader.trials, log, ordered, order, reader.note),
+            self.library,
+            self.options,
+        )
+        gone = screened.fixation_codes()
+        kept = np.flatnonzero(gone < 0)
+        in_study = np.flatnonzero(screened.trial_codes() < 0)
         place = np.zeros(len(texts), dtype=np.int64)
         place[in_study] = np.arange(len(in_study))
-        region_count = self.library.region_count[texts[in_study]]
         outcomes = compute(
             Sequences(
                 place[ordered.trial[kept]],
                 order[kept],
-                log.duration_ms[kept],
-                region_count.astype(np.int32),
+                screened.fixations.duration_ms[kept],
+                self.library.region_count[texts[in_study]].astype(np.int32),
             ),
             outside=self.options.outside,
             no_opportunity=self.options.no_opportunity,
         )
         every = len(in_study) == len(texts)
         own = self.rows.facts(reader.trials if every else reader.trials.take(in_study))
-        batches = self._outcome_rows(own, texts[in_study], outcomes)
+        code = self._region_codes(texts[ordered.trial], order)
+        source = (reader.file[ordered.rows], log.source_line)
+        entries = entries_of(
+            screened,
+            self.options.limits,
+            (reader.trials.skipped_by, reader.trials.notes, reader.note),
+            np.searchsorted(ordered.trial, np.arange(len(texts))),
+        )
+        batches, far = self._outcome_rows(own, (texts, in_study), outcomes)
+        entries = with_values(entries, far, self.options.limits)
+        batches["regressions"] = self._regression_rows(
+            own, place, ordered, (screened, log.x_px, kept), (order, code), outcomes
+        )
+        batches["fixations"] = self.rows.fixations(
+            own if every else self.rows.ids(reader.trials),
+            self._fixation_columns(screened, log, (line, order, code), outcomes, source),
+        )
+        batches[LEDGER] = self.rows.ledger(
+            self.design.ids["participant"].ranks[reader.participant],
+            reader.trials,
+            entries,
+            source,
+        )
+        accounts = {
+            "trials": Accounts.of(screened.trial_codes()),
+            "fixations": Accounts.of(gone),
+        }
+        fixations = batches["fixations"]
+        check_balance(
+            accounts,
+            entries,
+            {
+                "trials": batches["trials"].num_rows,
+                "fixations": pc.sum(fixations.column("kept")).as_py() or 0,
+            },
+        )
+        counts = {
+            "readers left out": int(screened.reader.left_out[0] >= 0),
+            "fixations read": len(order),
+            "fixations of skipped trials": accounts["fixations"].by_rule["skip"],
+            "fixations of repeated trials": accounts["fixations"].by_rule["repeated"],
+            "fixations kept": len(kept),
+            "fixations kept outside every region": int((order[kept] == 0).sum()),
+            "overlaps taken for rounding": ordered.overlaps,
+            "trials read": len(texts),
+            "trials skipped": accounts["trials"].by_rule["skip"],
+            "trials kept": len(in_study),
+        }
+        return ReaderTables(reader.participant, batches, counts, accounts, findings)
+
+    def _region_codes(self, text: NDArray[np.int64], order: NDArray[np.int32]) -> NDArray[np.int32]:
+        """The region of each fixation among all regions; -1 outside."""
         code = np.full(len(order), -1, dtype=np.int32)
         inside = order > 0
         code[inside] = self.library.region_code[
             self.library.region_offsets[text[inside]] + order[inside] - 1
         ]
-        batches["regressions"] = self._regression_rows(
-            own, place, ordered, log, kept, (order, code), outcomes
+        return code
+
+    def _fixation_columns(
+        self,
+        screened: Screened,
+        log: CanonicalLog,
+        places: tuple[NDArray[np.int32], NDArray[np.int32], NDArray[np.int32]],
+        outcomes: Outcomes,
+        source: tuple[NDArray[np.int32], NDArray[np.int32]],
+    ) -> FixationColumns:
+        """The columns of ``fixations``: as recorded where left out, as used where kept."""
+        gone = screened.fixation_codes()
+        kept = np.flatnonzero(gone < 0)
+        visit, first_pass = _spread(outcomes, kept, len(gone))
+        used = {rule: code for code, rule in enumerate(self.design.left_out_by)}
+        named = np.array([*(used.get(rule, -1) for rule in LEFT_OUT_BY), -1], dtype=np.int32)
+        line, order, code = places
+        return FixationColumns(
+            screened.recorded.trial,
+            screened.number,
+            np.where(gone < 0, screened.fixations.onset_ms, log.onset_ms),
+            np.where(gone < 0, screened.fixations.duration_ms, log.duration_ms),
+            log.x_px,
+            log.y_px,
+            line,
+            code,
+            order,
+            visit,
+            first_pass,
+            named[gone],
+            *source,
         )
-        visit, first_pass = _spread(outcomes, kept, len(order))
-        batches["fixations"] = self.rows.fixations(
-            own if every else self.rows.ids(reader.trials),
-            FixationColumns(
-                ordered.trial,
-                ordered.number,
-                log.onset_ms,
-                log.duration_ms,
-                log.x_px,
-                log.y_px,
-                line,
-                code,
-                order,
-                visit,
-                first_pass,
-                left_out_by.astype(np.int32),
-                reader.file[ordered.rows],
-                log.source_line,
-            ),
-        )
-        counts = {
-            "fixations read": len(order),
-            "fixations of skipped trials": int(skipped.sum()),
-            "fixations of repeated trials": int((ordered.repeated & ~skipped).sum()),
-            "fixations kept": len(kept),
-            "fixations kept outside every region": int((order[kept] == 0).sum()),
-            "overlaps taken for rounding": ordered.overlaps,
-            "trials read": len(texts),
-            "trials skipped": int((texts < 0).sum()),
-            "trials kept": len(in_study),
-        }
-        return ReaderTables(reader.participant, batches, counts, findings)
 
     def _assigned(
-        self, log: CanonicalLog, text: NDArray[np.int64], skipped: NDArray[np.bool_]
+        self, log: CanonicalLog, text: NDArray[np.int64]
     ) -> tuple[NDArray[np.int32], NDArray[np.int32]]:
         """Line and region order of every fixation; 0 where there is none."""
         line = np.zeros(len(text), dtype=np.int32)
         order = np.zeros(len(text), dtype=np.int32)
-        rows = np.flatnonzero(~skipped)
+        rows = np.flatnonzero(text >= 0)
         found: Assigned
         if self.library.labels is not None and log.label is not None:
             found = self.library.assign_labels(text[rows], log.label.codes[rows], log.label.values)
@@ -209,41 +272,56 @@ class Bench:
     def _outcome_rows(
         self,
         facts: Mapping[str, pa.Array],
-        texts: NDArray[np.int64],
+        trials: tuple[NDArray[np.int64], NDArray[np.int64]],
         outcomes: Outcomes,
-    ) -> dict[str, pa.RecordBatch]:
-        """Rows of the three tables of outcomes."""
+    ) -> tuple[dict[str, pa.RecordBatch], list[FarValue]]:
+        """Rows of the three tables of outcomes, and the values that were set missing."""
+        every_text, in_study = trials
+        texts = every_text[in_study]
         counts = np.diff(outcomes.cell_offsets)
         trial = np.repeat(np.arange(len(texts)), counts)
         within = np.arange(len(trial)) - np.repeat(outcomes.cell_offsets[:-1], counts)
         code = self.library.region_code[self.library.region_offsets[texts][trial] + within]
         cells = (trial, (within + 1).astype(np.int32), code)
-        regions = CellMeasures(
-            {m.name: outcomes.regions[m.name].values for m in self.design.measures},
-            {m.name: outcomes.regions[m.name].reasons for m in self.design.measures},
-        )
-        trials = CellMeasures(
+        values = {m.name: outcomes.regions[m.name].values for m in self.design.measures}
+        reasons = {m.name: outcomes.regions[m.name].reasons for m in self.design.measures}
+        far: list[FarValue] = []
+        if self.options.limits.on("outlier_sd"):
+            for measure in self.design.measures:
+                if measure.kind == "duration":
+                    name = measure.name
+                    away = outlying(values[name], code, self.options.limits.outlier_sd)
+                    far += [
+                        FarValue(int(in_study[trial[c]]), int(code[c]), name, values[name][c])
+                        for c in np.flatnonzero(away).tolist()
+                    ]
+                    values[name] = np.where(away, np.nan, values[name])
+                    outlier = self.design.reasons.index(OUTLIER)
+                    reasons[name] = np.where(away, outlier, reasons[name]).astype(np.uint8)
+        regions = CellMeasures(values, reasons)
+        of_trials = CellMeasures(
             {m.name: outcomes.trials[m.name].values for m in self.design.trial_measures},
             {m.name: outcomes.trials[m.name].reasons for m in self.design.trial_measures},
         )
-        return {
+        batches = {
             "outcomes": self.rows.outcomes(facts, cells, regions),
             "outcomes_wide": self.rows.outcomes_wide(facts, cells, regions),
-            "trials": self.rows.trials(facts, trials),
+            "trials": self.rows.trials(facts, of_trials),
         }
+        return batches, far
 
     def _regression_rows(
         self,
         facts: Mapping[str, pa.Array],
         place: NDArray[np.int64],
         ordered: OrderedFixations,
-        log: CanonicalLog,
-        kept: NDArray[np.int64],
+        fixations: tuple[Screened, NDArray[np.float64], NDArray[np.int64]],
         regions: tuple[NDArray[np.int32], NDArray[np.int32]],
         outcomes: Outcomes,
     ) -> pa.RecordBatch:
         """One row a regressive saccade."""
         order, code = regions
+        screened, x_px, kept = fixations
         launch = kept[outcomes.regressions.launch]
         landing = kept[outcomes.regressions.landing]
         return self.rows.regressions(
@@ -257,8 +335,8 @@ class Bench:
                 outcomes.regressions.ends_first_pass,
                 ordered.number[launch],
                 ordered.number[landing],
-                log.onset_ms[landing],
-                log.x_px[landing] - log.x_px[launch],
+                screened.fixations.onset_ms[landing],
+                x_px[landing] - x_px[launch],
             ),
         )
 

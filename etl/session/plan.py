@@ -13,6 +13,8 @@ from etl.files import header_of, read_text
 from etl.measures import MEASURES, TRIAL_MEASURES
 from etl.parsers import LogReader
 from etl.regions import RegionLibrary, read_definitions
+from etl.screening import Limits
+from etl.session.limits import check_rules, limits_of
 from etl.study import Study
 from etl.tables import BARE_DESIGN, TABLES
 from etl.trials import IDS, FactBook, gather_facts
@@ -35,6 +37,8 @@ class Plan:
         Where the facts about trials come from.
     library : RegionLibrary
         The texts and their regions.
+    limits : Limits
+        The rules of screening.
     """
 
     study: Study
@@ -42,6 +46,7 @@ class Plan:
     reader: LogReader
     facts: FactBook
     library: RegionLibrary
+    limits: Limits
 
     @cached_property
     def supplied(self) -> tuple[str, ...]:
@@ -107,7 +112,8 @@ def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tupl
     if facts is None or library is None or not _names_are_free(study, findings):
         return None, logs
     reader = LogReader(study.logs, study.screen, facts.from_log)
-    return Plan(study, logs, reader, facts, library), logs
+    check_rules(study, library.region_names, findings)
+    return Plan(study, logs, reader, facts, library, limits_of(study)), logs
 
 
 def _header(

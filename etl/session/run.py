@@ -15,26 +15,24 @@ from pathlib import Path
 from typing import Any
 
 from etl.errors import DataError, FaultError, Findings
+from etl.export.accounts import write_accounts
 from etl.export.publish import check_target, published
 from etl.export.run_record import RunRecord
 from etl.export.writers import TableWriters
 from etl.parsers import LogReader
 from etl.session.gather import Gathered, Progress, gather, notice_logs, read_logs
 from etl.session.one_reader import ReaderTables
-from etl.session.ordering import OVERLAP_TOLERATED_MS
 from etl.session.plan import Plan, make_plan
 from etl.session.result import Result
 from etl.session.told import summary
+from etl.session.totals import Totals
 from etl.session.work import LogAnswer, make_reader_work, map_tasks
 from etl.study import Study
-from etl.tables import TABLES
+from etl.tables import LEDGER, TABLES
 from etl.trials.facts import shown_path
 
 #: A study whose logs are smaller than this is done sooner by one process than by starting more.
 _WORTH_WORKERS_BYTES = 20_000_000
-#: More than this share of kept fixations outside every region is worth a warning: it is a sign of
-#: a wrong layout (common practice, no source).
-_OUTSIDE_SHARE = 0.2
 
 
 def _silent(stage: str, done: int, total: int) -> None:
@@ -61,16 +59,16 @@ def check(study: Study, *, workers: int | None = None, progress: Progress = _sil
     findings = Findings()
     with tempfile.TemporaryDirectory(prefix="trialwright-") as folder, _own_faults():
         examined = _examine(study, Path(folder), workers, progress, findings)
-        counts: Counter[str] = Counter()
         if examined is not None:
             plan, gathered, _, count = examined
+            totals = Totals(plan.limits)
             for tables in _finish(plan, gathered, count, progress, write=False):
                 findings.extend(tables.findings)
-                counts.update(tables.counts)
-            counts["readers"] = len(gathered.tasks)
+                totals.add(tables)
             if not findings.failed:
-                findings.note(summary(counts))
-        _notice_counts(study, counts, findings)
+                totals.notice(study, findings)
+            if not findings.failed:
+                findings.note(summary(totals.counts))
     return findings
 
 
@@ -117,26 +115,28 @@ def build(
         if examined is None:
             raise DataError(findings)
         plan, gathered, answers, count = examined
-        counts: Counter[str] = Counter()
-        csv = "csv" in study.output.formats
-        with TableWriters(shop.fresh, gathered.design, TABLES, csv=csv) as writers:
+        totals = Totals(plan.limits)
+        with TableWriters(shop.fresh, gathered.design, _formats(study)) as writers:
             write = not findings.failed
             for tables in _finish(plan, gathered, count, progress, write=write):
                 findings.extend(tables.findings)
-                counts.update(tables.counts)
+                totals.add(tables)
                 if not findings.failed:
                     writers.add(tables.batches)
+            if not findings.failed:
+                totals.notice(study, findings)
             if findings.failed:
                 raise DataError(findings)
         rows = writers.rows
-        _notice_counts(study, counts, findings)
-        told = {"readers": len(gathered.tasks), **_log_counts(answers), **counts}
+        write_accounts(totals.account_rows(), shop.fresh)
+        told = {**_log_counts(answers), **totals.counts}
         RunRecord(
             study.understood(),
-            _inputs(plan, answers),
+            _inputs(plan, gathered, answers),
             told,
             rows,
             findings.lines(("warning", "note")),
+            gathered.unrecorded,
             time.perf_counter() - started,
         ).write(shop.fresh)
     return Result(target, told, rows, findings)
@@ -212,25 +212,10 @@ def _finish(
         progress("working on readers", done, len(gathered.tasks))
 
 
-def _notice_counts(study: Study, counts: Counter[str], findings: Findings) -> None:
-    """Warn of what the counts of the whole study show."""
-    kept = counts["fixations kept"]
-    outside = counts["fixations kept outside every region"]
-    if kept and outside / kept > _OUTSIDE_SHARE:
-        findings.warning(
-            f"{outside / kept:.0%} of the fixations lie outside every region",
-            path=study.shown,
-            line=study.line_of("regions"),
-            where="regions",
-            fix="if that is more than the texts leave free, check the layout, the screen's "
-            "origin and the boxes",
-        )
-    overlaps = counts["overlaps taken for rounding"]
-    if overlaps:
-        findings.note(
-            f"{overlaps:,} fixation{' reaches' if overlaps == 1 else 's reach'} into the next one "
-            f"by no more than {OVERLAP_TOLERATED_MS:g} ms, which is taken for rounding",
-        )
+def _formats(study: Study) -> dict[str, tuple[str, ...]]:
+    """The formats of each table; the ledger is a CSV file always."""
+    formats = ("parquet", "csv") if "csv" in study.output.formats else ("parquet",)
+    return {**dict.fromkeys(TABLES, formats), LEDGER: ("csv",)}
 
 
 def _log_counts(answers: list[LogAnswer]) -> dict[str, int]:
@@ -241,7 +226,7 @@ def _log_counts(answers: list[LogAnswer]) -> dict[str, int]:
     return dict(counts)
 
 
-def _inputs(plan: Plan, answers: list[LogAnswer]) -> list[dict[str, Any]]:
+def _inputs(plan: Plan, gathered: Gathered, answers: list[LogAnswer]) -> list[dict[str, Any]]:
     """Every file read, with its digest."""
     study = plan.study
     files = [(study.path, study.path.name, "study file")]
@@ -255,6 +240,9 @@ def _inputs(plan: Plan, answers: list[LogAnswer]) -> list[dict[str, Any]]:
     inputs += [
         {"file": table.shown, "role": "facts", "sha256": table.sha256}
         for table in plan.facts.tables()
+    ]
+    inputs += [
+        {"file": notes.shown, "role": "notes", "sha256": notes.sha256} for notes in gathered.notes
     ]
     for answer in answers:
         note = answer.note

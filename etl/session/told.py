@@ -35,6 +35,18 @@ def summary(counts: Mapping[str, int]) -> str:
     if counts["fixations of repeated trials"]:
         repeated = counted(counts["fixations of repeated trials"], "fixation")
         line += f"; {repeated} of trials recorded twice left out"
+    screened = counts["trials read"] - counts["trials skipped"] - counts["trials kept"]
+    dropped = (
+        counts["fixations read"]
+        - counts["fixations of skipped trials"]
+        - counts["fixations of repeated trials"]
+        - kept
+    )
+    if screened or dropped:
+        line += (
+            f"; screening left out {counted(screened, 'trial')} and "
+            f"{counted(dropped, 'fixation')} in all"
+        )
     return line
 
 
@@ -43,7 +55,7 @@ def built(result: Result) -> str:
     lines = [summary(result.counts), f"Written to {result.folder}:"]
     width = max(len(name) for name in result.rows)
     lines += [f"  {name:<{width}}  {rows:>11,} rows" for name, rows in result.rows.items()]
-    return "\n".join([*lines, "  run.json"])
+    return "\n".join([*lines, "  accounts.csv  run.json"])
 
 
 def measure_names() -> list[str]:

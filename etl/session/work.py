@@ -53,6 +53,7 @@ class ReaderTask:
     parts: tuple[tuple[Path, int], ...]
     files: tuple[int, ...]
     trials: TrialColumns
+    note: str = ""
 
 
 class LogWork:
@@ -98,7 +99,7 @@ class ReaderWork:
         """Finish one reader."""
         log, part = kept_log(task.parts)
         file = np.asarray(task.files, dtype=np.int32)[part]
-        reader = Reader(task.participant, log, file, task.trials)
+        reader = Reader(task.participant, log, file, task.trials, task.note)
         tables = self._bench.tables(reader)
         if not self._write:
             tables.batches = {}

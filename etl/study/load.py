@@ -18,6 +18,17 @@ from etl.study.rule import Problem
 from etl.study.syntax import decode, parse, read_bytes
 from etl.study.wording import dotted
 
+#: Where the study file names a file or a folder, besides the logs: the tables around it, its key.
+_FILE_KEYS = (
+    (("participants",), "table"),
+    (("items",), "table"),
+    (("trials",), "table"),
+    (("regions",), "file"),
+    (("screening", "trials"), "notes"),
+    (("screening", "participants"), "notes"),
+    (("output",), "folder"),
+)
+
 
 @dataclass(frozen=True, slots=True)
 class Source:
@@ -106,15 +117,12 @@ class Study(StudyFile):
         """
         whole: dict[str, Any] = self.model_dump(mode="json")
         whole["logs"]["files"] = [self._portable(name) for name in whole["logs"]["files"]]
-        for table, key in (
-            ("participants", "table"),
-            ("items", "table"),
-            ("trials", "table"),
-            ("regions", "file"),
-            ("output", "folder"),
-        ):
-            if whole[table] is not None and whole[table][key] is not None:
-                whole[table][key] = self._portable(whole[table][key])
+        for tables, key in _FILE_KEYS:
+            inner: Any = whole
+            for table in tables:
+                inner = None if inner is None else inner[table]
+            if inner is not None and inner[key] is not None:
+                inner[key] = self._portable(inner[key])
         return whole
 
     def _portable(self, name: str) -> str:

@@ -12,6 +12,14 @@ from typing import Annotated, Literal
 from pydantic import AfterValidator, ConfigDict, Field
 
 from etl.study.logs import Column, Columns, Logs, PlaceColumn, PlainColumn, TimeColumn
+from etl.study.screening import (
+    FixationRules,
+    Merge,
+    ParticipantRules,
+    Screening,
+    TrialRules,
+    ValueRules,
+)
 from etl.study.values import (
     CellTexts,
     FileName,
@@ -29,20 +37,26 @@ __all__ = [
     "Column",
     "Columns",
     "Facts",
+    "FixationRules",
     "Items",
     "Layout",
     "Lines",
     "Logs",
     "Measures",
+    "Merge",
     "Output",
+    "ParticipantRules",
     "Participants",
     "PlaceColumn",
     "PlainColumn",
     "Regions",
     "Screen",
+    "Screening",
     "StudyFile",
     "TimeColumn",
+    "TrialRules",
     "Trials",
+    "ValueRules",
 ]
 
 #: No screen is larger; a bigger number is a slip in the unit.
@@ -329,6 +343,11 @@ class StudyFile(Table):
     lines: Lines | None = Field(
         default=None,
         description="Which line of a text a fixation belongs to; for texts of several lines.",
+    )
+    screening: Screening | None = Field(
+        default=None,
+        description="What is left out, by rules in the order of their keys; each is off unless "
+        "named.",
     )
     measures: Measures = Field(
         default=Measures(),

@@ -7,8 +7,28 @@ from collections.abc import Iterator
 from etl.study.models import StudyFile
 from etl.study.rule import Problem, Rule, quoted, rule
 
-_TEXT_KINDS = ("marked_text", "words")
+#: Kinds of regions that the text itself gives, by its layout.
+TEXT_KINDS = ("marked_text", "words")
 _GEOMETRY = ("vertical", "tolerance_px", "overlap")
+
+
+def absent_positions(study: StudyFile) -> list[str]:
+    """Which of x and y the regions need and the log does not have.
+
+    Parameters
+    ----------
+    study : StudyFile
+        The study.
+
+    Returns
+    -------
+    list of str
+    """
+    columns, regions = study.logs.columns, study.regions
+    if regions.kind == "labels" and columns.x is None and columns.y is None:
+        return []
+    needed = ["x", "y"] if regions.vertical == "box" else ["x"]
+    return [name for name in needed if getattr(columns, name) is None]
 
 
 @rule("regions.kind", "regions.vertical", "logs.columns.x", "logs.columns.y", "logs.columns.label")
@@ -23,10 +43,8 @@ def place_is_known(study: StudyFile) -> Iterator[Problem]:
             fix='add label = "…" with the header of the column, or define regions by coordinates',
         )
     by_position = regions.kind != "labels"
-    needed = ["x", "y"] if regions.vertical == "box" else ["x"]
-    absent = [name for name in needed if getattr(columns, name) is None]
-    some = columns.x is not None or columns.y is not None
-    if absent and (by_position or some):
+    absent = absent_positions(study)
+    if absent:
         instead = (
             ', or write kind = "labels" in [regions] if regions are to come from the label'
             if by_position and columns.label is not None
@@ -152,18 +170,18 @@ def axis_fits_the_origin(study: StudyFile) -> Iterator[Problem]:
 def layout_goes_with_text(study: StudyFile) -> Iterator[Problem]:
     """Text becomes places by the layout; the other kinds bring their own places, or need none."""
     regions = study.regions
-    if regions.kind in _TEXT_KINDS and regions.layout is None:
+    if regions.kind in TEXT_KINDS and regions.layout is None:
         yield Problem(
             ("regions",),
             f'regions.kind = "{regions.kind}" needs to know where the text stood',
             expected="[regions.layout]",
             fix="add [regions.layout] with left_px, top_px, character_width_px and line_height_px",
         )
-    if regions.kind not in _TEXT_KINDS and regions.layout is not None:
+    if regions.kind not in TEXT_KINDS and regions.layout is not None:
         yield Problem(
             ("regions", "layout"),
             f'a layout does nothing with regions.kind = "{regions.kind}"',
-            expected=" or ".join(f'kind = "{kind}"' for kind in _TEXT_KINDS),
+            expected=" or ".join(f'kind = "{kind}"' for kind in TEXT_KINDS),
             fix="remove [regions.layout], or correct kind",
         )
 

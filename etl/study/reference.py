@@ -62,6 +62,8 @@ def _kind_of(annotation: Any) -> str:
     origin, inner = get_origin(annotation), get_args(annotation)
     if origin is Annotated:
         return _kind_of(inner[0])
+    if origin is tuple and ... not in inner:
+        return f"list of {len(inner)} {_kind_of(inner[0])}s"
     if origin is tuple:
         return f"list of {_kind_of(inner[0])}"
     if origin is dict:

@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Collection, Iterator
 
-from etl.study import log_rules, place_rules, trial_rules
+from etl.study import log_rules, place_rules, screening_rules, trial_rules
 from etl.study.models import StudyFile
 from etl.study.positions import KeyPath
 from etl.study.rule import Problem
@@ -36,6 +36,24 @@ RULES = (
     trial_rules.levels_belong_to_factors,
     trial_rules.factors_are_no_covariates,
     trial_rules.facts_keep_their_own_names,
+    screening_rules.text_time_has_limits,
+    screening_rules.text_time_has_onsets,
+    screening_rules.off_screen_has_a_screen,
+    screening_rules.off_screen_has_positions,
+    screening_rules.blink_has_its_column,
+    screening_rules.merge_has_one_distance,
+    screening_rules.merge_has_positions,
+    screening_rules.merge_in_degrees_has_a_screen,
+    screening_rules.merge_in_degrees_has_a_width,
+    screening_rules.merge_in_degrees_has_a_distance,
+    screening_rules.merge_in_characters_has_a_layout,
+    screening_rules.some_duration_is_kept,
+    screening_rules.some_trial_is_kept,
+    screening_rules.first_pass_blink_has_its_column,
+    screening_rules.duration_of_trial_has_onsets,
+    screening_rules.wrong_answer_is_known,
+    screening_rules.correct_share_is_known,
+    screening_rules.cells_have_factors,
 )
 
 

@@ -136,6 +136,12 @@ Number = Annotated[float, Field(strict=True, allow_inf_nan=False)]
 #: A name that somebody chose: a column's header, a factor, a measure.
 Name = Annotated[str, Field(min_length=1)]
 Names = Annotated[tuple[Name, ...], Field(json_schema_extra=_UNIQUE), AfterValidator(no_repeats)]
+#: The same, where a list without a name would say nothing.
+SomeNames = Annotated[
+    tuple[Name, ...],
+    Field(min_length=1, json_schema_extra=_UNIQUE),
+    AfterValidator(no_repeats),
+]
 #: Text that may be empty, such as a mark for a missing value.
 Texts = Annotated[tuple[str, ...], Field(json_schema_extra=_UNIQUE), AfterValidator(no_repeats)]
 

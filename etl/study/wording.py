@@ -198,21 +198,13 @@ def _example(path: KeyPath) -> str:
 
 def _unknown(path: KeyPath, data: Mapping[str, Any]) -> Problem:
     """A key that the study file does not know."""
-    if path == ("screening",):
-        return Problem(
-            path,
-            "screening is not in this version, and its rules would not be applied",
-            expected="a study file without [screening]",
-            fix="remove [screening] and the tables in it",
-        )
     near = meant(path, data)
     if near is not None:
         return Problem(path, "unknown key", fix=f"did you mean {quoted(str(near[-1]))}?")
-    homes = [
-        _table_name(key[:-1])
-        for key, _ in known_keys()
-        if key[-1] == path[-1] and key[:-1] != path[:-1]
+    tables = [
+        key[:-1] for key, _ in known_keys() if key[-1] == path[-1] and key[:-1] != path[:-1]
     ]
+    homes = [_table_name(home) for home in sorted(tables, key=len)]
     table = table_at(path[:-1])
     here = [] if table is None else list(table.model_fields)
     there = difflib.get_close_matches(str(path[-1]).lower(), here, n=1)

@@ -34,6 +34,8 @@ class KnownTrials:
         Identifiers and facts, by name.
     skipped : (trials,) bool array
         Whether the trial is no part of the study.
+    skipped_by : list of str
+        By which fact, such as ``block = practice``; empty where it is part of the study.
     good : (trials,) bool array
         Whether all that must be known of the trial is known.
     """
@@ -41,6 +43,7 @@ class KnownTrials:
     seen: SeenTrials
     known: dict[str, Coded]
     skipped: NDArray[np.bool_]
+    skipped_by: list[str]
     good: NDArray[np.bool_]
 
     def __len__(self) -> int:
@@ -114,9 +117,14 @@ class FactBook:
             if "item" in table.columns and "item" not in table.keys:
                 good &= self._agree_on_item(known, table, rows, (seen, shown), findings)
         skipped = np.zeros(len(seen), dtype=bool)
+        skipped_by = [""] * len(seen)
         for name, values in self.skip.items():
-            if name in known:
-                skipped |= known[name].among(values)
+            if name not in known:
+                continue
+            listed = known[name].among(values)
+            for row in np.flatnonzero(listed & ~skipped).tolist():
+                skipped_by[row] = f"{name} = {known[name].text(row)}"
+            skipped |= listed
         for table, absent in missing:
             # A practice trial need not stand in any table.
             lacking = absent & ~skipped
@@ -127,7 +135,7 @@ class FactBook:
                 keys = [known[key].take(rows) for key in table.keys if key in known]
                 for row in rows[np.sort(group_rows(keys)[0])].tolist():
                     _tell_missing_row(table, known, row, (seen, shown), findings)
-        return KnownTrials(seen, known, skipped, good | skipped)
+        return KnownTrials(seen, known, skipped, skipped_by, good | skipped)
 
     def _agree_on_item(
         self,

@@ -39,6 +39,7 @@ def reader_log(fixations: Sequence[Fixation]) -> ReaderLog:
         nowhere,
         None,
         np.arange(2, len(fixations) + 2, dtype=np.int32),
+        np.zeros(len(fixations), dtype=bool),
     )
     return ReaderLog(log, file.astype(np.int32), ("a.tsv", "b.tsv"), trial.astype(np.int64))
 

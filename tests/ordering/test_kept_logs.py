@@ -34,7 +34,7 @@ def logs(draw: st.DrawFn) -> CanonicalLog:
         ids["session"] = coded(("a", ""), 0)
     label = coded(("verb", "…"), -1) if draw(st.booleans()) else None
     lines = np.arange(2, rows + 2, dtype=np.int32)
-    return CanonicalLog(ids, {}, *(numbers() for _ in NUMBERS), label, lines)
+    return CanonicalLog(ids, {}, *(numbers() for _ in NUMBERS), label, lines, lines % 3 == 0)
 
 
 def texts(coded: Coded | None) -> list[str] | None:
@@ -45,6 +45,7 @@ def texts(coded: Coded | None) -> list[str] | None:
 def assert_same(found: CanonicalLog, expected: CanonicalLog) -> None:
     """Both logs hold the same fixations, in the same order."""
     assert found.source_line.tolist() == expected.source_line.tolist()
+    assert found.blink.tolist() == expected.blink.tolist()
     for name in NUMBERS:
         assert np.array_equal(getattr(found, name), getattr(expected, name), equal_nan=True)
     for name, coded in expected.ids.items():
@@ -98,7 +99,7 @@ def test_order_of_values_makes_no_difference(tmp_path: Path, order: tuple[str, s
         participant = Coded(np.array([order.index("P02")] * 2, dtype=np.int32), order)
         ids = {"participant": participant, "trial": Coded(codes, trials)}
         lines = np.array([2, 3], dtype=np.int32)
-        log = CanonicalLog(ids, {}, nowhere, nowhere, np.ones(2), nowhere, nowhere, None, lines)
+        log = CanonicalLog(ids, {}, nowhere, nowhere, np.ones(2), nowhere, nowhere, None, lines, lines > 0)
         parts.append((tmp_path / f"{number}.arrow", keep_log(log, tmp_path / f"{number}.arrow")))
     found, file = kept_log([(path, batches["P02"]) for path, batches in parts])
     assert texts(found.ids["trial"]) == ["1", "2", "2", "3"]

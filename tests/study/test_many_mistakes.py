@@ -46,7 +46,14 @@ file = 'a\b.csv'
 method = "chain"
 
 [screening.fixations]
-first = 1
+first = 0
+blnik = "drop"
+merge = { under_ms = 80 }
+under_ms = 800
+over_ms = 80
+
+[screening.participants]
+correct_share_under = 0.75
 
 [measures]
 outcomes = ["binary", "frist_pass_time"]
@@ -114,18 +121,28 @@ study.toml:38: regoins: unknown key
 study.toml:42: lines.method: this is not one of the choices; found "chain", expected "nearest" \
 (no other in this version)
     fix: write "nearest"
-study.toml:44: screening: screening is not in this version, and its rules would not be applied; \
-expected a study file without [screening]
-    fix: remove [screening] and the tables in it
-study.toml:48: measures.outcomes, entry 2: there is no such outcome; found "frist_pass_time", \
+study.toml:45: screening.fixations.first: out of bounds; found "0", expected a number of 1 or more
+    fix: write for example first = 1
+study.toml:46: screening.fixations.blnik: unknown key
+    fix: did you mean "blink"?
+study.toml:47: screening.fixations.merge: nothing says how near the other fixation must be; \
+expected one of within_px, within_deg and within_characters
+    fix: add for example within_px = 14
+study.toml:49: screening.fixations.over_ms: no duration lies between under_ms and over_ms; found \
+"80", expected a number above 800
+    fix: correct one of the two limits
+study.toml:52: screening.participants.correct_share_under: nothing says whether an answer was \
+correct; expected trials.answer_correct
+    fix: add answer_correct = "…" to [trials] with the name of the column, or remove this rule
+study.toml:55: measures.outcomes, entry 2: there is no such outcome; found "frist_pass_time", \
 expected a group (binary, count or duration) or the name of a measure
     fix: did you mean "first_pass_time"?
-study.toml:49: measures.factors: unknown key; expected outcomes, outside or no_opportunity
+study.toml:56: measures.factors: unknown key; expected outcomes, outside or no_opportunity
     fix: it belongs in [trials]
-study.toml:52: output.pseudonyms: replacing participant ids is not in this version; found \
+study.toml:59: output.pseudonyms: replacing participant ids is not in this version; found \
 "true", expected false
     fix: remove the key; the ids in the tables will be those of the logs
-26 problems; nothing was written"""
+30 problems; nothing was written"""
 
 
 def test_all_mistakes_are_listed_in_the_order_of_the_file(refusal: Callable[..., str]) -> None:

@@ -11,7 +11,7 @@ from etl.study.reference import key_reference
 from etl.study.schema import SCHEMA_FILE, schema_text, study_schema
 from etl.study.shape import known_keys, table_at
 from etl.study.values import Table
-from tests.study.written import EXAMPLE, SOUND, changed
+from tests.study.written import ALL_OFF, EXAMPLE, SOUND, changed
 
 
 def judge() -> jsonschema.Draft202012Validator:
@@ -38,7 +38,12 @@ def test_shipped_schema_is_current() -> None:
 
 
 @pytest.mark.parametrize(
-    "text", [pytest.param(EXAMPLE, id="the design's example"), pytest.param(SOUND, id="the least")]
+    "text",
+    [
+        pytest.param(EXAMPLE, id="the design's example"),
+        pytest.param(SOUND, id="the least"),
+        pytest.param(ALL_OFF, id="every rule off"),
+    ],
 )
 def test_schema_accepts_a_sound_study(text: str) -> None:
     """What the program accepts an editor accepts."""
@@ -50,7 +55,21 @@ def test_schema_accepts_a_sound_study(text: str) -> None:
     [
         pytest.param("trial =", "trail =", "'trail' was unexpected", id="unknown key"),
         pytest.param("[regions]", "[regoins]", "'regoins' was unexpected", id="unknown table"),
-        pytest.param("[regions]", "[screening]\n[regions]", "'screening' was", id="screening"),
+        pytest.param(
+            "[regions]", "[screening]\nunder_ms = 1\n[regions]", "'under_ms' was", id="rule astray"
+        ),
+        pytest.param(
+            "[regions]",
+            "[screening.fixations]\nunder_ms = true\n[regions]",
+            "True is not valid under any",
+            id="limit that is true",
+        ),
+        pytest.param(
+            "[regions]",
+            "[screening.trials]\nduration_ms = [500]\n[regions]",
+            "is not valid under any",
+            id="half a range",
+        ),
         pytest.param('"boxes"\n', '"circles"\n', "'circles' is not one of", id="no choice"),
         pytest.param('file = "boxes.csv"\n', "", "'file' is a required property", id="missing"),
         pytest.param('["logs/*.tsv"]', "[]", "should be non-empty", id="empty list"),
@@ -127,6 +146,13 @@ def test_every_row_of_the_reference_is_whole() -> None:
             "output.formats", 'list of `"parquet"`, `"csv"`', '`["parquet"]`', id="list of choices"
         ),
         pytest.param("output.pseudonyms", "true or false", "`false`", id="switch"),
+        pytest.param(
+            "screening.trials.outside_share_over",
+            "number, at least 0, at most 1",
+            "(absent)",
+            id="share",
+        ),
+        pytest.param("screening.trials.duration_ms", "list of 2 numbers", "(absent)", id="range"),
     ],
 )
 def test_row_of_the_reference(key: str, kind: str, default: str) -> None:

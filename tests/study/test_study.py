@@ -64,6 +64,7 @@ DEFAULTS = {
         "layout": None,
     },
     "lines": None,
+    "screening": None,
     "measures": {
         "outcomes": ["binary", "count", "duration"],
         "outside": "ignore",

@@ -116,14 +116,6 @@ from tests.study.written import changed
             "    fix: remove the key; the ids in the tables will be those of the logs",
             id="pseudonyms",
         ),
-        pytest.param(
-            "[regions]",
-            "[screening.fixations]\nunder_ms = 80\n[regions]",
-            "study.toml:12: screening: screening is not in this version, and its "
-            "rules would not be applied; expected a study file without [screening]\n"
-            "    fix: remove [screening] and the tables in it",
-            id="screening",
-        ),
     ],
 )
 def test_value_that_cannot_work_is_refused(

@@ -18,7 +18,7 @@ file = "boxes.csv"
 kind = "boxes"
 """
 
-#: The whole study file of the design, without what is not in this version.
+#: The whole study file of the design.
 EXAMPLE = r"""
 title = "Orchard study"
 
@@ -91,6 +91,34 @@ direction = "ltr"
 [lines]
 method = "nearest"
 
+[screening.fixations]             # in this order
+outside_text_time = true          # starts before the text's onset or after its offset
+off_screen = true
+first = 1                         # the first n of a trial (a fixation on the starting mark)
+last = 1                          # the last n (looking at the answer key)
+blink = "drop"                    # a fixation a blink touches
+merge = { under_ms = 80, within_px = 14 }
+under_ms = 80
+over_ms = 800
+
+[screening.trials]
+notes = "notes.csv"               # the experimenter's own: participant, trial, reason
+fewest_fixations = 3
+outside_share_over = 0.30
+duration_ms = [500, 30000]
+blink_in_first_pass_of = ["verb"]
+no_first_pass_on = ["verb"]       # the critical region was not read in first pass
+answer_wrong = false
+
+[screening.participants]
+notes = "notes.csv"
+correct_share_under = 0.75
+lost_trials_share_over = 0.30
+fewest_trials_per_cell = 4        # cell: a combination of the factors
+
+[screening.values]                # one value of one row goes missing, the row stays
+outlier_sd = 3                    # durations, within participant and region
+
 [measures]
 outcomes = ["binary", "count"]
 outside = "ignore"
@@ -101,6 +129,40 @@ folder = "out"
 formats = ["parquet", "csv"]
 pseudonyms = false
 """
+
+#: The least, with every rule of screening named and switched off.
+ALL_OFF = (
+    SOUND
+    + """\
+[screening.fixations]
+outside_text_time = false
+off_screen = false
+first = false
+last = false
+blink = false
+merge = false
+under_ms = false
+over_ms = false
+
+[screening.trials]
+notes = false
+fewest_fixations = false
+outside_share_over = false
+duration_ms = false
+blink_in_first_pass_of = false
+no_first_pass_on = false
+answer_wrong = false
+
+[screening.participants]
+notes = false
+correct_share_under = false
+lost_trials_share_over = false
+fewest_trials_per_cell = false
+
+[screening.values]
+outlier_sd = false
+"""
+)
 
 
 def changed(old: str, new: str, text: str = SOUND) -> str:

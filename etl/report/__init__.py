@@ -1,0 +1,19 @@
+"""The audit page: what a build took in, what it left out, and which readers stand out."""
+
+from etl.report.audit import AUDIT, write_audit
+from etl.report.inputs import AccountRow, AuditInput, GalleryEntry, NotRecorded
+from etl.report.profile import LineGrid, Profiles, ReaderProfile, TrialFates, profile_of
+
+__all__ = [
+    "AUDIT",
+    "AccountRow",
+    "AuditInput",
+    "GalleryEntry",
+    "LineGrid",
+    "NotRecorded",
+    "Profiles",
+    "ReaderProfile",
+    "TrialFates",
+    "profile_of",
+    "write_audit",
+]

@@ -1,0 +1,409 @@
+"""The drawings of the audit page, as SVG that flows with the page.
+
+Positions across are percentages, positions down are pixels, so a drawing fills whatever width it
+is given and its letters keep their size: no scaling, no script, readable on a phone. Colours and
+hatchings are classes of the page's style sheet, which knows light, dark and paper. Drawings say
+nothing that does not also stand in words or in a table beside them, so they are hidden from
+programs that read aloud.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from markupsafe import Markup, escape
+
+from etl.report.wording import cut
+
+#: Hatchings for rules and shapes for levels; with more of either they begin anew.
+HATCHINGS = 8
+SHAPES = 6
+#: Width of one trial where trials are drawn as squares, and the most that are.
+UNIT_PX = 9
+MOST_UNITS = 36
+#: The width that strips of readers are laid out for: dots that do not touch at this width may
+#: touch on a phone; labels are laid out for the phone.
+_LAID_OUT_PX = 620
+_NARROW_PX = 300
+_LETTER_PX = 6.6
+_DOT_PX = 4.5
+_LABEL_PX = 15
+
+
+@dataclass(frozen=True, slots=True)
+class Part:
+    """A part of a bar.
+
+    Attributes
+    ----------
+    slot : int or None
+        Hatching of a rule; None for what was kept.
+    amount : int
+        How many.
+    """
+
+    slot: int | None
+    amount: int
+
+
+@dataclass(frozen=True, slots=True)
+class Scale:
+    """An axis: its ends, and where it bears numbers.
+
+    Attributes
+    ----------
+    low, high : float
+        The ends.
+    ticks : tuple of float
+        Round values within.
+    """
+
+    low: float
+    high: float
+    ticks: tuple[float, ...]
+
+    def across(self, value: float) -> str:
+        """The place of a value across the drawing."""
+        return f"{self.share(value) * 100:.2f}%"
+
+    def share(self, value: float) -> float:
+        """The place of a value between the ends, from 0 to 1."""
+        if self.high == self.low:
+            return 0.5
+        return min(1.0, max(0.0, (value - self.low) / (self.high - self.low)))
+
+
+@dataclass(frozen=True, slots=True)
+class Dot:
+    """A reader on a strip.
+
+    Attributes
+    ----------
+    value : float
+        Where.
+    label : str
+        The reader's name; empty unless the reader stands out.
+    """
+
+    value: float
+    label: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Estimate:
+    """A rate with its interval.
+
+    Attributes
+    ----------
+    shape : int
+        Which level of a factor it is for.
+    rate, low, high : float
+        On the axis.
+    """
+
+    shape: int
+    rate: float
+    low: float
+    high: float
+
+
+def round_scale(low: float, high: float, *, most: int = 5) -> Scale:
+    """An axis around values, with round numbers on it.
+
+    Parameters
+    ----------
+    low, high : float
+        What it must hold.
+    most : int
+        About how many numbers it bears.
+
+    Examples
+    --------
+    >>> round_scale(183, 262).ticks
+    (180.0, 200.0, 220.0, 240.0, 260.0)
+    """
+    width = high - low
+    if width <= 0:
+        low, high, width = low - 1, high + 1, 2.0
+    rough = width / most
+    power = 10.0 ** math.floor(math.log10(rough))
+    step = next(m * power for m in (1, 2, 2.5, 5, 10) if m * power >= rough * 0.999)
+    first, last = math.floor(low / step), math.ceil(high / step)
+    ticks = tuple(round(i * step, 10) for i in range(first, last + 1))
+    inside = tuple(t for t in ticks if low - 0.35 * step <= t <= high + 0.35 * step)
+    pad = 0.04 * width
+    return Scale(min(low - pad, inside[0]), max(high + pad, inside[-1]), inside)
+
+
+def _svg(body: Sequence[str], height: float, kind: str, width: str = "100%") -> Markup:
+    """Wrap parts of a drawing."""
+    inner = "".join(body)
+    return Markup(
+        f'<svg class="{kind}" width="{width}" height="{height:g}" aria-hidden="true" '
+        f'focusable="false">{inner}</svg>'
+    )
+
+
+
+def swatch(slot: int | None) -> Markup:
+    """A square with the hatching of a rule, or the colour of what was kept."""
+    return _svg(
+        [f'<rect class="bar-{_slot(slot)}" width="14" height="14"/>'], 14, "swatch", width="14"
+    )
+
+
+def _slot(slot: int | None) -> str:
+    """A hatching's name in classes."""
+    return "kept" if slot is None else str(slot % HATCHINGS)
+
+
+def marker(shape: int) -> Markup:
+    """The shape of a level, for legends."""
+    return _svg([_use(shape, "8", 8)], 16, "swatch", width="16")
+
+
+def _use(shape: int, x: str, y: float) -> str:
+    """A level's shape somewhere."""
+    kind = shape % SHAPES
+    return f'<use href="#shape-{kind}" class="level-{kind}" x="{x}" y="{y:g}"/>'
+
+
+def unit_bar(parts: Sequence[Part], whole: int) -> Markup:
+    """A bar of one reader's trials: a square a trial where they are few.
+
+    Parameters
+    ----------
+    parts : sequence of Part
+        Kept first, then what each rule left out.
+    whole : int
+        The most trials that any reader has, so that bars can be compared.
+    """
+    if whole > MOST_UNITS:
+        return share_bar(parts, whole, height=13)
+    body, x = [], 0
+    for part in parts:
+        if part.amount:
+            width = part.amount * UNIT_PX
+            body.append(
+                f'<rect class="unit-{_slot(part.slot)}" x="{x}" width="{width}" height="13"/>'
+            )
+            x += width
+    return _svg(body, 13, "units", width=str(max(1, whole) * UNIT_PX))
+
+
+def share_bar(parts: Sequence[Part], whole: float, *, height: int = 18) -> Markup:
+    """A bar of shares of a whole.
+
+    Parameters
+    ----------
+    parts : sequence of Part
+        From left to right.
+    whole : float
+        What the full width stands for.
+    height : int
+        In pixels.
+    """
+    body, done = [], 0
+    for part in parts:
+        if part.amount and whole:
+            x, width = 100 * done / whole, 100 * part.amount / whole
+            body.append(
+                f'<rect class="bar-{_slot(part.slot)}" x="{x:.3f}%" width="{width:.3f}%" '
+                f'height="{height}"/>'
+            )
+            done += part.amount
+    return _svg(body, height, "shares")
+
+
+def quantile_bar(quantiles: Sequence[float], scale: Scale) -> Markup:
+    """Five quantiles: a thin line over the middle 80 %, a thick one over the middle half, a dot.
+
+    Parameters
+    ----------
+    quantiles : sequence of five float
+        In ascending order.
+    scale : Scale
+        The axis that all readers share.
+    """
+    outer, inner, middle = (quantiles[0], quantiles[4]), (quantiles[1], quantiles[3]), quantiles[2]
+    body = [
+        f'<line class="{kind}" x1="{scale.across(a)}" x2="{scale.across(b)}" y1="8" y2="8"/>'
+        for kind, (a, b) in (("whisker", outer), ("box", inner))
+    ]
+    body.append(f'<circle class="median-dot" cx="{scale.across(middle)}" cy="8" r="3"/>')
+    return _svg(body, 16, "quantiles", width="110")
+
+
+def estimate_row(estimates: Sequence[Estimate | None], scale: Scale) -> Markup:
+    """Rates with their intervals, one above the other.
+
+    Parameters
+    ----------
+    estimates : sequence of Estimate
+        One a level; None where there is no value.
+    scale : Scale
+        The axis of the outcome.
+    """
+    gap = 12
+    height = gap * max(1, len(estimates)) + 6
+    body = _grid(scale, height)
+    for row, one in enumerate(estimates):
+        if one is None:
+            continue
+        y = 3 + gap / 2 + gap * row
+        kind = one.shape % SHAPES
+        body.append(
+            f'<line class="interval line-{kind}" x1="{scale.across(one.low)}" '
+            f'x2="{scale.across(one.high)}" y1="{y:g}" y2="{y:g}"/>'
+        )
+        body.append(_use(one.shape, scale.across(one.rate), y))
+    return _svg(body, height, "estimates")
+
+
+def axis(scale: Scale, unit: str) -> Markup:
+    """The numbers under drawings that share an axis."""
+    return _svg(_numbers(scale, unit, 12), 16, "axis")
+
+
+def _grid(scale: Scale, height: float) -> list[str]:
+    """Faint lines at the round values."""
+    return [
+        f'<line class="grid" x1="{x}" x2="{x}" y1="0" y2="{height:g}"/>'
+        for x in map(scale.across, scale.ticks)
+    ]
+
+
+def _numbers(scale: Scale, unit: str, y: float) -> list[str]:
+    """The round values in figures; the last one bears the unit."""
+    body = []
+    for tick in scale.ticks:
+        share = scale.share(tick)
+        end = "start" if share < 0.03 else "end" if share > 0.97 else "middle"
+        text = f"{tick:,.10g}".replace("-", "−") + (unit if tick == scale.ticks[-1] else "")
+        body.append(
+            f'<text class="tick" x="{scale.across(tick)}" y="{y:g}" text-anchor="{end}">'
+            f"{text}</text>"
+        )
+    return body
+
+
+def strip(
+    dots: Sequence[Dot],
+    scale: Scale,
+    unit: str,
+    *,
+    fence: tuple[float, float] | None = None,
+    published: tuple[float, float] | None = None,
+    median: float | None = None,
+) -> Markup:
+    """All readers on one axis.
+
+    Parameters
+    ----------
+    dots : sequence of Dot
+        Ascending.
+    scale : Scale
+        The axis.
+    unit : str
+        Stands behind the last number.
+    fence : tuple of float, optional
+        Readers outside stand out: the band between is shaded.
+    published : tuple of float, optional
+        A published range: hatched.
+    median : float, optional
+        Of all readers: a line.
+    """
+    rows, depth = _labels(dots, scale)
+    heights = _swarm([scale.share(dot.value) * _LAID_OUT_PX for dot in dots])
+    reach = max((abs(h) for h in heights), default=0.0) + _DOT_PX + 5
+    top = depth * _LABEL_PX + 4
+    middle, bottom = top + reach, top + 2 * reach
+    body: list[str] = []
+    for kind, band in (("fence", fence), ("published", published)):
+        if band is not None:
+            x, end = scale.share(band[0]) * 100, scale.share(band[1]) * 100
+            body.append(
+                f'<rect class="{kind}" x="{x:.2f}%" width="{max(0.0, end - x):.2f}%" '
+                f'y="{top:g}" height="{2 * reach:g}"/>'
+            )
+    body.append(f'<line class="base" x1="0" x2="100%" y1="{bottom:g}" y2="{bottom:g}"/>')
+    if median is not None:
+        x_median = scale.across(median)
+        body.append(
+            f'<line class="median" x1="{x_median}" x2="{x_median}" y1="{top:g}" y2="{bottom:g}"/>'
+        )
+    for dot, height, row in zip(dots, heights, rows, strict=True):
+        x = scale.across(dot.value)
+        y = middle + height
+        if not dot.label:
+            body.append(f'<circle class="reader" cx="{x}" cy="{y:.1f}" r="{_DOT_PX - 0.5}"/>')
+            continue
+        body.append(f'<use href="#stands-out" class="stands-out" x="{x}" y="{y:.1f}"/>')
+        if row is not None:
+            text_y = row * _LABEL_PX + 11
+            end = _anchor(scale.share(dot.value))
+            body.append(
+                f'<line class="leader" x1="{x}" x2="{x}" y1="{text_y + 4:g}" y2="{y - 7:.1f}"/>'
+                f'<text class="label" x="{x}" y="{text_y:g}" text-anchor="{end}">'
+                f"{escape(cut(dot.label))}</text>"
+            )
+    body += _numbers(scale, unit, bottom + 15)
+    return _svg(body, bottom + 20, "strip")
+
+
+def _anchor(share: float) -> str:
+    """Which end of a label stands at its dot."""
+    return "start" if share < 0.2 else "end" if share > 0.8 else "middle"
+
+
+def _labels(dots: Sequence[Dot], scale: Scale) -> tuple[list[int | None], int]:
+    """In which row above the dots each label goes, so that none covers another on a phone."""
+    rows: list[int | None] = []
+    ends: list[list[tuple[float, float]]] = []
+    for dot in dots:
+        if not dot.label:
+            rows.append(None)
+            continue
+        share = scale.share(dot.value)
+        x, width = share * _NARROW_PX, len(cut(dot.label)) * _LETTER_PX + 8
+        start = {"start": x, "end": x - width, "middle": x - width / 2}[_anchor(share)]
+        free = (
+            r
+            for r, taken in enumerate(ends)
+            if all(start > b or start + width < a for a, b in taken)
+        )
+        row = next(free, len(ends))
+        if row == len(ends):
+            if row == 4:
+                rows.append(None)  # the sentence below the strip names those without a label
+                continue
+            ends.append([])
+        ends[row].append((start, start + width))
+        rows.append(row)
+    return rows, len(ends)
+
+
+def _swarm(xs: Sequence[float]) -> list[float]:
+    """How far up or down each dot moves so that dots do not cover one another."""
+    placed: list[tuple[float, float]] = []
+    out: list[float] = []
+    width = 2 * _DOT_PX
+    most = 4.5 * width
+    for x in xs:
+        near = [(px, py) for px, py in placed[-60:] if x - px < width]
+        tries = [0.0]
+        for px, py in near:
+            rise = math.sqrt(max(0.0, width**2 - (x - px) ** 2)) + 0.01
+            tries += [py + rise, py - rise]
+        free = [
+            y
+            for y in tries
+            if abs(y) <= most
+            and all((x - px) ** 2 + (y - py) ** 2 >= width**2 - 0.01 for px, py in near)
+        ]
+        y = min(free, key=lambda v: (abs(v), v)) if free else 0.0
+        placed.append((x, y))
+        out.append(y)
+    return out

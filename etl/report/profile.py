@@ -1,0 +1,330 @@
+"""The summary of one reader that the audit page needs, from the finished rows of that reader.
+
+It is made where the rows are made, in the worker, and is small: its size depends on the number of
+conditions, regions and outcomes, never on the number of fixations. :class:`Profiles` adds the
+summaries up as they arrive.
+"""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import Literal
+
+import numpy as np
+import pyarrow as pa
+from numpy.typing import NDArray
+
+from etl.report.counts import StudyCounts, codes_of, condition_codes, missing_counts, rate_counts
+from etl.tables import TableDesign
+
+#: The quantiles of fixation durations that are kept of a reader.
+QUANTILES = (0.10, 0.25, 0.50, 0.75, 0.90)
+#: Drift compares the first and the last third of a reader's trials; with fewer trials than this,
+#: a third would rest on a single trial.
+FEWEST_TRIALS_FOR_DRIFT = 6
+
+Ints = NDArray[np.int64]
+Floats = NDArray[np.float64]
+Flags = NDArray[np.bool_]
+
+
+@dataclass(frozen=True, slots=True)
+class LineGrid:
+    """Where the lines of text are on the screen, if the study says so.
+
+    Attributes
+    ----------
+    top_px : float
+        Top of the first line's box.
+    height_px : float
+        Height of a line's box.
+    """
+
+    top_px: float
+    height_px: float
+
+
+@dataclass(frozen=True, slots=True)
+class TrialFates:
+    """What became of each trial of the study that a reader read; skipped ones are not among them.
+
+    Attributes
+    ----------
+    factors : mapping of str to (trials,) int32 array
+        The level of each factor, as its place in ``design.factors``.
+    left_out_by : (trials,) int32 array
+        The rule that left the trial out, as its place in ``design.left_out_by``; -1 where kept.
+    """
+
+    factors: Mapping[str, NDArray[np.int32]]
+    left_out_by: NDArray[np.int32]
+
+
+@dataclass(frozen=True, slots=True)
+class Durations:
+    """Durations of a reader's kept fixations, inside regions and outside.
+
+    Attributes
+    ----------
+    mean_ms : float
+        Their mean.
+    spread_ms : float or None
+        Their sample standard deviation; None with fewer than two.
+    quantiles_ms : tuple of float
+        At :data:`QUANTILES`, linear between the order statistics.
+    """
+
+    mean_ms: float
+    spread_ms: float | None
+    quantiles_ms: tuple[float, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class ReaderNumbers:
+    """One reader in a few numbers.
+
+    Attributes
+    ----------
+    participant : str
+        The reader.
+    fixations, outside : int
+        Kept fixations, and those of them outside every region.
+    durations : Durations or None
+        None where no fixation was kept.
+    back, forward : int
+        Saccades between regions that go to an earlier one, and to a later one.
+    skips, skip_chances : int
+        Values of ``first_pass_skip`` that are 1, and all of them; 0 where it was not asked for.
+    offset_px : float or None
+        Median distance of a fixation below the middle of its line; negative above. None where the
+        study does not say where lines are, or the logs have no y.
+    drift_px : float or None
+        Median distance in the last third of the trials minus that in the first third.
+    levels : mapping of str to str
+        Factors of which the reader met one level only.
+    """
+
+    participant: str
+    fixations: int
+    outside: int
+    durations: Durations | None
+    back: int
+    forward: int
+    skips: int
+    skip_chances: int
+    offset_px: float | None
+    drift_px: float | None
+    levels: Mapping[str, str]
+
+
+@dataclass(frozen=True, slots=True)
+class ReaderProfile:
+    """What the audit page needs of one reader; small, and can be pickled.
+
+    Attributes
+    ----------
+    numbers : ReaderNumbers
+        What stays a reader's own.
+    counts : StudyCounts
+        What is added up over readers.
+    """
+
+    numbers: ReaderNumbers
+    counts: StudyCounts
+
+
+@dataclass(slots=True)
+class Profiles:
+    """The readers of a study, and what was counted over all of them.
+
+    Attributes
+    ----------
+    readers : list of ReaderNumbers
+        In the order in which they were added.
+    counts : StudyCounts
+        Over all readers.
+    """
+
+    readers: list[ReaderNumbers] = field(default_factory=list)
+    counts: StudyCounts = field(default_factory=StudyCounts)
+
+    def add(self, profile: ReaderProfile) -> None:
+        """Take in one more reader."""
+        self.readers.append(profile.numbers)
+        self.counts.add(profile.counts)
+
+
+def profile_of(
+    participant: str,
+    batches: Mapping[str, pa.RecordBatch],
+    fates: TrialFates,
+    design: TableDesign,
+    *,
+    outside: Literal["ignore", "interrupt"] = "ignore",
+    grid: LineGrid | None = None,
+) -> ReaderProfile:
+    """Sum up one reader.
+
+    Parameters
+    ----------
+    participant : str
+        The reader.
+    batches : mapping of str to pa.RecordBatch
+        The finished rows of this reader: ``outcomes``, ``outcomes_wide``, ``fixations``.
+    fates : TrialFates
+        What became of the reader's trials.
+    design : TableDesign
+        The tables of the study.
+    outside : {"ignore", "interrupt"}
+        What a fixation outside every region does to the step over it, as in ``[measures]``.
+    grid : LineGrid, optional
+        Where lines are, for studies that say so.
+
+    Returns
+    -------
+    ReaderProfile
+        Of a size that does not depend on the number of fixations.
+    """
+    fixations = batches["fixations"]
+    kept = _kept(fixations)
+    back, forward = _steps(kept, outside)
+    offset_px, drift_px = _height(kept, grid)
+    skips = _values(batches["outcomes_wide"], "first_pass_skip")
+    condition = condition_codes(
+        [fates.factors[name] for name in design.factors], design, len(fates.left_out_by)
+    )
+    return ReaderProfile(
+        ReaderNumbers(
+            participant,
+            fixations=len(kept.order),
+            outside=int((kept.order == 0).sum()),
+            durations=_durations(kept.duration_ms),
+            back=back,
+            forward=forward,
+            skips=int((skips == 1).sum()),
+            skip_chances=len(skips),
+            offset_px=offset_px,
+            drift_px=drift_px,
+            levels=_only_levels(fates, design),
+        ),
+        StudyCounts(
+            Counter(zip(condition.tolist(), fates.left_out_by.tolist(), strict=True)),
+            rate_counts(batches["outcomes_wide"], design),
+            missing_counts(batches["outcomes"], design),
+        ),
+    )
+
+
+@dataclass(frozen=True, slots=True)
+class _Kept:
+    """The kept fixations of one reader in time order; trials are numbered as they stand."""
+
+    trial: Ints
+    duration_ms: Floats
+    y_px: Floats
+    line: Ints
+    order: Ints
+    place: Ints
+
+
+def _kept(fixations: pa.RecordBatch) -> _Kept:
+    """Read the columns of the kept fixations."""
+    rows = np.flatnonzero(np.asarray(fixations.column("kept")) == 1)
+    changes = np.zeros(len(fixations), dtype=bool)
+    for name in ("session", "trial"):
+        if name in fixations.schema.names:
+            column = fixations.column(name)
+            own = column.indices if pa.types.is_dictionary(column.type) else column
+            values = np.asarray(own)
+            changes[1:] |= values[1:] != values[:-1]
+    whole = fixations.take(pa.array(rows))
+    file = codes_of(whole, "source_file").astype(np.int64)
+    return _Kept(
+        np.cumsum(changes)[rows],
+        np.asarray(whole.column("duration_ms"), dtype=np.float64),
+        np.asarray(whole.column("y_px").fill_null(np.nan), dtype=np.float64),
+        np.asarray(whole.column("line").fill_null(0), dtype=np.int64),
+        np.asarray(whole.column("region_order").fill_null(0), dtype=np.int64),
+        (file << 40) + np.asarray(whole.column("source_line"), dtype=np.int64),
+    )
+
+
+def _durations(duration_ms: Floats) -> Durations | None:
+    """Mean, spread and quantiles."""
+    if len(duration_ms) == 0:
+        return None
+    spread = float(np.std(duration_ms, ddof=1)) if len(duration_ms) > 1 else None
+    quantiles = np.quantile(duration_ms, QUANTILES)
+    return Durations(float(np.mean(duration_ms)), spread, tuple(quantiles.tolist()))
+
+
+def _steps(kept: _Kept, outside: str) -> tuple[int, int]:
+    """How many saccades go from a region to an earlier one, and to a later one."""
+    inside = kept.order > 0
+    rows = np.flatnonzero(inside) if outside == "ignore" else np.arange(len(inside))
+    trial, order = kept.trial[rows], kept.order[rows]
+    between = (trial[1:] == trial[:-1]) & (order[1:] > 0) & (order[:-1] > 0)
+    step = np.diff(order)[between]
+    return int((step < 0).sum()), int((step > 0).sum())
+
+
+def _height(kept: _Kept, grid: LineGrid | None) -> tuple[float | None, float | None]:
+    """How far below the middle of their lines fixations are, and how that changes."""
+    distance = _from_own_line(kept) if grid is None else _from_nearest_line(kept, grid)
+    known = np.isfinite(distance)
+    if not known.any():
+        return None, None
+    offset = None if grid is None else float(np.median(distance[known]))
+    # Trials in the order in which the logs hold them: ids of trials need not be in the order of
+    # reading, and the time in a log may begin anew with every trial.
+    trials, first = np.unique(kept.trial[known], return_index=True)
+    if len(trials) < FEWEST_TRIALS_FOR_DRIFT:
+        return offset, None
+    in_order = trials[np.argsort(kept.place[known][first], kind="stable")]
+    third = len(trials) // 3
+    early = np.isin(kept.trial, in_order[:third]) & known
+    late = np.isin(kept.trial, in_order[-third:]) & known
+    return offset, float(np.median(distance[late]) - np.median(distance[early]))
+
+
+def _from_nearest_line(kept: _Kept, grid: LineGrid) -> Floats:
+    """Distance of each fixation below the middle of the nearest line of its trial.
+
+    A fixation may be so far off that the build gave it no line; leaving it out would hide just
+    what is looked for. So the nearest of the lines up to the last that the trial has fixations on.
+    """
+    if len(kept.trial) == 0:
+        return np.zeros(0)
+    last = np.ones(int(kept.trial.max()) + 1, dtype=np.int64)
+    np.maximum.at(last, kept.trial, kept.line)
+    from_top = (kept.y_px - grid.top_px) / grid.height_px
+    known = np.isfinite(from_top)
+    line = np.clip(np.floor(np.where(known, from_top, 0)), 0, last[kept.trial] - 1)
+    return np.where(known, (from_top - line - 0.5) * grid.height_px, np.nan)
+
+
+def _from_own_line(kept: _Kept) -> Floats:
+    """Distance of each fixation below the reader's own median height on its line."""
+    distance = np.full(len(kept.line), np.nan)
+    for line in np.unique(kept.line[kept.line > 0]).tolist():
+        rows = (kept.line == line) & np.isfinite(kept.y_px)
+        if rows.any():
+            distance[rows] = kept.y_px[rows] - np.median(kept.y_px[rows])
+    return distance
+
+
+def _values(wide: pa.RecordBatch, measure: str) -> Ints:
+    """The values of an outcome that are not missing; none where it was not asked for."""
+    if measure not in wide.schema.names:
+        return np.zeros(0, dtype=np.int64)
+    return np.asarray(wide.column(measure).drop_null(), dtype=np.int64)
+
+
+def _only_levels(fates: TrialFates, design: TableDesign) -> dict[str, str]:
+    """The factors of which a reader met one level only, with that level."""
+    levels = {name: np.unique(fates.factors[name]) for name in design.factors}
+    return {
+        name: design.factors[name][int(own[0])] for name, own in levels.items() if len(own) == 1
+    }

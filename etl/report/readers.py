@@ -1,0 +1,463 @@
+"""The readers beside one another: measures of reading, who stands out, the table of readers."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+from functools import partial
+
+from markupsafe import Markup
+
+from etl.report import charts
+from etl.report.comparing import FENCE, FEWEST_TO_COMPARE, robust_fence
+from etl.report.inputs import AuditInput
+from etl.report.losses import of_study
+from etl.report.profile import ReaderNumbers
+from etl.report.wording import NOTHING, count, counted, listed, name, number, percent
+
+RAYNER = "Rayner 1998, doi:10.1037/0033-2909.124.3.372"
+
+
+@dataclass(frozen=True, slots=True)
+class Reader:
+    """A reader with the account of trials.
+
+    Attributes
+    ----------
+    numbers : ReaderNumbers
+        From the worker.
+    read, kept : int
+        Trials of the study.
+    left_out : str
+        The rule on readers that left this one out; empty where none did.
+    """
+
+    numbers: ReaderNumbers
+    read: int
+    kept: int
+    left_out: str
+
+
+@dataclass(frozen=True, slots=True)
+class Measure:
+    """Something that readers are compared by.
+
+    Attributes
+    ----------
+    key : str
+        Its name in the page.
+    title : str
+        In a few words.
+    how : str
+        What it is computed from, in a sentence.
+    value : callable
+        From a reader; None where there is none.
+    shown : callable
+        A value in words.
+    unit : str
+        Of the axis.
+    factor : float
+        Turns a value into one on the axis.
+    published : tuple of float or None
+        A published range, on the axis.
+    remark : str
+        What to bear in mind.
+    """
+
+    key: str
+    title: str
+    how: str
+    value: Callable[[Reader], float | None]
+    shown: Callable[[float | None], str]
+    unit: str
+    factor: float = 1.0
+    published: tuple[float, float] | None = None
+    remark: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Strip:
+    """One measure over all readers.
+
+    Attributes
+    ----------
+    measure : Measure
+        Which.
+    svg : Markup
+        The drawing; empty where no reader has a value.
+    n : int
+        Readers with a value.
+    median : str
+        Of the readers.
+    band : str
+        Within which no reader stands out; empty where nobody is judged.
+    published : str
+        The published range with its source; empty where there is none.
+    outliers : tuple of Markup
+        Who stands out, with the value.
+    """
+
+    measure: Measure
+    svg: Markup
+    n: int
+    median: str
+    band: str
+    published: str
+    outliers: tuple[Markup, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Cell:
+    """A cell of the table of readers.
+
+    Attributes
+    ----------
+    text : str
+        As shown.
+    value : str
+        What it is sorted by; empty where there is no value.
+    strange : bool
+        Whether the reader stands out by it.
+    """
+
+    text: str
+    value: str
+    strange: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class TableRow:
+    """A reader in the table.
+
+    Attributes
+    ----------
+    anchor, name : str
+        Where and who.
+    levels : tuple of str
+        Of the factors that differ between readers.
+    trials : Cell
+        Kept of read.
+    quantiles : Markup
+        Of fixation durations.
+    cells : tuple of Cell
+        A measure each.
+    remark : Markup
+        Why the reader stands out or was left out.
+    stands_out, lost : bool
+        For the filter.
+    """
+
+    anchor: str
+    name: str
+    levels: tuple[str, ...]
+    trials: Cell
+    quantiles: Markup
+    cells: tuple[Cell, ...]
+    remark: Markup
+    stands_out: bool
+    lost: bool
+
+
+@dataclass(frozen=True, slots=True)
+class Comparison:
+    """All that the page says of readers.
+
+    Attributes
+    ----------
+    strips : tuple of Strip
+        A measure each.
+    rows : tuple of TableRow
+        A reader each.
+    groups : tuple of str
+        Factors that differ between readers.
+    axis : Markup
+        Of the quantiles of durations.
+    standing_out : tuple of Markup
+        Each reader who stands out, with every reason.
+    left_out : tuple of Markup
+        Each reader who was left out, with the rule.
+    judged : bool
+        Whether there are readers enough to compare.
+    """
+
+    strips: tuple[Strip, ...]
+    rows: tuple[TableRow, ...]
+    groups: tuple[str, ...]
+    axis: Markup
+    standing_out: tuple[Markup, ...]
+    left_out: tuple[Markup, ...]
+    judged: bool
+
+
+def _share(part: int, whole: int) -> float | None:
+    """A share, where there is a whole."""
+    return part / whole if whole else None
+
+
+def _ms(value: float | None) -> str:
+    """Milliseconds."""
+    return number(value, 0, "ms")
+
+
+_px = partial(number, digits=1, unit="px", signed=True)
+
+MEASURES = (
+    Measure(
+        "duration",
+        "Mean fixation duration",
+        "All kept fixations of a reader, inside regions and outside.",
+        lambda r: r.numbers.durations and r.numbers.durations.mean_ms,
+        _ms,
+        " ms",
+        published=(200, 250),
+    ),
+    Measure(
+        "spread",
+        "Spread of fixation durations",
+        "Standard deviation of the same fixations.",
+        lambda r: r.numbers.durations and r.numbers.durations.spread_ms,
+        _ms,
+        " ms",
+    ),
+    Measure(
+        "regressions",
+        "Regressions",
+        "Of the saccades from one region to another, the share that goes back to an earlier one.",
+        lambda r: _share(r.numbers.back, r.numbers.back + r.numbers.forward),
+        percent,
+        "%",
+        100,
+        published=(10, 15),
+        remark="The published range is for all saccades, also those within a region; where regions "
+        "are longer than a word the two are not the same.",
+    ),
+    Measure(
+        "skips",
+        "Skips",
+        "Of all values of first_pass_skip, the share that is 1.",
+        lambda r: _share(r.numbers.skips, r.numbers.skip_chances),
+        percent,
+        "%",
+        100,
+        remark="No published range is drawn: it depends on how long the regions are.",
+    ),
+    Measure(
+        "outside",
+        "Outside every region",
+        "Of a reader’s kept fixations, the share that lies in no region.",
+        lambda r: _share(r.numbers.outside, r.numbers.fixations),
+        percent,
+        "%",
+        100,
+    ),
+    Measure(
+        "height",
+        "Height on the line",
+        "Median distance of fixations below the middle of the nearest line of their text; negative "
+        "is above.",
+        lambda r: r.numbers.offset_px,
+        _px,
+        " px",
+    ),
+    Measure(
+        "drift",
+        "Drift in the session",
+        "How far down that distance moves from the first third of a reader’s kept trials to the "
+        "last, medians of both; negative is up.",
+        lambda r: r.numbers.drift_px,
+        _px,
+        " px",
+    ),
+    Measure(
+        "lost",
+        "Trials lost",
+        "Of the trials of the study that were read, the share that a rule left out.",
+        lambda r: _share(r.read - r.kept, r.read),
+        percent,
+        "%",
+        100,
+    ),
+)
+
+
+def collect_readers(given: AuditInput, levels: Mapping[str, str]) -> Comparison:
+    """Compare the readers.
+
+    Parameters
+    ----------
+    given : AuditInput
+        What the page is made from.
+    levels : mapping of str to str
+        What each rule judges; those that judge readers name readers left out.
+    """
+    readers = _with_trials(given, levels)
+    reasons: dict[str, list[Markup]] = {}
+    strange: set[tuple[str, str]] = set()
+    strips = tuple(_strip(measure, readers, reasons, strange) for measure in MEASURES)
+    groups = tuple(
+        factor
+        for factor in given.design.factors
+        if readers and all(factor in r.numbers.levels for r in readers)
+    )
+    every = [r.numbers.durations.quantiles_ms for r in readers if r.numbers.durations]
+    ends = [q for own in every for q in own]
+    scale = charts.round_scale(min(ends, default=0), max(ends, default=1), most=3)
+    rows = tuple(
+        _row(place, reader, groups, scale, (reasons, strange))
+        for place, reader in enumerate(readers, start=1)
+    )
+    named = {r.numbers.participant: r for r in readers}
+    return Comparison(
+        strips,
+        rows,
+        groups,
+        charts.axis(scale, ""),
+        tuple(
+            Markup("{}: {}").format(_link(place, r), listed(reasons[r.numbers.participant]))
+            for place, r in enumerate(named.values(), start=1)
+            if r.numbers.participant in reasons
+        ),
+        tuple(
+            Markup("{} ({})").format(_link(place, r), r.left_out)
+            for place, r in enumerate(named.values(), start=1)
+            if r.left_out
+        ),
+        len(readers) >= FEWEST_TO_COMPARE,
+    )
+
+
+def _link(place: int, reader: Reader) -> Markup:
+    """A reader's name that leads to the reader's row."""
+    return Markup('<a href="#reader-{}">{}</a>').format(place, name(reader.numbers.participant))
+
+
+def _with_trials(given: AuditInput, levels: Mapping[str, str]) -> list[Reader]:
+    """Each reader with the trials of the account."""
+    accounts = {row.participant: row for row in given.accounts if row.unit == "trials"}
+    out = []
+    for numbers in given.profiles.readers:
+        row = accounts[numbers.participant]
+        rule = next((n for n, k in row.left_out.items() if k and levels.get(n) == "reader"), "")
+        out.append(Reader(numbers, of_study(row), row.kept, rule))
+    return out
+
+
+def _strip(
+    measure: Measure,
+    readers: Sequence[Reader],
+    reasons: dict[str, list[Markup]],
+    strange: set[tuple[str, str]],
+) -> Strip:
+    """One measure over all readers; notes who stands out."""
+    known = [(r.numbers.participant, v) for r in readers if (v := measure.value(r)) is not None]
+    values = [value for _, value in known]
+    fence = robust_fence(values)
+    band: tuple[float, float] | None = None
+    outliers = []
+    if fence is not None:
+        median, deviation = fence
+        band = median - FENCE * deviation, median + FENCE * deviation
+        for who, value in known:
+            if not band[0] <= value <= band[1]:
+                away = abs(value - median) / deviation
+                strange.add((who, measure.key))
+                side = "above" if value > median else "below"
+                reasons.setdefault(who, []).append(
+                    Markup("{} {}, {} deviations {} the readers’ median of {}").format(
+                        measure.title[0].lower() + measure.title[1:],
+                        measure.shown(value),
+                        number(away, 1),
+                        side,
+                        measure.shown(median),
+                    )
+                )
+                outliers.append(Markup("{} {}").format(name(who), measure.shown(value)))
+    middle = _median(values)
+    return Strip(
+        measure,
+        _drawn(measure, known, band, {w for w, k in strange if k == measure.key}),
+        len(known),
+        measure.shown(middle),
+        "" if band is None else f"{measure.shown(band[0])} to {measure.shown(band[1])}",
+        "" if measure.published is None else _published(measure, values),
+        tuple(outliers),
+    )
+
+
+def _median(values: Sequence[float]) -> float | None:
+    """The median; None where there is no value."""
+    if not values:
+        return None
+    ordered, half = sorted(values), len(values) // 2
+    return ordered[half] if len(values) % 2 else (ordered[half - 1] + ordered[half]) / 2
+
+
+def _published(measure: Measure, values: Sequence[float]) -> str:
+    """The published range, and how many readers are within."""
+    low, high = measure.published or (0, 0)
+    within = sum(low <= value * measure.factor <= high for value in values)
+    unit = measure.unit.replace(" ", "\N{NO-BREAK SPACE}")
+    return (
+        f"{low:g} to {high:g}{unit} in silent reading ({RAYNER}); "
+        f"{count(within)} of {counted(len(values), 'reader')} within"
+    )
+
+
+def _drawn(
+    measure: Measure,
+    known: Sequence[tuple[str, float]],
+    band: tuple[float, float] | None,
+    strange: set[str],
+) -> Markup:
+    """The strip of one measure."""
+    if not known:
+        return Markup()
+    factor = measure.factor
+    shown = sorted((value * factor, who) for who, value in known)
+    ends = [shown[0][0], shown[-1][0], *(measure.published or ())]
+    scale = charts.round_scale(min(ends), max(ends), most=6)
+    middle = _median([value for value, _ in shown])
+    return charts.strip(
+        [charts.Dot(value, who if who in strange else "") for value, who in shown],
+        scale,
+        measure.unit,
+        fence=None if band is None else (band[0] * factor, band[1] * factor),
+        published=measure.published,
+        median=middle,
+    )
+
+
+def _row(
+    place: int,
+    reader: Reader,
+    groups: Sequence[str],
+    scale: charts.Scale,
+    noted: tuple[Mapping[str, Sequence[Markup]], set[tuple[str, str]]],
+) -> TableRow:
+    """A reader in the table."""
+    reasons, strange = noted
+    who = reader.numbers.participant
+    remarks = [f"left out by {reader.left_out}"] if reader.left_out else []
+    own = [*remarks, *reasons.get(who, ())]
+    cells = []
+    for measure in MEASURES:
+        value = measure.value(reader)
+        cells.append(
+            Cell(
+                measure.shown(value),
+                "" if value is None else f"{value * measure.factor:.6g}",
+                (who, measure.key) in strange,
+            )
+        )
+    durations = reader.numbers.durations
+    return TableRow(
+        f"reader-{place}",
+        who,
+        tuple(reader.numbers.levels[group] for group in groups),
+        Cell(f"{count(reader.kept)} of {count(reader.read)}", str(reader.kept)),
+        charts.quantile_bar(durations.quantiles_ms, scale) if durations else Markup(NOTHING),
+        tuple(cells),
+        listed(own, most=len(own) or 1),
+        who in reasons,
+        reader.kept < reader.read,
+    )

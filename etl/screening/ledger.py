@@ -1,0 +1,338 @@
+"""The ledger: a row for each thing that was left out or changed, and the accounts of a reader."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass, field
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+from etl.errors import FaultError
+from etl.screening.rules import (
+    BEFORE,
+    CODE,
+    FIXATION_RULES,
+    LEFT_OUT_BY,
+    READER_RULES,
+    TRIAL_RULES,
+    Limits,
+)
+from etl.screening.screen import FixationScreening, Recorded, Verdict
+
+LEVELS = ("fixation", "trial", "participant", "value")
+LEFT_OUT = "left out"
+SET_MISSING = "set missing"
+
+
+class Entry(NamedTuple):
+    """One row of the ledger; -1 where a place does not apply.
+
+    Attributes
+    ----------
+    level : str
+        One of ``LEVELS``.
+    trial, region, fixation : int
+        Index of the trial, code of the region, number of the fixation in its trial.
+    rule, limit, observed, action, also : str
+        As the ledger shows them.
+    row : int
+        The fixation whose place in the log is named.
+    """
+
+    level: str
+    trial: int
+    region: int
+    fixation: int
+    rule: str
+    limit: str
+    observed: str
+    action: str
+    also: str
+    row: int
+
+
+@dataclass(slots=True)
+class Accounts:
+    """What became of the trials or the fixations of a reader.
+
+    Attributes
+    ----------
+    read, kept : int
+        How many were read, and how many are left.
+    by_rule : Counter
+        How many each rule left out.
+    """
+
+    read: int = 0
+    kept: int = 0
+    by_rule: Counter[str] = field(default_factory=Counter)
+
+    @classmethod
+    def of(cls, left_out: NDArray[np.int8]) -> Accounts:
+        """Count codes of what left things out; -1 is kept."""
+        counts = np.bincount(left_out.astype(np.int64) + 1, minlength=len(LEFT_OUT_BY) + 1)
+        by_rule = {rule: int(counts[code + 1]) for rule, code in CODE.items() if counts[code + 1]}
+        return cls(len(left_out), int(counts[0]), Counter(by_rule))
+
+    def add(self, other: Accounts) -> None:
+        """Add the accounts of another reader."""
+        self.read += other.read
+        self.kept += other.kept
+        self.by_rule.update(other.by_rule)
+
+    def balance(self) -> bool:
+        """Whether all that was read is accounted for."""
+        return self.read == self.kept + sum(self.by_rule.values())
+
+
+@dataclass(frozen=True, slots=True)
+class Screened:
+    """Everything that screening found out about a reader.
+
+    Attributes
+    ----------
+    recorded : Recorded
+        The fixations as they were.
+    number : (n,) int64 array
+        Number of each fixation in its trial.
+    fixations : FixationScreening
+        After the rules for fixations.
+    trials, reader : Verdict
+        What the rules for trials and readers say.
+    before : (trials,) int8 array
+        Code of ``skip`` for trials that are no part of the study, else -1.
+    """
+
+    recorded: Recorded
+    number: NDArray[np.int64]
+    fixations: FixationScreening
+    trials: Verdict
+    reader: Verdict
+    before: NDArray[np.int8]
+
+    def trial_codes(self) -> NDArray[np.int8]:
+        """What left each trial out: ``skip``, a rule for trials, a rule for readers; -1 kept."""
+        codes = np.where(self.before >= 0, self.before, self.trials.left_out)
+        return np.where(codes >= 0, codes, self.reader.left_out[0]).astype(np.int8)
+
+    def fixation_codes(self) -> NDArray[np.int8]:
+        """What left each fixation out; those of a trial or reader left out are charged to that."""
+        own = self.fixations.left_out
+        return np.where(own >= 0, own, self.trial_codes()[self.recorded.trial]).astype(np.int8)
+
+
+def entries_of(
+    screened: Screened,
+    limits: Limits,
+    reasons: tuple[Sequence[str], Sequence[str], str],
+    first_row: NDArray[np.int64],
+) -> list[Entry]:
+    """The rows of the ledger for fixations, trials and the reader.
+
+    Parameters
+    ----------
+    screened : Screened
+        What screening found out.
+    limits : Limits
+        The study's rules.
+    reasons : tuple
+        For each trial why it is skipped (``block = practice``) and the experimenter's note, and the
+        note on the reader.
+    first_row : (trials,) int64 array
+        The first fixation of each trial.
+
+    Returns
+    -------
+    list of Entry
+        Sorted by trial, level and fixation; the reader last.
+    """
+    skipped, notes, reader_note = reasons
+    above = _also_of_reader(screened)
+    entries = [*_fixation_entries(screened, limits, above)]
+    for trial, code in enumerate(screened.trial_codes().tolist()):
+        if code < 0:
+            continue
+        rule = LEFT_OUT_BY[code]
+        if rule in READER_RULES:
+            continue
+        limit, observed = limits.shown.get(rule, ""), ""
+        also = "" if rule == "skip" else _join(_later(screened.trials, trial, rule), above)
+        if rule == "skip":
+            limit = skipped[trial]
+        elif rule == "notes":
+            observed = notes[trial]
+        else:
+            observed = _number(screened.trials.observed[rule][trial])
+        row = int(first_row[trial])
+        entries.append(Entry("trial", trial, -1, -1, rule, limit, observed, LEFT_OUT, also, row))
+    if screened.reader.left_out[0] >= 0:
+        rule = LEFT_OUT_BY[int(screened.reader.left_out[0])]
+        observed = (
+            reader_note
+            if rule == "participant_notes"
+            else _number(screened.reader.observed[rule][0])
+        )
+        also = " ".join(_later(screened.reader, 0, rule))
+        shown = limits.shown.get(rule, "")
+        entries.append(Entry("participant", -1, -1, -1, rule, shown, observed, LEFT_OUT, also, -1))
+    return sorted(entries, key=_place)
+
+
+class FarValue(NamedTuple):
+    """A value that ``outlier_sd`` sets aside: trial, region code, measure and the value."""
+
+    trial: int
+    region: int
+    measure: str
+    value: float
+
+
+def with_values(entries: list[Entry], far: Sequence[FarValue], limits: Limits) -> list[Entry]:
+    """The ledger with the values that were set missing, in its order."""
+    if not far:
+        return entries
+    limit = limits.shown.get("outlier_sd", "")
+    added = [
+        Entry(
+            "value",
+            one.trial,
+            one.region,
+            -1,
+            "outlier_sd",
+            limit,
+            f"{one.measure} {_number(one.value)}",
+            SET_MISSING,
+            "",
+            -1,
+        )
+        for one in far
+    ]
+    return sorted([*entries, *added], key=_place)
+
+
+def _place(entry: Entry) -> tuple[bool, int, int, int, int]:
+    """Where an entry stands among those of a reader."""
+    return (
+        entry.trial < 0,
+        entry.trial,
+        LEVELS.index(entry.level),
+        entry.fixation,
+        entry.region,
+    )
+
+
+def _fixation_entries(screened: Screened, limits: Limits, above: list[str]) -> Iterable[Entry]:
+    """A row for each fixation that a rule for fixations, or a repeated trial, leaves out."""
+    own = screened.fixations
+    rows = np.flatnonzero(
+        (own.left_out >= CODE["repeated"]) & (own.left_out <= CODE[FIXATION_RULES[-1]])
+    )
+    trial_code = screened.trials.left_out
+    for row in rows.tolist():
+        rule = LEFT_OUT_BY[int(own.left_out[row])]
+        trial = int(screened.recorded.trial[row])
+        also: list[str] = []
+        if rule != "repeated":
+            later = FIXATION_RULES[FIXATION_RULES.index(rule) + 1 :]
+            also = [name for name in later if name in own.holds and own.holds[name][row]]
+            if trial_code[trial] >= 0:
+                also += [name for name, holds in screened.trials.holds.items() if holds[trial]]
+            also += above
+        action = LEFT_OUT
+        if rule == "merge":
+            action = f"merged into {int(screened.number[own.into[row]])}"
+        yield Entry(
+            "fixation",
+            trial,
+            -1,
+            int(screened.number[row]),
+            rule,
+            limits.shown.get(rule, ""),
+            _observed(rule, screened, row),
+            action,
+            " ".join(also),
+            row,
+        )
+
+
+def _observed(rule: str, screened: Screened, row: int) -> str:
+    """What a rule for fixations looked at."""
+    recorded = screened.recorded
+    if rule in ("merge", "under_ms", "over_ms"):
+        return _number(screened.fixations.duration_ms[row])
+    if rule == "outside_text_time":
+        return _number(recorded.onset_ms[row])
+    if rule == "off_screen":
+        return f"{_number(recorded.x_px[row])}, {_number(recorded.y_px[row])}"
+    if rule == "first":
+        return str(int(recorded.from_start[row]))
+    if rule == "last":
+        return str(int(recorded.from_end[row]))
+    return "1"
+
+
+def _also_of_reader(screened: Screened) -> list[str]:
+    """The rules that speak against the reader, where one leaves the reader out."""
+    if screened.reader.left_out[0] < 0:
+        return []
+    return [rule for rule, holds in screened.reader.holds.items() if holds[0]]
+
+
+def _later(verdict: Verdict, at: int, rule: str) -> list[str]:
+    """Rules of the same level, after the one that is charged, that hold as well."""
+    return [name for name, holds in verdict.holds.items() if holds[at] and CODE[name] > CODE[rule]]
+
+
+def _join(*parts: Iterable[str]) -> str:
+    return " ".join(name for part in parts for name in part)
+
+
+def _number(value: float) -> str:
+    """A number without needless digits."""
+    return f"{float(value):.10g}"
+
+
+def check_balance(
+    accounts: Mapping[str, Accounts], entries: Sequence[Entry], kept: Mapping[str, int]
+) -> None:
+    """See that accounts, ledger and tables of a reader say the same.
+
+    Parameters
+    ----------
+    accounts : mapping of str to Accounts
+        Of ``trials`` and ``fixations``.
+    entries : sequence of Entry
+        The reader's rows of the ledger.
+    kept : mapping of str to int
+        Rows of the table ``trials``, and rows of ``fixations`` that are kept.
+
+    Raises
+    ------
+    FaultError
+        If anything is not accounted for. Nothing is published then.
+    """
+    told = Counter((entry.level, entry.rule) for entry in entries)
+    for unit, own in accounts.items():
+        if not own.balance() or own.kept != kept[unit]:
+            raise FaultError(
+                f"the accounts of {unit} do not balance: {own.read} read, {own.kept} kept, "
+                f"{kept[unit]} in the tables, left out {dict(own.by_rule)}"
+            )
+    for level, unit, rules in (
+        ("trial", "trials", ("skip", *TRIAL_RULES)),
+        ("fixation", "fixations", ("repeated", *FIXATION_RULES)),
+    ):
+        for rule in rules:
+            if told[level, rule] != accounts[unit].by_rule[rule]:
+                raise FaultError(
+                    f"the ledger has {told[level, rule]} {level} rows for {rule}, the accounts "
+                    f"{accounts[unit].by_rule[rule]}"
+                )
+
+
+def columns_of_accounts(limits: Limits) -> tuple[str, ...]:
+    """The rules that have a column in the accounts of a study, in order of application."""
+    return tuple(rule for rule in (*BEFORE, *LEFT_OUT_BY[len(BEFORE) :]) if limits.on(rule))

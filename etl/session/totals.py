@@ -1,0 +1,105 @@
+"""What the readers of a study add up to, and what is worth a warning."""
+
+from __future__ import annotations
+
+from collections import Counter
+
+from etl.errors import Findings
+from etl.export.accounts import UNITS, account_rows, account_text
+from etl.screening import Limits
+from etl.screening.ledger import Accounts, columns_of_accounts
+from etl.screening.rules import BEFORE, key_of
+from etl.session.one_reader import ReaderTables
+from etl.session.ordering import OVERLAP_TOLERATED_MS
+from etl.study import Study
+
+#: More than this share of kept fixations outside every region is worth a warning: it is a sign of
+#: a wrong layout (common practice, no source).
+OUTSIDE_SHARE = 0.2
+#: A rule that takes more than this share of all trials or fixations is worth a warning (common
+#: practice, no source).
+TAKEN_SHARE = 0.1
+
+
+class Totals:
+    """Counts and accounts of all readers.
+
+    Parameters
+    ----------
+    limits : Limits
+        The study's rules.
+    """
+
+    def __init__(self, limits: Limits) -> None:
+        self._rules = columns_of_accounts(limits)
+        self.counts: Counter[str] = Counter()
+        self.accounts: dict[str, dict[str, Accounts]] = {}
+
+    def add(self, tables: ReaderTables) -> None:
+        """Take in one reader."""
+        self.counts.update({"readers": 1, **tables.counts})
+        if tables.accounts:
+            self.accounts[tables.participant] = tables.accounts
+
+    def account_rows(self) -> list[list[str | int]]:
+        """The accounts of the study, header first."""
+        return account_rows(self.accounts, self._rules)
+
+    def notice(self, study: Study, findings: Findings) -> None:
+        """Record what is wrong or doubtful about the study as a whole.
+
+        Parameters
+        ----------
+        study : Study
+            As loaded.
+        findings : Findings
+            Where an empty result is recorded as an error, doubtful shares as warnings.
+        """
+        if not self.counts["trials kept"]:
+            findings.error(
+                "screening leaves no trial of any reader",
+                path=study.shown,
+                line=study.line_of("screening"),
+                where="screening",
+                found=account_text(self.account_rows()),
+                expected="some trials to be left",
+                fix="look at the rule that takes most, and at the units of its limit",
+            )
+            return
+        kept = self.counts["fixations kept"]
+        outside = self.counts["fixations kept outside every region"]
+        if kept and outside / kept > OUTSIDE_SHARE:
+            findings.warning(
+                f"{outside / kept:.0%} of the fixations lie outside every region",
+                path=study.shown,
+                line=study.line_of("regions"),
+                where="regions",
+                fix="if that is more than the texts leave free, check the layout, the screen's "
+                "origin and the boxes",
+            )
+        self._notice_rules(study, findings)
+        overlaps = self.counts["overlaps taken for rounding"]
+        if overlaps:
+            findings.note(
+                f"{overlaps:,} fixation{' reaches' if overlaps == 1 else 's reach'} into the next "
+                f"one by no more than {OVERLAP_TOLERATED_MS:g} ms, which is taken for rounding",
+            )
+
+    def _notice_rules(self, study: Study, findings: Findings) -> None:
+        """Warn of rules that take much."""
+        for unit in UNITS:
+            total = Accounts()
+            for own in self.accounts.values():
+                total.add(own[unit])
+            read = total.read - total.by_rule["skip"]
+            for rule in self._rules:
+                taken = total.by_rule[rule]
+                if rule not in BEFORE and read and taken / read > TAKEN_SHARE:
+                    findings.warning(
+                        f"the rule {rule} leaves out {taken / read:.0%} of the {unit}",
+                        path=study.shown,
+                        line=study.line_of(*key_of(rule)),
+                        where=".".join(key_of(rule)),
+                        found=f"{taken:,} of {read:,}",
+                        fix="see in the audit page whom and which conditions it takes them from",
+                    )

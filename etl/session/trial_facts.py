@@ -1,0 +1,194 @@
+"""Facts about trials that screening needs: when the text was there, the answer, the notes."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+from etl.errors import Findings
+from etl.files import truth_of
+from etl.session.plan import Plan
+from etl.trials import IDS, KnownTrials
+from etl.trials.facts import shown_path
+from etl.trials.notes import Notes, notes_on_readers, notes_on_trials, read_notes
+
+_TO_MS = {"ms": 1.0, "s": 1000.0, "us": 0.001}
+
+
+@dataclass(slots=True)
+class TrialFacts:
+    """What screening needs to know of trials, one value a trial.
+
+    Attributes
+    ----------
+    came_ms, went_ms : (trials,) float64 array, milliseconds
+        When the text came up and went away, in log time; NaN where unknown.
+    answer : (trials,) float64 array
+        1 right, 0 wrong, NaN where nothing was asked.
+    notes : list of str
+        The experimenter's note on each trial, empty where there is none.
+    reader_notes : dict of str to str
+        The note on each reader who has one.
+    inputs : list of Notes
+        The files of notes.
+    """
+
+    came_ms: NDArray[np.float64]
+    went_ms: NDArray[np.float64]
+    answer: NDArray[np.float64]
+    notes: list[str]
+    reader_notes: dict[str, str] = field(default_factory=dict)
+    inputs: list[Notes] = field(default_factory=list)
+
+
+def trial_facts(
+    plan: Plan, trials: KnownTrials, shown: Sequence[str], findings: Findings
+) -> TrialFacts:
+    """Gather what the rules that a study uses need to know.
+
+    Parameters
+    ----------
+    plan : Plan
+        The study's tables and rules.
+    trials : KnownTrials
+        All trials that the logs show.
+    shown : sequence of str
+        The names of the logs, for messages.
+    findings : Findings
+        Where cells that cannot be read, and notes that match nothing, are recorded.
+
+    Returns
+    -------
+    TrialFacts
+        Of facts that no rule needs, all values are missing.
+    """
+    settings, limits = plan.study.trials, plan.limits
+    unknown = np.full(len(trials), np.nan)
+    facts = TrialFacts(unknown, unknown, unknown, [""] * len(trials))
+    place = _Place(plan, trials, shown, findings)
+    if limits.on("outside_text_time"):
+        unit = plan.study.logs.columns.onset
+        factor = _TO_MS[str(unit.unit)] if unit is not None else 1.0
+        if settings.onset is not None:
+            facts.came_ms = place.numbers(settings.onset) * factor
+        if settings.offset is not None:
+            facts.went_ms = place.numbers(settings.offset) * factor
+        place.warn_of_unknown_times()
+    if settings.answer_correct is not None and (
+        limits.on("answer_wrong") or limits.on("correct_share_under")
+    ):
+        facts.answer = place.answers(settings.answer_correct)
+    _add_notes(plan, trials, facts, findings)
+    return facts
+
+
+def _add_notes(plan: Plan, trials: KnownTrials, facts: TrialFacts, findings: Findings) -> None:
+    """Read the files of notes, once each, and match them to trials and readers."""
+    screening = plan.study.screening
+    if screening is None:
+        return
+    of_trials = screening.trials.notes if screening.trials else None
+    of_readers = screening.participants.notes if screening.participants else None
+    columns = plan.study.logs.columns
+    synonyms = {n: column.column for n in IDS if (column := getattr(columns, n)) is not None}
+    for given in dict.fromkeys(name for name in (of_trials, of_readers) if name is not None):
+        notes = read_notes(
+            plan.study.folder / given,
+            shown_path(plan.study, given),
+            synonyms,
+            plan.study.logs.missing,
+            findings,
+        )
+        if notes is None:
+            continue
+        facts.inputs.append(notes)
+        on_trials = notes.on_trials()
+        if given == of_trials:
+            facts.notes = notes_on_trials(notes, trials.seen, plan.facts.trial_list, findings)
+        if given == of_readers:
+            facts.reader_notes = notes_on_readers(notes, trials.seen, findings)
+        for used, rows, what, key in (
+            (of_trials, on_trials, "a trial", "trials"),
+            (of_readers, ~on_trials, "a reader", "participants"),
+        ):
+            if given != used and rows.any():
+                findings.error(
+                    f"the note is on {what}, which the study file does not ask this file for",
+                    path=notes.shown,
+                    line=int(notes.lines[np.flatnonzero(rows)[0]]),
+                    expected="notes on "
+                    + ("readers only" if key == "trials" else "trials, each with its trial"),
+                    fix=f'add notes = "{given}" to [screening.{key}], or correct the row',
+                )
+
+
+@dataclass(slots=True)
+class _Place:
+    """Reads facts as numbers and says where a cell is wrong."""
+
+    plan: Plan
+    trials: KnownTrials
+    shown: Sequence[str]
+    findings: Findings
+    unknown: dict[str, int] = field(default_factory=dict)
+
+    def numbers(self, name: str) -> NDArray[np.float64]:
+        """A fact as numbers, NaN where missing or where the trial is no part of the study."""
+        column = self.trials.known[name]
+        values = np.array([*(_number(text) for text in column.values), np.nan])[column.codes]
+        judged = ~self.trials.skipped
+        self._tell(name, judged & np.isinf(values), "this is no number", "a time in log time")
+        values[np.isinf(values)] = np.nan
+        self.unknown[name] = int((judged & np.isnan(values)).sum())
+        return values
+
+    def answers(self, name: str) -> NDArray[np.float64]:
+        """A fact as 1, 0, or NaN where missing."""
+        column = self.trials.known[name]
+        truths = [truth_of(text) for text in column.values]
+        coded = [np.inf if truth is None else float(truth) for truth in truths]
+        values = np.array([*coded, np.nan])[column.codes]
+        self._tell(
+            name,
+            ~self.trials.skipped & np.isinf(values),
+            "this does not say whether the answer was right",
+            "1 or 0, true or false, yes or no, correct or wrong; nothing where nothing was asked",
+        )
+        values[np.isinf(values)] = np.nan
+        return values
+
+    def warn_of_unknown_times(self) -> None:
+        """Say for how many trials it is not known when the text was there."""
+        for name, count in self.unknown.items():
+            if count:
+                self.findings.warning(
+                    f"{count:,} trials have no time here and are not judged by it",
+                    path=self.plan.study.shown,
+                    line=self.plan.study.line_of("screening", "fixations", "outside_text_time"),
+                    where=f'column "{name}"',
+                )
+
+    def _tell(self, name: str, rows: NDArray[np.bool_], problem: str, expected: str) -> None:
+        """Record cells that cannot be read."""
+        for row in np.flatnonzero(rows).tolist():
+            path, line = self.plan.facts.origin(name, self.trials, row)
+            self.findings.error(
+                problem,
+                path=path or self.shown[int(self.trials.seen.file[row])],
+                line=line,
+                where=f'column "{name}"',
+                found=self.trials.known[name].text(row),
+                expected=expected,
+                fix="correct the cell, or add the word to [logs] missing if it means no value",
+            )
+
+
+def _number(text: str) -> float:
+    """A cell as a number; infinite where it is none."""
+    try:
+        return float(text.replace(",", ".")) if text.count(",") <= 1 else np.inf
+    except ValueError:
+        return float("inf")

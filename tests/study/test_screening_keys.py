@@ -1,0 +1,497 @@
+"""Single keys of screening that are wrong: the message and the line of each."""
+
+from collections.abc import Callable
+
+import pytest
+
+from tests.study.written import SOUND
+
+
+@pytest.mark.parametrize(
+    ("tables", "expected"),
+    [
+        pytest.param(
+            "[screening]\nunder_ms = 80\n",
+            "study.toml:16: screening.under_ms: unknown key; expected fixations, trials, "
+            "participants or values\n"
+            "    fix: it belongs in [screening.fixations] or [screening.fixations.merge]",
+            id="rule outside its table",
+        ),
+        pytest.param(
+            "[screening]\nfixation = { first = 1 }\n",
+            'study.toml:16: screening.fixation: unknown key\n    fix: did you mean "fixations"?',
+            id="table near a known one",
+        ),
+        pytest.param(
+            "[screening.fixations]\nfrist = 1\n",
+            'study.toml:16: screening.fixations.frist: unknown key\n    fix: did you mean "first"?',
+            id="rule near a known one",
+        ),
+        pytest.param(
+            "[screening.trials]\nunder_ms = 80\n",
+            "study.toml:16: screening.trials.under_ms: unknown key; expected notes, "
+            "fewest_fixations, outside_share_over, duration_ms, blink_in_first_pass_of, "
+            "no_first_pass_on or answer_wrong\n"
+            "    fix: it belongs in [screening.fixations] or [screening.fixations.merge]",
+            id="rule of another level",
+        ),
+        pytest.param(
+            "[screening.fixations]\nmerge = { under_ms = 80, within = 14 }\n",
+            "study.toml:16: screening.fixations.merge.within: unknown key\n"
+            '    fix: did you mean "within_px"?',
+            id="distance without its unit",
+        ),
+        pytest.param(
+            "[screening.fixations]\nmerge = { within_px = 14 }\n",
+            "study.toml:16: screening.fixations.merge.under_ms: this key is missing; expected the "
+            "duration below which a fixation is merged, in milliseconds\n"
+            "    fix: add for example under_ms = 80",
+            id="merge without a limit",
+        ),
+    ],
+)
+def test_key_astray_is_sent_home(refusal: Callable[..., str], tables: str, expected: str) -> None:
+    """A key that screening does not know is refused with the nearest, or its table."""
+    assert refusal(SOUND + tables).rsplit("\n", 1)[0] == expected
+
+
+@pytest.mark.parametrize(
+    ("tables", "expected"),
+    [
+        pytest.param(
+            "[screening]\nfixations = false\n",
+            'study.toml:16: screening.fixations: this is a true-or-false value; found "false", '
+            "expected a table\n"
+            "    fix: write its keys under [screening.fixations]",
+            id="switch for a table",
+        ),
+        pytest.param(
+            "[screening.fixations]\noutside_text_time = 1\n",
+            "study.toml:16: screening.fixations.outside_text_time: this is a whole number; found "
+            '"1", expected true or false\n'
+            "    fix: write for example outside_text_time = true",
+            id="number for outside_text_time",
+        ),
+        pytest.param(
+            '[screening.fixations]\noff_screen = "yes"\n',
+            'study.toml:16: screening.fixations.off_screen: this is text; found "yes", expected '
+            "true or false\n"
+            "    fix: write for example off_screen = true",
+            id="text for off_screen",
+        ),
+        pytest.param(
+            '[screening.trials]\nanswer_wrong = "true"\n',
+            'study.toml:16: screening.trials.answer_wrong: this is text; found "true", expected '
+            "true or false\n"
+            "    fix: write answer_wrong = true",
+            id="text for answer_wrong",
+        ),
+        pytest.param(
+            "[screening.fixations]\nfirst = true\n",
+            "study.toml:16: screening.fixations.first: this is a true-or-false value; found "
+            '"true", expected a whole number\n'
+            "    fix: write for example first = 1",
+            id="true for first",
+        ),
+        pytest.param(
+            "[screening.fixations]\nlast = 1.5\n",
+            "study.toml:16: screening.fixations.last: this is a number with decimals; found "
+            '"1.5", expected a whole number\n'
+            "    fix: write for example last = 1",
+            id="decimals for last",
+        ),
+        pytest.param(
+            "[screening.fixations]\nblink = true\n",
+            "study.toml:16: screening.fixations.blink: this is not one of the choices; found "
+            '"true", expected "drop" (no other in this version)\n'
+            '    fix: write "drop"',
+            id="true for blink",
+        ),
+        pytest.param(
+            '[screening.fixations]\nblink = "keep"\n',
+            "study.toml:16: screening.fixations.blink: this is not one of the choices; found "
+            '"keep", expected "drop" (no other in this version)\n'
+            '    fix: write "drop"',
+            id="no choice of blink",
+        ),
+        pytest.param(
+            "[screening.fixations]\nmerge = 80\n",
+            'study.toml:16: screening.fixations.merge: this is a whole number; found "80", '
+            "expected a table\n"
+            "    fix: write for example merge = { under_ms = 80, within_px = 14 }",
+            id="number for merge",
+        ),
+        pytest.param(
+            "[screening.fixations]\nmerge = true\n",
+            "study.toml:16: screening.fixations.merge: this is a true-or-false value; found "
+            '"true", expected a table\n'
+            "    fix: write for example merge = { under_ms = 80, within_px = 14 }",
+            id="true for merge",
+        ),
+        pytest.param(
+            "[screening.fixations]\nmerge = { under_ms = 80, within_px = false }\n",
+            "study.toml:16: screening.fixations.merge.within_px: this is a true-or-false value; "
+            'found "false", expected a number\n'
+            "    fix: write for example within_px = 14",
+            id="false for a distance",
+        ),
+        pytest.param(
+            '[screening.fixations]\nunder_ms = "80 ms"\n',
+            'study.toml:16: screening.fixations.under_ms: this is text; found "80 ms", expected a '
+            "number\n"
+            "    fix: write for example under_ms = 80",
+            id="text for under_ms",
+        ),
+        pytest.param(
+            "[screening.fixations]\nover_ms = true\n",
+            "study.toml:16: screening.fixations.over_ms: this is a true-or-false value; found "
+            '"true", expected a number\n'
+            "    fix: write for example over_ms = 800",
+            id="true for over_ms",
+        ),
+        pytest.param(
+            '[screening.trials]\nnotes = ["notes.csv"]\n',
+            'study.toml:16: screening.trials.notes: this is a list; found "["notes.csv"]", '
+            "expected text in quotes\n"
+            '    fix: write for example notes = "notes.csv"',
+            id="list for notes on trials",
+        ),
+        pytest.param(
+            "[screening.trials]\nfewest_fixations = true\n",
+            "study.toml:16: screening.trials.fewest_fixations: this is a true-or-false value; "
+            'found "true", expected a whole number\n'
+            "    fix: write for example fewest_fixations = 3",
+            id="true for fewest_fixations",
+        ),
+        pytest.param(
+            '[screening.trials]\noutside_share_over = "0.3"\n',
+            'study.toml:16: screening.trials.outside_share_over: this is text; found "0.3", '
+            "expected a number\n"
+            "    fix: write outside_share_over = 0.3",
+            id="text for outside_share_over",
+        ),
+        pytest.param(
+            "[screening.trials]\nduration_ms = 500\n",
+            'study.toml:16: screening.trials.duration_ms: this is no range; found "500", expected '
+            "two numbers in square brackets, the lower first\n"
+            "    fix: write for example duration_ms = [500, 30000]",
+            id="number for duration_ms",
+        ),
+        pytest.param(
+            "[screening.trials]\nduration_ms = true\n",
+            'study.toml:16: screening.trials.duration_ms: this is no range; found "true", '
+            "expected two numbers in square brackets, the lower first\n"
+            "    fix: write for example duration_ms = [500, 30000]",
+            id="true for duration_ms",
+        ),
+        pytest.param(
+            "[screening.trials]\nduration_ms = [500]\n",
+            "study.toml:16: screening.trials.duration_ms: this is no range; expected two numbers "
+            "in square brackets, the lower first\n"
+            "    fix: write for example duration_ms = [500, 30000]",
+            id="one number for duration_ms",
+        ),
+        pytest.param(
+            "[screening.trials]\nduration_ms = [500, 1000, 30000]\n",
+            "study.toml:16: screening.trials.duration_ms: this is no range; expected two numbers "
+            "in square brackets, the lower first\n"
+            "    fix: write for example duration_ms = [500, 30000]",
+            id="three numbers for duration_ms",
+        ),
+        pytest.param(
+            '[screening.trials]\nduration_ms = ["500", 30000]\n',
+            'study.toml:16: screening.trials.duration_ms, entry 1: this is text; found "500", '
+            "expected a number\n"
+            "    fix: write 500",
+            id="text in duration_ms",
+        ),
+        pytest.param(
+            '[screening.trials]\nblink_in_first_pass_of = "verb"\n',
+            'study.toml:16: screening.trials.blink_in_first_pass_of: this is text; found "verb", '
+            "expected a list in square brackets\n"
+            '    fix: write blink_in_first_pass_of = ["verb"]',
+            id="text for blink_in_first_pass_of",
+        ),
+        pytest.param(
+            "[screening.trials]\nno_first_pass_on = [1]\n",
+            "study.toml:16: screening.trials.no_first_pass_on, entry 1: this is a whole number; "
+            'found "1", expected text in quotes\n'
+            '    fix: write "1"',
+            id="number in no_first_pass_on",
+        ),
+        pytest.param(
+            "[screening.participants]\nnotes = 1\n",
+            'study.toml:16: screening.participants.notes: this is a whole number; found "1", '
+            "expected text in quotes\n"
+            '    fix: write notes = "1"',
+            id="number for notes on readers",
+        ),
+        pytest.param(
+            "[screening.participants]\ncorrect_share_under = true\n",
+            "study.toml:16: screening.participants.correct_share_under: this is a true-or-false "
+            'value; found "true", expected a number\n'
+            "    fix: write for example correct_share_under = 0.75",
+            id="true for correct_share_under",
+        ),
+        pytest.param(
+            '[screening.participants]\nlost_trials_share_over = "30 %"\n',
+            "study.toml:16: screening.participants.lost_trials_share_over: this is text; found "
+            '"30 %", expected a number\n'
+            "    fix: write for example lost_trials_share_over = 0.3",
+            id="text for lost_trials_share_over",
+        ),
+        pytest.param(
+            "[screening.participants]\nfewest_trials_per_cell = 4.0\n",
+            "study.toml:16: screening.participants.fewest_trials_per_cell: this is a number with "
+            'decimals; found "4.0", expected a whole number\n'
+            "    fix: write fewest_trials_per_cell = 4",
+            id="decimals for fewest_trials_per_cell",
+        ),
+        pytest.param(
+            "[screening.values]\noutlier_sd = true\n",
+            "study.toml:16: screening.values.outlier_sd: this is a true-or-false value; found "
+            '"true", expected a number\n'
+            "    fix: write for example outlier_sd = 3",
+            id="true for outlier_sd",
+        ),
+    ],
+)
+def test_wrong_kind_of_limit_is_refused(
+    refusal: Callable[..., str], tables: str, expected: str
+) -> None:
+    """A limit of the wrong kind is refused with what is expected and what to write."""
+    assert refusal(SOUND + tables).rsplit("\n", 1)[0] == expected
+
+
+@pytest.mark.parametrize(
+    ("tables", "expected"),
+    [
+        pytest.param(
+            "[screening.fixations]\nfirst = 0\n",
+            'study.toml:16: screening.fixations.first: out of bounds; found "0", expected a '
+            "number of 1 or more\n"
+            "    fix: write for example first = 1",
+            id="first",
+        ),
+        pytest.param(
+            "[screening.fixations]\nfirst = 100001\n",
+            'study.toml:16: screening.fixations.first: out of bounds; found "100001", expected a '
+            "number of 100000 or less\n"
+            "    fix: write for example first = 1",
+            id="first too many",
+        ),
+        pytest.param(
+            "[screening.fixations]\nlast = 0\n",
+            'study.toml:16: screening.fixations.last: out of bounds; found "0", expected a number '
+            "of 1 or more\n"
+            "    fix: write for example last = 1",
+            id="last",
+        ),
+        pytest.param(
+            "[screening.fixations]\nlast = 100001\n",
+            'study.toml:16: screening.fixations.last: out of bounds; found "100001", expected a '
+            "number of 100000 or less\n"
+            "    fix: write for example last = 1",
+            id="last too many",
+        ),
+        pytest.param(
+            "[screening.fixations]\nmerge = { under_ms = 0, within_px = 14 }\n",
+            'study.toml:16: screening.fixations.merge.under_ms: out of bounds; found "0", '
+            "expected a number above 0\n"
+            "    fix: write for example under_ms = 80",
+            id="merge under_ms",
+        ),
+        pytest.param(
+            "[screening.fixations]\nmerge = { under_ms = 80, within_px = 0 }\n",
+            'study.toml:16: screening.fixations.merge.within_px: out of bounds; found "0", '
+            "expected a number above 0\n"
+            "    fix: write for example within_px = 14",
+            id="merge within_px",
+        ),
+        pytest.param(
+            "[screening.fixations]\nmerge = { under_ms = 80, within_deg = -0.5 }\n",
+            'study.toml:16: screening.fixations.merge.within_deg: out of bounds; found "-0.5", '
+            "expected a number above 0\n"
+            "    fix: write for example within_deg = 0.5",
+            id="merge within_deg",
+        ),
+        pytest.param(
+            "[screening.fixations]\nmerge = { under_ms = 80, within_characters = 0 }\n",
+            "study.toml:16: screening.fixations.merge.within_characters: out of bounds; found "
+            '"0", expected a number above 0\n'
+            "    fix: write for example within_characters = 1",
+            id="merge within_characters",
+        ),
+        pytest.param(
+            "[screening.fixations]\nunder_ms = 0\n",
+            'study.toml:16: screening.fixations.under_ms: out of bounds; found "0", expected a '
+            "number above 0\n"
+            "    fix: write for example under_ms = 80",
+            id="under_ms",
+        ),
+        pytest.param(
+            "[screening.fixations]\nover_ms = -1\n",
+            'study.toml:16: screening.fixations.over_ms: out of bounds; found "-1", expected a '
+            "number above 0\n"
+            "    fix: write for example over_ms = 800",
+            id="over_ms",
+        ),
+        pytest.param(
+            "[screening.fixations]\nover_ms = inf\n",
+            'study.toml:16: screening.fixations.over_ms: out of bounds; found "inf", expected a '
+            "finite number\n"
+            "    fix: write for example over_ms = 800",
+            id="over_ms without end",
+        ),
+        pytest.param(
+            '[screening.trials]\nnotes = ""\n',
+            "study.toml:16: screening.trials.notes: this is empty; expected some text\n"
+            '    fix: write for example notes = "notes.csv"',
+            id="empty notes on trials",
+        ),
+        pytest.param(
+            "[screening.trials]\nnotes = 'notes\\day1.csv'\n",
+            "study.toml:16: screening.trials.notes: folders are separated by a backslash, which "
+            'only one operating system understands; found "notes\\day1.csv", expected a forward '
+            "slash between folders\n"
+            '    fix: write "notes/day1.csv"',
+            id="backslash in notes on trials",
+        ),
+        pytest.param(
+            "[screening.trials]\nfewest_fixations = 0\n",
+            'study.toml:16: screening.trials.fewest_fixations: out of bounds; found "0", expected '
+            "a number of 1 or more\n"
+            "    fix: write for example fewest_fixations = 3",
+            id="fewest_fixations",
+        ),
+        pytest.param(
+            "[screening.trials]\nfewest_fixations = 100001\n",
+            'study.toml:16: screening.trials.fewest_fixations: out of bounds; found "100001", '
+            "expected a number of 100000 or less\n"
+            "    fix: write for example fewest_fixations = 3",
+            id="fewest_fixations too many",
+        ),
+        pytest.param(
+            "[screening.trials]\noutside_share_over = 30\n",
+            'study.toml:16: screening.trials.outside_share_over: out of bounds; found "30", '
+            "expected a number of 1 or less\n"
+            "    fix: write for example outside_share_over = 0.3",
+            id="outside_share_over in percent",
+        ),
+        pytest.param(
+            "[screening.trials]\noutside_share_over = -0.1\n",
+            'study.toml:16: screening.trials.outside_share_over: out of bounds; found "-0.1", '
+            "expected a number of 0 or more\n"
+            "    fix: write for example outside_share_over = 0.3",
+            id="outside_share_over below 0",
+        ),
+        pytest.param(
+            "[screening.trials]\nduration_ms = [-1, 30000]\n",
+            'study.toml:16: screening.trials.duration_ms, entry 1: out of bounds; found "-1", '
+            "expected a number of 0 or more\n"
+            "    fix: write for example duration_ms = [500, 30000]",
+            id="duration_ms below 0",
+        ),
+        pytest.param(
+            "[screening.trials]\nduration_ms = [500, inf]\n",
+            'study.toml:16: screening.trials.duration_ms, entry 2: out of bounds; found "inf", '
+            "expected a finite number\n"
+            "    fix: write for example duration_ms = [500, 30000]",
+            id="duration_ms without end",
+        ),
+        pytest.param(
+            "[screening.trials]\nblink_in_first_pass_of = []\n",
+            "study.toml:16: screening.trials.blink_in_first_pass_of: this is empty; expected at "
+            "least one entry\n"
+            '    fix: write for example blink_in_first_pass_of = ["verb"]',
+            id="no region in blink_in_first_pass_of",
+        ),
+        pytest.param(
+            '[screening.trials]\nblink_in_first_pass_of = ["verb", "verb"]\n',
+            "study.toml:16: screening.trials.blink_in_first_pass_of: named twice in this list: "
+            '"verb"\n'
+            "    fix: keep one of each",
+            id="region twice in blink_in_first_pass_of",
+        ),
+        pytest.param(
+            "[screening.trials]\nno_first_pass_on = []\n",
+            "study.toml:16: screening.trials.no_first_pass_on: this is empty; expected at least "
+            "one entry\n"
+            '    fix: write for example no_first_pass_on = ["verb"]',
+            id="no region in no_first_pass_on",
+        ),
+        pytest.param(
+            '[screening.trials]\nno_first_pass_on = ["verb", "verb"]\n',
+            'study.toml:16: screening.trials.no_first_pass_on: named twice in this list: "verb"\n'
+            "    fix: keep one of each",
+            id="region twice in no_first_pass_on",
+        ),
+        pytest.param(
+            '[screening.trials]\nno_first_pass_on = [""]\n',
+            "study.toml:16: screening.trials.no_first_pass_on, entry 1: this is empty; expected "
+            "some text\n"
+            '    fix: write for example no_first_pass_on = ["verb"]',
+            id="empty name in no_first_pass_on",
+        ),
+        pytest.param(
+            '[screening.participants]\nnotes = ""\n',
+            "study.toml:16: screening.participants.notes: this is empty; expected some text\n"
+            '    fix: write for example notes = "notes.csv"',
+            id="empty notes on readers",
+        ),
+        pytest.param(
+            "[screening.participants]\ncorrect_share_under = 75\n",
+            "study.toml:16: screening.participants.correct_share_under: out of bounds; found "
+            '"75", expected a number of 1 or less\n'
+            "    fix: write for example correct_share_under = 0.75",
+            id="correct_share_under in percent",
+        ),
+        pytest.param(
+            "[screening.participants]\ncorrect_share_under = -0.1\n",
+            "study.toml:16: screening.participants.correct_share_under: out of bounds; found "
+            '"-0.1", expected a number of 0 or more\n'
+            "    fix: write for example correct_share_under = 0.75",
+            id="correct_share_under below 0",
+        ),
+        pytest.param(
+            "[screening.participants]\nlost_trials_share_over = 30\n",
+            "study.toml:16: screening.participants.lost_trials_share_over: out of bounds; found "
+            '"30", expected a number of 1 or less\n'
+            "    fix: write for example lost_trials_share_over = 0.3",
+            id="lost_trials_share_over in percent",
+        ),
+        pytest.param(
+            "[screening.participants]\nlost_trials_share_over = -0.1\n",
+            "study.toml:16: screening.participants.lost_trials_share_over: out of bounds; found "
+            '"-0.1", expected a number of 0 or more\n'
+            "    fix: write for example lost_trials_share_over = 0.3",
+            id="lost_trials_share_over below 0",
+        ),
+        pytest.param(
+            "[screening.participants]\nfewest_trials_per_cell = 0\n",
+            "study.toml:16: screening.participants.fewest_trials_per_cell: out of bounds; found "
+            '"0", expected a number of 1 or more\n'
+            "    fix: write for example fewest_trials_per_cell = 4",
+            id="fewest_trials_per_cell",
+        ),
+        pytest.param(
+            "[screening.participants]\nfewest_trials_per_cell = 100001\n",
+            "study.toml:16: screening.participants.fewest_trials_per_cell: out of bounds; found "
+            '"100001", expected a number of 100000 or less\n'
+            "    fix: write for example fewest_trials_per_cell = 4",
+            id="fewest_trials_per_cell too many",
+        ),
+        pytest.param(
+            "[screening.values]\noutlier_sd = 0\n",
+            'study.toml:16: screening.values.outlier_sd: out of bounds; found "0", expected a '
+            "number above 0\n"
+            "    fix: write for example outlier_sd = 3",
+            id="outlier_sd",
+        ),
+    ],
+)
+def test_limit_out_of_bounds_is_refused(
+    refusal: Callable[..., str], tables: str, expected: str
+) -> None:
+    """A limit that could leave out nothing, or everything, is refused."""
+    assert refusal(SOUND + tables).rsplit("\n", 1)[0] == expected

@@ -1,0 +1,262 @@
+"""Traced trials for the checks: made by hand from orders and durations, or from a built study."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import replace
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+
+import etl
+from etl.errors import Findings
+from etl.measures import REASONS, Measured, Sequences, compute
+from etl.regions.layout import columns, edge_px, line_extent_px
+from etl.report.trace_input import (
+    Cell,
+    Piece,
+    Regression,
+    Removal,
+    TextLine,
+    TracedFixation,
+    TracedTrial,
+)
+from etl.session.plan import Plan, make_plan
+from tests.end_to_end.building import rows_of
+
+NAN = float("nan")
+NAMES = ("when", "topic", "auxiliary", "verb", "object", "spillover", "place")
+
+
+def cells_of(measured: Measured) -> tuple[Cell, ...]:
+    """The cells of a measure as the kernels give them."""
+    return tuple(
+        Cell(value, REASONS[reason])
+        for value, reason in zip(measured.values.tolist(), measured.reasons.tolist(), strict=True)
+    )
+
+
+def measured(traced: TracedTrial) -> TracedTrial:
+    """The trial with visits, regressions and all outcomes as the kernels compute them."""
+    kept = [place for place, fixation in enumerate(traced.fixations) if fixation.kept]
+    chosen = [traced.fixations[place] for place in kept]
+    out = compute(
+        Sequences(
+            np.zeros(len(chosen), np.int64),
+            np.array([f.region_order for f in chosen], np.int32),
+            np.array([f.duration_ms for f in chosen], np.float64),
+            np.array([len(traced.region_names)], np.int32),
+        ),
+        outside=traced.outside,
+        no_opportunity=traced.no_opportunity,
+    )
+    fixations = list(traced.fixations)
+    for place, visit, first in zip(kept, out.visit.tolist(), out.first_pass.tolist(), strict=True):
+        fixations[place] = replace(fixations[place], visit=visit, first_pass=first)
+    rows = out.regressions
+    return replace(
+        traced,
+        fixations=tuple(fixations),
+        outcomes={name: cells_of(m) for name, m in out.regions.items()},
+        trial_outcomes={name: cells_of(m)[0] for name, m in out.trials.items()},
+        regressions=tuple(
+            Regression(chosen[launch].number, chosen[landing].number, bool(ends))
+            for launch, landing, ends in zip(
+                rows.launch.tolist(),
+                rows.landing.tolist(),
+                rows.ends_first_pass.tolist(),
+                strict=True,
+            )
+        ),
+    )
+
+
+def by_hand(
+    orders: Sequence[int],
+    durations_ms: Sequence[float],
+    regions: int,
+    *,
+    left_out: dict[int, Removal] | None = None,
+    names: Sequence[str] = (),
+    geometry: bool = True,
+    **more: Any,
+) -> TracedTrial:
+    """A trial from region orders and durations; regions of 100 px each side by side on one line.
+
+    ``left_out`` says by number which fixations are left out. Between two fixations pass 30 ms.
+    """
+    left_out = left_out or {}
+    names = tuple(names) or tuple(
+        NAMES[k] if regions <= len(NAMES) else f"w{k + 1}" for k in range(regions)
+    )
+    fixations, onset_ms = [], 1000.0
+    for number, (order, duration_ms) in enumerate(zip(orders, durations_ms, strict=True), start=1):
+        # A fixation outside hovers above the middle of the text.
+        x_px = 100.0 * order + 50 if order else 100.0 + 50 * regions
+        fixations.append(
+            TracedFixation(
+                number,
+                onset_ms,
+                duration_ms,
+                x_px if geometry else NAN,
+                (330.0 if order else 200.0) if geometry else NAN,
+                1 if order and geometry else 0,
+                order,
+                0,
+                False,
+                "logs/P1.tsv",
+                number + 1,
+                left_out.get(number),
+            )
+        )
+        onset_ms += duration_ms + 30
+    lines, pieces = (), ()
+    if geometry:
+        lines = (TextLine(1, "x" * 10 * regions, 100, 300, 100 + 100.0 * regions, 360),)
+        pieces = tuple(
+            Piece(k, 1, 100.0 * k, 300, 100.0 * k + 100, 360) for k in range(1, regions + 1)
+        )
+    traced = TracedTrial(
+        **{
+            "participant": "P1",
+            "session": "",
+            "trial": "7",
+            "item": "i01",
+            "factors": {"cue": "early"},
+            "region_names": names,
+            "region_texts": ("x" * 10,) * regions,
+            "fixations": tuple(fixations),
+            "regressions": (),
+            "outcomes": {},
+            "trial_outcomes": {},
+            "lines": lines,
+            "pieces": pieces,
+            **more,
+        }
+    )
+    return measured(traced)
+
+
+def worked_example() -> TracedTrial:
+    """The worked example of the definitions."""
+    return by_hand(
+        [1, 2, 2, 4, 3, 2, 4, 5, 3, 5], [200, 180, 220, 250, 190, 210, 230, 300, 150, 240], 5
+    )
+
+
+def geometry_of(plan: Plan, text: int) -> dict[str, Any]:
+    """Lines, pieces and direction of a text of the library."""
+    library = plan.library
+    shown = library.texts[text]
+    found: dict[str, Any] = {
+        "region_names": shown.regions,
+        "region_texts": shown.region_texts,
+    }
+    geometry = library.geometry
+    if geometry is None:
+        return found
+    where = slice(*geometry.text_offsets[text : text + 2].tolist())
+    found["pieces"] = tuple(
+        Piece(order, line, *extent)
+        for order, line, extent in zip(
+            geometry.orders[where].tolist(),
+            geometry.piece_lines[where].tolist(),
+            geometry.extents_px[:, where].T.tolist(),
+            strict=True,
+        )
+    )
+    layout = plan.study.regions.layout
+    if layout is not None:
+        found["right_to_left"] = layout.direction == "rtl"
+        lines = []
+        for number, line in enumerate(shown.whole.split("\n"), start=1):
+            if line.strip():
+                first, last = edge_px(layout, 0), edge_px(layout, columns(line)[-1])
+                top, bottom = line_extent_px(layout, number)
+                lines.append(
+                    TextLine(number, line, min(first, last), top, max(first, last), bottom)
+                )
+        found["lines"] = tuple(lines)
+    return found
+
+
+class BuiltStudy:
+    """A study and its tables, from which any trial can be traced."""
+
+    def __init__(self, study_file: Path, folder: Path) -> None:
+        study = etl.load_study(study_file)
+        self.plan = make_plan(study, Findings())[0]
+        assert self.plan is not None
+        self.study = study
+        etl.build(study, into=folder, workers=1)
+        self._by_trial: dict[str, dict[tuple[str, str], list[dict[str, Any]]]] = {}
+        for table in ("outcomes", "trials", "regressions", "fixations"):
+            rows = self._by_trial.setdefault(table, {})
+            for row in rows_of(folder, table):
+                rows.setdefault((str(row["participant"]), str(row["trial"])), []).append(row)
+
+    @property
+    def trials(self) -> list[tuple[str, str]]:
+        """Participant and trial of all kept trials."""
+        return list(self._by_trial["trials"])
+
+    def trace(self, participant: str, trial: str) -> TracedTrial:
+        """One trial of the tables."""
+        key = participant, trial
+        (facts,) = self._by_trial["trials"][key]
+        own = {name: str(value) for name, value in facts.items()}
+        library = self.plan.library
+        text = library.find(tuple(own[name] for name in library.keys))
+        geometry = geometry_of(self.plan, text)
+        outcomes: dict[str, list[Cell]] = {}
+        for row in self._by_trial["outcomes"][key]:
+            value = NAN if row["value"] is None else row["value"]
+            outcomes.setdefault(row["measure"], []).append(Cell(value, row["missing"] or ""))
+        why = dict(part.split(": ") for part in (facts["missing"] or "").split("; ") if part)
+        names = list(facts)[list(facts).index("any_regression") : -1]
+        return TracedTrial(
+            participant,
+            own.get("session", ""),
+            trial,
+            own["item"],
+            {name: own[name] for name in self.study.trials.factors},
+            fixations=tuple(map(traced_fixation, self._by_trial["fixations"][key])),
+            regressions=tuple(
+                Regression(
+                    row["launch_fixation"], row["landing_fixation"], bool(row["ends_first_pass"])
+                )
+                for row in self._by_trial["regressions"].get(key, [])
+            ),
+            outcomes={name: tuple(cells) for name, cells in outcomes.items()},
+            trial_outcomes={
+                name: Cell(NAN if facts[name] is None else float(facts[name]), why.get(name, ""))
+                for name in names
+            },
+            outside=self.study.measures.outside,
+            no_opportunity=self.study.measures.no_opportunity,
+            **geometry,
+        )
+
+
+def traced_fixation(row: dict[str, Any]) -> TracedFixation:
+    """A row of the table of fixations."""
+
+    def number(name: str) -> float:
+        return math.nan if row[name] is None else float(row[name])
+
+    return TracedFixation(
+        row["fixation"],
+        number("onset_ms"),
+        row["duration_ms"],
+        number("x_px"),
+        number("y_px"),
+        row["line"] or 0,
+        row["region_order"] or 0,
+        row["visit"] or 0,
+        bool(row["first_pass"]),
+        row["source_file"],
+        row["source_line"],
+        None if row["kept"] else Removal(row["left_out_by"]),
+    )
