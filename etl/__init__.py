@@ -4,11 +4,11 @@ Examples
 --------
 >>> import etl
 >>> sorted(name for name in etl.__all__ if name[0].islower())
-['build', 'check', 'load_study']
+['build', 'check', 'load_study', 'trace']
 """
 
 from etl.errors import DataError, FaultError, Finding, Findings, InputError, StudyError
-from etl.session import Result, build, check, load_study
+from etl.session import Result, build, check, load_study, trace
 from etl.study import Study
 
 __all__ = [
@@ -23,4 +23,5 @@ __all__ = [
     "build",
     "check",
     "load_study",
+    "trace",
 ]

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import shutil
 import sys
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
@@ -14,7 +15,7 @@ from rich.console import Console
 from rich.progress import BarColumn, MofNCompleteColumn, Progress, TextColumn, TimeRemainingColumn
 
 import etl
-from etl.session import told
+from etl.session import Wanted, explained, told, write_picture
 
 INPUT_WRONG = 2
 FAULT = 1
@@ -112,6 +113,44 @@ def build(study: Path, into: Path | None, workers: int | None, *, quiet: bool) -
         result = etl.build(loaded, into=into, workers=workers, progress=progress)
     if not quiet:
         click.echo("\n".join([*result.findings.lines(), told.built(result)]))
+
+
+@main.command()
+@_STUDY
+@click.argument("participant")
+@click.argument("trial")
+@click.option("--session", help="Which session, where the reader read the trial in several.")
+@click.option("--region", "regions", multiple=True, help="Explain this region only; repeatable.")
+@click.option("--measure", "measures", multiple=True, help="Explain this outcome only; repeatable.")
+@click.option(
+    "--picture",
+    type=click.Path(path_type=Path),
+    help="Write a picture (FILE.svg), or a page with picture and explanation (FILE.html).",
+)
+@_QUIET
+def trace(study: Path, participant: str, trial: str, *, quiet: bool, **wanted: Any) -> None:
+    """Show one TRIAL of a PARTICIPANT, and why each outcome is what it is.
+
+    PARTICIPANT and TRIAL are named as in the tables.
+    """
+    loaded = etl.load_study(study)
+    picture = wanted["picture"]
+    outcomes = Wanted(wanted["regions"], wanted["measures"])
+    with _progress(quiet=quiet) as progress:
+        traced = etl.trace(
+            loaded,
+            participant,
+            trial,
+            session=wanted["session"],
+            workers=None,
+            progress=progress,
+        )
+    if picture is not None:
+        write_picture(traced, picture, outcomes)
+        click.echo(f"Written to {picture}")
+        return
+    encoding = sys.stdout.encoding or "ascii"
+    click.echo(explained(traced, shutil.get_terminal_size().columns, encoding, outcomes))
 
 
 @main.command()

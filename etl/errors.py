@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Iterable, Iterator
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Literal, TypedDict, Unpack
 
 Severity = Literal["error", "warning", "note"]
@@ -139,6 +139,13 @@ class Findings:
             told[finding.kind] += 1
         for kind, count in told.items():
             self.more[kind] += others.more[kind] - count
+
+    def with_path(self, path: str, instead: str) -> Findings:
+        """The same findings with one file under another name, for records that travel."""
+        renamed = Findings([replace(f, path=instead) if f.path == path else f for f in self.items])
+        for (severity, own, where, problem), count in self.more.items():
+            renamed.more[severity, instead if own == path else own, where, problem] += count
+        return renamed
 
     def __iter__(self) -> Iterator[Finding]:
         return iter(self.items)

@@ -5,12 +5,13 @@ from __future__ import annotations
 import csv
 from collections.abc import Mapping, Sequence
 from pathlib import Path
+from typing import Final, Literal
 
 from etl.errors import FaultError
 from etl.screening.ledger import Accounts
 
 ACCOUNTS = "accounts.csv"
-UNITS = ("trials", "fixations")
+UNITS: Final[tuple[Literal["trials", "fixations"], ...]] = ("trials", "fixations")
 EVERYBODY = "(all)"
 
 

@@ -3,27 +3,39 @@
 from __future__ import annotations
 
 import contextlib
+import glob
 import json
 import shutil
 import tempfile
 from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
+from typing import Any
 
 from etl.errors import DataError, Findings
 
 #: The file by which an output folder is known as one of ours.
 RECORD = "run.json"
 PROGRAM = "trialwright"
+_ASIDE = "old"
+
+
+#: What an operating system leaves in any folder that somebody looked into.
+_LITTER = frozenset({".DS_Store", "Thumbs.db", "desktop.ini"})
+
+
+def _record_of(folder: Path) -> dict[str, Any] | None:
+    """The run record of a folder; None where it is not one of ours."""
+    try:
+        record = json.loads((folder / RECORD).read_text(encoding="utf-8"))
+    except (OSError, ValueError):
+        return None
+    return record if isinstance(record, dict) and record.get("program") == PROGRAM else None
 
 
 def is_ours(folder: Path) -> bool:
     """Whether a folder was written by this program."""
-    try:
-        record = json.loads((folder / RECORD).read_text(encoding="utf-8"))
-    except (OSError, ValueError):
-        return False
-    return isinstance(record, dict) and record.get("program") == PROGRAM
+    return _record_of(folder) is not None
 
 
 def check_target(target: Path, shown: str) -> None:
@@ -32,7 +44,7 @@ def check_target(target: Path, shown: str) -> None:
     Raises
     ------
     DataError
-        If the target is a file, or a folder with contents that is not one of ours.
+        If the target is a file, or a folder that holds anything but an earlier build.
     """
     findings = Findings()
     if target.exists() and not target.is_dir():
@@ -41,13 +53,27 @@ def check_target(target: Path, shown: str) -> None:
             path=shown,
             fix="name a folder, by [output] folder or --into",
         )
-    elif target.is_dir() and any(target.iterdir()) and not is_ours(target):
-        findings.error(
-            "the output folder holds something else than an earlier build",
-            path=shown,
-            expected=f"a new or empty folder, or one that {PROGRAM} wrote (it has a {RECORD})",
-            fix="name another folder, by [output] folder or --into, or empty this one yourself",
-        )
+    elif target.is_dir():
+        there = {path.name for path in target.iterdir()} - _LITTER
+        record = _record_of(target)
+        if there and record is None:
+            findings.error(
+                "the output folder holds something else than an earlier build",
+                path=shown,
+                expected=f"a new or empty folder, or one that {PROGRAM} wrote (it has a {RECORD})",
+                fix="name another folder, by [output] folder or --into, or empty this one yourself",
+            )
+        elif record is not None and (strange := sorted(there - {RECORD, *record.get("files", ())})):
+            more = f" and {len(strange) - 5} more" if len(strange) > 5 else ""
+            findings.error(
+                "the output folder holds files that no build wrote, and a build replaces the "
+                "folder as a whole",
+                path=shown,
+                found=", ".join(strange[:5]) + more,
+                expected="nothing but an earlier build",
+                fix="move these files elsewhere, or name another folder, by [output] folder or "
+                "--into",
+            )
     if findings.failed:
         raise DataError(findings)
 
@@ -91,13 +117,14 @@ def published(target: Path, shown: str) -> Iterator[Workshop]:
     """
     # A link is followed, so that the tables land where it points.
     target = target.resolve()
-    check_target(target, shown)
     # Beside the target, so that the last step is a renaming on one file system.
     beside = next(folder for folder in target.parents if folder.is_dir())
     try:
+        _bring_back(target, beside)
+        check_target(target, shown)
         work = Path(tempfile.mkdtemp(prefix=f".{target.name}.", dir=beside))
     except OSError as why:
-        raise _cannot_write(shown, why) from why
+        raise cannot_write(shown, why) from why
     try:
         shop = Workshop(work / "new", work / "kept")
         shop.fresh.mkdir()
@@ -105,15 +132,26 @@ def published(target: Path, shown: str) -> Iterator[Workshop]:
         yield shop
         check_target(target, shown)
         target.parent.mkdir(parents=True, exist_ok=True)
-        _swap(shop.fresh, target, work / "old")
+        _swap(shop.fresh, target, work / _ASIDE)
     except OSError as why:
         # Inputs that cannot be read are findings long before this; what is left is the output.
-        raise _cannot_write(shown, why) from why
+        raise cannot_write(shown, why) from why
     finally:
-        shutil.rmtree(work, ignore_errors=True)
+        # An earlier build that could not be put back is worth more than a tidy folder.
+        if target.exists() or not (work / _ASIDE).exists():
+            shutil.rmtree(work, ignore_errors=True)
 
 
-def _cannot_write(shown: str, why: OSError) -> DataError:
+def _bring_back(target: Path, beside: Path) -> None:
+    """Put an earlier build back that a killed run had just moved aside."""
+    for aside in sorted(beside.glob(f".{glob.escape(target.name)}.*/{_ASIDE}")):
+        if not target.exists() and is_ours(aside):
+            target.parent.mkdir(parents=True, exist_ok=True)
+            aside.replace(target)
+            shutil.rmtree(aside.parent, ignore_errors=True)
+
+
+def cannot_write(shown: str, why: OSError) -> DataError:
     """What is said when the output cannot be put in its place."""
     findings = Findings()
     findings.error(
@@ -132,7 +170,7 @@ def _swap(fresh: Path, target: Path, aside: Path) -> None:
         target.replace(aside)
     try:
         fresh.replace(target)
-    except OSError:
-        if there:
+    except BaseException:  # an interruption too
+        if there and not target.exists():
             aside.replace(target)
         raise

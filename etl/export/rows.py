@@ -205,6 +205,8 @@ class RowMaker:
         """
         trial, order, code = cells
         width = len(self._measures)
+        if not width:  # a study that asks for outcomes of trials only
+            return pa.RecordBatch.from_pylist([], schema=self.schemas["outcomes"])
         values = np.stack([measured.values[n] for n in self._measures], axis=1).ravel()
         reasons = np.stack([measured.reasons[n] for n in self._measures], axis=1).ravel()
         names, kinds = self._tiled_names(len(trial))

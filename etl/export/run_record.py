@@ -55,6 +55,7 @@ class RunRecord:
             "study": self.study,
             "inputs": list(self.inputs),
             "counts": dict(self.counts),
+            "files": sorted(path.name for path in folder.iterdir()),
             "rows": dict(self.rows),
             "warnings": list(self.warnings),
             "not_recorded": list(self.not_recorded),

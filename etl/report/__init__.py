@@ -2,7 +2,7 @@
 
 from etl.report.audit import AUDIT, write_audit
 from etl.report.inputs import AccountRow, AuditInput, GalleryEntry, NotRecorded
-from etl.report.profile import LineGrid, Profiles, ReaderProfile, TrialFates, profile_of
+from etl.report.reader_profile import LineGrid, Profiles, ReaderProfile, TrialFates, profile_of
 
 __all__ = [
     "AUDIT",

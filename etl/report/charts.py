@@ -12,10 +12,9 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Literal
 
-from markupsafe import Markup, escape
-
-from etl.report.wording import cut
+from markupsafe import Markup
 
 #: Hatchings for rules and shapes for levels; with more of either they begin anew.
 HATCHINGS = 8
@@ -23,13 +22,6 @@ SHAPES = 6
 #: Width of one trial where trials are drawn as squares, and the most that are.
 UNIT_PX = 9
 MOST_UNITS = 36
-#: The width that strips of readers are laid out for: dots that do not touch at this width may
-#: touch on a phone; labels are laid out for the phone.
-_LAID_OUT_PX = 620
-_NARROW_PX = 300
-_LETTER_PX = 6.6
-_DOT_PX = 4.5
-_LABEL_PX = 15
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,13 +30,13 @@ class Part:
 
     Attributes
     ----------
-    slot : int or None
-        Hatching of a rule; None for what was kept.
+    slot : int, None or "absent"
+        Hatching of a rule; None for what was kept; "absent" for trials that no log has.
     amount : int
         How many.
     """
 
-    slot: int | None
+    slot: int | Literal["absent"] | None
     amount: int
 
 
@@ -73,22 +65,6 @@ class Scale:
         if self.high == self.low:
             return 0.5
         return min(1.0, max(0.0, (value - self.low) / (self.high - self.low)))
-
-
-@dataclass(frozen=True, slots=True)
-class Dot:
-    """A reader on a strip.
-
-    Attributes
-    ----------
-    value : float
-        Where.
-    label : str
-        The reader's name; empty unless the reader stands out.
-    """
-
-    value: float
-    label: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -137,31 +113,44 @@ def round_scale(low: float, high: float, *, most: int = 5) -> Scale:
     return Scale(min(low - pad, inside[0]), max(high + pad, inside[-1]), inside)
 
 
-def _svg(body: Sequence[str], height: float, kind: str, width: str = "100%") -> Markup:
-    """Wrap parts of a drawing."""
+def drawing(body: Sequence[str], height: float, kind: str, width: str = "100%") -> Markup:
+    """Wrap parts of a drawing.
+
+    Parameters
+    ----------
+    body : sequence of str
+        Elements; whatever in them comes from data is escaped.
+    height : float
+        In pixels.
+    kind : str
+        The class of the drawing.
+    width : str
+        In pixels or percent.
+    """
     inner = "".join(body)
-    return Markup(
+    return Markup(  # noqa: S704 - made of our own elements; names in them are escaped
         f'<svg class="{kind}" width="{width}" height="{height:g}" aria-hidden="true" '
         f'focusable="false">{inner}</svg>'
     )
 
 
-
 def swatch(slot: int | None) -> Markup:
     """A square with the hatching of a rule, or the colour of what was kept."""
-    return _svg(
+    return drawing(
         [f'<rect class="bar-{_slot(slot)}" width="14" height="14"/>'], 14, "swatch", width="14"
     )
 
 
-def _slot(slot: int | None) -> str:
+def _slot(slot: int | Literal["absent"] | None) -> str:
     """A hatching's name in classes."""
-    return "kept" if slot is None else str(slot % HATCHINGS)
+    if slot is None:
+        return "kept"
+    return slot if slot == "absent" else str(slot % HATCHINGS)
 
 
 def marker(shape: int) -> Markup:
     """The shape of a level, for legends."""
-    return _svg([_use(shape, "8", 8)], 16, "swatch", width="16")
+    return drawing([_use(shape, "8", 8)], 16, "swatch", width="16")
 
 
 def _use(shape: int, x: str, y: float) -> str:
@@ -190,7 +179,7 @@ def unit_bar(parts: Sequence[Part], whole: int) -> Markup:
                 f'<rect class="unit-{_slot(part.slot)}" x="{x}" width="{width}" height="13"/>'
             )
             x += width
-    return _svg(body, 13, "units", width=str(max(1, whole) * UNIT_PX))
+    return drawing(body, 13, "units", width=str(max(1, whole) * UNIT_PX))
 
 
 def share_bar(parts: Sequence[Part], whole: float, *, height: int = 18) -> Markup:
@@ -214,7 +203,7 @@ def share_bar(parts: Sequence[Part], whole: float, *, height: int = 18) -> Marku
                 f'height="{height}"/>'
             )
             done += part.amount
-    return _svg(body, height, "shares")
+    return drawing(body, height, "shares")
 
 
 def quantile_bar(quantiles: Sequence[float], scale: Scale) -> Markup:
@@ -233,7 +222,7 @@ def quantile_bar(quantiles: Sequence[float], scale: Scale) -> Markup:
         for kind, (a, b) in (("whisker", outer), ("box", inner))
     ]
     body.append(f'<circle class="median-dot" cx="{scale.across(middle)}" cy="8" r="3"/>')
-    return _svg(body, 16, "quantiles", width="110")
+    return drawing(body, 16, "quantiles", width="110")
 
 
 def estimate_row(estimates: Sequence[Estimate | None], scale: Scale) -> Markup:
@@ -259,12 +248,12 @@ def estimate_row(estimates: Sequence[Estimate | None], scale: Scale) -> Markup:
             f'x2="{scale.across(one.high)}" y1="{y:g}" y2="{y:g}"/>'
         )
         body.append(_use(one.shape, scale.across(one.rate), y))
-    return _svg(body, height, "estimates")
+    return drawing(body, height, "estimates")
 
 
 def axis(scale: Scale, unit: str) -> Markup:
     """The numbers under drawings that share an axis."""
-    return _svg(_numbers(scale, unit, 12), 16, "axis")
+    return drawing(numbers(scale, unit, 12), 16, "axis")
 
 
 def _grid(scale: Scale, height: float) -> list[str]:
@@ -275,8 +264,18 @@ def _grid(scale: Scale, height: float) -> list[str]:
     ]
 
 
-def _numbers(scale: Scale, unit: str, y: float) -> list[str]:
-    """The round values in figures; the last one bears the unit."""
+def numbers(scale: Scale, unit: str, y: float) -> list[str]:
+    """The round values in figures; the last one bears the unit.
+
+    Parameters
+    ----------
+    scale : Scale
+        The axis.
+    unit : str
+        The unit.
+    y : float
+        The base line of the figures, in pixels.
+    """
     body = []
     for tick in scale.ticks:
         share = scale.share(tick)
@@ -287,123 +286,3 @@ def _numbers(scale: Scale, unit: str, y: float) -> list[str]:
             f"{text}</text>"
         )
     return body
-
-
-def strip(
-    dots: Sequence[Dot],
-    scale: Scale,
-    unit: str,
-    *,
-    fence: tuple[float, float] | None = None,
-    published: tuple[float, float] | None = None,
-    median: float | None = None,
-) -> Markup:
-    """All readers on one axis.
-
-    Parameters
-    ----------
-    dots : sequence of Dot
-        Ascending.
-    scale : Scale
-        The axis.
-    unit : str
-        Stands behind the last number.
-    fence : tuple of float, optional
-        Readers outside stand out: the band between is shaded.
-    published : tuple of float, optional
-        A published range: hatched.
-    median : float, optional
-        Of all readers: a line.
-    """
-    rows, depth = _labels(dots, scale)
-    heights = _swarm([scale.share(dot.value) * _LAID_OUT_PX for dot in dots])
-    reach = max((abs(h) for h in heights), default=0.0) + _DOT_PX + 5
-    top = depth * _LABEL_PX + 4
-    middle, bottom = top + reach, top + 2 * reach
-    body: list[str] = []
-    for kind, band in (("fence", fence), ("published", published)):
-        if band is not None:
-            x, end = scale.share(band[0]) * 100, scale.share(band[1]) * 100
-            body.append(
-                f'<rect class="{kind}" x="{x:.2f}%" width="{max(0.0, end - x):.2f}%" '
-                f'y="{top:g}" height="{2 * reach:g}"/>'
-            )
-    body.append(f'<line class="base" x1="0" x2="100%" y1="{bottom:g}" y2="{bottom:g}"/>')
-    if median is not None:
-        x_median = scale.across(median)
-        body.append(
-            f'<line class="median" x1="{x_median}" x2="{x_median}" y1="{top:g}" y2="{bottom:g}"/>'
-        )
-    for dot, height, row in zip(dots, heights, rows, strict=True):
-        x = scale.across(dot.value)
-        y = middle + height
-        if not dot.label:
-            body.append(f'<circle class="reader" cx="{x}" cy="{y:.1f}" r="{_DOT_PX - 0.5}"/>')
-            continue
-        body.append(f'<use href="#stands-out" class="stands-out" x="{x}" y="{y:.1f}"/>')
-        if row is not None:
-            text_y = row * _LABEL_PX + 11
-            end = _anchor(scale.share(dot.value))
-            body.append(
-                f'<line class="leader" x1="{x}" x2="{x}" y1="{text_y + 4:g}" y2="{y - 7:.1f}"/>'
-                f'<text class="label" x="{x}" y="{text_y:g}" text-anchor="{end}">'
-                f"{escape(cut(dot.label))}</text>"
-            )
-    body += _numbers(scale, unit, bottom + 15)
-    return _svg(body, bottom + 20, "strip")
-
-
-def _anchor(share: float) -> str:
-    """Which end of a label stands at its dot."""
-    return "start" if share < 0.2 else "end" if share > 0.8 else "middle"
-
-
-def _labels(dots: Sequence[Dot], scale: Scale) -> tuple[list[int | None], int]:
-    """In which row above the dots each label goes, so that none covers another on a phone."""
-    rows: list[int | None] = []
-    ends: list[list[tuple[float, float]]] = []
-    for dot in dots:
-        if not dot.label:
-            rows.append(None)
-            continue
-        share = scale.share(dot.value)
-        x, width = share * _NARROW_PX, len(cut(dot.label)) * _LETTER_PX + 8
-        start = {"start": x, "end": x - width, "middle": x - width / 2}[_anchor(share)]
-        free = (
-            r
-            for r, taken in enumerate(ends)
-            if all(start > b or start + width < a for a, b in taken)
-        )
-        row = next(free, len(ends))
-        if row == len(ends):
-            if row == 4:
-                rows.append(None)  # the sentence below the strip names those without a label
-                continue
-            ends.append([])
-        ends[row].append((start, start + width))
-        rows.append(row)
-    return rows, len(ends)
-
-
-def _swarm(xs: Sequence[float]) -> list[float]:
-    """How far up or down each dot moves so that dots do not cover one another."""
-    placed: list[tuple[float, float]] = []
-    out: list[float] = []
-    width = 2 * _DOT_PX
-    most = 4.5 * width
-    for x in xs:
-        near = [(px, py) for px, py in placed[-60:] if x - px < width]
-        tries = [0.0]
-        for px, py in near:
-            rise = math.sqrt(max(0.0, width**2 - (x - px) ** 2)) + 0.01
-            tries += [py + rise, py - rise]
-        free = [
-            y
-            for y in tries
-            if abs(y) <= most
-            and all((x - px) ** 2 + (y - py) ** 2 >= width**2 - 0.01 for px, py in near)
-        ]
-        y = min(free, key=lambda v: (abs(v), v)) if free else 0.0
-        placed.append((x, y))
-        out.append(y)
-    return out

@@ -5,13 +5,14 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from markupsafe import Markup
+from markupsafe import Markup, escape
 
+from etl.report.compared_by import MEASURES, Measure
 from etl.report.comparing import FENCE, FEWEST_TO_COMPARE
 from etl.report.inputs import AuditInput, GalleryEntry
 from etl.report.losses import Losses, collect_losses, differing
 from etl.report.rates import Rates, collect_rates
-from etl.report.readers import MEASURES, Comparison, collect_readers
+from etl.report.readers import Comparison, collect_readers
 from etl.report.study_view import Section, sections
 from etl.report.wording import NOTHING, count, counted, listed, name
 
@@ -83,7 +84,7 @@ class AuditFacts:
         Where trials and fixations went.
     readers : Comparison
         The readers beside one another.
-    measures : tuple
+    measures : tuple of Measure
         What they are compared by.
     fence : str
         How many deviations off a reader stands out.
@@ -108,7 +109,7 @@ class AuditFacts:
     headlines: tuple[Headline, ...]
     losses: Losses
     readers: Comparison
-    measures: tuple[object, ...]
+    measures: tuple[Measure, ...]
     fence: str
     fewest: int
     rates: Rates
@@ -186,8 +187,10 @@ def _headlines(given: AuditInput, losses: Losses, readers: Comparison) -> list[H
         Headline(
             "loss",
             "Loss differs",
-            Markup("{} This can bias the result: the trials kept no longer stand for all that were "
-                   "read.").format(differing(loss)),
+            Markup(
+                "{} This can bias the result: the trials kept no longer stand for all that were "
+                "read."
+            ).format(differing(loss)),
             "#losses",
         )
         for loss in losses.factors
@@ -202,12 +205,12 @@ def _headlines(given: AuditInput, losses: Losses, readers: Comparison) -> list[H
     more = len(readers.standing_out) - MOST_NAMED
     if more > 0:
         text = f"{counted(more, 'more reader')}: choose “who stand out” in the table of readers."
-        out.append(Headline("reader", "Stand out", Markup(text), "#every-reader"))
+        out.append(Headline("reader", "Stand out", escape(text), "#every-reader"))
     if given.not_recorded:
         out.append(_not_recorded(given))
     if not out:
         text = "No reader stands out, and no loss of trials differs between conditions."
-        out.append(Headline("fine", "Nothing", Markup(text), "#losses"))
+        out.append(Headline("fine", "Nothing", escape(text), "#losses"))
     return out
 
 

@@ -86,7 +86,7 @@ def loss_p_value(lost: Sequence[int], kept: Sequence[int]) -> float | None:
     if table.shape[1] < 2 or (table.sum(axis=1) == 0).any():
         return None
     # Importing the tests of scipy takes longer than a small build, so only where one is needed.
-    from scipy.stats import MonteCarloMethod, fisher_exact
+    from scipy.stats import MonteCarloMethod, fisher_exact  # noqa: PLC0415
 
     if table.shape[1] == 2:
         return float(fisher_exact(table).pvalue)

@@ -6,7 +6,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any, Literal
 
-from etl.report.profile import Profiles
+from etl.report.reader_profile import Profiles
 from etl.tables import TableDesign
 
 
@@ -52,6 +52,15 @@ class NotRecorded:
     participant: str
     trial: str
     session: str = ""
+
+    def spelled(self) -> str:
+        """The trial in words."""
+        named = (
+            ("participant", self.participant),
+            ("session", self.session),
+            ("trial", self.trial),
+        )
+        return ", ".join(f"{name} {text}" for name, text in named if text)
 
 
 @dataclass(frozen=True, slots=True)

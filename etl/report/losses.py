@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -18,7 +19,7 @@ from etl.report.wording import count, counted, listed, name, percent, probabilit
 OUTSIDE_THE_STUDY = ("skip", "repeated")
 #: Below this, loss is said to differ between levels of a factor (common practice, no source).
 ALPHA = 0.05
-#: With more readers than this, those who lost nothing are counted, not drawn.
+#: With more readers than this, only those who lost most are drawn.
 MOST_BARS = 60
 
 
@@ -132,6 +133,22 @@ class FactorLoss:
 
 
 @dataclass(frozen=True, slots=True)
+class Legend:
+    """What the parts of bars mean.
+
+    Attributes
+    ----------
+    kept : Markup
+        The swatch of what was kept.
+    rules : tuple of Rule
+        Those that left something out.
+    """
+
+    kept: Markup
+    rules: tuple[Rule, ...]
+
+
+@dataclass(frozen=True, slots=True)
 class Losses:
     """All that the page says of loss.
 
@@ -141,12 +158,14 @@ class Losses:
         In all.
     rules : tuple of Rule
         Those of the study, in order of application.
+    legend : Legend or None
+        Of the bars; None where nothing was lost.
     readers : tuple of LossRow
         Those that are drawn.
-    unharmed : int
-        Readers who are not drawn since they lost nothing.
-    squares : bool
-        Whether each trial is a square.
+    undrawn : int
+        Readers who are not drawn, of very many, since they lost less or nothing.
+    squares, any_absent : bool
+        Whether each trial is a square, and whether there are trials that no log has.
     factors : tuple of FactorLoss
         One a factor.
     """
@@ -154,9 +173,11 @@ class Losses:
     trials: Balance
     fixations: Balance
     rules: tuple[Rule, ...]
+    legend: Legend | None
     readers: tuple[LossRow, ...]
-    unharmed: int
+    undrawn: int
     squares: bool
+    any_absent: bool
     factors: tuple[FactorLoss, ...]
 
 
@@ -184,14 +205,22 @@ def collect_losses(given: AuditInput) -> Losses:
         )
         for n in names
     )
-    readers, unharmed = _reader_rows(given, rows["trials"], slots)
+    absent = Counter(one.participant for one in given.not_recorded)
+    whole = max((of_study(r) + absent[r.participant] for r in rows["trials"]), default=0)
+    readers = [_reader_row(row, absent[row.participant], whole, slots) for row in rows["trials"]]
+    drawn = readers
+    if len(readers) > MOST_BARS:
+        harmed = [row for row in readers if row.lost or row.not_recorded]
+        drawn = sorted(harmed, key=lambda row: -row.lost)[:MOST_BARS]
     return Losses(
         _balance("trials", rows["trials"], slots),
         _balance("fixations", rows["fixations"], slots),
         rules,
-        readers,
-        unharmed,
-        max((of_study(row) for row in rows["trials"]), default=0) <= charts.MOST_UNITS,
+        Legend(charts.swatch(None), tuple(r for r in rules if r.swatch)) if striking else None,
+        tuple(drawn),
+        len(readers) - len(drawn),
+        whole <= charts.MOST_UNITS,
+        bool(absent),
         tuple(_factor_loss(given, place, slots) for place in range(len(given.design.factors))),
     )
 
@@ -240,34 +269,21 @@ def _by_rule(left: dict[str, int]) -> Markup:
     return listed(parts, most=len(parts) or 1)
 
 
-def _reader_rows(
-    given: AuditInput, rows: Sequence[AccountRow], slots: dict[str, int]
-) -> tuple[tuple[LossRow, ...], int]:
-    """A bar a reader; of very many readers, only those who lost something."""
-    absent: dict[str, int] = {}
-    for one in given.not_recorded:
-        absent[one.participant] = absent.get(one.participant, 0) + 1
-    whole = max((of_study(row) for row in rows), default=0)
-    out = []
-    for row in rows:
-        left = {n: k for n, k in row.left_out.items() if n not in OUTSIDE_THE_STUDY}
-        read = of_study(row)
-        out.append(
-            LossRow(
-                row.participant,
-                charts.unit_bar(_parts(row.kept, left, slots), whole),
-                row.kept,
-                read - row.kept,
-                read,
-                percent((read - row.kept) / read if read else None),
-                _by_rule(left),
-                absent.get(row.participant, 0),
-            )
-        )
-    if len(out) <= MOST_BARS:
-        return tuple(out), 0
-    harmed = sorted((r for r in out if r.lost or r.not_recorded), key=lambda r: -r.lost)
-    return tuple(harmed), len(out) - len(harmed)
+def _reader_row(row: AccountRow, missing: int, whole: int, slots: dict[str, int]) -> LossRow:
+    """The bar of one reader."""
+    left = {n: k for n, k in row.left_out.items() if n not in OUTSIDE_THE_STUDY}
+    read = of_study(row)
+    parts = [*_parts(row.kept, left, slots), charts.Part("absent", missing)]
+    return LossRow(
+        row.participant,
+        charts.unit_bar(parts, whole),
+        row.kept,
+        read - row.kept,
+        read,
+        percent((read - row.kept) / read if read else None),
+        _by_rule(left),
+        missing,
+    )
 
 
 def _factor_loss(given: AuditInput, place: int, slots: dict[str, int]) -> FactorLoss:

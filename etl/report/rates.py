@@ -214,8 +214,8 @@ def _grid(given: AuditInput, groups: Sequence[Sequence[int]], *, pooled: bool) -
         region = np.zeros_like(rates.keys) if pooled else rates.keys % width
         for place, members in enumerate(groups):
             rows = np.flatnonzero(np.isin(rates.keys // width, members))
-            np.add.at(ones, (region[rows], place), rates.ones[rows])
-            np.add.at(n, (region[rows], place), rates.n[rows])
+            np.add.at(ones[:, place], region[rows], rates.ones[rows])
+            np.add.at(n[:, place], region[rows], rates.n[rows])
     return _Grid(ones, n)
 
 
@@ -254,7 +254,9 @@ def _outcome(
         for panel in panels:
             own = by_level[place][done : done + len(panel.levels)]
             done += len(panel.levels)
-            drawings.append(charts.estimate_row([_estimate(i, r) for i, r in enumerate(own)], scale))
+            drawings.append(
+                charts.estimate_row([_estimate(i, r) for i, r in enumerate(own)], scale)
+            )
         rows.append(
             RateRow(region, tuple(drawings), tuple(by_level[place]), tuple(combined[place]))
         )

@@ -2,77 +2,21 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from functools import partial
 
-from markupsafe import Markup
+from markupsafe import Markup, escape
 
 from etl.report import charts
+from etl.report.compared_by import MEASURES, RAYNER, Measure, Reader
 from etl.report.comparing import FENCE, FEWEST_TO_COMPARE, robust_fence
 from etl.report.inputs import AuditInput
 from etl.report.losses import of_study
-from etl.report.profile import ReaderNumbers
-from etl.report.wording import NOTHING, count, counted, listed, name, number, percent
+from etl.report.strips import Dot, strip
+from etl.report.wording import NOTHING, count, counted, listed, name, number
 
-RAYNER = "Rayner 1998, doi:10.1037/0033-2909.124.3.372"
-
-
-@dataclass(frozen=True, slots=True)
-class Reader:
-    """A reader with the account of trials.
-
-    Attributes
-    ----------
-    numbers : ReaderNumbers
-        From the worker.
-    read, kept : int
-        Trials of the study.
-    left_out : str
-        The rule on readers that left this one out; empty where none did.
-    """
-
-    numbers: ReaderNumbers
-    read: int
-    kept: int
-    left_out: str
-
-
-@dataclass(frozen=True, slots=True)
-class Measure:
-    """Something that readers are compared by.
-
-    Attributes
-    ----------
-    key : str
-        Its name in the page.
-    title : str
-        In a few words.
-    how : str
-        What it is computed from, in a sentence.
-    value : callable
-        From a reader; None where there is none.
-    shown : callable
-        A value in words.
-    unit : str
-        Of the axis.
-    factor : float
-        Turns a value into one on the axis.
-    published : tuple of float or None
-        A published range, on the axis.
-    remark : str
-        What to bear in mind.
-    """
-
-    key: str
-    title: str
-    how: str
-    value: Callable[[Reader], float | None]
-    shown: Callable[[float | None], str]
-    unit: str
-    factor: float = 1.0
-    published: tuple[float, float] | None = None
-    remark: str = ""
+#: This many readers who stand out are named below a strip.
+MOST_NAMED = 12
 
 
 @dataclass(frozen=True, slots=True)
@@ -90,11 +34,11 @@ class Strip:
     median : str
         Of the readers.
     band : str
-        Within which no reader stands out; empty where nobody is judged.
+        Below or above what a reader stands out; empty where nobody is judged.
     published : str
         The published range with its source; empty where there is none.
-    outliers : tuple of Markup
-        Who stands out, with the value.
+    outliers : Markup
+        Who stands out, with the value; of very many, the first few are named.
     """
 
     measure: Measure
@@ -103,7 +47,7 @@ class Strip:
     median: str
     band: str
     published: str
-    outliers: tuple[Markup, ...]
+    outliers: Markup
 
 
 @dataclass(frozen=True, slots=True)
@@ -187,97 +131,6 @@ class Comparison:
     standing_out: tuple[Markup, ...]
     left_out: tuple[Markup, ...]
     judged: bool
-
-
-def _share(part: int, whole: int) -> float | None:
-    """A share, where there is a whole."""
-    return part / whole if whole else None
-
-
-def _ms(value: float | None) -> str:
-    """Milliseconds."""
-    return number(value, 0, "ms")
-
-
-_px = partial(number, digits=1, unit="px", signed=True)
-
-MEASURES = (
-    Measure(
-        "duration",
-        "Mean fixation duration",
-        "All kept fixations of a reader, inside regions and outside.",
-        lambda r: r.numbers.durations and r.numbers.durations.mean_ms,
-        _ms,
-        " ms",
-        published=(200, 250),
-    ),
-    Measure(
-        "spread",
-        "Spread of fixation durations",
-        "Standard deviation of the same fixations.",
-        lambda r: r.numbers.durations and r.numbers.durations.spread_ms,
-        _ms,
-        " ms",
-    ),
-    Measure(
-        "regressions",
-        "Regressions",
-        "Of the saccades from one region to another, the share that goes back to an earlier one.",
-        lambda r: _share(r.numbers.back, r.numbers.back + r.numbers.forward),
-        percent,
-        "%",
-        100,
-        published=(10, 15),
-        remark="The published range is for all saccades, also those within a region; where regions "
-        "are longer than a word the two are not the same.",
-    ),
-    Measure(
-        "skips",
-        "Skips",
-        "Of all values of first_pass_skip, the share that is 1.",
-        lambda r: _share(r.numbers.skips, r.numbers.skip_chances),
-        percent,
-        "%",
-        100,
-        remark="No published range is drawn: it depends on how long the regions are.",
-    ),
-    Measure(
-        "outside",
-        "Outside every region",
-        "Of a reader’s kept fixations, the share that lies in no region.",
-        lambda r: _share(r.numbers.outside, r.numbers.fixations),
-        percent,
-        "%",
-        100,
-    ),
-    Measure(
-        "height",
-        "Height on the line",
-        "Median distance of fixations below the middle of the nearest line of their text; negative "
-        "is above.",
-        lambda r: r.numbers.offset_px,
-        _px,
-        " px",
-    ),
-    Measure(
-        "drift",
-        "Drift in the session",
-        "How far down that distance moves from the first third of a reader’s kept trials to the "
-        "last, medians of both; negative is up.",
-        lambda r: r.numbers.drift_px,
-        _px,
-        " px",
-    ),
-    Measure(
-        "lost",
-        "Trials lost",
-        "Of the trials of the study that were read, the share that a rule left out.",
-        lambda r: _share(r.read - r.kept, r.read),
-        percent,
-        "%",
-        100,
-    ),
-)
 
 
 def collect_readers(given: AuditInput, levels: Mapping[str, str]) -> Comparison:
@@ -378,10 +231,18 @@ def _strip(
         _drawn(measure, known, band, {w for w, k in strange if k == measure.key}),
         len(known),
         measure.shown(middle),
-        "" if band is None else f"{measure.shown(band[0])} to {measure.shown(band[1])}",
+        "" if band is None else _limits(measure, band),
         "" if measure.published is None else _published(measure, values),
-        tuple(outliers),
+        listed(outliers, MOST_NAMED),
     )
+
+
+def _limits(measure: Measure, band: tuple[float, float]) -> str:
+    """Where standing out begins."""
+    above = f"above {measure.shown(band[1])}"
+    if band[0] < 0 and not measure.negative:
+        return above
+    return f"below {measure.shown(band[0])} or {above}"
 
 
 def _median(values: Sequence[float]) -> float | None:
@@ -417,8 +278,8 @@ def _drawn(
     ends = [shown[0][0], shown[-1][0], *(measure.published or ())]
     scale = charts.round_scale(min(ends), max(ends), most=6)
     middle = _median([value for value, _ in shown])
-    return charts.strip(
-        [charts.Dot(value, who if who in strange else "") for value, who in shown],
+    return strip(
+        [Dot(value, who if who in strange else "") for value, who in shown],
         scale,
         measure.unit,
         fence=None if band is None else (band[0] * factor, band[1] * factor),
@@ -455,7 +316,7 @@ def _row(
         who,
         tuple(reader.numbers.levels[group] for group in groups),
         Cell(f"{count(reader.kept)} of {count(reader.read)}", str(reader.kept)),
-        charts.quantile_bar(durations.quantiles_ms, scale) if durations else Markup(NOTHING),
+        charts.quantile_bar(durations.quantiles_ms, scale) if durations else escape(NOTHING),
         tuple(cells),
         listed(own, most=len(own) or 1),
         who in reasons,

@@ -71,14 +71,15 @@ def rule_meaning(rule: str, study: Mapping[str, Any]) -> str:
 
 
 def rule_level(rule: str) -> str:
-    """What a rule judges: ``fixation``, ``trial`` or ``reader``; else ``recording``.
+    """What a rule judges: ``fixation``, ``trial``, ``reader``, or a ``recording`` of a trial.
 
     Examples
     --------
     >>> rule_level("under_ms"), rule_level("skip")
-    ('fixation', 'recording')
+    ('fixation', 'trial')
     """
-    return next((level for _, level, known in _LEVELS if rule in known), "recording")
+    known = next((level for _, level, own in _LEVELS if rule in own), "trial")
+    return "recording" if rule == "repeated" else known
 
 
 def _limit(rule: str, limit: Any) -> str:
@@ -89,6 +90,6 @@ def _limit(rule: str, limit: Any) -> str:
     if isinstance(limit, list | tuple):
         numbers = all(isinstance(one, int | float) for one in limit)
         return " to ".join(f"{v:,g}" for v in limit) if numbers else ", ".join(map(str, limit))
-    if isinstance(limit, bool) or limit is None:
+    if isinstance(limit, bool | str) or limit is None:
         return ""
     return f"{100 * limit:g}%" if "share" in rule else f"{limit:g}"

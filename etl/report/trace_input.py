@@ -39,10 +39,10 @@ class Cell:
 
 
 @dataclass(frozen=True, slots=True)
-class TextLine:
-    """One line of the text as shown, with the box that its characters fill, in px."""
+class Word:
+    """A stretch of characters as shown, without blanks, with the box that it fills, in px."""
 
-    number: int
+    line: int
     text: str
     left_px: float
     top_px: float
@@ -165,8 +165,8 @@ class TracedTrial:
         For each measure asked for, one cell a region, in reading order.
     trial_outcomes : dict of str to Cell
         The outcomes of the trial.
-    lines : tuple of TextLine
-        The lines that carry text, from the top; empty where the text is not known.
+    words : tuple of Word
+        The text as shown, word by word; empty where the text or its place is not known.
     pieces : tuple of Piece
         Where the regions are; empty where the log's labels say what was fixated.
     right_to_left : bool
@@ -192,7 +192,7 @@ class TracedTrial:
     regressions: tuple[Regression, ...]
     outcomes: Mapping[str, tuple[Cell, ...]]
     trial_outcomes: Mapping[str, Cell]
-    lines: tuple[TextLine, ...] = ()
+    words: tuple[Word, ...] = ()
     pieces: tuple[Piece, ...] = ()
     right_to_left: bool = False
     outside: Literal["ignore", "interrupt"] = "ignore"

@@ -57,3 +57,14 @@ def tag(name: str, values: Attributes) -> str:
 def wrapped(name: str, values: Attributes, content: Sequence[str]) -> str:
     """An element with content, which is markup already."""
     return f"<{name}{_attributes(values)}>{''.join(content)}</{name}>"
+
+
+def straight(x1: float, y1: float, x2: float, y2: float) -> str:
+    """The path of a straight line.
+
+    Examples
+    --------
+    >>> straight(0, 1, 2.5, 3)
+    'M0 1 L2.5 3'
+    """
+    return f"M{number(x1)} {number(y1)} L{number(x2)} {number(y2)}"

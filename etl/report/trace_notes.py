@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Final
 
-from etl.report.trace_glyphs import printable, shortened
+from etl.report.trace_glyphs import printable, shortened, width_of
 from etl.report.trace_input import Piece, TracedFixation, TracedTrial
 from etl.report.trace_markup import number, tag, text, wrapped
 from etl.report.trace_phrases import ms
@@ -12,9 +12,9 @@ from etl.report.trace_places import PLOT_RIGHT, Bar, Places
 
 _LEFT: Final = PLOT_RIGHT + 22.0
 _LINE: Final = 15.0
-#: How many letters fit beside the picture, and how many of a region's name.
+#: How many bold letters fit beside the picture (of plain ones 4 more), and of a region's name.
 _LETTERS: Final = 36
-_NAME_LETTERS: Final = 14
+_NAME_LETTERS: Final = 11
 
 
 def notes(traced: TracedTrial, places: Places) -> str:
@@ -30,7 +30,7 @@ def notes(traced: TracedTrial, places: Places) -> str:
             f"L{number(_LEFT - 9)} {number(at)} L{number(_LEFT - 4)} {number(at)}"
         )
         parts.append(tag("path", {"class": "lead", "d": d}))
-        shown = shortened(printable(words), _LETTERS)
+        shown = shortened(printable(words), _LETTERS + (0 if kind == "back" else 4))
         inner = [text(shown)]
         if shown != printable(words):
             inner.insert(0, wrapped("title", {}, [text(words)]))
@@ -44,13 +44,10 @@ def _wanted(traced: TracedTrial, places: Places) -> list[tuple[float, str, str]]
     found: list[tuple[float, str, str]] = []
     for place, regression in enumerate(traced.regressions, start=1):
         launch, landing = bars[regression.launch], bars[regression.landing]
-        source, target = (
-            shortened(printable(traced.region(bar.fixation.region_order)), _NAME_LETTERS)
-            for bar in (launch, landing)
-        )
+        orders = (launch.fixation.region_order, landing.fixation.region_order)
         ends = ", ends 1st pass" if regression.ends_first_pass else ""
         y = (launch.bottom + landing.top) / 2
-        found.append((y, "back", f"R{place} {source} to {target}{ends}"))
+        found.append((y, "back", f"R{place} {_from_to(traced, orders, ends)}"))
     whole = traced.removal.rule if traced.removal is not None else ""
     for bar in places.bars:
         words = _note(traced, bar, whole)
@@ -58,6 +55,16 @@ def _wanted(traced: TracedTrial, places: Places) -> list[tuple[float, str, str]]
             kind = "out" if not bar.fixation.kept else "outside"
             found.append(((bar.top + bar.bottom) / 2, kind, words))
     return found
+
+
+def _from_to(traced: TracedTrial, orders: tuple[int, int], ends: str) -> str:
+    """The regions of a regression: with their words where there is room, else by names alone."""
+    called = [f"{traced.region(k)} “{traced.region_texts[k - 1].strip()}”" for k in orders]
+    words = f"{called[0]} to {called[1]}{ends}"
+    if all(traced.region_texts[k - 1].strip() for k in orders) and width_of(words) <= _LETTERS - 8:
+        return words
+    names = [shortened(printable(traced.region(k)), _NAME_LETTERS) for k in orders]
+    return f"{names[0]} to {names[1]}{ends}"
 
 
 def _note(traced: TracedTrial, bar: Bar, whole: str) -> str:
@@ -75,15 +82,15 @@ def _note(traced: TracedTrial, bar: Bar, whole: str) -> str:
         found = f", found {removal.observed}" if removal.observed else ""
         return f"{fixation.number} left out: {removal.rule}{limit}{found}"
     if not fixation.region_order:
-        return f"{fixation.number} outside{_how_far(traced, fixation)}{beyond}"
-    return ""
+        return f"{fixation.number} outside{beyond or _how_far(traced, fixation)}"
+    return f"{fixation.number} lies{beyond[1:]}" if beyond else ""
 
 
 def _how_far(traced: TracedTrial, fixation: TracedFixation) -> str:
     """How far above or below all regions a fixation is."""
     if not traced.pieces:
-        return ""
-    if not fixation.placed or fixation.y_px != fixation.y_px:  # noqa: PLR0124
+        return "" if traced.region_names or fixation.placed else ", no position"
+    if not fixation.placed or fixation.y_px != fixation.y_px:
         return ", no position" if not fixation.placed else ""
     top = min(piece.top_px for piece in traced.pieces)
     bottom = max(piece.bottom_px for piece in traced.pieces)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import Final
 
+from etl.report.trace_glyphs import width_of
 from etl.report.trace_input import TracedTrial
 from etl.report.trace_markup import tag, text, wrapped
 from etl.report.trace_places import PLOT_LEFT, Across
@@ -11,6 +12,8 @@ from etl.report.trace_places import PLOT_LEFT, Across
 _PITCH: Final = 30.0
 _RADIUS: Final = 2.6
 _LARGEST_TYPE: Final = 17.0
+#: Of a monospaced letter the advance is 0.6 of the type's size (common practice, no source).
+_ADVANCE: Final = 0.6
 
 
 def overview(traced: TracedTrial, top: float) -> tuple[str, float]:
@@ -22,35 +25,51 @@ def overview(traced: TracedTrial, top: float) -> tuple[str, float]:
     if len(lines) < 2:
         return "", top
     across = Across(traced)
-    words = {line.number: line for line in traced.lines}
     parts: list[str] = []
     tops = {line: top + row * _PITCH for row, line in enumerate(lines)}
     for line, y in tops.items():
-        label = {"class": "small end", "x": PLOT_LEFT - 8, "y": y + 15}
+        label: dict[str, str | float] = {"class": "small end", "x": PLOT_LEFT - 8, "y": y + 15}
         parts.append(wrapped("text", label, [text(f"line {line}")]))
         for piece in (p for p in traced.pieces if p.line == line):
             left, right = across.at(piece.left_px), across.at(piece.right_px)
             parity = "odd" if piece.order % 2 else "even"
-            box = {"class": f"stripe {parity}", "x": left, "y": y, "width": right - left}
+            box: dict[str, str | float] = {
+                "class": f"stripe {parity}",
+                "x": left,
+                "y": y,
+                "width": right - left,
+            }
             parts.append(tag("rect", {**box, "height": 21.0}))
-        if line in words:
-            own = words[line]
-            ends = (across.at(own.left_px), across.at(own.right_px))
-            parts.append(_text(own.text, ends, y + 15.5, traced))
+        parts += words_of(traced, across, line, y + 15.5, _LARGEST_TYPE)
     for fixation in traced.fixations:
         if fixation.line not in tops:
             continue
         x, _ = across.of(fixation)
         kind = "later" if fixation.kept and not fixation.first_pass else "first"
-        mark = {"class": f"dot {kind if fixation.kept else 'out'}", "cx": x}
+        mark: dict[str, str | float] = {"class": f"dot {kind if fixation.kept else 'out'}", "cx": x}
         parts.append(tag("circle", {**mark, "cy": tops[fixation.line] + 24.5, "r": _RADIUS}))
     return wrapped("g", {"class": "overview"}, parts), top + len(lines) * _PITCH + 18
 
 
-def _text(words: str, ends: tuple[float, float], y: float, traced: TracedTrial) -> str:
-    """A line in smaller type."""
-    from etl.report.trace_picture import line_of_text
-
-    return line_of_text(
-        words, ends, y, right_to_left=traced.right_to_left, largest=_LARGEST_TYPE
-    )
+def words_of(traced: TracedTrial, across: Across, line: int, y: float, largest: float) -> list[str]:
+    """The words of a line, each stretched to where it stood, whatever type there is."""
+    own = [word for word in traced.words if word.line == line and word.text]
+    if not own:
+        return []
+    narrowest = min((word.right_px - word.left_px) / max(1, width_of(word.text)) for word in own)
+    size = min(largest, narrowest * across.scale / _ADVANCE)
+    parts: list[str] = []
+    for word in own:
+        left, right = across.at(word.left_px), across.at(word.right_px)
+        attributes: dict[str, str | float] = {
+            "class": "text",
+            "x": right if traced.right_to_left else left,
+            "y": y,
+            "font-size": size,
+            "textLength": right - left,
+            "lengthAdjust": "spacingAndGlyphs",
+        }
+        if traced.right_to_left:
+            attributes["direction"] = "rtl"
+        parts.append(wrapped("text", attributes, [text(word.text)]))
+    return parts

@@ -17,11 +17,12 @@ from etl.report.trace_input import Piece, TracedFixation, TracedTrial
 #: Sizes of the picture, in its own units (px of a screen at 100 %).
 WIDTH: Final = 1200.0
 PLOT_LEFT: Final = 96.0
-PLOT_RIGHT: Final = 952.0
+PLOT_RIGHT: Final = 924.0
 MARGIN: Final = 14.0
 NAME_HEIGHT: Final = 14.0
 LINE_BOX: Final = 30.0
-AROUND_BARS: Final = 12.0
+ABOVE_BARS: Final = 18.0
+BELOW_BARS: Final = 12.0
 BETWEEN_STRETCHES: Final = 16.0
 CUT: Final = 26.0
 #: Room for fixations that have no place across.
@@ -58,32 +59,36 @@ class Across:
 
     def __init__(self, traced: TracedTrial) -> None:
         self.traced = traced
+        # Of a trial that is no part of the study nothing is known but where the eyes were.
+        self.by_px = bool(traced.pieces) or not traced.region_names
         nowhere = [f for f in traced.fixations if not self._has_place(f)]
         self.gutter = GUTTER if nowhere else 0.0
         left = PLOT_LEFT + self.gutter
         self.pieces = traced.pieces or self._columns(left)
-        edges = [(p.left_px, p.right_px) for p in (*self.pieces, *traced.lines)]
-        low, high = min(e[0] for e in edges), max(e[1] for e in edges)
-        reach = BEYOND_TEXT * (high - low)
-        if traced.pieces:
-            placed = [f.x_px for f in traced.fixations if f.placed]
+        placed = [f.x_px for f in traced.fixations if f.placed]
+        edges = [x for p in self.pieces for x in (p.left_px, p.right_px)]
+        edges += [x for word in traced.words for x in (word.left_px, word.right_px)]
+        edges = edges or [min(placed, default=0.0), max(placed, default=0.0) + 1.0]
+        low, high = min(edges), max(edges)
+        if self.by_px:
+            reach = BEYOND_TEXT * (high - low)
             low = max(min([low, *placed]), low - reach)
             high = min(max([high, *placed]), high + reach)
         self.low, self.high = low, high
         room = PLOT_RIGHT - left - 2 * MARGIN
-        self.scale = min(MOST_ACROSS, room / (high - low)) if traced.pieces else 1.0
-        self._origin = left + MARGIN if traced.pieces else low
+        self.scale = min(MOST_ACROSS, room / (high - low)) if self.by_px else 1.0
+        self._origin = left + MARGIN if self.by_px else low
 
     def _has_place(self, fixation: TracedFixation) -> bool:
         """Whether a fixation has a place of its own, or the place of its region."""
-        if self.traced.pieces and fixation.placed:
+        if self.by_px and fixation.placed:
             return True
         return fixation.region_order > 0
 
     def _columns(self, left: float) -> tuple[Piece, ...]:
         """Equal columns for regions that have no place on the screen."""
         count = len(self.traced.region_names)
-        width = (PLOT_RIGHT - left) / count
+        width = (PLOT_RIGHT - left) / max(1, count)
         return tuple(
             Piece(k + 1, 1, left + k * width, 0.0, left + (k + 1) * width, LINE_BOX)
             for k in range(count)
@@ -95,7 +100,7 @@ class Across:
 
     def of(self, fixation: TracedFixation) -> tuple[float, int]:
         """The place of a fixation, and whether it lies beyond the picture: -1 left, 1 right."""
-        if self.traced.pieces and fixation.placed:
+        if self.by_px and fixation.placed:
             x_px = min(max(fixation.x_px, self.low), self.high)
             return self.at(x_px), (fixation.x_px > self.high) - (fixation.x_px < self.low)
         if fixation.region_order:
@@ -228,11 +233,11 @@ def place(traced: TracedTrial, top: float) -> Places:
         rows = 1 + max((name.row for name in stretch.names), default=0)
         stretch.box_top = top + rows * NAME_HEIGHT + 4
         stretch.body_top = stretch.box_top + LINE_BOX
-        y = stretch.body_top + AROUND_BARS
+        y = stretch.body_top + ABOVE_BARS
         for start, end in own:
             stretch.segments.append(Segment(y, y + (end - start) * per_ms, start, end))
             y = stretch.segments[-1].bottom + CUT
-        stretch.bottom = y - CUT * bool(own) + AROUND_BARS
+        stretch.bottom = y - CUT * bool(own) + BELOW_BARS
         top = stretch.bottom + BETWEEN_STRETCHES
         for fixation in stretch.fixations:
             x, beyond = across.of(fixation)
@@ -253,7 +258,7 @@ def onsets_of(fixations: Sequence[TracedFixation]) -> dict[int, float]:
     >>> onsets_of(looks)
     {1: 0.0, 2: 200.0}
     """
-    if all(f.onset_ms == f.onset_ms for f in fixations):  # noqa: PLR0124  (NaN is not itself)
+    if all(f.onset_ms == f.onset_ms for f in fixations):
         return {f.number: f.onset_ms for f in fixations}
     onsets, clock_ms = {}, 0.0
     for fixation in fixations:
@@ -265,8 +270,8 @@ def onsets_of(fixations: Sequence[TracedFixation]) -> dict[int, float]:
 
 def _stretches(traced: TracedTrial, onsets: dict[int, float], across: Across) -> list[Stretch]:
     """Runs of fixations on one line, of one recording."""
-    first_line = min(piece.line for piece in across.pieces)
-    known = {piece.line for piece in across.pieces} | {line.number for line in traced.lines}
+    first_line = min((piece.line for piece in across.pieces), default=1)
+    known = {piece.line for piece in across.pieces}
     hosts = {f.merged_into for f in traced.fixations if f.merged_into}
     stretches: list[Stretch] = []
     before = -float("inf")

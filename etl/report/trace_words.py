@@ -172,10 +172,9 @@ def _region_statement(
     removal = story.traced.values_set_missing.get((measure, order))
     if removal is not None:
         limit = f" = {removal.limit}" if removal.limit else ""
-        seen = f", observed {removal.observed}" if removal.observed else ""
         was = sentence(measure, said)
         said = Said(
-            None, cell.reason, f"set missing by {removal.rule}{limit}{seen}; it was {was}",
+            None, cell.reason, f"set missing by {removal.rule}{limit}; it was {was}",
             said.fixations,
         )  # fmt: skip
     return _statement(measure, said, cell, problems, f" of {quoted(story.traced, order)}")
@@ -214,16 +213,15 @@ def _left_out(traced: TracedTrial) -> tuple[str, ...]:
     outside = tuple(f for f in traced.fixations if f.kept and not f.region_order)
     aside: list[str] = []
     if outside:
+        one = len(outside) == 1
         what = (
-            "part of no visit, as if not there"
+            "passed over when visits and saccades are found"
             if traced.outside == "ignore"
-            else "and ends the visit in progress"
+            else f"{'it ends' if one else 'each ends'} the visit in progress"
         )
-        lies = "lies" if len(outside) == 1 else "each lie"
-        what = what if len(outside) == 1 else what.replace("ends", "end")
         aside.append(
-            f"{fixations(outside)} {lies} outside every region, by outside = "
-            f'"{traced.outside}" {what}'
+            f"{fixations(outside)} {'lies' if one else 'lie'} outside every region: {what} "
+            f'(outside = "{traced.outside}")'
         )
     removed = tuple(f for f in traced.fixations if not f.kept)
     return (*_sentences(traced, removed), *aside)

@@ -42,11 +42,11 @@ def percent(share: float | None) -> str:
     >>> percent(0.0337), percent(None)
     ('3.4%', '–')
     """
-    return NOTHING if share is None else f"{100 * share:.1f}%"
+    return NOTHING if share is None else f"{number(100 * share, 1)}%"
 
 
 def number(value: float | None, digits: int, unit: str = "", *, signed: bool = False) -> str:
-    """A number with its unit.
+    r"""A number with its unit.
 
     Parameters
     ----------
@@ -61,7 +61,7 @@ def number(value: float | None, digits: int, unit: str = "", *, signed: bool = F
 
     Examples
     --------
-    >>> number(-2.25, 1, "px", signed=True) == "−2.2\\N{NO-BREAK SPACE}px"
+    >>> number(-2.25, 1, "px", signed=True) == "−2.2\N{NO-BREAK SPACE}px"
     True
     """
     if value is None:
@@ -106,7 +106,7 @@ def listed(parts: Sequence[str | Markup], most: int = 8) -> Markup:
     """
     shown = [escape(part) for part in parts[:most]]
     if len(parts) > most:
-        shown.append(Markup(f"{len(parts) - most:,} more"))
+        shown.append(Markup("{} more").format(count(len(parts) - most)))
     if len(shown) < 2:
         return Markup("").join(shown)
     return Markup("{} and {}").format(Markup(", ").join(shown[:-1]), shown[-1])

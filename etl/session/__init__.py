@@ -6,12 +6,22 @@ import os
 from pathlib import Path
 
 from etl.measures import SELECTABLE
+from etl.session.one_trial import Wanted, explained, trace, write_picture
 from etl.session.result import Result
 from etl.session.run import build, check
 from etl.study import Study
 from etl.study import load_study as _load_study
 
-__all__ = ["Result", "build", "check", "load_study"]
+__all__ = [
+    "Result",
+    "Wanted",
+    "build",
+    "check",
+    "explained",
+    "load_study",
+    "trace",
+    "write_picture",
+]
 
 
 def load_study(path: str | os.PathLike[str]) -> Study:

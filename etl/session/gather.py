@@ -17,10 +17,11 @@ from etl.export.rows import TrialColumns
 from etl.files import Coded, group_rows
 from etl.measures import MEASURES, REASONS, TRIAL_MEASURES, Measure, select
 from etl.parsers import LogReader
+from etl.report import LineGrid, NotRecorded
 from etl.screening.ledger import columns_of_accounts
 from etl.screening.rules import OUTLIER
-from etl.session.one_reader import Options
 from etl.session.plan import Plan
+from etl.session.reader import Options
 from etl.session.trial_facts import TrialFacts, trial_facts
 from etl.session.work import LogAnswer, LogTask, LogWork, ReaderTask, map_tasks
 from etl.study import Study
@@ -49,7 +50,7 @@ class Gathered:
         The readers, in the order of the tables.
     notes : list of Notes
         The experimenter's notes that were read.
-    unrecorded : list of str
+    unrecorded : list of NotRecorded
         Trials of the trial list that no log has.
     """
 
@@ -57,7 +58,7 @@ class Gathered:
     options: Options
     tasks: list[ReaderTask]
     notes: list[Notes]
-    unrecorded: list[str]
+    unrecorded: list[NotRecorded]
 
 
 def read_logs(
@@ -138,7 +139,13 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
     tasks = _tasks(design, trials, (text, good), facts, parts)
     study = plan.study
     options = Options(
-        study.trials.repeated, study.measures.outside, study.measures.no_opportunity, plan.limits
+        study.trials.repeated,
+        study.measures.outside,
+        study.measures.no_opportunity,
+        plan.limits,
+        None
+        if study.regions.layout is None
+        else LineGrid(study.regions.layout.top_px, study.regions.layout.line_height_px),
     )
     return Gathered(design, options, tasks, facts.inputs, unrecorded)
 
@@ -216,10 +223,10 @@ def _levels(
     return levels
 
 
-def _notice_what_is_missing(plan: Plan, seen: SeenTrials, findings: Findings) -> list[str]:
+def _notice_what_is_missing(plan: Plan, seen: SeenTrials, findings: Findings) -> list[NotRecorded]:
     """Warn of trials of the list, and readers of the table, that no log has; name the trials."""
     book = plan.facts
-    unrecorded: list[str] = []
+    unrecorded: list[NotRecorded] = []
     if book.trial_list is not None:
         for row in book.unrecorded(seen):
             findings.warning(
@@ -228,7 +235,8 @@ def _notice_what_is_missing(plan: Plan, seen: SeenTrials, findings: Findings) ->
                 line=int(book.trial_list.lines[row]),
                 found=book.trial_list.spelled(row),
             )
-            unrecorded.append(book.trial_list.spelled(row))
+            ids = {n: c.text(row) for n, c in book.trial_list.columns.items() if n in IDS}
+            unrecorded.append(NotRecorded(ids["participant"], ids["trial"], ids.get("session", "")))
     if book.participants is not None:
         readers = book.participants.columns["participant"]
         for row in np.flatnonzero(~readers.among(seen.ids["participant"].values)).tolist():

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, field
 
 import numpy as np
 import pyarrow as pa
@@ -18,10 +17,11 @@ from etl.export.rows import (
     RowMaker,
     TrialColumns,
 )
-from etl.measures import NoOpportunity, Outcomes, Outside, Sequences, compute
+from etl.measures import Outcomes, Sequences, compute
 from etl.parsers import CanonicalLog
 from etl.regions import Assigned, RegionLibrary
-from etl.screening import LEFT_OUT_BY, Limits, outlying
+from etl.report import ReaderProfile, TrialFates, profile_of
+from etl.screening import LEFT_OUT_BY, outlying
 from etl.screening.ledger import (
     Accounts,
     FarValue,
@@ -31,55 +31,13 @@ from etl.screening.ledger import (
     with_values,
 )
 from etl.screening.rules import OUTLIER
+from etl.session.gallery import candidates
 from etl.session.ordering import OrderedFixations, ReaderLog, TrialNames, order_fixations
+from etl.session.reader import Options, Reader, ReaderTables
 from etl.session.screening import Unscreened, screen
 from etl.tables import LEDGER, TableDesign
 
-
-@dataclass(frozen=True, slots=True)
-class Options:
-    """The decisions of the study that the work on a reader depends on."""
-
-    repeated: str
-    outside: Outside
-    no_opportunity: NoOpportunity
-    limits: Limits
-
-
-@dataclass(frozen=True, slots=True)
-class Reader:
-    """All that is known of one reader before the work begins.
-
-    Attributes
-    ----------
-    participant : str
-        The reader's id.
-    log : CanonicalLog
-        The fixations, in the order of the logs.
-    file : (n,) int32 array
-        Index of each fixation's log into the study's logs.
-    trials : TrialColumns
-        The trials that were recorded, in the order of the tables.
-    note : str
-        The experimenter's note on the reader, empty where there is none.
-    """
-
-    participant: str
-    log: CanonicalLog
-    file: NDArray[np.int32]
-    trials: TrialColumns
-    note: str = ""
-
-
-@dataclass(slots=True)
-class ReaderTables:
-    """The finished rows of one reader, and what was counted on the way."""
-
-    participant: str
-    batches: dict[str, pa.RecordBatch]
-    counts: dict[str, int]
-    accounts: dict[str, Accounts] = field(default_factory=dict)
-    findings: Findings = field(default_factory=Findings)
+_PX_DIGITS = 6
 
 
 class Bench:
@@ -212,7 +170,41 @@ class Bench:
             "trials skipped": accounts["trials"].by_rule["skip"],
             "trials kept": len(in_study),
         }
-        return ReaderTables(reader.participant, batches, counts, accounts, findings)
+        outside = np.zeros(len(order), dtype=bool)
+        outside[kept] = order[kept] == 0
+        return ReaderTables(
+            reader.participant,
+            batches,
+            counts,
+            accounts,
+            self._profile(reader, screened, batches),
+            candidates(
+                reader.participant,
+                screened,
+                outside,
+                np.bincount(ordered.trial[kept[outcomes.regressions.launch]], minlength=len(texts)),
+            ),
+            findings,
+        )
+
+    def _profile(
+        self, reader: Reader, screened: Screened, batches: Mapping[str, pa.RecordBatch]
+    ) -> ReaderProfile:
+        """The summary of the reader for the audit page."""
+        read = reader.trials.text >= 0
+        used = {rule: code for code, rule in enumerate(self.design.left_out_by)}
+        named = np.array([*(used.get(rule, -1) for rule in LEFT_OUT_BY), -1], dtype=np.int32)
+        return profile_of(
+            reader.participant,
+            batches,
+            TrialFates(
+                {name: levels[read] for name, levels in reader.trials.factors.items()},
+                named[screened.trial_codes()[read]],
+            ),
+            self.design,
+            outside=self.options.outside,
+            grid=self.options.grid,
+        )
 
     def _region_codes(self, text: NDArray[np.int64], order: NDArray[np.int32]) -> NDArray[np.int32]:
         """The region of each fixation among all regions; -1 outside."""
@@ -336,7 +328,8 @@ class Bench:
                 ordered.number[launch],
                 ordered.number[landing],
                 screened.fixations.onset_ms[landing],
-                x_px[landing] - x_px[launch],
+                # Positions have a tenth of a pixel at best; what is beyond is noise of subtracting.
+                np.round(x_px[landing] - x_px[launch], _PX_DIGITS),
             ),
         )
 

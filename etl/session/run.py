@@ -8,9 +8,9 @@ import os
 import tempfile
 import time
 from collections import Counter
-from collections.abc import Iterable, Iterator
+from collections.abc import Generator, Iterable, Iterator
 from concurrent.futures.process import BrokenProcessPool
-from contextlib import contextmanager
+from contextlib import closing, contextmanager, suppress
 from pathlib import Path
 from typing import Any
 
@@ -19,13 +19,17 @@ from etl.export.accounts import write_accounts
 from etl.export.publish import check_target, published
 from etl.export.run_record import RunRecord
 from etl.export.writers import TableWriters
+from etl.measures import REASON_MEANINGS
 from etl.parsers import LogReader
+from etl.report import AuditInput, write_audit
+from etl.session.gallery import drawn
 from etl.session.gather import Gathered, Progress, gather, notice_logs, read_logs
-from etl.session.one_reader import ReaderTables
 from etl.session.plan import Plan, make_plan
+from etl.session.reader import ReaderTables
 from etl.session.result import Result
 from etl.session.told import summary
 from etl.session.totals import Totals
+from etl.session.tracing import Tracer
 from etl.session.work import LogAnswer, make_reader_work, map_tasks
 from etl.study import Study
 from etl.tables import LEDGER, TABLES
@@ -35,19 +39,20 @@ from etl.trials.facts import shown_path
 _WORTH_WORKERS_BYTES = 20_000_000
 
 
-def _silent(stage: str, done: int, total: int) -> None:
+def silent(stage: str, done: int, total: int) -> None:
     """Show no progress."""
 
 
-def check(study: Study, *, workers: int | None = None, progress: Progress = _silent) -> Findings:
+def check(study: Study, *, workers: int | None = 1, progress: Progress = silent) -> Findings:
     """Read everything a study names, write nothing, and list all that was found.
 
     Parameters
     ----------
     study : Study
         From :func:`etl.load_study`.
-    workers : int, optional
-        Number of processes; found out from the size of the logs where absent.
+    workers : int or None
+        Number of processes; None finds one out from the size of the logs. With more than one, the
+        calling script must guard its work by ``if __name__ == "__main__":``.
     progress : callable, optional
         Called with a stage's name, how much of it is done, and how much there is.
 
@@ -57,14 +62,15 @@ def check(study: Study, *, workers: int | None = None, progress: Progress = _sil
         Errors, warnings and notes; ``findings.failed`` says whether a build would be refused.
     """
     findings = Findings()
-    with tempfile.TemporaryDirectory(prefix="trialwright-") as folder, _own_faults():
-        examined = _examine(study, Path(folder), workers, progress, findings)
+    with tempfile.TemporaryDirectory(prefix="trialwright-") as folder, own_faults():
+        examined = examine(study, Path(folder), workers, progress, findings)
         if examined is not None:
             plan, gathered, _, count = examined
             totals = Totals(plan.limits)
-            for tables in _finish(plan, gathered, count, progress, write=False):
-                findings.extend(tables.findings)
-                totals.add(tables)
+            with closing(_finish(plan, gathered, count, progress, write=False)) as readers:
+                for tables in readers:
+                    findings.extend(tables.findings)
+                    totals.add(tables)
             if not findings.failed:
                 totals.notice(study, findings)
             if not findings.failed:
@@ -76,8 +82,8 @@ def build(
     study: Study,
     *,
     into: str | os.PathLike[str] | None = None,
-    workers: int | None = None,
-    progress: Progress = _silent,
+    workers: int | None = 1,
+    progress: Progress = silent,
 ) -> Result:
     """Build all tables of a study.
 
@@ -88,9 +94,10 @@ def build(
     into : path, optional
         The output folder; the study's ``[output] folder`` where absent. An earlier build there is
         replaced as a whole, when everything else is done.
-    workers : int, optional
-        Number of processes; found out from the size of the logs where absent. The tables are the
-        same bytes with any number.
+    workers : int or None
+        Number of processes; None finds one out from the size of the logs. The tables are the same
+        bytes with any number. With more than one, the calling script must guard its work by
+        ``if __name__ == "__main__":``.
     progress : callable, optional
         Called with a stage's name, how much of it is done, and how much there is.
 
@@ -110,47 +117,51 @@ def build(
     shown = shown_path(study, study.output.folder) if into is None else str(into)
     check_target(target, shown)
     findings = Findings()
-    with published(target, shown) as shop, _own_faults():
-        examined = _examine(study, shop.kept, workers, progress, findings)
+    with published(target, shown) as shop, own_faults():
+        examined = examine(study, shop.kept, workers, progress, findings)
         if examined is None:
             raise DataError(findings)
         plan, gathered, answers, count = examined
         totals = Totals(plan.limits)
         with TableWriters(shop.fresh, gathered.design, _formats(study)) as writers:
             write = not findings.failed
-            for tables in _finish(plan, gathered, count, progress, write=write):
-                findings.extend(tables.findings)
-                totals.add(tables)
-                if not findings.failed:
-                    writers.add(tables.batches)
+            with closing(_finish(plan, gathered, count, progress, write=write)) as readers:
+                for tables in readers:
+                    findings.extend(tables.findings)
+                    totals.add(tables)
+                    if not findings.failed:
+                        writers.add(tables.batches)
             if not findings.failed:
                 totals.notice(study, findings)
             if findings.failed:
                 raise DataError(findings)
         rows = writers.rows
         write_accounts(totals.account_rows(), shop.fresh)
+        # Where the study lay when it was built is nobody's affair who gets the tables.
+        noticed = findings.with_path(study.shown, study.path.name).lines(("warning", "note"))
+        write_audit(shop.fresh, _audit(plan, gathered, totals, noticed))
         told = {**_log_counts(answers), **totals.counts}
         RunRecord(
             study.understood(),
             _inputs(plan, gathered, answers),
             told,
             rows,
-            findings.lines(("warning", "note")),
-            gathered.unrecorded,
+            noticed,
+            [one.spelled() for one in gathered.unrecorded],
             time.perf_counter() - started,
         ).write(shop.fresh)
     return Result(target, told, rows, findings)
 
 
 @contextmanager
-def _own_faults() -> Iterator[None]:
+def own_faults() -> Iterator[None]:
     """Turn the death of a worker process into an error that says so."""
     try:
         yield
     except BrokenProcessPool as dead:
         raise FaultError(
-            "a worker process ended before its work was done, most often for want of memory; "
-            "try again with fewer --workers"
+            "a worker process ended before its work was done: for want of memory (try fewer "
+            'workers), or because a script that builds has no if __name__ == "__main__":'
         ) from dead
 
 
@@ -171,7 +182,7 @@ def _collector_at_rest() -> Iterator[None]:
         gc.enable()
 
 
-def _examine(
+def examine(
     study: Study, kept: Path, workers: int | None, progress: Progress, findings: Findings
 ) -> tuple[Plan, Gathered, list[LogAnswer], int] | None:
     """Everything up to the work on readers; None where that makes no sense."""
@@ -193,14 +204,19 @@ def _examine(
 def _workers(asked: int | None, logs: Iterable[tuple[Path, str]]) -> int:
     """How many processes to use."""
     if asked is not None:
-        return max(1, asked)
-    size = sum(path.stat().st_size for path, _ in logs)
+        if asked < 1:
+            raise ValueError(f"workers must be 1 or more, or None, not {asked}")
+        return asked
+    size = 0
+    for path, _ in logs:
+        with suppress(OSError):  # a log that is gone is told of when it is read
+            size += path.stat().st_size
     return (os.cpu_count() or 1) if size >= _WORTH_WORKERS_BYTES else 1
 
 
 def _finish(
     plan: Plan, gathered: Gathered, workers: int, progress: Progress, *, write: bool
-) -> Iterable[ReaderTables]:
+) -> Generator[ReaderTables, None, None]:
     """Work on one reader after the other."""
     arguments = (
         (gathered.design, plan.library, gathered.options),
@@ -210,6 +226,27 @@ def _finish(
     for done, tables in enumerate(finished, start=1):
         yield tables
         progress("working on readers", done, len(gathered.tasks))
+
+
+def _audit(plan: Plan, gathered: Gathered, totals: Totals, noticed: list[str]) -> AuditInput:
+    """Everything that the audit page tells of."""
+    study = plan.study
+    arguments = (gathered.design, plan.library, gathered.options)
+    return AuditInput(
+        study.understood(),
+        gathered.design,
+        totals.profiles,
+        totals.audit_rows(),
+        REASON_MEANINGS,
+        noticed,
+        gathered.unrecorded,
+        drawn(
+            totals.choice.chosen(),
+            {task.participant: task for task in gathered.tasks},
+            make_reader_work(arguments, write=True),
+            Tracer(study, plan.library, gathered.design),
+        ),
+    )
 
 
 def _formats(study: Study) -> dict[str, tuple[str, ...]]:

@@ -25,7 +25,7 @@ from etl.screening.rules import CODE
 from etl.session.ordering import OrderedFixations
 
 if TYPE_CHECKING:
-    from etl.session.one_reader import Options
+    from etl.session.reader import Options
 
 Mask = NDArray[np.bool_]
 

@@ -6,11 +6,13 @@ from collections import Counter
 
 from etl.errors import Findings
 from etl.export.accounts import UNITS, account_rows, account_text
+from etl.report import AccountRow, Profiles
 from etl.screening import Limits
 from etl.screening.ledger import Accounts, columns_of_accounts
 from etl.screening.rules import BEFORE, key_of
-from etl.session.one_reader import ReaderTables
+from etl.session.gallery import Choice
 from etl.session.ordering import OVERLAP_TOLERATED_MS
+from etl.session.reader import ReaderTables
 from etl.study import Study
 
 #: More than this share of kept fixations outside every region is worth a warning: it is a sign of
@@ -34,16 +36,35 @@ class Totals:
         self._rules = columns_of_accounts(limits)
         self.counts: Counter[str] = Counter()
         self.accounts: dict[str, dict[str, Accounts]] = {}
+        self.profiles = Profiles()
+        self.choice = Choice()
 
     def add(self, tables: ReaderTables) -> None:
         """Take in one reader."""
         self.counts.update({"readers": 1, **tables.counts})
         if tables.accounts:
             self.accounts[tables.participant] = tables.accounts
+        if tables.profile is not None:
+            self.profiles.add(tables.profile)
+        self.choice.add(tables.candidates)
 
     def account_rows(self) -> list[list[str | int]]:
         """The accounts of the study, header first."""
         return account_rows(self.accounts, self._rules)
+
+    def audit_rows(self) -> list[AccountRow]:
+        """The accounts of the readers for the audit page."""
+        return [
+            AccountRow(
+                reader,
+                unit,
+                units[unit].read,
+                {rule: units[unit].by_rule[rule] for rule in self._rules},
+                units[unit].kept,
+            )
+            for reader, units in self.accounts.items()
+            for unit in UNITS
+        ]
 
     def notice(self, study: Study, findings: Findings) -> None:
         """Record what is wrong or doubtful about the study as a whole.

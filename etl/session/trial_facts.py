@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 
@@ -16,6 +17,12 @@ from etl.trials.facts import shown_path
 from etl.trials.notes import Notes, notes_on_readers, notes_on_trials, read_notes
 
 _TO_MS = {"ms": 1.0, "s": 1000.0, "us": 0.001}
+#: Digits kept after the conversion of a time to milliseconds, as in the logs.
+_MS_DIGITS = 6
+_NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
+#: Numbers whose commas may mark thousands; none is written with a leading zero.
+_GROUPED = re.compile(r"[+-]?[1-9][0-9]{0,2}(?:,[0-9]{3})+")
+_CORRECT = "correct the cell, or add the word to [logs] missing if it means no value"
 
 
 @dataclass(slots=True)
@@ -72,10 +79,11 @@ def trial_facts(
     if limits.on("outside_text_time"):
         unit = plan.study.logs.columns.onset
         factor = _TO_MS[str(unit.unit)] if unit is not None else 1.0
+        # Rounded as the onsets in the logs are, or 1.001 s would lie before 1.001 s.
         if settings.onset is not None:
-            facts.came_ms = place.numbers(settings.onset) * factor
+            facts.came_ms = np.round(place.numbers(settings.onset) * factor, _MS_DIGITS)
         if settings.offset is not None:
-            facts.went_ms = place.numbers(settings.offset) * factor
+            facts.went_ms = np.round(place.numbers(settings.offset) * factor, _MS_DIGITS)
         place.warn_of_unknown_times()
     if settings.answer_correct is not None and (
         limits.on("answer_wrong") or limits.on("correct_share_under")
@@ -138,9 +146,30 @@ class _Place:
     def numbers(self, name: str) -> NDArray[np.float64]:
         """A fact as numbers, NaN where missing or where the trial is no part of the study."""
         column = self.trials.known[name]
-        values = np.array([*(_number(text) for text in column.values), np.nan])[column.codes]
         judged = ~self.trials.skipped
-        self._tell(name, judged & np.isinf(values), "this is no number", "a time in log time")
+        # A log has a decimal sign of its own; a table has one.
+        from_log = self.plan.facts.sources.get(name) == "log"
+        file = self.trials.seen.file if from_log else np.zeros(len(self.trials), dtype=np.int32)
+        values = np.full(len(self.trials), np.nan)
+        unclear = np.zeros(len(self.trials), dtype=bool)
+        for number in np.unique(file).tolist():
+            own = (file == number) & (column.codes >= 0)
+            present = {column.values[code] for code in np.unique(column.codes[own & judged])}
+            sign = _decimal_sign(present) or self.plan.study.logs.decimal
+            read = np.array([*(_number(text, sign or ",") for text in column.values), np.nan])
+            values[own] = read[column.codes[own]]
+            grouped = [sign is None and "," in text for text in column.values]
+            unclear |= own & np.array([*grouped, False])[column.codes]
+        self._tell(
+            name,
+            judged & unclear,
+            "the comma could be a decimal sign or a thousands sign",
+            "numbers that can be read in one way only",
+            'state decimal = "," in [logs] if it is the decimal sign; otherwise write the numbers '
+            "without thousands signs",
+        )
+        wrong = judged & np.isinf(values)
+        self._tell(name, wrong, "this is no number", "a time in log time", _CORRECT)
         values[np.isinf(values)] = np.nan
         self.unknown[name] = int((judged & np.isnan(values)).sum())
         return values
@@ -156,6 +185,7 @@ class _Place:
             ~self.trials.skipped & np.isinf(values),
             "this does not say whether the answer was right",
             "1 or 0, true or false, yes or no, correct or wrong; nothing where nothing was asked",
+            _CORRECT,
         )
         values[np.isinf(values)] = np.nan
         return values
@@ -171,7 +201,9 @@ class _Place:
                     where=f'column "{name}"',
                 )
 
-    def _tell(self, name: str, rows: NDArray[np.bool_], problem: str, expected: str) -> None:
+    def _tell(
+        self, name: str, rows: NDArray[np.bool_], problem: str, expected: str, fix: str
+    ) -> None:
         """Record cells that cannot be read."""
         for row in np.flatnonzero(rows).tolist():
             path, line = self.plan.facts.origin(name, self.trials, row)
@@ -182,13 +214,19 @@ class _Place:
                 where=f'column "{name}"',
                 found=self.trials.known[name].text(row),
                 expected=expected,
-                fix="correct the cell, or add the word to [logs] missing if it means no value",
+                fix=fix,
             )
 
 
-def _number(text: str) -> float:
+def _decimal_sign(texts: set[str]) -> str | None:
+    """The decimal sign of some numbers; None where each comma could as well mark thousands."""
+    commas = [text for text in texts if "," in text]
+    if not commas or any("." in text for text in texts):
+        return "."
+    return None if all(_GROUPED.fullmatch(text) for text in commas) else ","
+
+
+def _number(text: str, sign: str) -> float:
     """A cell as a number; infinite where it is none."""
-    try:
-        return float(text.replace(",", ".")) if text.count(",") <= 1 else np.inf
-    except ValueError:
-        return float("inf")
+    pointed = text.replace(".", "?").replace(",", ".") if sign == "," else text
+    return float(pointed) if _NUMBER.fullmatch(pointed) else np.inf

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import multiprocessing
+import signal
 from collections import deque
 from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import Future, ProcessPoolExecutor
@@ -17,7 +18,8 @@ from etl.export.rows import TrialColumns
 from etl.parsers import LogReader
 from etl.parsers.canonical import LogNote
 from etl.session.kept_logs import keep_log, kept_log
-from etl.session.one_reader import Bench, Reader, ReaderTables
+from etl.session.one_reader import Bench
+from etl.session.reader import Reader, ReaderTables
 from etl.session.seen import seen_trials
 from etl.trials import SeenTrials
 
@@ -111,6 +113,8 @@ _work: Callable[[Any], Any] | None = None
 
 def _begin(make: Callable[..., Callable[[Any], Any]], arguments: tuple[Any, ...]) -> None:
     """Set up a worker process once."""
+    # An interruption from the keyboard reaches every process; the parent alone answers it.
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
     global _work  # noqa: PLW0603  (the one thing a worker process keeps between tasks)
     _work = make(*arguments)
 

@@ -171,8 +171,9 @@ class TrialRules(Rules):
 
     notes: FileName | None = Field(
         default=None,
-        description="A table of trials to leave out (CSV or TSV: participant, trial, reason), "
-        "relative to the study file. Off when absent or false.",
+        description="A table of trials to leave out (CSV or TSV: participant, session where the "
+        "logs have it, trial, reason), relative to the study file; rows without a trial are about "
+        "readers. Off when absent or false.",
         examples=["notes.csv"],
     )
     fewest_fixations: WholeNumber | None = Field(
@@ -193,8 +194,8 @@ class TrialRules(Rules):
     )
     duration_ms: Range | None = Field(
         default=None,
-        description="Leave out a trial that lasted less or more than this, in milliseconds: the "
-        "shortest and the longest from the first kept fixation to the end of the last; needs "
+        description="Leave out a trial that lasted less than the first or more than the second, "
+        "in milliseconds from the onset of its first kept fixation to the end of its last; needs "
         "logs.columns.onset. Off when absent or false.",
         examples=[[500, 30000]],
     )
@@ -225,8 +226,9 @@ class ParticipantRules(Rules):
 
     notes: FileName | None = Field(
         default=None,
-        description="A table of readers to leave out (CSV or TSV: participant, reason; rows with "
-        "a trial are about trials), relative to the study file. Off when absent or false.",
+        description="A table of readers to leave out (CSV or TSV: participant, trial, reason), "
+        "relative to the study file; rows with a trial are about trials, so that one file may "
+        "serve both. Off when absent or false.",
         examples=["notes.csv"],
     )
     correct_share_under: Number | None = Field(
@@ -264,7 +266,8 @@ class ValueRules(Rules):
         default=None,
         gt=0,
         description="Set a duration missing that is farther than so many standard deviations "
-        "from the mean of its reader and region. Off when absent or false.",
+        "from the mean of its reader, region and outcome, where there are three values or more. "
+        "Off when absent or false.",
         examples=[3],
     )
 

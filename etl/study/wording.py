@@ -201,9 +201,7 @@ def _unknown(path: KeyPath, data: Mapping[str, Any]) -> Problem:
     near = meant(path, data)
     if near is not None:
         return Problem(path, "unknown key", fix=f"did you mean {quoted(str(near[-1]))}?")
-    tables = [
-        key[:-1] for key, _ in known_keys() if key[-1] == path[-1] and key[:-1] != path[:-1]
-    ]
+    tables = [key[:-1] for key, _ in known_keys() if key[-1] == path[-1] and key[:-1] != path[:-1]]
     homes = [_table_name(home) for home in sorted(tables, key=len)]
     table = table_at(path[:-1])
     here = [] if table is None else list(table.model_fields)

@@ -56,7 +56,10 @@ line_height_px = 50
 """
 HEADER = "reader\ttrial\tsentence\tstart_ms\tdur_ms\tx\ty"
 #: An earlier build, by which the output folder is known as one of ours.
-EARLIER = {"run.json": '{"program": "trialwright"}\n', "outcomes.csv": "an earlier build\n"}
+EARLIER = {
+    "run.json": '{"program": "trialwright", "files": ["outcomes.csv"]}\n',
+    "outcomes.csv": "an earlier build\n",
+}
 
 
 def row(reader: str, trial: int, item: str, start_ms: int) -> str:

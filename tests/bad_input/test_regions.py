@@ -1,5 +1,6 @@
 """Region definitions that are wrong, or that do not fit the trials."""
 
+import shutil
 from pathlib import Path
 
 from tests.bad_input.small_study import SmallStudy
@@ -15,6 +16,7 @@ def test_texts_and_polygons_build(study: SmallStudy) -> None:
     """The definitions that the other tests spoil are sound."""
     study.define_texts(TEXTS)
     assert study.run("build", "study.toml").exit_code == 0
+    shutil.rmtree("out")
     again = SmallStudy.sound(study.folder)
     again.define_polygon("POLYGON ((0 0, 100 0, 100 50, 0 50, 0 0))")
     assert again.run("build", "study.toml").exit_code == 0

@@ -9,11 +9,8 @@ import pytest
 
 import etl
 from etl.export.writers import TableWriters
-from tests.end_to_end.building import TABLES, build, files_of, write
+from tests.end_to_end.building import PUBLISHED, PUBLISHED_WITH_CSV, build, files_of, write
 from tests.end_to_end.odd_study import STUDY, odd_study
-
-PUBLISHED = {*(f"{table}.parquet" for table in TABLES), "run.json"}
-IN_CSV = {f"{table}.csv" for table in TABLES}
 
 
 @pytest.fixture
@@ -125,11 +122,19 @@ def test_folder_that_cannot_be_moved_leaves_the_earlier_build_as_it_was(
 
 
 def test_build_replaces_an_earlier_one_as_a_whole(study_file: Path, built: Path) -> None:
-    """Nothing of the earlier build remains, not even a file that was added to it."""
-    (built / "remarks.txt").write_text("mine", encoding="utf-8")
+    """Nothing of the earlier build remains, such as tables in a format no longer asked for."""
     spoil(study_file, "study.toml", 'formats = ["parquet", "csv"]', 'formats = ["parquet"]')
     build(study_file)
     assert set(files_of(built)) == PUBLISHED
+
+
+def test_file_added_to_an_earlier_build_is_not_lost(study_file: Path, built: Path) -> None:
+    """A build replaces a folder as a whole, so one that holds somebody's file is refused."""
+    (built / "remarks.txt").write_text("mine", encoding="utf-8")
+    before = files_of(study_file.parent)
+    with pytest.raises(etl.DataError, match=r'files that no build wrote.*found "remarks\.txt"'):
+        build(study_file)
+    assert files_of(study_file.parent) == before
 
 
 def test_build_leaves_nothing_but_its_folder(study_file: Path) -> None:
@@ -143,13 +148,13 @@ def test_empty_folder_is_a_place_to_build_into(study_file: Path, tmp_path: Path)
     """An empty folder is filled."""
     (tmp_path / "empty").mkdir()
     build(study_file, tmp_path / "empty")
-    assert set(files_of(tmp_path / "empty")) == PUBLISHED | IN_CSV
+    assert set(files_of(tmp_path / "empty")) == PUBLISHED_WITH_CSV
 
 
 def test_folders_above_the_output_are_made(study_file: Path, tmp_path: Path) -> None:
     """A folder in folders that are not there yet."""
     build(study_file, tmp_path / "a" / "b" / "c")
-    assert set(files_of(tmp_path / "a" / "b" / "c")) == PUBLISHED | IN_CSV
+    assert set(files_of(tmp_path / "a" / "b" / "c")) == PUBLISHED_WITH_CSV
 
 
 def foreign_file(folder: Path) -> None:
@@ -200,8 +205,8 @@ def test_study_folder_itself_is_no_place_to_build_into(study_file: Path) -> None
     ("formats", "expected"),
     [
         ('["parquet"]', PUBLISHED),
-        ('["csv", "parquet"]', PUBLISHED | IN_CSV),
-        ('["csv"]', PUBLISHED | IN_CSV),
+        ('["csv", "parquet"]', PUBLISHED_WITH_CSV),
+        ('["csv"]', PUBLISHED_WITH_CSV),
     ],
 )
 def test_parquet_is_always_written_and_csv_if_asked(

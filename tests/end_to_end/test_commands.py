@@ -14,11 +14,11 @@ import pytest
 import etl.cli
 from etl.export.writers import TableWriters
 from etl.measures import MEASURES, TRIAL_MEASURES
-from tests.end_to_end.building import PROJECT, TABLES, files_of, write
+from tests.end_to_end.building import BESIDES, PROJECT, TABLES, files_of, write
 from tests.end_to_end.odd_study import STUDY, odd_study
 from tests.end_to_end.running import ESCAPE, Ran, environment, on_terminal, run
 
-COMMANDS = ("build", "check", "completion", "measures")
+COMMANDS = ("build", "check", "completion", "measures", "trace")
 ORCHARD = PROJECT / "sample_logs" / "orchard" / "study.toml"
 PTY = pytest.mark.skipif(sys.platform == "win32", reason="pseudo-terminals are of POSIX systems")
 
@@ -120,7 +120,8 @@ def test_build_says_what_it_did(said: Said, study_file: Path) -> None:
         "  trials                   5 rows\n"
         "  regressions              3 rows\n"
         "  fixations               19 rows\n"
-        "  run.json\n"
+        "  exclusions               4 rows\n"
+        "  accounts.csv  run.json\n"
     )
 
 
@@ -288,7 +289,7 @@ def test_bash_accepts_the_completion(said: Said) -> None:
 @pytest.mark.parametrize(
     ("words", "expected"),
     [
-        ("trialwright ", {"build", "check", "completion", "measures"}),
+        ("trialwright ", set(COMMANDS)),
         ("trialwright build --wo", {"--workers"}),
         ("trialwright measures go_p", {"go_past_time"}),
     ],
@@ -314,7 +315,9 @@ def test_program_as_a_process_keeps_results_and_the_rest_apart(
     """In a pipe: the summary on stdout, nothing on stderr, no codes for colours."""
     ran = run("build", study_file, "--into", tmp_path / "out")
     assert (ran.status, ran.err) == (0, "")
-    assert [line.split()[0] for line in ran.out.splitlines()[2:]] == [*TABLES, "run.json"]
+    named = [line.split()[0] for line in ran.out.splitlines()[2:-1]]
+    assert named == [*TABLES, "exclusions"]
+    assert {*ran.out.splitlines()[-1].split(), "exclusions.csv"} == set(BESIDES)
     assert ESCAPE not in ran.out
 
 
@@ -353,7 +356,7 @@ def test_progress_is_shown_on_a_terminal_and_only_there(tmp_path: Path) -> None:
     assert "24/24" in ran.err
     assert "reading logs" not in ran.out
     assert ESCAPE not in ran.out
-    assert "  run.json" in ran.out.splitlines()
+    assert "run.json" in ran.out.splitlines()[-1].split()
 
 
 @PTY

@@ -116,12 +116,16 @@ def test_reader_gets_the_same_values(
     assert len(first["participant"]) > 0
 
 
-def test_numbers_have_their_exact_value_in_text(orchard: Sample) -> None:
-    """A difference of two places, which needs all digits, comes back from CSV bit for bit."""
-    folder = orchard.result.folder
-    amplitudes = arrow_parquet(folder, "regressions")["amplitude_px"]
-    assert any(round(value, 6) != value for value in amplitudes)
-    assert duckdb_text(folder, "regressions")["amplitude_px"] == amplitudes
+def test_numbers_have_their_exact_value_in_text(tmp_path: Path) -> None:
+    """A sum of long decimals, which needs all digits, comes back from CSV bit for bit."""
+    study_file = odd_study(tmp_path)
+    log = tmp_path / "log.csv"
+    text = log.read_text(encoding="utf-8").replace('.125"', '.123456789012"')
+    log.write_text(text, encoding="utf-8", newline="\n")
+    folder = build(study_file).folder
+    times_ms = arrow_parquet(folder, "trials")["reading_time"]
+    assert any(round(value, 6) != value for value in times_ms)
+    assert duckdb_text(folder, "trials")["reading_time"] == times_ms
 
 
 def test_categories_come_in_their_order(orchard: Sample) -> None:

@@ -6,6 +6,7 @@ import glob
 import shutil
 from pathlib import Path
 
+import pandas as pd
 import pytest
 
 from tests.end_to_end.building import (
@@ -75,11 +76,17 @@ def test_order_in_which_the_file_system_lists_logs_changes_no_byte(
 
 
 def test_order_of_trials_in_a_log_changes_only_their_lines(tmp_path: Path) -> None:
-    """Trials in another order give the same tables; ``fixations`` says the new lines."""
+    """Trials in another order give the same tables; ``fixations`` and the ledger say new lines."""
     one = build(odd_study(tmp_path / "one"))
     other = build(odd_study(tmp_path / "other", later_trials_first=True))
-    assert different(one.folder, other.folder) == ["fixations.csv", "fixations.parquet"]
+    lines = ["exclusions.csv", "fixations.csv", "fixations.parquet"]
+    assert different(one.folder, other.folder) == lines
     plain, moved = (r.fixations.drop(columns="source_line") for r in (one, other))
+    assert plain.equals(moved)
+    plain, moved = (
+        pd.read_csv(r.folder / "exclusions.csv", encoding="utf-8").drop(columns="source_line")
+        for r in (one, other)
+    )
     assert plain.equals(moved)
 
 

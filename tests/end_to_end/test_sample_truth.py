@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import csv
 import gzip
 import json
 from pathlib import Path
@@ -211,7 +212,10 @@ def test_counts_of_the_run_record_balance(sample: Sample) -> None:
     assert counts["trials read"] == counts["trials kept"] + counts["trials skipped"]
     assert counts["trials read"] == len({(r["participant"], r["trial"]) for r in fixations})
     assert counts["trials kept"] == len(sample.tables["trials"])
-    assert record["rows"] == {name: len(rows) for name, rows in sample.tables.items()}
+    with (sample.result.folder / "exclusions.csv").open(encoding="utf-8", newline="") as file:
+        ledger = len(list(csv.DictReader(file)))
+    tables = {name: len(rows) for name, rows in sample.tables.items()}
+    assert record["rows"] == {**tables, "exclusions": ledger}
 
 
 def test_trial_that_no_log_has_is_warned_of(orchard: Sample) -> None:
@@ -225,6 +229,7 @@ def test_trial_that_no_log_has_is_warned_of(orchard: Sample) -> None:
     ]
     record = json.loads((orchard.result.folder / "run.json").read_text(encoding="utf-8"))
     assert warned[0].text() in record["warnings"]
+    assert record["not_recorded"] == [f"participant {key[0]}, trial {key[1]}"]
 
 
 def test_study_without_oddities_gives_no_warning(passages: Sample) -> None:

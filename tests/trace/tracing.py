@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import csv
 import math
+import re
 from collections.abc import Sequence
 from dataclasses import replace
 from pathlib import Path
@@ -19,9 +21,9 @@ from etl.report.trace_input import (
     Piece,
     Regression,
     Removal,
-    TextLine,
     TracedFixation,
     TracedTrial,
+    Word,
 )
 from etl.session.plan import Plan, make_plan
 from tests.end_to_end.building import rows_of
@@ -112,9 +114,11 @@ def by_hand(
             )
         )
         onset_ms += duration_ms + 30
-    lines, pieces = (), ()
+    words, pieces = (), ()
     if geometry:
-        lines = (TextLine(1, "x" * 10 * regions, 100, 300, 100 + 100.0 * regions, 360),)
+        words = tuple(
+            Word(1, "x" * 9, 100.0 * k, 300, 100.0 * k + 90, 360) for k in range(1, regions + 1)
+        )
         pieces = tuple(
             Piece(k, 1, 100.0 * k, 300, 100.0 * k + 100, 360) for k in range(1, regions + 1)
         )
@@ -126,12 +130,12 @@ def by_hand(
             "item": "i01",
             "factors": {"cue": "early"},
             "region_names": names,
-            "region_texts": ("x" * 10,) * regions,
+            "region_texts": ("x" * 9,) * regions,
             "fixations": tuple(fixations),
             "regressions": (),
             "outcomes": {},
             "trial_outcomes": {},
-            "lines": lines,
+            "words": words,
             "pieces": pieces,
             **more,
         }
@@ -170,15 +174,14 @@ def geometry_of(plan: Plan, text: int) -> dict[str, Any]:
     layout = plan.study.regions.layout
     if layout is not None:
         found["right_to_left"] = layout.direction == "rtl"
-        lines = []
+        words = []
         for number, line in enumerate(shown.whole.split("\n"), start=1):
-            if line.strip():
-                first, last = edge_px(layout, 0), edge_px(layout, columns(line)[-1])
-                top, bottom = line_extent_px(layout, number)
-                lines.append(
-                    TextLine(number, line, min(first, last), top, max(first, last), bottom)
-                )
-        found["lines"] = tuple(lines)
+            at = columns(line)
+            top, bottom = line_extent_px(layout, number)
+            for match in re.finditer(r"\S+", line):
+                ends = [edge_px(layout, at[place]) for place in match.span()]
+                words.append(Word(number, match.group(), min(ends), top, max(ends), bottom))
+        found["words"] = tuple(words)
     return found
 
 
@@ -196,6 +199,7 @@ class BuiltStudy:
             rows = self._by_trial.setdefault(table, {})
             for row in rows_of(folder, table):
                 rows.setdefault((str(row["participant"]), str(row["trial"])), []).append(row)
+        self._ledger = ledger_of(folder / "exclusions.csv")
 
     @property
     def trials(self) -> list[tuple[str, str]]:
@@ -222,7 +226,10 @@ class BuiltStudy:
             trial,
             own["item"],
             {name: own[name] for name in self.study.trials.factors},
-            fixations=tuple(map(traced_fixation, self._by_trial["fixations"][key])),
+            fixations=tuple(
+                traced_fixation(row, self._ledger.get((*key, str(row["fixation"]), "")))
+                for row in self._by_trial["fixations"][key]
+            ),
             regressions=tuple(
                 Regression(
                     row["launch_fixation"], row["landing_fixation"], bool(row["ends_first_pass"])
@@ -236,12 +243,42 @@ class BuiltStudy:
             },
             outside=self.study.measures.outside,
             no_opportunity=self.study.measures.no_opportunity,
+            values_set_missing={
+                (name, order): removal_of(row)
+                for order, region in enumerate(geometry["region_names"], start=1)
+                for name in outcomes
+                if (row := self._ledger.get((*key, region, name)))
+            },
             **geometry,
         )
 
 
-def traced_fixation(row: dict[str, Any]) -> TracedFixation:
-    """A row of the table of fixations."""
+def ledger_of(path: Path) -> dict[tuple[str, str, str, str], dict[str, str]]:
+    """The ledger's rows by participant, trial, and fixation, or region and measure."""
+    with path.open(encoding="utf-8", newline="") as file:
+        rows = list(csv.DictReader(file))
+    # Of a value, what was found is its measure and the value: "total_time 2310".
+    return {
+        (
+            row["participant"],
+            row["trial"],
+            row["fixation"] or row["region"],
+            row["observed"].split()[0] if row["level"] == "value" else "",
+        ): row
+        for row in rows
+        if row["level"] in {"fixation", "value"}
+    }
+
+
+def removal_of(row: dict[str, str]) -> Removal:
+    """Why something was left out, from a row of the ledger."""
+    observed = "" if row["level"] == "value" else row["observed"]
+    return Removal(row["rule"], row["limit"], observed, row["also"])
+
+
+def traced_fixation(row: dict[str, Any], entry: dict[str, str] | None) -> TracedFixation:
+    """A row of the table of fixations, with its row of the ledger where it has one."""
+    merged = re.fullmatch(r"merged into (\d+)", entry["action"]) if entry else None
 
     def number(name: str) -> float:
         return math.nan if row[name] is None else float(row[name])
@@ -258,5 +295,6 @@ def traced_fixation(row: dict[str, Any]) -> TracedFixation:
         bool(row["first_pass"]),
         row["source_file"],
         row["source_line"],
-        None if row["kept"] else Removal(row["left_out_by"]),
+        None if row["kept"] else (removal_of(entry) if entry else Removal(row["left_out_by"])),
+        int(merged[1]) if merged else 0,
     )

@@ -302,7 +302,7 @@ def _from_nearest_line(kept: _Kept, grid: LineGrid) -> Floats:
     from_top = (kept.y_px - grid.top_px) / grid.height_px
     known = np.isfinite(from_top)
     line = np.clip(np.floor(np.where(known, from_top, 0)), 0, last[kept.trial] - 1)
-    return np.where(known, (from_top - line - 0.5) * grid.height_px, np.nan)
+    return kept.y_px - (grid.top_px + (line + 0.5) * grid.height_px)
 
 
 def _from_own_line(kept: _Kept) -> Floats:

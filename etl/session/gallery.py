@@ -1,0 +1,181 @@
+"""Which trials are most worth looking at, and why."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable, Mapping, Sequence
+from typing import TYPE_CHECKING, Final, NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+from etl.report import GalleryEntry
+from etl.report.trace_picture import draw
+from etl.screening.ledger import Screened
+from etl.screening.rules import LEFT_OUT_BY, TRIAL_RULES
+
+if TYPE_CHECKING:
+    from etl.session.reader import ReaderTables
+    from etl.session.tracing import Tracer
+    from etl.session.work import ReaderTask
+
+#: How many trials are shown for each reason that is a matter of degree.
+_BEST = 2
+_DEGREES: Final = {
+    "left out": "of all trials kept, {score:.0%} of its fixations were left out, the largest share",
+    "outside": "of all trials kept, {score:.0%} of its fixations lie outside every region, the "
+    "largest share",
+    "regressions": "{score:.0f} regressive saccades, more than in any other trial",
+    "fixations": "{score:.0f} kept fixations, more than in any other trial",
+}
+
+
+class Candidate(NamedTuple):
+    """A trial worth looking at.
+
+    Attributes
+    ----------
+    reason : str
+        A rule for trials, or one of the reasons that are a matter of degree.
+    score : float
+        How much of it; of a rule always 1.
+    participant : str
+        The reader.
+    trial : int
+        Index of the trial among the reader's trials.
+    """
+
+    reason: str
+    score: float
+    participant: str
+    trial: int
+
+    def why(self, place: int) -> str:
+        """Why it was chosen, in words; ``place`` counts those with the same reason, from 0."""
+        if self.reason in TRIAL_RULES:
+            return f"the first trial that the rule {self.reason} left out"
+        words = _DEGREES[self.reason].format(score=self.score)
+        return (
+            words
+            if place == 0
+            else words.replace("the largest", "the next").replace(
+                "than in any other trial", "than in any but one"
+            )
+        )
+
+
+def candidates(
+    participant: str,
+    screened: Screened,
+    outside: NDArray[np.bool_],
+    regressions: NDArray[np.int64],
+) -> list[Candidate]:
+    """The trials of one reader that may be worth looking at: the utmost of each kind.
+
+    Parameters
+    ----------
+    participant : str
+        The reader.
+    screened : Screened
+        What was left out.
+    outside : (n,) bool array
+        Which kept fixations lie outside every region.
+    regressions : (trials,) int64 array
+        Regressive saccades of each trial; 0 where it is left out.
+
+    Returns
+    -------
+    list of Candidate
+    """
+    codes = screened.trial_codes()
+    found = [
+        Candidate(LEFT_OUT_BY[code], 1.0, participant, int(np.flatnonzero(codes == code)[0]))
+        for code in np.unique(codes).tolist()
+        if code >= 0 and LEFT_OUT_BY[code] in TRIAL_RULES
+    ]
+    kept_trials = codes < 0
+    if not kept_trials.any():
+        return found
+    trial, width = screened.recorded.trial, len(codes)
+    gone = screened.fixations.left_out
+    read = np.maximum(np.bincount(trial, minlength=width), 1)
+    kept = np.bincount(trial[gone < 0], minlength=width)
+    scores = {
+        "left out": np.bincount(trial[gone >= 0], minlength=width) / read,
+        "outside": np.bincount(trial[outside], minlength=width) / np.maximum(kept, 1),
+        "regressions": regressions.astype(np.float64),
+        "fixations": kept.astype(np.float64),
+    }
+    for reason, score in scores.items():
+        own = np.where(kept_trials, score, -1.0)
+        best = int(own.argmax())
+        if own[best] > 0:
+            found.append(Candidate(reason, float(own[best]), participant, best))
+    return found
+
+
+class Choice:
+    """Chooses among the candidates of all readers, in the order of the readers."""
+
+    def __init__(self) -> None:
+        self._best: dict[str, list[Candidate]] = {}
+
+    def add(self, offered: Iterable[Candidate]) -> None:
+        """Take in the candidates of one reader."""
+        for one in offered:
+            best = self._best.setdefault(one.reason, [])
+            best.append(one)
+            best.sort(key=lambda candidate: -candidate.score)  # stable: earlier readers first
+            del best[1 if one.reason in TRIAL_RULES else _BEST :]
+
+    def chosen(self) -> Sequence[tuple[Candidate, str]]:
+        """The trials to be shown, each once, with every reason why."""
+        order = (*_DEGREES, *TRIAL_RULES)
+        reasons: dict[tuple[str, int], list[str]] = {}
+        first: dict[tuple[str, int], Candidate] = {}
+        for reason in order:
+            for place, one in enumerate(self._best.get(reason, ())):
+                key = (one.participant, one.trial)
+                first.setdefault(key, one)
+                reasons.setdefault(key, []).append(one.why(place))
+        return [(first[key], "; ".join(why)) for key, why in reasons.items()]
+
+
+def drawn(
+    chosen: Sequence[tuple[Candidate, str]],
+    tasks: Mapping[str, ReaderTask],
+    work: Callable[[ReaderTask], ReaderTables],
+    tracer: Tracer,
+) -> list[GalleryEntry]:
+    """Draw the chosen trials.
+
+    Parameters
+    ----------
+    chosen : sequence of (Candidate, str)
+        From :meth:`Choice.chosen`.
+    tasks : mapping of str to ReaderTask
+        The work on each reader.
+    work : callable
+        Does that work again for the few readers concerned; their rows were not kept.
+    tracer : Tracer
+        Makes traced trials of the study.
+
+    Returns
+    -------
+    list of GalleryEntry
+        In the order of ``chosen``.
+    """
+    done: dict[str, ReaderTables] = {}
+    entries = []
+    for one, why in chosen:
+        task = tasks[one.participant]
+        if one.participant not in done:
+            done[one.participant] = work(task)
+        key = tracer.key(task.trials, one.trial)
+        traced = tracer.traced(
+            done[one.participant].batches,
+            one.participant,
+            key,
+            int(task.trials.text[one.trial]),
+        )
+        entries.append(GalleryEntry(traced.heading, why, draw(traced), traced.heading))
+    return entries

@@ -1,0 +1,31 @@
+"""Random studies built as a whole."""
+
+from __future__ import annotations
+
+import shutil
+from collections.abc import Sequence
+from pathlib import Path
+
+import etl
+from tests.screening.building import Built, Trial, build, study
+from tests.screening.strategies import Lab, Rules, usable
+
+
+def built_study(
+    folder: Path, lab: Lab, rules: Rules, *, trials: Sequence[Trial] | None = None
+) -> Built | None:
+    """Build a random study; None where nothing is left of it, which is an error of its own."""
+    shutil.rmtree(folder, ignore_errors=True)
+    file = study(
+        folder,
+        trials or lab.trials,
+        str(usable(lab, rules)),
+        notes=lab.notes,
+        repeated="first",
+    )
+    try:
+        return build(file)
+    except etl.DataError as nothing:
+        said = str(nothing)
+        assert "leaves no trial of any reader" in said or "no trial is left" in said, said
+        return None
