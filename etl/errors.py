@@ -112,11 +112,11 @@ class Findings:
     items: list[Finding] = field(default_factory=list)
     more: Counter[Kind] = field(default_factory=Counter)
 
-    def add(self, finding: Finding, times: int = 1) -> None:
-        """Record a finding; ``times`` counts further ones of its kind that are not spelled out."""
+    def add(self, finding: Finding) -> None:
+        """Record a finding; of a kind that has been spelled out often enough it is only counted."""
         kind = finding.kind
-        self.more[kind] += times
-        if self.more[kind] - times < SPELLED_OUT:
+        self.more[kind] += 1
+        if self.more[kind] <= SPELLED_OUT:
             self.items.append(finding)
 
     def error(self, problem: str, **place: Unpack[Place]) -> None:

@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+from click.testing import CliRunner
 
 from etl.cli import main
 from etl.measures import GROUPS, MEASURES, REASON_MEANINGS, TRIAL_MEASURES, Measure
@@ -78,6 +79,32 @@ KEYS_OF = {
     ),
     "lines": ("method",),
     "measures": ("outcomes", "outside", "no_opportunity"),
+    "screening.fixations": (
+        "outside_text_time",
+        "off_screen",
+        "first",
+        "last",
+        "blink",
+        "merge",
+        "under_ms",
+        "over_ms",
+    ),
+    "screening.trials": (
+        "notes",
+        "fewest_fixations",
+        "outside_share_over",
+        "duration_ms",
+        "blink_in_first_pass_of",
+        "no_first_pass_on",
+        "answer_wrong",
+    ),
+    "screening.participants": (
+        "notes",
+        "correct_share_under",
+        "lost_trials_share_over",
+        "fewest_trials_per_cell",
+    ),
+    "screening.values": ("outlier_sd",),
     "output": ("folder", "formats"),
 }
 KEYS = [f"{table}.{key}".lstrip(".") for table, keys in KEYS_OF.items() for key in keys]
@@ -245,3 +272,29 @@ def test_made_parts_of_the_readme_are_current() -> None:
     """The tables of columns and of keys are what the code declares."""
     text = README.read_text(encoding="utf-8")
     assert text == with_parts(text), "run python -m tests.documents"
+
+
+def printed_after(command: str) -> str:
+    """What the README says a command prints."""
+    text = README.read_text(encoding="utf-8")
+    start = text.index(f"$ {command}\n") + len(command) + 3
+    return text[start : text.index("```", start)]
+
+
+def test_readme_shows_what_check_prints(monkeypatch: pytest.MonkeyPatch) -> None:
+    """The walk through the sample study shows what its reader will see."""
+    monkeypatch.chdir(PROJECT)
+    command = ["check", "sample_logs/orchard/study.toml"]
+    done = CliRunner().invoke(main, command)
+    assert done.output == printed_after(f"trialwright {' '.join(command)}")
+
+
+def test_readme_shows_what_build_prints(tmp_path: Path) -> None:
+    """The summary of the sample study is the one in the walk."""
+    study = PROJECT / "sample_logs" / "orchard" / "study.toml"
+    done = CliRunner().invoke(main, ["build", str(study), "--into", str(tmp_path / "out")])
+    shown = printed_after("trialwright build sample_logs/orchard/study.toml").splitlines()
+    printed = done.output.splitlines()[-len(shown) + 1 :]
+    assert [line for line in printed if not line.startswith("Written")] == [
+        line for line in shown[1:] if not line.startswith("Written")
+    ]

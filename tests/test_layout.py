@@ -32,10 +32,13 @@ MAY_USE = {
     "parsers": {"errors", "tables", "files"},
     "trials": {"errors", "tables", "files"},
     "regions": {"errors", "tables", "files"},
-    "export": {"errors", "tables"},
+    "screening": {"errors"},
+    # The ledger and the accounts are handed over as plain rows.
+    "export": {"errors", "tables", "screening"},
+    "report": {"errors", "tables"},
     "session": {
         *("errors", "tables", "files", "study", "parsers", "trials", "regions", "measures"),
-        "export",
+        *("screening", "export", "report"),
     },
     "cli": {"etl", "session"},
     "etl": {"errors", "session", "study"},
@@ -44,8 +47,14 @@ MAY_USE = {
 MAY_NAME_THE_STUDY = {"parsers", "trials", "regions"}
 #: Where a library may be used. Those not listed may be used nowhere.
 USED_IN = {
-    "numpy": {"files", "parsers", "trials", "regions", "measures", "export", "session"},
-    "pyarrow": {"files", "parsers", "export", "session", "tables"},
+    "numpy": {
+        *("files", "parsers", "trials", "regions", "measures", "screening", "export", "report"),
+        "session",
+    },
+    "pyarrow": {"files", "parsers", "export", "report", "session", "tables"},
+    "scipy": {"report"},
+    "jinja2": {"report"},
+    "markupsafe": {"report"},
     "pandas": {"session"},
     "shapely": {"regions"},
     "pydantic": {"study"},

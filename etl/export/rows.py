@@ -154,6 +154,7 @@ class RowMaker:
         self._kinds = pa.array(kinds, pa.string())
         none = pa.array([], CODED)
         self._tiles = (none, none)
+        self._empty_ledger = pa.RecordBatch.from_pylist([], schema=self.schemas[LEDGER])
 
     def ids(self, trials: TrialColumns) -> dict[str, pa.Array]:
         """The columns that identify trials, one row a trial."""
@@ -335,6 +336,8 @@ class RowMaker:
         source : tuple of two (n,) int32 arrays
             Log and line of each fixation of the reader.
         """
+        if not entries:
+            return self._empty_ledger
         trial = np.array([entry.trial for entry in entries], dtype=np.int64)
         row = np.array([entry.row for entry in entries], dtype=np.int64)
         columns = [
@@ -383,7 +386,8 @@ def _coded(codes: NDArray[np.int32], values: pa.Array) -> pa.Array:
     """Codes with their texts; a negative code is missing."""
     absent = codes < 0
     indices = pa.array(codes, mask=absent) if absent.any() else pa.array(codes)
-    return pa.DictionaryArray.from_arrays(indices, values)
+    # The codes are ours: checking each of them again would cost as much as making the column.
+    return pa.DictionaryArray.from_arrays(indices, values, safe=False)
 
 
 def _measure(values: NDArray[np.float64], kind: str) -> pa.Array:

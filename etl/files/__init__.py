@@ -1,9 +1,9 @@
 """Files as labs have them, turned into text cells that remember their line."""
 
-from etl.files.coded import Coded, group_rows, place_rows
+from etl.files.coded import Coded, group_rows, marks_of, place_rows
 from etl.files.decoding import RawText, read_text
 from etl.files.delimited import Cells, cells_of, header_of, read_cells
-from etl.files.numeric_cells import NumberReading, find_decimal, numbers_in
+from etl.files.numeric_cells import NumberReading, find_decimal, number_of, numbers_in
 from etl.files.truths import truth_of
 
 __all__ = [
@@ -15,6 +15,8 @@ __all__ = [
     "find_decimal",
     "group_rows",
     "header_of",
+    "marks_of",
+    "number_of",
     "numbers_in",
     "place_rows",
     "read_cells",

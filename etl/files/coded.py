@@ -90,6 +90,27 @@ class Coded:
         return np.array([*listed, False], dtype=bool)[self.codes]
 
 
+def marks_of(missing: Iterable[str]) -> frozenset[str]:
+    """What stands in a cell that has no value, as cells are compared.
+
+    Parameters
+    ----------
+    missing : iterable of str
+        The marks that the study file lists.
+
+    Returns
+    -------
+    frozenset of str
+        Trimmed and composed; an empty cell is among them always.
+
+    Examples
+    --------
+    >>> sorted(marks_of(["NA", " . "]))
+    ['', '.', 'NA']
+    """
+    return frozenset(unicodedata.normalize("NFC", mark).strip() for mark in missing) | {""}
+
+
 def place_rows(wanted: Sequence[Coded], table: Sequence[Coded]) -> NDArray[np.int64]:
     """Find for each row the row of a table that has the same texts in all key columns.
 

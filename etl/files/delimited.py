@@ -7,24 +7,29 @@ cells. Where a row does not have as many fields as the header, all such rows are
 
 from __future__ import annotations
 
-import csv
-import io
-from collections.abc import Iterator, Sequence
+import unicodedata
+from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
 import pyarrow as pa
-import pyarrow.compute as pc
 from numpy.typing import NDArray
 from pyarrow import csv as arrow_csv
 
 from etl.errors import Findings
 from etl.files.decoding import RawText, read_text
-from etl.files.headers import COMMENT, Header, blanks, find_header, header_is_usable, spelled
+from etl.files.headers import (
+    COMMENT,
+    Header,
+    Remarks,
+    blanks,
+    find_header,
+    header_is_usable,
+    spelled,
+)
+from etl.files.quoted import RecordLines, split_quoted
 
-#: The longest single cell the standard reader accepts; a longer one is a missing quote mark.
-_LONGEST_CELL = 1_000_000
 #: The longest piece of text, in bytes, that pyarrow's reader is given; it takes 32-bit sizes.
 _LARGEST_BLOCK = 1 << 30
 
@@ -52,6 +57,8 @@ class Cells:
         Where the cells came from (digest, encoding).
     comments : int
         Comment lines below the header.
+    comments_like_rows : int
+        Those of them that have as many fields as the header.
     """
 
     shown: str
@@ -62,6 +69,7 @@ class Cells:
     delimiter: str
     text: RawText
     comments: int = 0
+    comments_like_rows: int = 0
 
     def __len__(self) -> int:
         return len(self.lines)
@@ -72,9 +80,8 @@ class Cells:
         return column.chunk(0) if column.num_chunks == 1 else column.combine_chunks()
 
     def texts(self, name: str) -> list[str]:
-        """One column as trimmed strings, a string per row."""
-        texts: list[str] = pc.utf8_trim_whitespace(self.column(name)).to_pylist()
-        return texts
+        """One column as strings, a string per row: trimmed, composed (Unicode NFC)."""
+        return [unicodedata.normalize("NFC", t.strip()) for t in self.column(name).to_pylist()]
 
     def position(self, name: str) -> int:
         """Where the column stands in the file, from 1."""
@@ -121,6 +128,7 @@ def cells_of(
     *,
     delimiter: str | None = None,
     needed: Sequence[str] | None = None,
+    wary: bool = False,
 ) -> Cells | None:
     """Split text into cells.
 
@@ -134,6 +142,9 @@ def cells_of(
         Found out where absent.
     needed : sequence of str, optional
         Only these columns are kept; one that the header lacks is an error.
+    wary : bool
+        Whether it is an error that a cell in quotes holds a line which would be a row by itself:
+        in a log, whose cells are words and numbers, a quote mark is then missing.
 
     Returns
     -------
@@ -147,11 +158,23 @@ def cells_of(
     wanted = tuple(name for name in dict.fromkeys(needed or header.names) if name)
     body = text.data[header.body :]
     if b'"' in body:
-        read = _quoted(body, header, wanted, text.shown, findings)
+        read = _quoted(body, header, wanted, (text.shown, wary), findings)
     else:
         read = _plain(body, header, wanted, text.shown, findings)
     if read is None:
         return None
+    alike = read.remarks.alike
+    if alike:
+        count = len(alike)
+        findings.warning(
+            f"{count:,} lines begin with # and have as many fields as the header"
+            if count > 1
+            else "a line begins with # and has as many fields as the header",
+            path=text.shown,
+            line=alike[0],
+            expected="remarks, which are not read",
+            fix="if this is a row, put its first cell in quotes",
+        )
     return Cells(
         text.shown,
         header.names,
@@ -160,7 +183,8 @@ def cells_of(
         read.lines,
         header.separator,
         text,
-        read.comments,
+        read.remarks.count,
+        len(alike),
     )
 
 
@@ -184,15 +208,15 @@ def header_of(text: RawText, delimiter: str | None = None) -> tuple[str, ...]:
 
 @dataclass(frozen=True, slots=True)
 class _Rows:
-    """What was read below the header: columns, the line of each row, how many comments."""
+    """What was read below the header: columns, the line of each row, the comments."""
 
     table: pa.Table
     lines: NDArray[np.int32]
-    comments: int
+    remarks: Remarks
 
 
-def _data_lines(body: bytes, header: Header) -> tuple[bytes, NDArray[np.int32], int]:
-    """The body's data lines, their numbers in the file, and how many comments it has."""
+def _data_lines(body: bytes, header: Header) -> tuple[bytes, NDArray[np.int32], Remarks]:
+    """The body's data lines, their numbers in the file, and its comments."""
     count = body.count(b"\n") + (0 if not body or body.endswith(b"\n") else 1)
     numbers = np.arange(header.first, header.first + count, dtype=np.int32)
     signs = blanks(header.separator)
@@ -200,26 +224,26 @@ def _data_lines(body: bytes, header: Header) -> tuple[bytes, NDArray[np.int32], 
     for sign in (signs[i : i + 1] for i in range(len(signs))):
         may_be_blank = may_be_blank or sign + b"\n" in body or body.endswith(sign)
     if not may_be_blank and COMMENT not in body:
-        return body, numbers, 0
-    kept, comments = [], 0
+        return body, numbers, Remarks()
+    kept, remarks = [], Remarks()
     lines = body.split(b"\n")[:count]
     for number, line in enumerate(lines):
         content = line.lstrip(signs)
         if content.startswith(COMMENT):
-            comments += 1
+            remarks.add(line.decode("utf-8"), int(numbers[number]), header)
         elif content:
             kept.append(number)
-    return b"\n".join([lines[i] for i in kept]) + b"\n", numbers[kept], comments
+    return b"\n".join([lines[i] for i in kept]) + b"\n", numbers[kept], remarks
 
 
 def _plain(
     body: bytes, header: Header, wanted: tuple[str, ...], shown: str, findings: Findings
 ) -> _Rows | None:
     """Split text without quotes by pyarrow's reader."""
-    body, lines, comments = _data_lines(body, header)
+    body, lines, remarks = _data_lines(body, header)
     if not len(lines):
         empty = pa.table({name: pa.array([], pa.string()) for name in wanted})
-        return _Rows(empty, lines, comments)
+        return _Rows(empty, lines, remarks)
     try:
         table = arrow_csv.read_csv(
             pa.BufferReader(body),
@@ -241,7 +265,7 @@ def _plain(
     except pa.ArrowInvalid:
         table = None
     if table is not None and table.num_rows == len(lines):
-        return _Rows(table, lines, comments)
+        return _Rows(table, lines, remarks)
     separator = header.separator.encode("utf-8")
     widths = [line.count(separator) + 1 for line in body.split(b"\n")][: len(lines)]
     if not _tell_uneven(header, widths, lines.tolist(), shown, findings):
@@ -287,69 +311,34 @@ def _tell_uneven(
 
 
 def _quoted(
-    body: bytes, header: Header, wanted: tuple[str, ...], shown: str, findings: Findings
+    body: bytes,
+    header: Header,
+    wanted: tuple[str, ...],
+    manner: tuple[str, bool],
+    findings: Findings,
 ) -> _Rows | None:
-    """Split text with quoted cells, by the standard library's reader."""
-    source = _RecordLines(body.decode("utf-8"), header)
-    csv.field_size_limit(_LONGEST_CELL)
-    reader = csv.reader(source, delimiter=header.separator, strict=True)
-    rows: list[list[str]] = []
-    lines: list[int] = []
-    while True:
-        source.begin()
-        try:
-            row = next(reader, None)
-        except csv.Error as why:
-            unclosed = "unexpected end" in str(why) or "field larger" in str(why)
+    """Split text with quoted cells; ``manner``: the file's name, and whether to be wary."""
+    shown, wary = manner
+    source = RecordLines(body.decode("utf-8"), header)
+    split = split_quoted(source, header, shown, findings)
+    if split is None:
+        return None
+    rows, lines = split
+    if wary and source.swallowed:
+        for opened, number in source.swallowed:
             findings.error(
-                "a quote mark is never closed" if unclosed else "a quoted cell is broken",
+                "a quoted cell holds whole rows",
                 path=shown,
-                line=source.began,
-                expected='a quote mark " on both sides of a cell, and doubled inside it',
+                line=opened,
+                expected=f'a second quote mark " before line {number}, which has as many fields '
+                "as a row",
                 fix="close or double the quote mark in this line",
             )
-            return None
-        if row is None:
-            break
-        rows.append(row)
-        lines.append(source.began)
+        return None
     if _tell_uneven(header, [len(row) for row in rows], lines, shown, findings):
         return None
     places = [header.names.index(name) for name in wanted]
     columns = [pa.array([row[place] for row in rows], pa.string()) for place in places]
     return _Rows(
-        pa.table(columns, names=list(wanted)), np.asarray(lines, dtype=np.int32), source.comments
+        pa.table(columns, names=list(wanted)), np.asarray(lines, dtype=np.int32), source.remarks
     )
-
-
-class _RecordLines:
-    """Lines for the standard reader; between records it steps over blank and comment lines."""
-
-    def __init__(self, text: str, header: Header) -> None:
-        self._lines = iter(io.StringIO(text, newline="\n"))
-        self._number = header.first - 1
-        self._blanks = blanks(header.separator).decode()
-        self._between = True
-        self.began = header.first
-        self.comments = 0
-
-    def begin(self) -> None:
-        """The next line begins a record."""
-        self._between = True
-
-    def __iter__(self) -> Iterator[str]:
-        return self
-
-    def __next__(self) -> str:
-        while True:
-            line = next(self._lines)
-            self._number += 1
-            if not self._between:
-                return line
-            content = line.lstrip(self._blanks)
-            if content.startswith(COMMENT.decode()):
-                self.comments += 1
-            elif content.strip("\n"):
-                self._between = False
-                self.began = self._number
-                return line

@@ -4,8 +4,9 @@ from __future__ import annotations
 
 import csv
 import io
+import unicodedata
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from difflib import get_close_matches
 
 from etl.errors import Findings
@@ -26,7 +27,7 @@ class Header:
     Attributes
     ----------
     names : tuple of str
-        The columns, trimmed.
+        The columns, trimmed and composed (Unicode NFC).
     line : int
         The line on which it begins, from 1.
     separator : str
@@ -42,6 +43,33 @@ class Header:
     separator: str
     body: int
     first: int
+
+
+@dataclass(slots=True)
+class Remarks:
+    """The comment lines below a header.
+
+    Attributes
+    ----------
+    count : int
+        How many there are.
+    alike : list of int
+        On which lines those are that have as many fields as the header.
+    """
+
+    count: int = 0
+    alike: list[int] = field(default_factory=list)
+
+    def add(self, line: str, number: int, header: Header) -> None:
+        """Count a comment line."""
+        self.count += 1
+        if fields_in(line, header) == len(header.names) > 1:
+            self.alike.append(number)
+
+
+def fields_in(line: str, header: Header) -> int:
+    """How many fields a line has, quote marks aside."""
+    return line.count(header.separator) + 1
 
 
 def find_header(data: bytes, delimiter: str | None) -> Header:
@@ -227,5 +255,10 @@ def _names(sample: str, separator: str) -> tuple[tuple[str, ...], int]:
         cells = next(reader, [])
     except csv.Error:
         cells = sample.split("\n", 1)[0].split(separator)
-        return tuple(cell.strip() for cell in cells), 1
-    return tuple(cell.strip() for cell in cells), max(reader.line_num, 1)
+        return tuple(_composed(cell) for cell in cells), 1
+    return tuple(_composed(cell) for cell in cells), max(reader.line_num, 1)
+
+
+def _composed(name: str) -> str:
+    """A name trimmed and in the one form in which equal letters are equal."""
+    return unicodedata.normalize("NFC", name.strip())

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import math
 import re
+import unicodedata
 from collections.abc import Callable, Collection
 from dataclasses import dataclass
 
@@ -14,11 +16,36 @@ from numpy.typing import NDArray
 from etl.errors import Findings
 
 _NUMBER = r"^[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?$"
+_ONE_NUMBER = re.compile(_NUMBER, re.ASCII)
 #: Numbers whose commas may mark thousands; none is written with a leading zero.
 _GROUPED = r"^[+-]?[1-9][0-9]{0,2}(?:,[0-9]{3})+$"
 
 #: Digits with signs between them that were meant as a number.
 _SPOILED = re.compile(r"[+-]?[0-9][0-9]*(?:[.,' \u00a0\u202f][0-9]+)+(?:[eE][+-]?[0-9]+)?")
+
+
+def number_of(text: str) -> float | None:
+    """Read one text as a number, by the same grammar as a column of numbers.
+
+    Parameters
+    ----------
+    text : str
+        Trimmed; the decimal sign is a point.
+
+    Returns
+    -------
+    float or None
+        None where the text is no number, or one too large to be held.
+
+    Examples
+    --------
+    >>> [number_of(text) for text in ("21.5", "1e1", "1_0", "nan", "3,5")]
+    [21.5, 10.0, None, None, None]
+    """
+    if _ONE_NUMBER.fullmatch(text) is None:
+        return None
+    number = float(text)
+    return number if math.isfinite(number) else None
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,7 +103,8 @@ def numbers_in(
             if np.isfinite(values).all():
                 return np.asarray(values, dtype=np.float64)
     trimmed = pc.utf8_trim_whitespace(column)
-    absent = pc.is_in(trimmed, value_set=pa.array(sorted({*reading.missing}), pa.string()))
+    marks = {unicodedata.normalize(form, m) for form in ("NFC", "NFD") for m in reading.missing}
+    absent = pc.is_in(trimmed, value_set=pa.array(sorted(marks), pa.string()))
     pointed = trimmed
     if reading.decimal == ",":
         # A point in a column of decimal commas is a thousands sign or a slip: never guess which.

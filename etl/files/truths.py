@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from typing import Final
 
+from etl.files.numeric_cells import number_of
+
 TRUE_WORDS: Final = frozenset({"1", "true", "yes", "y", "t", "correct", "right"})
 FALSE_WORDS: Final = frozenset({"0", "false", "no", "n", "f", "wrong", "incorrect"})
 
@@ -29,8 +31,5 @@ def truth_of(text: str) -> bool | None:
     word = text.casefold()
     if word in TRUE_WORDS or word in FALSE_WORDS:
         return word in TRUE_WORDS
-    try:
-        number = float(word)
-    except ValueError:
-        return None
+    number = number_of(word)
     return bool(number) if number in (0.0, 1.0) else None

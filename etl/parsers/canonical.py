@@ -66,7 +66,11 @@ class CanonicalLog:
 
 @dataclass(slots=True)
 class LogNote:
-    """What is told about a log that was read: how it was understood, and what was counted."""
+    """What is told about a log that was read: how it was understood, and what was counted.
+
+    ``asked`` holds, for each key of ``[logs.where]``, the values of that column: those asked for
+    that occur, and some of the others.
+    """
 
     shown: str
     sha256: str = ""
@@ -74,3 +78,4 @@ class LogNote:
     delimiter: str = ""
     decimal: str = ""
     counts: dict[str, int] = field(default_factory=dict)
+    asked: dict[str, tuple[str, ...]] = field(default_factory=dict)

@@ -11,7 +11,6 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 import pyarrow as pa
-import pyarrow.compute as pc
 from numpy.typing import NDArray
 
 from etl.errors import Findings
@@ -21,6 +20,8 @@ from etl.files import (
     NumberReading,
     cells_of,
     find_decimal,
+    marks_of,
+    number_of,
     numbers_in,
     read_text,
     truth_of,
@@ -38,6 +39,8 @@ _NUMBERS = ("onset", "end", "duration", "fixation", "x", "y")
 #: Digits kept after the conversion of a time to milliseconds: nanoseconds, so that 0.3 s is
 #: 300 ms and not 299.99999999999994.
 _MS_DIGITS = 6
+#: How many values of a column that [logs.where] does not ask for are remembered, to tell a slip.
+_MOST_OTHERS = 20
 
 
 @dataclass(frozen=True, slots=True)
@@ -93,7 +96,7 @@ class LogReader:
             return None
         columns = {name: column.column for name, column in self._columns().items()}
         needed = [*columns.values(), *self.facts, *(h for h, _ in self._where())]
-        cells = cells_of(text, findings, delimiter=self.logs.delimiter, needed=needed)
+        cells = cells_of(text, findings, delimiter=self.logs.delimiter, needed=needed, wary=True)
         if cells is None:
             return None
         if not len(cells):
@@ -106,10 +109,12 @@ class LogReader:
             return None
         note = LogNote(shown, text.sha256, text.encoding, cells.delimiter)
         note.counts["rows"] = len(cells)
-        kept, lines = self._kept(cells, findings)
+        kept, lines = self._kept(cells, note, findings)
         note.counts["rows not asked for"] = note.counts["rows"] - len(lines)
         if cells.comments:
             note.counts["comment lines below the header"] = cells.comments
+        if cells.comments_like_rows:
+            note.counts["comment lines like rows"] = cells.comments_like_rows
         if findings.failed:
             return None
         if not len(lines):
@@ -133,7 +138,7 @@ class LogReader:
 
     def _missing(self) -> frozenset[str]:
         """What stands in a cell that has no value; cells are compared without blanks around."""
-        return frozenset(mark.strip() for mark in self.logs.missing) | {""}
+        return marks_of(self.logs.missing)
 
     def _where(self) -> list[tuple[str, Sequence[str]]]:
         """Headers and values of ``[logs.where]``; a canonical name stands for its header."""
@@ -160,7 +165,8 @@ class LogReader:
                 fix="rename the file, correct the pattern, or narrow [logs] files",
             )
             return {}
-        named = {name: text for name, text in found.groupdict().items() if text}
+        said = {name: (text or "").strip() for name, text in found.groupdict().items()}
+        named = {name: text for name, text in said.items() if text not in self._missing()}
         for name in sorted(found.groupdict().keys() - named.keys() - self._columns().keys()):
             if name in ("session", "item"):
                 named[name] = ""
@@ -170,13 +176,14 @@ class LogReader:
                 path=shown,
                 where="logs.participant_from_name",
                 found=path.name,
-                expected=f"a name in which the group {name} of {pattern} is not empty",
+                expected=f"a name in which the group {name} of {pattern} is not empty"
+                + (f', and not "{said[name]}", which [logs] missing lists' if said[name] else ""),
                 fix="rename the file, correct the pattern, or narrow [logs] files",
             )
         return named
 
     def _kept(
-        self, cells: Cells, findings: Findings
+        self, cells: Cells, note: LogNote, findings: Findings
     ) -> tuple[dict[str, pa.Array], NDArray[np.int32]]:
         """The columns and lines of the rows that ``[logs.where]`` asks for."""
         columns = {name: cells.column(name) for name in cells.table.column_names}
@@ -184,20 +191,17 @@ class LogReader:
         if not where:
             return columns, cells.lines
         mask = np.ones(len(cells), dtype=bool)
-        for header, values in where:
-            asked = pc.is_in(
-                pc.utf8_trim_whitespace(columns[header]),
-                value_set=pa.array(
-                    [unicodedata.normalize(form, v) for form in ("NFC", "NFD") for v in values],
-                    pa.string(),
-                ),
-            ).to_numpy(zero_copy_only=False)
+        for name, (header, values) in zip(self.logs.where, where, strict=True):
+            coded = Coded.of(columns[header], ())
+            asked = coded.among(values)
+            others = [text for text in coded.values if text not in values][:_MOST_OTHERS]
+            note.asked[name] = (*(v for v in values if v in coded.values), *others)
             if not asked.any():
                 findings.error(
                     "no row has the value asked for",
                     path=cells.shown,
                     where=f'column "{header}"',
-                    found=", ".join(pc.unique(columns[header]).to_pylist()[:5]),
+                    found=", ".join(coded.values[:5]),
                     expected=" or ".join(values),
                     fix="correct [logs.where] in the study file, or remove the log",
                 )
@@ -376,7 +380,5 @@ def _touches(text: str) -> bool | None:
     truth = truth_of(text)
     if truth is not None:
         return truth
-    try:
-        return float(text.replace(",", ".")) != 0
-    except ValueError:
-        return None
+    number = number_of(text.replace(",", "."))
+    return None if number is None else number != 0

@@ -12,6 +12,9 @@ from etl.errors import Findings
 
 #: Above this, in ms, a number no longer holds every whole millisecond (IEEE 754, 53 bits).
 LONGEST_MS = 2.0**53
+#: Decimals of a millisecond to which a difference of two times is rounded: microseconds, finer than
+#: any recorder's clock.
+DIFFERENCE_DIGITS = 3
 #: What to do about a row that cannot be used.
 _WAY_OUT = "correct the cell, remove the row, or leave such rows out by [logs.where]"
 
@@ -80,7 +83,7 @@ def check_times(
         tell(absent, "duration", "the fixation has no duration", wanted)
         tell(duration <= 0, "duration", "the duration is not above 0", wanted)
         return duration
-    duration = numbers["end"] - numbers["onset"]
+    duration = np.round(numbers["end"] - numbers["onset"], DIFFERENCE_DIGITS)
     tell(np.isnan(numbers["end"]), "end", "the fixation has no end", "an end after its onset")
     tell(
         duration <= 0, "end", "the fixation does not end after its onset", "an end after its onset"

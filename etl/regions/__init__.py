@@ -3,6 +3,6 @@
 from etl.regions.assign import Assigned
 from etl.regions.definition_files import read_definitions
 from etl.regions.library import RegionLibrary
-from etl.regions.sources import Text
+from etl.regions.sources import Text, TrialWords
 
-__all__ = ["Assigned", "RegionLibrary", "Text", "read_definitions"]
+__all__ = ["Assigned", "RegionLibrary", "Text", "TrialWords", "read_definitions"]

@@ -1,13 +1,17 @@
 """Point to region, for whole arrays of points at once.
 
 Nothing here loops over points, trials or texts: the loops are over the steps of a binary search,
-or over the rank of a piece among the pieces that a point may lie in.
+or over the rank of a piece among the pieces that a point may lie in. Of boxes these are all of its
+text or line, of which there are few and which cost next to nothing to look at; of polygons, those
+that a tree over all texts finds near it.
 """
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
-from typing import Literal
+from functools import lru_cache
+from typing import Any, Literal
 
 import numpy as np
 import shapely
@@ -69,6 +73,7 @@ class _Points:
 
     x: Floats
     y: Floats
+    text: Offsets
     first: Offsets
     stop: Offsets
     on_line: Flags  # only x on a line that is known already decides
@@ -77,6 +82,7 @@ class _Points:
         return _Points(
             self.x[chosen],
             self.y[chosen],
+            self.text[chosen],
             self.first[chosen],
             self.stop[chosen],
             self.on_line[chosen],
@@ -122,6 +128,7 @@ def assign(
     points = _Points(
         x,
         y,
+        texts,
         np.where(on_line, geometry.piece_offsets[slot], geometry.text_offsets[texts]),
         np.where(on_line, geometry.piece_offsets[slot + 1], geometry.text_offsets[texts + 1]),
         on_line,
@@ -217,7 +224,9 @@ def _along_lines(geometry: Geometry, manner: Manner, points: _Points, level: Fla
         after = np.minimum(after, len(start) - 1)
         u = along[rest]
         y = points.y[rest]
-        off = np.maximum(np.maximum(top[near] - y, y - bottom[near]), 0.0)
+        # Before a text's first piece, `near` is a piece of the text before: not one to measure by.
+        own = np.where(has_near, near, after)
+        off = np.maximum(np.maximum(top[own] - y, y - bottom[own]), 0.0)
         off = np.where(points.on_line[rest], 0.0, off)
         to_near = np.where(has_near, np.hypot(np.maximum(u - end[near], 0.0), off), np.inf)
         to_after = np.where(has_after, np.hypot(start[after] - u, off), np.inf)
@@ -230,15 +239,49 @@ def _along_lines(geometry: Geometry, manner: Manner, points: _Points, level: Fla
 def _among_shapes(geometry: Geometry, manner: Manner, points: _Points) -> Offsets:
     """The box or polygon that each point is taken to, or -1."""
     choice = _Choice(geometry, manner, len(points.x))
-    for rank in range(int((points.stop - points.first).max(initial=0))):
-        at = np.flatnonzero(points.first + rank < points.stop)
-        some = points.only(at)
-        choice.offer(at, some, some.first + rank)
+    for at, near in _candidates(geometry, manner, points):
+        choice.offer(at, points.only(at), near)
     piece = choice.decided()
     if manner.tolerance_px > 0:
         rest = np.flatnonzero(piece < 0)
         piece[rest] = _nearest_shape(geometry, manner, points.only(rest))
     return piece
+
+
+def _candidates(
+    geometry: Geometry, manner: Manner, points: _Points
+) -> Iterator[tuple[NDArray[np.int64], Offsets]]:
+    """One piece after the other that points may lie in: which points, and which piece of each."""
+    if geometry.polygons is None:
+        for rank in range(int((points.stop - points.first).max(initial=0))):
+            at = np.flatnonzero(points.first + rank < points.stop)
+            yield at, points.first[at] + rank
+        return
+    aside, tree = _tree(geometry, manner.tolerance_px)
+    at, piece = tree.query(shapely.points(points.x + aside * points.text, points.y))
+    own = (points.first[at] <= piece) & (piece < points.stop[at])
+    at, piece = at[own], piece[own]
+    order = np.lexsort((piece, at))
+    at, piece = at[order], piece[order]
+    rank = np.arange(len(at)) - np.searchsorted(at, at)
+    for wanted in range(int(rank.max(initial=-1)) + 1):
+        chosen = rank == wanted
+        yield at[chosen], piece[chosen]
+
+
+@lru_cache(maxsize=1)
+def _tree(geometry: Geometry, tolerance_px: float) -> tuple[float, Any]:
+    """A tree over the frames of all pieces, and how far aside each text is moved in it.
+
+    Texts are shown at the same place, so that each must be moved to where no other is. Frames are
+    wider than the pieces by the tolerance, and by a pixel: moving costs digits.
+    """
+    left, top, right, bottom = geometry.extents_px
+    wider = tolerance_px + 1.0
+    aside = float(right.max() - left.min()) + 2 * wider
+    moved = aside * np.repeat(np.arange(len(geometry.line_counts)), np.diff(geometry.text_offsets))
+    frames = shapely.box(left + moved - wider, top - wider, right + moved + wider, bottom + wider)
+    return aside, shapely.STRtree(frames)
 
 
 class _Choice:
@@ -330,10 +373,8 @@ def _nearest_shape(geometry: Geometry, manner: Manner, points: _Points) -> Offse
     best = np.full(len(points.x), -1, dtype=np.int64)
     best_distance = np.full(len(points.x), np.inf)
     best_order = np.zeros(len(points.x), dtype=np.int32)
-    for rank in range(int((points.stop - points.first).max(initial=0))):
-        at = np.flatnonzero(points.first + rank < points.stop)
+    for at, piece in _candidates(geometry, manner, points):
         some = points.only(at)
-        piece = some.first + rank
         left, top, right, bottom = geometry.extents_px[:, piece]
         x_off = np.maximum(np.maximum(left - some.x, some.x - right), 0.0)
         y_off = np.maximum(np.maximum(top - some.y, some.y - bottom), 0.0)

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Collection
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -12,7 +11,7 @@ from etl.regions.assign import Manner
 from etl.regions.library import RegionLibrary, library_of
 from etl.regions.running_text import texts_laid_out
 from etl.regions.shapes import texts_of_boxes, texts_of_labels, texts_of_polygons
-from etl.regions.sources import Draft, Source, understand_columns
+from etl.regions.sources import Draft, Source, TrialWords, understand_columns
 
 if TYPE_CHECKING:
     from etl.study.models import Lines, Regions
@@ -26,8 +25,7 @@ def read_definitions(
     *,
     path: Path,
     shown: str,
-    known_facts: Collection[str],
-    wanted_facts: Collection[str],
+    words: TrialWords,
     findings: Findings,
 ) -> RegionLibrary | None:
     """Read a region definition file.
@@ -42,11 +40,9 @@ def read_definitions(
         The definition file.
     shown : str
         Its name for messages.
-    known_facts : collection of str
-        The facts that trials have without this file. A column of that name is a key.
-    wanted_facts : collection of str
-        The facts that the study asks for. A column of the name of one that trials do not have is
-        a fact that each text supplies.
+    words : TrialWords
+        The facts that trials have without this file, and those that the study asks for; the marks
+        of a missing value.
     findings : Findings
         Where everything that is wrong is recorded.
 
@@ -59,7 +55,7 @@ def read_definitions(
     cells = read_cells(path, shown, findings)
     if cells is None:
         return None
-    source = understand_columns(cells, regions.kind, known_facts, wanted_facts, findings)
+    source = understand_columns(cells, regions.kind, words, findings)
     if source is None:
         return None
     drafts = _drafts(source, regions)

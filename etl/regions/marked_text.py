@@ -8,6 +8,7 @@ cell, or the two characters ``\n``, is a line break on the screen.
 from __future__ import annotations
 
 import re
+import unicodedata
 from dataclasses import dataclass, field
 
 TOKEN = re.compile(r"\{\{|\}\}|\\n|\n|[{}\\]|[^{}\\\n]+")
@@ -180,7 +181,7 @@ class _Scanner:
             )
             self.out.names.append("")
             return at + 1
-        name = name.strip()
+        name = unicodedata.normalize("NFC", name.strip())
         if not name:
             self._fault("a region has no name", at, "{name: text}", "write a name before the colon")
         elif name in self.out.names:

@@ -101,7 +101,7 @@ def texts_of_labels(source: Source) -> list[Draft]:
         orders: dict[int, int] = {}
         for row in group.rows:
             named = _is_named(source, row, "region", regions[row])
-            named &= _is_named(source, row, "label", labels[row])
+            named &= _is_label(source, row, labels[row])
             order = order_in(source, row, cells[row])
             if not named or order is None:
                 sound = False
@@ -209,6 +209,22 @@ def _is_named(source: Source, row: int, column: str, name: str) -> bool:
             fix="fill in the cell, or remove the row",
         )
     return bool(name)
+
+
+def _is_label(source: Source, row: int, label: str) -> bool:
+    """Whether a label is there and can occur in a log; says so where not."""
+    if not label or label not in source.missing:
+        return _is_named(source, row, "label", label)
+    source.error(
+        f'the label "{label}" is a mark for no value too, so no fixation can have it',
+        row=row,
+        column="label",
+        found=label,
+        expected="a label that is not in [logs] missing",
+        fix=f'take "{label}" out of [logs] missing of the study file, or rename the label here and '
+        "in the logs",
+    )
+    return False
 
 
 def _named_twice(

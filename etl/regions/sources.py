@@ -57,6 +57,26 @@ class Text:
 
 
 @dataclass(frozen=True, slots=True)
+class TrialWords:
+    """What a definition file has in common with the trials' other sources.
+
+    Attributes
+    ----------
+    known : collection of str
+        The facts that trials have without this file. A column of that name is a key.
+    wanted : collection of str
+        The facts that the study asks for. A column of the name of one that trials do not have is
+        a fact that each text supplies.
+    missing : frozenset of str
+        Cells that stand for no value.
+    """
+
+    known: Collection[str]
+    wanted: Collection[str]
+    missing: frozenset[str] = frozenset({""})
+
+
+@dataclass(frozen=True, slots=True)
 class Draft:
     """A text as read: its shape, or the order that each label stands for."""
 
@@ -84,11 +104,13 @@ class Source:
     keys : tuple of str
         The columns that say which trials show a text.
     supplied : dict of str to list of str
-        The columns that add facts to trials, and their cells.
+        The columns that add facts to trials, and their cells; empty where a cell has no value.
     unused : tuple of str
         The columns that nobody asked for.
     findings : Findings
         Where problems are recorded.
+    missing : frozenset of str
+        Cells that stand for no value.
     """
 
     cells: Cells
@@ -96,6 +118,7 @@ class Source:
     supplied: Mapping[str, list[str]]
     unused: tuple[str, ...]
     findings: Findings
+    missing: frozenset[str] = frozenset({""})
 
     def line(self, row: int) -> int:
         """The line of the file on which a row begins."""
@@ -182,11 +205,7 @@ class Source:
 
 
 def understand_columns(
-    cells: Cells,
-    kind: str,
-    known_facts: Collection[str],
-    wanted_facts: Collection[str],
-    findings: Findings,
+    cells: Cells, kind: str, words: TrialWords, findings: Findings
 ) -> Source | None:
     """Find a definition file's own columns, its keys and the facts that it supplies.
 
@@ -196,8 +215,8 @@ def understand_columns(
         The file.
     kind : str
         Kind of definition file.
-    known_facts, wanted_facts : collection of str
-        Facts that the trials have already, and facts that the study asks for.
+    words : TrialWords
+        Facts that the trials have already, facts that the study asks for, missing marks.
     findings : Findings
         Where a missing column, or a file without rows, is recorded.
 
@@ -231,11 +250,14 @@ def understand_columns(
         )
         return None
     others = [name for name in cells.header if name and name not in own]
-    keys = tuple(name for name in others if name in known_facts)
-    supplies = tuple(name for name in others if name in wanted_facts and name not in keys)
+    keys = tuple(name for name in others if name in words.known)
+    supplies = tuple(name for name in others if name in words.wanted and name not in keys)
     unused = tuple(name for name in others if name not in keys and name not in supplies)
-    supplied = {name: cells.texts(name) for name in supplies}
-    return Source(cells, keys, supplied, unused, findings)
+    supplied = {
+        name: ["" if text in words.missing else text for text in cells.texts(name)]
+        for name in supplies
+    }
+    return Source(cells, keys, supplied, unused, findings, words.missing)
 
 
 def number_in(source: Source, row: int, column: str, cell: str, expected: str) -> float | None:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections import Counter
 from dataclasses import dataclass, field
 from itertools import product
+from typing import Any
 
 import numpy as np
 import pyarrow as pa
@@ -117,8 +118,12 @@ def condition_codes(levels: list[NDArray[np.int32]], design: TableDesign, rows: 
 
 def codes_of(batch: pa.RecordBatch, name: str) -> NDArray[np.int32]:
     """The codes of a coded column; -1 where missing."""
-    indices = batch.column(name).indices
-    return np.asarray(indices.fill_null(-1), dtype=np.int32)
+    return np.asarray(filled(batch.column(name).indices, -1), dtype=np.int32)
+
+
+def filled(column: pa.Array, value: float) -> NDArray[Any]:
+    """A column as an array, with a value where cells are missing."""
+    return np.asarray(column if column.null_count == 0 else column.fill_null(value))
 
 
 def rate_counts(wide: pa.RecordBatch, design: TableDesign) -> RateCounts:
@@ -139,7 +144,7 @@ def rate_counts(wide: pa.RecordBatch, design: TableDesign) -> RateCounts:
     ones = np.zeros((len(keys), len(names)), dtype=np.int64)
     n = np.zeros_like(ones)
     for column, name in enumerate(names):
-        value = np.asarray(wide.column(name).fill_null(-1))
+        value = filled(wide.column(name), -1)
         ones[:, column] = np.bincount(place[value == 1], minlength=len(keys))
         n[:, column] = np.bincount(place[value >= 0], minlength=len(keys))
     return RateCounts(keys, ones, n)

@@ -16,7 +16,14 @@ import numpy as np
 import pyarrow as pa
 from numpy.typing import NDArray
 
-from etl.report.counts import StudyCounts, codes_of, condition_codes, missing_counts, rate_counts
+from etl.report.counts import (
+    StudyCounts,
+    codes_of,
+    condition_codes,
+    filled,
+    missing_counts,
+    rate_counts,
+)
 from etl.tables import TableDesign
 
 #: The quantiles of fixation durations that are kept of a reader.
@@ -239,14 +246,17 @@ def _kept(fixations: pa.RecordBatch) -> _Kept:
             own = column.indices if pa.types.is_dictionary(column.type) else column
             values = np.asarray(own)
             changes[1:] |= values[1:] != values[:-1]
-    whole = fixations.take(pa.array(rows))
+    needed = ["duration_ms", "y_px", "line", "region_order", "source_file", "source_line"]
+    whole = fixations.select(needed)
+    if len(rows) < len(fixations):
+        whole = whole.take(pa.array(rows))
     file = codes_of(whole, "source_file").astype(np.int64)
     return _Kept(
         np.cumsum(changes)[rows],
         np.asarray(whole.column("duration_ms"), dtype=np.float64),
-        np.asarray(whole.column("y_px").fill_null(np.nan), dtype=np.float64),
-        np.asarray(whole.column("line").fill_null(0), dtype=np.int64),
-        np.asarray(whole.column("region_order").fill_null(0), dtype=np.int64),
+        filled(whole.column("y_px"), np.nan),
+        filled(whole.column("line"), 0),
+        filled(whole.column("region_order"), 0),
         (file << 40) + np.asarray(whole.column("source_line"), dtype=np.int64),
     )
 
@@ -256,7 +266,11 @@ def _durations(duration_ms: Floats) -> Durations | None:
     if len(duration_ms) == 0:
         return None
     spread = float(np.std(duration_ms, ddof=1)) if len(duration_ms) > 1 else None
-    quantiles = np.quantile(duration_ms, QUANTILES)
+    ascending = np.sort(duration_ms)
+    # Linear between the order statistics, as numpy.quantile has it, without its preparations: this
+    # is done for every reader.
+    at = np.array(QUANTILES) * (len(ascending) - 1)
+    quantiles = np.interp(at, np.arange(len(ascending)), ascending)
     return Durations(float(np.mean(duration_ms)), spread, tuple(quantiles.tolist()))
 
 
@@ -279,14 +293,17 @@ def _height(kept: _Kept, grid: LineGrid | None) -> tuple[float | None, float | N
     offset = None if grid is None else float(np.median(distance[known]))
     # Trials in the order in which the logs hold them: ids of trials need not be in the order of
     # reading, and the time in a log may begin anew with every trial.
-    trials, first = np.unique(kept.trial[known], return_index=True)
+    first = np.flatnonzero(known)
+    first = first[np.diff(kept.trial[first], prepend=-1) != 0]
+    trials = kept.trial[first]
     if len(trials) < FEWEST_TRIALS_FOR_DRIFT:
         return offset, None
-    in_order = trials[np.argsort(kept.place[known][first], kind="stable")]
+    in_order = trials[np.argsort(kept.place[first], kind="stable")]
     third = len(trials) // 3
-    early = np.isin(kept.trial, in_order[:third]) & known
-    late = np.isin(kept.trial, in_order[-third:]) & known
-    return offset, float(np.median(distance[late]) - np.median(distance[early]))
+    when = np.zeros(int(kept.trial[-1]) + 1, dtype=np.int8)
+    when[in_order[:third]], when[in_order[-third:]] = 1, 2
+    part = np.where(known, when[kept.trial], 0)
+    return offset, float(np.median(distance[part == 2]) - np.median(distance[part == 1]))
 
 
 def _from_nearest_line(kept: _Kept, grid: LineGrid) -> Floats:
@@ -326,5 +343,7 @@ def _only_levels(fates: TrialFates, design: TableDesign) -> dict[str, str]:
     """The factors of which a reader met one level only, with that level."""
     levels = {name: np.unique(fates.factors[name]) for name in design.factors}
     return {
-        name: design.factors[name][int(own[0])] for name, own in levels.items() if len(own) == 1
+        name: design.factors[name][int(own[0])]
+        for name, own in levels.items()
+        if len(own) == 1 and own[0] >= 0
     }

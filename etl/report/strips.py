@@ -135,12 +135,18 @@ def _labels(dots: Sequence[Dot], scale: Scale) -> tuple[list[int | None], int]:
     return rows, len(ends)
 
 
+#: Up to this many dots are fitted closely to one another, which takes the square of their number.
+_CLOSE_FITTING = 100
+
+
 def _swarm(xs: Sequence[float], radius: float) -> list[float]:
     """How far up or down each dot moves so that dots do not cover one another."""
-    placed: list[tuple[float, float]] = []
-    out: list[float] = []
     width = 2 * radius
     most = 40.0
+    if len(xs) > _CLOSE_FITTING:
+        return _columns(xs, width, most)
+    placed: list[tuple[float, float]] = []
+    out: list[float] = []
     for x in xs:
         near = [(px, py) for px, py in placed[-60:] if x - px < width]
         tries = [0.0]
@@ -156,4 +162,17 @@ def _swarm(xs: Sequence[float], radius: float) -> list[float]:
         y = min(free, key=lambda v: (abs(v), v)) if free else 0.0
         placed.append((x, y))
         out.append(y)
+    return out
+
+
+def _columns(xs: Sequence[float], width: float, most: float) -> list[float]:
+    """Dots of many readers in columns: each a place farther from the middle than the last."""
+    taken: dict[int, int] = {}
+    out = []
+    for x in xs:
+        column = math.floor(x / width)
+        place = taken.get(column, 0)
+        taken[column] = place + 1
+        height = (place + 1) // 2 * width * (1 if place % 2 else -1)
+        out.append(height if abs(height) <= most else math.copysign(most, height))
     return out

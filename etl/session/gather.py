@@ -2,9 +2,8 @@
 
 from __future__ import annotations
 
-import math
-from collections import Counter
-from collections.abc import Callable, Sequence
+import re
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
 
@@ -14,26 +13,25 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.export.rows import TrialColumns
-from etl.files import Coded, group_rows
+from etl.files import Coded, group_rows, number_of
 from etl.measures import MEASURES, REASONS, TRIAL_MEASURES, Measure, select
 from etl.parsers import LogReader
 from etl.report import LineGrid, NotRecorded
 from etl.screening.ledger import columns_of_accounts
 from etl.screening.rules import OUTLIER
+from etl.session.notices import notice_similar_readers, notice_what_is_missing
 from etl.session.plan import Plan
 from etl.session.reader import Options
 from etl.session.trial_facts import TrialFacts, trial_facts
 from etl.session.work import LogAnswer, LogTask, LogWork, ReaderTask, map_tasks
-from etl.study import Study
 from etl.tables import CovariateColumn, IdColumn, MeasureColumn, TableDesign
 from etl.trials import IDS, KnownTrials, SeenTrials
 from etl.trials.notes import Notes
 
 Progress = Callable[[str, int, int], None]
 
-#: Outside these, a log's median fixation is not one of silent reading, whose means lie near
-#: 225 ms (Rayner 1998, doi:10.1037/0033-2909.124.3.372); most often the unit is wrong.
-PLAUSIBLE_MEDIAN_MS = (50.0, 1000.0)
+#: A number that is written with zeros before it, as only names are.
+_PADDED = re.compile(r"[+-]?0[0-9]")
 
 
 @dataclass(slots=True)
@@ -122,8 +120,9 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
         supplied = pa.array([known.facts[name] for known in plan.library.texts], pa.string())
         trials.known[name] = Coded.of(supplied, {""}).take(text)
     good = trials.good & (trials.skipped | (text >= 0))
-    levels = _levels(plan, trials, text >= 0, shown, findings)
-    unrecorded = _notice_what_is_missing(plan, seen, findings) if complete else []
+    levels = _levels(plan, trials, text, shown, findings)
+    notice_similar_readers(seen, shown, findings)
+    unrecorded = notice_what_is_missing(plan, trials, findings) if complete else []
     if not (text >= 0).any():
         if not findings.failed:
             findings.error(
@@ -134,7 +133,11 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
                 fix="correct [trials] skip, or name the logs of the study in [logs] files",
             )
         return None
-    design = _design(plan, trials, text >= 0, levels)
+    covariates = {
+        name: _covariate(plan, name, (trials, text), shown, findings)
+        for name in plan.study.trials.covariates
+    }
+    design = _design(plan, trials, levels, covariates)
     facts = trial_facts(plan, trials, shown, findings)
     tasks = _tasks(design, trials, (text, good), facts, parts)
     study = plan.study
@@ -182,28 +185,25 @@ def _texts(
 def _levels(
     plan: Plan,
     trials: KnownTrials,
-    in_study: NDArray[np.bool_],
+    text: NDArray[np.int32],
     shown: Sequence[str],
     findings: Findings,
 ) -> dict[str, tuple[str, ...]]:
     """The levels of every factor in order; missing and unlisted values are errors."""
     settings = plan.study.trials
+    in_study = text >= 0
     levels: dict[str, tuple[str, ...]] = {}
     for name in settings.factors:
         stated = settings.levels.get(name)
         column = trials.known[name]
         found = {column.values[code] for code in np.unique(column.codes[in_study]) if code >= 0}
         allowed = found if stated is None else set(stated)
-        told: set[tuple[str | None, int]] = set()
-        for row in np.flatnonzero(in_study & trials.good & ~column.among(allowed)).tolist():
+        bad = np.flatnonzero(in_study & trials.good & ~column.among(allowed))
+        for row, path, line in _places(plan, name, (trials, text), bad, shown):
             value = column.text(row)
-            path, line = plan.facts.origin(name, trials, row)
-            if (path, line) in told:
-                continue
-            told.add((path, line))
             findings.error(
                 f"the factor {name} has " + ("a level that is not listed" if value else "no value"),
-                path=path or shown[int(trials.seen.file[row])],
+                path=path,
                 line=line,
                 where=f'column "{name}"',
                 found=value or None,
@@ -212,7 +212,7 @@ def _levels(
                 + (", or add the level to [trials] levels" if value else "")
                 + "; trials that are no part of the study belong in [trials] skip",
             )
-        levels[name] = tuple(sorted(found)) if stated is None else tuple(stated)
+        levels[name] = IdColumn.of(found).values if stated is None else tuple(stated)
         for level in levels[name]:
             if found and level not in found:
                 findings.warning(
@@ -223,37 +223,32 @@ def _levels(
     return levels
 
 
-def _notice_what_is_missing(plan: Plan, seen: SeenTrials, findings: Findings) -> list[NotRecorded]:
-    """Warn of trials of the list, and readers of the table, that no log has; name the trials."""
-    book = plan.facts
-    unrecorded: list[NotRecorded] = []
-    if book.trial_list is not None:
-        for row in book.unrecorded(seen):
-            findings.warning(
-                "the trial is in the list but in no log",
-                path=book.trial_list.shown,
-                line=int(book.trial_list.lines[row]),
-                found=book.trial_list.spelled(row),
-            )
-            ids = {n: c.text(row) for n, c in book.trial_list.columns.items() if n in IDS}
-            unrecorded.append(NotRecorded(ids["participant"], ids["trial"], ids.get("session", "")))
-    if book.participants is not None:
-        readers = book.participants.columns["participant"]
-        for row in np.flatnonzero(~readers.among(seen.ids["participant"].values)).tolist():
-            findings.warning(
-                "the reader is in the table but in no log",
-                path=book.participants.shown,
-                line=int(book.participants.lines[row]),
-                found=readers.text(row),
-            )
-    return unrecorded
+def _places(
+    plan: Plan,
+    name: str,
+    known: tuple[KnownTrials, NDArray[np.int32]],
+    rows: NDArray[np.int64],
+    shown: Sequence[str],
+) -> Iterator[tuple[int, str, int]]:
+    """For each cell from which some trials have a fact, one of the trials, file and line."""
+    trials, text = known
+    if plan.facts.sources.get(name) == "regions":
+        for of_text in dict.fromkeys(text[rows].tolist()):
+            definition = plan.library.texts[of_text]
+            yield int(rows[text[rows] == of_text][0]), definition.path, definition.line
+        return
+    table, listed, lines = plan.facts.origins(name, trials, rows)
+    file = np.where(listed, -1, trials.seen.file[rows]).astype(np.int64)
+    first = np.unique((file << 32) + lines, return_index=True)[1]
+    for at in np.sort(first).tolist():
+        yield int(rows[at]), table if listed[at] else shown[int(file[at])], int(lines[at])
 
 
 def _design(
     plan: Plan,
     trials: KnownTrials,
-    in_study: NDArray[np.bool_],
     levels: dict[str, tuple[str, ...]],
+    covariates: dict[str, CovariateColumn],
 ) -> TableDesign:
     """What all tables of the study have in common."""
     study = plan.study
@@ -267,10 +262,7 @@ def _design(
     return TableDesign(
         ids,
         levels,
-        {
-            name: _covariate(_present(known[name].take(in_study)))
-            for name in study.trials.covariates
-        },
+        covariates,
         plan.library.region_names,
         tuple(_measure_column(m) for m in chosen),
         tuple(_measure_column(m) for m in TRIAL_MEASURES.values()),
@@ -285,13 +277,31 @@ def _present(column: Coded) -> tuple[str, ...]:
     return tuple(column.values[code] for code in np.unique(column.codes).tolist() if code >= 0)
 
 
-def _covariate(texts: tuple[str, ...]) -> CovariateColumn:
-    """Numbers where every value that is there is one."""
-    try:
-        if texts and all(math.isfinite(float(text)) for text in texts):
-            return CovariateColumn("number")
-    except ValueError:
-        pass
+def _covariate(
+    plan: Plan,
+    name: str,
+    known: tuple[KnownTrials, NDArray[np.int32]],
+    shown: Sequence[str],
+    findings: Findings,
+) -> CovariateColumn:
+    """Numbers where every value that is there is one; a value such as 007 is a name."""
+    trials, text = known
+    column = trials.known[name]
+    texts = _present(column.take(text >= 0))
+    words = [value for value in texts if number_of(value) is None]
+    if texts and not words and not any(_PADDED.match(value) for value in texts):
+        return CovariateColumn("number")
+    if words and len(words) < len(texts):
+        row = np.flatnonzero((text >= 0) & column.among(words))[:1]
+        for at, path, line in _places(plan, name, known, row, shown):
+            findings.note(
+                f"some values of the covariate {name} are numbers and some are not: it is text",
+                path=path,
+                line=line,
+                where=f'column "{name}"',
+                found=column.text(at),
+                fix="correct the cell, or add the word to [logs] missing if it stands for no value",
+            )
     return CovariateColumn("text", tuple(sorted(texts)))
 
 
@@ -360,40 +370,3 @@ def _tasks(
 def _measure_column(measure: Measure) -> MeasureColumn:
     """What the tables need to know of a measure."""
     return MeasureColumn(measure.name, measure.kind, measure.unit, measure.definition)
-
-
-def notice_logs(study: Study, answers: list[LogAnswer], findings: Findings) -> None:
-    """Note how the logs were understood, and warn of those whose durations are odd."""
-    dialects = Counter(
-        (a.note.encoding, a.note.delimiter, a.note.decimal) for a in answers if a.note.decimal
-    )
-    spelled = {"\t": "tabs", ";": "semicolons", ",": "commas", "|": "bars", " ": "blanks"}
-    if len(dialects) > 1:
-        usual = dialects.most_common(1)[0][0]
-        for answer in answers:
-            note = answer.note
-            if note.decimal and (note.encoding, note.delimiter, note.decimal) != usual:
-                findings.note(
-                    f"read as {note.encoding}, separated by "
-                    f'{spelled.get(note.delimiter, note.delimiter)}, decimal sign "{note.decimal}";'
-                    " most other logs are different",
-                    path=note.shown,
-                )
-    for answer in answers:
-        comments = answer.note.counts.get("comment lines below the header", 0)
-        if comments:
-            findings.note(
-                f"{comments:,} lines below the header begin with # and were taken for remarks",
-                path=answer.note.shown,
-            )
-    low, high = PLAUSIBLE_MEDIAN_MS
-    for answer in answers:
-        middle = answer.durations_ms[0]
-        if answer.note.decimal and not low <= middle <= high:
-            findings.warning(
-                "the middle (median) duration of the fixations is not one of reading",
-                path=answer.note.shown,
-                found=f"{middle:g} ms",
-                expected=f"between {low:g} and {high:g} ms",
-                fix=f"check the unit of the duration in {study.shown}",
-            )

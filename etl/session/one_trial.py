@@ -95,6 +95,7 @@ def explained(traced: TracedTrial, width: int, encoding: str, wanted: Wanted) ->
     Returns
     -------
     str
+        Lines no longer than the terminal is wide.
 
     Raises
     ------

@@ -10,6 +10,8 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.parsers import CanonicalLog
+from etl.parsers.time_checks import DIFFERENCE_DIGITS
+from etl.session.recordings import Fault, Rows, find_recordings, first_faults
 
 #: How far a fixation may reach into the next one. Onset and duration are each rounded to a
 #: millisecond and recorders differ in whether the last sample counts (common practice, no source).
@@ -97,7 +99,8 @@ def order_fixations(
     repeated : {"error", "first", "last"}
         What is done with a trial that was recorded more than once.
     findings : Findings
-        Where fixations out of order, overlaps and repeated trials are recorded.
+        Where fixations out of order, overlaps, repeated trials and trials that go on in another
+        file are recorded.
 
     Returns
     -------
@@ -105,23 +108,27 @@ def order_fixations(
 
     Notes
     -----
-    Where the log numbers the fixations, the numbers give the order and a number that comes again
-    begins another recording. Otherwise the onsets do: another recording begins where other
-    trials stand between in the same file, or where time falls back to the trial's first onset.
-    A trial that goes on in the next file is one recording.
+    Where the log numbers the fixations, the numbers give the order, otherwise the onsets do. Where
+    another recording of a trial begins: :func:`etl.session.recordings.find_recordings`.
     """
     log = reader.log
     count = len(log)
     by_trial = np.argsort(reader.trial, kind="stable")
     trial = reader.trial[by_trial]
-    begins = np.ones(count, dtype=bool)
-    begins[1:] = trial[1:] != trial[:-1]
-    numbered = count > 0 and not np.isnan(log.number[0])
-    starts = (
-        _restarts_by_number(log.number[by_trial], trial, begins)
-        if numbered
-        else _restarts_by_onset(reader, by_trial, begins)
+    logged = Rows(
+        by_trial,
+        trial,
+        reader.file[by_trial],
+        log.onset_ms[by_trial],
+        log.duration_ms[by_trial],
+        log.number[by_trial],
     )
+    begins = logged.begins()
+    numbered = count > 0 and not np.isnan(log.number[0])
+    found = find_recordings(logged)
+    starts = found.starts
+    mixed = _tell_faults(reader, trials, by_trial, first_faults(logged, found), findings)
+    _notice_straddling(reader, trials, by_trial, starts | begins, findings)
     recording = np.cumsum(starts | begins)
     key = log.number if numbered else log.onset_ms
     rows = by_trial
@@ -132,46 +139,100 @@ def order_fixations(
     begins_recording = np.ones(count, dtype=bool)
     begins_recording[1:] = recording[1:] != recording[:-1]
     overlaps = 0
-    in_order = numbered or _file_order_is_right(reader, by_trial, starts | begins, findings)
+    # What is wrong with a trial's rows is told once.
+    settled = starts | begins | mixed[logged.trial]
+    in_order = numbered or _file_order_is_right(reader, by_trial, settled, findings)
     # Onsets that go back are sorted by now, and what overlaps then says nothing more.
     if in_order and count and not np.isnan(log.onset_ms[0]):
-        overlaps = _check_times(reader, rows, begins_recording, numbered, findings)
+        overlaps = _check_times(reader, rows, begins_recording | mixed[trial], numbered, findings)
     aside = _recordings_set_aside(
-        reader, trials, (rows, trial, begins_recording), repeated, findings
+        reader,
+        TrialNames(trials.in_study & ~mixed, trials.spelled),
+        (rows, trial, begins_recording),
+        repeated,
+        findings,
     )
     first = np.flatnonzero(begins)
     number = np.arange(count) - np.repeat(first, np.diff(np.append(first, count))) + 1
     return OrderedFixations(rows, trial, number, aside, overlaps)
 
 
-def _restarts_by_number(
-    number: NDArray[np.float64], trial: NDArray[np.int64], begins: NDArray[np.bool_]
+def _tell_faults(
+    reader: ReaderLog,
+    trials: TrialNames,
+    by_trial: NDArray[np.int64],
+    faults: dict[int, Fault],
+    findings: Findings,
 ) -> NDArray[np.bool_]:
-    """Where a number comes again, or falls back, in a trial in which any number comes twice."""
-    if not ((np.diff(number) <= 0) & ~begins[1:]).any():
-        return np.zeros(len(number), dtype=bool)
-    by_number = np.lexsort((number, trial))
-    same = (np.diff(number[by_number]) == 0) & (np.diff(trial[by_number]) == 0)
-    twice = np.zeros(int(trial[-1]) + 1 if len(trial) else 0, dtype=bool)
-    twice[trial[by_number[1:][same]]] = True
-    starts = np.zeros(len(number), dtype=bool)
-    starts[1:] = (number[1:] <= number[:-1]) & ~begins[1:] & twice[trial[1:]]
-    return starts
+    """Record where rows of a trial contradict each other; which trials have such rows."""
+    mixed = np.zeros(len(trials.in_study), dtype=bool)
+    for at, fault in faults.items():
+        row = int(by_trial[at])
+        index = int(reader.trial[row])
+        mixed[index] = True
+        if not trials.in_study[index]:
+            continue
+        shown, line = reader.place(row)
+        above = reader.place(int(by_trial[at - 1]))
+        problem, expected, fix = _FAULTS[fault]
+        findings.error(
+            problem,
+            path=shown,
+            line=line,
+            found=_with_number(trials.spelled(index), reader.log.number[row]),
+            expected=f"{expected}; the row of this trial above it is {above[0]}:{above[1]}",
+            fix=fix,
+        )
+    return mixed
 
 
-def _restarts_by_onset(
-    reader: ReaderLog, by_trial: NDArray[np.int64], begins: NDArray[np.bool_]
-) -> NDArray[np.bool_]:
-    """Where another recording of the same trial begins, judged by onsets and what lies between."""
-    onset = reader.log.onset_ms[by_trial]
+_AGAIN = "if the trial was recorded a second time, tell the two apart by a session"
+#: What is said of each fault: the problem, what was expected, what to do.
+_FAULTS: dict[Fault, tuple[str, str, str]] = {
+    "comes twice": (
+        "the number comes twice in this trial",
+        "each number once in a recording",
+        "if the log holds both eyes, name the one to use in [logs.where]; remove a row that is "
+        "there twice; " + _AGAIN,
+    ),
+    "falls back": (
+        "the fixations of this trial go back again and again",
+        "the fixations of a recording in order",
+        f"sort the log by trial and time; {_AGAIN}",
+    ),
+    "alternates": (
+        "rows of two trials alternate",
+        "the rows of a recording one below the other",
+        f"sort the log by trial and time, or correct the column of the trial; {_AGAIN}",
+    ),
+}
+
+
+def _with_number(spelled: str, number: np.float64) -> str:
+    """A trial, with the number of its fixation where the log has one."""
+    return spelled if np.isnan(number) else f"{spelled}, fixation {number:g}"
+
+
+def _notice_straddling(
+    reader: ReaderLog,
+    trials: TrialNames,
+    by_trial: NDArray[np.int64],
+    starts: NDArray[np.bool_],
+    findings: Findings,
+) -> None:
+    """Note every trial that goes on in another file."""
     file = reader.file[by_trial]
-    first = onset[begins][np.cumsum(begins) - 1]
-    starts = np.zeros(len(onset), dtype=bool)
-    falls = onset[1:] < onset[:-1]
-    other_file = file[1:] != file[:-1]
-    apart = (by_trial[1:] != by_trial[:-1] + 1) & ~other_file
-    starts[1:] = apart | (falls & (other_file | (onset[1:] <= first[1:])))
-    return starts & ~begins
+    for at in (np.flatnonzero((file[1:] != file[:-1]) & ~starts[1:]) + 1).tolist():
+        index = int(reader.trial[by_trial[at]])
+        if trials.in_study[index]:
+            shown, line = reader.place(int(by_trial[at]))
+            before = reader.place(int(by_trial[at - 1]))
+            findings.note(
+                f"a trial of {before[0]} goes on here",
+                path=shown,
+                line=line,
+                found=trials.spelled(index),
+            )
 
 
 def _file_order_is_right(
@@ -208,7 +269,7 @@ def _check_times(
     log = reader.log
     onset = log.onset_ms[rows]
     end = onset + log.duration_ms[rows]
-    over = np.where(begins[1:], 0.0, end[:-1] - onset[1:])
+    over = np.where(begins[1:], 0.0, np.round(end[:-1] - onset[1:], DIFFERENCE_DIGITS))
     back = np.flatnonzero((onset[1:] < onset[:-1]) & ~begins[1:]) + 1
     if numbered:
         for at in back.tolist():

@@ -3,16 +3,18 @@
 from __future__ import annotations
 
 import glob
+import re
+import unicodedata
 from dataclasses import dataclass
 from functools import cached_property
 from pathlib import Path
 
 from etl.errors import Findings
 from etl.export.publish import is_ours
-from etl.files import header_of, read_text
+from etl.files import header_of, marks_of, read_text
 from etl.measures import MEASURES, TRIAL_MEASURES
 from etl.parsers import LogReader
-from etl.regions import RegionLibrary, read_definitions
+from etl.regions import RegionLibrary, TrialWords, read_definitions
 from etl.screening import Limits
 from etl.session.limits import check_rules, limits_of
 from etl.study import Study
@@ -55,8 +57,12 @@ class Plan:
 
 
 def find_logs(study: Study, findings: Findings) -> tuple[tuple[Path, str], ...]:
-    """The logs that the study's patterns name, each once, sorted by name."""
-    found: dict[str, Path] = {}
+    """The logs that the study's patterns name, each once, in the order of their names.
+
+    Digits in names count as numbers: ``P01_2`` comes before ``P01_10``. The order decides how a
+    trial goes on from one log to the next, and which of two recordings is the first.
+    """
+    found: dict[tuple[int, int, str], tuple[str, Path]] = {}
     for number, pattern in enumerate(study.logs.files):
         # The folder's own name may hold a bracket, which only glob.escape tells from a pattern.
         full = str(Path(glob.escape(str(study.folder))) / pattern)
@@ -73,8 +79,22 @@ def find_logs(study: Study, findings: Findings) -> tuple[tuple[Path, str], ...]:
                 fix="correct the pattern; * stands for any part of a name, ** for any folders",
             )
         for path in files:
-            found.setdefault(shown_path(study, path.absolute()), path)
-    return tuple((found[shown], shown) for shown in sorted(found))
+            found.setdefault(_identity(path), (shown_path(study, path.absolute()), path))
+    in_order = sorted(found.values(), key=lambda log: _in_natural_order(log[0]))
+    return tuple((path, shown) for shown, path in in_order)
+
+
+def _identity(path: Path) -> tuple[int, int, str]:
+    """What makes two paths one log: where disks ignore case, two patterns may spell one name."""
+    status = path.stat()
+    return status.st_dev, status.st_ino, unicodedata.normalize("NFC", path.name).casefold()
+
+
+def _in_natural_order(shown: str) -> tuple[list[str | int], str]:
+    """A key that sorts names with their digits as numbers."""
+    parts = re.split(r"([0-9]+)", shown)
+    # Every second part is digits, so that text is never compared with a number.
+    return [int(part) if place % 2 else part for place, part in enumerate(parts)], shown
 
 
 def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tuple[Path, str], ...]]:
@@ -105,8 +125,11 @@ def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tupl
         study.lines,
         path=region_path,
         shown=shown_path(study, study.regions.file),
-        known_facts=known,
-        wanted_facts=known if facts is None else known | set(facts.sources),
+        words=TrialWords(
+            known,
+            known if facts is None else known | set(facts.sources),
+            marks_of(study.logs.missing),
+        ),
         findings=findings,
     )
     if facts is None or library is None or not _names_are_free(study, findings):

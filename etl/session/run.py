@@ -23,7 +23,8 @@ from etl.measures import REASON_MEANINGS
 from etl.parsers import LogReader
 from etl.report import AuditInput, write_audit
 from etl.session.gallery import drawn
-from etl.session.gather import Gathered, Progress, gather, notice_logs, read_logs
+from etl.session.gather import Gathered, Progress, gather, read_logs
+from etl.session.notices import notice_logs
 from etl.session.plan import Plan, make_plan
 from etl.session.reader import ReaderTables
 from etl.session.result import Result

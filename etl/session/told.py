@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from difflib import get_close_matches
+from pathlib import Path
 
 from etl.errors import Findings
 from etl.measures import MEASURES, REASON_MEANINGS, TRIAL_MEASURES, Measure
@@ -52,10 +53,18 @@ def summary(counts: Mapping[str, int]) -> str:
 
 def built(result: Result) -> str:
     """The summary of a build: what was read, what was left out, what was written."""
-    lines = [summary(result.counts), f"Written to {result.folder}:"]
+    lines = [summary(result.counts), f"Written to {_near(result.folder)}:"]
     width = max(len(name) for name in result.rows)
     lines += [f"  {name:<{width}}  {rows:>11,} rows" for name, rows in result.rows.items()]
-    return "\n".join([*lines, "  accounts.csv  run.json"])
+    return "\n".join([*lines, "  accounts.csv, run.json, and audit.html to look at"])
+
+
+def _near(folder: Path) -> Path:
+    """A folder as seen from where the command was called, if it lies below."""
+    try:
+        return folder.absolute().relative_to(Path.cwd())
+    except ValueError:
+        return folder
 
 
 def measure_names() -> list[str]:

@@ -78,11 +78,10 @@ class Totals:
         """
         if not self.counts["trials kept"]:
             findings.error(
-                "screening leaves no trial of any reader",
+                f"screening leaves no trial of any reader ({account_text(self.account_rows())})",
                 path=study.shown,
                 line=study.line_of("screening"),
                 where="screening",
-                found=account_text(self.account_rows()),
                 expected="some trials to be left",
                 fix="look at the rule that takes most, and at the units of its limit",
             )

@@ -168,10 +168,10 @@ class _Place:
             'state decimal = "," in [logs] if it is the decimal sign; otherwise write the numbers '
             "without thousands signs",
         )
-        wrong = judged & np.isinf(values)
+        wrong = judged & np.isinf(values) & ~unclear
         self._tell(name, wrong, "this is no number", "a time in log time", _CORRECT)
-        values[np.isinf(values)] = np.nan
         self.unknown[name] = int((judged & np.isnan(values)).sum())
+        values[np.isinf(values)] = np.nan
         return values
 
     def answers(self, name: str) -> NDArray[np.float64]:
@@ -195,7 +195,8 @@ class _Place:
         for name, count in self.unknown.items():
             if count:
                 self.findings.warning(
-                    f"{count:,} trials have no time here and are not judged by it",
+                    f"{count:,} trial{' has' if count == 1 else 's have'} no time here and "
+                    f"{'is' if count == 1 else 'are'} not judged by it",
                     path=self.plan.study.shown,
                     line=self.plan.study.line_of("screening", "fixations", "outside_text_time"),
                     where=f'column "{name}"',

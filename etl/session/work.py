@@ -43,7 +43,7 @@ class LogAnswer:
     note: LogNote
     batches: dict[str, int] = field(default_factory=dict)
     trials: SeenTrials | None = None
-    durations_ms: tuple[float, float] = (0.0, 0.0)
+    median_ms: float = 0.0
     findings: Findings = field(default_factory=Findings)
 
 
@@ -72,12 +72,11 @@ class LogWork:
             return LogAnswer(LogNote(task.shown), findings=findings)
         log, note = read
         trials = seen_trials(log, task.shown, findings)
-        middle = float(np.median(log.duration_ms))
         return LogAnswer(
             note,
             keep_log(log, task.kept),
             trials,
-            (middle, float(log.duration_ms.max())),
+            float(np.median(log.duration_ms)),
             findings,
         )
 

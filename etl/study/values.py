@@ -5,6 +5,7 @@ from __future__ import annotations
 import codecs
 import json
 import re
+import unicodedata
 from typing import Annotated, Any, Literal
 
 from pydantic import (
@@ -61,6 +62,16 @@ def _number_as_text(value: Any) -> Any:
     if isinstance(value, (int, float)) and not isinstance(value, bool):
         return str(value)
     return value
+
+
+def _composed(text: str) -> str:
+    """Letters with accents in the one form (Unicode NFC) in which cells are compared."""
+    return unicodedata.normalize("NFC", text)
+
+
+def _as_in_a_cell(text: str) -> str:
+    """A value as cells are compared: composed, without blanks around it."""
+    return _composed(text).strip()
 
 
 def no_repeats(values: tuple[str, ...]) -> tuple[str, ...]:
@@ -134,7 +145,7 @@ WholeNumber = Annotated[int, Field(strict=True)]
 Number = Annotated[float, Field(strict=True, allow_inf_nan=False)]
 
 #: A name that somebody chose: a column's header, a factor, a measure.
-Name = Annotated[str, Field(min_length=1)]
+Name = Annotated[str, Field(min_length=1), AfterValidator(_composed)]
 Names = Annotated[tuple[Name, ...], Field(json_schema_extra=_UNIQUE), AfterValidator(no_repeats)]
 #: The same, where a list without a name would say nothing.
 SomeNames = Annotated[
@@ -143,11 +154,18 @@ SomeNames = Annotated[
     AfterValidator(no_repeats),
 ]
 #: Text that may be empty, such as a mark for a missing value.
-Texts = Annotated[tuple[str, ...], Field(json_schema_extra=_UNIQUE), AfterValidator(no_repeats)]
+Texts = Annotated[
+    tuple[Annotated[str, AfterValidator(_composed)], ...],
+    Field(json_schema_extra=_UNIQUE),
+    AfterValidator(no_repeats),
+]
 
 #: A value as it stands in a table's cell; a number in the study file is taken as its text.
 CellText = Annotated[
-    str, BeforeValidator(_number_as_text), WithJsonSchema({"type": ["string", "number"]})
+    str,
+    BeforeValidator(_number_as_text),
+    AfterValidator(_as_in_a_cell),
+    WithJsonSchema({"type": ["string", "number"]}),
 ]
 CellTexts = Annotated[
     tuple[CellText, ...],
@@ -164,7 +182,9 @@ FileNames = Annotated[
 ]
 
 Encoding = Annotated[str, Field(min_length=1), AfterValidator(_known_encoding)]
-NamePattern = Annotated[str, Field(min_length=1), AfterValidator(_sound_pattern)]
+NamePattern = Annotated[
+    str, Field(min_length=1), AfterValidator(_composed), AfterValidator(_sound_pattern)
+]
 
 TimeUnit = Literal["ms", "s", "us"]
 PlaceUnit = Literal["px", "deg"]

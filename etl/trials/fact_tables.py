@@ -11,7 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from etl.errors import Findings
-from etl.files import Cells, Coded, group_rows, place_rows, read_cells
+from etl.files import Cells, Coded, group_rows, marks_of, place_rows, read_cells
 
 
 @dataclass(frozen=True, slots=True)
@@ -104,7 +104,7 @@ def read_fact_table(
             fix="fill the table, or take it out of the study file",
         )
         return None
-    absent = frozenset(mark.strip() for mark in missing) | {""}
+    absent = marks_of(missing)
     columns = {name: Coded.of(cells.column(header), absent) for name, header in names.items()}
     table = FactTable(shown, cells.text.sha256, keys, columns, cells.lines)
     _check_keys(table, names, findings)

@@ -170,17 +170,42 @@ class FactBook:
 
     def origin(self, name: str, trials: KnownTrials, row: int) -> tuple[str | None, int]:
         """File and line from which a trial has a fact; None for the trial's own log."""
+        shown, listed, lines = self.origins(name, trials, np.array([row]))
+        return (shown if listed[0] else None), int(lines[0])
+
+    def origins(
+        self, name: str, trials: KnownTrials, rows: NDArray[np.int64]
+    ) -> tuple[str, NDArray[np.bool_], NDArray[np.int32]]:
+        """Where many trials have a fact from.
+
+        Parameters
+        ----------
+        name : str
+            The fact.
+        trials : KnownTrials
+            All trials.
+        rows : (n,) int64 array
+            The trials that are asked about.
+
+        Returns
+        -------
+        shown : str
+            The table that holds the fact; empty where none does.
+        listed : (n,) bool array
+            Whether the table has a row for the trial; if not, the fact is from its log.
+        lines : (n,) int32 array
+            The line, in the table or in the trial's log.
+        """
         table = {
             "trials": self.trial_list,
             "participants": self.participants,
             "items": self.items,
         }.get(self.sources.get(name, ""))
-        if table is not None:
-            one = {key: column.take(np.array([row])) for key, column in trials.known.items()}
-            at = int(table.find(one)[0])
-            if at >= 0:
-                return table.shown, int(table.lines[at])
-        return None, int(trials.seen.line[row])
+        lines = trials.seen.line[rows]
+        if table is None or not len(rows):
+            return "", np.zeros(len(rows), dtype=bool), lines
+        at = table.find({key: column.take(rows) for key, column in trials.known.items()})
+        return table.shown, at >= 0, np.where(at >= 0, table.lines[at], lines)
 
     def unrecorded(self, seen: SeenTrials) -> list[int]:
         """Rows of the trial list that no log has.

@@ -142,7 +142,7 @@ def notes_on_trials(
     # Several notes may be on one trial, so the notes are placed among the trials.
     wanted = [notes.columns[key].take(rows) for key in keys]
     if "session" in seen.ids and "session" not in keys:
-        return _without_session(notes, rows, seen, findings)
+        return _without_session(notes, rows, seen, trial_list, findings)
     places = place_rows(wanted, [seen.ids[key] for key in keys])
     listed = np.full(len(rows), -1)
     if trial_list is not None and set(trial_list.keys) <= set(keys):
@@ -150,12 +150,7 @@ def notes_on_trials(
         listed = place_rows(own, [trial_list.columns[key] for key in trial_list.keys])
     for row, at, known in zip(rows.tolist(), places.tolist(), listed.tolist(), strict=True):
         if at < 0 and known >= 0:
-            findings.note(
-                "the note is on a trial that was not recorded",
-                path=notes.shown,
-                line=int(notes.lines[row]),
-                found=_spelled(notes, row),
-            )
+            _tell_unrecorded(notes, row, findings)
             continue
         if at < 0:
             _tell_unmatched(notes, row, seen, findings)
@@ -165,19 +160,20 @@ def notes_on_trials(
 
 
 def _without_session(
-    notes: Notes, rows: NDArray[np.int64], seen: SeenTrials, findings: Findings
+    notes: Notes,
+    rows: NDArray[np.int64],
+    seen: SeenTrials,
+    trial_list: FactTable | None,
+    findings: Findings,
 ) -> list[str]:
     """Notes that name no session although trials have one: good where only one trial fits."""
     reasons = [""] * len(seen)
-    participants = seen.ids["participant"].recoded(notes.columns["participant"].values)
-    trials = seen.ids["trial"].recoded(notes.columns["trial"].values)
     for row in rows.tolist():
-        fits = np.flatnonzero(
-            (participants == notes.columns["participant"].codes[row])
-            & (trials == notes.columns["trial"].codes[row])
-        )
+        fits = _fitting(notes, row, seen.ids)
         if len(fits) == 1:
             _add(reasons, int(fits[0]), notes.columns["reason"].text(row))
+        elif len(fits) == 0 and trial_list is not None and _is_listed(notes, row, trial_list):
+            _tell_unrecorded(notes, row, findings)
         elif len(fits) == 0:
             _tell_unmatched(notes, row, seen, findings)
         else:
@@ -190,6 +186,19 @@ def _without_session(
                 fix="add a column session",
             )
     return reasons
+
+
+def _fitting(notes: Notes, row: int, ids: Mapping[str, Coded]) -> NDArray[np.int64]:
+    """The rows of some trials that have the reader and the trial of a note."""
+    names = ("participant", "trial")
+    same = [ids[name].among({notes.columns[name].text(row)}) for name in names]
+    return np.flatnonzero(same[0] & same[1])
+
+
+def _is_listed(notes: Notes, row: int, trial_list: FactTable) -> bool:
+    """Whether the trial list has the trial of a note in some session."""
+    named = {"participant", "trial"} <= set(trial_list.keys) <= {"participant", "session", "trial"}
+    return named and len(_fitting(notes, row, trial_list.columns)) > 0
 
 
 def notes_on_readers(notes: Notes, seen: SeenTrials, findings: Findings) -> dict[str, str]:
@@ -233,6 +242,16 @@ def _spelled(notes: Notes, row: int) -> str:
         f"{name} {notes.columns[name].text(row)}"
         for name in ("participant", "session", "trial")
         if name in notes.columns and notes.columns[name].codes[row] >= 0
+    )
+
+
+def _tell_unrecorded(notes: Notes, row: int, findings: Findings) -> None:
+    """Say that a note explains why a trial of the list is in no log."""
+    findings.note(
+        "the note is on a trial that was not recorded",
+        path=notes.shown,
+        line=int(notes.lines[row]),
+        found=_spelled(notes, row),
     )
 
 

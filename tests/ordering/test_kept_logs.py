@@ -99,7 +99,9 @@ def test_order_of_values_makes_no_difference(tmp_path: Path, order: tuple[str, s
         participant = Coded(np.array([order.index("P02")] * 2, dtype=np.int32), order)
         ids = {"participant": participant, "trial": Coded(codes, trials)}
         lines = np.array([2, 3], dtype=np.int32)
-        log = CanonicalLog(ids, {}, nowhere, nowhere, np.ones(2), nowhere, nowhere, None, lines, lines > 0)
+        log = CanonicalLog(
+            ids, {}, nowhere, nowhere, np.ones(2), nowhere, nowhere, None, lines, lines > 0
+        )
         parts.append((tmp_path / f"{number}.arrow", keep_log(log, tmp_path / f"{number}.arrow")))
     found, file = kept_log([(path, batches["P02"]) for path, batches in parts])
     assert texts(found.ids["trial"]) == ["1", "2", "2", "3"]

@@ -9,7 +9,7 @@ from typing import Any
 import numpy as np
 
 from etl.errors import Findings
-from etl.regions import RegionLibrary, read_definitions
+from etl.regions import RegionLibrary, TrialWords, read_definitions
 from etl.study.models import Lines, Regions
 
 #: First character at x = 200, 10 px a character; first line from y = 500, 40 px a line.
@@ -57,8 +57,7 @@ def read_file(path: Path, kind: str, **options: Any) -> Read:
         lines,
         path=path,
         shown=path.name,
-        known_facts=known,
-        wanted_facts=wanted,
+        words=TrialWords(known, wanted, frozenset({"", "NA"})),
         findings=findings,
     )
     return Read(library, findings)

@@ -8,7 +8,7 @@ from typing import Any
 import pytest
 
 from etl.errors import Findings
-from etl.regions import read_definitions
+from etl.regions import TrialWords, read_definitions
 from etl.study.models import Regions
 
 Read = Callable[..., Any]
@@ -519,8 +519,7 @@ def test_layout_is_needed_for_running_text(tmp_path: Any) -> None:
         None,
         path=path,
         shown="regions.csv",
-        known_facts=("item",),
-        wanted_facts=(),
+        words=TrialWords(("item",), ()),
         findings=findings,
     )
     assert findings.lines() == [

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import unicodedata
 from collections.abc import Callable
 from typing import Any
 
@@ -63,3 +64,31 @@ def test_places_have_no_labels(read: Read) -> None:
     library = read("words", "item,text\n1,pear\n").library
     with pytest.raises(FaultError, match="regions known by their places were asked for labels"):
         library.assign_labels(np.zeros(1, dtype=int), np.zeros(1, dtype=int), ["A"])
+
+
+def test_label_that_is_a_missing_mark_is_an_error(read: Read) -> None:
+    """No fixation can have such a label, so the file and the study file contradict each other."""
+    got = read("labels", NO_KEY + "NA,object,3\n")
+    assert got.library is None
+    assert got.text == (
+        'regions.csv:5: column "label": the label "NA" is a mark for no value too, so no fixation '
+        'can have it; found "NA", expected a label that is not in [logs] missing\n'
+        '    fix: take "NA" out of [logs] missing of the study file, or rename the label here and '
+        "in the logs\n"
+        "1 problem; nothing was written"
+    )
+
+
+def test_labels_and_names_are_composed(read: Read) -> None:
+    """Letters with accents are equal however the file composes them."""
+    apart = unicodedata.normalize("NFD", "m\u00fchle")
+    got = read("labels", f"label,region,order\n{apart},{apart},1\n")
+    assert got.library.region_names == ("m\u00fchle",)
+    assert list(got.library.labels.codes) == ["m\u00fchle"]
+
+
+def test_missing_mark_is_no_fact(read: Read) -> None:
+    """A fact that the file supplies is missing where the cell holds a missing mark."""
+    content = "item,cue,label,region,order\n1,NA,A,a,1\n2,early,A,a,1\n1,,B,b,2\n"
+    got = read("labels", content, wanted=("cue",))
+    assert [text.facts["cue"] for text in got.library.texts] == ["", "early"]

@@ -154,3 +154,8 @@ def test_marked_text_reads_back_what_was_written(parts: list[tuple[str, str]]) -
 def test_plain_cell_keeps_all_but_line_breaks(cell: str, expected: str) -> None:
     """In a plain text only line breaks are rewritten."""
     assert screen_text(cell) == expected
+
+
+def test_names_of_regions_are_composed() -> None:
+    """A name is the same however its letters with accents are written."""
+    assert parse_marked_text("{mu\u0308hle: The mill}").names == ["m\u00fchle"]

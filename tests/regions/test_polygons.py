@@ -199,3 +199,45 @@ def test_boxes_written_as_polygons_give_the_same_regions(folder: Path) -> None:
     one, other = by_box.assign_points(text, x, y), by_polygon.assign_points(text, x, y)
     assert one.order.tolist() == other.order.tolist()
     assert one.line.tolist() == other.line.tolist()
+
+
+@pytest.mark.parametrize("tolerance_px", [0, 2.5])
+def test_texts_at_the_same_place_do_not_meet(folder: Path, tolerance_px: float) -> None:
+    """Of many texts shown at one place, a point is taken to regions of its own text only."""
+    random = np.random.default_rng(3)
+    texts = []
+    for _ in range(40):
+        corners = random.uniform(0, 30, (9, 2)).round(1)
+        triangles = shapely.delaunay_triangles(shapely.MultiPoint(corners)).geoms
+        texts.append([shape for shape in triangles if shape.area > 0][:-2])
+    path = folder / "texts.tsv"
+    path.write_text(
+        HEADER
+        + "".join(
+            f"{text}\tr{i}\t{i}\t{shape.wkt}\n"
+            for text, shapes in enumerate(texts)
+            for i, shape in enumerate(shapes, start=1)
+        ),
+        encoding="utf-8",
+    )
+    library = read_file(path, "wkt", tolerance_px=tolerance_px).library
+    assert library is not None
+    text = random.integers(0, 40, 1000)
+    # Every second point is a corner of a region of its text, which lies on edges exactly.
+    points = np.array(
+        [
+            random.uniform(-4, 34, 2)
+            if number % 2
+            else texts[of][number % len(texts[of])].exterior.coords[0]
+            for number, of in enumerate(text.tolist())
+        ]
+    )
+    expected = []
+    for of, (x, y) in zip(text.tolist(), points.tolist(), strict=True):
+        point = shapely.Point(x, y)
+        distance = {i: shape.distance(point) for i, shape in enumerate(texts[of], start=1)}
+        hits = [i for i, shape in enumerate(texts[of], start=1) if shape.intersects(point)]
+        near = max(distance, key=lambda i: (-distance[i], i))
+        reached = near if tolerance_px and distance[near] <= tolerance_px else 0
+        expected.append(max(hits) if hits else reached)
+    assert library.assign_points(text, *points.T).order.tolist() == expected

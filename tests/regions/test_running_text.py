@@ -238,3 +238,14 @@ def test_text_index_may_be_any_integer(read: Read, dtype: type) -> None:
     library = read("marked_text", ONE_LINE).library
     got = library.assign_points(np.zeros(1, dtype=dtype), np.array([205.0]), np.array([520.0]))
     assert (got.order.tolist(), got.order.dtype, got.line.dtype) == ([1], np.int32, np.int32)
+
+
+@pytest.mark.parametrize("order", ["short last", "short first"])
+def test_tolerance_before_a_text_is_measured_on_its_own_line(read: Read, order: str) -> None:
+    """A point left of a text's first piece is near or far whatever text the file lists before."""
+    long, short = '1,"aaa\nbbb\nccc"\n', "2,aaa\n"
+    content = "item,text\n" + (long + short if order == "short last" else short + long)
+    text = 1 if order == "short last" else 0
+    got = read("words", content, tolerance_px=20)
+    points = [(190, 520), (190, 555), (195, 598), (190, 481), (185, 486), (179, 520)]
+    assert got.orders(points, text) == [1, 1, 0, 0, 0, 0]

@@ -37,7 +37,7 @@ factors = ["cue"]
 answer_correct = "ok"
 onset = "on"
 offset = "off"
-skip = {{ block = ["practice"] }}
+{skip}
 repeated = "{repeated}"
 [screen]
 width_px = 400
@@ -62,7 +62,10 @@ pear,fruit,3,200,0,300,100
 plum,who,1,0,0,200,100
 plum,fruit,2,200,0,300,100
 """
-TEXTS = {"pear": (("who", 100), ("verb", 200), ("fruit", 300)), "plum": (("who", 200), ("fruit", 300))}
+TEXTS = {
+    "pear": (("who", 100), ("verb", 200), ("fruit", 300)),
+    "plum": (("who", 200), ("fruit", 300)),
+}
 _LOOK = re.compile(r"(-?[\d.]+)(?:/(-?[\d.]+))?(?:@([\d.]+))?:([\d.]+)(b?)")
 
 
@@ -126,8 +129,10 @@ class Trial:
 def rows_to_log(trials: Sequence[Trial]) -> list[list[object]]:
     """The rows of one reader's log, session first."""
     return [
-        [t.who, t.session, t.number, t.item, n, look.onset_ms, look.duration_ms]
-        + [look.x_px, look.y_px, int(look.blink)]
+        [
+            *(t.who, t.session, t.number, t.item, n, look.onset_ms, look.duration_ms),
+            *(look.x_px, look.y_px, int(look.blink)),
+        ]
         for place, t in enumerate(trials)
         for looks in t.recordings(place)
         for n, look in enumerate(looks, start=1)
@@ -136,7 +141,10 @@ def rows_to_log(trials: Sequence[Trial]) -> list[list[object]]:
 
 def table(header: str, rows: Sequence[Sequence[object]]) -> str:
     """A CSV file as text."""
-    lines = [",".join(f"{cell:.12g}" if isinstance(cell, float) else str(cell) for cell in row) for row in rows]
+    lines = [
+        ",".join(f"{cell:.12g}" if isinstance(cell, float) else str(cell) for cell in row)
+        for row in rows
+    ]
     return "\n".join([header, *lines, ""])
 
 
@@ -159,6 +167,9 @@ def study(
             keys=keys,
             outside=outside,
             repeated=repeated,
+            skip='skip = { block = ["practice"] }'
+            if any(t.block == "practice" for t in trials)
+            else "# nothing is skipped",
         )
         + rules,
         "regions.csv": REGIONS,
@@ -226,7 +237,9 @@ class Built:
     def account(self, unit: str, who: str = "(all)") -> dict[str, int]:
         """One row of the accounts as numbers, zeros left out."""
         (row,) = (r for r in self.accounts if (r["participant"], r["unit"]) == (who, unit))
-        counts = {name: int(cell) for name, cell in row.items() if name not in ("participant", "unit")}
+        counts = {
+            name: int(cell) for name, cell in row.items() if name not in ("participant", "unit")
+        }
         return {name: count for name, count in counts.items() if count}
 
     def values(self, measure: str, region: str) -> dict[tuple[str, int], Any]:
@@ -258,5 +271,7 @@ def recorded_ms(trials: Sequence[Trial]) -> dict[tuple[str, int], float]:
     found = {}
     for who in {t.who for t in trials}:
         rows = rows_to_log([t for t in trials if t.who == who])
-        found |= {(f"logs/{who}.csv", line): float(row[6]) for line, row in enumerate(rows, start=2)}
+        found |= {
+            (f"logs/{who}.csv", line): float(row[6]) for line, row in enumerate(rows, start=2)
+        }
     return found

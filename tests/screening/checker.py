@@ -194,7 +194,9 @@ def accounts_are_those_of_the_tables(told: Published) -> Iterator[str]:
         counted[key[0], "trials"].update(["read", told.charge(key) or "kept"])
     for row in told.accounts[:-2]:
         own = counted[row["participant"], row["unit"]]
-        given = {name: int(cell) for name, cell in row.items() if name not in ("participant", "unit")}
+        given = {
+            name: int(cell) for name, cell in row.items() if name not in ("participant", "unit")
+        }
         if {name: n for name, n in given.items() if n} != dict(own):
             yield f"accounts of {row['unit']} of {row['participant']}: {given}, counted {dict(own)}"
 
@@ -218,7 +220,9 @@ def ledger_is_in_order(told: Published) -> Iterator[str]:
         if now < last:
             yield f"the ledger is out of order at {told.key(row)}"
         last = now
-        seen[tuple(row[name] for name in ("level", *told.ids, "region", "fixation", "observed"))] += 1
+        seen[
+            tuple(row[name] for name in ("level", *told.ids, "region", "fixation", "observed"))
+        ] += 1
     yield from (f"the ledger tells {thing} {n} times" for thing, n in seen.items() if n > 1)
 
 
@@ -226,12 +230,20 @@ def ledger_of_fixations_is_that_of_the_table(told: Published) -> Iterator[str]:
     """A row for each fixation left out by a rule of its own, with its line, and no other row."""
     own = ("repeated", *OF_FIXATIONS)
     expected = {
-        (*told.key(row), row["fixation"]): (row["left_out_by"], row["source_file"], row["source_line"])
+        (*told.key(row), row["fixation"]): (
+            row["left_out_by"],
+            row["source_file"],
+            row["source_line"],
+        )
         for row in told.fixations
         if row["left_out_by"] in own
     }
     given = {
-        (*told.key(row), int(row["fixation"])): (row["rule"], row["source_file"], int(row["source_line"]))
+        (*told.key(row), int(row["fixation"])): (
+            row["rule"],
+            row["source_file"],
+            int(row["source_line"]),
+        )
         for row in told.told("fixation")
     }
     for key in expected.keys() | given.keys():
@@ -299,10 +311,12 @@ AGAINST: Mapping[str, Callable[[Mapping[str, str]], bool]] = {
     "correct_share_under": lambda row: float(row["observed"]) < _limit(row),
     "lost_trials_share_over": lambda row: float(row["observed"]) > _limit(row),
     "fewest_trials_per_cell": lambda row: int(row["observed"]) < _limit(row),
-    "duration_ms": lambda row: not (
-        float(row["limit"].split(", ")[0])
-        <= float(row["observed"])
-        <= float(row["limit"].split(", ")[1])
+    "duration_ms": lambda row: (
+        not (
+            float(row["limit"].split(", ")[0])
+            <= float(row["observed"])
+            <= float(row["limit"].split(", ")[1])
+        )
     ),
 }
 
@@ -417,7 +431,9 @@ def outcomes_follow_from_kept_fixations(told: Published) -> Iterator[str]:
                     yield f"{thing} is an outlier and not in the ledger"
                 aside[thing] -= 1
             elif not _same(row, value, reason):
-                yield f"{key} {row['region']} {measure}: {row['value'] or row['missing']}, not {value or reason}"
+                given = row["missing"] if row["value"] is None else row["value"]
+                expected = reason if value is None else value
+                yield f"{key} {row['region']} {measure}: {given}, not {expected}"
     yield from (f"{thing} is in the ledger and not missing" for thing, n in aside.items() if n > 0)
 
 

@@ -1,7 +1,7 @@
 """All rules of screening for one reader, by loops over one trial at a time.
 
 The slow twin of the kernels, written from the definitions and not from the code; first passes are
-found by the naive reading of ``tests/measures/naive.py``. A rule that is not among the rules is off.
+found by the naive reading of ``tests/measures/naive.py``. A rule that is not named is off.
 """
 
 from __future__ import annotations

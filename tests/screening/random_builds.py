@@ -4,7 +4,9 @@ from __future__ import annotations
 
 import shutil
 from collections.abc import Sequence
+from contextlib import nullcontext
 from pathlib import Path
+from unittest.mock import patch
 
 import etl
 from tests.screening.building import Built, Trial, build, study
@@ -12,9 +14,17 @@ from tests.screening.strategies import Lab, Rules, usable
 
 
 def built_study(
-    folder: Path, lab: Lab, rules: Rules, *, trials: Sequence[Trial] | None = None
+    folder: Path,
+    lab: Lab,
+    rules: Rules,
+    *,
+    trials: Sequence[Trial] | None = None,
+    page: bool = False,
 ) -> Built | None:
-    """Build a random study; None where nothing is left of it, which is an error of its own."""
+    """Build a random study; None where nothing is left of it, which is an error of its own.
+
+    The audit page takes most of the time and is left out unless asked for.
+    """
     shutil.rmtree(folder, ignore_errors=True)
     file = study(
         folder,
@@ -24,7 +34,8 @@ def built_study(
         repeated="first",
     )
     try:
-        return build(file)
+        with nullcontext() if page else patch("etl.session.run.write_audit"):
+            return build(file)
     except etl.DataError as nothing:
         said = str(nothing)
         assert "leaves no trial of any reader" in said or "no trial is left" in said, said

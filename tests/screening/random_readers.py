@@ -10,8 +10,8 @@ from etl.parsers import CanonicalLog
 from etl.regions import RegionLibrary
 from etl.screening import Limits
 from etl.screening.rules import LEFT_OUT_BY
-from etl.session.one_reader import Options
 from etl.session.ordering import OrderedFixations
+from etl.session.reader import Options
 from etl.session.screening import Unscreened
 from tests.screening import naive_screening as naive
 
@@ -165,7 +165,9 @@ def unscreened(reader: naive.Reader, texts: list[int]) -> Unscreened:
 
 def options(rules: dict[str, object], outside: str) -> Options:
     """The rules as the program has them."""
-    given = {name: rules[name] for name in ("first", "last", "under_ms", "over_ms") if name in rules}
+    given = {
+        name: rules[name] for name in ("first", "last", "under_ms", "over_ms") if name in rules
+    }
     for name in ("fewest_fixations", "outside_share_over", "duration_ms", *naive.READER_RULES[1:]):
         if name in rules:
             given[name] = rules[name]
@@ -179,4 +181,4 @@ def options(rules: dict[str, object], outside: str) -> Options:
         first_pass_regions=tuple(rules.get("no_first_pass_on", ())),
         **given,
     )
-    return Options("first", outside, "missing", limits)
+    return Options("first", outside, "missing", limits, None)

@@ -59,7 +59,9 @@ class Rules:
     def __str__(self) -> str:
         lines = []
         for name in TABLES:
-            own = [f"{key} = {limit}" for (table, key), limit in self.limits.items() if table == name]
+            own = [
+                f"{key} = {limit}" for (table, key), limit in self.limits.items() if table == name
+            ]
             lines += [f"[screening.{name}]", *own]
         return "\n".join([*lines, ""])
 
@@ -77,7 +79,11 @@ def rules(draw: st.DrawFn) -> Rules:
     """Each rule is on or off; those for trials and readers are on less often."""
     limits = {}
     for table, keys in TABLES.items():
-        often = st.booleans() if table in ("fixations", "values") else st.integers(0, 3).map(lambda n: n == 0)
+        often = (
+            st.booleans()
+            if table in ("fixations", "values")
+            else st.integers(0, 3).map(lambda n: n == 0)
+        )
         for key, limit in keys.items():
             if draw(often):
                 limits[table, key] = draw(limit)

@@ -52,9 +52,7 @@ def screened_twice(seed: int) -> Both:
     reasons = (before.trials.skipped_by, before.trials.notes, before.note)
     first_row = np.searchsorted(before.ordered.trial, np.arange(len(texts)))
     entries = entries_of(told, options(rules, outside).limits, reasons, first_row)
-    ledger = [
-        (e.level, e.trial + 1, max(e.fixation, 0), e.rule, e.action, e.also) for e in entries
-    ]
+    ledger = [(e.level, e.trial + 1, max(e.fixation, 0), e.rule, e.action, e.also) for e in entries]
     naive.screen(reader, rules, SCREEN_PX, outside)
     return Both(rules, told, reader, ledger, seed)
 

@@ -70,13 +70,13 @@ def test_sound_study_has_no_contradiction(sound: Built, logs: bool) -> None:
     }
 
 
-@settings(max_examples=60, deadline=None, suppress_health_check=list(HealthCheck))
+@settings(max_examples=40, deadline=None, suppress_health_check=list(HealthCheck))
 @given(labs(), rules())
 def test_random_study_has_no_contradiction(
     tmp_path_factory: pytest.TempPathFactory, lab: Lab, given_rules: Rules
 ) -> None:
     """Whatever the study and the rules."""
-    done = built_study(tmp_path_factory.mktemp("random"), lab, given_rules)
+    done = built_study(tmp_path_factory.mktemp("random"), lab, given_rules, page=True)
     assume(done is not None)
     assert contradictions(Published(done.folder, recorded_ms(lab.trials))) == []
 
@@ -124,7 +124,11 @@ def first(rows: list[dict[str, Any]], **wanted: Any) -> dict[str, Any]:
 
 def add(row: dict[str, Any], column: str, amount: float) -> None:
     """Change a number, be it text or not."""
-    row[column] = type(row[column])(float(row[column]) + amount) if not isinstance(row[column], str) else str(int(row[column]) + int(amount))
+    row[column] = (
+        type(row[column])(float(row[column]) + amount)
+        if not isinstance(row[column], str)
+        else str(int(row[column]) + int(amount))
+    )
 
 
 def move(row: dict[str, Any], one: str, other: str) -> None:
@@ -305,7 +309,9 @@ PLANTED: dict[str, tuple[Callable[[Path], None], str]] = {
         "who fixation_count: 7.0",
     ),
     "a reason that is another": (
-        edit_table("outcomes", lambda rows: first(rows, missing="skipped").update(missing="refixated")),
+        edit_table(
+            "outcomes", lambda rows: first(rows, missing="skipped").update(missing="refixated")
+        ),
         "refixated, not skipped",
     ),
     "an outlier that is none": (

@@ -40,9 +40,9 @@ def paper(tmp_path_factory: pytest.TempPathFactory) -> Built:
 def test_every_rule_in_order_on_a_trial_worked_by_hand(paper: Built) -> None:
     """Each fixation of the first trial goes by the first rule against it.
 
-    ===  =====  ====  ====  =========================================================================
+    ===  =====  ====  ====  ======================================================================
       n  onset  ms    x     on paper
-    ===  =====  ====  ====  =========================================================================
+    ===  =====  ====  ====  ======================================================================
       1    900   180    50  begins before the text (1000): ``outside_text_time``, though also first
       2   1100   200    50  kept; takes in 3: 260 ms
       3   1320    60    60  60 < 80 and 10 px from 2: merged into 2
@@ -56,7 +56,7 @@ def test_every_rule_in_order_on_a_trial_worked_by_hand(paper: Built) -> None:
      11   3300   900   150  900 > 800: ``over_ms``
      12   5000   100    50  begins with the end of the text, not after it; is not the last: kept
      13   5200   100    50  begins after the text (5000): ``outside_text_time``, though also last
-    ===  =====  ====  ====  =========================================================================
+    ===  =====  ====  ====  ======================================================================
     """
     assert paper.fates() == [
         *("outside_text_time", "260", "merge", "off_screen", "merge", "blink", "370", "under_ms"),
@@ -75,8 +75,16 @@ def test_accounts_of_the_two_trials(paper: Built) -> None:
     2 over; kept are 2, 7 and 12 of the first trial, and two of the second: 5.
     """
     assert paper.account("fixations") == {
-        **{"read": 17, "outside_text_time": 2, "off_screen": 1, "first": 1, "last": 1},
-        **{"blink": 1, "merge": 3, "under_ms": 1, "over_ms": 2, "kept": 5},
+        "read": 17,
+        "outside_text_time": 2,
+        "off_screen": 1,
+        "first": 1,
+        "last": 1,
+        "blink": 1,
+        "merge": 3,
+        "under_ms": 1,
+        "over_ms": 2,
+        "kept": 5,
     }
     assert paper.account("trials") == {"read": 2, "kept": 2}
 
@@ -178,7 +186,9 @@ def test_times_of_the_text_may_have_a_decimal_comma(tmp_path: Path, on: str, off
 
 def test_place_that_is_not_known_is_on_no_side_of_the_screen(tmp_path: Path) -> None:
     """``off_screen`` does not judge a fixation without a position."""
-    file = study(tmp_path, [Trial("R1", 1, "50:200 50:201")], "[screening.fixations]\noff_screen = true\n")
+    file = study(
+        tmp_path, [Trial("R1", 1, "50:200 50:201")], "[screening.fixations]\noff_screen = true\n"
+    )
     log = tmp_path / "logs" / "R1.csv"
     text = log.read_text(encoding="utf-8").replace(",200,50,25,", ",200,NA,NA,")
     log.write_text(text, encoding="utf-8", newline="\n")
@@ -186,11 +196,11 @@ def test_place_that_is_not_known_is_on_no_side_of_the_screen(tmp_path: Path) -> 
 
 
 def test_rule_that_is_off_has_no_column_and_no_row(tmp_path: Path) -> None:
-    """Accounts have a column for each rule that is on, in order, besides skip; no other."""
+    """Accounts have a column for each rule that is on, in order, and for no other."""
     rules = "[screening.fixations]\nover_ms = 800\nunder_ms = 80\nfirst = false\n"
     built = build(study(tmp_path, [Trial("R1", 1, "50:60 50:201")], rules))
     header = (built.folder / "accounts.csv").read_text(encoding="utf-8").splitlines()[0]
-    assert header == "participant,unit,read,skip,under_ms,over_ms,kept"
+    assert header == "participant,unit,read,under_ms,over_ms,kept"
     assert built.told("fixation", "rule") == [("under_ms",)]
 
 
@@ -217,6 +227,12 @@ def test_places_are_counted_in_the_recording_that_is_used(
     built = build(study(tmp_path, trials, rules, repeated=which))
     one, other = ["first", f"{[202, 205][used]}", "last"], ["repeated"] * 3
     assert built.fates() == (one + other if used == 0 else other + one)
-    assert built.account("fixations") == {"read": 6, "repeated": 3, "first": 1, "last": 1, "kept": 1}
-    repeated = [r for r in built.told("fixation", "rule", "limit", "observed", "action", "also")]
+    assert built.account("fixations") == {
+        "read": 6,
+        "repeated": 3,
+        "first": 1,
+        "last": 1,
+        "kept": 1,
+    }
+    repeated = built.told("fixation", "rule", "limit", "observed", "action", "also")
     assert repeated.count(("repeated", which, "1", "left out", "")) == 3

@@ -189,6 +189,8 @@ def test_log_without_y_is_merged_by_x(tmp_path: Path) -> None:
     """Where the log has no y at all (texts of one line), x alone decides."""
     file = study(tmp_path, [Trial("R1", 1, "100/10:200 110/90:50")], RULES)
     text = file.read_text(encoding="utf-8")
-    text = text.replace('y = "y"\n', "").replace('kind = "boxes"', 'kind = "boxes"\nvertical = "any"')
+    text = text.replace('y = "y"\n', "").replace(
+        'kind = "boxes"', 'kind = "boxes"\nvertical = "any"'
+    )
     file.write_text(text, encoding="utf-8", newline="\n")
     assert build(file).fates() == ["250", "merge"]

@@ -45,7 +45,8 @@ def test_balance_holds(folder: Path, lab: Lab, given_rules: Rules) -> None:
         for who in (row["participant"], "(all)"):
             read[who, "fixations"] += 1
             kept[who, "fixations"] += row["kept"]
-    for who, trial in {(r["participant"], (r.get("session"), r["trial"])) for r in done.fixations}:
+    trials = {(row["participant"], row.get("session"), row["trial"]) for row in done.fixations}
+    for who, *_ in trials:
         read.update([(who, "trials"), ("(all)", "trials")])
     for who, _ in done.trials():
         kept.update([(who, "trials"), ("(all)", "trials")])
@@ -85,7 +86,11 @@ def test_rule_changes_nothing_that_an_earlier_one_is_charged_for(
     one = built_study(folder / "without", lab, without)
     other = built_study(folder / "with", lab, with_it)
     assume(one is not None and other is not None)
-    before = [name for place, name in NAMES.items() if everything().index(place) < everything().index(new[0])]
+    before = [
+        name
+        for place, name in NAMES.items()
+        if everything().index(place) < everything().index(new[0])
+    ]
     columns = [name for name in ("read", "skip", "repeated", *before) if name in one.accounts[0]]
     assert columns == [name for name in other.accounts[0] if name in columns]
     for mine, theirs in zip(one.accounts, other.accounts, strict=True):
@@ -160,7 +165,9 @@ def blinks_as_used(done: Built, lab: Lab) -> dict[tuple[str, int], bool]:
     found = {}
     for who in {t.who for t in lab.trials}:
         rows = rows_to_log([t for t in lab.trials if t.who == who])
-        found |= {(f"logs/{who}.csv", line): bool(row[-1]) for line, row in enumerate(rows, start=2)}
+        found |= {
+            (f"logs/{who}.csv", line): bool(row[-1]) for line, row in enumerate(rows, start=2)
+        }
     lines = {}
     for row in done.fixations:
         trial = row["participant"], row.get("session"), row["trial"]
@@ -178,9 +185,11 @@ def kept_log(done: Built, lab: Lab, who: str) -> str:
     """The log of what was kept of a reader, durations and onsets as used, numbers as they were."""
     blinks = blinks_as_used(done, lab)
     rows: Sequence[list[object]] = [
-        [r["participant"], r.get("session", ""), r["trial"], r["item"], r["fixation"]]
-        + [r["onset_ms"], r["duration_ms"], r["x_px"], r["y_px"]]
-        + [int(blinks[r["source_file"], r["source_line"]])]
+        [
+            *(r["participant"], r.get("session", ""), r["trial"], r["item"], r["fixation"]),
+            *(r["onset_ms"], r["duration_ms"], r["x_px"], r["y_px"]),
+            int(blinks[r["source_file"], r["source_line"]]),
+        ]
         for r in done.fixations
         if r["kept"] and r["participant"] == who
     ]

@@ -14,7 +14,9 @@ from tests.screening.building import Built, Trial, build, study
 GOOD, SHORT = "50:200 150:200 250:200", "50:200"
 
 
-def reader(who: str, answers: str, cues: str = "", looks: Mapping[int, str] | None = None) -> list[Trial]:
+def reader(
+    who: str, answers: str, cues: str = "", looks: Mapping[int, str] | None = None
+) -> list[Trial]:
     """A reader's trials: an answer each (``-``: no question), the cue's first letter each.
 
     ``looks`` says what is read in single trials, from 1.
@@ -66,7 +68,10 @@ def test_lost_trials_share(tmp_path: Path) -> None:
     done = build(study(tmp_path, trials, rules + RULE + "lost_trials_share_over = 0.3\n"))
     assert readers_lost(done) == {"R2": ("lost_trials_share_over", "0.3", "0.3333333333")}
     assert done.account("trials") == {
-        **{"read": 16, "fewest_fixations": 4, "lost_trials_share_over": 2, "kept": 10}
+        "read": 16,
+        "fewest_fixations": 4,
+        "lost_trials_share_over": 2,
+        "kept": 10,
     }
 
 
@@ -79,7 +84,10 @@ def test_skipped_trials_are_no_trials_read(tmp_path: Path) -> None:
     done = build(study(tmp_path, trials, rules + limits))
     assert readers_lost(done) == {"R1": ("lost_trials_share_over", "0.3", "0.3333333333")}
     assert done.account("trials", "R1") == {
-        **{"read": 4, "skip": 1, "fewest_fixations": 1, "lost_trials_share_over": 2}
+        "read": 4,
+        "skip": 1,
+        "fewest_fixations": 1,
+        "lost_trials_share_over": 2,
     }
 
 
@@ -133,7 +141,9 @@ def test_trial_of_a_lost_reader_tells_the_rules_against_the_reader(tmp_path: Pat
     """A trial, and a fixation, that went by rules of their own would have gone with the reader."""
     looks = {2: SHORT, 3: GOOD + " 50:60"}
     trials = [*reader("R1", "000", looks=looks), *reader("R2", "111")]
-    rules = "[screening.fixations]\nunder_ms = 80\n[screening.trials]\nfewest_fixations = 3\n" + RULE
+    rules = (
+        "[screening.fixations]\nunder_ms = 80\n[screening.trials]\nfewest_fixations = 3\n" + RULE
+    )
     limits = "correct_share_under = 0.5\nlost_trials_share_over = 0.3\n"
     done = build(study(tmp_path, trials, rules + limits))
     both = "correct_share_under lost_trials_share_over"
@@ -145,7 +155,10 @@ def test_trial_of_a_lost_reader_tells_the_rules_against_the_reader(tmp_path: Pat
     assert done.fates() == ["correct_share_under"] * 3
     assert done.fates(trial=2) == ["fewest_fixations"]
     assert done.account("fixations", "R1") == {
-        **{"read": 8, "under_ms": 1, "fewest_fixations": 1, "correct_share_under": 6}
+        "read": 8,
+        "under_ms": 1,
+        "fewest_fixations": 1,
+        "correct_share_under": 6,
     }
 
 
@@ -160,7 +173,7 @@ def with_verbs(who: str, times_ms: tuple[int, ...]) -> list[Trial]:
 
 @pytest.fixture(scope="module")
 def outlying(tmp_path_factory: pytest.TempPathFactory) -> Built:
-    """A reader with one long look at the verb; one who always looks so long; one with two trials."""
+    """A reader with one long look at the verb, one who always looks so long, one of two trials."""
     trials = [
         *with_verbs("R1", TIMES_MS),
         *with_verbs("R2", (890, 900, 910)),
@@ -179,8 +192,12 @@ def test_value_far_from_the_mean_of_reader_and_region_is_set_missing(outlying: B
     assert (round(middle, 1), round(spread, 1)) == (316.7, 285.9)
     assert outlying.values("first_fixation_duration", "verb") == {
         **{("R1", n): ms for n, ms in enumerate(TIMES_MS[:5], start=1)},
-        **{("R1", 6): "outlier", ("R2", 1): 890, ("R2", 2): 900, ("R2", 3): 910},
-        **{("R3", 1): 200, ("R3", 2): 2000},
+        ("R1", 6): "outlier",
+        ("R2", 1): 890,
+        ("R2", 2): 900,
+        ("R2", 3): 910,
+        ("R3", 1): 200,
+        ("R3", 2): 2000,
     }
 
 
@@ -214,7 +231,10 @@ def test_binary_outcomes_and_counts_are_never_set_aside(outlying: Built) -> None
 def test_values_set_aside_leave_accounts_and_trials_alone(outlying: Built) -> None:
     """Values are no fixations: nothing is left out, and the trial has its reading time."""
     assert outlying.account("fixations") == {"read": 33, "kept": 33}
-    times = {(r["participant"], r["trial"]): r["reading_time"] for r in rows_of(outlying.folder, "trials")}
+    times = {
+        (r["participant"], r["trial"]): r["reading_time"]
+        for r in rows_of(outlying.folder, "trials")
+    }
     assert times["R1", 6] == 1300
 
 

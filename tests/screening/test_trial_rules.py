@@ -17,7 +17,9 @@ def lost(folder: Path, rule: str, *looks: str, before: str = "", **more: str) ->
     done = build(study(folder, trials, f"{before}{HEADER}{rule}\n"))
     told = done.lost_trials()
     assert set(told.values()) <= {rule.partition(" ")[0]}
-    assert [n for _, n in done.trials()] == [n for n in range(1, len(looks) + 1) if ("R1", n) not in told]
+    assert [n for _, n in done.trials()] == [
+        n for n in range(1, len(looks) + 1) if ("R1", n) not in told
+    ]
     return [n for _, n in told]
 
 
@@ -29,10 +31,15 @@ def test_fewest_fixations_counts_kept_ones_in_and_outside_regions(tmp_path: Path
 
 
 def test_outside_share_is_of_kept_fixations(tmp_path: Path) -> None:
-    """3 of 10 is not above 0.3; 1 of 3 is; 1 of 4 is not once a short one inside is gone: 1 of 3."""
+    """3 of 10 is not above 0.3; 1 of 3 is; 1 of 4 is once a short one inside is gone."""
     before = "[screening.fixations]\nunder_ms = 80\n"
     ten = " ".join(["350:200"] * 3 + ["50:200"] * 7)
-    looks = (ten, "350:200 50:200 50:200", "350:200 50:200 50:200 50:200", "350:200 50:200 50:60 50:200")
+    looks = (
+        ten,
+        "350:200 50:200 50:200",
+        "350:200 50:200 50:200 50:200",
+        "350:200 50:200 50:60 50:200",
+    )
     assert lost(tmp_path, "outside_share_over = 0.3", *looks, before=before) == [2, 4]
 
 
@@ -164,7 +171,9 @@ def test_ledger_repeats_the_notes(noted: Built) -> None:
         ("R1", "2", "notes", "notes.csv", "sneezed; and laughed"),
         ("R1", "3", "notes", "notes.csv", "no reason given"),
     ]
-    assert noted.told("participant", *columns) == [("R2", "", "participant_notes", "notes.csv", "asleep")]
+    assert noted.told("participant", *columns) == [
+        ("R2", "", "participant_notes", "notes.csv", "asleep")
+    ]
 
 
 EVERY_RULE = """
@@ -210,7 +219,12 @@ def test_first_rule_against_a_trial_is_charged_and_later_ones_are_told(ordered: 
         ("4", "blink_in_first_pass_of", "1", "answer_wrong"),
         ("5", "duration_ms", "340", "no_first_pass_on answer_wrong"),
         ("6", "outside_share_over", "0.3333333333", "duration_ms no_first_pass_on answer_wrong"),
-        ("7", "fewest_fixations", "2", "outside_share_over duration_ms no_first_pass_on answer_wrong"),
+        (
+            "7",
+            "fewest_fixations",
+            "2",
+            "outside_share_over duration_ms no_first_pass_on answer_wrong",
+        ),
         (
             *("8", "notes", "sneezed"),
             "fewest_fixations outside_share_over duration_ms no_first_pass_on answer_wrong",
@@ -219,7 +233,9 @@ def test_first_rule_against_a_trial_is_charged_and_later_ones_are_told(ordered: 
     ]
 
 
-def test_fixation_left_out_by_its_own_rule_tells_the_rules_against_its_trial(ordered: Built) -> None:
+def test_fixation_left_out_by_its_own_rule_tells_the_rules_against_its_trial(
+    ordered: Built,
+) -> None:
     """The fixation of 60 ms in trial 8 would have gone with its trial too."""
     assert ordered.told("fixation", "trial", "fixation", "rule", "also") == [
         (
@@ -234,16 +250,27 @@ def test_fixations_of_a_lost_trial_are_charged_to_its_rule(ordered: Built) -> No
     assert ordered.fates(trial=8) == ["notes", "notes", "under_ms"]
     assert ordered.fates(trial=7) == ["fewest_fixations"] * 2
     assert ordered.account("fixations") == {
-        **{"read": 26, "under_ms": 1, "notes": 5, "fewest_fixations": 2, "outside_share_over": 3},
-        **{"duration_ms": 3, "blink_in_first_pass_of": 3, "no_first_pass_on": 3},
-        **{"answer_wrong": 3, "kept": 3},
+        "read": 26,
+        "under_ms": 1,
+        "notes": 5,
+        "fewest_fixations": 2,
+        "outside_share_over": 3,
+        "duration_ms": 3,
+        "blink_in_first_pass_of": 3,
+        "no_first_pass_on": 3,
+        "answer_wrong": 3,
+        "kept": 3,
     }
 
 
 def test_ledger_shows_limits_as_the_study_has_them(ordered: Built) -> None:
     """Each rule with its limit."""
     assert dict(ordered.told("trial", "rule", "limit")) == {
-        **{"notes": "notes.csv", "fewest_fixations": "3", "outside_share_over": "0.3"},
-        **{"duration_ms": "500, 1000", "blink_in_first_pass_of": "verb"},
-        **{"no_first_pass_on": "verb", "answer_wrong": "true"},
+        "notes": "notes.csv",
+        "fewest_fixations": "3",
+        "outside_share_over": "0.3",
+        "duration_ms": "500, 1000",
+        "blink_in_first_pass_of": "verb",
+        "no_first_pass_on": "verb",
+        "answer_wrong": "true",
     }

@@ -329,6 +329,24 @@ line_height_px = 60
 space = "following"               # the space before a word belongs to that word
 direction = "ltr"
 
+# ---- What is left out, in this order; everything that is stands in the ledger -----------------
+[screening.fixations]
+outside_text_time = true          # before the sentence came up, or after it went away
+off_screen = true
+blink = "drop"                    # a fixation that a blink touches
+merge = { under_ms = 80, within_characters = 1 }   # a short one joins a neighbour that near
+under_ms = 80
+over_ms = 800
+
+[screening.trials]
+notes = "notes.csv"               # the experimenter's own
+fewest_fixations = 3
+outside_share_over = 0.30         # share of a trial's fixations that hit no region
+
+[screening.participants]
+correct_share_under = 0.75        # share of questions answered rightly
+lost_trials_share_over = 0.30
+
 # ---- What is wanted ------------------------------------------------------------------------
 [measures]
 outcomes = ["binary", "count", "duration"]
