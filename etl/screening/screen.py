@@ -87,6 +87,7 @@ def screen_fixations(
     Returns
     -------
     FixationScreening
+        What is kept, by which rule the rest is left out, and onsets and durations after merging.
     """
     came, went = (times[recorded.trial] for times in text_time_ms)
     screened = FixationScreening(
@@ -220,6 +221,7 @@ def screen_trials(trials: TrialQuantities, limits: Limits) -> Verdict:
     Returns
     -------
     Verdict
+        Of the length of the reader's trials.
     """
     with np.errstate(invalid="ignore"):
         share = np.where(trials.kept > 0, trials.outside / np.maximum(trials.kept, 1), 0.0)

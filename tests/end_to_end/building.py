@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import shutil
 from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
@@ -57,10 +58,17 @@ def write(folder: Path, files: Mapping[str, str]) -> Path:
     return folder / "study.toml"
 
 
-def copied_sample(name: str, root: Path, changes: Mapping[str, str] | None = None) -> Path:
+#: The rules of screening in a study file, up to the next table or its heading.
+_RULES = re.compile(r"^\[screening.*?(?=^# ----|^\[(?!screening))", re.MULTILINE | re.DOTALL)
+
+
+def copied_sample(
+    name: str, root: Path, changes: Mapping[str, str] | None = None, *, rules: str | None = ""
+) -> Path:
     """Copy a sample study with its region definitions below a folder; gives its study file.
 
     ``changes`` maps texts of the study file to what takes their place; each must be there.
+    ``rules`` take the place of its screening, by default none; with None it is as committed.
     """
     folder = root / "sample_logs" / name
     leave_out = shutil.ignore_patterns("out")
@@ -72,6 +80,8 @@ def copied_sample(name: str, root: Path, changes: Mapping[str, str] | None = Non
     for old, new in (changes or {}).items():
         assert text.count(old) == 1, f"{old!r} must stand in the study file once"
         text = text.replace(old, new)
+    if rules is not None:
+        text = _RULES.sub("", text) + rules
     study_file.write_text(text, encoding="utf-8", newline="\n")
     return study_file
 
@@ -83,20 +93,17 @@ def build(study_file: Path, into: Path | None = None, *, workers: int = 1) -> et
 
 @dataclass(frozen=True)
 class Sample:
-    """A sample study as committed, built, with the truth about it.
+    """A sample study as committed but for its screening, built, with the truth about it.
 
-    ``places`` tells at which line of which log the simulator wrote each fixation.
+    ``folder`` is where the study file is; ``places`` tells at which line of which log the
+    simulator wrote each fixation.
     """
 
     name: str
+    folder: Path
     truth: SimulatedStudy
     places: Places
     result: etl.Result
-
-    @property
-    def folder(self) -> Path:
-        """Where the study file is."""
-        return PROJECT / "sample_logs" / self.name
 
     @cached_property
     def tables(self) -> dict[str, list[Row]]:

@@ -10,6 +10,7 @@ import pytest
 
 import etl
 from tests.end_to_end.building import (
+    PROJECT,
     PUBLISHED_WITH_CSV,
     Sample,
     build,
@@ -83,13 +84,6 @@ class Screened:
         return Published(self.result.folder, {place: durations[key] for key, place in places})
 
 
-def with_rules(study_file: Path, rules: str) -> Path:
-    """Add rules at the end of a study file."""
-    text = study_file.read_text(encoding="utf-8")
-    study_file.write_text(text + rules, encoding="utf-8", newline="\n")
-    return study_file
-
-
 @pytest.fixture(scope="module")
 def screened(tmp_path_factory: pytest.TempPathFactory) -> Callable[[Sample], Screened]:
     """Builds a sample under full screening, once."""
@@ -98,7 +92,7 @@ def screened(tmp_path_factory: pytest.TempPathFactory) -> Callable[[Sample], Scr
     def screen(sample: Sample) -> Screened:
         if sample.name not in done:
             root = tmp_path_factory.mktemp(f"screened-{sample.name}")
-            study_file = with_rules(copied_sample(sample.name, root), RULES[sample.name])
+            study_file = copied_sample(sample.name, root, rules=RULES[sample.name])
             done[sample.name] = Screened(sample, build(study_file, root / "built"), study_file)
         return done[sample.name]
 
@@ -112,9 +106,25 @@ def test_checker_finds_no_contradiction(
     assert contradictions(screened(sample).published) == []
 
 
-def test_unscreened_sample_has_no_contradiction_either(sample: Sample) -> None:
-    """As committed, whatever screening its study file names."""
+def test_sample_without_screening_has_no_contradiction_either(sample: Sample) -> None:
+    """Trials that are skipped are all that is left out."""
     assert contradictions(Published(sample.result.folder)) == []
+
+
+@pytest.mark.parametrize("name", ["orchard", "passages"])
+def test_sample_as_committed_has_no_contradiction(tmp_path: Path, name: str) -> None:
+    """With the rules that the committed study file itself names."""
+    study_file = PROJECT / "sample_logs" / name / "study.toml"
+    assert contradictions(Published(build(study_file, tmp_path / "built").folder)) == []
+
+
+def test_place_of_the_study_changes_no_byte(
+    sample: Sample, screened: Callable[[Sample], Screened], tmp_path: Path
+) -> None:
+    """Warnings about rules are the same on the page and elsewhere, wherever the study lies."""
+    study_file = copied_sample(sample.name, tmp_path / "Bäume [2]", rules=RULES[sample.name])
+    again = build(study_file, tmp_path / "built")
+    assert tables_of(again.folder) == tables_of(screened(sample).result.folder)
 
 
 def test_rules_find_something_to_leave_out(

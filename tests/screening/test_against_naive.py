@@ -2,19 +2,21 @@
 
 from __future__ import annotations
 
+import statistics
 from collections import Counter
 from dataclasses import dataclass
 
 import numpy as np
 import pytest
 
-from etl.screening import LEFT_OUT_BY
+from etl.screening import LEFT_OUT_BY, outlying
 from etl.screening.ledger import Accounts, Screened, entries_of
 from etl.screening.rules import FIXATION_RULES, READER_RULES, TRIAL_RULES
 from etl.session.screening import screen
 from tests.screening import naive_screening as naive
 from tests.screening.random_readers import (
     LIBRARY,
+    NAN,
     SCREEN_PX,
     options,
     random_reader,
@@ -175,6 +177,25 @@ def test_accounts(readers: list[Both]) -> None:
 def test_ledger(readers: list[Both]) -> None:
     """Row by row the same thing, rule, action and later rules, in the same order."""
     assert not different(readers, lambda both: both.ledger, lambda both: naive.ledger(both.slow))
+
+
+def test_outlying_values() -> None:
+    """Far values of random groups are those that Python's own statistics finds."""
+    rng = np.random.default_rng(7)
+    far = 0
+    for _ in range(500):
+        values = rng.choice([NAN, 150.0, 200.0, 210.0, 250.0, 900.0], rng.integers(0, 30))
+        group = rng.integers(0, 4, len(values)).astype(np.int32)
+        limit = float(rng.choice([0.5, 1.0, 1.5, 2.0]))
+        expected = []
+        for value, own in zip(values, group, strict=True):
+            rest = [v for v, g in zip(values, group, strict=True) if g == own and v == v]
+            known = value == value and len(rest) >= 3
+            apart = abs(value - statistics.mean(rest)) if known else 0
+            expected.append(known and apart > limit * statistics.stdev(rest))
+        assert outlying(values, group, limit).tolist() == expected
+        far += sum(expected)
+    assert far > 500
 
 
 def test_random_readers_are_worth_comparing(readers: list[Both]) -> None:

@@ -201,6 +201,22 @@ def test_value_far_from_the_mean_of_reader_and_region_is_set_missing(outlying: B
     }
 
 
+def test_spread_is_that_of_a_sample(tmp_path: Path) -> None:
+    """900 is 2.04 sample deviations from the mean of the six, but 2.24 with all six divided by."""
+    rules = "[screening.values]\noutlier_sd = 2.1\n"
+    done = build(study(tmp_path, with_verbs("R1", TIMES_MS), rules))
+    assert done.told("value", "trial") == []
+
+
+def test_two_values_are_too_few(tmp_path: Path) -> None:
+    """Of two values each is 0.7 deviations from the mean; three are needed to say what is far."""
+    rules = "[screening.values]\noutlier_sd = 0.5\n"
+    two = build(study(tmp_path / "two", with_verbs("R1", (200, 2000)), rules))
+    three = build(study(tmp_path / "three", with_verbs("R1", (200, 2000, 1100)), rules))
+    assert two.told("value", "trial") == []
+    assert {trial for (trial,) in three.told("value", "trial")} >= {"1", "2"}
+
+
 def test_each_duration_is_judged_for_itself(outlying: Built) -> None:
     """In the same trial, each duration of the verb that is 900 ms is far off, and no other."""
     told = outlying.told("value", "participant", "trial", "region", "rule", "limit", "observed")
