@@ -16,9 +16,11 @@ from etl.export.rows import TrialColumns
 from etl.files import Coded, group_rows, number_of
 from etl.measures import MEASURES, REASONS, TRIAL_MEASURES, Measure, select
 from etl.parsers import LogReader
+from etl.regions import RegionLibrary
 from etl.report import LineGrid, NotRecorded
 from etl.screening.ledger import columns_of_accounts
 from etl.screening.rules import OUTLIER
+from etl.session.kept_logs import Shelf
 from etl.session.notices import notice_similar_readers, notice_what_is_missing
 from etl.session.plan import Plan
 from etl.session.reader import Options
@@ -44,6 +46,10 @@ class Gathered:
         What the study's tables have in common.
     options : Options
         Its decisions.
+    library : RegionLibrary
+        Its texts.
+    shelf : Shelf
+        Where fixations may have been put aside.
     tasks : list of ReaderTask
         The readers, in the order of the tables.
     notes : list of Notes
@@ -54,30 +60,40 @@ class Gathered:
 
     design: TableDesign
     options: Options
+    library: RegionLibrary
+    shelf: Shelf
     tasks: list[ReaderTask]
     notes: list[Notes]
     unrecorded: list[NotRecorded]
+
+    def bench(self) -> tuple[TableDesign, RegionLibrary, Options, Shelf]:
+        """What the work on readers needs."""
+        return self.design, self.library, self.options, self.shelf
 
 
 def read_logs(
     logs: tuple[tuple[Path, str], ...],
     reader: LogReader,
-    kept: Path,
+    kept: tuple[Path, Shelf],
     workers: int,
     progress: Progress,
 ) -> list[LogAnswer]:
-    """Read all logs and put their fixations aside in the folder ``kept``."""
+    """Read all logs and put their fixations aside, in a folder or on a shelf."""
+    folder, shelf = kept
     tasks = [
-        LogTask(path, shown, kept / f"{number}.arrow") for number, (path, shown) in enumerate(logs)
+        LogTask(path, shown, folder / f"{number}.arrow")
+        for number, (path, shown) in enumerate(logs)
     ]
     answers = []
-    for answer in map_tasks(LogWork, (reader,), tasks, workers):
+    for answer in map_tasks(LogWork, (reader, shelf), tasks, workers):
         answers.append(answer)
         progress("reading logs", len(answers), len(tasks))
     return answers
 
 
-def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings) -> Gathered | None:
+def gather(
+    plan: Plan, answers: list[LogAnswer], kept: tuple[Path, Shelf], findings: Findings
+) -> Gathered | None:
     """Join facts and texts to every trial that the logs show.
 
     Parameters
@@ -86,7 +102,7 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
         The study's tables and texts.
     answers : list of LogAnswer
         What each log holds, in the order of the plan's logs.
-    kept : Path
+    kept : tuple of Path and Shelf
         Where their fixations were put aside.
     findings : Findings
         Where trials without facts or texts are recorded.
@@ -100,7 +116,7 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
     parts: dict[str, list[tuple[Path, int, int]]] = {}
     for number, answer in enumerate(answers):
         for participant, batch in answer.batches.items():
-            parts.setdefault(participant, []).append((kept / f"{number}.arrow", batch, number))
+            parts.setdefault(participant, []).append((kept[0] / f"{number}.arrow", batch, number))
     every = [
         replace(answer.trials, file=answer.trials.file + number)
         for number, answer in enumerate(answers)
@@ -150,7 +166,7 @@ def gather(plan: Plan, answers: list[LogAnswer], kept: Path, findings: Findings)
         if study.regions.layout is None
         else LineGrid(study.regions.layout.top_px, study.regions.layout.line_height_px),
     )
-    return Gathered(design, options, tasks, facts.inputs, unrecorded)
+    return Gathered(design, options, plan.library, kept[1], tasks, facts.inputs, unrecorded)
 
 
 def _texts(

@@ -2,7 +2,8 @@
 
 Each log is read once, by whichever worker, and put aside sorted by reader; so a reader whose
 fixations are spread over several logs, or a log that holds many readers, costs no second reading,
-and memory holds one log or one reader at a time.
+and memory holds one log or one reader at a time. Where one process does all the work, a shelf in
+memory takes what fits on it; only the rest goes to the disk.
 """
 
 from __future__ import annotations
@@ -21,15 +22,48 @@ from etl.parsers import CanonicalLog
 _PLAIN = ("onset_ms", "number", "duration_ms", "x_px", "y_px", "source_line", "blink")
 
 
-def keep_log(log: CanonicalLog, path: Path) -> dict[str, int]:
-    """Write a log's fixations, one batch a reader.
+#: What a shelf holds at most: enough for a study of some hundred thousand fixations.
+ROOM_BYTES = 64 * 1024 * 1024
+
+
+class Shelf:
+    """Batches that are kept in memory, up to a limit; workers of their own share an empty one.
+
+    Parameters
+    ----------
+    room_bytes : int
+        How much it may hold.
+    """
+
+    def __init__(self, room_bytes: int = 0) -> None:
+        self._room = room_bytes
+        self._held: dict[Path, list[pa.RecordBatch]] = {}
+
+    def put(self, path: Path, batches: list[pa.RecordBatch]) -> bool:
+        """Hold the batches of a log, if there is room for them."""
+        size = sum(batch.nbytes for batch in batches)
+        if size > self._room:
+            return False
+        self._room -= size
+        self._held[path] = batches
+        return True
+
+    def get(self, path: Path, number: int) -> pa.RecordBatch | None:
+        """A batch that is held; None for one on the disk."""
+        return self._held[path][number] if path in self._held else None
+
+
+def keep_log(log: CanonicalLog, path: Path, shelf: Shelf) -> dict[str, int]:
+    """Put a log's fixations aside, one batch a reader.
 
     Parameters
     ----------
     log : CanonicalLog
         The fixations of one log.
     path : Path
-        The file to write.
+        The file to write, where the shelf has no room.
+    shelf : Shelf
+        Takes them, if it has.
 
     Returns
     -------
@@ -51,39 +85,50 @@ def keep_log(log: CanonicalLog, path: Path) -> dict[str, int]:
         batch = batch.take(pa.array(order))
         present, starts = np.unique(participant.codes[order], return_index=True)
     stops = np.append(starts[1:], len(log))
-    with pa.OSFile(str(path), "wb") as sink, pa.ipc.new_file(sink, batch.schema) as writer:
-        for start, stop in zip(starts.tolist(), stops.tolist(), strict=True):
-            writer.write_batch(batch.slice(start, stop - start))
+    batches = [
+        batch.slice(start, stop - start)
+        for start, stop in zip(starts.tolist(), stops.tolist(), strict=True)
+    ]
+    if not shelf.put(path, batches):
+        with pa.OSFile(str(path), "wb") as sink, pa.ipc.new_file(sink, batch.schema) as writer:
+            for own in batches:
+                writer.write_batch(own)
     return {participant.values[code]: number for number, code in enumerate(present.tolist())}
 
 
-def kept_log(parts: Sequence[tuple[Path, int]]) -> tuple[CanonicalLog, NDArray[np.int32]]:
-    """Read back the fixations of one reader.
+def kept_log(
+    parts: Sequence[tuple[Path, int]], shelf: Shelf
+) -> tuple[CanonicalLog, NDArray[np.int32]]:
+    """Take back the fixations of one reader.
 
     Parameters
     ----------
     parts : sequence of (Path, int)
         File and batch, in the order of the logs.
+    shelf : Shelf
+        May hold them.
 
     Returns
     -------
     CanonicalLog and (n,) int32 array
         The fixations, and which part each is from.
     """
-    logs = [_one(path, batch) for path, batch in parts]
+    logs = [_one(path, batch, shelf) for path, batch in parts]
     file = np.repeat(np.arange(len(logs), dtype=np.int32), [len(log) for log in logs])
     return (logs[0] if len(logs) == 1 else _joined(logs)), file
 
 
-def _one(path: Path, batch: int) -> CanonicalLog:
+def _one(path: Path, number: int, shelf: Shelf) -> CanonicalLog:
     """One reader's fixations of one log."""
-    with pa.OSFile(str(path), "rb") as source, pa.ipc.open_file(source) as reader:
-        values = json.loads(reader.schema.metadata[b"values"])
-        columns = reader.get_batch(batch)
-        arrays = {
-            name: columns.column(i).to_numpy(zero_copy_only=False)
-            for i, name in enumerate(columns.schema.names)
-        }
+    batch = shelf.get(path, number)
+    if batch is None:
+        with pa.OSFile(str(path), "rb") as source, pa.ipc.open_file(source) as reader:
+            batch = reader.get_batch(number)
+    values = json.loads(batch.schema.metadata[b"values"])
+    arrays = {
+        name: column.to_numpy(zero_copy_only=False)
+        for name, column in zip(batch.schema.names, batch.columns, strict=True)
+    }
     ids = {name: Coded(arrays[name], tuple(texts)) for name, texts in values.items()}
     label = ids.pop("label", None)
     return CanonicalLog(

@@ -63,8 +63,7 @@ def trace(
         plan, gathered, _, _ = examined
         task = _task(gathered, participant)
         key, text = _key(plan, gathered, task, trial, session)
-        work = make_reader_work((gathered.design, plan.library, gathered.options), write=True)
-        tables = work(task)
+        tables = make_reader_work(*gathered.bench())(task)
         if tables.findings.failed:
             raise DataError(tables.findings)
         return tracer_of(plan, gathered).traced(tables.batches, participant, key, text)

@@ -24,6 +24,7 @@ from etl.parsers import LogReader
 from etl.report import AuditInput, write_audit
 from etl.session.gallery import drawn
 from etl.session.gather import Gathered, Progress, gather, read_logs
+from etl.session.kept_logs import ROOM_BYTES, Shelf
 from etl.session.notices import notice_logs
 from etl.session.plan import Plan, make_plan
 from etl.session.reader import ReaderTables
@@ -68,7 +69,7 @@ def check(study: Study, *, workers: int | None = 1, progress: Progress = silent)
         if examined is not None:
             plan, gathered, _, count = examined
             totals = Totals(plan.limits)
-            with closing(_finish(plan, gathered, count, progress, write=False)) as readers:
+            with closing(_finish(gathered, count, progress, write=False)) as readers:
                 for tables in readers:
                     findings.extend(tables.findings)
                     totals.add(tables)
@@ -126,7 +127,7 @@ def build(
         totals = Totals(plan.limits)
         with TableWriters(shop.fresh, gathered.design, _formats(study)) as writers:
             write = not findings.failed
-            with closing(_finish(plan, gathered, count, progress, write=write)) as readers:
+            with closing(_finish(gathered, count, progress, write=write)) as readers:
                 for tables in readers:
                     findings.extend(tables.findings)
                     totals.add(tables)
@@ -191,14 +192,16 @@ def examine(
         plan, logs = make_plan(study, findings)
     count = _workers(workers, logs)
     reader = plan.reader if plan is not None else LogReader(study.logs, study.screen, ())
-    answers = read_logs(logs, reader, kept, count, progress)
+    # Processes of their own share nothing in memory: then everything goes to the disk.
+    aside = (kept, Shelf(ROOM_BYTES if count == 1 else 0))
+    answers = read_logs(logs, reader, aside, count, progress)
     for answer in answers:
         findings.extend(answer.findings)
     notice_logs(study, answers, findings)
     if plan is None:
         return None
     with _collector_at_rest():
-        gathered = gather(plan, answers, kept, findings)
+        gathered = gather(plan, answers, aside, findings)
     return None if gathered is None else (plan, gathered, answers, count)
 
 
@@ -216,13 +219,10 @@ def _workers(asked: int | None, logs: Iterable[tuple[Path, str]]) -> int:
 
 
 def _finish(
-    plan: Plan, gathered: Gathered, workers: int, progress: Progress, *, write: bool
+    gathered: Gathered, workers: int, progress: Progress, *, write: bool
 ) -> Generator[ReaderTables, None, None]:
     """Work on one reader after the other."""
-    arguments = (
-        (gathered.design, plan.library, gathered.options),
-        write,
-    )
+    arguments = (*gathered.bench(), write)
     finished = map_tasks(make_reader_work, arguments, gathered.tasks, workers)
     for done, tables in enumerate(finished, start=1):
         yield tables
@@ -232,7 +232,6 @@ def _finish(
 def _audit(plan: Plan, gathered: Gathered, totals: Totals, noticed: list[str]) -> AuditInput:
     """Everything that the audit page tells of."""
     study = plan.study
-    arguments = (gathered.design, plan.library, gathered.options)
     return AuditInput(
         study.understood(),
         gathered.design,
@@ -244,7 +243,7 @@ def _audit(plan: Plan, gathered: Gathered, totals: Totals, noticed: list[str]) -
         drawn(
             totals.choice.chosen(),
             {task.participant: task for task in gathered.tasks},
-            make_reader_work(arguments, write=True),
+            make_reader_work(*gathered.bench()),
             Tracer(study, plan.library, gathered.design),
         ),
     )

@@ -17,10 +17,12 @@ from etl.errors import Findings
 from etl.export.rows import TrialColumns
 from etl.parsers import LogReader
 from etl.parsers.canonical import LogNote
-from etl.session.kept_logs import keep_log, kept_log
+from etl.regions import RegionLibrary
+from etl.session.kept_logs import Shelf, keep_log, kept_log
 from etl.session.one_reader import Bench
-from etl.session.reader import Reader, ReaderTables
+from etl.session.reader import Options, Reader, ReaderTables
 from etl.session.seen import seen_trials
+from etl.tables import TableDesign
 from etl.trials import SeenTrials
 
 Task = TypeVar("Task")
@@ -61,8 +63,9 @@ class ReaderTask:
 class LogWork:
     """Reads logs."""
 
-    def __init__(self, reader: LogReader) -> None:
+    def __init__(self, reader: LogReader, shelf: Shelf) -> None:
         self._reader = reader
+        self._shelf = shelf
 
     def __call__(self, task: LogTask) -> LogAnswer:
         """Read one log and put its fixations aside."""
@@ -74,7 +77,7 @@ class LogWork:
         trials = seen_trials(log, task.shown, findings)
         return LogAnswer(
             note,
-            keep_log(log, task.kept),
+            keep_log(log, task.kept, self._shelf),
             trials,
             float(np.median(log.duration_ms)),
             findings,
@@ -88,17 +91,20 @@ class ReaderWork:
     ----------
     bench : Bench
         The study's texts, tables and decisions.
+    shelf : Shelf
+        Where fixations may have been put aside.
     write : bool
         Whether rows are wanted; if not, only what is wrong with the reader's fixations.
     """
 
-    def __init__(self, bench: Bench, *, write: bool) -> None:
+    def __init__(self, bench: Bench, shelf: Shelf, *, write: bool) -> None:
         self._bench = bench
+        self._shelf = shelf
         self._write = write
 
     def __call__(self, task: ReaderTask) -> ReaderTables:
         """Finish one reader."""
-        log, part = kept_log(task.parts)
+        log, part = kept_log(task.parts, self._shelf)
         file = np.asarray(task.files, dtype=np.int32)[part]
         reader = Reader(task.participant, log, file, task.trials, task.note)
         tables = self._bench.tables(reader)
@@ -124,9 +130,15 @@ def _do(task: Any) -> Any:
     return _work(task)
 
 
-def make_reader_work(arguments: tuple[Any, ...], write: bool) -> ReaderWork:  # noqa: FBT001
+def make_reader_work(
+    design: TableDesign,
+    library: RegionLibrary,
+    options: Options,
+    shelf: Shelf,
+    write: bool = True,  # noqa: FBT001, FBT002  (handed over to processes by place)
+) -> ReaderWork:
     """Set up the work on readers in whichever process."""
-    return ReaderWork(Bench(*arguments), write=write)
+    return ReaderWork(Bench(design, library, options), shelf, write=write)
 
 
 def map_tasks(

@@ -5,13 +5,14 @@ from __future__ import annotations
 from pathlib import Path
 
 import numpy as np
+import pyarrow as pa
 import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 from etl.files import Coded
 from etl.parsers import CanonicalLog
-from etl.session.kept_logs import keep_log, kept_log
+from etl.session.kept_logs import Shelf, keep_log, kept_log
 
 NUMBERS = ("onset_ms", "number", "duration_ms", "x_px", "y_px")
 READERS = ("P01", "P02", "Zoë", "P\n4")
@@ -59,32 +60,40 @@ def of_reader(log: CanonicalLog, reader: str) -> CanonicalLog:
     return log.take(np.array(own, dtype=np.int64))
 
 
+#: A shelf with room, one without, and one that takes small logs only.
+ROOMS = st.sampled_from([0, 300, 1_000_000])
+
+
 @settings(suppress_health_check=[HealthCheck.function_scoped_fixture])
-@given(logs())
-def test_each_reader_comes_back(tmp_path: Path, log: CanonicalLog) -> None:
+@given(logs(), ROOMS)
+def test_each_reader_comes_back(tmp_path: Path, log: CanonicalLog, room: int) -> None:
     """Every reader's fixations are read back bit for bit, in the order of the log."""
     path = tmp_path / "kept.arrow"
-    batches = keep_log(log, path)
+    path.unlink(missing_ok=True)
+    shelf = Shelf(room)
+    batches = keep_log(log, path, shelf)
     assert set(batches) == set(texts(log.ids["participant"]) or [])
+    assert path.exists() or room > 0
     for reader, batch in batches.items():
-        found, file = kept_log([(path, batch)])
+        found, file = kept_log([(path, batch)], shelf)
         assert_same(found, of_reader(log, reader))
         assert file.tolist() == [0] * len(found)
 
 
 @settings(suppress_health_check=[HealthCheck.function_scoped_fixture])
-@given(logs())
-def test_several_logs_of_a_reader_are_joined(tmp_path: Path, log: CanonicalLog) -> None:
+@given(logs(), ROOMS)
+def test_several_logs_of_a_reader_are_joined(tmp_path: Path, log: CanonicalLog, room: int) -> None:
     """A reader whose fixations are in several logs has them one log after the other."""
+    shelf = Shelf(room)
     rows = np.arange(len(log))
     halves = [log.take(rows[: len(log) // 2]), log.take(rows[len(log) // 2 :])]
     parts: dict[str, list[tuple[Path, int]]] = {}
     for number, half in enumerate(half for half in halves if len(half)):
         path = tmp_path / f"{number}.arrow"
-        for reader, batch in keep_log(half, path).items():
+        for reader, batch in keep_log(half, path, shelf).items():
             parts.setdefault(reader, []).append((path, batch))
     for reader, own in parts.items():
-        found, file = kept_log(own)
+        found, file = kept_log(own, shelf)
         assert_same(found, of_reader(log, reader))
         assert file.tolist() == sorted(file.tolist())
 
@@ -92,7 +101,7 @@ def test_several_logs_of_a_reader_are_joined(tmp_path: Path, log: CanonicalLog) 
 @pytest.mark.parametrize("order", [("P01", "P02"), ("P02", "P01")], ids=["as is", "the other way"])
 def test_order_of_values_makes_no_difference(tmp_path: Path, order: tuple[str, str]) -> None:
     """Logs that code the same texts differently are joined by their texts."""
-    nowhere = np.full(2, np.nan)
+    nowhere, shelf = np.full(2, np.nan), Shelf()
     parts = []
     for number, trials in enumerate((("1", "2"), ("2", "3"))):
         codes = np.array([0, 1], dtype=np.int32)
@@ -102,7 +111,21 @@ def test_order_of_values_makes_no_difference(tmp_path: Path, order: tuple[str, s
         log = CanonicalLog(
             ids, {}, nowhere, nowhere, np.ones(2), nowhere, nowhere, None, lines, lines > 0
         )
-        parts.append((tmp_path / f"{number}.arrow", keep_log(log, tmp_path / f"{number}.arrow")))
-    found, file = kept_log([(path, batches["P02"]) for path, batches in parts])
+        parts.append(
+            (tmp_path / f"{number}.arrow", keep_log(log, tmp_path / f"{number}.arrow", shelf))
+        )
+    found, file = kept_log([(path, batches["P02"]) for path, batches in parts], shelf)
     assert texts(found.ids["trial"]) == ["1", "2", "2", "3"]
     assert file.tolist() == [0, 0, 1, 1]
+
+
+def test_shelf_takes_no_more_than_it_has_room_for(tmp_path: Path) -> None:
+    """What does not fit goes to the disk, and leaves room for what is smaller."""
+    shelf = Shelf(100)
+    batch = pa.RecordBatch.from_pydict({"x": pa.array(np.zeros(10))})
+    assert batch.nbytes == 80
+    assert shelf.put(tmp_path / "a", [batch])
+    assert not shelf.put(tmp_path / "b", [batch])
+    assert shelf.put(tmp_path / "c", [batch.slice(0, 2)])
+    assert shelf.get(tmp_path / "b", 0) is None
+    assert shelf.get(tmp_path / "a", 0) is batch
