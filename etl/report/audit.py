@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import base64
 import hashlib
+from functools import cache
 from pathlib import Path
 
 from jinja2 import Environment, PackageLoader, StrictUndefined
@@ -43,13 +44,7 @@ def audit_page(facts: AuditInput) -> str:
     str
         HTML; everything that comes from data is escaped.
     """
-    environment = Environment(
-        loader=PackageLoader("etl.report"),
-        autoescape=True,
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-    )
+    environment = _environment()
     # Template text itself is not escaped, so style and script go in as they are.
     script = environment.get_template("sorting.js").render()
     digest = base64.b64encode(hashlib.sha256(script.encode("utf-8")).digest()).decode("ascii")
@@ -62,3 +57,15 @@ def audit_page(facts: AuditInput) -> str:
     )
     # A lone surrogate cannot come from a file that was read as UTF-8, but may come from Python.
     return page.encode("utf-8", "replace").decode("utf-8")
+
+
+@cache
+def _environment() -> Environment:
+    """The templates, compiled once for all pages of a process."""
+    return Environment(
+        loader=PackageLoader("etl.report"),
+        autoescape=True,
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+    )

@@ -154,7 +154,7 @@ def gather(
         for name in plan.study.trials.covariates
     }
     design = _design(plan, trials, levels, covariates)
-    facts = trial_facts(plan, trials, shown, findings)
+    facts = trial_facts(plan, trials, shown, findings, complete=complete)
     tasks = _tasks(design, trials, (text, good), facts, parts)
     study = plan.study
     options = Options(

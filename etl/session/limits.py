@@ -143,14 +143,15 @@ def check_rules(study: Study, region_names: tuple[str, ...], findings: Findings)
                 fix=f'did you mean "{near[0]}"?' if near else "correct the name",
             )
     skipping = {"first_pass_skip"} & set(select(study.measures.outcomes))
-    if trials.no_first_pass_on and skipping:
+    named = set(trials.no_first_pass_on or ()) & set(region_names)
+    if named and skipping:
         findings.warning(
             "this rule leaves out the trials in which the region was skipped, which is what "
             "first_pass_skip measures there",
             path=study.shown,
             line=study.line_of("screening", "trials", "no_first_pass_on"),
             where="screening.trials.no_first_pass_on",
-            found=", ".join(trials.no_first_pass_on),
+            found=", ".join(sorted(named)),
             fix="take first_pass_skip of these regions from a build without the rule, or leave "
             "it out of [measures] outcomes",
         )

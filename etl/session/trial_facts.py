@@ -52,7 +52,12 @@ class TrialFacts:
 
 
 def trial_facts(
-    plan: Plan, trials: KnownTrials, shown: Sequence[str], findings: Findings
+    plan: Plan,
+    trials: KnownTrials,
+    shown: Sequence[str],
+    findings: Findings,
+    *,
+    complete: bool = True,
 ) -> TrialFacts:
     """Gather what the rules that a study uses need to know.
 
@@ -66,6 +71,8 @@ def trial_facts(
         The names of the logs, for messages.
     findings : Findings
         Where cells that cannot be read, and notes that match nothing, are recorded.
+    complete : bool
+        Whether every log could be read; if not, nothing can be said of notes that match nothing.
 
     Returns
     -------
@@ -89,7 +96,8 @@ def trial_facts(
         limits.on("answer_wrong") or limits.on("correct_share_under")
     ):
         facts.answer = place.answers(settings.answer_correct)
-    _add_notes(plan, trials, facts, findings)
+    if complete:
+        _add_notes(plan, trials, facts, findings)
     return facts
 
 
