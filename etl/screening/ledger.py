@@ -151,34 +151,40 @@ def entries_of(
     """
     skipped, notes, reader_note = reasons
     above = _also_of_reader(screened)
+    why = _observed_of_reader(screened, reader_note)
     entries = [*_fixation_entries(screened, limits, above)]
     for trial, code in enumerate(screened.trial_codes().tolist()):
         if code < 0:
             continue
         rule = LEFT_OUT_BY[code]
-        if rule in READER_RULES:
-            continue
         limit, observed = limits.shown.get(rule, ""), ""
         also = "" if rule == "skip" else _join(_later(screened.trials, trial, rule), above)
         if rule == "skip":
             limit = skipped[trial]
         elif rule == "notes":
             observed = notes[trial]
+        elif rule in READER_RULES:
+            # The trials of a reader who is left out are told one by one as well.
+            also, observed = " ".join(_later(screened.reader, 0, rule)), why
         else:
             observed = _number(screened.trials.observed[rule][trial])
         row = int(first_row[trial])
         entries.append(Entry("trial", trial, -1, -1, rule, limit, observed, LEFT_OUT, also, row))
     if screened.reader.left_out[0] >= 0:
         rule = LEFT_OUT_BY[int(screened.reader.left_out[0])]
-        observed = (
-            reader_note
-            if rule == "participant_notes"
-            else _number(screened.reader.observed[rule][0])
-        )
         also = " ".join(_later(screened.reader, 0, rule))
         shown = limits.shown.get(rule, "")
-        entries.append(Entry("participant", -1, -1, -1, rule, shown, observed, LEFT_OUT, also, -1))
+        entries.append(Entry("participant", -1, -1, -1, rule, shown, why, LEFT_OUT, also, -1))
     return sorted(entries, key=_place)
+
+
+def _observed_of_reader(screened: Screened, note: str) -> str:
+    """What the rule that leaves the reader out looked at; empty where none does."""
+    code = int(screened.reader.left_out[0])
+    if code < 0:
+        return ""
+    rule = LEFT_OUT_BY[code]
+    return note if rule == "participant_notes" else _number(screened.reader.observed[rule][0])
 
 
 class FarValue(NamedTuple):
@@ -322,7 +328,7 @@ def check_balance(
                 f"{kept[unit]} in the tables, left out {dict(own.by_rule)}"
             )
     for level, unit, rules in (
-        ("trial", "trials", ("skip", *TRIAL_RULES)),
+        ("trial", "trials", ("skip", *TRIAL_RULES, *READER_RULES)),
         ("fixation", "fixations", ("repeated", *FIXATION_RULES)),
     ):
         for rule in rules:

@@ -169,6 +169,7 @@ class Bench:
             "trials read": len(texts),
             "trials skipped": accounts["trials"].by_rule["skip"],
             "trials kept": len(in_study),
+            "trials kept without a fixation": len(in_study) - len(np.unique(ordered.trial[kept])),
         }
         outside = np.zeros(len(order), dtype=bool)
         outside[kept] = order[kept] == 0

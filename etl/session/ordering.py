@@ -227,6 +227,17 @@ def _notice_straddling(
         if trials.in_study[index]:
             shown, line = reader.place(int(by_trial[at]))
             before = reader.place(int(by_trial[at - 1]))
+            if np.isnan(reader.log.number[by_trial[at]]):
+                # Without numbers nothing tells a trial that goes on from one begun anew.
+                findings.warning(
+                    f"a trial of {before[0]} goes on here",
+                    path=shown,
+                    line=line,
+                    found=trials.spelled(index),
+                    fix="if it was begun anew there, tell the two apart by a session, or name the "
+                    "column that numbers fixations as [logs.columns] fixation",
+                )
+                continue
             findings.note(
                 f"a trial of {before[0]} goes on here",
                 path=shown,

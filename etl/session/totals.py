@@ -76,13 +76,14 @@ class Totals:
         findings : Findings
             Where an empty result is recorded as an error, doubtful shares as warnings.
         """
-        if not self.counts["trials kept"]:
+        if not self.counts["trials kept"] or not self.counts["fixations kept"]:
+            what = "trial" if not self.counts["trials kept"] else "fixation"
             findings.error(
-                f"screening leaves no trial of any reader ({account_text(self.account_rows())})",
+                f"screening leaves no {what} of any reader ({account_text(self.account_rows())})",
                 path=study.shown,
                 line=study.line_of("screening"),
                 where="screening",
-                expected="some trials to be left",
+                expected=f"some {what}s to be left",
                 fix="look at the rule that takes most, and at the units of its limit",
             )
             return
@@ -96,6 +97,16 @@ class Totals:
                 where="regions",
                 fix="if that is more than the texts leave free, check the layout, the screen's "
                 "origin and the boxes",
+            )
+        bare = self.counts["trials kept without a fixation"]
+        if bare:
+            findings.warning(
+                f"{bare:,} trial{' has' if bare == 1 else 's have'} no fixation left and "
+                f"{'is' if bare == 1 else 'are'} kept all the same",
+                path=study.shown,
+                line=study.line_of("screening", "trials"),
+                where="screening.trials",
+                fix="leave such trials out by fewest_fixations",
             )
         self._notice_rules(study, findings)
         overlaps = self.counts["overlaps taken for rounding"]

@@ -117,6 +117,7 @@ def _add_notes(plan: Plan, trials: KnownTrials, facts: TrialFacts, findings: Fin
             synonyms,
             plan.study.logs.missing,
             findings,
+            on_trials=given == of_trials,
         )
         if notes is None:
             continue
@@ -124,6 +125,14 @@ def _add_notes(plan: Plan, trials: KnownTrials, facts: TrialFacts, findings: Fin
         on_trials = notes.on_trials()
         if given == of_trials:
             facts.notes = notes_on_trials(notes, trials.seen, plan.facts.trial_list, findings)
+            for row in np.flatnonzero(trials.skipped).tolist():
+                if facts.notes[row]:
+                    findings.note(
+                        "a note is on a trial that is no part of the study, and changes nothing",
+                        path=notes.shown,
+                        found=f"participant {trials.seen.ids['participant'].text(row)}, "
+                        f"trial {trials.seen.ids['trial'].text(row)}",
+                    )
         if given == of_readers:
             facts.reader_notes = notes_on_readers(notes, trials.seen, findings)
         for used, rows, what, key in (

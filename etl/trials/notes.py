@@ -47,6 +47,8 @@ def read_notes(
     synonyms: Mapping[str, str],
     missing: Collection[str],
     findings: Findings,
+    *,
+    on_trials: bool = True,
 ) -> Notes | None:
     """Read a file of notes.
 
@@ -63,6 +65,9 @@ def read_notes(
         Cells that stand for no value.
     findings : Findings
         Where problems are recorded.
+    on_trials : bool
+        Whether notes on trials are asked for; then the file must have a column ``trial``, since a
+        misspelt one would turn every note on a trial into one on its reader.
 
     Returns
     -------
@@ -79,7 +84,7 @@ def read_notes(
         header = name if name in cells.header else synonyms.get(name, name)
         if header in cells.header:
             columns[name] = Coded.of(cells.column(header), absent)
-        elif name == "trial":
+        elif name == "trial" and not on_trials:
             columns[name] = Coded.absent(len(cells))
         elif name != "session":
             _tell_missing_column(name, cells, findings)

@@ -136,9 +136,11 @@ NOTES = {
         (
             'notes.csv:1: there is no column "participant"; found "who, number, why", expected '
             "columns participant, trial and reason\n    fix: rename or add the column\n"
+            'notes.csv:1: there is no column "trial"; found "who, number, why", expected columns '
+            "participant, trial and reason\n    fix: rename or add the column\n"
             'notes.csv:1: there is no column "reason"; found "who, number, why", expected columns '
             "participant, trial and reason\n    fix: rename or add the column\n"
-            "2 problems; nothing was written\n"
+            "3 problems; nothing was written\n"
         ),
     ),
     "a row too short": (

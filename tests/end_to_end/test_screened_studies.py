@@ -38,7 +38,9 @@ def test_reader_left_out_is_in_fixations_ledger_and_accounts_only(tmp_path: Path
     assert done.fates("R2", 2) == ["correct_share_under"] * 3
     assert done.account("trials", "R2") == {"read": 2, "correct_share_under": 2}
     assert [(row["level"], row["participant"], row["trial"]) for row in done.ledger] == [
-        ("participant", "R2", "")
+        ("trial", "R2", "1"),
+        ("trial", "R2", "2"),
+        ("participant", "R2", ""),
     ]
     assert sound(done, trials)
 

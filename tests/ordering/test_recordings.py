@@ -160,12 +160,18 @@ def test_damage_outside_the_study_is_nobodys_concern(way: str) -> None:
     assert not {TWICE, ALTERNATE} & {problem for problem, _ in problems(findings)}
 
 
-def test_trial_that_goes_on_in_the_next_file_is_noted() -> None:
-    """Its last rows in one file and its first in the next are one recording, with a note."""
+def test_trial_that_goes_on_in_the_next_file_is_warned_of() -> None:
+    """Its last rows in one file and its first in the next are one recording, with a warning."""
     rows = by_onset((0, 1000, 0), (1, 2000, 0), (1, 2300, 1), (2, 9000, 1))
     found, findings = ordered(rows)
     assert not found.repeated.any()
-    assert findings.lines() == ['note: b.tsv:4: a trial of a.tsv goes on here; found "trial 2"']
+    assert findings.lines() == [
+        (
+            'warning: b.tsv:4: a trial of a.tsv goes on here; found "trial 2"\n'
+            "    fix: if it was begun anew there, tell the two apart by a session, or name the column "
+            "that numbers fixations as [logs.columns] fixation"
+        )
+    ]
 
 
 def test_numbered_trial_that_goes_on_in_the_next_file_is_noted() -> None:

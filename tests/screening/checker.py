@@ -256,7 +256,7 @@ def ledger_of_fixations_is_that_of_the_table(told: Published) -> Iterator[str]:
 
 
 def every_trial_is_somewhere(told: Published) -> Iterator[str]:
-    """Kept, in the ledger, or of a reader in the ledger: one of them, and fixations agree."""
+    """Kept or in the ledger, and fixations agree; a reader who is lost is in it, trial by trial."""
     for key in told.kept_trials - told.by_trial.keys():
         yield f"{key} is in trials and not in fixations"
     for key, rows in told.by_trial.items():
@@ -265,14 +265,19 @@ def every_trial_is_somewhere(told: Published) -> Iterator[str]:
             yield f"{key} is kept and in the ledger"
         if key[0] in told.lost_readers and key in told.kept_trials:
             yield f"{key} is kept and its reader is in the ledger"
-        if not lost and key[0] not in told.lost_readers and key not in told.kept_trials:
+        if not lost and key not in told.kept_trials:
             yield f"{key} is nowhere"
+        if told.lost_trials.get(key) in OF_READERS and key[0] not in told.lost_readers:
+            yield f"{key} went with its reader, who is not in the ledger"
         charge = told.charge(key)
         allowed = {"skip"} if charge == "skip" else {"repeated", *OF_FIXATIONS, charge or None}
         wrong = {row["left_out_by"] for row in rows} - allowed
         if wrong:
             yield f"{key} is charged to {charge or 'nothing'}, its fixations to {wrong}"
-    for level, rules in (("trial", ("skip", *OF_TRIALS)), ("participant", OF_READERS)):
+    for level, rules in (
+        ("trial", ("skip", *OF_TRIALS, *OF_READERS)),
+        ("participant", OF_READERS),
+    ):
         for row in told.told(level):
             if row["rule"] not in rules or row["action"] != "left out":
                 yield f"the {level} {told.key(row)} has {row['rule']}, {row['action']}"
@@ -284,7 +289,7 @@ def later_rules_are_later(told: Published) -> Iterator[str]:
         also = [ORDER.index(rule) for rule in row["also"].split()]
         if also != sorted(set(also)) or (also and also[0] <= ORDER.index(row["rule"])):
             yield f"{told.key(row)}: also {row['also']} after {row['rule']}"
-        if row["level"] in ("value", "participant") or row["rule"] in BEFORE:
+        if row["level"] in ("value", "participant") or row["rule"] in (*BEFORE, *OF_READERS):
             continue
         named = row["also"].split()
         above = [told.lost_readers.get(row["participant"])]

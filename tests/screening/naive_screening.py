@@ -249,6 +249,9 @@ def ledger(reader: Reader) -> list[Told]:
         elif trial.left_out:
             also = trial.against[1:] + above
             rows.append(("trial", at, 0, trial.left_out, "left out", " ".join(also)))
+        elif reader.left_out:
+            also = reader.against[1:]
+            rows.append(("trial", at, 0, reader.left_out, "left out", " ".join(also)))
     if reader.left_out:
         also = reader.against[1:]
         rows.append(("participant", 0, 0, reader.left_out, "left out", " ".join(also)))

@@ -192,7 +192,7 @@ PLANTED: dict[str, tuple[Callable[[Path], None], str]] = {
     ),
     "a lost reader that is not told": (
         edit_text("exclusions", lambda rows: rows.remove(first(rows, level="participant"))),
-        "('R2', '1') is nowhere",
+        "('R2', '1') went with its reader, who is not in the ledger",
     ),
     "a kept trial that is told": (
         edit_text(

@@ -130,7 +130,11 @@ def test_outcomes_are_of_the_durations_used(paper: Built) -> None:
         ("over_ms = 800", "50:800 50:800.5", ["800", "over_ms"]),
         ("first = 2", "50:200 50:201 50:202", ["first", "first", "202"]),
         ("last = 2", "50:200 50:201 50:202", ["200", "last", "last"]),
-        ("first = 2\nlast = 2", "50:200 50:201 50:202", ["first", "first", "last"]),
+        (
+            "first = 2\nlast = 2",
+            "50:1 50:2 50:3 50:4 50:5",
+            ["first", "first", "3", "last", "last"],
+        ),
         ('blink = "drop"', "50:200b 50:201", ["blink", "201"]),
         (
             "off_screen = true",

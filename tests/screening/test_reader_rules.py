@@ -148,8 +148,10 @@ def test_trial_of_a_lost_reader_tells_the_rules_against_the_reader(tmp_path: Pat
     done = build(study(tmp_path, trials, rules + limits))
     both = "correct_share_under lost_trials_share_over"
     assert [(r["level"], r["rule"], r["also"]) for r in done.ledger] == [
+        ("trial", "correct_share_under", "lost_trials_share_over"),
         ("trial", "fewest_fixations", both),
         ("fixation", "under_ms", both),
+        ("trial", "correct_share_under", "lost_trials_share_over"),
         ("participant", "correct_share_under", "lost_trials_share_over"),
     ]
     assert done.fates() == ["correct_share_under"] * 3

@@ -170,6 +170,7 @@ def test_ledger_repeats_the_notes(noted: Built) -> None:
     assert noted.told("trial", *columns) == [
         ("R1", "2", "notes", "notes.csv", "sneezed; and laughed"),
         ("R1", "3", "notes", "notes.csv", "no reason given"),
+        *(("R2", trial, "participant_notes", "notes.csv", "asleep") for trial in "123"),
     ]
     assert noted.told("participant", *columns) == [
         ("R2", "", "participant_notes", "notes.csv", "asleep")
