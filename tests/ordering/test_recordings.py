@@ -168,8 +168,8 @@ def test_trial_that_goes_on_in_the_next_file_is_warned_of() -> None:
     assert findings.lines() == [
         (
             'warning: b.tsv:4: a trial of a.tsv goes on here; found "trial 2"\n'
-            "    fix: if it was begun anew there, tell the two apart by a session, or name the column "
-            "that numbers fixations as [logs.columns] fixation"
+            "    fix: if it was begun anew there, tell the two apart by a session, or name the "
+            "column that numbers fixations as [logs.columns] fixation"
         )
     ]
 
