@@ -384,8 +384,8 @@ def _place(places: Sequence[int]) -> pa.Array:
 
 def _coded(codes: NDArray[np.int32], values: pa.Array) -> pa.Array:
     """Codes with their texts; a negative code is missing."""
-    absent = codes < 0
-    indices = pa.array(codes, mask=absent) if absent.any() else pa.array(codes)
+    some = len(codes) > 0 and codes.min() < 0
+    indices = pa.array(codes, mask=codes < 0) if some else pa.array(codes)
     # The codes are ours: checking each of them again would cost as much as making the column.
     return pa.DictionaryArray.from_arrays(indices, values, safe=False)
 

@@ -14,7 +14,7 @@ from etl.tables import Column, TableDesign, read_schema, schema_note, written_sc
 
 #: Cells (rows times columns) collected before a row group is written: enough for good compression,
 #: little enough for a laptop. It does not depend on workers, so that the bytes do not either.
-CELLS_A_GROUP = 3_000_000
+CELLS_A_GROUP = 4_000_000
 _COMPRESSION = "zstd"
 
 

@@ -141,12 +141,14 @@ def rate_counts(wide: pa.RecordBatch, design: TableDesign) -> RateCounts:
         condition * len(design.regions) + codes_of(wide, "region"), return_inverse=True
     )
     names = binary_measures(design)
-    ones = np.zeros((len(keys), len(names)), dtype=np.int64)
-    n = np.zeros_like(ones)
+    values = np.empty((len(wide), len(names)), dtype=np.float64)
     for column, name in enumerate(names):
-        value = filled(wide.column(name), -1)
-        ones[:, column] = np.bincount(place[value == 1], minlength=len(keys))
-        n[:, column] = np.bincount(place[value >= 0], minlength=len(keys))
+        values[:, column] = wide.column(name).to_numpy(zero_copy_only=False)
+    # All outcomes at once: a cell of the counts is a key and an outcome.
+    cell = place[:, None] * len(names) + np.arange(len(names))
+    shape, size = (len(keys), len(names)), len(keys) * len(names)
+    ones = np.bincount(cell[values == 1], minlength=size).reshape(shape)
+    n = np.bincount(cell[~np.isnan(values)], minlength=size).reshape(shape)
     return RateCounts(keys, ones, n)
 
 
