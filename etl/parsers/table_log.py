@@ -28,17 +28,13 @@ from etl.files import (
 )
 from etl.parsers.canonical import CanonicalLog, LogNote
 from etl.parsers.coordinates import to_screen_px
-from etl.parsers.time_checks import check_times
+from etl.parsers.time_checks import check_times, in_ms
 
 if TYPE_CHECKING:
     from etl.study.models import Column, Logs, Screen
 
-_TO_MS = {"ms": 1.0, "s": 1000.0, "us": 0.001}
 _IDS = ("participant", "session", "trial", "item")
 _NUMBERS = ("onset", "end", "duration", "fixation", "x", "y")
-#: Digits kept after the conversion of a time to milliseconds: nanoseconds, so that 0.3 s is
-#: 300 ms and not 299.99999999999994.
-_MS_DIGITS = 6
 #: How many values of a column that [logs.where] does not ask for are remembered, to tell a slip.
 _MOST_OTHERS = 20
 
@@ -364,15 +360,10 @@ class LogReader:
             if values is None:
                 sound = False
             elif name in ("onset", "end", "duration"):
-                numbers[name] = _in_ms(values, str(unit))
+                numbers[name] = in_ms(values, str(unit))
             else:
                 numbers[name] = values
         return numbers if sound else None
-
-
-def _in_ms(values: NDArray[np.float64], unit: str) -> NDArray[np.float64]:
-    """Times in milliseconds."""
-    return values if unit == "ms" else np.round(values * _TO_MS[unit], _MS_DIGITS)
 
 
 def _touches(text: str) -> bool | None:

@@ -15,8 +15,35 @@ LONGEST_MS = 2.0**53
 #: Decimals of a millisecond to which a difference of two times is rounded: microseconds, finer than
 #: any recorder's clock.
 DIFFERENCE_DIGITS = 3
+_TO_MS = {"ms": 1.0, "s": 1000.0, "us": 0.001}
+#: Digits kept after the conversion of a time to milliseconds: nanoseconds, so that 0.3 s is
+#: 300 ms and not 299.99999999999994.
+_MS_DIGITS = 6
 #: What to do about a row that cannot be used.
 _WAY_OUT = "correct the cell, remove the row, or leave such rows out by [logs.where]"
+
+
+def in_ms(values: NDArray[np.float64], unit: str) -> NDArray[np.float64]:
+    """Convert times to milliseconds; everything that is compared with a log goes through here.
+
+    Parameters
+    ----------
+    values : (n,) float64 array
+        Times in ``unit``; NaN stays NaN.
+    unit : {"ms", "s", "us"}
+        The unit.
+
+    Returns
+    -------
+    (n,) float64 array, milliseconds
+        Rounded to nanoseconds where they were converted.
+
+    Examples
+    --------
+    >>> in_ms(np.array([0.3]), "s").tolist()
+    [300.0]
+    """
+    return values if unit == "ms" else np.round(values * _TO_MS[unit], _MS_DIGITS)
 
 
 def check_times(

@@ -63,13 +63,16 @@ class Bench:
         self.library = library
         self.options = options
         self.rows = RowMaker(design)
+        used = {rule: code for code, rule in enumerate(design.left_out_by)}
+        # From a rule's code among all rules to its place among those of this study; -1 stays -1.
+        self._named = np.array([*(used.get(rule, -1) for rule in LEFT_OUT_BY), -1], dtype=np.int32)
 
-    def ordered(self, reader: Reader, findings: Findings) -> tuple[ReaderLog, OrderedFixations]:
+    def ordered(self, reader: Reader, findings: Findings) -> OrderedFixations:
         """The reader's fixations in time order."""
         trial = _trial_of(reader, self.design)
         log = ReaderLog(reader.log, reader.file, self.design.files, trial)
         trials = TrialNames(reader.trials.text >= 0, lambda t: self._spelled(reader.trials, t))
-        return log, order_fixations(log, trials, self.options.repeated, findings)
+        return order_fixations(log, trials, self.options.repeated, findings)
 
     def _spelled(self, trials: TrialColumns, index: int) -> str:
         """A trial in words, for messages."""
@@ -93,7 +96,7 @@ class Bench:
             Without rows where a problem was found.
         """
         findings = Findings()
-        _, ordered = self.ordered(reader, findings)
+        ordered = self.ordered(reader, findings)
         if findings.failed:
             return ReaderTables(reader.participant, {}, {}, findings=findings)
         in_order = bool((ordered.rows[1:] > ordered.rows[:-1]).all())
@@ -193,14 +196,12 @@ class Bench:
     ) -> ReaderProfile:
         """The summary of the reader for the audit page."""
         read = reader.trials.text >= 0
-        used = {rule: code for code, rule in enumerate(self.design.left_out_by)}
-        named = np.array([*(used.get(rule, -1) for rule in LEFT_OUT_BY), -1], dtype=np.int32)
         return profile_of(
             reader.participant,
             batches,
             TrialFates(
                 {name: levels[read] for name, levels in reader.trials.factors.items()},
-                named[screened.trial_codes()[read]],
+                self._named[screened.trial_codes()[read]],
             ),
             self.design,
             outside=self.options.outside,
@@ -228,8 +229,6 @@ class Bench:
         gone = screened.fixation_codes()
         kept = np.flatnonzero(gone < 0)
         visit, first_pass = _spread(outcomes, kept, len(gone))
-        used = {rule: code for code, rule in enumerate(self.design.left_out_by)}
-        named = np.array([*(used.get(rule, -1) for rule in LEFT_OUT_BY), -1], dtype=np.int32)
         line, order, code = places
         return FixationColumns(
             screened.recorded.trial,
@@ -243,7 +242,7 @@ class Bench:
             order,
             visit,
             first_pass,
-            named[gone],
+            self._named[gone],
             *source,
         )
 

@@ -10,16 +10,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from etl.errors import Findings
-from etl.files import truth_of
+from etl.files import number_of, truth_of
+from etl.parsers.time_checks import in_ms
 from etl.session.plan import Plan
 from etl.trials import IDS, KnownTrials
 from etl.trials.facts import shown_path
 from etl.trials.notes import Notes, notes_on_readers, notes_on_trials, read_notes
 
-_TO_MS = {"ms": 1.0, "s": 1000.0, "us": 0.001}
-#: Digits kept after the conversion of a time to milliseconds, as in the logs.
-_MS_DIGITS = 6
-_NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
 #: Numbers whose commas may mark thousands; none is written with a leading zero.
 _GROUPED = re.compile(r"[+-]?[1-9][0-9]{0,2}(?:,[0-9]{3})+")
 _CORRECT = "correct the cell, or add the word to [logs] missing if it means no value"
@@ -84,13 +81,13 @@ def trial_facts(
     facts = TrialFacts(unknown, unknown, unknown, [""] * len(trials))
     place = _Place(plan, trials, shown, findings)
     if limits.on("outside_text_time"):
-        unit = plan.study.logs.columns.onset
-        factor = _TO_MS[str(unit.unit)] if unit is not None else 1.0
-        # Rounded as the onsets in the logs are, or 1.001 s would lie before 1.001 s.
+        onset = plan.study.logs.columns.onset
+        unit = "ms" if onset is None else str(onset.unit)
+        # Converted as the onsets in the logs are, or 1.001 s would lie before 1.001 s.
         if settings.onset is not None:
-            facts.came_ms = np.round(place.numbers(settings.onset) * factor, _MS_DIGITS)
+            facts.came_ms = in_ms(place.numbers(settings.onset), unit)
         if settings.offset is not None:
-            facts.went_ms = np.round(place.numbers(settings.offset) * factor, _MS_DIGITS)
+            facts.went_ms = in_ms(place.numbers(settings.offset), unit)
         place.warn_of_unknown_times()
     if settings.answer_correct is not None and (
         limits.on("answer_wrong") or limits.on("correct_share_under")
@@ -223,11 +220,16 @@ class _Place:
         self, name: str, rows: NDArray[np.bool_], problem: str, expected: str, fix: str
     ) -> None:
         """Record cells that cannot be read."""
-        for row in np.flatnonzero(rows).tolist():
-            path, line = self.plan.facts.origin(name, self.trials, row)
+        wrong = np.flatnonzero(rows)
+        if not wrong.size:
+            return
+        table, listed, lines = self.plan.facts.origins(name, self.trials, wrong)
+        for row, in_table, line in zip(
+            wrong.tolist(), listed.tolist(), lines.tolist(), strict=True
+        ):
             self.findings.error(
                 problem,
-                path=path or self.shown[int(self.trials.seen.file[row])],
+                path=table if in_table else self.shown[int(self.trials.seen.file[row])],
                 line=line,
                 where=f'column "{name}"',
                 found=self.trials.known[name].text(row),
@@ -247,4 +249,5 @@ def _decimal_sign(texts: set[str]) -> str | None:
 def _number(text: str, sign: str) -> float:
     """A cell as a number; infinite where it is none."""
     pointed = text.replace(".", "?").replace(",", ".") if sign == "," else text
-    return float(pointed) if _NUMBER.fullmatch(pointed) else np.inf
+    number = number_of(pointed)
+    return np.inf if number is None else number

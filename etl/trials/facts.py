@@ -168,11 +168,6 @@ class FactBook:
         agreed: NDArray[np.bool_] = ~clash
         return agreed
 
-    def origin(self, name: str, trials: KnownTrials, row: int) -> tuple[str | None, int]:
-        """File and line from which a trial has a fact; None for the trial's own log."""
-        shown, listed, lines = self.origins(name, trials, np.array([row]))
-        return (shown if listed[0] else None), int(lines[0])
-
     def origins(
         self, name: str, trials: KnownTrials, rows: NDArray[np.int64]
     ) -> tuple[str, NDArray[np.bool_], NDArray[np.int32]]:
