@@ -4,13 +4,16 @@ from etl.files.coded import Coded, group_rows, marks_of, place_rows
 from etl.files.decoding import RawText, read_text
 from etl.files.delimited import Cells, cells_of, header_of, read_cells
 from etl.files.numeric_cells import NumberReading, find_decimal, number_of, numbers_in
+from etl.files.tally import FileAccount, Tally
 from etl.files.truths import truth_of
 
 __all__ = [
     "Cells",
     "Coded",
+    "FileAccount",
     "NumberReading",
     "RawText",
+    "Tally",
     "cells_of",
     "find_decimal",
     "group_rows",

@@ -1,6 +1,7 @@
 """From a log to canonical fixations: one module a kind of log."""
 
 from etl.parsers.canonical import CanonicalLog
-from etl.parsers.table_log import LogReader
+from etl.parsers.eyes import EyeChoice
+from etl.parsers.readers import LogReader, is_log, reader_for
 
-__all__ = ["CanonicalLog", "LogReader"]
+__all__ = ["CanonicalLog", "EyeChoice", "LogReader", "is_log", "reader_for"]

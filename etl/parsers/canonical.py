@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
-from etl.files import Coded
+from etl.files import Coded, FileAccount
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,6 +32,9 @@ class CanonicalLog:
         Line of the log, from 1.
     blink : (n,) bool array
         Whether a blink touches the fixation; False throughout where the log does not say.
+    recording : (n,) int32 array
+        Which recording of a trial the row belongs to, where the log itself says where each begins:
+        a number that changes whenever a trial begins. -1 throughout where it does not say.
     """
 
     ids: dict[str, Coded]
@@ -44,6 +47,7 @@ class CanonicalLog:
     label: Coded | None
     source_line: NDArray[np.int32]
     blink: NDArray[np.bool_]
+    recording: NDArray[np.int32]
 
     def __len__(self) -> int:
         return len(self.source_line)
@@ -61,6 +65,7 @@ class CanonicalLog:
             None if self.label is None else self.label.take(rows),
             self.source_line[rows],
             self.blink[rows],
+            self.recording[rows],
         )
 
 
@@ -68,8 +73,25 @@ class CanonicalLog:
 class LogNote:
     """What is told about a log that was read: how it was understood, and what was counted.
 
-    ``asked`` holds, for each key of ``[logs.where]``, the values of that column: those asked for
-    that occur, and some of the others.
+    Attributes
+    ----------
+    shown : str
+        The log as the user would name it.
+    sha256 : str
+        Digest of the file.
+    encoding, delimiter, decimal : str
+        How it was understood; empty where that does not apply.
+    columns : tuple of str
+        All the columns it has, whether or not the study needs them.
+    counts : dict of str to int
+        What was counted, for the run record.
+    asked : dict of str to tuple of str
+        For each key of ``[logs.where]``, the values of that column: those asked for that occur, and
+        some of the others.
+    account : FileAccount
+        Where every line of the log went, and what was mended.
+    parts : tuple of (str, str, str)
+        Further files that were read with this one: name, role and digest.
     """
 
     shown: str
@@ -77,5 +99,8 @@ class LogNote:
     encoding: str = ""
     delimiter: str = ""
     decimal: str = ""
+    columns: tuple[str, ...] = ()
     counts: dict[str, int] = field(default_factory=dict)
     asked: dict[str, tuple[str, ...]] = field(default_factory=dict)
+    account: FileAccount = field(default_factory=FileAccount)
+    parts: tuple[tuple[str, str, str], ...] = ()

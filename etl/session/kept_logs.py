@@ -19,7 +19,10 @@ from numpy.typing import NDArray
 from etl.files import Coded
 from etl.parsers import CanonicalLog
 
-_PLAIN = ("onset_ms", "number", "duration_ms", "x_px", "y_px", "source_line", "blink")
+_PLAIN = (
+    *("onset_ms", "number", "duration_ms", "x_px", "y_px", "source_line", "blink"),
+    "recording",
+)
 
 
 #: What a shelf holds at most: enough for a study of some hundred thousand fixations.

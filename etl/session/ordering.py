@@ -122,6 +122,7 @@ def order_fixations(
         log.onset_ms[by_trial],
         log.duration_ms[by_trial],
         log.number[by_trial],
+        log.recording[by_trial],
     )
     begins = logged.begins()
     numbered = count > 0 and not np.isnan(log.number[0])

@@ -13,7 +13,7 @@ from etl.errors import Findings
 from etl.export.publish import is_ours
 from etl.files import header_of, marks_of, read_text
 from etl.measures import MEASURES, TRIAL_MEASURES
-from etl.parsers import LogReader
+from etl.parsers import EyeChoice, LogReader, is_log, reader_for
 from etl.regions import RegionLibrary, TrialWords, read_definitions
 from etl.screening import Limits
 from etl.session.limits import check_rules, limits_of
@@ -67,7 +67,11 @@ def find_logs(study: Study, findings: Findings) -> tuple[tuple[Path, str], ...]:
         # The folder's own name may hold a bracket, which only glob.escape tells from a pattern.
         full = str(Path(glob.escape(str(study.folder))) / pattern)
         paths = [Path(path) for path in glob.glob(full, recursive=True)]  # noqa: PTH207
-        files = [p for p in paths if p.is_file() and not any(is_ours(up) for up in p.parents[:2])]
+        files = [
+            path
+            for path in paths
+            if is_log(study.logs.kind, path) and not any(is_ours(up) for up in path.parents[:2])
+        ]
         if not files:
             findings.error(
                 "no log has a name like this",
@@ -113,7 +117,7 @@ def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tupl
         No plan where tables or region definitions are wrong; the logs can be checked all the same.
     """
     logs = find_logs(study, findings)
-    log_header = _header(logs[0][0], study.logs.encoding, study.logs.delimiter) if logs else ()
+    log_header = reader_for(study.logs, study.screen).header(logs[0][0]) if logs else ()
     region_path = study.folder / study.regions.file
     facts = gather_facts(study, log_header, _header(region_path), findings)
     # Where the tables are wrong, the regions are read all the same, for what is wrong with them:
@@ -134,17 +138,16 @@ def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tupl
     )
     if facts is None or library is None or not _names_are_free(study, findings):
         return None, logs
-    reader = LogReader(study.logs, study.screen, facts.from_log)
+    eyes = EyeChoice.of(study.logs, facts.eyes)
+    reader = reader_for(study.logs, study.screen, facts.from_log, eyes)
     check_rules(study, library.region_names, findings)
     return Plan(study, logs, reader, facts, library, limits_of(study)), logs
 
 
-def _header(
-    path: Path, encoding: str | None = None, delimiter: str | None = None
-) -> tuple[str, ...]:
+def _header(path: Path) -> tuple[str, ...]:
     """The header of a file; empty where it cannot be read, which is told when it is read."""
-    text = read_text(path, path.name, Findings(), encoding=encoding)
-    return () if text is None else header_of(text, delimiter)
+    text = read_text(path, path.name, Findings())
+    return () if text is None else header_of(text)
 
 
 def _names_are_free(study: Study, findings: Findings) -> bool:

@@ -41,6 +41,8 @@ class Rows:
         How long the fixation lasted.
     number : (n,) float64 array
         The fixation's number; NaN throughout where the logs do not number them.
+    recording : (n,) int32 array
+        Which recording the row belongs to, where the log says; -1 where it does not.
     """
 
     row: NDArray[np.int64]
@@ -49,6 +51,7 @@ class Rows:
     onset_ms: NDArray[np.float64]
     duration_ms: NDArray[np.float64]
     number: NDArray[np.float64]
+    recording: NDArray[np.int32]
 
     def begins(self) -> Flags:
         """Whether each row is the first of its trial."""
@@ -101,16 +104,24 @@ def find_recordings(rows: Rows) -> Recordings:
     trial goes on in the next log only where its rows are the last of the one and the first of the
     other.
 
+    Where a log itself says where recordings begin, nothing is inferred for its rows.
+
     Examples
     --------
     >>> numbers = np.array([1.0, 2.0, 1.0, 2.0])
     >>> nowhere = np.full(4, np.nan)
     >>> one = np.zeros(4, dtype=np.int64)
-    >>> rows = Rows(np.arange(4), one, one.astype(np.int32), nowhere, nowhere, numbers)
+    >>> zeros = one.astype(np.int32)
+    >>> rows = Rows(np.arange(4), one, zeros, nowhere, nowhere, numbers, zeros - 1)
     >>> find_recordings(rows).starts
     array([False, False,  True, False])
     """
     begins = rows.begins()
+    if len(rows.row) and (rows.recording >= 0).all():
+        starts = np.zeros(len(rows.row), dtype=bool)
+        changes = rows.recording[1:] != rows.recording[:-1]
+        starts[1:] = ~begins[1:] & (changes | (rows.file[1:] != rows.file[:-1]))
+        return Recordings(starts, {})
     numbered = len(rows.row) > 0 and not np.isnan(rows.number[0])
     starts, faults = (_by_number if numbered else _by_onset)(rows, begins)
     _add_mixed(rows, starts, faults)

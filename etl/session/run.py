@@ -20,7 +20,7 @@ from etl.export.publish import check_target, published
 from etl.export.run_record import RunRecord
 from etl.export.writers import TableWriters
 from etl.measures import REASON_MEANINGS
-from etl.parsers import LogReader
+from etl.parsers import reader_for
 from etl.report import AuditInput, write_audit
 from etl.session.gallery import drawn
 from etl.session.gather import Gathered, Progress, gather, read_logs
@@ -191,7 +191,7 @@ def examine(
     with _collector_at_rest():
         plan, logs = make_plan(study, findings)
     count = _workers(workers, logs)
-    reader = plan.reader if plan is not None else LogReader(study.logs, study.screen, ())
+    reader = plan.reader if plan is not None else reader_for(study.logs, study.screen)
     # Processes of their own share nothing in memory: then everything goes to the disk.
     aside = (kept, Shelf(ROOM_BYTES if count == 1 else 0))
     answers = read_logs(logs, reader, aside, count, progress)
@@ -294,4 +294,5 @@ def _inputs(plan: Plan, gathered: Gathered, answers: list[LogAnswer]) -> list[di
                 **note.counts,
             }
         )
+        inputs += [{"file": file, "role": role, "sha256": sha} for file, role, sha in note.parts]
     return inputs

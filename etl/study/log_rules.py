@@ -12,7 +12,8 @@ from etl.study.rule import Problem, rule
 @rule("logs.columns.participant", "logs.participant_from_name")
 def reader_is_named(study: StudyFile) -> Iterator[Problem]:
     """Each fixation has a reader."""
-    if study.logs.columns.participant is None and study.logs.participant_from_name is None:
+    logs = study.logs
+    if logs.columns.participant is None and logs.participant_from_name is None:
         yield Problem(
             ("logs", "columns"),
             "nothing says who read",
@@ -52,7 +53,7 @@ def order_is_known(study: StudyFile) -> Iterator[Problem]:
 def duration_is_known_once(study: StudyFile) -> Iterator[Problem]:
     """A duration is given, either by itself or by the end."""
     columns = study.logs.columns
-    if columns.duration is None and columns.end is None:
+    if study.logs.samples is None and columns.duration is None and columns.end is None:
         yield Problem(
             ("logs", "columns"),
             "nothing says how long a fixation lasted",
@@ -112,4 +113,149 @@ def delimiter_is_no_decimal_sign(study: StudyFile) -> Iterator[Problem]:
             found=study.logs.decimal,
             expected="two different characters",
             fix="correct one of the two, or remove both to have them found out",
+        )
+
+
+@rule("logs.kind", "logs.patterns")
+def events_have_lines(study: StudyFile) -> Iterator[Problem]:
+    """A log of events is described by its lines, another one is not."""
+    logs = study.logs
+    if logs.kind != "events":
+        if logs.patterns is not None:
+            yield Problem(
+                ("logs", "patterns"),
+                f'patterns for lines mean nothing with kind = "{logs.kind}"',
+                expected='kind = "events"',
+                fix="correct the kind, or remove [logs.patterns]",
+            )
+        return
+    for key in ("fixation", "trial_start"):
+        if logs.patterns is None or not getattr(logs.patterns, key):
+            yield Problem(
+                ("logs", "patterns", key),
+                "nothing says which lines tell that "
+                + ("a fixation is over" if key == "fixation" else "a trial starts"),
+                expected=key,
+                fix=f"add {key} = '…' to [logs.patterns] with a regular expression for such a line",
+            )
+
+
+@rule("logs.kind", "logs.bids")
+def bids_has_its_kind(study: StudyFile) -> Iterator[Problem]:
+    """The table about the open standard goes with its kind."""
+    if study.logs.bids is not None and study.logs.kind != "bids":
+        yield Problem(
+            ("logs", "bids"),
+            f'this means nothing with kind = "{study.logs.kind}"',
+            expected='kind = "bids"',
+            fix="correct the kind, or remove [logs.bids]",
+        )
+
+
+@rule("logs.eye", "logs.columns.eye", "participants")
+def eye_is_known(study: StudyFile) -> Iterator[Problem]:
+    """Something says which eye a row or a column is of, and which eye counts."""
+    eye = study.logs.eye
+    if eye is None:
+        return
+    if eye.use is None and eye.column is None and not eye.readers:
+        yield Problem(
+            ("logs", "eye"),
+            "nothing says which eye counts",
+            expected="use, column or readers",
+            fix='add use = "…" with the eye as the logs spell it',
+        )
+    if eye.column is not None and study.participants is None:
+        yield Problem(
+            ("logs", "eye", "column"),
+            "there is no reader table that could say which eye counts",
+            found=eye.column,
+            expected="[participants] with a table",
+            fix="add [participants], or name the eye by use or readers",
+        )
+    if not eye.columns and study.logs.columns.eye is None and study.logs.kind != "bids":
+        yield Problem(
+            ("logs", "eye"),
+            "nothing says which eye a row is of",
+            expected="eye in [logs.columns], or the columns of each eye in [logs.eye.columns]",
+            fix='add eye = "…" to [logs.columns] with the header of the column',
+        )
+    named = {*([eye.use] if eye.use is not None else []), *eye.readers.values()}
+    for one in sorted(named - set(eye.columns) if eye.columns else ()):
+        yield Problem(
+            ("logs", "eye"),
+            "an eye is chosen that has no columns",
+            found=one,
+            expected="one of " + ", ".join(eye.columns),
+            fix=f"add [logs.eye.columns.{one}], or correct the name of the eye",
+        )
+
+
+@rule("logs.eye.columns")
+def eyes_have_the_same_columns(study: StudyFile) -> Iterator[Problem]:
+    """What is named for one eye is named for each, in one unit."""
+    eye = study.logs.eye
+    if eye is None or not eye.columns:
+        return
+    first_name, first = next(iter(eye.columns.items()))
+    for name, columns in eye.columns.items():
+        for key in type(columns).model_fields:
+            one, other = getattr(first, key), getattr(columns, key)
+            if (one is None) != (other is None):
+                lacking = first_name if one is None else name
+                yield Problem(
+                    ("logs", "eye", "columns", lacking),
+                    f"{key} is named for one eye only",
+                    expected=key,
+                    fix=f'add {key} = "…" with the header of its column',
+                )
+            elif one is not None and one.unit != other.unit:
+                yield Problem(
+                    ("logs", "eye", "columns", name, key),
+                    f"the unit is not that of {first_name}",
+                    found=other.unit,
+                    expected=str(one.unit),
+                    fix="give both eyes the same unit",
+                )
+
+
+@rule("logs.samples", "logs.columns.onset", "logs.columns.x", "logs.columns.y", "screen")
+def samples_can_be_searched(study: StudyFile) -> Iterator[Problem]:
+    """Fixations are found in samples that have a time and a position."""
+    samples, columns = study.logs.samples, study.logs.columns
+    if samples is None:
+        return
+    for key in ("onset", "x", "y"):
+        if getattr(columns, key) is None:
+            yield Problem(
+                ("logs", "columns"),
+                "fixations are found in samples that have a time and a position",
+                expected=key,
+                fix=f'add {key} = "…" with the header of the column',
+            )
+    for key in ("duration", "end", "fixation", "label"):
+        if getattr(columns, key) is not None and study.logs.kind != "bids":
+            yield Problem(
+                ("logs", "columns", key),
+                "a sample has none: fixations are found in the samples",
+                fix="remove the key, or remove [logs.samples] if the rows are fixations",
+            )
+    if samples.method != "dispersion":
+        return
+    if (samples.dispersion_px is None) == (samples.dispersion_deg is None):
+        yield Problem(
+            ("logs", "samples"),
+            "one extent is needed of what still is a fixation",
+            expected="dispersion_px or dispersion_deg",
+            fix="give one of the two",
+        )
+    screen = study.screen
+    if samples.dispersion_deg is not None and (
+        screen is None or screen.width_cm is None or screen.distance_cm is None
+    ):
+        yield Problem(
+            ("logs", "samples", "dispersion_deg"),
+            "degrees need the size and the distance of the screen",
+            expected="width_cm and distance_cm in [screen]",
+            fix="add them, or give dispersion_px",
         )

@@ -2,81 +2,34 @@
 
 from __future__ import annotations
 
+import re
+from collections.abc import Iterator, Mapping
 from typing import Annotated, Any, Literal
 
-from pydantic import AfterValidator, ConfigDict, Field, GetJsonSchemaHandler, model_validator
-from pydantic.json_schema import JsonSchemaValue
-from pydantic_core import CoreSchema
+from pydantic import AfterValidator, ConfigDict, Field, model_validator
 
+from etl.study.columns import Column, PlaceColumn, PlainColumn, TimeColumn
+from etl.study.log_kinds import Bids, Eye, LinePatterns, Samples
 from etl.study.values import (
     CellTexts,
     Encoding,
     FileNames,
     Name,
     NamePattern,
-    PlaceUnit,
     Table,
     Texts,
-    TimeUnit,
     refusal,
 )
 
-
-class Column(Table):
-    """A column of the log: its header, or a table with its header and its unit."""
-
-    column: Name = Field(description="The column's header in the log.", examples=["trial_no"])
-    unit: TimeUnit | PlaceUnit | None = None
-
-    @model_validator(mode="before")
-    @classmethod
-    def _header_alone(cls, entry: Any) -> Any:
-        """Take a header alone as the column of that name in the usual unit."""
-        return {"column": entry} if isinstance(entry, str) else entry
-
-    @classmethod
-    def __get_pydantic_json_schema__(
-        cls, core_schema: CoreSchema, handler: GetJsonSchemaHandler
-    ) -> JsonSchemaValue:
-        """Let the schema accept a header alone, as the validator does."""
-        reference = handler(core_schema)
-        schema = handler.resolve_ref_schema(reference)
-        table = {key: value for key, value in schema.items() if key not in ("title", "description")}
-        if table["properties"]["unit"].get("type") == "null":
-            del table["properties"]["unit"]
-        kept: JsonSchemaValue = {"title": schema["title"], "description": schema["description"]}
-        schema.clear()
-        schema.update(kept, anyOf=[{"type": "string", "minLength": 1}, table])
-        return reference
-
-
-class PlainColumn(Column):
-    """A column without a unit: its header, or { column = header }."""
-
-    model_config = ConfigDict(title="a column")
-
-    unit: None = None
-
-
-class TimeColumn(Column):
-    """A column of times: its header (in ms), or { column = header, unit = "ms" | "s" | "us" }."""
-
-    model_config = ConfigDict(title="a column of times")
-
-    unit: TimeUnit = Field(
-        default="ms", description="Unit of the times: milli-, whole or microseconds."
-    )
-
-
-class PlaceColumn(Column):
-    """A column of positions: its header (in px), or { column = header, unit = "px" | "deg" }."""
-
-    model_config = ConfigDict(title="a column of positions")
-
-    unit: PlaceUnit = Field(
-        default="px",
-        description="Unit of the positions: pixels, or degrees from the middle of the screen.",
-    )
+#: What an open standard's recording calls things, where the study file says nothing else.
+BIDS_COLUMNS = {
+    "participant": "participant_id",
+    "session": "session_id",
+    "onset": "onset",
+    "duration": "duration",
+    "x": "x_coordinate",
+    "y": "y_coordinate",
+}
 
 
 class Columns(Table):
@@ -173,8 +126,10 @@ class Logs(Table):
         "Files that end in .gz are read as they are.",
         examples=[["logs/*.tsv"]],
     )
-    kind: Literal["table"] = Field(
-        default="table", description="How a log is laid out: a table with one fixation a row."
+    kind: Literal["table", "events", "bids"] = Field(
+        default="table",
+        description="How a log is laid out: a table with a fixation a row; lines that each tell of "
+        "an event; or the Brain Imaging Data Structure (BIDS 1.11) for eye tracking.",
     )
     participant_from_name: NamePattern | None = Field(
         default=None,
@@ -200,9 +155,15 @@ class Logs(Table):
         description="What stands in a cell that has no value.",
         examples=[["", ".", "NA"]],
     )
+    comment: Texts = Field(
+        default=("#",),
+        description="What a line begins with that is a remark; it is counted and not read.",
+        examples=[["#"]],
+    )
     columns: Columns = Field(
         description="What each thing is called in the log: the log's own header, or a table with "
-        "its unit."
+        'its unit. With kind = "events" each canonical name is the group of that name, unless '
+        'said otherwise; with "bids" the standard\'s own columns are known.'
     )
     where: dict[Name, CellTexts] = Field(
         default={},
@@ -210,3 +171,69 @@ class Logs(Table):
         "values of which a row must have one.",
         examples=[{"eye": ["R"]}],
     )
+    patterns: LinePatterns | None = Field(
+        default=None,
+        description='What the lines of a log of events say; needed with kind = "events".',
+    )
+    eye: Eye | None = Field(default=None, description="Which eye counts, where both were recorded.")
+    samples: Samples | None = Field(
+        default=None,
+        description="How fixations are found, where the log holds gaze samples.",
+    )
+    bids: Bids | None = Field(
+        default=None,
+        description='How recordings are read with kind = "bids"; all has a default.',
+    )
+
+    @model_validator(mode="before")
+    @classmethod
+    def _columns_known_already(cls, entry: Any) -> Any:
+        """Fill in the columns that the kind of log, or the tables of both eyes, already name."""
+        if not isinstance(entry, dict):
+            return entry
+        known = dict(_known_columns(entry))
+        stated = entry.get("columns", {} if known else None)
+        if not known or not isinstance(stated, dict):
+            return entry
+        return {**entry, "columns": {**known, **stated}}
+
+
+def _known_columns(logs: Mapping[str, Any]) -> Iterator[tuple[str, Any]]:
+    """The columns that need not be named, by canonical name."""
+    kind, eye = logs.get("kind"), logs.get("eye")
+    if kind == "bids":
+        yield from BIDS_COLUMNS.items()
+    if kind == "events" and isinstance(logs.get("patterns"), dict):
+        for group in groups_in(logs["patterns"]):
+            if group in Columns.model_fields:
+                yield group, group
+    by_eye = eye.get("columns") if isinstance(eye, dict) else None
+    if isinstance(by_eye, dict):
+        for columns in by_eye.values():
+            if isinstance(columns, dict):
+                yield from columns.items()
+                break
+
+
+def groups_in(patterns: Mapping[str, Any]) -> list[str]:
+    """The named groups of the patterns of ``[logs.patterns]``, each once; faulty patterns have none.
+
+    Parameters
+    ----------
+    patterns : mapping
+        The table as read, with a pattern or a list of patterns for each key.
+
+    Returns
+    -------
+    list of str
+    """
+    groups: dict[str, None] = {}
+    for key, own in patterns.items():
+        if key in ("blink", "ignore", "other", "unfinished"):
+            continue
+        for pattern in [own] if isinstance(own, str) else own:
+            try:
+                groups |= dict.fromkeys(re.compile(pattern).groupindex)
+            except (re.error, RecursionError, OverflowError, TypeError):
+                continue
+    return list(groups)

@@ -11,7 +11,9 @@ from typing import Annotated, Literal
 
 from pydantic import AfterValidator, ConfigDict, Field
 
-from etl.study.logs import Column, Columns, Logs, PlaceColumn, PlainColumn, TimeColumn
+from etl.study.columns import Column, PlaceColumn, PlainColumn, TimeColumn
+from etl.study.log_kinds import Bids, Eye, EyeColumns, LinePatterns, Samples
+from etl.study.logs import Columns, Logs
 from etl.study.screening import (
     FixationRules,
     Merge,
@@ -34,12 +36,16 @@ from etl.study.values import (
 )
 
 __all__ = [
+    "Bids",
     "Column",
     "Columns",
+    "Eye",
+    "EyeColumns",
     "Facts",
     "FixationRules",
     "Items",
     "Layout",
+    "LinePatterns",
     "Lines",
     "Logs",
     "Measures",
@@ -50,6 +56,7 @@ __all__ = [
     "PlaceColumn",
     "PlainColumn",
     "Regions",
+    "Samples",
     "Screen",
     "Screening",
     "StudyFile",

@@ -7,7 +7,7 @@ from typing import Annotated, Any, get_args, get_origin
 from pydantic.fields import FieldInfo
 from pydantic_core import PydanticUndefined
 
-from etl.study.logs import Column
+from etl.study.columns import Column
 from etl.study.shape import choices_in, known_keys, table_in
 from etl.study.wording import dotted, toml_text
 

@@ -7,7 +7,7 @@ from typing import Any, Literal, get_args, get_origin
 
 from pydantic.fields import FieldInfo
 
-from etl.study.logs import Column
+from etl.study.columns import Column
 from etl.study.models import StudyFile
 from etl.study.positions import KeyPath
 from etl.study.values import Table

@@ -10,7 +10,7 @@ from typing import Any
 
 from pydantic_core import ErrorDetails
 
-from etl.study.logs import Column
+from etl.study.columns import Column
 from etl.study.positions import KeyPath
 from etl.study.rule import Problem, quoted
 from etl.study.shape import choices_in, field_at, known_keys, table_at, table_in

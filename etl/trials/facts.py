@@ -65,6 +65,8 @@ class FactBook:
         Facts that are columns of the logs.
     skip : dict of str to tuple of str
         Values by which trials are no part of the study.
+    eyes : dict of str to str
+        The eye that counts, for readers of whom the reader table says so.
     """
 
     trial_list: FactTable | None
@@ -73,6 +75,7 @@ class FactBook:
     sources: dict[str, str]
     from_log: tuple[str, ...]
     skip: dict[str, tuple[str, ...]] = field(default_factory=dict)
+    eyes: dict[str, str] = field(default_factory=dict)
 
     def known_facts(self) -> frozenset[str]:
         """What is known of a trial before its text is looked up."""
@@ -307,6 +310,7 @@ def gather_facts(
         },
         findings,
     )
+    eyes = _eyes(study, participants, findings)
     check_ids(study, keys, trial_list is not None and "item" in trial_list.columns, findings)
     if findings.count("error") > before:
         return None
@@ -320,7 +324,30 @@ def gather_facts(
         sources,
         from_log,
         skip,
+        eyes,
     )
+
+
+def _eyes(study: Study, readers: FactTable | None, findings: Findings) -> dict[str, str]:
+    """The eye that counts, for each reader of whom the reader table says so."""
+    eye = study.logs.eye
+    if eye is None or eye.column is None or readers is None:
+        return {}
+    if eye.column not in readers.columns:
+        near = get_close_matches(eye.column, readers.columns, n=1)
+        findings.error(
+            "the reader table does not say which eye counts",
+            path=study.shown,
+            line=study.line_of("logs", "eye", "column"),
+            where="logs.eye.column",
+            found=eye.column,
+            expected="one of " + ", ".join(readers.columns),
+            fix=f'did you mean "{near[0]}"?' if near else "correct the name of the column",
+        )
+        return {}
+    names, column = readers.columns["participant"], readers.columns[eye.column]
+    every = range(len(readers.lines))
+    return {names.text(row): column.text(row) for row in every if column.codes[row] >= 0}
 
 
 def shown_path(study: Study, given: str | Path) -> str:

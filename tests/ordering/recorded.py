@@ -40,6 +40,7 @@ def reader_log(fixations: Sequence[Fixation]) -> ReaderLog:
         None,
         np.arange(2, len(fixations) + 2, dtype=np.int32),
         np.zeros(len(fixations), dtype=bool),
+        np.full(len(fixations), -1, dtype=np.int32),
     )
     return ReaderLog(log, file.astype(np.int32), ("a.tsv", "b.tsv"), trial.astype(np.int64))
 

@@ -35,7 +35,9 @@ def logs(draw: st.DrawFn) -> CanonicalLog:
         ids["session"] = coded(("a", ""), 0)
     label = coded(("verb", "…"), -1) if draw(st.booleans()) else None
     lines = np.arange(2, rows + 2, dtype=np.int32)
-    return CanonicalLog(ids, {}, *(numbers() for _ in NUMBERS), label, lines, lines % 3 == 0)
+    return CanonicalLog(
+        ids, {}, *(numbers() for _ in NUMBERS), label, lines, lines % 3 == 0, lines - 2
+    )
 
 
 def texts(coded: Coded | None) -> list[str] | None:
@@ -109,7 +111,7 @@ def test_order_of_values_makes_no_difference(tmp_path: Path, order: tuple[str, s
         ids = {"participant": participant, "trial": Coded(codes, trials)}
         lines = np.array([2, 3], dtype=np.int32)
         log = CanonicalLog(
-            ids, {}, nowhere, nowhere, np.ones(2), nowhere, nowhere, None, lines, lines > 0
+            ids, {}, nowhere, nowhere, np.ones(2), nowhere, nowhere, None, lines, lines > 0, lines
         )
         parts.append(
             (tmp_path / f"{number}.arrow", keep_log(log, tmp_path / f"{number}.arrow", shelf))

@@ -7,7 +7,7 @@ from pathlib import Path
 from typing import Any
 
 from etl.errors import Findings
-from etl.parsers import CanonicalLog, LogReader
+from etl.parsers import CanonicalLog, LogReader, reader_for
 from etl.parsers.canonical import LogNote
 from etl.study import Study
 
@@ -37,7 +37,7 @@ def reader_of(
             **({"screen": screen} if screen else {}),
         }
     )
-    return LogReader(study.logs, study.screen, facts)
+    return reader_for(study.logs, study.screen, facts)
 
 
 def read(

@@ -152,6 +152,7 @@ def unscreened(reader: naive.Reader, texts: list[int]) -> Unscreened:
         label=None,
         source_line=np.arange(2, len(every) + 2, dtype=np.int32),
         blink=np.array([f.blink for f in every], bool),
+        recording=np.full(len(every), -1, dtype=np.int32),
     )
     ordered = OrderedFixations(
         np.arange(len(every)),

@@ -133,11 +133,11 @@ def test_missing_key_is_asked_for(
         ),
         pytest.param(
             '["logs/*.tsv"]',
-            '["logs/*.tsv"]\nkind = "events"',
-            'study.toml:3: logs.kind: this is not one of the choices; found "events",'
-            ' expected "table" (no other in this version)\n'
-            '    fix: write "table"',
-            id="only choice",
+            '["logs/*.tsv"]\nkind = "event"',
+            'study.toml:3: logs.kind: this is not one of the choices; found "event",'
+            ' expected "table", "events" or "bids"\n'
+            '    fix: did you mean "events"?',
+            id="kind of log",
         ),
         pytest.param(
             "[regions]",

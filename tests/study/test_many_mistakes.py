@@ -68,8 +68,8 @@ study.toml:2: tilte: unknown key
     fix: did you mean "title"?
 study.toml:5: logs.flies: unknown key
     fix: did you mean "files"?
-study.toml:6: logs.kind: this is not one of the choices; found "tabel", expected "table" (no \
-other in this version)
+study.toml:6: logs.kind: this is not one of the choices; found "tabel", expected "table", \
+"events" or "bids"
     fix: did you mean "table"?
 study.toml:7: logs.participant_from_name: the pattern does not say which part is the \
 participant; found "(?P<reader>P\\d+)", expected a group named participant

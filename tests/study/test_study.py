@@ -23,6 +23,7 @@ DEFAULTS = {
         "decimal": None,
         "encoding": None,
         "missing": ["", ".", "NA"],
+        "comment": ["#"],
         "columns": {
             "participant": {"column": "reader", "unit": None},
             "trial": {"column": "trial_no", "unit": None},
@@ -39,6 +40,10 @@ DEFAULTS = {
             "blink": None,
         },
         "where": {},
+        "patterns": None,
+        "eye": None,
+        "samples": None,
+        "bids": None,
     },
     "participants": None,
     "items": None,

@@ -1,0 +1,349 @@
+"""Rows of a log as text cells, whatever its kind, and from them canonical fixations."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field, replace
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import numpy as np
+import pyarrow as pa
+from numpy.typing import NDArray
+
+from etl.errors import Findings
+from etl.files import Coded, NumberReading, find_decimal, marks_of, number_of, numbers_in, truth_of
+from etl.parsers.canonical import CanonicalLog, LogNote
+from etl.parsers.coordinates import to_screen_px
+from etl.parsers.eyes import EyeChoice
+from etl.parsers.identifiers import IDS, ids_in_name, read_ids
+from etl.parsers.time_checks import check_times, in_ms
+
+if TYPE_CHECKING:
+    from etl.study.models import Column, Logs, Screen
+
+_NUMBERS = ("onset", "end", "duration", "fixation", "x", "y")
+#: How many values of a column that [logs.where] does not ask for are remembered, to tell a slip.
+_MOST_OTHERS = 20
+
+
+@dataclass(frozen=True, slots=True)
+class LogRows:
+    """Rows of a log as text cells.
+
+    Attributes
+    ----------
+    columns : dict of str to (n,) pa.Array of text
+        The cells by header.
+    lines : (n,) int32 array
+        The line on which each row begins, from 1.
+    recording : (n,) int32 array or None
+        As in :class:`~etl.parsers.canonical.CanonicalLog`; None where the log does not say.
+    blink : (n,) bool array or None
+        Whether a blink touches each fixation, where no column says so.
+    """
+
+    columns: dict[str, pa.Array]
+    lines: NDArray[np.int32]
+    recording: NDArray[np.int32] | None = None
+    blink: NDArray[np.bool_] | None = None
+
+    def __len__(self) -> int:
+        return len(self.lines)
+
+    def take(self, rows: NDArray[np.int64]) -> LogRows:
+        """Some of the rows."""
+        picked = pa.array(rows)
+        return LogRows(
+            {name: column.take(picked) for name, column in self.columns.items()},
+            self.lines[rows],
+            None if self.recording is None else self.recording[rows],
+            None if self.blink is None else self.blink[rows],
+        )
+
+
+@dataclass(frozen=True, slots=True)
+class RowReading:
+    """How rows of text cells become canonical fixations, by the study's description.
+
+    Attributes
+    ----------
+    logs : Logs
+        The study's ``[logs]``.
+    screen : Screen or None
+        The study's ``[screen]``.
+    facts : tuple of str
+        Headers of facts about trials that are taken from the log.
+    eyes : EyeChoice
+        Which eye counts for each reader.
+    """
+
+    logs: Logs
+    screen: Screen | None
+    facts: tuple[str, ...]
+    eyes: EyeChoice = field(default_factory=EyeChoice)
+
+    def columns(self) -> dict[str, Column]:
+        """The columns that are read, by canonical name."""
+        described = self.logs.columns
+        wanted = (*IDS, *_NUMBERS, "label", "eye", "blink")
+        found = {name: getattr(described, name) for name in wanted}
+        return {name: column for name, column in found.items() if column is not None}
+
+    def headers(self) -> dict[str, str]:
+        """The header of each column that is read, by canonical name."""
+        return {name: column.column for name, column in self.columns().items()}
+
+    def needed(self) -> list[str]:
+        """The headers that a log must have."""
+        return [
+            *self.headers().values(),
+            *self.eyes.headers(self.logs),
+            *self.facts,
+            *(header for header, _ in self.where()),
+        ]
+
+    def missing(self) -> frozenset[str]:
+        """What stands in a cell that has no value; cells are compared without blanks around."""
+        return marks_of(self.logs.missing)
+
+    def where(self) -> list[tuple[str, Sequence[str]]]:
+        """Headers and values of ``[logs.where]``; a canonical name stands for its header."""
+        columns = self.columns()
+        return [
+            (columns[name].column if name in columns else name, values)
+            for name, values in self.logs.where.items()
+        ]
+
+    def named(self, path: Path, shown: str, findings: Findings) -> dict[str, str]:
+        """What a file's name says; see :func:`~etl.parsers.identifiers.ids_in_name`."""
+        return ids_in_name(
+            self.logs.participant_from_name,
+            path.name,
+            (self.missing(), self.headers().keys()),
+            shown,
+            findings,
+        )
+
+    def asked_for(self, rows: LogRows, note: LogNote, findings: Findings) -> LogRows | None:
+        """The rows that ``[logs.where]`` asks for.
+
+        Parameters
+        ----------
+        rows : LogRows
+            All rows.
+        note : LogNote
+            Where it is counted how many there are of the others.
+        findings : Findings
+            Where it is recorded that no row has a value asked for.
+
+        Returns
+        -------
+        LogRows or None
+            None where a problem was recorded.
+        """
+        where = self.where()
+        note.counts["rows"] = len(rows)
+        note.counts["rows not asked for"] = 0
+        if not where:
+            return rows
+        mask = np.ones(len(rows), dtype=bool)
+        before = findings.count("error")
+        for name, (header, values) in zip(self.logs.where, where, strict=True):
+            coded = Coded.of(rows.columns[header], ())
+            asked = coded.among(values)
+            others = [text for text in coded.values if text not in values][:_MOST_OTHERS]
+            note.asked[name] = (*(v for v in values if v in coded.values), *others)
+            if not asked.any():
+                findings.error(
+                    "no row has the value asked for",
+                    path=note.shown,
+                    where=f'column "{header}"',
+                    found=", ".join(coded.values[:5]),
+                    expected=" or ".join(values),
+                    fix="correct [logs.where] in the study file, or remove the log",
+                )
+            mask &= asked
+        if findings.count("error") > before:
+            return None
+        if not mask.any():
+            findings.error(
+                "no row is left by [logs.where]",
+                path=note.shown,
+                expected="a row that has "
+                + " and ".join(f"{header} {' or '.join(v)}" for header, v in where),
+                fix="correct [logs.where] in the study file, or remove the log",
+            )
+            return None
+        return _without(rows, ~mask, "rows not asked for", note)
+
+    def canonical(
+        self, rows: LogRows, named: dict[str, str], note: LogNote, findings: Findings
+    ) -> CanonicalLog | None:
+        """Cells into canonical fixations.
+
+        Parameters
+        ----------
+        rows : LogRows
+            The rows, each counted among the lines of the note as ``"fixations"``.
+        named : dict of str to str
+            What the file's name says, from :meth:`ids_in_name`.
+        note : LogNote
+            Where it is told how the log was understood.
+        findings : Findings
+            Where every cell that cannot be used is recorded, with its line.
+
+        Returns
+        -------
+        CanonicalLog or None
+            None where a problem was recorded that hides others.
+        """
+        asked = self.asked_for(rows, note, findings)
+        if asked is None:
+            return None
+        rows, columns = asked, self.headers()
+        ids = read_ids(
+            (rows.columns, rows.lines), columns, named, self.missing(), note.shown, findings
+        )
+        if self.logs.eye is not None and "participant" in ids:
+            if findings.failed:
+                return None
+            chosen = self.eyes.choose(
+                rows.columns, rows.lines, columns, ids, self.logs, note, findings
+            )
+            if chosen is None:
+                return None
+            left = np.flatnonzero(chosen.rows)
+            ids = {name: coded.take(left) for name, coded in ids.items()}
+            rows = replace(rows, columns={**rows.columns, **chosen.columns})
+            rows = _without(rows, ~chosen.rows, "rows of the other eye", note)
+            columns = chosen.headers
+        numbers = self._numbers(rows.columns, rows.lines, columns, note, findings)
+        if numbers is None:
+            return None
+        return self._fixations(rows, columns, ids, numbers, note, findings)
+
+    def _fixations(
+        self,
+        rows: LogRows,
+        columns: dict[str, str],
+        ids: dict[str, Coded],
+        numbers: dict[str, NDArray[np.float64]],
+        note: LogNote,
+        findings: Findings,
+    ) -> CanonicalLog:
+        """Rows of fixations into canonical columns."""
+        cells, lines, missing = rows.columns, rows.lines, self.missing()
+        duration_ms = check_times(numbers, cells, lines, columns, note.shown, findings)
+        nowhere = np.full(len(lines), np.nan)
+        x_px, y_px = to_screen_px(
+            numbers.get("x", nowhere),
+            numbers.get("y", nowhere),
+            units=(self._unit("x"), self._unit("y")),
+            screen=self.screen,
+        )
+        note.counts["fixations"] = len(lines)
+        if "x" in numbers:
+            note.counts["fixations without a position"] = int(
+                (np.isnan(x_px) | (np.isnan(y_px) if "y" in numbers else False)).sum()
+            )
+        label = Coded.of(cells[columns["label"]], missing) if "label" in columns else None
+        blink = self._blinks(cells, lines, columns, note.shown, findings)
+        return CanonicalLog(
+            ids,
+            {name: Coded.of(cells[name], missing) for name in self.facts},
+            numbers.get("onset", nowhere),
+            numbers.get("fixation", nowhere),
+            duration_ms,
+            x_px,
+            y_px,
+            label,
+            lines,
+            blink if rows.blink is None else blink | rows.blink,
+            np.full(len(lines), -1, dtype=np.int32) if rows.recording is None else rows.recording,
+        )
+
+    def _blinks(
+        self,
+        cells: dict[str, pa.Array],
+        lines: NDArray[np.int32],
+        columns: dict[str, str],
+        shown: str,
+        findings: Findings,
+    ) -> NDArray[np.bool_]:
+        """Whether a blink touches each fixation: a number that is not 0, or a word for yes."""
+        if "blink" not in columns:
+            return np.zeros(len(lines), dtype=bool)
+        coded = Coded.of(cells[columns["blink"]], self.missing())
+        known = [_touches(text) for text in coded.values]
+        for code, touches in enumerate(known):
+            if touches is None:
+                row = int(np.flatnonzero(coded.codes == code)[0])
+                findings.error(
+                    "this does not say whether a blink touches the fixation",
+                    path=shown,
+                    line=int(lines[row]),
+                    where=f'column "{columns["blink"]}"',
+                    found=coded.values[code],
+                    expected="a number (0 for no blink), or a word for yes or no",
+                    fix="correct the cells, or take blink out of [logs.columns]",
+                )
+        return np.array([*(bool(touches) for touches in known), False])[coded.codes]
+
+    def _unit(self, name: str) -> str:
+        """The unit of a position column."""
+        column = self.columns().get(name)
+        return "px" if column is None else str(column.unit)
+
+    def _numbers(
+        self,
+        cells: dict[str, pa.Array],
+        lines: NDArray[np.int32],
+        columns: dict[str, str],
+        note: LogNote,
+        findings: Findings,
+    ) -> dict[str, NDArray[np.float64]] | None:
+        """The columns of numbers, times in ms."""
+        present = {name: columns[name] for name in _NUMBERS if name in columns}
+        decimal = self.logs.decimal or find_decimal(
+            {header: cells[header] for header in present.values()},
+            note.shown,
+            lambda row: int(lines[row]),
+            findings,
+        )
+        if decimal is None:
+            return None
+        note.decimal = decimal
+        reading = NumberReading(note.shown, lines, self.missing(), decimal)
+        numbers: dict[str, NDArray[np.float64]] = {}
+        sound = True
+        for name, header in present.items():
+            unit = getattr(self.columns()[name], "unit", None)
+            expected = "a whole number" if name == "fixation" else f"a number in {unit}"
+            values = numbers_in(cells[header], header, reading, findings, expected=expected)
+            if values is None:
+                sound = False
+            elif name in ("onset", "end", "duration"):
+                numbers[name] = in_ms(values, str(unit))
+            else:
+                numbers[name] = values
+        return numbers if sound else None
+
+
+def _without(rows: LogRows, mask: NDArray[np.bool_], fate: str, note: LogNote) -> LogRows:
+    """The rows but for some, which are counted under a fate of their own."""
+    out = np.flatnonzero(mask)
+    note.counts[fate] = len(out)
+    if not out.size:
+        return rows
+    note.account.move("fixations", fate, len(out), int(rows.lines[out[0]]))
+    return rows.take(np.flatnonzero(~mask))
+
+
+def _touches(text: str) -> bool | None:
+    """Whether a cell says that there was a blink; None where it does not say."""
+    truth = truth_of(text)
+    if truth is not None:
+        return truth
+    number = number_of(text.replace(",", "."))
+    return None if number is None else number != 0

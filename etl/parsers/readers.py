@@ -1,0 +1,77 @@
+"""Which reader reads the logs of a study, by their kind."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Protocol
+
+from etl.errors import Findings
+from etl.parsers.canonical import CanonicalLog, LogNote
+from etl.parsers.eyes import EyeChoice
+from etl.parsers.log_rows import RowReading
+from etl.parsers.table_log import TableReader
+
+if TYPE_CHECKING:
+    from etl.study.models import Logs, Screen
+
+
+class LogReader(Protocol):
+    """Reads one log after another; can be pickled, for workers of any kind."""
+
+    def header(self, path: Path) -> tuple[str, ...]:
+        """What a log can say about trials by name; empty where it cannot be read."""
+        ...
+
+    def read(
+        self, path: Path, shown: str, findings: Findings
+    ) -> tuple[CanonicalLog, LogNote] | None:
+        """Read one log; None where a problem was recorded."""
+        ...
+
+
+def reader_for(
+    logs: Logs,
+    screen: Screen | None,
+    facts: tuple[str, ...] = (),
+    eyes: EyeChoice | None = None,
+) -> LogReader:
+    """The reader for a study's logs.
+
+    Parameters
+    ----------
+    logs : Logs
+        The study's ``[logs]``.
+    screen : Screen or None
+        The study's ``[screen]``.
+    facts : tuple of str
+        Headers of facts about trials that are taken from the logs.
+    eyes : EyeChoice, optional
+        Which eye counts for each reader, where both were recorded.
+
+    Returns
+    -------
+    LogReader
+        Reads a log of that kind.
+    """
+    reading = RowReading(logs, screen, facts, eyes or EyeChoice.of(logs))
+    return TableReader(reading)
+
+
+def is_log(kind: str, path: Path) -> bool:
+    """Whether a file that the study's patterns find is a log of its own.
+
+    Parameters
+    ----------
+    kind : {"table", "events", "bids"}
+        The kind of the study's logs.
+    path : Path
+        The file.
+
+    Returns
+    -------
+    bool
+        False for what belongs to a log, such as its sidecar.
+    """
+    if kind == "bids" and not path.name.endswith("_physio.tsv.gz"):
+        return False
+    return path.is_file()
