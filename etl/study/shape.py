@@ -26,10 +26,35 @@ def table_in(annotation: Any) -> type[Table] | None:
     type or None
         None where the field holds a value.
     """
+    if get_origin(annotation) is dict:
+        return None
     for candidate in (annotation, *get_args(annotation)):
         if isinstance(candidate, type) and issubclass(candidate, Table):
             return candidate
     return None
+
+
+def _tables_in(annotation: Any) -> type[Table] | None:
+    """The table that a field holds under any names, such as one for each eye."""
+    if get_origin(annotation) is not dict:
+        return None
+    inner = get_args(annotation)[1]
+    return inner if isinstance(inner, type) and issubclass(inner, Table) else None
+
+
+def _walked(path: Sequence[str | int]) -> Iterator[tuple[FieldInfo | None, type[Table] | None]]:
+    """For each key of a path its field, and the table that it is or holds."""
+    table: type[Table] | None = StudyFile
+    any_name: type[Table] | None = None
+    field: FieldInfo | None = None
+    for key in path:
+        if any_name is not None:
+            table, any_name = any_name, None
+        else:
+            field = None if table is None else table.model_fields.get(str(key))
+            table = None if field is None else table_in(field.annotation)
+            any_name = None if field is None else _tables_in(field.annotation)
+        yield field, table
 
 
 def table_at(path: Sequence[str | int]) -> type[Table] | None:
@@ -51,9 +76,8 @@ def table_at(path: Sequence[str | int]) -> type[Table] | None:
     'Layout'
     """
     table: type[Table] | None = StudyFile
-    for key in path:
-        field = None if table is None else table.model_fields.get(str(key))
-        table = None if field is None else table_in(field.annotation)
+    for _, table in _walked(path):
+        pass
     return table
 
 
@@ -76,12 +100,9 @@ def field_at(path: Sequence[str | int]) -> FieldInfo | None:
     [['cue', 'fit']]
     """
     found: FieldInfo | None = None
-    table: type[Table] | None = StudyFile
-    for key in path:
-        if table is None:
+    for found, inner in _walked(path):
+        if inner is None and (found is None or _tables_in(found.annotation) is None):
             break
-        found = table.model_fields.get(str(key))
-        table = None if found is None else table_in(found.annotation)
     return found
 
 
