@@ -4,12 +4,13 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterator, Mapping
+from contextlib import suppress
 from typing import Annotated, Any, Literal
 
-from pydantic import AfterValidator, ConfigDict, Field, model_validator
+from pydantic import AfterValidator, ConfigDict, Field, ValidationError, model_validator
 
 from etl.study.columns import Column, PlaceColumn, PlainColumn, TimeColumn
-from etl.study.log_kinds import Bids, Eye, LinePatterns, Samples
+from etl.study.log_kinds import Bids, Eye, EyeColumns, LinePatterns, Samples
 from etl.study.values import (
     CellTexts,
     Encoding,
@@ -209,14 +210,16 @@ def _known_columns(logs: Mapping[str, Any]) -> Iterator[tuple[str, Any]]:
                 yield group, group
     by_eye = eye.get("columns") if isinstance(eye, dict) else None
     if isinstance(by_eye, dict):
-        for columns in by_eye.values():
-            if isinstance(columns, dict):
-                yield from columns.items()
-                break
+        first = next(iter(by_eye.values()), None)
+        for name, column in first.items() if isinstance(first, dict) else ():
+            # A mistake is reported once, where it stands.
+            with suppress(ValidationError):
+                EyeColumns.model_validate({name: column})
+                yield name, column
 
 
 def groups_in(patterns: Mapping[str, Any]) -> list[str]:
-    """The named groups of the patterns of ``[logs.patterns]``, each once; faulty patterns have none.
+    """The named groups of ``[logs.patterns]``, each once; faulty patterns have none.
 
     Parameters
     ----------

@@ -76,8 +76,8 @@ def table_at(path: Sequence[str | int]) -> type[Table] | None:
     'Layout'
     """
     table: type[Table] | None = StudyFile
-    for _, table in _walked(path):
-        pass
+    for _, inner in _walked(path):
+        table = inner
     return table
 
 
