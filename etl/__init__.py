@@ -4,15 +4,17 @@ Examples
 --------
 >>> import etl
 >>> sorted(name for name in etl.__all__ if name[0].islower())
-['build', 'check', 'load_study', 'trace']
+['build', 'check', 'draft', 'load_study', 'trace']
 """
 
+from etl.drafting import Draft, draft
 from etl.errors import DataError, FaultError, Finding, Findings, InputError, StudyError
 from etl.session import Result, build, check, load_study, trace
 from etl.study import Study
 
 __all__ = [
     "DataError",
+    "Draft",
     "FaultError",
     "Finding",
     "Findings",
@@ -22,6 +24,7 @@ __all__ = [
     "StudyError",
     "build",
     "check",
+    "draft",
     "load_study",
     "trace",
 ]

@@ -76,6 +76,31 @@ def main() -> None:
 
 
 @main.command()
+@click.argument("logs", nargs=-1, required=True, metavar="LOG...")
+@click.option(
+    "--into",
+    default="study.toml",
+    show_default=True,
+    metavar="FILE",
+    help="Where the study file goes; it must not be there yet. With - it is printed.",
+)
+def draft(logs: tuple[str, ...], into: str) -> None:
+    """Look at logs and write a study file to start from.
+
+    LOG is a log, a pattern such as "logs/*.tsv", or a folder with logs in it. Every guess stands in
+    the study file with its evidence; what only you can know is left as a question.
+    """
+    to_stdout = into == "-"
+    drafted = etl.draft(logs, into=None if to_stdout else into)
+    for line in drafted.findings.lines():
+        click.echo(line, err=True)
+    click.echo(
+        drafted.text if to_stdout else drafted.told(on_terminal=sys.stdout.isatty()),
+        nl=not to_stdout,
+    )
+
+
+@main.command()
 @_STUDY
 @_WORKERS
 @_QUIET

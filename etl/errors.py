@@ -7,7 +7,7 @@ lists every problem at once. Only this module turns findings into text.
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, field, replace
 from typing import Literal, TypedDict, Unpack
 
@@ -18,8 +18,10 @@ Severity = Literal["error", "warning", "note"]
 SPELLED_OUT = 5
 
 
-#: How many files with one and the same problem are spelled out.
+#: How many files with one and the same problem are spelled out; the rest are named.
 FILES_SPELLED_OUT = 10
+#: Lists of files are broken into lines of about this many letters.
+_LIST_WIDTH = 96
 
 Kind = tuple[str, str, str, str]
 
@@ -33,6 +35,7 @@ class Place(TypedDict, total=False):
     found: str | None
     expected: str
     fix: str
+    files: tuple[str, ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,6 +60,9 @@ class Finding:
         What was expected in its place.
     fix : str
         What to do about it.
+    files : tuple of str
+        All files that it is about where there are several, each perhaps with a remark in brackets;
+        ``path`` is empty then.
     """
 
     problem: str
@@ -67,6 +73,7 @@ class Finding:
     found: str | None = None
     expected: str = ""
     fix: str = ""
+    files: tuple[str, ...] = ()
 
     @property
     def kind(self) -> Kind:
@@ -85,13 +92,32 @@ class Finding:
         says = head + ("; " + ", ".join(tail) if tail else "")
         if self.severity != "error":
             says = f"{self.severity}: {says}"
-        return says + (f"\n    fix: {self.fix}" if self.fix else "")
+        listed = "".join(f"\n    {line}" for line in in_lines(self.files))
+        return says + listed + (f"\n    fix: {self.fix}" if self.fix else "")
 
 
 def shown(value: str, most: int = 60) -> str:
     """A value in quotes, with control characters spelled and long values cut."""
     whole = "".join(c if c.isprintable() else repr(c)[1:-1] for c in value[: most + 1])
     return f'"{whole[:most]}…"' if len(value) > most or len(whole) > most else f'"{whole}"'
+
+
+def in_lines(names: Sequence[str]) -> list[str]:
+    """Names with commas between them, broken into lines; no name is broken.
+
+    Examples
+    --------
+    >>> in_lines(["P01.tsv", "P02.tsv"])
+    ['P01.tsv, P02.tsv']
+    """
+    lines: list[str] = []
+    for place, name in enumerate(names, start=1):
+        piece = name + ("," if place < len(names) else "")
+        if lines and len(lines[-1]) + 1 + len(piece) <= _LIST_WIDTH:
+            lines[-1] += f" {piece}"
+        else:
+            lines.append(piece)
+    return lines
 
 
 @dataclass(slots=True)
@@ -169,7 +195,8 @@ class Findings:
     def lines(self, severities: Iterable[Severity] = ("error", "warning", "note")) -> list[str]:
         """Each finding as text, followed by how many more of its kind there were.
 
-        Of one problem that many files have, the first few files are spelled out.
+        Of one problem that many files have, the first few files are spelled out and the others
+        named.
         """
         wanted = set(severities)
         left = Counter(finding.kind for finding in self.items)
@@ -189,11 +216,14 @@ class Findings:
             if left[kind] == 0 and more > 0:
                 out.append(f"    … and {more:,} more like this in {finding.path or 'this study'}")
         for (_, where, problem), own in files.items():
-            rest = list(own.values())[FILES_SPELLED_OUT:]
+            rest = list(own.items())[FILES_SPELLED_OUT:]
             if rest:
                 place = f"{where}: " if where else ""
+                count = sum(times for _, times in rest)
+                what = "file" if len(rest) == 1 else "files"
                 out.append(
-                    f"    … and {sum(rest):,} more in {len(rest):,} more files: {place}{problem}"
+                    f"    … and {count:,} more in {len(rest):,} more {what}: {place}{problem}"
+                    + "".join(f"\n    {line}" for line in in_lines([path for path, _ in rest]))
                 )
         return out
 

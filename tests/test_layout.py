@@ -32,6 +32,8 @@ MAY_USE = {
     "parsers": {"errors", "tables", "files"},
     "trials": {"errors", "tables", "files"},
     "regions": {"errors", "tables", "files"},
+    # A draft is checked by reading the first log as a build would.
+    "drafting": {"errors", "tables", "files", "parsers", "study"},
     "screening": {"errors"},
     # The ledger and the accounts are handed over as plain rows.
     "export": {"errors", "tables", "screening"},
@@ -41,7 +43,7 @@ MAY_USE = {
         *("screening", "export", "report"),
     },
     "cli": {"etl", "session"},
-    "etl": {"errors", "session", "study"},
+    "etl": {"drafting", "errors", "session", "study"},
 }
 #: Rooms that are handed parts of the study file: they may name its models, for type checkers only.
 MAY_NAME_THE_STUDY = {"parsers", "trials", "regions"}
@@ -49,9 +51,10 @@ MAY_NAME_THE_STUDY = {"parsers", "trials", "regions"}
 USED_IN = {
     "numpy": {
         *("files", "parsers", "trials", "regions", "measures", "screening", "export", "report"),
-        "session",
+        *("session", "drafting"),
     },
-    "pyarrow": {"files", "parsers", "export", "report", "session", "tables"},
+    "pyarrow": {"files", "parsers", "export", "report", "session", "tables", "drafting"},
+    "openpyxl": {"files"},
     "scipy": {"report"},
     "jinja2": {"report"},
     "markupsafe": {"report"},

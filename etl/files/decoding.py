@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import codecs
 import gzip
 import hashlib
 import zlib
@@ -9,6 +10,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from etl.errors import Findings
+from etl.files.text_encodings import BYTE_ORDER_MARKS, encoding_of, mixes_encodings
 
 #: Files that are no text, known by their first bytes (each signature is in the format's own
 #: standard: PNG ISO/IEC 15948, JPEG ISO/IEC 10918, GIF89a, TIFF 6.0, PDF ISO 32000, ZIP
@@ -25,15 +27,9 @@ _SIGNATURES = (
     (b"PK\x03\x04", "a ZIP archive or a spreadsheet workbook"),
     (b"PAR1", "a Parquet file"),
 )
-_BYTE_ORDER_MARKS = (
-    (b"\xff\xfe\x00\x00", "utf-32"),
-    (b"\x00\x00\xfe\xff", "utf-32"),
-    (b"\xef\xbb\xbf", "utf-8-sig"),
-    (b"\xff\xfe", "utf-16"),
-    (b"\xfe\xff", "utf-16"),
-)
-#: How much of a file is looked at to tell UTF-16 without a byte-order mark from other text.
-_PROBE_BYTES = 4096
+
+#: A byte-order mark read in the other order; no character (The Unicode Standard, section 23.8).
+_REVERSED_MARK = "\ufffe"
 
 
 @dataclass(frozen=True, slots=True)
@@ -73,8 +69,8 @@ def read_text(
         Where problems are recorded.
     encoding : str, optional
         The encoding the study file states. Where it is absent, a byte-order mark decides, then
-        the pattern of zero bytes (UTF-16), then whether the bytes are valid UTF-8; what is left
-        is read as Windows-1252, with a note.
+        the pattern of zero bytes (UTF-16, UTF-32), then whether the bytes are valid UTF-8; what
+        is left is read as Windows-1252, with a warning, unless some of it is UTF-8.
 
     Returns
     -------
@@ -88,22 +84,53 @@ def read_text(
     try:
         stored = path.read_bytes()
     except OSError as why:
-        _tell_unreadable(path, shown, why, findings)
+        tell_unreadable(path, shown, why, findings)
+        return None
+    data = _unpacked(stored, shown, findings)
+    if data is None:
         return None
     digest = hashlib.sha256(stored).hexdigest()
-    data = _unpacked(stored, shown, findings)
-    if data is None or not _is_text(data, shown, findings):
+    return text_of(data, shown, findings, encoding=encoding, digest=digest)
+
+
+def text_of(
+    data: bytes, shown: str, findings: Findings, *, encoding: str | None = None, digest: str = ""
+) -> RawText | None:
+    """Bytes into text, by the encoding that is stated or that they suggest themselves.
+
+    Parameters
+    ----------
+    data : bytes
+        The bytes, not compressed.
+    shown : str
+        The file's name for messages.
+    findings : Findings
+        Where problems are recorded.
+    encoding : str, optional
+        As in :func:`read_text`.
+    digest : str, optional
+        Digest of the file that the bytes are from.
+
+    Returns
+    -------
+    RawText or None
+        None where a problem was recorded.
+    """
+    if not _is_text(data, shown, findings):
         return None
     if encoding is not None and _contradicted(data, encoding, shown, findings):
         return None
-    found = encoding or _encoding_of(data)
+    found = encoding or encoding_of(data)
+    if encoding is None and found == "cp1252" and mixes_encodings(data):
+        _tell_mixture(data, shown, findings)
+        return None
     text = _decoded(data, found, shown, findings, stated=encoding is not None)
     if text is None:
         return None
     return RawText(shown, text, digest, found)
 
 
-def _tell_unreadable(path: Path, shown: str, why: OSError, findings: Findings) -> None:
+def tell_unreadable(path: Path, shown: str, why: OSError, findings: Findings) -> None:
     """Record why a file cannot be read."""
     if isinstance(why, FileNotFoundError):
         findings.error(
@@ -175,31 +202,9 @@ def _is_text(data: bytes, shown: str, findings: Findings) -> bool:
     return True
 
 
-def _encoding_of(data: bytes) -> str:
-    """The encoding that the bytes themselves suggest."""
-    for mark, name in _BYTE_ORDER_MARKS:
-        if data.startswith(mark):
-            return name
-    probe = data[:_PROBE_BYTES]
-    even, odd = probe[0::2].count(0), probe[1::2].count(0)
-    # Text of any Latin script in UTF-16 has a zero in nearly every other byte, and nearly always
-    # on one side: a few letters, such as the A with macron (U+0100), have theirs on the other.
-    if odd > len(probe) // 4 and even < odd // 10:
-        return "utf-16-le"
-    if even > len(probe) // 4 and odd < even // 10:
-        return "utf-16-be"
-    if data.isascii():
-        return "utf-8"
-    try:
-        data.decode("utf-8")
-    except UnicodeDecodeError:
-        return "cp1252"
-    return "utf-8"
-
-
 def _contradicted(data: bytes, encoding: str, shown: str, findings: Findings) -> bool:
     """Whether a byte-order mark says another encoding than the study file; says so."""
-    marked = next((name for mark, name in _BYTE_ORDER_MARKS if data.startswith(mark)), None)
+    marked = next((name for mark, name in BYTE_ORDER_MARKS if data.startswith(mark)), None)
     stated = _plain_name(encoding)
     if marked is None or stated.startswith(_plain_name(marked).removesuffix("sig")):
         return False
@@ -229,7 +234,11 @@ def _decoded(
             if not text.isascii():
                 text.decode("utf-8")
         else:
-            text = data.decode(encoding).removeprefix("\ufeff").encode("utf-8")
+            letters = data.decode(encoding).removeprefix("\ufeff")
+            text = letters.encode("utf-8")
+            if _REVERSED_MARK in letters:
+                _tell_reversed(letters, shown, findings)
+                return None
     except UnicodeError as why:
         _tell_undecodable(why, encoding, shown, findings, stated=stated)
         return None
@@ -253,6 +262,14 @@ def _decoded(
             fix="the file is damaged or is no text: copy or export it again",
         )
         return None
+    if stated and not data.isascii() and _is_utf8_all_the_same(data, encoding):
+        findings.warning(
+            f"the text is valid UTF-8 and was read as {encoding}",
+            path=shown,
+            expected=f"{encoding}, as [logs] encoding says",
+            fix="check the letters with accents; remove [logs] encoding to have it found out file "
+            "by file",
+        )
     if encoding == "cp1252" and not stated:
         findings.warning(
             "the text is not UTF-8 and was read as Windows-1252",
@@ -261,6 +278,50 @@ def _decoded(
             'state [logs] encoding = "cp1252"',
         )
     return text
+
+
+def _is_utf8_all_the_same(data: bytes, encoding: str) -> bool:
+    """Whether bytes that are read in another encoding are valid UTF-8."""
+    if codecs.lookup(encoding).name.startswith("utf"):
+        return False
+    try:
+        data.decode("utf-8")
+    except UnicodeDecodeError:
+        return False
+    return True
+
+
+def _tell_mixture(data: bytes, shown: str, findings: Findings) -> None:
+    """Record where text that is UTF-8 in part is none."""
+    try:
+        data.decode("utf-8")
+    except UnicodeDecodeError as why:
+        cut = why.end == len(data) and "end of data" in why.reason
+        findings.error(
+            "the file ends in the middle of a letter"
+            if cut
+            else "the text is UTF-8 in part and in another encoding in part",
+            path=shown,
+            line=_with_plain_line_ends(data[: why.start]).count(b"\n") + 1,
+            found=f"byte {data[why.start]:#04x}",
+            expected="one encoding in the whole file",
+            fix="copy the file again from where it was recorded"
+            if cut
+            else "save every part as UTF-8 before they are put together; or, if it is a log and is "
+            "in one encoding after all, state [logs] encoding",
+        )
+
+
+def _tell_reversed(letters: str, shown: str, findings: Findings) -> None:
+    """Record where a byte-order mark stands the wrong way round."""
+    before = letters[: letters.index(_REVERSED_MARK)].encode("utf-8")
+    findings.error(
+        "bytes of two orders stand in one file",
+        path=shown,
+        line=_with_plain_line_ends(before).count(b"\n") + 1,
+        expected="one byte order in the whole file",
+        fix="save every part as UTF-8 before they are put together",
+    )
 
 
 def _with_plain_line_ends(text: bytes) -> bytes:

@@ -9,29 +9,25 @@ from __future__ import annotations
 
 import unicodedata
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from pathlib import Path
 
 import numpy as np
 import pyarrow as pa
 from numpy.typing import NDArray
-from pyarrow import csv as arrow_csv
 
 from etl.errors import Findings
 from etl.files.decoding import RawText, read_text
-from etl.files.headers import (
-    COMMENT,
-    Header,
-    Remarks,
-    blanks,
-    find_header,
-    header_is_usable,
-    spelled,
-)
-from etl.files.quoted import RecordLines, split_quoted
-
-#: The longest piece of text, in bytes, that pyarrow's reader is given; it takes 32-bit sizes.
-_LARGEST_BLOCK = 1 << 30
+from etl.files.header_faults import header_is_usable
+from etl.files.headers import REMARKS, Header, find_header
+from etl.files.line_account import line_account
+from etl.files.loose_quotes import split_loosely
+from etl.files.plain import read_plain
+from etl.files.quoted import Split, split_quoted
+from etl.files.repeats import Marks, repeated_headers, tell_strange_marks, without_marks
+from etl.files.rows import Rows, tell_uneven
+from etl.files.tally import FileAccount, Tally
+from etl.files.units import own_names
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,8 +51,12 @@ class Cells:
         The separator of fields.
     text : RawText
         Where the cells came from (digest, encoding).
+    account : FileAccount
+        What became of every line of the file; rows are counted as ``"rows"``.
+    ends_open : bool
+        Whether the last line has no line end, as where a file was cut.
     comments : int
-        Comment lines below the header.
+        Remarks below the header.
     comments_like_rows : int
         Those of them that have as many fields as the header.
     """
@@ -68,6 +68,8 @@ class Cells:
     lines: NDArray[np.int32]
     delimiter: str
     text: RawText
+    account: FileAccount = field(default_factory=FileAccount)
+    ends_open: bool = False
     comments: int = 0
     comments_like_rows: int = 0
 
@@ -129,6 +131,7 @@ def cells_of(
     delimiter: str | None = None,
     needed: Sequence[str] | None = None,
     wary: bool = False,
+    remarks: Sequence[str] = REMARKS,
 ) -> Cells | None:
     """Split text into cells.
 
@@ -141,54 +144,80 @@ def cells_of(
     delimiter : str, optional
         Found out where absent.
     needed : sequence of str, optional
-        Only these columns are kept; one that the header lacks is an error.
+        Only these columns are kept; one that the header lacks is an error. A column that the file
+        names with a known unit in brackets may be asked for without it.
     wary : bool
-        Whether it is an error that a cell in quotes holds a line which would be a row by itself:
-        in a log, whose cells are words and numbers, a quote mark is then missing.
+        Whether the rows are those of a log, whose cells are words and numbers. It is then an error
+        that a cell in quotes holds a line which would be a row by itself, for a quote mark is
+        missing; and a header may be repeated among the rows where files were put together.
+    remarks : sequence of str
+        What a line begins with that is a remark.
 
     Returns
     -------
     Cells or None
         None where a problem was recorded.
     """
-    header = find_header(text.data, delimiter)
-    if not header_is_usable(header, text.data, text.shown, findings, needed):
+    data, marks = without_marks(text.data) if wary else (text.data, Marks([], []))
+    if marks.within:
+        tell_strange_marks(marks.within, text.shown, findings)
+        return None
+    header = find_header(data, delimiter, needed or (), remarks)
+    if not header_is_usable(header, data, text.shown, findings, needed):
         return None
     # A column without a name can never be asked for.
-    wanted = tuple(name for name in dict.fromkeys(needed or header.names) if name)
-    body = text.data[header.body :]
+    asked = header.names if needed is None else own_names(needed, header.names).values()
+    wanted = tuple(name for name in dict.fromkeys(asked) if name)
+    body = data[header.body :]
     if b'"' in body:
-        read = _quoted(body, header, wanted, (text.shown, wary), findings)
+        rows = _quoted(body, header, wanted, (text.shown, wary), findings)
     else:
-        read = _plain(body, header, wanted, text.shown, findings)
-    if read is None:
+        rows = read_plain(body, header, wanted, text.shown, findings)
+    if rows is None:
         return None
-    alike = read.remarks.alike
-    if alike:
-        count = len(alike)
-        findings.warning(
-            f"{count:,} lines begin with # and have as many fields as the header"
-            if count > 1
-            else "a line begins with # and has as many fields as the header",
-            path=text.shown,
-            line=alike[0],
-            expected="remarks, which are not read",
-            fix="if this is a row, put its first cell in quotes",
+    repeated = (
+        repeated_headers(rows, header, data, text.shown, findings)
+        if wary
+        else np.zeros(0, dtype=np.int64)
+    )
+    if repeated is None:
+        return None
+    account = line_account(rows, header, data, rows.lines[repeated])
+    if marks.beginning:
+        aside = {*rows.aside.blank, *rows.aside.remarks, *rows.lines[repeated].tolist()}
+        explained = {*aside, *range(1, header.first)}
+        strange = [number for number in marks.beginning if number not in explained]
+        if strange:
+            tell_strange_marks(strange, text.shown, findings)
+            return None
+        account.repaired(
+            "byte-order marks within the file", len(marks.beginning), marks.beginning[0]
         )
+    if len(repeated):
+        rows = rows.without(repeated)
+    _tell_doubts(rows, header, text.shown, findings, wary=wary)
     return Cells(
         text.shown,
         header.names,
         header.line,
-        read.table,
-        read.lines,
+        rows.table,
+        rows.lines,
         header.separator,
         text,
-        read.remarks.count,
-        len(alike),
+        account,
+        not data.endswith(b"\n"),
+        len(rows.aside.remarks),
+        len(rows.aside.alike),
     )
 
 
-def header_of(text: RawText, delimiter: str | None = None) -> tuple[str, ...]:
+def header_of(
+    text: RawText,
+    delimiter: str | None = None,
+    *,
+    needed: Sequence[str] = (),
+    remarks: Sequence[str] = REMARKS,
+) -> tuple[str, ...]:
     """The column names of a delimited text, without reading its rows.
 
     Parameters
@@ -197,117 +226,41 @@ def header_of(text: RawText, delimiter: str | None = None) -> tuple[str, ...]:
         From :func:`etl.files.read_text`.
     delimiter : str, optional
         Found out where absent.
+    needed : sequence of str
+        Columns that the header must have, as for :func:`cells_of`.
+    remarks : sequence of str
+        What a line begins with that is a remark.
 
     Returns
     -------
     tuple of str
         The names, trimmed.
     """
-    return find_header(text.data, delimiter).names
+    data = without_marks(text.data)[0] if needed else text.data
+    return find_header(data, delimiter, needed, remarks).names
 
 
-@dataclass(frozen=True, slots=True)
-class _Rows:
-    """What was read below the header: columns, the line of each row, the comments."""
-
-    table: pa.Table
-    lines: NDArray[np.int32]
-    remarks: Remarks
-
-
-def _data_lines(body: bytes, header: Header) -> tuple[bytes, NDArray[np.int32], Remarks]:
-    """The body's data lines, their numbers in the file, and its comments."""
-    count = body.count(b"\n") + (0 if not body or body.endswith(b"\n") else 1)
-    numbers = np.arange(header.first, header.first + count, dtype=np.int32)
-    signs = blanks(header.separator)
-    may_be_blank = body.startswith(b"\n") or b"\n\n" in body
-    for sign in (signs[i : i + 1] for i in range(len(signs))):
-        may_be_blank = may_be_blank or sign + b"\n" in body or body.endswith(sign)
-    if not may_be_blank and COMMENT not in body:
-        return body, numbers, Remarks()
-    kept, remarks = [], Remarks()
-    lines = body.split(b"\n")[:count]
-    for number, line in enumerate(lines):
-        content = line.lstrip(signs)
-        if content.startswith(COMMENT):
-            remarks.add(line.decode("utf-8"), int(numbers[number]), header)
-        elif content:
-            kept.append(number)
-    return b"\n".join([lines[i] for i in kept]) + b"\n", numbers[kept], remarks
-
-
-def _plain(
-    body: bytes, header: Header, wanted: tuple[str, ...], shown: str, findings: Findings
-) -> _Rows | None:
-    """Split text without quotes by pyarrow's reader."""
-    body, lines, remarks = _data_lines(body, header)
-    if not len(lines):
-        empty = pa.table({name: pa.array([], pa.string()) for name in wanted})
-        return _Rows(empty, lines, remarks)
-    try:
-        table = arrow_csv.read_csv(
-            pa.BufferReader(body),
-            read_options=arrow_csv.ReadOptions(
-                use_threads=False,
-                column_names=[name or f"\x00{i}" for i, name in enumerate(header.names)],
-                block_size=min(max(len(body) + 1, 1 << 16), _LARGEST_BLOCK),
-            ),
-            parse_options=arrow_csv.ParseOptions(
-                delimiter=header.separator, quote_char=False, ignore_empty_lines=False
-            ),
-            convert_options=arrow_csv.ConvertOptions(
-                include_columns=list(wanted),
-                column_types={name: pa.string() for name in wanted},
-                null_values=[],
-                strings_can_be_null=False,
-            ),
-        )
-    except pa.ArrowInvalid:
-        table = None
-    if table is not None and table.num_rows == len(lines):
-        return _Rows(table, lines, remarks)
-    separator = header.separator.encode("utf-8")
-    widths = [line.count(separator) + 1 for line in body.split(b"\n")][: len(lines)]
-    if not _tell_uneven(header, widths, lines.tolist(), shown, findings):
-        findings.error(
-            "the table cannot be split into rows and columns",
+def _tell_doubts(rows: Rows, header: Header, shown: str, findings: Findings, *, wary: bool) -> None:
+    """Warn of what may have been meant otherwise."""
+    alike = rows.aside.alike
+    if alike:
+        count, sign = len(alike), " or ".join(header.remarks)
+        findings.warning(
+            f"{count:,} lines begin with {sign} and have as many fields as the header"
+            if count > 1
+            else f"a line begins with {sign} and has as many fields as the header",
             path=shown,
-            expected=f"rows of {len(header.names)} fields separated by {spelled(header.separator)}",
-            fix="open the file in a text editor and look for a damaged line",
+            line=alike[0],
+            expected="remarks, which are not read",
+            fix="if this is a row, put its first cell in quotes",
         )
-    return None
-
-
-def _tell_uneven(
-    header: Header, widths: Sequence[int], lines: Sequence[int], shown: str, findings: Findings
-) -> bool:
-    """Record the rows that have more or fewer fields than the header; False if there are none."""
-    width = len(header.names)
-    if len(widths) > 1 and set(widths) != {width} and len(set(widths)) == 1:
-        findings.error(
-            "the header has another number of fields than every row",
+    if rows.mended.count and not wary:
+        findings.warning(
+            "quote marks inside a cell are not doubled; they were taken as they stand",
             path=shown,
-            line=header.line,
-            found=f"{width} in the header, {widths[0]} in each row",
-            expected=f"as many names, separated by {spelled(header.separator)}, as fields in a row",
-            fix="complete the header, or remove the name that is too much",
+            line=rows.mended.first_line,
+            fix="check the cells, and double the quote marks inside them",
         )
-        return True
-    even = True
-    for line, fields in zip(lines, widths, strict=True):
-        if fields == width:
-            continue
-        even = False
-        findings.error(
-            "the row has too few fields" if fields < width else "the row has too many fields",
-            path=shown,
-            line=line,
-            found=f"{fields} field{'' if fields == 1 else 's'}",
-            expected=f"{width} fields, as in the header",
-            fix="complete the row, or remove what is too much; a cell that holds the separator "
-            "must stand in quotes",
-        )
-    return not even
 
 
 def _quoted(
@@ -316,16 +269,23 @@ def _quoted(
     wanted: tuple[str, ...],
     manner: tuple[str, bool],
     findings: Findings,
-) -> _Rows | None:
+) -> Rows | None:
     """Split text with quoted cells; ``manner``: the file's name, and whether to be wary."""
     shown, wary = manner
-    source = RecordLines(body.decode("utf-8"), header)
-    split = split_quoted(source, header, shown, findings)
+    text = body.decode("utf-8")
+    places = [header.names.index(name) for name in wanted]
+    own = Findings()
+    split = split_quoted(text, header, places, shown, own)
+    if split is None or split.uneven or (wary and split.spanning):
+        # In a log, a row of several lines is doubtful where each of them is a row by itself.
+        loose = split_loosely(text, header, places, wary=wary)
+        if loose is not None:
+            return _columns(loose, text, wanted)
     if split is None:
+        findings.extend(own)
         return None
-    rows, lines = split
-    if wary and source.swallowed:
-        for opened, number in source.swallowed:
+    if wary and split.swallowed:
+        for opened, number in split.swallowed:
             findings.error(
                 "a quoted cell holds whole rows",
                 path=shown,
@@ -335,10 +295,21 @@ def _quoted(
                 fix="close or double the quote mark in this line",
             )
         return None
-    if _tell_uneven(header, [len(row) for row in rows], lines, shown, findings):
+    count = len(split.rows) + len(split.uneven)
+    if tell_uneven(header, split.uneven, count, shown, findings):
         return None
-    places = [header.names.index(name) for name in wanted]
-    columns = [pa.array([row[place] for row in rows], pa.string()) for place in places]
-    return _Rows(
-        pa.table(columns, names=list(wanted)), np.asarray(lines, dtype=np.int32), source.remarks
+    return _columns(split, text, wanted)
+
+
+def _columns(split: Split, text: str, wanted: tuple[str, ...]) -> Rows:
+    """Rows as columns."""
+    by_column = list(zip(*split.rows, strict=True)) or [()] * len(wanted)
+    height = text.count("\n") + (not text.endswith("\n") and bool(text))
+    mended = Tally(len(split.mended), split.mended[0] if split.mended else None)
+    return Rows(
+        pa.table([pa.array(cells, pa.string()) for cells in by_column], names=list(wanted)),
+        np.asarray(split.lines, dtype=np.int32),
+        height,
+        split.aside,
+        mended,
     )

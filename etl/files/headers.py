@@ -1,28 +1,40 @@
-"""The header of a delimited text: where it is, what separates its names, whether it is usable."""
+"""The header of a delimited text: where it is, and what separates its names."""
 
 from __future__ import annotations
 
 import csv
-import io
-import unicodedata
-from collections.abc import Sequence
-from dataclasses import dataclass, field
-from difflib import get_close_matches
+from collections.abc import Collection, Iterator, Sequence
+from dataclasses import dataclass, replace
 
-from etl.errors import Findings
+from etl.files.separators import (
+    BLANK,
+    SEPARATORS,
+    composed,
+    reader_of,
+    separator_of,
+    spelled,
+    split_line,
+    without_last_blanks,
+)
+from etl.files.units import own_names
 
-#: Field separators that are recognised, in order of preference where two fit equally well.
-SEPARATORS = ("\t", ";", ",", "|", " ")
-#: A line that begins so, blanks before it aside, is a comment (common practice, no source).
-COMMENT = b"#"
-_SAMPLE_LINES = 50
-#: How much of a header a message repeats.
-_MOST_SHOWN = 200
+__all__ = ["BYTE_ORDER_MARK", "REMARKS", "Header", "find_header", "spelled"]
+
+#: What a line begins with, blanks before it aside, that is a remark, where nothing else is said
+#: (common practice, no source).
+REMARKS = ("#",)
+BYTE_ORDER_MARK = "\ufeff"
+#: How many lines, and about how many bytes, are looked at to find out a separator.
+_SAMPLE_LINES, _SAMPLE_BYTES = 50, 200_000
+#: How many lines, blank ones and remarks aside, may stand above the header (our choice).
+_SEARCHED_LINES = 300
+#: How many lines a header may take, where line breaks stand in its quoted names (our choice).
+_LONGEST_HEADER = 50
 
 
 @dataclass(frozen=True, slots=True)
 class Header:
-    """The first line of a delimited text that is neither blank nor a comment.
+    """The line of a delimited text that names its columns, and how its lines are to be read.
 
     Attributes
     ----------
@@ -32,190 +44,167 @@ class Header:
         The line on which it begins, from 1.
     separator : str
         What separates its fields.
+    start : int
+        Where it begins, as an offset into the text.
     body : int
         Where the rows begin, as an offset into the text.
     first : int
         The line of the first row, from 1.
+    remarks : tuple of str
+        What a line begins with that is a remark.
     """
 
     names: tuple[str, ...]
     line: int
     separator: str
+    start: int
     body: int
     first: int
+    remarks: tuple[str, ...] = REMARKS
+
+    @property
+    def height(self) -> int:
+        """How many lines it takes."""
+        return self.first - self.line
 
 
-@dataclass(slots=True)
-class Remarks:
-    """The comment lines below a header.
-
-    Attributes
-    ----------
-    count : int
-        How many there are.
-    alike : list of int
-        On which lines those are that have as many fields as the header.
-    """
-
-    count: int = 0
-    alike: list[int] = field(default_factory=list)
-
-    def add(self, line: str, number: int, header: Header) -> None:
-        """Count a comment line."""
-        self.count += 1
-        if fields_in(line, header) == len(header.names) > 1:
-            self.alike.append(number)
-
-
-def fields_in(line: str, header: Header) -> int:
-    """How many fields a line has, quote marks aside."""
-    return line.count(header.separator) + 1
-
-
-def find_header(data: bytes, delimiter: str | None) -> Header:
+def find_header(
+    data: bytes,
+    delimiter: str | None = None,
+    needed: Sequence[str] = (),
+    remarks: Sequence[str] = REMARKS,
+) -> Header:
     r"""Find the header of a text, and what separates its fields where that is not stated.
 
     Parameters
     ----------
     data : bytes
         The text: UTF-8, line feeds.
-    delimiter : str or None
+    delimiter : str, optional
         The separator, where it is known.
+    needed : sequence of str
+        Columns that the header must have. Where they are known, the header is the first line that
+        has all of them, else the first line that has most of them.
+    remarks : sequence of str
+        What a line begins with that is a remark.
 
     Returns
     -------
     Header
+        The first line that is neither blank nor a remark where nothing else tells it.
 
     Examples
     --------
-    >>> found = find_header(b"# recorded in May\nreader;dur\nP01;200\n", None)
+    >>> found = find_header(b"# recorded in May\nreader;dur\nP01;200\n")
     >>> found.names, found.line, found.separator
     (('reader', 'dur'), 2, ';')
+    >>> find_header(b"Export, of May\n\nreader;dur\nP01;200\n", needed=["reader", "dur"]).line
+    3
     """
-    start, line = _first_line(data)
-    sample = data[start : _after_lines(data, start, _SAMPLE_LINES)].decode("utf-8", "replace")
-    separator = delimiter or _separator_of(sample)
-    names, spans = _names(sample, separator)
-    return Header(names, line, separator, _after_lines(data, start, spans), line + spans)
+    signs = tuple(sign.strip() for sign in remarks if sign.strip())
+    wanted = tuple(dict.fromkeys(needed))
+    best: Header | None = None
+    score, first = (0, False, 0.0), True
+    for start, line in _lines_that_may_be(data, signs) if wanted else ():
+        found, has = _as_header(data, (start, line), delimiter, wanted)
+        if found is not None and has == len(wanted):
+            return replace(found, remarks=signs)
+        # Below the first line, one name alone may stand there by chance; blanks between words are
+        # weak evidence; and of two lines, that is more like a header which has less besides.
+        if found is not None and has > (0 if first else 1):
+            own = (has, found.separator != BLANK, has / len(found.names))
+            if own > score:
+                best, score = found, own
+        first = False
+    if best is None:
+        start, line = next(_lines_that_may_be(data, signs), (len(data), data.count(b"\n") + 1))
+        separator = delimiter or separator_of(_sample(data, start))
+        best = _header_at(data, start, line, separator)
+    return replace(best, remarks=signs)
 
 
-def header_is_usable(
-    header: Header, data: bytes, shown: str, findings: Findings, needed: Sequence[str] | None
-) -> bool:
-    """Whether names are unique and every needed one is there; says what is wrong.
-
-    Parameters
-    ----------
-    header : Header
-        The header.
-    data : bytes
-        The text that it is from.
-    shown : str
-        The file's name for messages.
-    findings : Findings
-        Where problems are recorded.
-    needed : sequence of str or None
-        The columns that must be there.
-
-    Returns
-    -------
-    bool
-    """
-    named = [name for name in header.names if name]
-    if len(set(named)) < len(named):
-        if header.body >= len(data):
-            findings.error(
-                "the whole file is one line",
-                path=shown,
-                line=header.line,
-                found=f"{len(header.names)} fields",
-                expected="a header, and below it a line for each row",
-                fix="export the file again, or copy it again without a change of line ends",
-            )
-        else:
-            _tell_equal_names(header, shown, findings)
-        return False
-    wanted = list(dict.fromkeys(needed or ()))
-    missing = [name for name in wanted if name not in named]
-    listed = ", ".join(named)
-    listed = listed if len(listed) <= _MOST_SHOWN else listed[: _MOST_SHOWN - 1] + "…"
-    if len(missing) > 1 and missing == wanted:
-        commented = any(_is_in_comment(name, header, data) for name in missing)
-        findings.error(
-            "the header has none of the columns that the study file names",
-            path=shown,
-            line=header.line,
-            found=listed,
-            expected=f"a header, separated by {spelled(header.separator)}, that has "
-            + ", ".join(f'"{name}"' for name in missing),
-            fix="remove the # before the names: it makes a comment of the line"
-            if commented
-            else "write the header's own names in [logs.columns], or correct the header; if the "
-            "fields are separated otherwise, state [logs] delimiter",
-        )
-        return False
-    for name in missing:
-        near = get_close_matches(name, named, n=1, cutoff=0.6)
-        findings.error(
-            f'there is no column "{name}"',
-            path=shown,
-            line=header.line,
-            found=listed,
-            expected=f'a header, separated by {spelled(header.separator)}, that has "{name}"',
-            fix=(f'did you mean "{near[0]}"? Write' if near else "write")
-            + " the header's own name in the study file, or correct the header",
-        )
-    return not missing
+def _as_header(
+    data: bytes, place: tuple[int, int], delimiter: str | None, wanted: Collection[str]
+) -> tuple[Header | None, int]:
+    """A line as a header under the separator that fits best; how many wanted columns it has."""
+    start, line = place
+    text = composed(data[start : _after_lines(data, start, 1)].decode("utf-8", "replace"))
+    known = [name for name in wanted if name in text or "\n" in name]
+    readings: dict[str, tuple[Header, int]] = {}
+    for separator in (delimiter,) if delimiter else SEPARATORS if known else ():
+        if separator in text or len(wanted) == 1:
+            header = _header_at(data, start, line, separator)
+            readings[separator] = (header, len(own_names(known, header.names)))
+    most = max((has for _, has in readings.values()), default=0)
+    if not most:
+        return None, 0
+    fitting = [separator for separator, (_, has) in readings.items() if has == most]
+    if len(fitting) > 1:
+        fitting = [separator_of(_sample(data, start), fitting)]
+    return readings[fitting[0]]
 
 
-def spelled(separator: str) -> str:
-    """A separator in words."""
-    words = {"\t": "tabs", ";": "semicolons", ",": "commas", "|": "bars", " ": "blanks"}
-    return words.get(separator, f'"{separator}"')
-
-
-def blanks(separator: str) -> bytes:
-    """The signs that a line may hold and still be blank."""
-    return b" " if separator == "\t" else b" \t"
-
-
-def _is_in_comment(name: str, header: Header, data: bytes) -> bool:
-    """Whether the comments above the header name a column, as where # stands before the header."""
-    above = data.split(b"\n", header.line)[: header.line - 1]
-    return any(
-        name.encode("utf-8") in line.lstrip(b"# \t").split(header.separator.encode())
-        for line in above
+def _header_at(data: bytes, start: int, line: int, separator: str) -> Header:
+    """The header that begins at an offset."""
+    names, height = _names(data, start, separator)
+    return Header(
+        tuple(composed(name.removeprefix(BYTE_ORDER_MARK)) for name in names),
+        line,
+        separator,
+        start,
+        _after_lines(data, start, height),
+        line + height,
     )
 
 
-def _tell_equal_names(header: Header, shown: str, findings: Findings) -> None:
-    """Record every name that stands over two columns."""
-    seen: dict[str, int] = {}
-    for position, name in enumerate(header.names, start=1):
-        if name and name in seen:
-            findings.error(
-                "two columns have the same name",
-                path=shown,
-                line=header.line,
-                where="header",
-                found=name,
-                expected=f"a name of its own for each of columns {seen[name]} and {position}",
-                fix="rename one of them in the file's header",
-            )
-        seen.setdefault(name, position)
+def _names(data: bytes, start: int, separator: str) -> tuple[list[str], int]:
+    """The fields of the header, and how many lines it takes."""
+    first = data[start : _after_lines(data, start, 1)].decode("utf-8", "replace")
+    alone = first.removesuffix("\n")
+    if '"' not in first:
+        return split_line(alone, separator), 1
+    lines = _lines_from(data, start)
+    if separator == BLANK:
+        lines = without_last_blanks(lines)
+    reader = reader_of(lines, separator, strict=False)
+    try:
+        cells = next(reader, [])
+    except csv.Error:
+        return split_line(alone, separator), 1
+    return cells, max(reader.line_num, 1)
 
 
-def _first_line(data: bytes) -> tuple[int, int]:
-    """Offset and number of the first line that is neither blank nor a comment."""
-    start, line = 0, 1
-    while start < len(data):
-        end = data.find(b"\n", start)
-        end = len(data) if end < 0 else end
+def _lines_from(data: bytes, start: int) -> Iterator[str]:
+    """The lines that a header may take."""
+    for _ in range(_LONGEST_HEADER):
+        end = _after_lines(data, start, 1)
+        if end == start:
+            return
+        yield data[start:end].decode("utf-8", "replace").removeprefix(BYTE_ORDER_MARK)
+        start = end
+
+
+def _lines_that_may_be(data: bytes, signs: tuple[str, ...]) -> Iterator[tuple[int, int]]:
+    """Offset and number of the first lines that are neither blank nor a remark."""
+    marks = tuple(sign.encode("utf-8") for sign in signs)
+    start, line, left = 0, 1, _SEARCHED_LINES
+    while start < len(data) and left:
+        end = _after_lines(data, start, 1)
         content = data[start:end].strip()
-        if content and not content.startswith(COMMENT):
-            return start, line
-        start, line = end + 1, line + 1
-    return len(data), line
+        if content and not content.startswith(marks):
+            yield start, line
+            left -= 1
+        start, line = end, line + 1
+
+
+def _sample(data: bytes, start: int) -> str:
+    """The lines from an offset by which a separator is found out."""
+    end = start
+    for lines in range(_SAMPLE_LINES):
+        if lines > 2 and end - start > _SAMPLE_BYTES:
+            break
+        end = _after_lines(data, end, 1)
+    return data[start:end].decode("utf-8", "replace")
 
 
 def _after_lines(data: bytes, start: int, count: int) -> int:
@@ -226,39 +215,3 @@ def _after_lines(data: bytes, start: int, count: int) -> int:
             return len(data)
         start = end + 1
     return start
-
-
-def _separator_of(sample: str) -> str:
-    """The separator that splits the header, and the lines after it into as many fields."""
-    best, best_score = "\t", (0.0, 0)
-    for separator in SEPARATORS:
-        try:
-            rows = [row for row in csv.reader(io.StringIO(sample), delimiter=separator) if row]
-        except csv.Error:
-            continue
-        width = len(rows[0]) if rows else 0
-        if width < 2:
-            continue
-        even = sum(len(row) == width for row in rows) / len(rows)
-        # A separator inside every cell (a decimal comma) splits rows but not the header; one that
-        # splits both into equal parts is right. Blanks inside names are the weakest evidence.
-        score = (even if separator != " " else even / 2, width)
-        if score > best_score:
-            best, best_score = separator, score
-    return best
-
-
-def _names(sample: str, separator: str) -> tuple[tuple[str, ...], int]:
-    """The column names, and how many lines the header takes."""
-    reader = csv.reader(io.StringIO(sample, newline=""), delimiter=separator)
-    try:
-        cells = next(reader, [])
-    except csv.Error:
-        cells = sample.split("\n", 1)[0].split(separator)
-        return tuple(_composed(cell) for cell in cells), 1
-    return tuple(_composed(cell) for cell in cells), max(reader.line_num, 1)
-
-
-def _composed(name: str) -> str:
-    """A name trimmed and in the one form in which equal letters are equal."""
-    return unicodedata.normalize("NFC", name.strip())

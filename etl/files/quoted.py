@@ -4,18 +4,22 @@ from __future__ import annotations
 
 import csv
 import io
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
+from dataclasses import dataclass, field
+from operator import itemgetter
 
 from etl.errors import Findings
-from etl.files.headers import COMMENT, Header, Remarks, blanks, fields_in
+from etl.files.headers import Header
+from etl.files.rows import SetAside
+from etl.files.separators import BLANK, fields_in, reader_of
 
 #: The longest single cell the standard reader accepts; a longer one is a missing quote mark.
 _LONGEST_CELL = 1_000_000
 
 
 @contextmanager
-def _longer_cells() -> Iterator[None]:
+def longer_cells() -> Iterator[None]:
     """Let the standard reader take long cells; its limit is one for the whole process."""
     before = csv.field_size_limit(_LONGEST_CELL)
     try:
@@ -24,17 +28,59 @@ def _longer_cells() -> Iterator[None]:
         csv.field_size_limit(before)
 
 
+@dataclass(slots=True)
+class Split:
+    """Text split into rows, of which only some cells are kept.
+
+    Attributes
+    ----------
+    rows : list of tuple of str
+        The cells that were asked for.
+    lines : list of int
+        The line on which each row begins.
+    uneven : list of (int, int)
+        Line and number of fields of each row that has not as many as the header.
+    aside : SetAside
+        Lines between the rows.
+    spanning : int
+        How many rows run over a line's end.
+    swallowed : list of (int, int)
+        Of every row that runs over a line which would be a row by itself: the line on which the
+        quote mark opens, and that line.
+    mended : list of int
+        The lines with quote marks that were not doubled.
+    """
+
+    rows: list[tuple[str, ...]] = field(default_factory=list)
+    lines: list[int] = field(default_factory=list)
+    uneven: list[tuple[int, int]] = field(default_factory=list)
+    aside: SetAside = field(default_factory=SetAside)
+    spanning: int = 0
+    swallowed: list[tuple[int, int]] = field(default_factory=list)
+    mended: list[int] = field(default_factory=list)
+
+
+def picker(places: Sequence[int]) -> Callable[[Sequence[str]], tuple[str, ...]]:
+    """What takes some cells out of a row."""
+    if len(places) == 1:
+        only = places[0]
+        return lambda row: (row[only],)
+    return itemgetter(*places) if places else lambda _: ()
+
+
 def split_quoted(
-    source: RecordLines, header: Header, shown: str, findings: Findings
-) -> tuple[list[list[str]], list[int]] | None:
-    """Split text into rows.
+    text: str, header: Header, places: Sequence[int], shown: str, findings: Findings
+) -> Split | None:
+    """Split text into rows as the standard of quoted cells says.
 
     Parameters
     ----------
-    source : RecordLines
+    text : str
         The lines below the header.
     header : Header
         The header.
+    places : sequence of int
+        Which cells of a row are kept.
     shown : str
         The file's name for messages.
     findings : Findings
@@ -42,20 +88,53 @@ def split_quoted(
 
     Returns
     -------
-    rows and lines, or None
-        The cells of each row, and the line on which it begins; None where a problem was recorded.
+    Split or None
+        None where a problem was recorded. Rows that are uneven are no problem yet.
+
+    References
+    ----------
+    RFC 4180 (Shafranovich 2005), section 2, rules 5 to 7, with other separators.
     """
-    with _longer_cells():
-        return _split(source, header, shown, findings)
+    with longer_cells():
+        straight = _straight(text, header, places)
+        return straight or _stepwise(RecordLines(text, header), places, shown, findings)
 
 
-def _split(
-    source: RecordLines, header: Header, shown: str, findings: Findings
-) -> tuple[list[list[str]], list[int]] | None:
-    """Rows, and the lines on which they begin."""
-    reader = csv.reader(source, delimiter=header.separator, strict=True)
-    rows: list[list[str]] = []
-    lines: list[int] = []
+def _straight(text: str, header: Header, places: Sequence[int]) -> Split | None:
+    """Rows where each takes one line and nothing stands between them; None where it is not so."""
+    if header.separator == BLANK:
+        return None
+    pick, width = picker(places), len(header.names)
+    split = Split()
+    reader = reader_of(io.StringIO(text, newline="\n"), header.separator, strict=True)
+    try:
+        split.rows = [pick(row) for row in reader if len(row) == width]
+    except csv.Error:
+        return None
+    height = len(split.rows)
+    # A row over two lines, a blank line, or an uneven row: the lines are more than the rows. What
+    # may be a remark is looked at line by line.
+    if reader.line_num != height or any(
+        sign in text and _may_begin_a_line(sign, text) for sign in (*header.remarks, " ", "\t")
+    ):
+        return None
+    split.lines = list(range(header.first, header.first + height))
+    return split
+
+
+def _may_begin_a_line(sign: str, text: str) -> bool:
+    """Whether a sign stands at the begin of a line."""
+    return text.startswith(sign) or f"\n{sign}" in text
+
+
+def _stepwise(
+    source: RecordLines, places: Sequence[int], shown: str, findings: Findings
+) -> Split | None:
+    """Rows record by record, whatever stands between them."""
+    header, pick = source.header, picker(places)
+    width = len(header.names)
+    split = Split(aside=source.aside, swallowed=source.swallowed)
+    reader = reader_of(source, header.separator, strict=True)
     while True:
         source.begin()
         try:
@@ -71,13 +150,19 @@ def _split(
             )
             return None
         if row is None:
-            return rows, lines
-        rows.append(row)
-        lines.append(source.began)
+            return split
+        split.spanning += source.number > source.began
+        if header.separator == BLANK and row[-1] == "" and source.line.endswith((" ", " \n")):
+            del row[-1]  # what stands behind the last cell separates nothing
+        if len(row) == width:
+            split.rows.append(pick(row))
+            split.lines.append(source.began)
+        else:
+            split.uneven.append((source.began, len(row)))
 
 
 class RecordLines:
-    """Lines for the standard reader; between records it steps over blank and comment lines.
+    """Lines for the standard reader; between records it steps over blank lines and remarks.
 
     It also remembers, of every record that runs over a line that would be a row by itself, the
     line on which the quote mark opens and that line.
@@ -85,13 +170,13 @@ class RecordLines:
 
     def __init__(self, text: str, header: Header) -> None:
         self._lines = iter(io.StringIO(text, newline="\n"))
-        self._number = header.first - 1
-        self._blanks = blanks(header.separator).decode()
         self._between = True
-        self._header = header
         self._opened = header.first
+        self.header = header
+        self.number = header.first - 1
+        self.line = ""
         self.began = header.first
-        self.remarks = Remarks()
+        self.aside = SetAside()
         self.swallowed: list[tuple[int, int]] = []
 
     def begin(self) -> None:
@@ -103,17 +188,14 @@ class RecordLines:
 
     def __next__(self) -> str:
         while True:
-            line = next(self._lines)
-            self._number += 1
+            self.line = line = next(self._lines)
+            self.number += 1
             if not self._between:
                 self._look_at(line)
                 return line
-            content = line.lstrip(self._blanks)
-            if content.startswith(COMMENT.decode()):
-                self.remarks.add(line, self._number, self._header)
-            elif content.strip("\n"):
+            if not self.aside.takes(line, self.number, self.header):
                 self._between = False
-                self.began = self._opened = self._number
+                self.began = self._opened = self.number
                 return line
 
     def _look_at(self, line: str) -> None:
@@ -121,10 +203,10 @@ class RecordLines:
         # What stands behind the mark that closes the cell is the rest of the record's own row.
         plain = line.replace('""', "")
         inside = plain.split('"', 1)[0]
-        if fields_in(inside, self._header) == len(self._header.names) > 1 and (
+        if fields_in(inside, self.header.separator) == len(self.header.names) > 1 and (
             not self.swallowed or self.swallowed[-1][0] != self._opened
         ):
-            self.swallowed.append((self._opened, self._number))
+            self.swallowed.append((self._opened, self.number))
         marks = plain.count('"')
         if marks and marks % 2 == 0:  # one cell is closed, and another one opened
-            self._opened = self._number
+            self._opened = self.number

@@ -2,6 +2,6 @@
 
 from etl.parsers.canonical import CanonicalLog
 from etl.parsers.eyes import EyeChoice
-from etl.parsers.readers import LogReader, is_log, reader_for
+from etl.parsers.readers import LogReader, counted_file, is_log, reader_for
 
-__all__ = ["CanonicalLog", "EyeChoice", "LogReader", "is_log", "reader_for"]
+__all__ = ["CanonicalLog", "EyeChoice", "LogReader", "counted_file", "is_log", "reader_for"]

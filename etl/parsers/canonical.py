@@ -92,6 +92,10 @@ class LogNote:
         Where every line of the log went, and what was mended.
     parts : tuple of (str, str, str)
         Further files that were read with this one: name, role and digest.
+    interval_ms : float, milliseconds
+        From one gaze sample to the next; 0 where the log holds fixations.
+    ends_open : bool
+        Whether the last line has no line end, as where a file was cut short.
     """
 
     shown: str
@@ -104,3 +108,5 @@ class LogNote:
     asked: dict[str, tuple[str, ...]] = field(default_factory=dict)
     account: FileAccount = field(default_factory=FileAccount)
     parts: tuple[tuple[str, str, str], ...] = ()
+    interval_ms: float = 0.0
+    ends_open: bool = False

@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from typing import TYPE_CHECKING
 
 import numpy as np
+import pyarrow as pa
 
-from etl.errors import FaultError
+from etl.errors import FaultError, Findings
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -45,6 +47,60 @@ def degrees_to_px(
     """
     offset_cm = distance_cm * np.tan(np.radians(degrees))
     return np.asarray(offset_cm * (size_px / size_cm), dtype=np.float64)
+
+
+#: A position further from the screen than so many times its size is none (our choice: recorders
+#: extrapolate a little beyond the screen, and mark what they lost by numbers such as -32768).
+_SCREENS_AWAY = 5
+#: The same where the screen is not known: no screen is much wider than 8,000 px.
+_FURTHEST_PX = (-8_000.0, 16_000.0)
+
+
+def tell_far_positions(
+    positions: Mapping[str, NDArray[np.float64]],
+    cells: Mapping[str, tuple[str, pa.Array]],
+    lines: NDArray[np.int32],
+    screen: Screen | None,
+    shown: str,
+    findings: Findings,
+) -> None:
+    """Record positions that are nowhere near the screen.
+
+    Parameters
+    ----------
+    positions : mapping of str to (n,) float64 array, pixels
+        ``x`` and ``y``, whichever the log has, on the screen.
+    cells : mapping of str to (str, (n,) pa.Array of text)
+        For each its header and its cells.
+    lines : (n,) int32 array
+        Line of each row.
+    screen : Screen or None
+        The study's ``[screen]``.
+    shown : str
+        The log's name.
+    findings : Findings
+        Where each such cell is recorded, with its line.
+    """
+    for axis, values in positions.items():
+        low, high = _FURTHEST_PX
+        if screen is not None:
+            size = screen.width_px if axis == "x" else screen.height_px
+            low, high = -_SCREENS_AWAY * float(size), (_SCREENS_AWAY + 1) * float(size)
+        header, column = cells[axis]
+        for row in np.flatnonzero((values < low) | (values > high)).tolist():
+            findings.error(
+                "the position is nowhere near the screen",
+                path=shown,
+                line=int(lines[row]),
+                where=f'column "{header}"',
+                found=column[row].as_py(),
+                expected=f"between {low:g} and {high:g} px from its {_EDGES[axis]} edge",
+                fix="if this stands for no position, add it to [logs] missing; else check the "
+                "column's unit",
+            )
+
+
+_EDGES = {"x": "left", "y": "upper"}
 
 
 def to_screen_px(

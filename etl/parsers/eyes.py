@@ -2,20 +2,27 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-from dataclasses import dataclass, field
+from collections.abc import Collection, Iterator, Mapping
+from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
 import pyarrow as pa
 from numpy.typing import NDArray
 
-from etl.errors import Findings
+from etl.errors import Finding, Findings
 from etl.files import Coded, marks_of
 from etl.parsers.canonical import LogNote
 
 if TYPE_CHECKING:
     from etl.study.models import Logs
+
+
+#: What tells that an eye has a fixation in a row that holds both: one of these columns of its own.
+_TIMES = ("onset", "end", "duration")
+#: Rows of an eye that nothing names are doubtful where they are fewer than this share of a reader's
+#: rows: two eyes that are recorded give about as many rows each (our choice).
+_FEW = 0.1
 
 
 @dataclass(frozen=True, slots=True)
@@ -27,14 +34,48 @@ class ChosenEye:
     rows : (n,) bool array
         Whether each row is of that eye.
     columns : dict of str to (n,) pa.Array of text
-        Columns put together from those of both eyes, by header.
+        Columns put together from those of both eyes, by a header that names both.
     headers : dict of str to str
         The header of each column that is read, by canonical name.
+    own : dict of str to dict of int to str
+        For each header that names both: the header of each row, by line.
     """
 
     rows: NDArray[np.bool_]
     columns: dict[str, pa.Array]
     headers: dict[str, str]
+    own: dict[str, dict[int, str]] = field(default_factory=dict)
+
+    def under_own_headers(self, findings: Findings) -> Findings:
+        """The same findings, those about a column of both eyes under the header of their row's eye.
+
+        Parameters
+        ----------
+        findings : Findings
+            What was found in the rows.
+
+        Returns
+        -------
+        Findings
+            Of those of a kind that were only counted, none can be told to be of either eye; they
+            stay with the first.
+        """
+        joint = {f'column "{header}"': by_line for header, by_line in self.own.items()}
+        if not any(finding.where in joint for finding in findings):
+            return findings
+        renamed = Findings()
+        more = findings.more.copy()
+        first: dict[tuple[str, str, str, str], Finding] = {}
+        for finding in findings:
+            own = joint.get(finding.where, {}).get(finding.line or 0)
+            named = finding if own is None else replace(finding, where=f'column "{own}"')
+            first.setdefault(finding.kind, named)
+            renamed.add(named)
+            more[finding.kind] -= 1
+        for kind, count in more.items():
+            if count > 0 and kind in first:
+                renamed.more[first[kind].kind] += count
+        return renamed
 
 
 @dataclass(frozen=True, slots=True)
@@ -80,7 +121,7 @@ class EyeChoice:
 
     def of_reader(self, participant: str) -> str:
         """The eye that counts for a reader; empty where nothing says so."""
-        return self.readers.get(participant, self.use)
+        return self.readers.get(participant) or self.use
 
     def headers(self, logs: Logs) -> list[str]:
         """The headers of the columns of both eyes, where a row holds both."""
@@ -141,9 +182,11 @@ class EyeChoice:
         if findings.count("error") > before or logs.eye is None:
             return None
         if logs.eye.columns:
-            chosen = self._columns(cells, headers, reader, wanted, logs)
+            chosen = _of_columns(cells, (lines, reader, wanted), headers, logs, note, findings)
         else:
-            chosen = ChosenEye(self._rows(cells, headers, reader, wanted, logs), {}, dict(headers))
+            chosen = self._of_rows(cells, (lines, reader, wanted), headers, logs, note, findings)
+        if chosen is None:
+            return None
         for code, eye in enumerate(wanted):
             own = reader.codes == code
             if own.any() and not chosen.rows[own].any():
@@ -159,58 +202,133 @@ class EyeChoice:
                 )
         return None if findings.count("error") > before else chosen
 
-    def _rows(
+    def _of_rows(
         self,
         cells: Mapping[str, pa.Array],
+        who: _Who,
         headers: Mapping[str, str],
-        reader: Coded,
-        wanted: list[str],
         logs: Logs,
-    ) -> NDArray[np.bool_]:
-        """Which rows are of the eye that counts, where each row is of one."""
-        eye = Coded.of(cells[headers["eye"]], marks_of(logs.missing))
+        note: LogNote,
+        findings: Findings,
+    ) -> ChosenEye | None:
+        """The rows of the eye that counts, where each row is of one eye."""
+        lines, reader, wanted = who
+        header = headers["eye"]
+        eye = Coded.of(cells[header], marks_of(logs.missing))
+        sound = True
+        for row in np.flatnonzero(eye.codes < 0).tolist():
+            sound = False
+            findings.error(
+                "the row does not say which eye it is of",
+                path=note.shown,
+                line=int(lines[row]),
+                where=f'column "{header}"',
+                found=cells[header][row].as_py(),
+                expected="an eye",
+                fix=_WAY_OUT,
+            )
+        listed = [
+            v for name, values in logs.where.items() if name in ("eye", header) for v in values
+        ]
+        known = {self.use, *self.readers.values(), *listed}
+        for code in range(len(reader.values)):
+            own = np.flatnonzero(reader.codes == code)
+            for row in _doubtful(eye, own, known):
+                sound = False
+                findings.error(
+                    "few rows of this reader are of an eye that nothing names",
+                    path=note.shown,
+                    line=int(lines[row]),
+                    where=f'column "{header}"',
+                    found=eye.text(row),
+                    expected=f"{wanted[code]}, or the other eye in about as many rows",
+                    fix=f'{_WAY_OUT}; where = {{ "{header}" = […] }} with all eyes keeps them',
+                )
         code_of = {text: code for code, text in enumerate(eye.values)}
         codes = np.array([*(code_of.get(one, -2) for one in wanted), -2], dtype=np.int32)
-        return np.asarray(eye.codes == codes[reader.codes])
-
-    def _columns(
-        self,
-        cells: Mapping[str, pa.Array],
-        headers: Mapping[str, str],
-        reader: Coded,
-        wanted: list[str],
-        logs: Logs,
-    ) -> ChosenEye:
-        """The columns of the eye that counts, where a row holds both."""
-        assert logs.eye is not None  # noqa: S101
-        by_eye = logs.eye.columns
-        names = list(by_eye)
-        code_of = {name: code for code, name in enumerate(names)}
-        eye = np.array([code_of.get(one, -1) for one in wanted], dtype=np.int32)[reader.codes]
-        present = np.unique(eye).tolist()
-        own = dict(headers)
-        merged: dict[str, pa.Array] = {}
-        seen = np.zeros(len(eye), dtype=bool)
-        missing = marks_of(logs.missing)
-        for key in type(by_eye[names[0]]).model_fields:
-            columns = [getattr(by_eye[name], key) for name in names]
-            if columns[0] is None:
-                continue
-            used = [columns[code].column for code in present if code >= 0]
-            if len(present) == 1 and used:
-                own[key] = used[0]
-                cell = cells[used[0]]
-            else:
-                own[key] = " or ".join(used)
-                cell = _picked([cells[column.column] for column in columns], eye)
-                merged[own[key]] = cell
-            seen |= Coded.of(cell, missing).codes >= 0
-        return ChosenEye(seen & (eye >= 0), merged, own)
+        return ChosenEye(eye.codes == codes[reader.codes], {}, dict(headers)) if sound else None
 
 
-def _picked(columns: list[pa.Array], which: NDArray[np.int32]) -> pa.Array:
-    """From several columns the cell of the one that is named for each row; empty for none."""
-    length = len(which)
-    joined = pa.concat_arrays([*columns, pa.array([""], pa.string())])
-    places = np.where(which < 0, len(columns) * length, which * length + np.arange(length))
-    return joined.take(pa.array(places.astype(np.int64)))
+#: Line of each row, who read it, and the eye that counts for each reader.
+_Who = tuple[NDArray[np.int32], Coded, list[str]]
+_WAY_OUT = "correct the cell, remove the row, or leave such rows out by [logs.where]"
+
+
+def _doubtful(eye: Coded, own: NDArray[np.int64], known: Collection[str]) -> Iterator[int]:
+    """The first row of each eye of a reader that can hardly be the reader's other eye."""
+    codes, first, counts = np.unique(eye.codes[own], return_index=True, return_counts=True)
+    strange = [
+        (int(count), int(own[place]))
+        for code, place, count in zip(codes, first, counts, strict=True)
+        if code >= 0 and eye.values[code] not in known
+    ]
+    named = sum(code >= 0 and eye.values[code] in known for code in codes)
+    # A reader has two eyes: besides those that are named, the most frequent one may be the other.
+    for count, row in sorted(strange, reverse=True)[: 2 - named if named < 2 else 0]:
+        if count < _FEW * len(own):
+            yield row
+    for _, row in sorted(strange, reverse=True)[max(2 - named, 0) :]:
+        yield row
+
+
+def _of_columns(
+    cells: Mapping[str, pa.Array],
+    who: _Who,
+    headers: Mapping[str, str],
+    logs: Logs,
+    note: LogNote,
+    findings: Findings,
+) -> ChosenEye | None:
+    """The columns of the eye that counts, where a row holds both."""
+    lines, reader, wanted = who
+    assert logs.eye is not None  # noqa: S101
+    by_eye = logs.eye.columns
+    names = list(by_eye)
+    sound = True
+    for code, one in enumerate(wanted):
+        rows = np.flatnonzero(reader.codes == code)
+        if rows.size and one not in by_eye:
+            sound = False
+            findings.error(
+                "the eye that counts for this reader has no columns",
+                path=note.shown,
+                line=int(lines[rows[0]]),
+                where="logs.eye",
+                found=f"{one} for {reader.values[code]}",
+                expected="one of " + ", ".join(names),
+                fix="correct the name of the eye, or add its columns to [logs.eye.columns]",
+            )
+    if not sound:
+        return None
+    eye = np.array([names.index(one) if one in by_eye else -1 for one in wanted])[reader.codes]
+    present = np.unique(eye).tolist()
+    chosen = ChosenEye(np.ones(len(eye), dtype=bool), {}, dict(headers))
+    missing = marks_of(logs.missing)
+    filled = np.zeros((len(names), len(eye)), dtype=bool)
+    timed = False
+    for key in type(by_eye[names[0]]).model_fields:
+        columns = [getattr(by_eye[name], key) for name in names]
+        if columns[0] is None:
+            continue
+        every = [cells[column.column] for column in columns]
+        if key in (*_TIMES, "x", "y"):
+            filled |= np.array([Coded.of(one, missing).codes >= 0 for one in every])
+            timed |= key in _TIMES
+        used = [columns[code].column for code in present]
+        chosen.headers[key] = joint = " or ".join(used)
+        if len(present) > 1:
+            chosen.columns[joint] = _picked(every, eye)
+            own = [columns[code].column for code in eye.tolist()]
+            chosen.own[joint] = dict(zip(lines.tolist(), own, strict=True))
+    if not timed:
+        # When and for how long is said once for both eyes: every row is a fixation of both.
+        return chosen
+    # A row that holds nothing of either eye stays, for what is wrong with it.
+    own_filled = filled[eye, np.arange(len(eye))]
+    return replace(chosen, rows=own_filled | ~filled.any(axis=0))
+
+
+def _picked(columns: list[pa.Array], which: NDArray[np.integer]) -> pa.Array:
+    """From several columns the cell of the one that is named for each row."""
+    places = which * len(which) + np.arange(len(which))
+    return pa.concat_arrays(columns).take(pa.array(places.astype(np.int64)))

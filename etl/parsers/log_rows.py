@@ -14,8 +14,9 @@ from numpy.typing import NDArray
 from etl.errors import Findings
 from etl.files import Coded, NumberReading, find_decimal, marks_of, number_of, numbers_in, truth_of
 from etl.parsers.canonical import CanonicalLog, LogNote
-from etl.parsers.coordinates import to_screen_px
-from etl.parsers.eyes import EyeChoice
+from etl.parsers.coordinates import degrees_to_px, tell_far_positions, to_screen_px
+from etl.parsers.detection import SampleRows, log_of_samples
+from etl.parsers.eyes import ChosenEye, EyeChoice
 from etl.parsers.identifiers import IDS, ids_in_name, read_ids
 from etl.parsers.time_checks import check_times, in_ms
 
@@ -23,6 +24,8 @@ if TYPE_CHECKING:
     from etl.study.models import Column, Logs, Screen
 
 _NUMBERS = ("onset", "end", "duration", "fixation", "x", "y")
+#: What a gaze sample has none of.
+_NOT_OF_SAMPLES = ("end", "duration", "fixation", "label")
 #: How many values of a column that [logs.where] does not ask for are remembered, to tell a slip.
 _MOST_OTHERS = 20
 
@@ -87,7 +90,8 @@ class RowReading:
         """The columns that are read, by canonical name."""
         described = self.logs.columns
         wanted = (*IDS, *_NUMBERS, "label", "eye", "blink")
-        found = {name: getattr(described, name) for name in wanted}
+        absent = () if self.logs.samples is None else _NOT_OF_SAMPLES
+        found = {name: getattr(described, name) for name in wanted if name not in absent}
         return {name: column for name, column in found.items() if column is not None}
 
     def headers(self) -> dict[str, str]:
@@ -180,12 +184,13 @@ class RowReading:
     def canonical(
         self, rows: LogRows, named: dict[str, str], note: LogNote, findings: Findings
     ) -> CanonicalLog | None:
-        """Cells into canonical fixations.
+        """Cells into canonical fixations; where the study has ``[logs.samples]``, those in samples.
 
         Parameters
         ----------
         rows : LogRows
-            The rows, each counted among the lines of the note as ``"fixations"``.
+            The rows (fixations or samples), each counted among the lines of the note as
+            ``"fixations"``.
         named : dict of str to str
             What the file's name says, from :meth:`ids_in_name`.
         note : LogNote
@@ -201,7 +206,8 @@ class RowReading:
         asked = self.asked_for(rows, note, findings)
         if asked is None:
             return None
-        rows, columns = asked, self.headers()
+        rows, columns, told = asked, self.headers(), Findings()
+        chosen: ChosenEye | None = None
         ids = read_ids(
             (rows.columns, rows.lines), columns, named, self.missing(), note.shown, findings
         )
@@ -218,10 +224,10 @@ class RowReading:
             rows = replace(rows, columns={**rows.columns, **chosen.columns})
             rows = _without(rows, ~chosen.rows, "rows of the other eye", note)
             columns = chosen.headers
-        numbers = self._numbers(rows.columns, rows.lines, columns, note, findings)
-        if numbers is None:
-            return None
-        return self._fixations(rows, columns, ids, numbers, note, findings)
+        numbers = self._numbers(rows.columns, rows.lines, columns, note, told)
+        log = None if numbers is None else self._fixations(rows, columns, ids, numbers, note, told)
+        findings.extend(told if chosen is None else chosen.under_own_headers(told))
+        return log
 
     def _fixations(
         self,
@@ -231,10 +237,9 @@ class RowReading:
         numbers: dict[str, NDArray[np.float64]],
         note: LogNote,
         findings: Findings,
-    ) -> CanonicalLog:
-        """Rows of fixations into canonical columns."""
+    ) -> CanonicalLog | None:
+        """Rows of fixations, or of samples, into canonical columns."""
         cells, lines, missing = rows.columns, rows.lines, self.missing()
-        duration_ms = check_times(numbers, cells, lines, columns, note.shown, findings)
         nowhere = np.full(len(lines), np.nan)
         x_px, y_px = to_screen_px(
             numbers.get("x", nowhere),
@@ -242,16 +247,35 @@ class RowReading:
             units=(self._unit("x"), self._unit("y")),
             screen=self.screen,
         )
+        tell_far_positions(
+            {name: px for name, px in (("x", x_px), ("y", y_px)) if name in numbers},
+            {name: (columns[name], cells[columns[name]]) for name in ("x", "y") if name in numbers},
+            lines,
+            self.screen,
+            note.shown,
+            findings,
+        )
+        facts = {name: Coded.of(cells[name], missing) for name in self.facts}
+        blink = self._blinks(cells, lines, columns, note.shown, findings)
+        blink = blink if rows.blink is None else blink | rows.blink
+        if self.logs.samples is not None:
+            onset = (columns["onset"], cells[columns["onset"]])
+            if findings.failed:
+                return None
+            samples = SampleRows(
+                ids, facts, numbers["onset"], (x_px, y_px), lines, blink, rows.recording, onset
+            )
+            return log_of_samples(samples, self.logs.samples, self._dispersion_px(), note, findings)
+        duration_ms = check_times(numbers, cells, lines, columns, note.shown, findings)
         note.counts["fixations"] = len(lines)
         if "x" in numbers:
             note.counts["fixations without a position"] = int(
                 (np.isnan(x_px) | (np.isnan(y_px) if "y" in numbers else False)).sum()
             )
         label = Coded.of(cells[columns["label"]], missing) if "label" in columns else None
-        blink = self._blinks(cells, lines, columns, note.shown, findings)
         return CanonicalLog(
             ids,
-            {name: Coded.of(cells[name], missing) for name in self.facts},
+            facts,
             numbers.get("onset", nowhere),
             numbers.get("fixation", nowhere),
             duration_ms,
@@ -259,7 +283,7 @@ class RowReading:
             y_px,
             label,
             lines,
-            blink if rows.blink is None else blink | rows.blink,
+            blink,
             np.full(len(lines), -1, dtype=np.int32) if rows.recording is None else rows.recording,
         )
 
@@ -289,6 +313,21 @@ class RowReading:
                     fix="correct the cells, or take blink out of [logs.columns]",
                 )
         return np.array([*(bool(touches) for touches in known), False])[coded.codes]
+
+    def _dispersion_px(self) -> float:
+        """The limit of dispersion in pixels; one in degrees is converted at the screen's middle."""
+        samples, screen = self.logs.samples, self.screen
+        if samples is None or samples.dispersion_px is not None:
+            return 0.0 if samples is None else float(samples.dispersion_px or 0.0)
+        if samples.dispersion_deg is None or screen is None:
+            return 0.0
+        pixels = degrees_to_px(
+            np.array([samples.dispersion_deg]),
+            size_px=screen.width_px,
+            size_cm=screen.width_cm or 0.0,
+            distance_cm=screen.distance_cm or 0.0,
+        )
+        return float(pixels[0])
 
     def _unit(self, name: str) -> str:
         """The unit of a position column."""
@@ -337,7 +376,10 @@ def _without(rows: LogRows, mask: NDArray[np.bool_], fate: str, note: LogNote) -
     if not out.size:
         return rows
     note.account.move("fixations", fate, len(out), int(rows.lines[out[0]]))
-    return rows.take(np.flatnonzero(~mask))
+    left = np.flatnonzero(~mask)
+    if left.size and "fixations" in note.account.lines:
+        note.account.lines["fixations"].first_line = int(rows.lines[left[0]])
+    return rows.take(left)
 
 
 def _touches(text: str) -> bool | None:

@@ -6,7 +6,9 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Protocol
 
 from etl.errors import Findings
+from etl.parsers.bids_log import BidsReader, is_recording, lines_of
 from etl.parsers.canonical import CanonicalLog, LogNote
+from etl.parsers.event_log import EventReader
 from etl.parsers.eyes import EyeChoice
 from etl.parsers.log_rows import RowReading
 from etl.parsers.table_log import TableReader
@@ -54,7 +56,9 @@ def reader_for(
         Reads a log of that kind.
     """
     reading = RowReading(logs, screen, facts, eyes or EyeChoice.of(logs))
-    return TableReader(reading)
+    if logs.kind == "bids":
+        return BidsReader(reading)
+    return EventReader(reading) if logs.kind == "events" else TableReader(reading)
 
 
 def is_log(kind: str, path: Path) -> bool:
@@ -72,6 +76,22 @@ def is_log(kind: str, path: Path) -> bool:
     bool
         False for what belongs to a log, such as its sidecar.
     """
-    if kind == "bids" and not path.name.endswith("_physio.tsv.gz"):
-        return False
-    return path.is_file()
+    return path.is_file() and (kind != "bids" or is_recording(path))
+
+
+def counted_file(logs: Logs, path: Path) -> Path:
+    """The file whose lines are those of a log's fixations, by which the log is called.
+
+    Parameters
+    ----------
+    logs : Logs
+        The study's ``[logs]``.
+    path : Path
+        The log.
+
+    Returns
+    -------
+    Path
+        The log itself, but for recordings that keep their fixations in a file beside them.
+    """
+    return path if logs.kind != "bids" else lines_of(path, from_samples=logs.samples is not None)

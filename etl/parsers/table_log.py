@@ -6,8 +6,10 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from etl.errors import Findings
-from etl.files import cells_of, header_of, read_text
+from etl.files import Cells, cells_of, header_of, read_text
+from etl.files.units import own_names
 from etl.parsers.canonical import CanonicalLog, LogNote
+from etl.parsers.header_units import check_units, own_reading
 from etl.parsers.log_rows import LogRows, RowReading
 
 
@@ -27,7 +29,10 @@ class TableReader:
         """The columns of a log; empty where it cannot be read, which is told when it is read."""
         logs = self.reading.logs
         text = read_text(path, path.name, Findings(), encoding=logs.encoding)
-        return () if text is None else header_of(text, logs.delimiter)
+        if text is None:
+            return ()
+        needed = self.reading.needed()
+        return header_of(text, logs.delimiter, needed=needed, remarks=logs.comment)
 
     def read(
         self, path: Path, shown: str, findings: Findings
@@ -64,10 +69,16 @@ class TableReader:
         if text is None or findings.failed:
             return None
         cells = cells_of(
-            text, findings, delimiter=logs.delimiter, needed=self.reading.needed(), wary=True
+            text,
+            findings,
+            delimiter=logs.delimiter,
+            needed=self.reading.needed(),
+            wary=True,
+            remarks=logs.comment,
         )
         if cells is None:
             return None
+        check_units(self.reading, cells.header, (shown, cells.header_line), findings)
         if not len(cells):
             findings.error(
                 "the log has a header but no fixation",
@@ -76,13 +87,31 @@ class TableReader:
                 fix="remove the file from the folder, or copy it again",
             )
             return None
-        note = LogNote(shown, text.sha256, text.encoding, cells.delimiter, columns=cells.header)
-        if cells.comments:
-            note.counts["comment lines below the header"] = cells.comments
-        if cells.comments_like_rows:
-            note.counts["comment lines like rows"] = cells.comments_like_rows
-        note.account.total = len(cells)
-        note.account.line("fixations", len(cells), int(cells.lines[0]))
-        rows = LogRows({name: cells.column(name) for name in cells.table.column_names}, cells.lines)
-        log = self.reading.canonical(rows, named, note, findings)
+        note = _note_of(cells)
+        columns = {name: cells.column(name) for name in cells.table.column_names}
+        # Facts and [logs.where] go by the names of the study, which may leave a unit out.
+        own = own_names(self.reading.needed(), cells.header)
+        columns |= {asked: columns[name] for asked, name in own.items()}
+        rows = LogRows(columns, cells.lines)
+        reading = own_reading(self.reading, cells.header)
+        log = reading.canonical(rows, named, note, findings)
         return None if log is None else (log, note)
+
+
+def _note_of(cells: Cells) -> LogNote:
+    """What is told about a log before its rows are understood."""
+    note = LogNote(
+        cells.shown,
+        cells.text.sha256,
+        cells.text.encoding,
+        cells.delimiter,
+        columns=cells.header,
+        account=cells.account,
+        ends_open=cells.ends_open,
+    )
+    if cells.comments:
+        note.counts["comment lines below the header"] = cells.comments
+    if cells.comments_like_rows:
+        note.counts["comment lines like rows"] = cells.comments_like_rows
+    note.account.move("rows", "fixations", len(cells), int(cells.lines[0]))
+    return note

@@ -6,7 +6,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from etl.errors import Findings
-from etl.files import read_cells
+from etl.files import read_table
 from etl.regions.assign import Manner
 from etl.regions.library import RegionLibrary, library_of
 from etl.regions.running_text import texts_laid_out
@@ -37,7 +37,7 @@ def read_definitions(
     lines : Lines or None
         ``[lines]`` of the study file, None where it does not say.
     path : Path
-        The definition file.
+        The definition file: delimited text, or a workbook, its sheet after a hash.
     shown : str
         Its name for messages.
     words : TrialWords
@@ -52,7 +52,7 @@ def read_definitions(
         None where an error was recorded.
     """
     before = findings.count("error")
-    cells = read_cells(path, shown, findings)
+    cells = read_table(path, shown, findings)
     if cells is None:
         return None
     source = understand_columns(cells, regions.kind, words, findings)

@@ -2,6 +2,7 @@
 
 from etl.report.audit import AUDIT, write_audit
 from etl.report.inputs import AccountRow, AuditInput, GalleryEntry, NotRecorded
+from etl.report.logs import LogFate, LogMatter, LogsTold
 from etl.report.reader_profile import LineGrid, Profiles, ReaderProfile, TrialFates, profile_of
 
 __all__ = [
@@ -10,6 +11,9 @@ __all__ = [
     "AuditInput",
     "GalleryEntry",
     "LineGrid",
+    "LogFate",
+    "LogMatter",
+    "LogsTold",
     "NotRecorded",
     "Profiles",
     "ReaderProfile",

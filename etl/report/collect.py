@@ -10,6 +10,7 @@ from markupsafe import Markup, escape
 from etl.report.compared_by import MEASURES, Measure
 from etl.report.comparing import FENCE, FEWEST_TO_COMPARE
 from etl.report.inputs import AuditInput, GalleryEntry
+from etl.report.logs import LogsPart, collect_logs, doubtful
 from etl.report.losses import Losses, collect_losses, differing
 from etl.report.rates import Rates, collect_rates
 from etl.report.readers import Comparison, collect_readers
@@ -30,7 +31,7 @@ class Headline:
 
     Attributes
     ----------
-    kind : {"loss", "reader", "absent", "fine"}
+    kind : {"loss", "reader", "log", "absent", "fine"}
         Decides its sign.
     label : str
         What kind of thing it is, in a word or two.
@@ -98,6 +99,8 @@ class AuditFacts:
         What the build noticed.
     gallery : tuple of GalleryEntry
         Trials worth looking at.
+    logs : LogsPart or None
+        The logs; None where nothing is known of them.
     study : tuple of Section
         As understood.
     says : dict of str to str
@@ -117,6 +120,7 @@ class AuditFacts:
     warnings: tuple[str, ...]
     notes: tuple[str, ...]
     gallery: tuple[GalleryEntry, ...]
+    logs: LogsPart | None
     study: tuple[Section, ...]
     says: dict[str, str]
 
@@ -151,6 +155,7 @@ def collect(given: AuditInput) -> AuditFacts:
         tuple(text.removeprefix("warning: ") for grave, text in told if grave),
         tuple(text.removeprefix("note: ") for grave, text in told if not grave),
         tuple(given.gallery),
+        collect_logs(given.logs) if given.logs.logs else None,
         sections(given.study),
         _says(losses, readers, len(given.profiles.readers)),
     )
@@ -206,6 +211,7 @@ def _headlines(given: AuditInput, losses: Losses, readers: Comparison) -> list[H
     if more > 0:
         text = f"{counted(more, 'more reader')}: choose “who stand out” in the table of readers."
         out.append(Headline("reader", "Stand out", escape(text), "#every-reader"))
+    out += [Headline("log", "Logs differ", text, "#logs") for text in doubtful(given.logs)]
     if given.not_recorded:
         out.append(_not_recorded(given))
     if not out:

@@ -6,6 +6,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any, Literal
 
+from etl.report.logs import LogsTold
 from etl.report.reader_profile import Profiles
 from etl.tables import TableDesign
 
@@ -108,6 +109,8 @@ class AuditInput:
         Trials of the trial list that no log has.
     gallery : sequence of GalleryEntry
         Drawings of the trials most worth looking at.
+    logs : LogsTold
+        Where the lines of the logs went, and how the logs differ.
     """
 
     study: Mapping[str, Any]
@@ -118,3 +121,4 @@ class AuditInput:
     warnings: Sequence[str] = ()
     not_recorded: Sequence[NotRecorded] = ()
     gallery: Sequence[GalleryEntry] = field(default_factory=tuple)
+    logs: LogsTold = field(default_factory=LogsTold)

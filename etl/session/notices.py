@@ -1,88 +1,38 @@
-"""What is worth knowing about logs, readers and trials although nothing is wrong with it."""
+"""What is worth knowing about readers, trials and values although nothing is wrong with it."""
 
 from __future__ import annotations
 
 import re
-from collections import Counter
 from collections.abc import Sequence
 from difflib import get_close_matches
 
 import numpy as np
 
 from etl.errors import Findings
-from etl.files.headers import spelled
+from etl.parsers.canonical import LogNote
 from etl.report import NotRecorded
 from etl.session.plan import Plan
-from etl.session.work import LogAnswer
 from etl.study import Study
 from etl.trials import IDS, KnownTrials, SeenTrials
-
-#: Outside these, a log's median fixation is not one of silent reading, whose means lie near
-#: 225 ms (Rayner 1998, doi:10.1037/0033-2909.124.3.372); most often the unit is wrong.
-PLAUSIBLE_MEDIAN_MS = (50.0, 1000.0)
 
 #: How many values are looked through for one that is near, and how many are listed.
 _LOOKED_THROUGH, _LISTED = 1000, 12
 
 
-def notice_logs(study: Study, answers: list[LogAnswer], findings: Findings) -> None:
-    """Note how the logs were understood, and warn of what is odd in them.
+def notice_values_asked_for(study: Study, logs: Sequence[LogNote], findings: Findings) -> None:
+    """Warn of values of ``[logs.where]`` that no log has; only to be asked where all were read.
 
     Parameters
     ----------
     study : Study
         As loaded.
-    answers : list of LogAnswer
-        What each log holds.
+    logs : sequence of LogNote
+        What is told about each log.
     findings : Findings
-        Where notes and warnings are recorded.
+        Where warnings are recorded.
     """
-    read = [answer for answer in answers if answer.note.decimal]
-    _notice_dialects(read, findings)
-    for answer in read:
-        counts = answer.note.counts
-        comments = counts.get("comment lines below the header", 0)
-        comments -= counts.get("comment lines like rows", 0)
-        if comments:
-            findings.note(
-                f"{comments:,} lines below the header begin with # and were taken for remarks",
-                path=answer.note.shown,
-            )
-    if read and len(read) == len(answers):
-        _notice_values_asked_for(study, read, findings)
-    low, high = PLAUSIBLE_MEDIAN_MS
-    for answer in read:
-        middle = answer.median_ms
-        if not low <= middle <= high:
-            findings.warning(
-                "the middle (median) duration of the fixations is not one of reading",
-                path=answer.note.shown,
-                found=f"{middle:g} ms",
-                expected=f"between {low:g} and {high:g} ms",
-                fix=f"check the unit of the duration in {study.shown}",
-            )
-
-
-def _notice_dialects(read: list[LogAnswer], findings: Findings) -> None:
-    """Note the logs that are written in another way than most."""
-    dialects = Counter((a.note.encoding, a.note.delimiter, a.note.decimal) for a in read)
-    if len(dialects) < 2:
-        return
-    usual = dialects.most_common(1)[0][0]
-    for answer in read:
-        note = answer.note
-        if (note.encoding, note.delimiter, note.decimal) != usual:
-            findings.note(
-                f"read as {note.encoding}, separated by {spelled(note.delimiter)}, "
-                f'decimal sign "{note.decimal}"; most other logs are different',
-                path=note.shown,
-            )
-
-
-def _notice_values_asked_for(study: Study, read: list[LogAnswer], findings: Findings) -> None:
-    """Warn of values of ``[logs.where]`` that no log has."""
     for name, values in study.logs.where.items():
-        occurring = list(dict.fromkeys(v for a in read for v in a.note.asked.get(name, ())))
+        occurring = list(dict.fromkeys(v for log in logs for v in log.asked.get(name, ())))
         for value in values:
             if value not in occurring:
                 _warn_of_value(study, ("logs", "where", name), value, occurring, findings)

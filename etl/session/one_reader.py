@@ -32,6 +32,8 @@ from etl.screening.ledger import (
 )
 from etl.screening.rules import OUTLIER
 from etl.session.gallery import candidates
+from etl.session.labels import Unlisted, unlisted_labels
+from etl.session.misplaced import outside_by_log
 from etl.session.ordering import OrderedFixations, ReaderLog, TrialNames, order_fixations
 from etl.session.reader import Options, Reader, ReaderTables
 from etl.session.screening import Unscreened, screen
@@ -82,13 +84,15 @@ class Bench:
             if name in self.design.ids
         )
 
-    def tables(self, reader: Reader) -> ReaderTables:
+    def tables(self, reader: Reader, *, page: bool = True) -> ReaderTables:
         """Compute all rows of one reader.
 
         Parameters
         ----------
         reader : Reader
             Fixations and trials.
+        page : bool
+            Whether the summary for the audit page is wanted too; it takes a fifth of the time.
 
         Returns
         -------
@@ -181,7 +185,7 @@ class Bench:
             batches,
             counts,
             accounts,
-            self._profile(reader, screened, batches),
+            self._profile(reader, screened, batches) if page else None,
             candidates(
                 reader.participant,
                 screened,
@@ -189,6 +193,9 @@ class Bench:
                 np.bincount(ordered.trial[kept[outcomes.regressions.launch]], minlength=len(texts)),
             ),
             findings,
+            outside_by_log(reader, ordered.trial, source[0], (order, self._placed(log))),
+            ordered.moved,
+            self._unlisted(reader, ordered),
         )
 
     def _profile(
@@ -260,6 +267,20 @@ class Bench:
             found = self.library.assign_points(text[rows], log.x_px[rows], log.y_px[rows])
         line[rows], order[rows] = found.line, found.order
         return line, order
+
+    def _unlisted(self, reader: Reader, ordered: OrderedFixations) -> dict[str, Unlisted]:
+        """Labels that no region definition lists, of trials of the study."""
+        if self.library.labels is None:
+            return {}
+        in_study = np.empty(len(reader.log), dtype=bool)
+        in_study[ordered.rows] = reader.trials.text[ordered.trial] >= 0
+        return unlisted_labels(reader.log, reader.file, in_study, self.library.labels.codes)
+
+    def _placed(self, log: CanonicalLog) -> NDArray[np.bool_]:
+        """Whether each fixation says where it is."""
+        if self.library.labels is not None and log.label is not None:
+            return np.asarray(log.label.codes >= 0)
+        return ~np.isnan(log.x_px)
 
     def _outcome_rows(
         self,

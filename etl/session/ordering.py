@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from etl.errors import Findings
 from etl.parsers import CanonicalLog
 from etl.parsers.time_checks import DIFFERENCE_DIGITS
+from etl.session.clock import tell_long_gaps, tell_overlapping_trials
 from etl.session.recordings import Fault, Rows, find_recordings, first_faults
 
 #: How far a fixation may reach into the next one. Onset and duration are each rounded to a
@@ -34,6 +35,9 @@ class OrderedFixations:
         Whether it belongs to a recording of a trial that is not the one used.
     overlaps : int
         Fixations that reach into the next one by no more than is tolerated.
+    moved : dict of int to (int, int)
+        For each log, by its place among the study's, in which rows did not stand in the order of
+        their numbers: how many are elsewhere now, and the first line of these.
     """
 
     rows: NDArray[np.int64]
@@ -41,6 +45,7 @@ class OrderedFixations:
     number: NDArray[np.int64]
     repeated: NDArray[np.bool_]
     overlaps: int
+    moved: dict[int, tuple[int, int]] = field(default_factory=dict)
 
 
 @dataclass(frozen=True, slots=True)
@@ -145,7 +150,12 @@ def order_fixations(
     in_order = numbered or _file_order_is_right(reader, by_trial, settled, findings)
     # Onsets that go back are sorted by now, and what overlaps then says nothing more.
     if in_order and count and not np.isnan(log.onset_ms[0]):
-        overlaps = _check_times(reader, rows, begins_recording | mixed[trial], numbered, findings)
+        told = begins_recording | mixed[trial]
+        overlaps = _check_times(reader, rows, told, numbered, findings)
+        tell_long_gaps(log, rows, told | ~trials.in_study[trial], reader.place, findings)
+        tell_overlapping_trials(
+            log, reader.file, reader.trial, reader.place, OVERLAP_TOLERATED_MS, findings
+        )
     aside = _recordings_set_aside(
         reader,
         TrialNames(trials.in_study & ~mixed, trials.spelled),
@@ -155,7 +165,18 @@ def order_fixations(
     )
     first = np.flatnonzero(begins)
     number = np.arange(count) - np.repeat(first, np.diff(np.append(first, count))) + 1
-    return OrderedFixations(rows, trial, number, aside, overlaps)
+    moved = _moved(reader, rows[rows != by_trial])
+    return OrderedFixations(rows, trial, number, aside, overlaps, moved)
+
+
+def _moved(reader: ReaderLog, rows: NDArray[np.int64]) -> dict[int, tuple[int, int]]:
+    """For each log, how many of some rows are from it, and the first line of these."""
+    files = reader.file[rows]
+    lines = reader.log.source_line[rows]
+    return {
+        file: (int((files == file).sum()), int(lines[files == file].min()))
+        for file in np.unique(files).tolist()
+    }
 
 
 def _tell_faults(

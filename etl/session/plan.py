@@ -11,11 +11,16 @@ from pathlib import Path
 
 from etl.errors import Findings
 from etl.export.publish import is_ours
-from etl.files import header_of, marks_of, read_text
+from etl.files import header_of_table, marks_of
 from etl.measures import MEASURES, TRIAL_MEASURES
-from etl.parsers import EyeChoice, LogReader, is_log, reader_for
+from etl.parsers import EyeChoice, LogReader, counted_file, is_log, reader_for
 from etl.regions import RegionLibrary, TrialWords, read_definitions
 from etl.screening import Limits
+from etl.session.datasets import (
+    tell_of_datasets,
+    tell_of_lost_recordings,
+    tell_of_other_recordings,
+)
 from etl.session.limits import check_rules, limits_of
 from etl.study import Study
 from etl.tables import BARE_DESIGN, TABLES
@@ -72,6 +77,12 @@ def find_logs(study: Study, findings: Findings) -> tuple[tuple[Path, str], ...]:
             for path in paths
             if is_log(study.logs.kind, path) and not any(is_ours(up) for up in path.parents[:2])
         ]
+        _tell_of_what_is_no_file(study, pattern, paths, findings)
+        if study.logs.kind == "bids":
+            tell_of_lost_recordings(study, pattern, findings)
+            others = set(paths) - set(files)
+            if tell_of_other_recordings(study, (number, pattern), others, files, findings):
+                continue
         if not files:
             findings.error(
                 "no log has a name like this",
@@ -83,9 +94,34 @@ def find_logs(study: Study, findings: Findings) -> tuple[tuple[Path, str], ...]:
                 fix="correct the pattern; * stands for any part of a name, ** for any folders",
             )
         for path in files:
-            found.setdefault(_identity(path), (shown_path(study, path.absolute()), path))
+            called = counted_file(study.logs, path).absolute()
+            found.setdefault(_identity(path), (shown_path(study, called), path))
+    if study.logs.kind == "bids":
+        tell_of_datasets(study, [path for _, path in found.values()], findings)
     in_order = sorted(found.values(), key=lambda log: _in_natural_order(log[0]))
     return tuple((path, shown) for shown, path in in_order)
+
+
+def _tell_of_what_is_no_file(
+    study: Study, pattern: str, paths: list[Path], findings: Findings
+) -> None:
+    """Tell of folders and broken links that are named like logs."""
+    for path in sorted(path for path in paths if not path.is_file()):
+        shown = shown_path(study, path.absolute())
+        if path.is_dir():
+            # A pattern for whatever lies in folders finds the folders too.
+            if "." in pattern.rsplit("/", 1)[-1].replace("**", ""):
+                findings.warning(
+                    "a folder is named like a log, and is no log",
+                    path=shown,
+                    fix="if logs lie in it, add their names to [logs] files",
+                )
+        else:
+            findings.error(
+                "the log is a link that leads to no file",
+                path=shown,
+                fix="copy the file itself to this place, or remove the link",
+            )
 
 
 def _identity(path: Path) -> tuple[int, int, str]:
@@ -119,7 +155,7 @@ def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tupl
     logs = find_logs(study, findings)
     log_header = reader_for(study.logs, study.screen).header(logs[0][0]) if logs else ()
     region_path = study.folder / study.regions.file
-    facts = gather_facts(study, log_header, _header(region_path), findings)
+    facts = gather_facts(study, log_header, header_of_table(region_path), findings)
     # Where the tables are wrong, the regions are read all the same, for what is wrong with them:
     # every fact that the study names is then taken for a key.
     named = {*study.trials.factors, *study.trials.covariates, *IDS}
@@ -142,12 +178,6 @@ def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tupl
     reader = reader_for(study.logs, study.screen, facts.from_log, eyes)
     check_rules(study, library.region_names, findings)
     return Plan(study, logs, reader, facts, library, limits_of(study)), logs
-
-
-def _header(path: Path) -> tuple[str, ...]:
-    """The header of a file; empty where it cannot be read, which is told when it is read."""
-    text = read_text(path, path.name, Findings())
-    return () if text is None else header_of(text)
 
 
 def _names_are_free(study: Study, findings: Findings) -> bool:

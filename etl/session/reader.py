@@ -16,6 +16,7 @@ from etl.report import LineGrid, ReaderProfile
 from etl.screening import Limits
 from etl.screening.ledger import Accounts
 from etl.session.gallery import Candidate
+from etl.session.labels import Unlisted
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,7 +57,33 @@ class Reader:
 
 @dataclass(slots=True)
 class ReaderTables:
-    """The finished rows of one reader, and what was counted and noticed on the way."""
+    """The finished rows of one reader, and what was counted and noticed on the way.
+
+    Attributes
+    ----------
+    participant : str
+        The reader's id.
+    batches : dict of str to pa.RecordBatch
+        Rows of every table; empty where a problem was found.
+    counts : dict of str to int
+        What was counted.
+    accounts : dict of str to Accounts
+        What became of trials and fixations.
+    profile : ReaderProfile or None
+        For the audit page.
+    candidates : list of Candidate
+        Trials that may be worth a drawing.
+    findings : Findings
+        What is wrong.
+    outside : dict of int to (int, int)
+        For each log, by its place among the study's: how many fixations have a position, and how
+        many of these lie outside every region. Without those on which there is a note.
+    moved : dict of int to (int, int)
+        For each log, by its place among the study's, in which rows were put in the order of their
+        numbers: how many, and the first line of these.
+    unlisted : dict of str to Unlisted
+        Labels that no region definition lists.
+    """
 
     participant: str
     batches: dict[str, pa.RecordBatch]
@@ -65,3 +92,6 @@ class ReaderTables:
     profile: ReaderProfile | None = None
     candidates: list[Candidate] = field(default_factory=list)
     findings: Findings = field(default_factory=Findings)
+    outside: dict[int, tuple[int, int]] = field(default_factory=dict)
+    moved: dict[int, tuple[int, int]] = field(default_factory=dict)
+    unlisted: dict[str, Unlisted] = field(default_factory=dict)

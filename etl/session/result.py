@@ -5,12 +5,16 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
+from typing import TYPE_CHECKING
 
-import pandas as pd
 import pyarrow.parquet as pq
 
 from etl.errors import Findings
 from etl.tables import TABLES
+
+if TYPE_CHECKING:
+    # Whoever asks for a frame gets it loaded then; a check, and every worker, does without it.
+    import pandas as pd
 
 
 @dataclass(frozen=True, slots=True)

@@ -56,7 +56,8 @@ def built(result: Result) -> str:
     lines = [summary(result.counts), f"Written to {_near(result.folder)}:"]
     width = max(len(name) for name in result.rows)
     lines += [f"  {name:<{width}}  {rows:>11,} rows" for name, rows in result.rows.items()]
-    return "\n".join([*lines, "  accounts.csv, run.json, and audit.html to look at"])
+    besides = "  accounts.csv, log_accounts.csv, run.json, and audit.html to look at"
+    return "\n".join([*lines, besides])
 
 
 def _near(folder: Path) -> Path:

@@ -3,14 +3,19 @@
 from __future__ import annotations
 
 from collections import Counter
+from collections.abc import Collection, Sequence
 
 from etl.errors import Findings
 from etl.export.accounts import UNITS, account_rows, account_text
+from etl.files import Tally
 from etl.report import AccountRow, Profiles
 from etl.screening import Limits
 from etl.screening.ledger import Accounts, columns_of_accounts
 from etl.screening.rules import BEFORE, key_of
+from etl.session.far_off import FEWEST_PLACED
 from etl.session.gallery import Choice
+from etl.session.labels import Unlisted, tell_unlisted
+from etl.session.misplaced import refuse_misplaced
 from etl.session.ordering import OVERLAP_TOLERATED_MS
 from etl.session.reader import ReaderTables
 from etl.study import Study
@@ -38,6 +43,9 @@ class Totals:
         self.accounts: dict[str, dict[str, Accounts]] = {}
         self.profiles = Profiles()
         self.choice = Choice()
+        self._outside: dict[int, tuple[int, int]] = {}
+        self.moved: dict[int, Tally] = {}
+        self._unlisted: dict[str, Unlisted] = {}
 
     def add(self, tables: ReaderTables) -> None:
         """Take in one reader."""
@@ -47,6 +55,16 @@ class Totals:
         if tables.profile is not None:
             self.profiles.add(tables.profile)
         self.choice.add(tables.candidates)
+        for file, own in tables.outside.items():
+            known = self._outside.get(file, (0, 0))
+            self._outside[file] = (known[0] + own[0], known[1] + own[1])
+        for file, (count, line) in tables.moved.items():
+            self.moved.setdefault(file, Tally()).add(count, line)
+        for label, found in tables.unlisted.items():
+            if label in self._unlisted:
+                self._unlisted[label].add(found)
+            else:
+                self._unlisted[label] = found
 
     def account_rows(self) -> list[list[str | int]]:
         """The accounts of the study, header first."""
@@ -65,6 +83,25 @@ class Totals:
             for reader, units in self.accounts.items()
             for unit in UNITS
         ]
+
+    def notice_places(
+        self, study: Study, labels: Collection[str], logs: Sequence[str], findings: Findings
+    ) -> None:
+        """Record logs that lie beside the regions, and labels that no region lists.
+
+        Parameters
+        ----------
+        study : Study
+            As loaded.
+        labels : collection of str
+            The labels that the region definitions list.
+        logs : sequence of str
+            The names of the logs.
+        findings : Findings
+            Where errors, warnings and notes are recorded.
+        """
+        refuse_misplaced(self._outside, logs, findings)
+        tell_unlisted(self._unlisted, labels, logs, study.regions.file, findings)
 
     def notice(self, study: Study, findings: Findings) -> None:
         """Record what is wrong or doubtful about the study as a whole.
@@ -89,7 +126,16 @@ class Totals:
             return
         kept = self.counts["fixations kept"]
         outside = self.counts["fixations kept outside every region"]
-        if kept and outside / kept > OUTSIDE_SHARE:
+        if outside == kept >= FEWEST_PLACED:
+            findings.error(
+                f"not one of {kept:,} fixations lies in a region",
+                path=study.shown,
+                line=study.line_of("regions"),
+                where="regions",
+                fix="check the layout, the boxes or the labels, and the screen's origin; x and y "
+                "may be swapped in [logs.columns]",
+            )
+        elif outside / kept > OUTSIDE_SHARE:
             findings.warning(
                 f"{outside / kept:.0%} of the fixations lie outside every region",
                 path=study.shown,

@@ -15,6 +15,7 @@ from etl.parsers.time_checks import in_ms
 from etl.session.plan import Plan
 from etl.trials import IDS, KnownTrials
 from etl.trials.facts import shown_path
+from etl.trials.labels import labels_of
 from etl.trials.notes import Notes, notes_on_readers, notes_on_trials, read_notes
 
 #: Numbers whose commas may mark thousands; none is written with a leading zero.
@@ -115,6 +116,7 @@ def _add_notes(plan: Plan, trials: KnownTrials, facts: TrialFacts, findings: Fin
             plan.study.logs.missing,
             findings,
             on_trials=given == of_trials,
+            prefixes=labels_of(plan.study.logs.kind),
         )
         if notes is None:
             continue

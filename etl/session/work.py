@@ -19,6 +19,7 @@ from etl.parsers import LogReader
 from etl.parsers.canonical import LogNote
 from etl.regions import RegionLibrary
 from etl.session.kept_logs import Shelf, keep_log, kept_log
+from etl.session.log_figures import LogFigures, figures_of
 from etl.session.one_reader import Bench
 from etl.session.reader import Options, Reader, ReaderTables
 from etl.session.seen import seen_trials
@@ -45,7 +46,7 @@ class LogAnswer:
     note: LogNote
     batches: dict[str, int] = field(default_factory=dict)
     trials: SeenTrials | None = None
-    median_ms: float = 0.0
+    figures: LogFigures | None = None
     findings: Findings = field(default_factory=Findings)
 
 
@@ -75,13 +76,10 @@ class LogWork:
             return LogAnswer(LogNote(task.shown), findings=findings)
         log, note = read
         trials = seen_trials(log, task.shown, findings)
-        return LogAnswer(
-            note,
-            keep_log(log, task.kept, self._shelf),
-            trials,
-            float(np.median(log.duration_ms)),
-            findings,
-        )
+        batches = keep_log(log, task.kept, self._shelf)
+        # A recording of the eye that does not count holds no fixation to compare with others.
+        figures = figures_of(log, len(batches), len(trials)) if len(log) else None
+        return LogAnswer(note, batches, trials, figures, findings)
 
 
 class ReaderWork:
@@ -107,7 +105,7 @@ class ReaderWork:
         log, part = kept_log(task.parts, self._shelf)
         file = np.asarray(task.files, dtype=np.int32)[part]
         reader = Reader(task.participant, log, file, task.trials, task.note)
-        tables = self._bench.tables(reader)
+        tables = self._bench.tables(reader, page=self._write)
         if not self._write:
             tables.batches = {}
         return tables

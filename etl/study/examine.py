@@ -13,6 +13,7 @@ from pydantic_core import ErrorDetails
 from etl.errors import FaultError
 from etl.study.models import StudyFile
 from etl.study.positions import KeyPath
+from etl.study.questions import asked, key_asked, open_questions, without
 from etl.study.rule import Problem
 from etl.study.rules import broken_rules
 from etl.study.shape import field_at, table_at
@@ -32,7 +33,7 @@ class Examined:
     draft : StudyFile
         The study, with defaults or examples in place of what is wrong.
     problems : list of Problem
-        All that is wrong; keys by themselves first, then what several contradict.
+        All that is wrong: open questions, then keys by themselves, then what several contradict.
     """
 
     draft: StudyFile
@@ -53,6 +54,9 @@ def examine(data: Mapping[str, Any], known_outcomes: Collection[str] | None) -> 
     -------
     Examined
     """
+    questions = open_questions(data)
+    # What nobody has answered yet is wrong by itself; no other check is to complain about it.
+    data = without(data, questions)
     errors = _errors(data)
     draft = _mended(data, errors)
     intended = {
@@ -60,7 +64,9 @@ def examine(data: Mapping[str, Any], known_outcomes: Collection[str] | None) -> 
         for path in (_at_fault(error, data) for error in errors if _is(error, "extra_forbidden"))
     }
     wrong: set[KeyPath] = {path for path in intended.values() if path is not None}
-    examined = Examined(draft)
+    unanswered = {key_asked(path) for path in questions}
+    wrong |= unanswered
+    examined = Examined(draft, [asked(path) for path in questions])
     for error in errors:
         path = _at_fault(error, data)
         if _is(error, "missing") and path in wrong:
@@ -70,7 +76,9 @@ def examine(data: Mapping[str, Any], known_outcomes: Collection[str] | None) -> 
         examined.problems.append(described(error, path, data))
         if path not in intended:
             wrong.add(_key_of(path))
-    examined.problems.extend(broken_rules(draft, wrong))
+    if any(path[:2] == ("logs", "patterns") for path in wrong):
+        wrong.add(("logs", "columns"))  # those that the pattern would have named are not known
+    examined.problems.extend(broken_rules(draft, wrong, unanswered))
     if known_outcomes is not None:
         for rule in (unknown_outcomes(known_outcomes), facts_called_like_measures(known_outcomes)):
             if rule.applies(wrong):
@@ -99,8 +107,9 @@ def _at_fault(error: ErrorDetails, data: Mapping[str, Any]) -> KeyPath:
         return whole
     inner: Any = data
     for length, part in enumerate(whole):
-        # A header alone stands for a table that is not in the file.
-        inside = part in inner if isinstance(inner, dict) else isinstance(part, int)
+        # A header alone stands for a table that is not in the file, and a text for a list.
+        listed = isinstance(inner, list) and isinstance(part, int)
+        inside = part in inner if isinstance(inner, dict) else listed
         if not inside:
             return whole[:length]
         inner = inner[part]

@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
-import re
 from typing import Annotated, Any, Literal
 
 from pydantic import AfterValidator, BeforeValidator, ConfigDict, Field
 
 from etl.study.columns import PlaceColumn, PlainColumn, TimeColumn
-from etl.study.values import CellText, CellTexts, Name, Number, Table, refusal
+from etl.study.line_patterns import SearchedPattern
+from etl.study.pattern_reading import searched_pattern, sound_pattern
+from etl.study.values import CellText, CellTexts, Name, Number, Table
 
 
 def _listed(value: Any) -> Any:
@@ -16,20 +17,13 @@ def _listed(value: Any) -> Any:
     return (value,) if isinstance(value, str) else value
 
 
-def _sound(pattern: str) -> str:
-    """Refuse a pattern that is no regular expression."""
-    try:
-        re.compile(pattern)
-    except (re.error, RecursionError, OverflowError) as error:
-        raise refusal(
-            f"this is no regular expression: {error}",
-            expected="a regular expression with named groups",
-            fix=r"""write for example fixation = '^fix (?P<onset>\d+) (?P<duration>\d+)'""",
-        ) from None
-    return pattern
-
-
-LinePattern = Annotated[str, Field(min_length=1), AfterValidator(_sound)]
+LinePattern = Annotated[str, Field(min_length=1), AfterValidator(sound_pattern)]
+#: What a line can be, in the order in which patterns are tried.
+LINE_KINDS = ("fixation", "blink", "trial_start", "trial_end", "facts", "lasting", "ignore")
+#: The keys of their patterns, for rules that need all of them to be sound.
+LINE_KEYS = tuple(f"logs.patterns.{kind}" for kind in LINE_KINDS)
+#: Those whose groups tell of fixations or of their trials.
+GROUPED_LINES = tuple(kind for kind in LINE_KINDS if kind not in ("blink", "ignore"))
 LinePatternList = Annotated[
     tuple[LinePattern, ...],
     BeforeValidator(_listed),
@@ -38,60 +32,80 @@ LinePatternList = Annotated[
 
 
 class LinePatterns(Table):
-    """What the lines of a log of events say: patterns that are searched in each line."""
+    r"""What the lines of a log of events say: regular expressions that each describe a line.
+
+    A pattern describes the whole of a line, but for blanks at its end: what does not matter is
+    ``.*``. What is written here is Python's grammar without what would let a pattern run away on a
+    long line. ``\w`` is a letter, mark or digit of any script, ``\d`` one of the digits 0 to 9.
+    """
 
     model_config = ConfigDict(title="[logs.patterns]")
 
     trial_start: LinePatternList = Field(
         default=(),
-        description="A trial starts: a regular expression that is searched in each line, or a "
-        "list of them. Its named groups say what is known: participant, session, trial, item, and "
-        "facts by any other name.",
+        description="A trial starts: a regular expression that describes the whole of such a line "
+        "(.* stands for what does not matter), or a list of them. Its named groups say what is "
+        "known: participant, session, trial, item, and facts by any other name. In this and all "
+        r"other patterns \d and \b know ASCII alone, \w the letters and digits of any script; a "
+        "pattern can neither look ahead or back nor repeat what a group found.",
         examples=[[r"^trial (?P<trial>\d+) begins, text (?P<item>\S+)$"]],
     )
     trial_end: LinePatternList = Field(
         default=(),
-        description="A trial ends. Named groups are facts of the trial that ends.",
+        description="A trial ends. Named groups are facts of the trial that ends. Fixations after "
+        "it and before the next start belong to no trial; they are counted and set aside. Without "
+        "it a trial lasts until the next one starts.",
         examples=[["^trial ends$"]],
     )
     fixation: LinePatternList = Field(
         default=(),
         description="A fixation is over. Its named groups are onset, end or duration, x, y, and "
-        "where the line has them fixation, label, eye and blink.",
+        "where the line has them fixation, label, eye and blink; or what [logs.columns] calls "
+        "them. With [logs.samples] it is the line of a gaze sample.",
         examples=[[r"^fixated (?P<onset>\d+) (?P<end>\d+) at (?P<x>[0-9.]+) (?P<y>[0-9.]+)$"]],
     )
     blink: LinePatternList = Field(
         default=(),
-        description="A blink. It touches the fixations that it overlaps; where it has groups "
-        "onset and end (or duration) that lie between two fixations of a trial, and where it has "
-        "none, it touches the fixation before and the one after it. A group eye says whose.",
+        description="A blink, of the trial within which its line stands. Where it has groups onset "
+        "and end (or duration) it touches the fixations that it overlaps in time; one that "
+        "overlaps none, and one that has no such groups, touches the fixation before it and the "
+        "one after it. A group eye says whose.",
         examples=[[r"^blink (?P<onset>\d+) (?P<end>\d+)$"]],
     )
     facts: LinePatternList = Field(
         default=(),
-        description="A line that tells of the trial under way or, before the first trial, of the "
-        "whole log. Its named groups are facts, or participant, session, trial, item.",
+        description="A line that tells of a trial: of the one under way, or of the one that ended "
+        "last where none is; before the first trial, of the whole log. Its named groups are facts, "
+        "or participant, session, trial, item. What a trial says twice must be the same.",
         examples=[[r"^reader: (?P<participant>\S+)$", r"^cue = (?P<cue>\w+)$"]],
+    )
+    lasting: LinePatternList = Field(
+        default=(),
+        description="A line that tells of all trials that start after it, until another one says "
+        "it anew: the block, or what is said of a trial before it starts. Groups as in facts.",
+        examples=[[r"^block: (?P<block>\w+)$"]],
     )
     ignore: LinePatternList = Field(
         default=(),
-        description="Lines that mean nothing here. They are counted.",
+        description="Lines that mean nothing here; they are counted. Unlike all others, these "
+        "patterns are searched anywhere in a line. A line is taken by the first pattern that fits "
+        "it: fixation, blink, trial_start, trial_end, facts, lasting, ignore.",
         examples=[["^calibration", "^sample "]],
     )
     other: Literal["error", "ignore"] = Field(
         default="error",
-        description="What to do with lines that no pattern fits: stop, or count them.",
+        description="What to do with lines that no pattern fits: stop, or count them. A line that "
+        "begins like those of a pattern and goes on otherwise stops in either case.",
     )
     unfinished: Literal["error", "keep"] = Field(
         default="error",
         description="What to do with a trial that starts and does not end, where trial_end is "
-        "given: stop, or keep its fixations. One that starts again is a second recording.",
+        "given: stop, or keep its fixations. One that starts again later is a second recording.",
     )
 
-    def every(self) -> dict[str, tuple[str, ...]]:
+    def every(self) -> dict[str, tuple[SearchedPattern, ...]]:
         """The patterns by what their lines say, in the order in which they are tried."""
-        names = ("fixation", "blink", "trial_start", "trial_end", "facts", "ignore")
-        return {name: getattr(self, name) for name in names}
+        return {name: tuple(map(searched_pattern, getattr(self, name))) for name in LINE_KINDS}
 
 
 class EyeColumns(Table):
@@ -144,8 +158,8 @@ class Samples(Table):
 
     method: Literal["engbert_kliegl", "dispersion"] = Field(
         description="How fixations are found: between saccades that the velocity shows (Engbert & "
-        "Kliegl 2003), or by the dispersion of neighbouring samples (I-DT of Salvucci & Goldberg "
-        "2000).",
+        "Kliegl 2003, doi:10.1016/S0042-6989(03)00084-1), or by the dispersion of neighbouring "
+        "samples (I-DT of Salvucci & Goldberg 2000, doi:10.1145/355017.355028).",
         examples=["engbert_kliegl"],
     )
     threshold_factor: Number = Field(
@@ -173,12 +187,14 @@ class Samples(Table):
     shortest_fixation_ms: Number = Field(
         default=50.0,
         ge=0,
-        description="What is shorter is no fixation. 100 is the paper's own for dispersion.",
+        description="What is shorter is no fixation; each sample lasts until the next. 100 is the "
+        "paper's own for dispersion.",
     )
     longest_gap_ms: Number = Field(
         default=0.0,
         ge=0,
-        description="Samples without a position for no longer than this do not end a fixation.",
+        description="A hole in the record (samples without a position, or none at all) that is no "
+        "longer than this does not end a fixation.",
     )
     frequency_hz: Number | None = Field(
         default=None,
@@ -199,7 +215,13 @@ class Bids(Table):
     )
     blink: CellTexts = Field(
         default=("blink",),
-        description="The trial_type of a blink, where blinks have rows of their own.",
+        description="The trial_type of a blink, where blinks have rows of their own. A row of any "
+        "kind that is not 0 in the column blink tells of one too.",
+    )
+    ignore: CellTexts = Field(
+        default=("saccade",),
+        description="The trial_type of events that mean nothing here. They are counted; an event "
+        "of any other type stops the build.",
     )
     trials: dict[Name, CellTexts] = Field(
         default={},
@@ -209,9 +231,16 @@ class Bids(Table):
     )
     duration_unit: Literal["ms", "s", "us"] | None = Field(
         default=None,
-        description="The unit of the durations of fixations, where the sidecar does not say it.",
+        description="The unit of the durations of fixations, where the sidecar does not say it. "
+        "Absent, it is the second, as in the standard, unless that would be absurd.",
     )
     onset_unit: Literal["ms", "s", "us"] | None = Field(
         default=None,
-        description="The unit of the recording's time stamps, where the sidecar does not say it.",
+        description="The unit of the recording's time stamps, where the sidecar does not say it. "
+        "Absent, it is the one by which they go with the sampling frequency.",
+    )
+    first_row: Literal[0, 1] = Field(
+        default=0,
+        description="The number of the recording's first row, where events are placed by rows "
+        '(OnsetSource "n/a").',
     )

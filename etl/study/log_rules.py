@@ -6,20 +6,42 @@ import re
 from collections.abc import Iterator
 
 from etl.study.models import StudyFile
+from etl.study.positions import KeyPath
 from etl.study.rule import Problem, rule
+
+
+def _undescribed(study: StudyFile) -> bool:
+    """Whether the lines of a log of events are not described, which is a problem of its own."""
+    patterns = study.logs.patterns
+    described = patterns is not None and patterns.fixation and patterns.trial_start
+    return study.logs.kind == "events" and not described
+
+
+def _listed(study: StudyFile) -> KeyPath:
+    """The table that says what there is in a log."""
+    return ("logs", "patterns" if study.logs.kind == "events" else "columns")
+
+
+def _add(study: StudyFile, name: str) -> str:
+    """How a column is added that the study needs."""
+    if study.logs.kind == "events":
+        return f"put (?P<{name}>…) around it in a pattern of [logs.patterns]"
+    return f'add {name} = "…" with the header of the column'
 
 
 @rule("logs.columns.participant", "logs.participant_from_name")
 def reader_is_named(study: StudyFile) -> Iterator[Problem]:
     """Each fixation has a reader."""
     logs = study.logs
+    if _undescribed(study):
+        return
     if logs.columns.participant is None and logs.participant_from_name is None:
         yield Problem(
-            ("logs", "columns"),
+            _listed(study),
             "nothing says who read",
             expected="participant",
-            fix='add participant = "…" with the header of the column, or participant_from_name '
-            "to [logs] where the file's name says it",
+            fix=f"{_add(study, 'participant')}, or participant_from_name to [logs] where the "
+            "file's name says it",
         )
 
 
@@ -27,24 +49,30 @@ def reader_is_named(study: StudyFile) -> Iterator[Problem]:
 def trial_is_named(study: StudyFile) -> Iterator[Problem]:
     """Each fixation has a trial."""
     pattern = re.compile(study.logs.participant_from_name or "")
+    if _undescribed(study):
+        return
     if study.logs.columns.trial is None and "trial" not in pattern.groupindex:
         yield Problem(
-            ("logs", "columns"),
+            _listed(study),
             "nothing says which trial a fixation belongs to",
             expected="trial",
-            fix='add trial = "…" with the header of the column',
+            fix=_add(study, "trial"),
         )
 
 
 @rule("logs.columns.onset", "logs.columns.fixation")
 def order_is_known(study: StudyFile) -> Iterator[Problem]:
     """The order of fixations is known."""
+    if _undescribed(study):
+        return
     if study.logs.columns.onset is None and study.logs.columns.fixation is None:
         yield Problem(
-            ("logs", "columns"),
+            _listed(study),
             "nothing says in which order the fixations were made",
             expected="onset or fixation",
-            fix='add onset = "…" (a time) or fixation = "…" (a number in the trial) with the '
+            fix=_add(study, "onset")
+            if study.logs.kind == "events"
+            else 'add onset = "…" (a time) or fixation = "…" (a number in the trial) with the '
             "header of the column",
         )
 
@@ -53,12 +81,16 @@ def order_is_known(study: StudyFile) -> Iterator[Problem]:
 def duration_is_known_once(study: StudyFile) -> Iterator[Problem]:
     """A duration is given, either by itself or by the end."""
     columns = study.logs.columns
+    if _undescribed(study):
+        return
     if study.logs.samples is None and columns.duration is None and columns.end is None:
         yield Problem(
-            ("logs", "columns"),
+            _listed(study),
             "nothing says how long a fixation lasted",
             expected="duration or end",
-            fix='add duration = "…" or end = "…" with the header of the column',
+            fix=_add(study, "duration")
+            if study.logs.kind == "events"
+            else 'add duration = "…" or end = "…" with the header of the column',
         )
     if columns.duration is not None and columns.end is not None:
         yield Problem(
@@ -116,7 +148,7 @@ def delimiter_is_no_decimal_sign(study: StudyFile) -> Iterator[Problem]:
         )
 
 
-@rule("logs.kind", "logs.patterns")
+@rule("logs.kind", "logs.patterns.fixation", "logs.patterns.trial_start")
 def events_have_lines(study: StudyFile) -> Iterator[Problem]:
     """A log of events is described by its lines, another one is not."""
     logs = study.logs
@@ -217,45 +249,3 @@ def eyes_have_the_same_columns(study: StudyFile) -> Iterator[Problem]:
                     expected=str(one.unit),
                     fix="give both eyes the same unit",
                 )
-
-
-@rule("logs.samples", "logs.columns.onset", "logs.columns.x", "logs.columns.y", "screen")
-def samples_can_be_searched(study: StudyFile) -> Iterator[Problem]:
-    """Fixations are found in samples that have a time and a position."""
-    samples, columns = study.logs.samples, study.logs.columns
-    if samples is None:
-        return
-    for key in ("onset", "x", "y"):
-        if getattr(columns, key) is None:
-            yield Problem(
-                ("logs", "columns"),
-                "fixations are found in samples that have a time and a position",
-                expected=key,
-                fix=f'add {key} = "…" with the header of the column',
-            )
-    for key in ("duration", "end", "fixation", "label"):
-        if getattr(columns, key) is not None and study.logs.kind != "bids":
-            yield Problem(
-                ("logs", "columns", key),
-                "a sample has none: fixations are found in the samples",
-                fix="remove the key, or remove [logs.samples] if the rows are fixations",
-            )
-    if samples.method != "dispersion":
-        return
-    if (samples.dispersion_px is None) == (samples.dispersion_deg is None):
-        yield Problem(
-            ("logs", "samples"),
-            "one extent is needed of what still is a fixation",
-            expected="dispersion_px or dispersion_deg",
-            fix="give one of the two",
-        )
-    screen = study.screen
-    if samples.dispersion_deg is not None and (
-        screen is None or screen.width_cm is None or screen.distance_cm is None
-    ):
-        yield Problem(
-            ("logs", "samples", "dispersion_deg"),
-            "degrees need the size and the distance of the screen",
-            expected="width_cm and distance_cm in [screen]",
-            fix="add them, or give dispersion_px",
-        )

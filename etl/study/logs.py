@@ -2,15 +2,16 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Iterator, Mapping
 from contextlib import suppress
 from typing import Annotated, Any, Literal
 
 from pydantic import AfterValidator, ConfigDict, Field, ValidationError, model_validator
+from pydantic_core import PydanticCustomError
 
 from etl.study.columns import Column, PlaceColumn, PlainColumn, TimeColumn
-from etl.study.log_kinds import Bids, Eye, EyeColumns, LinePatterns, Samples
+from etl.study.log_kinds import GROUPED_LINES, Bids, Eye, EyeColumns, LinePatterns, Samples
+from etl.study.pattern_reading import searched_pattern, sound_pattern
 from etl.study.values import (
     CellTexts,
     Encoding,
@@ -30,7 +31,10 @@ BIDS_COLUMNS = {
     "duration": "duration",
     "x": "x_coordinate",
     "y": "y_coordinate",
+    "blink": "blink",
 }
+#: What the standard writes in a cell that has no value.
+BIDS_MISSING = "n/a"
 
 
 class Columns(Table):
@@ -192,11 +196,21 @@ class Logs(Table):
         """Fill in the columns that the kind of log, or the tables of both eyes, already name."""
         if not isinstance(entry, dict):
             return entry
+        if entry.get("kind") == "bids":
+            entry = {"bids": {}, **_with_mark_of_the_standard(entry)}
         known = dict(_known_columns(entry))
         stated = entry.get("columns", {} if known else None)
         if not known or not isinstance(stated, dict):
             return entry
         return {**entry, "columns": {**known, **stated}}
+
+
+def _with_mark_of_the_standard(logs: dict[str, Any]) -> dict[str, Any]:
+    """The table with what the open standard writes for no value among the missing marks."""
+    missing = logs.get("missing", Logs.model_fields["missing"].default)
+    if not isinstance(missing, (list, tuple)) or BIDS_MISSING in missing:
+        return logs
+    return {**logs, "missing": [*missing, BIDS_MISSING]}
 
 
 def _known_columns(logs: Mapping[str, Any]) -> Iterator[tuple[str, Any]]:
@@ -219,7 +233,7 @@ def _known_columns(logs: Mapping[str, Any]) -> Iterator[tuple[str, Any]]:
 
 
 def groups_in(patterns: Mapping[str, Any]) -> list[str]:
-    """The named groups of ``[logs.patterns]``, each once; faulty patterns have none.
+    """The groups of ``[logs.patterns]`` that are columns, each once; faulty patterns have none.
 
     Parameters
     ----------
@@ -229,14 +243,19 @@ def groups_in(patterns: Mapping[str, Any]) -> list[str]:
     Returns
     -------
     list of str
+        Without those of blinks, which are no columns of fixations.
+
+    Examples
+    --------
+    >>> groups_in({"fixation": "(?P<x>.) (?P<y>.)", "facts": ["(?P<cue>.)", "("], "other": "error"})
+    ['x', 'y', 'cue']
     """
     groups: dict[str, None] = {}
-    for key, own in patterns.items():
-        if key in ("blink", "ignore", "other", "unfinished"):
-            continue
-        for pattern in [own] if isinstance(own, str) else own:
+    for key in GROUPED_LINES:
+        own = patterns.get(key, ())
+        for pattern in own if isinstance(own, (list, tuple)) else (own,):
             try:
-                groups |= dict.fromkeys(re.compile(pattern).groupindex)
-            except (re.error, RecursionError, OverflowError, TypeError):
+                groups |= dict.fromkeys(searched_pattern(sound_pattern(pattern)).groups)
+            except (PydanticCustomError, TypeError):
                 continue
     return list(groups)

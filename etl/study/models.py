@@ -86,7 +86,8 @@ class Facts(Table):
     """A table of facts that is joined to the trials."""
 
     table: FileName = Field(
-        description="The file of facts (CSV or TSV), relative to the study file.",
+        description="The file of facts (CSV, TSV or .xlsx, its sheet after a #), relative to the "
+        "study file.",
         examples=["participants.csv"],
     )
 
@@ -110,7 +111,8 @@ class Trials(Table):
 
     table: FileName | None = Field(
         default=None,
-        description="The trial list (CSV or TSV), relative to the study file. Without it the "
+        description="The trial list (CSV, TSV or .xlsx, its sheet after a #), relative to the study "
+        "file. Without it the "
         "facts are columns of the log.",
         examples=["trial_list.csv"],
     )
@@ -234,7 +236,8 @@ class Regions(Table):
     model_config = ConfigDict(title="[regions]")
 
     file: FileName = Field(
-        description="The region definitions (CSV or TSV), relative to the study file.",
+        description="The region definitions (CSV, TSV or .xlsx, its sheet after a #), relative to "
+        "the study file.",
         examples=["regions.csv"],
     )
     kind: Literal["marked_text", "words", "boxes", "wkt", "labels"] = Field(

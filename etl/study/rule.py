@@ -42,6 +42,10 @@ class Rule:
         """Whether none of the keys it reads is wrong in itself, nor a table around them."""
         return not any(key[: len(path)] == path for key in self.reads for path in wrong)
 
+    def awaits(self, questions: Collection[KeyPath]) -> bool:
+        """Whether a key it reads, or a key in a table it reads, is a question still open."""
+        return any(path[: len(key)] == key for key in self.reads for path in questions)
+
 
 def rule(*keys: str) -> Callable[[Check], Rule]:
     """Make a rule of a check, given the dotted names of the keys it reads."""

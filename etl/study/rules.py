@@ -9,7 +9,8 @@ from __future__ import annotations
 
 from collections.abc import Collection, Iterator
 
-from etl.study import log_rules, place_rules, screening_rules, trial_rules
+from etl.study import bids_rules, log_rules, place_rules, sample_rules, screening_rules, trial_rules
+from etl.study.event_rules import EVENT_RULES
 from etl.study.models import StudyFile
 from etl.study.positions import KeyPath
 from etl.study.rule import Problem
@@ -23,10 +24,19 @@ RULES = (
     log_rules.measured_columns_differ,
     log_rules.delimiter_is_no_decimal_sign,
     log_rules.events_have_lines,
+    *EVENT_RULES,
     log_rules.bids_has_its_kind,
+    bids_rules.bids_trials_have_a_column,
+    bids_rules.bids_has_its_columns,
+    bids_rules.bids_is_written_in_one_way,
+    bids_rules.bids_has_its_eyes,
     log_rules.eye_is_known,
     log_rules.eyes_have_the_same_columns,
-    log_rules.samples_can_be_searched,
+    sample_rules.samples_have_time_and_place,
+    sample_rules.samples_are_no_fixations,
+    sample_rules.events_have_no_samples,
+    sample_rules.method_reads_its_own_keys,
+    sample_rules.dispersion_has_its_limits,
     place_rules.place_is_known,
     place_rules.positions_share_a_unit,
     place_rules.degrees_have_a_screen,
@@ -62,7 +72,9 @@ RULES = (
 )
 
 
-def broken_rules(study: StudyFile, wrong: Collection[KeyPath]) -> Iterator[Problem]:
+def broken_rules(
+    study: StudyFile, wrong: Collection[KeyPath], questions: Collection[KeyPath] = ()
+) -> Iterator[Problem]:
     """Run every rule whose keys are sound.
 
     Parameters
@@ -71,6 +83,8 @@ def broken_rules(study: StudyFile, wrong: Collection[KeyPath]) -> Iterator[Probl
         The study, with defaults or examples in place of what is wrong.
     wrong : collection of tuple
         The keys that are wrong in themselves; a wrong table makes all its keys wrong.
+    questions : collection of tuple
+        The keys whose value is a question still open.
 
     Yields
     ------
@@ -78,5 +92,5 @@ def broken_rules(study: StudyFile, wrong: Collection[KeyPath]) -> Iterator[Probl
         What contradicts a rule, in the order of the rules.
     """
     for rule in RULES:
-        if rule.applies(wrong):
+        if rule.applies(wrong) and not rule.awaits(questions):
             yield from rule.check(study)

@@ -171,7 +171,8 @@ class TrialRules(Rules):
 
     notes: FileName | None = Field(
         default=None,
-        description="A table of trials to leave out (CSV or TSV: participant, session where the "
+        description="A table of trials to leave out (CSV, TSV or .xlsx: participant, session where "
+        "the "
         "logs have it, trial, reason), relative to the study file; rows without a trial are about "
         "readers. Off when absent or false.",
         examples=["notes.csv"],
@@ -226,7 +227,8 @@ class ParticipantRules(Rules):
 
     notes: FileName | None = Field(
         default=None,
-        description="A table of readers to leave out (CSV or TSV: participant, trial, reason), "
+        description="A table of readers to leave out (CSV, TSV or .xlsx: participant, trial, "
+        "reason), "
         "relative to the study file; rows with a trial are about trials, so that one file may "
         "serve both. Off when absent or false.",
         examples=["notes.csv"],

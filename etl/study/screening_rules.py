@@ -33,14 +33,23 @@ def _is_on(study: StudyFile, key: str) -> bool:
     return limit is not None and limit is not False
 
 
+def _blinks_are_told(study: StudyFile) -> bool:
+    """Whether blinks have lines or rows of their own."""
+    return study.logs.kind == "bids" or bool(_at(study, "logs.patterns.blink"))
+
+
 def _needs(key: str, needed: tuple[str, ...], problem: str) -> Rule:
     """Make the rule that a rule of screening needs one of some keys."""
+    of_blinks = needed == ("logs.columns.blink",)
+    instead = ("logs.kind", "logs.patterns.blink") if of_blinks else ()
     table = needed[0].rpartition(".")[0]
     holds = "header" if table == "logs.columns" else "name"
     keys = " or ".join(f'{other.rpartition(".")[2]} = "…"' for other in needed)
 
-    @rule(key, *needed)
+    @rule(key, *needed, *instead)
     def rule_has_what_it_needs(study: StudyFile) -> Iterator[Problem]:
+        if of_blinks and _blinks_are_told(study):
+            return
         if _is_on(study, key) and all(_at(study, other) is None for other in needed):
             yield Problem(
                 _path(key),

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import difflib
 import re
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from datetime import date, time
 from typing import Any
 
@@ -146,11 +146,11 @@ def described(error: ErrorDetails, path: KeyPath, data: Mapping[str, Any]) -> Pr
         return Problem(path, "this column has no unit", found, "no unit", "remove unit")
     if kind in _BOUNDS:
         bound = _BOUNDS[kind].format(**context)
-        return Problem(path, "out of bounds", found, bound, _example(path))
+        return Problem(path, "out of bounds", found, bound, example(path))
     if kind == "finite_number":
-        return Problem(path, "out of bounds", found, "a finite number", _example(path))
+        return Problem(path, "out of bounds", found, "a finite number", example(path))
     if kind in _EMPTY:
-        return Problem(path, "this is empty", None, _EMPTY[kind], _example(path))
+        return Problem(path, "this is empty", None, _EMPTY[kind], example(path))
     return _wrong_kind(path, kind, given, found)
 
 
@@ -177,14 +177,34 @@ def _table_name(path: KeyPath) -> str:
     return f"[{dotted(path)}]" if path else "the top of the file, before the first [table]"
 
 
-def _first_sentence(description: str) -> str:
-    """The first sentence of a description, to stand inside another."""
+def first_sentence(description: str) -> str:
+    """The first sentence of a description, to stand inside another.
+
+    Parameters
+    ----------
+    description : str
+        What a key means.
+
+    Returns
+    -------
+    str
+    """
     sentence = description.split(". ", 1)[0].rstrip(".")
     return sentence[:1].lower() + sentence[1:]
 
 
-def _example(path: KeyPath) -> str:
-    """What could be written, from the key's own example."""
+def example(path: KeyPath) -> str:
+    """What could be written, from the key's own example.
+
+    Parameters
+    ----------
+    path : tuple of str and int
+        The key.
+
+    Returns
+    -------
+    str
+    """
     field = field_at(path)
     if field is None or not field.examples:
         is_table = table_at(path) is not None
@@ -230,12 +250,12 @@ def _missing(path: KeyPath) -> Problem:
             fix=f"add {_table_name(path)}" + (f" with {_listed(needed, 'and')}" if needed else ""),
         )
     field = field_at(path)
-    example = toml_text(field.examples[0]) if field is not None and field.examples else "…"
+    value = toml_text(field.examples[0]) if field is not None and field.examples else "…"
     return Problem(
         path,
         "this key is missing",
-        expected="" if field is None else _first_sentence(str(field.description)),
-        fix=f"add for example {path[-1]} = {example}",
+        expected="" if field is None else first_sentence(str(field.description)),
+        fix=f"add for example {path[-1]} = {value}",
     )
 
 
@@ -255,9 +275,28 @@ def _no_choice(path: KeyPath, found: str) -> Problem:
         path,
         "this is not one of the choices",
         found,
-        _listed([quoted(choice) for choice in choices]) + only,
+        listed_choices(choices) + only,
         fix,
     )
+
+
+def listed_choices(choices: Sequence[str]) -> str:
+    """Texts to choose from, as the study file writes them.
+
+    Parameters
+    ----------
+    choices : sequence of str
+
+    Returns
+    -------
+    str
+
+    Examples
+    --------
+    >>> listed_choices(["px", "deg"])
+    '"px" or "deg"'
+    """
+    return _listed([quoted(choice) for choice in choices])
 
 
 def _wrong_kind(path: KeyPath, kind: str, given: Any, found: str) -> Problem:
@@ -269,7 +308,7 @@ def _wrong_kind(path: KeyPath, kind: str, given: Any, found: str) -> Problem:
         expected = "the column's header in quotes, or a table with column and unit"
     better = _CORRECTED[kind](given) if kind in _CORRECTED else None
     if better is None:
-        fix = _example(path)
+        fix = example(path)
     else:
         entry = isinstance(path[-1], int)
         fix = f"write {better}" if entry else f"write {_key(path[-1])} = {better}"

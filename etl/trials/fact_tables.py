@@ -6,12 +6,14 @@ from collections.abc import Collection, Mapping
 from dataclasses import dataclass, replace
 from difflib import get_close_matches
 from pathlib import Path
+from types import MappingProxyType
 
 import numpy as np
 from numpy.typing import NDArray
 
 from etl.errors import Findings
-from etl.files import Cells, Coded, group_rows, marks_of, place_rows, read_cells
+from etl.files import Cells, Coded, group_rows, marks_of, place_rows, read_table
+from etl.trials.labels import without_prefix
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,13 +63,14 @@ def read_fact_table(
     synonyms: Mapping[str, str],
     missing: Collection[str],
     findings: Findings,
+    prefixes: Mapping[str, str] = MappingProxyType({}),
 ) -> FactTable | None:
     """Read a table of facts.
 
     Parameters
     ----------
     path : Path
-        The file.
+        The file: delimited text, or a workbook, its sheet after a hash.
     shown : str
         Its name for messages.
     keys : tuple of str
@@ -79,6 +82,8 @@ def read_fact_table(
         Cells that stand for no value.
     findings : Findings
         Where problems are recorded.
+    prefixes : mapping of str to str
+        What may stand before the ids of a column, by canonical name; it is left out.
 
     Returns
     -------
@@ -86,7 +91,7 @@ def read_fact_table(
         None where a problem was recorded.
     """
     before = findings.count("error")
-    cells = read_cells(path, shown, findings)
+    cells = read_table(path, shown, findings)
     if cells is None:
         return None
     canonical = {header: name for name, header in synonyms.items() if name not in cells.header}
@@ -105,7 +110,10 @@ def read_fact_table(
         )
         return None
     absent = marks_of(missing)
-    columns = {name: Coded.of(cells.column(header), absent) for name, header in names.items()}
+    columns = {
+        name: without_prefix(Coded.of(cells.column(header), absent), prefixes.get(name))
+        for name, header in names.items()
+    }
     table = FactTable(shown, cells.text.sha256, keys, columns, cells.lines)
     _check_keys(table, names, findings)
     return None if findings.count("error") > before else table

@@ -15,6 +15,7 @@ from numpy.typing import NDArray
 from etl.errors import Findings
 from etl.files import Coded, group_rows, place_rows
 from etl.trials.fact_tables import FactTable, read_fact_table
+from etl.trials.labels import labels_of
 from etl.trials.seen import IDS, SeenTrials
 from etl.trials.sources import check_ids, find_sources
 
@@ -288,7 +289,10 @@ def gather_facts(
             return None
         shown = shown_path(study, given)
         missing = study.logs.missing
-        return read_fact_table(study.folder / given, shown, keys, synonyms, missing, findings)
+        labels = labels_of(study.logs.kind)
+        return read_fact_table(
+            study.folder / given, shown, keys, synonyms, missing, findings, labels
+        )
 
     participants = table(study.participants.table if study.participants else None, ("participant",))
     items = table(study.items.table if study.items else None, ("item",))

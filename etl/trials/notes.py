@@ -5,13 +5,15 @@ from __future__ import annotations
 from collections.abc import Collection, Mapping
 from dataclasses import dataclass
 from pathlib import Path
+from types import MappingProxyType
 
 import numpy as np
 from numpy.typing import NDArray
 
 from etl.errors import Findings
-from etl.files import Cells, Coded, place_rows, read_cells
+from etl.files import Cells, Coded, place_rows, read_table
 from etl.trials.fact_tables import FactTable
+from etl.trials.labels import without_prefix
 from etl.trials.seen import SeenTrials
 
 
@@ -49,14 +51,16 @@ def read_notes(
     findings: Findings,
     *,
     on_trials: bool = True,
+    prefixes: Mapping[str, str] = MappingProxyType({}),
 ) -> Notes | None:
     """Read a file of notes.
 
     Parameters
     ----------
     path : Path
-        The file: columns ``participant``, ``trial``, ``reason``, and ``session`` where readers came
-        more than once. A note without a trial is on the reader.
+        The file, delimited text or a workbook, its sheet after a hash: columns ``participant``,
+        ``trial``, ``reason``, and ``session`` where readers came more than once. A note without a
+        trial is on the reader.
     shown : str
         Its name for messages.
     synonyms : mapping of str to str
@@ -68,6 +72,8 @@ def read_notes(
     on_trials : bool
         Whether notes on trials are asked for; then the file must have a column ``trial``, since a
         misspelt one would turn every note on a trial into one on its reader.
+    prefixes : mapping of str to str
+        As in :func:`~etl.trials.fact_tables.read_fact_table`.
 
     Returns
     -------
@@ -75,7 +81,7 @@ def read_notes(
         None where a problem was recorded.
     """
     before = findings.count("error")
-    cells = read_cells(path, shown, findings)
+    cells = read_table(path, shown, findings)
     if cells is None:
         return None
     absent = frozenset(mark.strip() for mark in missing) | {""}
@@ -83,7 +89,8 @@ def read_notes(
     for name in ("participant", "trial", "reason", "session"):
         header = name if name in cells.header else synonyms.get(name, name)
         if header in cells.header:
-            columns[name] = Coded.of(cells.column(header), absent)
+            coded = Coded.of(cells.column(header), absent)
+            columns[name] = without_prefix(coded, prefixes.get(name))
         elif name == "trial" and not on_trials:
             columns[name] = Coded.absent(len(cells))
         elif name != "session":

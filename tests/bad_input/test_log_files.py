@@ -38,6 +38,8 @@ def test_folders_are_no_logs(study: SmallStudy) -> None:
         Path(f"logs/{name}.tsv").unlink()
     Path(P01).mkdir()
     assert study.refusal() == one_problem(
+        "warning: logs/P01.tsv: a folder is named like a log, and is no log",
+        "    fix: if logs lie in it, add their names to [logs] files",
         'study.toml:2: logs.files: no log has a name like this; found "logs/*.tsv", '
         "expected a pattern relative to the study file that finds the logs",
         "    fix: correct the pattern; * stands for any part of a name, ** for any folders",

@@ -64,7 +64,7 @@ CASES: Mapping[str, tuple[dict[str, str], str]] = {
         ),
     ),
     "quote inside a quoted cell": (
-        {ROW: ROW.replace("pear", '"pe"ar"')},
+        {ROW: ROW.replace("pear", '"pe"ar')},
         (
             'logs/P01.tsv:3: a quoted cell is broken; expected a quote mark " on both sides of a '
             "cell, and doubled inside it\n"

@@ -71,7 +71,7 @@ def test_trials_recorded_twice_are_cut_short(study: SmallStudy) -> None:
 
 def test_equal_names_all_over_the_header_are_cut_short(study: SmallStudy) -> None:
     """A header of equal names is told by five of them and a count."""
-    names = "\tspare" * 21
+    names = "\tx" * 20
     study.write("logs/P01.tsv", log("P01").replace("\n", names + "\n", 1))
     said = study.refusal().splitlines()
     assert len([line for line in said if line.startswith("logs/")]) == 5

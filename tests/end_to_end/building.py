@@ -21,7 +21,7 @@ from tests.simulator.writing import Places
 PROJECT = Path(__file__).resolve().parents[2]
 TABLES = ("outcomes", "outcomes_wide", "trials", "regressions", "fixations")
 #: What a build writes besides the tables, whatever the formats.
-BESIDES = ("exclusions.csv", "accounts.csv", "audit.html", "run.json")
+BESIDES = ("exclusions.csv", "accounts.csv", "log_accounts.csv", "audit.html", "run.json")
 #: Every file that a build writes, with the tables in Parquet alone, and in CSV too.
 PUBLISHED = {*(f"{table}.parquet" for table in TABLES), *BESIDES}
 PUBLISHED_WITH_CSV = {*(f"{table}.csv" for table in TABLES), *PUBLISHED}

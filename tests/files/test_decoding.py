@@ -23,6 +23,9 @@ WRITTEN = {
     "UTF-16 LE with mark": (codecs.BOM_UTF16_LE + TEXT.encode("utf-16-le"), "utf-16"),
     "UTF-16 BE with mark": (codecs.BOM_UTF16_BE + TEXT.encode("utf-16-be"), "utf-16"),
     "UTF-32 LE with mark": (codecs.BOM_UTF32_LE + TEXT.encode("utf-32-le"), "utf-32"),
+    "UTF-32 BE with mark": (codecs.BOM_UTF32_BE + TEXT.encode("utf-32-be"), "utf-32"),
+    "UTF-32 LE": (TEXT.encode("utf-32-le"), "utf-32-le"),
+    "UTF-32 BE": (TEXT.encode("utf-32-be"), "utf-32-be"),
     "Windows-1252": (TEXT.encode("cp1252"), "cp1252"),
 }
 #: Letters of several scripts, without the signs that are line ends or no characters.
@@ -44,7 +47,11 @@ def test_encoding_is_found_out(tmp_path: Path, name: str) -> None:
 
 
 @pytest.mark.parametrize(
-    "encoding", ["utf-8", "UTF_8", "utf-8-sig", "utf-16", "utf-16-le", "cp1252", "latin-1"]
+    "encoding",
+    [
+        *("utf-8", "UTF_8", "utf-8-sig", "utf-16", "utf-16-le", "utf-16-be", "utf-32"),
+        *("utf-32-le", "utf-32-be", "cp1252", "windows-1252", "latin-1", "iso8859-15", "cp850"),
+    ],
 )
 def test_stated_encoding_is_used(tmp_path: Path, encoding: str) -> None:
     """A stated encoding reads what Python's codec of that name wrote."""
@@ -69,11 +76,17 @@ def test_letter_with_a_low_zero_byte_in_utf16(tmp_path: Path) -> None:
 
 
 @pytest.mark.parametrize("end", ["\n", "\r\n", "\r"], ids=["LF", "CRLF", "CR"])
-@pytest.mark.parametrize("encoding", ["utf-8", "utf-16"])
+@pytest.mark.parametrize("encoding", ["utf-8", "utf-16", "utf-32-be", "cp1252"])
 def test_line_ends_become_line_feeds(tmp_path: Path, end: str, encoding: str) -> None:
     """The line ends of any operating system are read alike."""
     content = TEXT.replace("\n", end).encode(encoding)
     assert text_of(tmp_path / "log.tsv", content).data.decode("utf-8") == TEXT
+
+
+def test_mixed_line_ends_are_read_alike(tmp_path: Path) -> None:
+    """A file put together on two computers has line ends of both."""
+    content = b"reader\r\nP01\nP02\r\nP03\rP04"
+    assert text_of(tmp_path / "log.tsv", content).data == b"reader\nP01\nP02\nP03\nP04"
 
 
 def test_gzip_is_read_as_it_is(tmp_path: Path) -> None:

@@ -76,7 +76,7 @@ def test_unknown_key_names_the_nearest(
             'file = "boxes.csv"\n',
             "",
             "study.toml:12: regions.file: this key is missing; expected the region "
-            "definitions (CSV or TSV), relative to the study file\n"
+            "definitions (CSV, TSV or .xlsx, its sheet after a #), relative to the study file\n"
             '    fix: add for example file = "regions.csv"',
             id="missing key",
         ),
@@ -84,7 +84,7 @@ def test_unknown_key_names_the_nearest(
             "[regions]",
             "[participants]\n[regions]",
             "study.toml:12: participants.table: this key is missing; expected the "
-            "file of facts (CSV or TSV), relative to the study file\n"
+            "file of facts (CSV, TSV or .xlsx, its sheet after a #), relative to the study file\n"
             '    fix: add for example table = "participants.csv"',
             id="missing key of a table to be",
         ),

@@ -226,7 +226,7 @@ def test_session_is_part_of_a_trial(tmp_path: Path) -> None:
         + study,
         "logs/P01.tsv": None,
         "logs/P01_a.tsv": LOG,
-        "logs/P01_b.tsv": LOG,
+        "logs/P01_b.tsv": "# in June\n" + LOG,
         "list.csv": "participant,session,trial,cue\nP01,a,1,w\nP01,a,2,x\nP01,b,1,y\nP01,b,2,z\n",
     }
     build(tmp_path, "", files)
