@@ -17,6 +17,7 @@ from etl.parsers.canonical import CanonicalLog, LogNote
 from etl.parsers.event_lines import LogLines, PatternError, SortedLines, lines_of, sort_lines
 from etl.parsers.event_rows import EventRows
 from etl.parsers.event_unfit import tell_unfit
+from etl.parsers.line_order import in_line_order
 from etl.parsers.log_rows import RowReading
 
 if TYPE_CHECKING:
@@ -70,11 +71,7 @@ class EventReader:
         CanonicalLog and LogNote, or None
             None where a problem was recorded.
         """
-        own = Findings()
-        read = self._read(path, shown, own)
-        own.items.sort(key=lambda finding: finding.line or 0)
-        findings.extend(own)
-        return None if own.failed else read
+        return in_line_order(lambda own: self._read(path, shown, own), findings)
 
     def _patterns(self) -> LinePatterns:
         """The patterns of the study, which a study of such logs must have."""

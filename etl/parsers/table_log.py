@@ -10,6 +10,7 @@ from etl.files import Cells, cells_of, header_of, read_text
 from etl.files.units import own_names
 from etl.parsers.canonical import CanonicalLog, LogNote
 from etl.parsers.header_units import check_units, own_reading
+from etl.parsers.line_order import in_line_order
 from etl.parsers.log_rows import LogRows, RowReading
 
 
@@ -53,11 +54,7 @@ class TableReader:
         CanonicalLog and LogNote, or None
             None where a problem was recorded.
         """
-        own = Findings()
-        read = self._read(path, shown, own)
-        own.items.sort(key=lambda finding: finding.line or 0)
-        findings.extend(own)
-        return None if own.failed else read
+        return in_line_order(lambda own: self._read(path, shown, own), findings)
 
     def _read(
         self, path: Path, shown: str, findings: Findings

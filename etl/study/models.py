@@ -111,9 +111,8 @@ class Trials(Table):
 
     table: FileName | None = Field(
         default=None,
-        description="The trial list (CSV, TSV or .xlsx, its sheet after a #), relative to the study "
-        "file. Without it the "
-        "facts are columns of the log.",
+        description="The trial list (CSV, TSV or .xlsx, its sheet after a #), relative to the "
+        "study file. Without it the facts are columns of the log.",
         examples=["trial_list.csv"],
     )
     keys: Names = Field(
