@@ -18,7 +18,7 @@ from etl.parsers.coordinates import degrees_to_px, tell_far_positions, to_screen
 from etl.parsers.detection import SampleRows, log_of_samples
 from etl.parsers.eyes import ChosenEye, EyeChoice
 from etl.parsers.identifiers import IDS, ids_in_name, read_ids
-from etl.parsers.time_checks import check_times, in_ms
+from etl.parsers.time_checks import DIFFERENCE_DIGITS, check_times, in_ms
 
 if TYPE_CHECKING:
     from etl.study.models import Column, Logs, Screen
@@ -366,6 +366,9 @@ class RowReading:
                 numbers[name] = in_ms(values, str(unit))
             else:
                 numbers[name] = values
+        if sound and "onset" not in numbers and {"end", "duration"} <= numbers.keys():
+            onset = numbers["end"] - numbers["duration"]
+            numbers["onset"] = np.round(onset, DIFFERENCE_DIGITS)
         return numbers if sound else None
 
 

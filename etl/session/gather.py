@@ -22,6 +22,7 @@ from etl.screening.ledger import columns_of_accounts
 from etl.screening.rules import OUTLIER
 from etl.session.kept_logs import Shelf
 from etl.session.notices import notice_similar_readers, notice_what_is_missing
+from etl.session.odd_values import notice_odd_regions, notice_odd_values
 from etl.session.plan import Plan
 from etl.session.reader import Options
 from etl.session.trial_facts import TrialFacts, trial_facts
@@ -137,6 +138,8 @@ def gather(
         trials.known[name] = Coded.of(supplied, {""}).take(text)
     good = trials.good & (trials.skipped | (text >= 0))
     levels = _levels(plan, trials, text, shown, findings)
+    notice_odd_values(plan.study, trials, text >= 0, shown, findings)
+    notice_odd_regions(plan.library, plan.study.regions.file, findings)
     notice_similar_readers(seen, shown, findings)
     unrecorded = notice_what_is_missing(plan, trials, findings) if complete else []
     if not (text >= 0).any():

@@ -195,6 +195,7 @@ class Bench:
             findings,
             outside_by_log(reader, ordered.trial, source[0], (order, self._placed(log))),
             ordered.moved,
+            ordered.gaps,
             self._unlisted(reader, ordered),
         )
 

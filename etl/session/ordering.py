@@ -38,6 +38,8 @@ class OrderedFixations:
     moved : dict of int to (int, int)
         For each log, by its place among the study's, in which rows did not stand in the order of
         their numbers: how many are elsewhere now, and the first line of these.
+    gaps : dict of int to (int, int)
+        The same for fixations before which a number is left out.
     """
 
     rows: NDArray[np.int64]
@@ -46,6 +48,7 @@ class OrderedFixations:
     repeated: NDArray[np.bool_]
     overlaps: int
     moved: dict[int, tuple[int, int]] = field(default_factory=dict)
+    gaps: dict[int, tuple[int, int]] = field(default_factory=dict)
 
 
 @dataclass(frozen=True, slots=True)
@@ -165,11 +168,21 @@ def order_fixations(
     )
     first = np.flatnonzero(begins)
     number = np.arange(count) - np.repeat(first, np.diff(np.append(first, count))) + 1
-    moved = _moved(reader, rows[rows != by_trial])
-    return OrderedFixations(rows, trial, number, aside, overlaps, moved)
+    skips = np.zeros(count, dtype=bool)
+    if numbered:
+        skips[1:] = (np.diff(log.number[rows]) > 1) & ~begins_recording[1:]
+    return OrderedFixations(
+        rows,
+        trial,
+        number,
+        aside,
+        overlaps,
+        _by_log(reader, rows[rows != by_trial]),
+        _by_log(reader, rows[skips]),
+    )
 
 
-def _moved(reader: ReaderLog, rows: NDArray[np.int64]) -> dict[int, tuple[int, int]]:
+def _by_log(reader: ReaderLog, rows: NDArray[np.int64]) -> dict[int, tuple[int, int]]:
     """For each log, how many of some rows are from it, and the first line of these."""
     files = reader.file[rows]
     lines = reader.log.source_line[rows]

@@ -81,6 +81,8 @@ class ReaderTables:
     moved : dict of int to (int, int)
         For each log, by its place among the study's, in which rows were put in the order of their
         numbers: how many, and the first line of these.
+    gaps : dict of int to (int, int)
+        The same for fixations before which a number is left out.
     unlisted : dict of str to Unlisted
         Labels that no region definition lists.
     """
@@ -94,4 +96,5 @@ class ReaderTables:
     findings: Findings = field(default_factory=Findings)
     outside: dict[int, tuple[int, int]] = field(default_factory=dict)
     moved: dict[int, tuple[int, int]] = field(default_factory=dict)
+    gaps: dict[int, tuple[int, int]] = field(default_factory=dict)
     unlisted: dict[str, Unlisted] = field(default_factory=dict)

@@ -44,6 +44,7 @@ from etl.session.totals import Totals
 from etl.session.tracing import Tracer
 from etl.session.work import LogAnswer, make_reader_work, map_tasks
 from etl.study import Study
+from etl.study.models import Logs
 from etl.tables import LEDGER, TABLES
 from etl.trials.facts import shown_path
 
@@ -212,7 +213,7 @@ def examine(
     with _collector_at_rest():
         plan, logs = make_plan(study, findings)
     count = _workers(workers, logs)
-    reader = plan.reader if plan is not None else reader_for(study.logs, study.screen)
+    reader = plan.reader if plan is not None else reader_for(_logs_alone(study), study.screen)
     # Processes of their own share nothing in memory: then everything goes to the disk.
     aside = (kept, Shelf(ROOM_BYTES if count == 1 else 0))
     answers = read_logs(logs, reader, aside, count, progress)
@@ -224,6 +225,13 @@ def examine(
     with _collector_at_rest():
         gathered = gather(plan, answers, aside, findings)
     return None if gathered is None else (plan, gathered, answers, count)
+
+
+def _logs_alone(study: Study) -> Logs:
+    """How logs are read where a table that says which eye counts could not be read."""
+    if study.logs.eye is None or study.logs.eye.column is None:
+        return study.logs
+    return study.logs.model_copy(update={"eye": None})
 
 
 def _workers(asked: int | None, logs: Iterable[tuple[Path, str]]) -> int:

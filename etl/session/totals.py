@@ -26,6 +26,14 @@ OUTSIDE_SHARE = 0.2
 #: A rule that takes more than this share of all trials or fixations is worth a warning (common
 #: practice, no source).
 TAKEN_SHARE = 0.1
+#: A rule on fixations that takes more than this share of one reader's is worth a warning that names
+#: the reader (our choice: half of them are no matter of taste).
+TAKEN_OF_READER = 0.5
+#: Numbers that are left out at more than this share of the fixations are a way of numbering, as
+#: where blinks are counted too (our choice).
+MOST_GAPS = 0.01
+#: How many logs or readers a warning lists.
+MOST_LISTED = 12
 
 
 class Totals:
@@ -45,6 +53,7 @@ class Totals:
         self.choice = Choice()
         self._outside: dict[int, tuple[int, int]] = {}
         self.moved: dict[int, Tally] = {}
+        self.gaps: dict[int, Tally] = {}
         self._unlisted: dict[str, Unlisted] = {}
 
     def add(self, tables: ReaderTables) -> None:
@@ -60,6 +69,8 @@ class Totals:
             self._outside[file] = (known[0] + own[0], known[1] + own[1])
         for file, (count, line) in tables.moved.items():
             self.moved.setdefault(file, Tally()).add(count, line)
+        for file, (count, line) in tables.gaps.items():
+            self.gaps.setdefault(file, Tally()).add(count, line)
         for label, found in tables.unlisted.items():
             if label in self._unlisted:
                 self._unlisted[label].add(found)
@@ -101,7 +112,31 @@ class Totals:
             Where errors, warnings and notes are recorded.
         """
         refuse_misplaced(self._outside, logs, findings)
+        self._notice_gaps(logs, findings)
         tell_unlisted(self._unlisted, labels, logs, study.regions.file, findings)
+
+    def _notice_gaps(self, logs: Sequence[str], findings: Findings) -> None:
+        """Warn of fixations that seem to be missing, by their numbers.
+
+        Where numbers are left out again and again, that is a way of numbering.
+        """
+        count = sum(tally.count for tally in self.gaps.values())
+        if not count or count > MOST_GAPS * self.counts["fixations read"]:
+            return
+        files = sorted(self.gaps)
+        first = self.gaps[files[0]]
+        told = [f"{logs[file]} ({self.gaps[file].count:,})" for file in files]
+        findings.warning(
+            f"numbers of fixations are left out at {count:,} place{'' if count == 1 else 's'}: "
+            "rows may be missing",
+            path=logs[files[0]],
+            line=first.first_line,
+            found=", ".join(told[:MOST_LISTED])
+            + (f" and {len(told) - MOST_LISTED:,} more logs" if len(told) > MOST_LISTED else "")
+            if len(told) > 1
+            else None,
+            expected="numbers without a gap within a trial, as elsewhere in these logs",
+        )
 
     def notice(self, study: Study, findings: Findings) -> None:
         """Record what is wrong or doubtful about the study as a whole.
@@ -155,6 +190,7 @@ class Totals:
                 fix="leave such trials out by fewest_fixations",
             )
         self._notice_rules(study, findings)
+        self._notice_readers(study, findings)
         overlaps = self.counts["overlaps taken for rounding"]
         if overlaps:
             findings.note(
@@ -180,3 +216,26 @@ class Totals:
                         found=f"{taken:,} of {read:,}",
                         fix="see in the audit page whom and which conditions it takes them from",
                     )
+
+    def _notice_readers(self, study: Study, findings: Findings) -> None:
+        """Warn of rules that take most fixations of single readers."""
+        for rule in self._rules:
+            if rule in BEFORE or key_of(rule)[1] != "fixations":
+                continue
+            hit = []
+            for reader, units in self.accounts.items():
+                own = units["fixations"]
+                read = own.read - own.by_rule["skip"]
+                if read and own.by_rule[rule] / read > TAKEN_OF_READER:
+                    hit.append(f"{reader} ({own.by_rule[rule]:,} of {read:,})")
+            if hit:
+                more = f" and {len(hit) - MOST_LISTED:,} more" if len(hit) > MOST_LISTED else ""
+                findings.warning(
+                    f"the rule {rule} takes most fixations of "
+                    + ("a reader" if len(hit) == 1 else f"{len(hit):,} readers"),
+                    path=study.shown,
+                    line=study.line_of(*key_of(rule)),
+                    where=".".join(key_of(rule)),
+                    found=", ".join(hit[:MOST_LISTED]) + more,
+                    fix="check the times and units in the logs and tables of these readers",
+                )

@@ -82,7 +82,7 @@ def trial_facts(
     facts = TrialFacts(unknown, unknown, unknown, [""] * len(trials))
     place = _Place(plan, trials, shown, findings)
     if limits.on("outside_text_time"):
-        onset = plan.study.logs.columns.onset
+        onset = plan.study.logs.columns.clock
         unit = "ms" if onset is None else str(onset.unit)
         # Converted as the onsets in the logs are, or 1.001 s would lie before 1.001 s.
         if settings.onset is not None:

@@ -60,12 +60,12 @@ def trial_is_named(study: StudyFile) -> Iterator[Problem]:
         )
 
 
-@rule("logs.columns.onset", "logs.columns.fixation")
+@rule(*(f"logs.columns.{name}" for name in ("onset", "fixation", "end", "duration")))
 def order_is_known(study: StudyFile) -> Iterator[Problem]:
     """The order of fixations is known."""
     if _undescribed(study):
         return
-    if study.logs.columns.onset is None and study.logs.columns.fixation is None:
+    if study.logs.columns.clock is None and study.logs.columns.fixation is None:
         yield Problem(
             _listed(study),
             "nothing says in which order the fixations were made",
@@ -77,7 +77,7 @@ def order_is_known(study: StudyFile) -> Iterator[Problem]:
         )
 
 
-@rule("logs.columns.duration", "logs.columns.end")
+@rule("logs.columns.duration", "logs.columns.end", "logs.columns.onset")
 def duration_is_known_once(study: StudyFile) -> Iterator[Problem]:
     """A duration is given, either by itself or by the end."""
     columns = study.logs.columns
@@ -92,27 +92,27 @@ def duration_is_known_once(study: StudyFile) -> Iterator[Problem]:
             if study.logs.kind == "events"
             else 'add duration = "…" or end = "…" with the header of the column',
         )
-    if columns.duration is not None and columns.end is not None:
+    if None not in (columns.onset, columns.duration) and columns.end is not None:
         yield Problem(
             ("logs", "columns", "end"),
             "duration and end both say how long a fixation lasted",
             found=columns.end.column,
-            expected="one of the two",
+            expected="two of onset, duration and end",
             fix="remove the one that is less exact in your logs",
         )
 
 
-@rule("logs.columns.end", "logs.columns.onset")
+@rule("logs.columns.end", "logs.columns.onset", "logs.columns.duration")
 def end_has_its_onset(study: StudyFile) -> Iterator[Problem]:
-    """An end without an onset gives no duration."""
+    """An end gives a duration with an onset, and an onset with a duration."""
     columns = study.logs.columns
-    if columns.end is not None and columns.onset is None:
+    if columns.end is not None and columns.onset is None and columns.duration is None:
         yield Problem(
             ("logs", "columns", "end"),
             "an end alone gives no duration",
             found=columns.end.column,
-            expected="onset beside it",
-            fix='add onset = "…" with the header of the column, or give duration in place of end',
+            expected="onset or duration beside it",
+            fix='add onset = "…" with the header of the column, or duration = "…"',
         )
 
 

@@ -72,12 +72,13 @@ class Columns(Table):
     )
     duration: TimeColumn | None = Field(
         default=None,
-        description="How long the fixation lasted. Either this or end.",
+        description="How long the fixation lasted. Not needed with onset and end.",
         examples=[{"column": "dur", "unit": "ms"}],
     )
     end: TimeColumn | None = Field(
         default=None,
-        description="When the fixation ended, in log time; needs onset. Either this or duration.",
+        description="When the fixation ended, in log time. With onset, in place of duration; with "
+        "duration, in place of onset.",
         examples=[{"column": "t_end", "unit": "ms"}],
     )
     x: PlaceColumn | None = Field(
@@ -103,6 +104,14 @@ class Columns(Table):
         description="Nonzero or true where a blink touches the fixation.",
         examples=["blink"],
     )
+
+    @property
+    def clock(self) -> TimeColumn | None:
+        """The column that places fixations in time: the onset, or the end where durations say it.
+
+        A log that is written as fixations end has the end and the duration of each, no onset.
+        """
+        return self.onset or (self.end if self.duration is not None else None)
 
     def present(self) -> dict[str, Column]:
         """The columns that the study names, by canonical name, in the order of this table."""

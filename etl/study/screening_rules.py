@@ -41,7 +41,10 @@ def _blinks_are_told(study: StudyFile) -> bool:
 def _needs(key: str, needed: tuple[str, ...], problem: str) -> Rule:
     """Make the rule that a rule of screening needs one of some keys."""
     of_blinks = needed == ("logs.columns.blink",)
-    instead = ("logs.kind", "logs.patterns.blink") if of_blinks else ()
+    of_onsets = needed == ("logs.columns.onset",)
+    instead: tuple[str, ...] = ("logs.kind", "logs.patterns.blink") if of_blinks else ()
+    if of_onsets:
+        instead = ("logs.columns.end", "logs.columns.duration")
     table = needed[0].rpartition(".")[0]
     holds = "header" if table == "logs.columns" else "name"
     keys = " or ".join(f'{other.rpartition(".")[2]} = "…"' for other in needed)
@@ -49,6 +52,8 @@ def _needs(key: str, needed: tuple[str, ...], problem: str) -> Rule:
     @rule(key, *needed, *instead)
     def rule_has_what_it_needs(study: StudyFile) -> Iterator[Problem]:
         if of_blinks and _blinks_are_told(study):
+            return
+        if of_onsets and study.logs.columns.clock is not None:
             return
         if _is_on(study, key) and all(_at(study, other) is None for other in needed):
             yield Problem(

@@ -242,7 +242,11 @@ def _tell_missing_row(
     near: list[str] = []
     if len(table.keys) == 1:
         (key,) = table.keys
-        near = get_close_matches(texts[key], table.columns[key].values, n=1, cutoff=0.75)
+        values = table.columns[key].values
+        bare = texts[key].lstrip("0")
+        # A spreadsheet drops the zeros before a number.
+        near = [value for value in values if value.lstrip("0") == bare]
+        near = near or get_close_matches(texts[key], values, n=1, cutoff=0.75)
     findings.error(
         f"{table.shown} has no row for this {' and '.join(table.keys)}",
         path=shown[int(seen.file[row])],

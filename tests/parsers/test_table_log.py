@@ -228,3 +228,27 @@ def test_problems_are_listed_by_line(path: Path) -> None:
     content = f"{HEADER}P01\t1\t1000\t0\t10\t20\n\t1\t1300\t200\t10\t20\nP01\t1\t\t200\t10\t20\n"
     said = refusal(path, content).splitlines()
     assert [line.split(":")[1] for line in said if line.startswith("P01.tsv:")] == ["2", "3", "4"]
+
+
+def test_end_and_duration_give_the_onset(tmp_path: Path) -> None:
+    """A log that is written as fixations end has no onset: it is the end less the duration."""
+    reader = reader_of(columns={"onset": None, "end": {"column": "over", "unit": "s"}})
+    log, _ = read(
+        tmp_path / "P01.tsv",
+        "reader\ttrial\tover\tdur\tgx\tgy\nP01\t1\t0.3\t200\t5\t5\nP01\t1\t0.7\t150.5\t5\t5\n",
+        reader,
+    )
+    assert log.onset_ms.tolist() == [100.0, 549.5]
+    assert log.duration_ms.tolist() == [200.0, 150.5]
+
+
+def test_end_that_is_missing_beside_a_duration_is_told_once(tmp_path: Path) -> None:
+    """Without an onset of its own, a fixation needs its end."""
+    reader = reader_of(columns={"onset": None, "end": "over"})
+    said = refusal(
+        tmp_path / "P01.tsv", "reader\ttrial\tover\tdur\tgx\tgy\nP01\t1\tNA\t200\t5\t5\n", reader
+    )
+    assert said.startswith(
+        'P01.tsv:2: column "over": the fixation has no end; found "NA", expected a number\n'
+    )
+    assert said.endswith("1 problem; nothing was written")

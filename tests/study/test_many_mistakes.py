@@ -86,7 +86,7 @@ study.toml:14: logs.columns.onset.unit: this is not one of the choices; found "m
 expected "ms", "s" or "us"
     fix: take one of these
 study.toml:15: logs.columns.end: duration and end both say how long a fixation lasted; found \
-"t_end", expected one of the two
+"t_end", expected two of onset, duration and end
     fix: remove the one that is less exact in your logs
 study.toml:20: logs.where.eye: this is text; found "R", expected a list in square brackets
     fix: write eye = ["R"]

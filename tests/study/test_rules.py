@@ -42,16 +42,15 @@ from tests.study.written import changed_at
         pytest.param(
             {'duration = "dur"\n': 'duration = "dur"\nend = "t_end"\n'},
             "study.toml:9: logs.columns.end: duration and end both say how long a "
-            'fixation lasted; found "t_end", expected one of the two\n'
+            'fixation lasted; found "t_end", expected two of onset, duration and end\n'
             "    fix: remove the one that is less exact in your logs",
             id="duration and end",
         ),
         pytest.param(
             {'duration = "dur"\n': 'end = "t_end"\n', 'onset = "t_start"': 'fixation = "n"'},
             "study.toml:8: logs.columns.end: an end alone gives no duration; found "
-            '"t_end", expected onset beside it\n'
-            '    fix: add onset = "…" with the header of the column, or give duration in '
-            "place of end",
+            '"t_end", expected onset or duration beside it\n'
+            '    fix: add onset = "…" with the header of the column, or duration = "…"',
             id="end without onset",
         ),
         pytest.param(

@@ -11,7 +11,7 @@ import pytest
 
 import etl
 from etl.errors import DataError, Findings
-from etl.session.plan import find_logs
+from etl.session.log_files import find_logs
 from etl.trials import FactTable
 from tests.trials.test_facts_of_trials import LOG, REGIONS, STUDY, build, facts_of
 

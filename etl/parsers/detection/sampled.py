@@ -146,6 +146,9 @@ def log_of_samples(
         return None
     _tell_bare_trials(samples, run, track.run[spans.first], note, findings)
     first = row[spans.first]
+    _tell_bare_readers(samples, first, note, findings)
+    if findings.count("error") > before:
+        return None
     x_px, y_px = _means(track.x_px, spans), _means(track.y_px, spans)
     begin = piece_bounds(run)[:-1][run[first]]
     absent = np.full(len(spans), np.nan)
@@ -276,6 +279,26 @@ def _tell_bare_trials(
             path=note.shown,
             line=int(samples.lines[row]),
             found=_trial(samples, row),
+        )
+
+
+def _tell_bare_readers(
+    samples: SampleRows, first: NDArray[np.int64], note: LogNote, findings: Findings
+) -> None:
+    """Record readers of whom no fixation is found: most often a slip in a single row."""
+    readers = samples.ids.get("participant")
+    if readers is None:
+        return
+    for code in np.setdiff1d(readers.codes, readers.codes[first]).tolist():
+        rows = np.flatnonzero(readers.codes == code)
+        findings.error(
+            "no fixation is found in the samples of a reader",
+            path=note.shown,
+            line=int(samples.lines[rows[0]]),
+            found=f"{readers.values[code]}, {len(rows):,} sample{'' if len(rows) == 1 else 's'}",
+            expected="a reader with fixations",
+            fix="correct the reader's id; if nothing was recorded, leave the rows out by "
+            "[logs.where], or remove the log",
         )
 
 
