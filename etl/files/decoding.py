@@ -10,7 +10,12 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from etl.errors import Findings
-from etl.files.text_encodings import BYTE_ORDER_MARKS, encoding_of, mixes_encodings
+from etl.files.text_encodings import (
+    BYTE_ORDER_MARKS,
+    encoding_of,
+    lines_by_encoding,
+    mixes_encodings,
+)
 
 #: Files that are no text, known by their first bytes (each signature is in the format's own
 #: standard: PNG ISO/IEC 15948, JPEG ISO/IEC 10918, GIF89a, TIFF 6.0, PDF ISO 32000, ZIP
@@ -55,7 +60,12 @@ class RawText:
 
 
 def read_text(
-    path: Path, shown: str, findings: Findings, *, encoding: str | None = None
+    path: Path,
+    shown: str,
+    findings: Findings,
+    *,
+    encoding: str | None = None,
+    tell_guess: bool = True,
 ) -> RawText | None:
     """Read a text file, plain or gzipped, in its own encoding.
 
@@ -70,7 +80,11 @@ def read_text(
     encoding : str, optional
         The encoding the study file states. Where it is absent, a byte-order mark decides, then
         the pattern of zero bytes (UTF-16, UTF-32), then whether the bytes are valid UTF-8; what
-        is left is read as Windows-1252, with a warning, unless some of it is UTF-8.
+        is left is read as Windows-1252, unless some of it is UTF-8.
+    tell_guess : bool
+        Whether it is warned of that a text was read as Windows-1252 for want of anything else. Of
+        logs it is told once for all of them, by the encoding of each (``"cp1252"`` where none is
+        stated).
 
     Returns
     -------
@@ -90,11 +104,17 @@ def read_text(
     if data is None:
         return None
     digest = hashlib.sha256(stored).hexdigest()
-    return text_of(data, shown, findings, encoding=encoding, digest=digest)
+    return text_of(data, shown, findings, encoding=encoding, digest=digest, tell_guess=tell_guess)
 
 
 def text_of(
-    data: bytes, shown: str, findings: Findings, *, encoding: str | None = None, digest: str = ""
+    data: bytes,
+    shown: str,
+    findings: Findings,
+    *,
+    encoding: str | None = None,
+    digest: str = "",
+    tell_guess: bool = True,
 ) -> RawText | None:
     """Bytes into text, by the encoding that is stated or that they suggest themselves.
 
@@ -110,6 +130,8 @@ def text_of(
         As in :func:`read_text`.
     digest : str, optional
         Digest of the file that the bytes are from.
+    tell_guess : bool
+        As in :func:`read_text`.
 
     Returns
     -------
@@ -127,6 +149,12 @@ def text_of(
     text = _decoded(data, found, shown, findings, stated=encoding is not None)
     if text is None:
         return None
+    if tell_guess and encoding is None and found == "cp1252":
+        findings.warning(
+            "the text is not UTF-8 and was read as Windows-1252",
+            path=shown,
+            fix="check the letters with accents, and save the file as UTF-8",
+        )
     return RawText(shown, text, digest, found)
 
 
@@ -270,13 +298,6 @@ def _decoded(
             fix="check the letters with accents; remove [logs] encoding to have it found out file "
             "by file",
         )
-    if encoding == "cp1252" and not stated:
-        findings.warning(
-            "the text is not UTF-8 and was read as Windows-1252",
-            path=shown,
-            fix="check the letters with accents; save the file as UTF-8, or, if it is a log, "
-            'state [logs] encoding = "cp1252"',
-        )
     return text
 
 
@@ -292,24 +313,39 @@ def _is_utf8_all_the_same(data: bytes, encoding: str) -> bool:
 
 
 def _tell_mixture(data: bytes, shown: str, findings: Findings) -> None:
-    """Record where text that is UTF-8 in part is none."""
+    """Record where text that is UTF-8 in part is none; of the two kinds, the rarer is at fault."""
     try:
         data.decode("utf-8")
     except UnicodeDecodeError as why:
-        cut = why.end == len(data) and "end of data" in why.reason
-        findings.error(
-            "the file ends in the middle of a letter"
-            if cut
-            else "the text is UTF-8 in part and in another encoding in part",
-            path=shown,
-            line=_with_plain_line_ends(data[: why.start]).count(b"\n") + 1,
-            found=f"byte {data[why.start]:#04x}",
-            expected="one encoding in the whole file",
-            fix="copy the file again from where it was recorded"
-            if cut
-            else "save every part as UTF-8 before they are put together; or, if it is a log and is "
-            "in one encoding after all, state [logs] encoding",
-        )
+        if why.end == len(data) and "end of data" in why.reason:
+            findings.error(
+                "the file ends in the middle of a letter",
+                path=shown,
+                line=_with_plain_line_ends(data[: why.start]).count(b"\n") + 1,
+                found=f"byte {data[why.start]:#04x}",
+                expected="one encoding in the whole file",
+                fix="copy the file again from where it was recorded",
+            )
+            return
+    utf8, others = lines_by_encoding(_with_plain_line_ends(data))
+    foreign = not utf8 or len(others) <= len(utf8)
+    odd, usual = (others, utf8) if foreign else (utf8, others)
+    number, byte = odd[0]
+    kind = "UTF-8" if foreign else "in another one"
+    rest = ""
+    if len(usual) == 1:
+        rest = f": line {usual[0][0]} is {kind}"
+    elif usual:
+        rest = f": {len(usual):,} lines are {kind}, the first of them line {usual[0][0]}"
+    findings.error(
+        "the text is UTF-8 in part and in another encoding in part",
+        path=shown,
+        line=number,
+        found=f"byte {byte:#04x}, which {'is no' if foreign else 'begins a letter of'} UTF-8",
+        expected=f"one encoding in the whole file{rest}",
+        fix="save every part as UTF-8 before they are put together; or, if it is a log and is in "
+        "one encoding after all, state [logs] encoding",
+    )
 
 
 def _tell_reversed(letters: str, shown: str, findings: Findings) -> None:

@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import unicodedata
 from collections.abc import Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 
 import numpy as np
@@ -26,6 +26,7 @@ from etl.files.plain import read_plain
 from etl.files.quoted import Split, split_quoted
 from etl.files.repeats import Marks, repeated_headers, tell_strange_marks, without_marks
 from etl.files.rows import Rows, tell_uneven
+from etl.files.stray_quotes import stray_marks
 from etl.files.tally import FileAccount, Tally
 from etl.files.units import own_names
 
@@ -59,6 +60,8 @@ class Cells:
         Remarks below the header.
     comments_like_rows : int
         Those of them that have as many fields as the header.
+    below_headers : tuple of int
+        The rows, from 0, that come first below the header or below one that repeats it.
     """
 
     shown: str
@@ -72,6 +75,7 @@ class Cells:
     ends_open: bool = False
     comments: int = 0
     comments_like_rows: int = 0
+    below_headers: tuple[int, ...] = (0,)
 
     def __len__(self) -> int:
         return len(self.lines)
@@ -80,6 +84,19 @@ class Cells:
         """One column as a single array of text."""
         column = self.table.column(name)
         return column.chunk(0) if column.num_chunks == 1 else column.combine_chunks()
+
+    def without(self, rows: Sequence[int], fate: str) -> Cells:
+        """The cells but for some rows below headers, counted under a fate of their own."""
+        if not rows:
+            return self
+        kept = np.ones(len(self), dtype=bool)
+        kept[list(rows)] = False
+        self.account.move("rows", fate, len(rows), int(self.lines[rows[0]]))
+        own = self.account.lines.get("rows")
+        if own is not None:
+            own.first_line = int(self.lines[kept][0])
+        table = self.table.filter(pa.array(kept))
+        return replace(self, table=table, lines=self.lines[kept], below_headers=())
 
     def texts(self, name: str) -> list[str]:
         """One column as strings, a string per row: trimmed, composed (Unicode NFC)."""
@@ -208,6 +225,8 @@ def cells_of(
         not data.endswith(b"\n"),
         len(rows.aside.remarks),
         len(rows.aside.alike),
+        # Each header that is taken out moves what is below it up by one.
+        tuple(dict.fromkeys([0, *(repeated - np.arange(len(repeated))).tolist()])),
     )
 
 
@@ -261,6 +280,14 @@ def _tell_doubts(rows: Rows, header: Header, shown: str, findings: Findings, *, 
             line=rows.mended.first_line,
             fix="check the cells, and double the quote marks inside them",
         )
+    if rows.stray.count and not wary:
+        findings.warning(
+            "a cell without quotes holds quote marks; they were taken as they stand",
+            path=shown,
+            line=rows.stray.first_line,
+            expected='a quote mark " on both sides of a cell, as others have, or in none',
+            fix="check the cell: a quote mark may be lost",
+        )
 
 
 def _quoted(
@@ -298,6 +325,7 @@ def _quoted(
     count = len(split.rows) + len(split.uneven)
     if tell_uneven(header, split.uneven, count, shown, findings):
         return None
+    split.stray = stray_marks(body, text, header, split)
     return _columns(split, text, wanted)
 
 
@@ -305,11 +333,14 @@ def _columns(split: Split, text: str, wanted: tuple[str, ...]) -> Rows:
     """Rows as columns."""
     by_column = list(zip(*split.rows, strict=True)) or [()] * len(wanted)
     height = text.count("\n") + (not text.endswith("\n") and bool(text))
-    mended = Tally(len(split.mended), split.mended[0] if split.mended else None)
+    mended, stray = (
+        Tally(len(lines), lines[0] if lines else None) for lines in (split.mended, split.stray)
+    )
     return Rows(
         pa.table([pa.array(cells, pa.string()) for cells in by_column], names=list(wanted)),
         np.asarray(split.lines, dtype=np.int32),
         height,
         split.aside,
         mended,
+        stray,
     )

@@ -4,16 +4,20 @@ from __future__ import annotations
 
 import csv
 from collections.abc import Collection, Sequence
-from difflib import get_close_matches
+from difflib import SequenceMatcher
+from itertools import zip_longest
 
 from etl.errors import Findings
 from etl.files.headers import Header
 from etl.files.numeric_cells import number_of
 from etl.files.separators import fields_in, reader_of, spelled, split_line
-from etl.files.units import own_names
+from etl.files.units import bare_name, own_names
 
-#: How much of a header a message repeats.
-_MOST_SHOWN = 200
+#: How much of a header a message repeats, in letters: see :func:`etl.errors.shown`.
+_MOST_SHOWN = 60
+#: From which likeness on (from 0 to 1, as the standard library has it) a name may be meant, and how
+#: many such names are told first for each that is missing (our choice).
+_NEAR, _MOST_NEAR = 0.6, 3
 
 
 def header_is_usable(
@@ -57,37 +61,75 @@ def header_is_usable(
         ):
             return False
     missing = [name for name in wanted if name not in own]
+    if missing:
+        _tell_missing(missing, header, (named, data), shown, findings, every=missing == wanted)
+    if missing or not wanted:
+        return not missing
+    return not _tell_rows_above(header, data, shown, findings, list(own.values()))
+
+
+def _tell_missing(
+    missing: Sequence[str],
+    header: Header,
+    given: tuple[Sequence[str], bytes],
+    shown: str,
+    findings: Findings,
+    *,
+    every: bool,
+) -> None:
+    """Record the columns that a header lacks; ``given``: the names that it has, and the text."""
+    named, data = given
+    near = {name: _near_names(name, named) for name in missing}
     listed = ", ".join(named)
-    listed = listed if len(listed) <= _MOST_SHOWN else listed[: _MOST_SHOWN - 1] + "…"
-    if len(missing) > 1 and missing == wanted:
+    if len(listed) > _MOST_SHOWN:
+        # The message will be cut: what was meant must not be among the names that are cut off.
+        ranks = zip_longest(*near.values())
+        first = [other for rank in ranks for other in rank if other is not None]
+        listed = ", ".join(dict.fromkeys([*first, *named]))
+    quoted = ", ".join(f'"{name}"' for name in missing)
+    separated = f"a header, separated by {spelled(header.separator)}, that has {quoted}"
+    if every and len(missing) > 1:
         sign = next((s for name in missing for s in _before_it(name, header, data)), None)
         findings.error(
             "the header has none of the columns that the study file names",
             path=shown,
             line=header.line,
             found=listed,
-            expected=f"a header, separated by {spelled(header.separator)}, that has "
-            + ", ".join(f'"{name}"' for name in missing),
+            expected=separated,
             fix=f"remove the {sign} before the names: it makes a comment of the line"
             if sign
             else "write the header's own names in [logs.columns], or correct the header; if the "
             "fields are separated otherwise, state [logs] delimiter",
         )
-        return False
-    for name in missing:
-        near = get_close_matches(name, named, n=1, cutoff=0.6)
-        findings.error(
-            f'there is no column "{name}"',
-            path=shown,
-            line=header.line,
-            found=listed,
-            expected=f'a header, separated by {spelled(header.separator)}, that has "{name}"',
-            fix=(f'did you mean "{near[0]}"? Write' if near else "write")
-            + " the header's own name in the study file, or correct the header",
-        )
-    if missing or not wanted:
-        return not missing
-    return not _tell_rows_above(header, data, shown, findings, list(own.values()))
+        return
+    one = len(missing) == 1
+    meant = ", ".join(
+        f'"{others[0]}"' if one else f'"{others[0]}" for "{name}"'
+        for name, others in near.items()
+        if others
+    )
+    findings.error(
+        f"there is no column {quoted}" if one else f"there are no columns {quoted}",
+        path=shown,
+        line=header.line,
+        found=listed,
+        expected=separated,
+        fix=(f"did you mean {meant}? Write" if meant else "write")
+        + f" the header's own name{'' if one else 's'} in the study file, or correct the header",
+    )
+
+
+def _near_names(name: str, named: Sequence[str]) -> list[str]:
+    """The names that are most like one, capitals and units aside; the nearest first."""
+    sought = SequenceMatcher(b=name.casefold())
+    likeness: dict[str, float] = {}
+    for other in named:
+        for form in {other.casefold(), bare_name(other).casefold()}:
+            sought.set_seq1(form)
+            if sought.real_quick_ratio() >= _NEAR and sought.quick_ratio() >= _NEAR:
+                likeness[other] = max(likeness.get(other, 0.0), sought.ratio())
+    near = [other for other, ratio in likeness.items() if ratio >= _NEAR]
+    return sorted(near, key=lambda other: -likeness[other])[:_MOST_NEAR]
 
 
 def _tell_rows_above(

@@ -57,4 +57,5 @@ def line_account(
     counted = sum(tally.count for tally in account.lines.values())
     account.line("further lines of rows", account.total - counted)
     account.repaired("quote marks that were not doubled", rows.mended.count, rows.mended.first_line)
+    account.repaired("quote marks in cells without quotes", rows.stray.count, rows.stray.first_line)
     return account

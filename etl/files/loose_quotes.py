@@ -9,6 +9,7 @@ from collections.abc import Sequence
 from etl.files.headers import Header
 from etl.files.quoted import Split, longer_cells, picker
 from etl.files.separators import BLANK, fields_in, reader_of, split_line
+from etl.files.stray_quotes import sound_row
 
 
 def split_loosely(text: str, header: Header, places: Sequence[int], *, wary: bool) -> Split | None:
@@ -39,21 +40,19 @@ def split_loosely(text: str, header: Header, places: Sequence[int], *, wary: boo
     """
     pick, width = picker(places), len(header.names)
     split = Split()
-    mark = re.escape(header.separator)
-    closing = re.compile(rf'"(?={mark}|$)')
-    field = rf'(?:"(?:[^"]|"")*"|[^"{mark}]*)'
-    sound = re.compile(rf"{field}(?:{mark}{field})*")
+    closing = re.compile(rf'"(?={re.escape(header.separator)}|$)')
+    sound = sound_row(header.separator)
     with longer_cells():
         for number, line in enumerate(text.removesuffix("\n").split("\n"), start=header.first):
             if split.aside.takes(line, number, header):
                 continue
-            cells = _strictly(line, header.separator)
+            cells = strict = _strictly(line, header.separator)
             if cells is not None and '"' in line and sound.fullmatch(line) is None:
                 # A mark in a cell without quotes is no standard either: one cell may be two.
                 cells = None
             if cells is None or len(cells) != width:
                 cells = _loosely(line, header.separator, closing)
-                split.mended.append(number)
+                (split.mended if cells != strict else split.stray).append(number)
                 if wary and any(_holds_a_row(cell, header) for cell in cells or ()):
                     return None
             if cells is None or len(cells) != width:

@@ -49,6 +49,8 @@ class Split:
         quote mark opens, and that line.
     mended : list of int
         The lines with quote marks that were not doubled.
+    stray : list of int
+        The lines with quote marks in a cell without quotes, where other cells have quotes.
     """
 
     rows: list[tuple[str, ...]] = field(default_factory=list)
@@ -58,6 +60,7 @@ class Split:
     spanning: int = 0
     swallowed: list[tuple[int, int]] = field(default_factory=list)
     mended: list[int] = field(default_factory=list)
+    stray: list[int] = field(default_factory=list)
 
 
 def picker(places: Sequence[int]) -> Callable[[Sequence[str]], tuple[str, ...]]:

@@ -65,6 +65,8 @@ class Rows:
         Those of them that are no rows.
     mended : Tally
         Rows with quote marks that were not doubled.
+    stray : Tally
+        Rows with quote marks in a cell without quotes, where other cells have quotes.
     """
 
     table: pa.Table
@@ -72,6 +74,7 @@ class Rows:
     height: int
     aside: SetAside
     mended: Tally = field(default_factory=Tally)
+    stray: Tally = field(default_factory=Tally)
 
     def without(self, places: NDArray[np.integer]) -> Rows:
         """The rows but for some."""

@@ -107,3 +107,37 @@ def mixes_encodings(data: bytes) -> bool:
     rest, letters = _LETTER.subn(b"", data)
     others = len(rest.translate(None, delete=_ASCII))
     return letters >= _LETTERS_BY_CHANCE and letters * _BYTES_A_LETTER >= others
+
+
+def lines_by_encoding(data: bytes) -> tuple[list[tuple[int, int]], list[tuple[int, int]]]:
+    r"""The lines of a text that are UTF-8, and those that are not.
+
+    Parameters
+    ----------
+    data : bytes
+        The text, its line ends line feeds.
+
+    Returns
+    -------
+    utf8 : list of (int, int)
+        Number, from 1, and first byte beyond ASCII of each line of UTF-8 that has such a byte.
+    others : list of (int, int)
+        Number of each line that is no valid UTF-8, and the first byte of it that is none.
+
+    Examples
+    --------
+    >>> lines_by_encoding(b"a\n" + "è\n".encode("utf-8") + "è".encode("cp1252"))
+    ([(2, 195)], [(3, 232)])
+    """
+    utf8: list[tuple[int, int]] = []
+    others: list[tuple[int, int]] = []
+    for number, line in enumerate(data.split(b"\n"), start=1):
+        if line.isascii():
+            continue
+        try:
+            line.decode("utf-8")
+        except UnicodeDecodeError as why:
+            others.append((number, line[why.start]))
+        else:
+            utf8.append((number, line.translate(None, delete=_ASCII)[0]))
+    return utf8, others

@@ -86,7 +86,7 @@ class EventReader:
         """Read one log; what is wrong is recorded as it is found."""
         logs, patterns = self.reading.logs, self._patterns()
         named = self.reading.named(path, shown, findings)
-        text = read_text(path, shown, findings, encoding=logs.encoding)
+        text = read_text(path, shown, findings, encoding=logs.encoding, tell_guess=False)
         if text is None or findings.failed:
             return None
         lines, every = lines_of(text.data), patterns.every()

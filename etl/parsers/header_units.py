@@ -1,4 +1,4 @@
-"""The columns of one log under its own names, and units in them that contradict the study's."""
+"""The columns of one log under its own names, and units of them that contradict the study's."""
 
 from __future__ import annotations
 
@@ -7,7 +7,8 @@ from dataclasses import replace
 from typing import TYPE_CHECKING, Final
 
 from etl.errors import Findings
-from etl.files.units import own_names, unit_in
+from etl.files import Cells
+from etl.files.units import own_names, unit_in, units_in_row
 from etl.parsers.log_rows import RowReading
 
 if TYPE_CHECKING:
@@ -17,6 +18,8 @@ if TYPE_CHECKING:
 _TIMES: Final = ("ms", "s", "us")
 _PLACES: Final = ("px", "deg")
 _KNOWN: Final = {"onset": _TIMES, "end": _TIMES, "duration": _TIMES, "x": _PLACES, "y": _PLACES}
+#: The columns that hold numbers, with a unit or without one.
+_NUMBERS: Final = (*_KNOWN, "fixation")
 
 
 def own_reading(reading: RowReading, header: tuple[str, ...]) -> RowReading:
@@ -77,37 +80,106 @@ def check_units(
         where it leaves it to the default.
     """
     own = own_names(reading.needed(), header)
+    units = {name: unit for name in own.values() if (unit := unit_in(name)) is not None}
+    _hold(reading, (own, units), "header", place, findings)
+
+
+def without_unit_rows(reading: RowReading, cells: Cells, findings: Findings) -> Cells:
+    """Set aside the rows of units below a log's header, and hold them against those of the study.
+
+    Parameters
+    ----------
+    reading : RowReading
+        The reading of all logs, with the names that the study file gives.
+    cells : Cells
+        The log. Only the first rows below its header, and below one that is repeated, can be rows
+        of units: see :func:`etl.files.units.units_in_row`.
+    findings : Findings
+        Where contradictions are recorded, as by :func:`check_units`.
+
+    Returns
+    -------
+    Cells
+        The log without these rows, which are counted as ``"row of units"``.
+    """
+    own = own_names(reading.needed(), cells.header)
+    numeric = {own[header] for header in _headers_of_numbers(reading) if header in own}
+    missing = reading.missing()
+    columns = {name: cells.table.column(name) for name in cells.table.column_names}
+    rows: list[int] = []
+    for row in cells.below_headers:
+        if rows and row <= rows[-1]:
+            continue
+        while row < len(cells):
+            texts = {name: column[row].as_py() for name, column in columns.items()}
+            units = units_in_row(texts, numeric, missing)
+            if not units:
+                break
+            _hold(reading, (own, units), "row", (cells.shown, int(cells.lines[row])), findings)
+            rows.append(row)
+            row += 1
+    return cells.without(rows, "row of units")
+
+
+def _headers_of_numbers(reading: RowReading) -> set[str]:
+    """The study's names of the columns that hold numbers, those of both eyes included."""
+    eye = reading.logs.eye
+    by_eye: Mapping[str, object] = {} if eye is None else eye.columns
+    every = [reading.columns().get(name) for name in _NUMBERS]
+    every += [getattr(each, name, None) for each in by_eye.values() for name in _NUMBERS]
+    return {column.column for column in every if column is not None}
+
+
+def _hold(
+    reading: RowReading,
+    stated: tuple[Mapping[str, str], Mapping[str, str]],
+    source: str,
+    place: tuple[str, int],
+    findings: Findings,
+) -> None:
+    """Record units that contradict the study's.
+
+    ``stated``: the log's names by those of the study, and units by the log's names; ``source``:
+    whether the header or a row names them.
+    """
+    own, units = stated
+    what = "header" if source == "header" else "row of units"
     told: set[str] = set()
     for key, name, column in _measured(reading):
-        found = unit_in(own.get(column.column, ""))
+        found = units.get(own.get(column.column, ""))
         if found is None or found == column.unit or column.column in told:
             continue
         told.add(column.column)
         where = f'column "{own[column.column]}"'
         if "unit" in column.model_fields_set:
             findings.warning(
-                "the header names another unit than the study file",
+                f"the {what} names another unit than the study file",
                 path=place[0],
                 line=place[1],
                 where=where,
                 found=found,
                 expected=f"{column.unit}, as [{key}] says",
-                fix=f"correct the unit in [{key}], unless the header is wrong",
+                fix=f"correct the unit in [{key}], unless the {source} is wrong; or, if only this "
+                "log says so, export it again",
             )
             continue
         entry = f'{name} = {{ column = "{column.column}", unit = "'
+        way = (
+            f'write {entry}{found}" }} in [{key}]; or, if only this log says so, export it again; '
+            f'or, if the {source} is wrong, state unit = "{column.unit}"'
+        )
+        other = (
+            f"name a column in {' or '.join(_KNOWN[name])}, or export the log again; or, if the "
+            f'{source} is wrong, write {entry}{column.unit}" }} in [{key}]'
+        )
         findings.error(
-            "the header names a unit, and the study file leaves it at another",
+            f"the {what} names a unit, and the study file leaves it at another",
             path=place[0],
             line=place[1],
             where=where,
             found=found,
             expected=f"{column.unit}, which {name} has where no unit is stated",
-            fix=f'write {entry}{found}" }} in [{key}]; or, if the header is wrong, '
-            f'unit = "{column.unit}"'
-            if found in _KNOWN[name]
-            else f"name a column in {' or '.join(_KNOWN[name])}; or, if the header is wrong, "
-            f'write {entry}{column.unit}" }} in [{key}]',
+            fix=way if found in _KNOWN[name] else other,
         )
 
 

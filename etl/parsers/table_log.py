@@ -9,7 +9,7 @@ from etl.errors import Findings
 from etl.files import Cells, cells_of, header_of, read_text
 from etl.files.units import own_names
 from etl.parsers.canonical import CanonicalLog, LogNote
-from etl.parsers.header_units import check_units, own_reading
+from etl.parsers.header_units import check_units, own_reading, without_unit_rows
 from etl.parsers.line_order import in_line_order
 from etl.parsers.log_rows import LogRows, RowReading
 
@@ -62,7 +62,7 @@ class TableReader:
         """Read one log; what is wrong is recorded as it is found."""
         logs = self.reading.logs
         named = self.reading.named(path, shown, findings)
-        text = read_text(path, shown, findings, encoding=logs.encoding)
+        text = read_text(path, shown, findings, encoding=logs.encoding, tell_guess=False)
         if text is None or findings.failed:
             return None
         cells = cells_of(
@@ -76,6 +76,7 @@ class TableReader:
         if cells is None:
             return None
         check_units(self.reading, cells.header, (shown, cells.header_line), findings)
+        cells = without_unit_rows(self.reading, cells, findings)
         if not len(cells):
             findings.error(
                 "the log has a header but no fixation",

@@ -6,7 +6,7 @@ from collections.abc import Collection, Sequence
 
 import numpy as np
 
-from etl.errors import Findings
+from etl.errors import Finding, Findings
 from etl.session.compared_logs import ComparedLog, Difference, compared
 from etl.session.differing_logs import cut_short, differences
 from etl.session.far_off import medians_of_others
@@ -51,6 +51,7 @@ def notice_logs(study: Study, answers: Sequence[LogAnswer], findings: Findings) 
     if study.logs.participant_from_name is not None or study.logs.kind == "bids":
         # Where the rows say who read, the trials of a copy are known as recorded twice.
         _refuse_twins(logs, findings)
+    _warn_of_guessed_encoding(study, logs, findings)
     wrong = _refuse_other_units(logs, findings)
     for about in told_of_logs(logs, wrong):
         findings.add(about.finding())
@@ -60,6 +61,30 @@ def notice_logs(study: Study, answers: Sequence[LogAnswer], findings: Findings) 
             findings.note(aside)
         notice_values_asked_for(study, [log.note for log in logs], findings)
     _notice_medians(study, [log for log in logs if log.shown not in wrong], findings)
+
+
+def _warn_of_guessed_encoding(
+    study: Study, logs: Sequence[ComparedLog], findings: Findings
+) -> None:
+    """Warn once of all logs that are no UTF-8 and whose encoding nobody states."""
+    if study.logs.encoding is not None:
+        return
+    guessed = [log.shown for log in logs if log.note.encoding == "cp1252"]
+    if not guessed:
+        return
+    every = len(guessed) == len(logs)
+    which = f"{len(guessed):,} of {len(logs):,} logs are" if len(logs) > 1 else "the log is"
+    listed = () if every or len(guessed) == 1 else tuple(guessed)
+    findings.add(
+        Finding(
+            f"{which} not UTF-8 and {'was' if len(logs) == 1 else 'were'} read as Windows-1252",
+            "warning",
+            path=guessed[0] if len(guessed) == 1 else "",
+            files=listed,
+            fix="check the letters with accents"
+            + ('; if they are right, state encoding = "cp1252" in [logs]' if every else ""),
+        )
+    )
 
 
 def _refuse_twins(logs: Sequence[ComparedLog], findings: Findings) -> None:

@@ -424,3 +424,18 @@ def test_workers_change_nothing_that_is_told(tmp_path: Path) -> None:
     """Two processes find what one finds, in the same order."""
     study = etl.load_study(make(tmp_path, changes={2: commas, 5: first_trials(3)}))
     assert etl.check(study, workers=2).lines() == etl.check(study, workers=1).lines()
+
+
+@pytest.mark.parametrize("odd", [1, 3, 12])
+def test_guessed_encoding_is_told_once(tmp_path: Path, odd: int) -> None:
+    """However many logs are no UTF-8, one warning says so; all of them need no list."""
+    study_file = make(tmp_path, 12)
+    for number in range(1, odd + 1):
+        path = tmp_path / name_of(number)
+        path.write_bytes(b"# recorded by M\xfcller\n" + path.read_bytes())
+    told = [f for f in build(study_file).findings if "Windows-1252" in f.problem]
+    assert [f.problem for f in told] == [
+        f"{odd} of 12 logs are not UTF-8 and were read as Windows-1252"
+    ]
+    assert len(told[0].files) == (3 if odd == 3 else 0)
+    assert ("in [logs]" in told[0].fix) == (odd == 12)

@@ -69,7 +69,7 @@ def test_order_in_which_the_file_system_lists_logs_changes_no_byte(
         listed.append(sorted(real(*arguments, **named), reverse=True))
         return listed[-1]
 
-    monkeypatch.setattr("etl.session.plan.glob.glob", backwards)
+    monkeypatch.setattr("etl.session.log_files.glob.glob", backwards)
     again = build(orchard.folder / "study.toml", tmp_path / "built")
     assert different(orchard.result.folder, again.folder) == []
     assert sum(map(len, listed)) == 23

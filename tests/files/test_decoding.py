@@ -110,9 +110,17 @@ def test_windows_1252_is_said(tmp_path: Path) -> None:
     read_text(tmp_path / "log.tsv", "log.tsv", findings)
     assert findings.text() == (
         "warning: log.tsv: the text is not UTF-8 and was read as Windows-1252\n"
-        "    fix: check the letters with accents; save the file as UTF-8, or, if it is a log, "
-        'state [logs] encoding = "cp1252"'
+        "    fix: check the letters with accents, and save the file as UTF-8"
     )
+
+
+def test_windows_1252_is_not_said_where_it_is_told_elsewhere(tmp_path: Path) -> None:
+    """Of logs it is told once for all; the encoding of each says that it was found out."""
+    (tmp_path / "log.tsv").write_bytes(TEXT.encode("cp1252"))
+    findings = Findings()
+    text = read_text(tmp_path / "log.tsv", "log.tsv", findings, tell_guess=False)
+    assert text is not None
+    assert (text.encoding, findings.items) == ("cp1252", [])
 
 
 @pytest.mark.parametrize("end", ["\n", "\r\n", "\r"], ids=["LF", "CRLF", "CR"])

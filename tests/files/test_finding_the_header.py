@@ -105,6 +105,32 @@ def test_missing_column_is_told_of_the_line_most_like_a_header() -> None:
     )
 
 
+def test_missing_columns_are_told_in_one_finding() -> None:
+    """What a header lacks is one mistake, with what may be meant for each name."""
+    _, findings = read("reader;Trial;durr;spare\nP01;1;200;x\n")
+    assert findings.text() == (
+        'log.csv:1: there are no columns "trial", "dur"; found "reader, Trial, durr, spare", '
+        'expected a header, separated by semicolons, that has "trial", "dur"\n'
+        '    fix: did you mean "Trial" for "trial", "durr" for "dur"? Write the header\'s own '
+        "names in the study file, or correct the header\n"
+        "1 problem; nothing was written"
+    )
+
+
+def test_names_near_to_a_missing_one_are_shown_of_a_wide_header() -> None:
+    """A message is cut; what may be meant comes before what else there is."""
+    spare = "".join(f";spare{n}" for n in range(60))
+    _, findings = read(f"reader{spare};TRAIL;dur [fast];durr [ms]\n")
+    (finding,) = findings
+    assert '; found "TRAIL, durr [ms], reader, spare0, ' in finding.text()
+
+
+def test_names_of_a_short_header_are_shown_in_their_order() -> None:
+    """Where all names fit, they stand as in the file."""
+    _, findings = read("reader;trial;spare;durr\nP01;1;x;200\n")
+    assert findings.items[0].found == "reader, trial, spare, durr"
+
+
 def test_no_needed_column_anywhere_is_told_of_the_first_line() -> None:
     """Where no line is like a header, the first one is named."""
     _, findings = read("who;what;when\nP01;1;200\n")

@@ -44,7 +44,7 @@ def test_windows_1252_is_still_read(tmp_path: Path, sentence: str) -> None:
 @pytest.mark.parametrize("first", ["utf-8", "cp1252"])
 @pytest.mark.parametrize("sentence", SENTENCES)
 def test_parts_in_two_encodings_are_refused(tmp_path: Path, sentence: str, first: str) -> None:
-    """The line of the first byte that is no UTF-8 is named."""
+    """Where there is as much of both, the first line that is no UTF-8 is named."""
     second = "cp1252" if first == "utf-8" else "utf-8"
     part = f"item\n{sentence}\n"
     text, findings = read(tmp_path / "log.tsv", part.encode(first) + part.encode(second))
@@ -59,11 +59,44 @@ def test_message_of_a_mixture(tmp_path: Path) -> None:
     content = "item\nBäume\n".encode() + "Bäume\n".encode("cp1252")
     assert read(tmp_path / "log.tsv", content)[1].text() == (
         "log.tsv:3: the text is UTF-8 in part and in another encoding in part; found "
-        '"byte 0xe4", expected one encoding in the whole file\n'
+        '"byte 0xe4, which is no UTF-8", expected one encoding in the whole file: line 2 is UTF-8\n'
         "    fix: save every part as UTF-8 before they are put together; or, if it is a log and is "
         "in one encoding after all, state [logs] encoding\n"
         "1 problem; nothing was written"
     )
+
+
+@pytest.mark.parametrize(
+    ("usual", "odd", "found", "kind"),
+    [
+        ("utf-8", "cp1252", "byte 0xe4, which is no UTF-8", "UTF-8"),
+        ("cp1252", "utf-8", "byte 0xc3, which begins a letter of UTF-8", "in another one"),
+    ],
+    ids=["one of Windows-1252", "one of UTF-8"],
+)
+@pytest.mark.parametrize("end", ["\n", "\r\n", "\r"], ids=["LF", "CRLF", "CR"])
+def test_line_in_the_rarer_encoding_is_named(
+    tmp_path: Path, usual: str, odd: str, found: str, kind: str, end: str
+) -> None:
+    """Of many lines in one encoding and one in another, the one is at fault."""
+    lines = ["item", *["Bäume"] * 80]
+    content = [(line + end).encode(odd if at == 59 else usual) for at, line in enumerate(lines)]
+    text, findings = read(tmp_path / "log.tsv", b"".join(content))
+    assert text is None
+    (finding,) = findings
+    assert (finding.line, finding.found) == (60, found)
+    assert finding.expected == (
+        f"one encoding in the whole file: 79 lines are {kind}, the first of them line 2"
+    )
+
+
+def test_two_encodings_in_one_line(tmp_path: Path) -> None:
+    """Where no line is sound UTF-8, there is nothing to compare with."""
+    content = b"item\n" + "Bäume".encode() + b" " + "Bäume\n".encode("cp1252")
+    _, findings = read(tmp_path / "log.tsv", content)
+    (finding,) = findings
+    assert (finding.line, finding.found) == (2, "byte 0xe4, which is no UTF-8")
+    assert finding.expected == "one encoding in the whole file"
 
 
 @pytest.mark.parametrize(

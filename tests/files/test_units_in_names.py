@@ -4,7 +4,7 @@ import pytest
 
 from etl.errors import Findings
 from etl.files import RawText, cells_of
-from etl.files.units import bare_name, own_names, unit_in
+from etl.files.units import bare_name, own_names, unit_in, units_in_row
 
 
 @pytest.mark.parametrize(
@@ -66,3 +66,55 @@ def test_column_is_read_without_its_unit() -> None:
     assert cells is not None, findings.text()
     assert cells.table.column_names == ["reader", "dur [ms]"]
     assert cells.column("dur [ms]").to_pylist() == ["200"]
+
+
+NUMERIC = ("start", "number", "gx")
+
+
+@pytest.mark.parametrize(
+    ("cells", "units"),
+    [
+        (("ms", "", "px"), {"start": "ms", "gx": "px"}),
+        (("[ms]", "-", "(Pixels)"), {"start": "ms", "gx": "px"}),
+        (("[ µs ]", "[]", "[-]"), {"start": "us"}),
+        ((" sec ", "NA", "°"), {"start": "s", "gx": "deg"}),
+        (("", "", "mm"), {"gx": "mm"}),
+        (("ms", "1", "px"), {}),
+        (("ms", "first", "px"), {}),
+        (("ms", "", "furlong"), {}),
+        (("ms", "", "1,5"), {}),
+        (("[ms", "", "px"), {}),
+        (("", "", ""), {}),
+        (("NA", "-", ""), {}),
+    ],
+    ids=[
+        "plain",
+        "in brackets",
+        "microseconds",
+        "missing",
+        "one only",
+        "a number",
+        "another word",
+        "no known unit",
+        "a comma",
+        "half a bracket",
+        "empty",
+        "nothing",
+    ],
+)
+def test_row_of_units(cells: tuple[str, str, str], units: dict[str, str]) -> None:
+    """Every column of numbers has a unit or nothing, and one at least has a unit."""
+    row = dict(zip(NUMERIC, cells, strict=True))
+    assert units_in_row({"reader": "text", **row}, NUMERIC, {"", "NA"}) == units
+
+
+@pytest.mark.parametrize(("cell", "is_row"), [("7", False), ("P07", True), ("-9", True)])
+def test_number_anywhere_makes_it_no_row_of_units(cell: str, is_row: bool) -> None:
+    """A trial with a number is one whose fixation is damaged, if its numbers are none."""
+    row = {"trial": cell, "start": "ms"}
+    assert bool(units_in_row(row, ["start"], {"", "-9"})) is is_row
+
+
+def test_units_of_columns_without_numbers_are_words() -> None:
+    """A column of words may hold the word for a unit."""
+    assert units_in_row({"word": "s", "start": ""}, ["start"]) == {}

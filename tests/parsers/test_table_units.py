@@ -39,7 +39,8 @@ def test_unit_that_the_study_leaves_to_the_default(path: Path, name: str) -> Non
         f'P01.tsv:1: column "{name}": the header names a unit, and the study file leaves it at '
         'another; found "s", expected ms, which duration has where no unit is stated\n'
         f'    fix: write duration = {{ column = "{name}", unit = "s" }} in [logs.columns]; or, if '
-        'the header is wrong, unit = "ms"\n'
+        "only this log says so, export it again; or, if the header is wrong, state "
+        'unit = "ms"\n'
         "1 problem; nothing was written"
     )
 
@@ -51,7 +52,8 @@ def test_unit_that_the_study_states_otherwise(path: Path) -> None:
         (
             'warning: P01.tsv:1: column "dur [s]": the header names another unit than the study '
             'file; found "s", expected ms, as [logs.columns] says\n'
-            "    fix: correct the unit in [logs.columns], unless the header is wrong"
+            "    fix: correct the unit in [logs.columns], unless the header is wrong; or, if only "
+            "this log says so, export it again"
         )
     ]
 
@@ -87,7 +89,8 @@ def test_unit_that_the_study_could_not_state(path: Path, unit: str) -> None:
     assert said == (
         f'P01.tsv:1: column "gx [{unit}]": the header names a unit, and the study file leaves it '
         f'at another; found "{unit}", expected px, which x has where no unit is stated\n'
-        "    fix: name a column in px or deg; or, if the header is wrong, write "
+        "    fix: name a column in px or deg, or export the log again; or, if the header is "
+        "wrong, write "
         'x = { column = "gx", unit = "px" } in [logs.columns]\n'
         "1 problem; nothing was written"
     )
