@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field, replace
 from functools import cached_property
 
 import numpy as np
@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 
 from etl.drafting.vocabulary import unit_in
 from etl.files import Cells, Coded
+from etl.files.units import units_in_row
 
 Floats = NDArray[np.float64]
 
@@ -60,6 +61,10 @@ class Pooled:
         Which log each row is from.
     decimals : tuple of str
         The decimal sign of each log; empty where no number has decimals.
+    units : dict of str to str
+        The units that a row below the header names, by column.
+    unit_rows : int
+        How many logs have such a row, which is none of the rows.
     """
 
     names: tuple[str, ...]
@@ -67,21 +72,29 @@ class Pooled:
     cells: pa.Table
     file: NDArray[np.int32]
     decimals: tuple[str, ...]
+    units: dict[str, str] = field(default_factory=dict)
+    unit_rows: int = 0
 
     @classmethod
     def of(cls, logs: Sequence[tuple[str, Cells]]) -> Pooled:
         """Pool the rows of logs, given their names and cells."""
         headers = tuple(name for name in logs[0][1].header if name)
         tables, decimals = [], []
+        units: dict[str, str] = {}
+        unit_rows = 0
         for _, cells in logs:
             columns = [pc.utf8_trim_whitespace(cells.column(name)) for name in headers]
             table = pa.table(columns, names=list(headers))
+            own = _units_below_header(table)
+            if own:
+                units, unit_rows, table = {**own, **units}, unit_rows + 1, table.slice(1)
             tables.append(table)
             decimals.append(_decimal_in(table))
         counts = [len(table) for table in tables]
         file = np.repeat(np.arange(len(logs), dtype=np.int32), counts)
         pooled = pa.concat_tables(tables).combine_chunks()
-        return cls(tuple(name for name, _ in logs), headers, pooled, file, tuple(decimals))
+        names = tuple(name for name, _ in logs)
+        return cls(names, headers, pooled, file, tuple(decimals), units, unit_rows)
 
     def __len__(self) -> int:
         return len(self.file)
@@ -96,13 +109,14 @@ class Pooled:
         """All columns by header."""
         commas = np.array([sign == "," for sign in self.decimals])[self.file]
         return {
-            header: PooledColumn.of(header, self.texts(header), commas) for header in self.headers
+            header: PooledColumn.of(header, self.texts(header), commas, self.units.get(header, ""))
+            for header in self.headers
         }
 
     def only(self, rows: NDArray[np.bool_]) -> Pooled:
         """Some of the rows."""
         kept = self.cells.filter(pa.array(rows)).combine_chunks()
-        return Pooled(self.names, self.headers, kept, self.file[rows], self.decimals)
+        return replace(self, cells=kept, file=self.file[rows])
 
 
 @dataclass(frozen=True)
@@ -117,14 +131,19 @@ class PooledColumn:
         Its cells; none is missing.
     numbers : (n,) float64 array
         NaN where a cell is no number.
+    below : str
+        The unit that stands below its header; empty where none does.
     """
 
     header: str
     coded: Coded
     numbers: Floats
+    below: str = ""
 
     @classmethod
-    def of(cls, header: str, cells: pa.Array, commas: NDArray[np.bool_]) -> PooledColumn:
+    def of(
+        cls, header: str, cells: pa.Array, commas: NDArray[np.bool_], below: str = ""
+    ) -> PooledColumn:
         """Read the cells of a column, in some rows of which the comma is the decimal sign."""
         pointed = cells
         if commas.any():
@@ -138,7 +157,7 @@ class PooledColumn:
             kept = pc.replace_substring_regex(kept, r"^\+", "")
             numbers = pc.cast(kept, pa.float64()).to_numpy(zero_copy_only=False)
             numbers = np.where(np.isfinite(numbers), numbers, np.nan)
-        return cls(header, Coded.of(cells, ()), numbers)
+        return cls(header, Coded.of(cells, ()), numbers, below)
 
     @cached_property
     def is_number(self) -> NDArray[np.bool_]:
@@ -183,8 +202,8 @@ class PooledColumn:
 
     @property
     def unit(self) -> str | None:
-        """The unit that its header names."""
-        return unit_in(self.header)
+        """The unit that its header names, or that stands below it."""
+        return unit_in(self.header) or self.below or None
 
     def share(self, q: float) -> float:
         """A quantile of its numbers; NaN where there are none."""
@@ -194,6 +213,23 @@ class PooledColumn:
     def median(self) -> float:
         """The median of its numbers."""
         return self.share(0.5)
+
+
+def _units_below_header(table: pa.Table) -> dict[str, str]:
+    """The units that the first row names, where it is a row of units above rows of numbers."""
+    if len(table) < 2:
+        return {}
+    rows = table.slice(1)
+    numeric = []
+    for name in table.column_names:
+        cells = rows.column(name)
+        numbers = pc.or_(
+            pc.match_substring_regex(cells, _NUMBER), pc.match_substring_regex(cells, _WITH_COMMA)
+        )
+        if (pc.sum(numbers).as_py() or 0) > MOSTLY * len(rows):
+            numeric.append(name)
+    first = {name: str(table.column(name)[0].as_py()) for name in table.column_names}
+    return units_in_row(first, numeric)
 
 
 def _decimal_in(table: pa.Table) -> str:

@@ -89,7 +89,7 @@ def of_bids(paths: Sequence[Path], target: Path | None, findings: Findings) -> M
     write_regions(out, found, None)
     write_rest(out)
     eye = next(iter(found.eye_values), "")
-    return Made(out, recordings[0], recordings[0].as_posix(), len(recordings), eye)
+    return Made(out, tuple(recordings), eye)
 
 
 def _relative(path: Path, target: Path | None) -> str:

@@ -8,14 +8,18 @@ from pathlib import Path
 import numpy as np
 
 from etl.drafting.beginning import begun, write_names
-from etl.drafting.event_roles import EventRoles, Lines, find_fixations
-from etl.drafting.event_shapes import has_decimal_commas, shapes_of
+from etl.drafting.event_clock import settle_clock
+from etl.drafting.event_clusters import shapes_of
+from etl.drafting.event_rest import find_the_rest
+from etl.drafting.event_roles import EventRoles, Lines, find_fixations, understand_within_trials
 from etl.drafting.event_text import write_events
+from etl.drafting.event_tokens import has_decimal_commas
+from etl.drafting.event_trials import find_trials
 from etl.drafting.heads import Head
 from etl.drafting.made import Made
 from etl.drafting.meanings import counted
 from etl.drafting.place_text import write_regions, write_screen
-from etl.drafting.readers import pattern_of
+from etl.drafting.readers import factors_among, pattern_of
 from etl.drafting.table_text import write_facts, write_rest
 
 #: How many lines of all logs together are looked at, and of each at least: seconds, our choice.
@@ -45,8 +49,13 @@ def event_roles(heads: Sequence[Head]) -> tuple[EventRoles, bool]:
         lines += own
         file += [number] * len(own)
     names = tuple(head.path.name for head in heads)
-    shapes = shapes_of(lines)
-    roles = find_fixations(Lines(names, np.array(file, dtype=np.int32), shapes))
+    looked_at = Lines(names, np.array(file, dtype=np.int32), shapes_of(lines, file))
+    roles = find_fixations(looked_at)
+    if roles.fixation is not None:
+        find_trials(looked_at, roles)
+        understand_within_trials(looked_at, roles)
+        settle_clock(roles)
+        find_the_rest(looked_at, roles)
     return roles, has_decimal_commas(lines[:2000])
 
 
@@ -76,9 +85,8 @@ def of_events(
     out = begun([head.path for head in heads], target)
     told = f"lines of several kinds; those of fixations are {counted(len(roles.fixation), 'line')}"
     out.guess("kind", "events", told)
-    said = {name for *_, name in [*roles.facts, *roles.lasting]}
-    known = {*said, *(["trial"] if roles.trial is not None else [])}
-    known |= {"item"} if roles.item is not None else set()
+    said = roles.names()
+    known = {name for name in ("participant", "session", "trial", "item") if name in said}
     names = None
     if "participant" not in said:
         names = pattern_of([head.path.name for head in heads], known)
@@ -89,13 +97,15 @@ def of_events(
     write_names(out, names, heads[0].path.name)
     write_events(out, heads, roles, commas=commas)
     found.facts = {
-        name: tuple(dict.fromkeys(shape.cells[place]))
-        for shape, place, name in [*roles.facts, *roles.lasting]
-        if name not in ("participant", "session", "item")
+        name: tuple(dict.fromkeys(telling.shape.cells[place]))
+        for telling in roles.tellings()
+        for place, name in telling.names.items()
+        if name not in ("participant", "session", "trial", "item")
     }
-    write_facts(out, found, item_is_known="item" in known)
+    write_facts(out, found, item_is_known="item" in known or "item" in roles.questions)
     write_screen(out, found, roles.understood.extent)
     write_regions(out, found, roles.understood.extent)
     write_rest(out)
     eye = next(iter(found.eyes), "") or next(iter(found.eye_values), "")
-    return Made(out, heads[0].path, heads[0].shown, len(heads), eye)
+    factors = tuple(factors_among(found.facts))
+    return Made(out, tuple(head.path for head in heads), eye, factors)

@@ -10,6 +10,7 @@ from etl.drafting.columns import Pooled
 from etl.drafting.made import Made
 from etl.drafting.meanings import counted, shortened
 from etl.drafting.place_text import write_regions, write_screen
+from etl.drafting.readers import factors_among
 from etl.drafting.table_heads import TableHead, tell_no_log
 from etl.drafting.table_text import (
     write_columns,
@@ -60,7 +61,7 @@ def of_tables(
     strange = _lacking(others, understood, implied, notes)
     tables = [table for table in tables if table not in strange]
     out = begun([one.head.path for one in tables], target)
-    rows = sum(len(one.cells) for one in tables)
+    rows = sum(len(one.cells) for one in tables) - pooled.unit_rows
     what = "a sample of gaze" if found.samples else "a fixation"
     told = (
         f"{counted(rows, 'row')} of {counted(len(pooled.headers), 'column')} below a header, with "
@@ -71,12 +72,15 @@ def of_tables(
     write_form(out, tables, pooled.decimals, found)
     write_columns(out, found)
     by_name = names is not None and "item" in names.said
-    write_facts(out, found, item_is_known="item" in found.meanings or by_name)
+    known = {"item"} & (found.meanings.keys() | found.questions.keys())
+    write_facts(out, found, item_is_known=bool(known) or by_name)
     write_screen(out, found, understood.extent)
     write_regions(out, found, understood.extent)
     write_rest(out)
     eye = next(iter(found.eyes), "") or next(iter(found.eye_values), "")
-    return Made(out, usual[0].head.path, usual[0].head.shown, len(tables), eye)
+    others = [one for one in tables if one is not usual[0]]
+    logs = tuple(one.head.path for one in (usual[0], *others))
+    return Made(out, logs, eye, tuple(factors_among(found.facts)))
 
 
 def _by_header(tables: Sequence[TableHead]) -> tuple[list[TableHead], list[TableHead]]:

@@ -16,7 +16,7 @@ from etl.drafting.found_logs import RECORDING, find_named
 from etl.drafting.heads import Head, read_head, share_of_each
 from etl.drafting.made import Made
 from etl.drafting.meanings import counted
-from etl.drafting.table_heads import as_table, how_even
+from etl.drafting.table_heads import as_table, how_even, taken_for_table
 from etl.drafting.toml_text import Question
 from etl.errors import DataError, Finding, Findings
 
@@ -44,7 +44,9 @@ class Draft:
     logs : int
         How many logs were looked at.
     first_trial : str
-        The first trial as it is understood, as a table; empty where too much is open.
+        The first trial as it is understood, as a table, with one from the middle where the first
+        looks like practice, and how many readers and trials there are; empty where too much is
+        open.
     findings : Findings
         Warnings: logs that differ from the rest, or do not read as the draft says.
     path : Path or None
@@ -135,8 +137,9 @@ def draft(
     notes = Findings()
     made = _made(paths, implied, target, notes)
     text = made.out.text()
-    shown = first_trial(text, made.log, made.shown, made.eye, notes)
-    drafted = Draft(text, tuple(made.out.questions), made.out.guesses, made.logs, shown, notes)
+    shown = first_trial(text, made, notes)
+    asked, guesses = tuple(made.out.questions), made.out.guesses
+    drafted = Draft(text, asked, guesses, len(made.logs), shown, notes)
     if target is None:
         return drafted
     _write(target, text)
@@ -192,7 +195,7 @@ def _of_text(
         lines = sum(len(head.lines()) for head in heads)
         uneven = sum(share >= _EVEN for share in even) < len(even) / 2
         by_lines = uneven and roles.fixation and len(roles.fixation) < _FIXATIONS * lines
-        if roles.fixation is not None and (roles.start or by_lines):
+        if roles.fixation is not None and (roles.starts or by_lines):
             return of_events(heads, roles, target, commas=commas)
     tables = []
     for head in heads:
@@ -200,7 +203,9 @@ def _of_text(
         table = as_table(head, own)
         if table is not None:
             tables.append(table)
-        elif head.path in implied:
+            continue
+        own = taken_for_table(head, own)
+        if head.path in implied:
             left_out += own.of("error")
         else:
             findings.extend(own)

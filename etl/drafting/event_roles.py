@@ -1,43 +1,56 @@
-"""What the lines of a log of events tell: which is a fixation, where trials start and end."""
+"""What the lines of a log of events tell: which of them are fixations."""
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
 import pyarrow as pa
 from numpy.typing import NDArray
 
-from etl.drafting.columns import Pooled, share_of
+from etl.drafting.columns import Pooled
 from etl.drafting.event_shapes import Shape
 from etl.drafting.meanings import Understanding, counted
 from etl.drafting.structure import side_of
 from etl.drafting.tables import UnderstoodTables, understand
-from etl.drafting.vocabulary import sounds_like, word_set, words_of
+from etl.drafting.vocabulary import word_set, words_of
 
-_START = word_set(
-    """
-    start starts started begin begins beginn beginnt anfang go onset debut inicio inizio 开始
-    """
-)
-_END = word_set(
-    """
-    end ends ended stop stops stopped over done finish finished ende endet schluss fin fine
-    fim 结束
-    """
-)
-_TRIAL = ("trial", "durchgang", "essai", "ensayo", "prova", "试次")
 _FIXATION = ("fix", "blick", "gaze", "注视")
 _SACCADE = ("sac", "sak")
 _NO_FIXATION = ("blink", "lid", "blinz", "sample", "pupil")
-_BLINK = ("blink", "lid", "blinz", "clign", "parpade", "pisca", "眨")
-#: Names that only the line of a fixation can give.
-_OF_FIXATIONS = frozenset(("onset", "fixation", "duration", "end", "x", "y", "label", "blink"))
+#: Words before two numbers that are a position (common practice, no source).
+_POSITION = word_set(
+    "pos position at xy loc location gaze place punkt ort bei point coord coords lieu en em a in"
+)
 #: Fixation lines are looked for among so many shapes, the most frequent ones.
 _LOOKED_AT = 12
 _LEAST_FIXATIONS = 5
-_NEARLY_ALL = 0.9
+#: A header that no log has: a place among trials, not a name.
+_TRIAL_HEADER = "trial\0"
+
+
+@dataclass(slots=True)
+class Telling:
+    """Lines that tell of a trial.
+
+    Attributes
+    ----------
+    shape : Shape
+        The lines.
+    names : dict of int to str
+        What the tokens that tell something are called.
+    wide : dict of int to int
+        For those that only together with a word before them tell trials apart, its place.
+    """
+
+    shape: Shape
+    names: dict[int, str] = field(default_factory=dict)
+    wide: dict[int, int] = field(default_factory=dict)
+
+    def place(self, name: str) -> int | None:
+        """The token of a name; None where there is none."""
+        return next((place for place, own in self.names.items() if own == name), None)
 
 
 @dataclass(slots=True)
@@ -48,33 +61,59 @@ class EventRoles:
     ----------
     fixation : Shape or None
         Lines that tell of fixations.
+    more_fixations : list of Shape
+        Others that do so in the same words.
     understood : UnderstoodTables or None
         What their numbers and words mean.
     groups : dict of int to str
         The headers under which the tokens of a fixation line were looked at, by place.
-    start, end : Shape or None
+    starts, ends : list of Telling
         Lines with which trials start and end.
-    trial, item : int or None
-        Which tokens of the starting line name the trial and the text.
     blinks : list of Shape
         Lines that tell of blinks.
-    facts, lasting : list of tuple of Shape, int and str
-        Lines that tell something of a trial, or of all that follow: the token and its name.
-    ignored : list of Shape
+    facts, lasting : list of Telling
+        Lines that tell something of a trial, or of all that follow.
+    others : list of Shape
         All others.
+    questions : dict of str to str
+        What is asked of lines that start trials, by canonical name.
     """
 
     fixation: Shape | None = None
+    more_fixations: list[Shape] = field(default_factory=list)
     understood: UnderstoodTables | None = None
     groups: dict[int, str] = field(default_factory=dict)
-    start: Shape | None = None
-    end: Shape | None = None
-    trial: int | None = None
-    item: int | None = None
+    starts: list[Telling] = field(default_factory=list)
+    ends: list[Telling] = field(default_factory=list)
     blinks: list[Shape] = field(default_factory=list)
-    facts: list[tuple[Shape, int, str]] = field(default_factory=list)
-    lasting: list[tuple[Shape, int, str]] = field(default_factory=list)
-    ignored: list[Shape] = field(default_factory=list)
+    facts: list[Telling] = field(default_factory=list)
+    lasting: list[Telling] = field(default_factory=list)
+    others: list[Shape] = field(default_factory=list)
+    questions: dict[str, str] = field(default_factory=dict)
+
+    def fixation_lines(self) -> NDArray[np.int64]:
+        """Where all lines of fixations stand, ascending."""
+        own = [] if self.fixation is None else [self.fixation, *self.more_fixations]
+        return lines_of(own)
+
+    def tellings(self) -> list[Telling]:
+        """All lines that tell of trials."""
+        return [*self.starts, *self.ends, *self.facts, *self.lasting]
+
+    def used(self) -> list[Shape]:
+        """The shapes of lines that tell something."""
+        own = [] if self.fixation is None else [self.fixation]
+        told = [telling.shape for telling in self.tellings()]
+        return [*own, *self.more_fixations, *told, *self.blinks]
+
+    def names(self) -> set[str]:
+        """What lines tell of trials, by the names of groups."""
+        return {name for telling in self.tellings() for name in telling.names.values()}
+
+
+def lines_of(shapes: Sequence[Shape]) -> NDArray[np.int64]:
+    """Where the lines of shapes stand, ascending."""
+    return np.sort(np.array([line for shape in shapes for line in shape.lines], dtype=np.int64))
 
 
 @dataclass(frozen=True)
@@ -95,9 +134,13 @@ class Lines:
     file: NDArray[np.int32]
     shapes: list[Shape]
 
+    def file_of(self, shape: Shape) -> NDArray[np.int32]:
+        """Which log each line of a shape is from."""
+        return np.asarray(self.file[np.asarray(shape.lines, dtype=np.int64)])
+
 
 def find_fixations(lines: Lines) -> EventRoles:
-    """Find the lines that tell of fixations, and from them where trials start and end.
+    """Find the lines that tell of fixations.
 
     Parameters
     ----------
@@ -112,8 +155,7 @@ def find_fixations(lines: Lines) -> EventRoles:
     roles = EventRoles()
     best_score = 0.0
     for shape in [s for s in lines.shapes if len(s) >= _LEAST_FIXATIONS][:_LOOKED_AT]:
-        numbers = [p for p in shape.variables() if shape.tokens[p].kind == "number"]
-        if not numbers or _has_word(shape, _SACCADE) or _is_about(shape, _NO_FIXATION):
+        if not shape.numbers() or has_word(shape, _SACCADE) or is_about(shape, _NO_FIXATION):
             continue
         groups = _headers(shape)
         understood = understand(_as_rows(lines, shape, groups))
@@ -122,48 +164,108 @@ def find_fixations(lines: Lines) -> EventRoles:
             best_score = score
             roles.fixation, roles.groups, roles.understood = shape, groups, understood
     if roles.fixation is not None:
-        _find_trials(lines, roles)
-        _understand_within_trials(lines, roles)
-        _find_the_rest(lines, roles)
+        needed = max(roles.groups, default=0)
+        roles.more_fixations = [
+            shape
+            for shape in lines.shapes
+            if shape is not roles.fixation
+            and shape.is_like(roles.fixation)
+            and len(shape.tokens) > needed
+            and all(shape.kind(place) == roles.fixation.kind(place) for place in roles.groups)
+        ]
     return roles
+
+
+def understand_within_trials(lines: Lines, roles: EventRoles) -> None:
+    """Look at the fixations again, now that it is known which belong to one trial.
+
+    Parameters
+    ----------
+    lines : Lines
+        The lines.
+    roles : EventRoles
+        What they tell; how fixations are understood is replaced.
+    """
+    shape = roles.fixation
+    if shape is None or not roles.starts:
+        return
+    starts = lines_of([telling.shape for telling in roles.starts])
+    trial = np.searchsorted(starts, np.asarray(shape.lines)).astype(np.int64)
+    again = understand(_as_rows(lines, shape, roles.groups, trial))
+    if not again.found.samples:
+        roles.understood = again
 
 
 def _fixation_like(found: Understanding, shape: Shape) -> float:
     """How much lines look as if they told of fixations."""
     if found.samples:
         return 0.0  # fixations are not searched for in lines
-    timed = "duration" in found.meanings or "end" in found.meanings
+    timed = "duration" in found.meanings or {"onset", "end"} <= found.meanings.keys()
     placed = "x" in found.meanings or "label" in found.meanings or bool(found.eyes)
-    if not timed or not ("onset" in found.meanings or _has_word(shape, _FIXATION)):
+    clock = {"onset", "end"} & found.meanings.keys()
+    if not timed or not (clock or has_word(shape, _FIXATION)):
         return 0.0
-    return 1.0 + 1.0 * placed + 1.0 * _has_word(shape, _FIXATION)
+    return 1.0 + 1.0 * placed + 1.0 * has_word(shape, _FIXATION)
 
 
-def _has_word(shape: Shape, beginnings: Sequence[str]) -> bool:
+def has_word(shape: Shape, beginnings: Sequence[str]) -> bool:
     """Whether a word of a line begins in a certain way."""
     words = [word for text in shape.words() for word in words_of(text)]
     return any(word.startswith(tuple(beginnings)) for word in words)
 
 
-def _is_about(shape: Shape, beginnings: Sequence[str]) -> bool:
+def is_about(shape: Shape, beginnings: Sequence[str]) -> bool:
     """Whether the first word of a line begins in a certain way; others may be names of values."""
-    words = [word for text in shape.words()[:1] for word in words_of(text)]
+    place = shape.first_word()
+    if place is None:
+        return False
+    first = [shape.tokens[place].text]
+    if shape.sign_beside(place, 1) in ("=", ":"):
+        # What it is about is the value of its first word, as in event=blink.
+        after = (t for t in shape.tokens[place + 1 :] if t.kind not in ("blank", "sign"))
+        first += [token.text for token in [next(after, None)] if token is not None]
+    words = [word for text in first for word in words_of(text)]
     return any(word.startswith(tuple(beginnings)) for word in words)
 
 
 def _headers(shape: Shape) -> dict[int, str]:
-    """A name for each token that changes: the word before it, made unique."""
+    """A name for each token that changes: the word before it, made unique.
+
+    The time that a line begins with comes last: of two times that say the same, the other is meant.
+    """
     names: dict[int, str] = {}
-    for place in shape.variables():
-        if shape.tokens[place].kind != "number" and all(map(side_of, set(shape.cells[place]))):
-            name = "eye"
-        else:
-            name = shape.word_before(place) or "value"
+    first = shape.first_word() or 0
+    places = sorted(shape.variables(), key=lambda place: place < first)
+    pairs = _pairs(shape)
+    for place in places:
+        sides = shape.kind(place) != "number" and all(map(side_of, set(shape.cells[place])))
+        glued = shape.tokens[place - 1] if place else None
+        letters = glued.text if glued is not None and glued.kind == "sign" else ""
+        own = "eye" if sides else pairs.get(place) or shape.word_before(place)
+        own = letters if letters.isalpha() and shape.kind(place) == "number" else own
+        name = own or ("time" if place < first else "value")
         number, taken = 2, set(names.values())
         unique = name
         while unique in taken:
             unique, number = f"{name} {number}", number + 1
         names[place] = unique
+    return names
+
+
+def _pairs(shape: Shape) -> Mapping[int, str]:
+    """Names for two numbers, and no third, that follow a word for positions: x and y."""
+    names: dict[int, str] = {}
+    run: list[int] = []
+    word = ""
+    for place, token in [*enumerate(shape.tokens), (len(shape.tokens), None)]:
+        if token is not None and token.kind in ("blank", "sign"):
+            continue
+        if token is not None and token.kind == "number":
+            run.append(place)
+            continue
+        if len(run) == 2 and set(words_of(word)) & _POSITION:
+            names |= {run[0]: f"{word} x", run[1]: f"{word} y"}
+        run, word = [], "" if token is None else token.text
     return names
 
 
@@ -175,196 +277,12 @@ def _as_rows(
     if trial is not None:
         own = {_TRIAL_HEADER: [str(number) for number in trial.tolist()], **own}
     table = pa.table({name: pa.array(cells, pa.string()) for name, cells in own.items()})
-    file = lines.file[np.asarray(shape.lines)]
-    comma = any(
-        "," in c for p in headers if shape.tokens[p].kind == "number" for c in shape.cells[p]
-    )
+    file = lines.file_of(shape)
+    comma = any("," in c for p in headers if shape.kind(p) == "number" for c in shape.cells[p])
     present = np.unique(file)
     renumbered = np.searchsorted(present, file).astype(np.int32)
     names = tuple(lines.names[code] for code in present.tolist())
     return Pooled(names, tuple(own), table, renumbered, tuple("," if comma else "." for _ in names))
-
-
-#: A header that no log has: a place among trials, not a name.
-_TRIAL_HEADER = "trial\0"
-
-
-def _find_trials(lines: Lines, roles: EventRoles) -> None:
-    """The lines with which trials start and end."""
-    assert roles.fixation is not None  # noqa: S101
-    fixations = np.asarray(roles.fixation.lines)
-    best_score = 0.0
-    for shape in lines.shapes:
-        score = _start_like(lines, shape, fixations, roles)
-        if score > best_score:
-            best_score, roles.start = score, shape
-    if roles.start is None:
-        return
-    _name_trial(lines, roles)
-    starts = np.asarray(roles.start.lines)
-    best_score = 0.0
-    for shape in lines.shapes:
-        score = _end_like(shape, starts, fixations, roles)
-        if score > best_score:
-            best_score, roles.end = score, shape
-
-
-def _start_like(
-    lines: Lines, shape: Shape, fixations: NDArray[np.int64], roles: EventRoles
-) -> float:
-    """How much lines look as if a trial started with each of them."""
-    own = np.asarray(shape.lines)
-    if shape is roles.fixation or len(own) < 2 or len(own) > len(fixations):
-        return 0.0
-    after = np.searchsorted(fixations, own)
-    filled = share_of(np.diff(after) > 0)
-    if filled < _NEARLY_ALL or own[0] > fixations[0]:
-        return 0.0
-    words = {word for text in shape.words() for word in words_of(text)}
-    score = 0.3 * filled
-    score += 0.6 * bool(words & _START) + 0.5 * _has_word(shape, _TRIAL) - 1.0 * bool(words & _END)
-    if any(_counts_trials(lines, shape, place) for place in shape.variables()):
-        score += 0.8
-    return score if score >= 0.8 else 0.0
-
-
-def _counts_trials(lines: Lines, shape: Shape, place: int) -> bool:
-    """Whether a number grows by about one from line to line of a log."""
-    cells = shape.cells[place]
-    if shape.tokens[place].kind != "number" or not all(cell.isdigit() for cell in cells):
-        return False
-    numbers = np.array([int(cell) for cell in cells])
-    within = np.diff(lines.file[np.asarray(shape.lines)]) == 0
-    moved = np.diff(numbers)[within]
-    if not moved.size:
-        return len(numbers) > 0 and bool((numbers <= len(numbers) * 10).all())
-    by_one, grows = share_of(moved == 1), share_of(moved > 0)
-    return by_one >= 0.5 and grows >= 0.8
-
-
-def _name_trial(lines: Lines, roles: EventRoles) -> None:
-    """Which tokens of the starting line name the trial and the text."""
-    shape = roles.start
-    assert shape is not None  # noqa: S101
-    counting = [p for p in shape.variables() if _counts_trials(lines, shape, p)]
-    named = [p for p in counting if _says(shape, p, _TRIAL)]
-    roles.trial = next(iter(named or counting), None)
-    words = [
-        place
-        for place in shape.variables()
-        if shape.tokens[place].kind in ("word", "quoted", "rest") and place != roles.trial
-    ]
-    if roles.trial is None and words:
-        each = [p for p in words if len(set(shape.cells[p])) > len(shape) // 2]
-        roles.trial = next((p for p in words if _says(shape, p, _TRIAL)), next(iter(each), None))
-    from_words = ("text", "item", "sent", "satz", "stim", "passage", "note", "phrase", "frase")
-    roles.item = next((p for p in words if _says(shape, p, from_words)), None)
-    if roles.item is None:
-        several = [p for p in words if p != roles.trial and len(set(shape.cells[p])) > 4]
-        roles.item = several[0] if len(several) == 1 else None
-
-
-def _says(shape: Shape, place: int, beginnings: Sequence[str]) -> bool:
-    """Whether the word before a token begins in a certain way."""
-    return any(word.startswith(tuple(beginnings)) for word in words_of(shape.word_before(place)))
-
-
-def _end_like(
-    shape: Shape, starts: NDArray[np.int64], fixations: NDArray[np.int64], roles: EventRoles
-) -> float:
-    """How much lines look as if a trial ended with each of them."""
-    own = np.asarray(shape.lines)
-    if shape in (roles.fixation, roles.start) or len(own) < 0.8 * len(starts):
-        return 0.0
-    trial = np.searchsorted(starts, own) - 1
-    once = len(np.unique(trial)) >= _NEARLY_ALL * len(own) and len(own) <= len(starts)
-    if not once or (trial < 0).any():
-        return 0.0
-    # After the last fixation of its trial, and before the next trial starts.
-    following = np.searchsorted(fixations, own)
-    next_start = np.append(starts, np.iinfo(np.int64).max)[trial + 1]
-    upcoming = np.append(fixations, np.iinfo(np.int64).max)[following]
-    if share_of(upcoming >= next_start) < _NEARLY_ALL:
-        return 0.0
-    words = {word for text in shape.words() for word in words_of(text)}
-    assert roles.start is not None  # noqa: S101
-    alike = shape.words()[:1] == roles.start.words()[:1] and bool(shape.words())
-    score = 1.0 * bool(words & _END) + 0.4 * alike + 0.3 * (not shape.variables())
-    return score if score >= 0.4 else 0.0
-
-
-def _understand_within_trials(lines: Lines, roles: EventRoles) -> None:
-    """Look at the fixations again, now that it is known which belong to one trial."""
-    shape = roles.fixation
-    if shape is None or roles.start is None:
-        return
-    trial = np.searchsorted(np.asarray(roles.start.lines), np.asarray(shape.lines))
-    rows = _as_rows(lines, shape, roles.groups, trial.astype(np.int64))
-    again = understand(rows)
-    if not again.found.samples:
-        roles.understood = again
-
-
-def _find_the_rest(lines: Lines, roles: EventRoles) -> None:
-    """Blinks, facts about trials, and lines that mean nothing here."""
-    taken = [roles.fixation, roles.start, roles.end]
-    starts = np.asarray([] if roles.start is None else roles.start.lines)
-    names: set[str] = set()
-    for shape in lines.shapes:
-        if any(shape is one for one in taken):
-            continue
-        if _is_about(shape, _BLINK) and not _has_word(shape, _SACCADE):
-            roles.blinks.append(shape)
-            continue
-        fact = _fact_in(shape)
-        home = None if fact is None or fact[1] in names else _home(shape, starts, lines, roles)
-        if fact is None or home is None:
-            roles.ignored.append(shape)
-        else:
-            names.add(fact[1])
-            home.append((shape, *fact))
-
-
-def _home(
-    shape: Shape, starts: NDArray[np.int64], lines: Lines, roles: EventRoles
-) -> list[tuple[Shape, int, str]] | None:
-    """Whether lines tell of the trial they stand in, of those to come, or of none."""
-    own = np.asarray(shape.lines)
-    if not len(starts):
-        return None
-    if own[0] < starts[0]:
-        # Before the first trial: it tells of what comes, and may be told anew.
-        return roles.lasting if len(own) <= len(starts) + len(lines.names) else None
-    once = len(np.unique(np.searchsorted(starts, own))) == len(own)
-    return roles.facts if once else None
-
-
-def _fact_in(shape: Shape) -> tuple[int, str] | None:
-    """The token that ends a line, where the word before it is the name of a fact."""
-    variables = shape.variables()
-    if not variables or variables[-1] != len(shape.tokens) - 1 - _closing(shape):
-        return None
-    place = variables[-1]
-    word = shape.word_before(place)
-    words = words_of(word)
-    meant = sounds_like(word, ("participant", "session")) if len(words) == 1 else None
-    name = meant if meant is not None else "_".join(words)
-    if name in _OF_FIXATIONS:
-        return None
-    alone = [p for p in variables[:-1] if shape.tokens[p].kind != "number"]
-    if not name or not name.replace("_", "").isalnum() or name[0].isdigit() or alone:
-        return None
-    return place, name
-
-
-def _closing(shape: Shape) -> int:
-    """How many signs, such as brackets, close a line."""
-    count = 0
-    for token in reversed(shape.tokens):
-        if token.kind != "sign":
-            break
-        count += 1
-    return count
 
 
 def told_of(shape: Shape) -> str:

@@ -16,18 +16,15 @@ class Made:
     ----------
     out : StudyText
         The study file.
-    log : Path
-        The first log.
-    shown : str
-        Its name for messages.
-    logs : int
-        How many logs there are.
+    logs : tuple of Path
+        The logs, the first one of those that are like most before all others.
     eye : str
         The eye that is shown where the draft asks which one counts; empty where it does not.
+    facts : tuple of str
+        Columns or groups that may be factors.
     """
 
     out: StudyText
-    log: Path
-    shown: str
-    logs: int
+    logs: tuple[Path, ...]
     eye: str = ""
+    facts: tuple[str, ...] = ()

@@ -57,6 +57,10 @@ class Understanding:
         Columns that are the same in all rows of a trial, with their values.
     missing : tuple of str
         Marks for no value that occur in columns of numbers.
+    clock : str
+        A column of times of which nothing says whether fixations begin or end at them; or empty.
+    clock_unit : str
+        Its unit.
     """
 
     meanings: dict[str, Meaning] = field(default_factory=dict)
@@ -69,6 +73,8 @@ class Understanding:
     perhaps_blink: str = ""
     facts: dict[str, tuple[str, ...]] = field(default_factory=dict)
     missing: tuple[str, ...] = ()
+    clock: str = ""
+    clock_unit: str = ""
 
     def header(self, name: str) -> str | None:
         """The column that was taken for something."""

@@ -11,6 +11,7 @@ import numpy as np
 
 from etl.drafting.columns import PooledColumn, is_plain_number, share_of
 from etl.drafting.found_logs import common_start
+from etl.drafting.items import find_item
 from etl.drafting.meanings import NAMED, Meaning, Understanding, counted, shortened
 from etl.drafting.structure import Structure
 from etl.drafting.vocabulary import likeness, sounds_like
@@ -197,7 +198,7 @@ def find_readers(structure: Structure, found: Understanding) -> NamePattern | No
     rows = structure.rows
     columns = {h: rows.columns[h] for h in rows.headers if h not in found.used()}
     _find_session(structure, columns, found)
-    _find_item(structure, columns, found)
+    find_item(structure, columns, found)
     columns = {h: c for h, c in columns.items() if h not in found.used()}
     by_column = _find_participant(structure, columns, found)
     if by_column is not None:
@@ -271,29 +272,6 @@ def _find_session(
             told = f"the header says session, and it holds {shortened(column.distinct)}"
             found.meanings["session"] = Meaning(header, told)
             return
-
-
-def _find_item(
-    structure: Structure, columns: Mapping[str, PooledColumn], found: Understanding
-) -> None:
-    """The column that says which text was read."""
-    named = [
-        (likeness(header, "item"), header)
-        for header, column in columns.items()
-        if structure.constant(column) and len(column.distinct) > 1
-    ]
-    score, header = max(named, default=(0.0, ""))
-    if score >= NAMED:
-        values = columns[header].distinct
-        told = (
-            f"the header says text, and it is the same in all rows of a trial; {len(values):,} "
-            f"values: {shortened(values, 4)}"
-        )
-        found.meanings["item"] = Meaning(header, told)
-        return
-    trial = found.header("trial")
-    if trial is not None and likeness(trial, "item") >= NAMED:
-        found.meanings["item"] = Meaning(trial, "the text's name also tells trials apart")
 
 
 def find_facts(structure: Structure, found: Understanding) -> None:

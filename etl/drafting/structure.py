@@ -69,10 +69,10 @@ def find_structure(pooled: Pooled, found: Understanding) -> Structure:
     """
     rows = _only_fixations(pooled, found)
     eye = _find_eye(rows, found)
-    run = _runs(rows, _reader_codes(rows))
+    run = _runs(rows, reader_codes(rows))
     trial = _find_trial(rows, run, found)
     if trial is not None:
-        run = _runs(rows, _reader_codes(rows), rows.columns[trial].coded.codes)
+        run = _runs(rows, reader_codes(rows), rows.columns[trial].coded.codes)
     group = run
     if eye is not None and len(found.eye_values) > 1:
         codes = rows.columns[eye].coded.codes.astype(np.int64)
@@ -146,8 +146,19 @@ def _runs(rows: Pooled, *codes: NDArray[np.int32] | None) -> NDArray[np.int64]:
     return np.cumsum(change).astype(np.int64)
 
 
-def _reader_codes(rows: Pooled) -> NDArray[np.int32] | None:
-    """The column that is called like the reader, where it stays the same for long."""
+def reader_codes(rows: Pooled) -> NDArray[np.int32] | None:
+    """The column that is called like the reader, where it stays the same for long.
+
+    Parameters
+    ----------
+    rows : Pooled
+        The rows.
+
+    Returns
+    -------
+    (n,) int32 array or None
+        Its codes; None where there is no such column.
+    """
     named = [(likeness(one, "participant"), one) for one in rows.headers]
     for score, header in sorted(named, key=lambda pair: -pair[0]):
         codes = rows.columns[header].coded.codes

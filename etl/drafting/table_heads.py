@@ -31,6 +31,10 @@ _EVEN = 0.8
 _REMARK_SIGNS = ("#", "%", "//", "**", "!", ";", ">", "--")
 #: Of the cells of a header at most this share has no letter; more, and it is a row of numbers.
 _NAMELESS = 0.3
+#: By how much less a table looks like one where most lines stand above its header.
+_DOUBTFUL = 0.9
+#: What is said of rows that have other numbers of fields than their header.
+_UNEVEN = ("the row has too few fields", "the row has too many fields")
 _DIGITS = re.compile(r"\d+([.,]\d+)?")
 
 
@@ -114,6 +118,46 @@ def as_table(head: Head, findings: Findings) -> TableHead | None:
     return TableHead(head, cells, remarks)
 
 
+def taken_for_table(head: Head, findings: Findings) -> Findings:
+    """Say of a log some rows of which are too short or too long why it was taken for a table.
+
+    Parameters
+    ----------
+    head : Head
+        Its beginning.
+    findings : Findings
+        Why it cannot be read as a table.
+
+    Returns
+    -------
+    Findings
+        The same, but that one finding stands for all those rows.
+    """
+    uneven = [one for one in findings.of("error") if one.problem in _UNEVEN]
+    lines = head.lines()
+    place = _find_header(lines[:_LINES], _remark_signs(lines[:_LINES]))
+    if not uneven or place is None:
+        return findings
+    told = Findings()
+    for one in findings:
+        if one.problem not in _UNEVEN:
+            told.add(one)
+    first = uneven[0].line or 1
+    fields = f"{len(place.names):,} fields between {spelled(place.separator)}"
+    told.error(
+        f"the log was taken for a table, because {place.even:.0%} of the lines below line "
+        f"{place.line + 1} have {fields} as that line has, but other lines have not",
+        path=head.shown,
+        line=first,
+        found=lines[first - 1] if first <= len(lines) else uneven[0].found,
+        expected=f"a row below the header {', '.join(place.names)}",
+        fix="correct such rows if it is a table. If its lines tell of events, no lines were found "
+        "that tell of fixations, by their times and durations, and others with which trials start: "
+        'write the study file by hand then, with kind = "events" and [logs.patterns]',
+    )
+    return told
+
+
 def tell_no_log(head: Head, findings: Findings) -> None:
     """Record that a file looks like no log.
 
@@ -155,8 +199,12 @@ def how_even(lines: Sequence[str]) -> float:
     >>> how_even(["reader;dur", "P01;200", "P01;180"])
     1.0
     """
-    place = _find_header(lines[:_LINES], _remark_signs(lines[:_LINES]))
-    return 0.0 if place is None else place.even
+    lines = lines[:_LINES]
+    place = _find_header(lines, _remark_signs(lines))
+    if place is None:
+        return 0.0
+    # Few lines that happen to be alike below many that are not are hardly a table.
+    return place.even if 2 * place.line < len(lines) else _DOUBTFUL * place.even
 
 
 def described(cells: Cells) -> str:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -67,7 +67,8 @@ def understand(pooled: Pooled) -> UnderstoodTables:
     find_times(structure, free(), found)
     names = find_readers(structure, found)
     find_places(structure, free(), found)
-    if "onset" not in found.meanings and "fixation" not in found.meanings:
+    ordered = {"onset", "fixation", "end"} & found.meanings.keys()
+    if not ordered:
         found.questions.setdefault(
             "onset",
             "which column says when a fixation began? If none does, remove this line and name the "
@@ -82,6 +83,7 @@ def understand(pooled: Pooled) -> UnderstoodTables:
     find_facts(structure, found)
     for header in other - found.used():
         found.facts.pop(header, None)
+    _tell_units(structure, found)
     return UnderstoodTables(found, structure, names, _extent(structure, found))
 
 
@@ -105,6 +107,17 @@ def _find_missing(structure: Structure, found: Understanding) -> None:
                     f'value, add "{value:g}" to missing'
                 )
     found.missing = tuple(words)
+
+
+def _tell_units(structure: Structure, found: Understanding) -> None:
+    """Say of each unit that a row below the header names that it does so."""
+    units = structure.rows.units
+    for columns in (found.meanings, *found.eyes.values()):
+        for name, meaning in columns.items():
+            unit = units.get(meaning.header)
+            if unit is not None and meaning.unit == unit:
+                told = f'{meaning.evidence}; the row below the header says "{unit}"'
+                columns[name] = replace(meaning, evidence=told)
 
 
 def _extent(structure: Structure, found: Understanding) -> Extent | None:

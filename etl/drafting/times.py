@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from etl.drafting.columns import Floats, PooledColumn, share_of, steps
 from etl.drafting.meanings import NAMED, Meaning, Understanding, counted, number, shortened
 from etl.drafting.structure import Structure
-from etl.drafting.vocabulary import likeness
+from etl.drafting.vocabulary import likeness, word_set, words_of
 
 Unit = Literal["ms", "s", "us"]
 
@@ -27,17 +27,36 @@ _NEARLY_ALL = 0.98
 _MOST = 0.9
 #: A fixation fills at least this share of the time to the next one, in the middle of all pairs.
 _LEAST_FILLED = 0.35
+#: Of two readings of a column, one is clearly the better one from this difference in rows on.
+_CLEARLY = 0.02
+#: Words for times that leave open what happens at them.
+_NEUTRAL = word_set("time t timestamp stamp zeit temps tiempo tempo clock value 2 3 4 ms s")
 
 
 @dataclass(frozen=True, slots=True)
 class _Fit:
-    """How well a duration goes with a column of times."""
+    """How well a duration goes with a column of times, at which fixations begin or end."""
 
-    onset: str
+    time: str
     duration: str
     factor: float
     fits: float
     filled: float
+    ends: bool
+
+    @property
+    def pair(self) -> tuple[str, str, float]:
+        """What goes together."""
+        return (self.time, self.duration, self.factor)
+
+    @property
+    def named(self) -> float:
+        """How much the names say so."""
+        as_onset, as_end = likeness(self.time, "onset"), likeness(self.time, "end")
+        if set(words_of(self.time)) <= _NEUTRAL:
+            as_onset, as_end = 0.2, 0.2
+        own, other = (as_end, as_onset) if self.ends else (as_onset, as_end)
+        return own - 0.5 * other + likeness(self.duration, "duration")
 
     @property
     def quality(self) -> float:
@@ -128,24 +147,26 @@ def _fits(
     times: Sequence[str],
     durations: Sequence[str],
 ) -> list[_Fit]:
-    """The pairs of a time and a duration in which a fixation ends before the next one begins."""
+    """The pairs of a time and a duration by which no fixation reaches into another one."""
     order = np.argsort(structure.group, kind="stable")
     same = np.diff(structure.group[order]) == 0
     found = []
     for onset in times:
         gap = np.diff(columns[onset].numbers[order])[same]
         for duration in durations:
-            lasted = columns[duration].numbers[order][:-1][same]
-            known = ~np.isnan(gap) & ~np.isnan(lasted) & (gap > 0)
-            if not known.any():
-                continue
-            share = lasted[known] / gap[known]
-            for factor in (1.0, 1000.0, 0.001, 1e6, 1e-6):
-                # Times are rounded: a fixation may reach the next one by a sample.
-                fits = share_of(share * factor <= 1.05)
-                filled = float(np.median(share * factor))
-                if fits >= _MOST and filled >= _LEAST_FILLED:
-                    found.append(_Fit(onset, duration, factor, fits, filled))
+            ordered = columns[duration].numbers[order]
+            # From an onset a fixation lasts until the next one; up to an end, since the last one.
+            for ends, lasted in ((False, ordered[:-1][same]), (True, ordered[1:][same])):
+                known = ~np.isnan(gap) & ~np.isnan(lasted) & (gap > 0)
+                if not known.any():
+                    continue
+                share = lasted[known] / gap[known]
+                for factor in (1.0, 1000.0, 0.001, 1e6, 1e-6):
+                    # Times are rounded: a fixation may reach the next one by a sample.
+                    fits = share_of(share * factor <= 1.05)
+                    filled = float(np.median(share * factor))
+                    if fits >= _MOST and filled >= _LEAST_FILLED:
+                        found.append(_Fit(onset, duration, factor, fits, filled, ends))
     return found
 
 
@@ -153,14 +174,13 @@ def _take_pair(
     columns: dict[str, PooledColumn], fits: Sequence[_Fit], found: Understanding
 ) -> None:
     """Take the onset and the duration that go together best."""
-
-    def rank(fit: _Fit) -> float:
-        named = likeness(fit.onset, "onset") + likeness(fit.duration, "duration")
-        named -= 0.5 * likeness(fit.onset, "end")
-        return fit.quality + named
-
-    best = max(fits, key=rank)
-    duration, onset = columns[best.duration], columns[best.onset]
+    best = max(fits, key=lambda fit: fit.quality + fit.named)
+    if best.ends:
+        # Where some times go with the durations as onsets, others that do so as ends are the ends.
+        onsets = [f for f in fits if not f.ends and f.fits >= best.fits - _CLEARLY]
+        alike = [f for f in onsets if f.named >= best.named - NAMED]
+        best = max(alike, key=lambda fit: fit.quality + fit.named, default=best)
+    duration, time = columns[best.duration], columns[best.time]
     spread = f"numbers between {number(duration.share(0))} and {number(duration.share(1))}"
     unit, question = _unit_of_durations(duration.values, duration.unit)
     told = (
@@ -171,29 +191,53 @@ def _take_pair(
     )
     found.meanings["duration"] = Meaning(best.duration, told, unit, question)
     own_unit = _unit_by_factor(unit, best.factor)
-    told = (
-        "times that never fall within a trial; onset + duration comes before the next onset in "
-        f"{best.fits:.0%} of rows"
-    )
     if own_unit == "?":
         settled = ("?", f'"ms", "s" or "us"? It is that of "{best.duration}"')
     else:
-        settled = _settled(onset.unit, own_unit, "its times", onset.header)
-    found.meanings["onset"] = Meaning(best.onset, told, *settled)
-    others = {f.onset for f in fits if f.onset != best.onset and likeness(f.onset, "end") < NAMED}
-    if others:
+        settled = _settled(time.unit, own_unit, "its times", time.header)
+    if _could_be_either(best, fits):
+        found.clock, found.clock_unit = best.time, settled[0]
+        found.questions["onset"] = (
+            f'is "{best.time}" when a fixation begins, or when it is over? With the durations both '
+            f'would do. Write {{ column = "{best.time}", unit = "{settled[0]}" }} here, or name '
+            "this line end in place of onset and write the same"
+        )
+    else:
+        told = (
+            "end - duration comes after the end before it"
+            if best.ends
+            else "onset + duration comes before the next onset"
+        )
+        told = f"times that never fall within a trial; {told} in {best.fits:.0%} of rows"
+        found.meanings["end" if best.ends else "onset"] = Meaning(best.time, told, *settled)
+    others = {
+        fit.time
+        for fit in fits
+        if fit.time != best.time and fit.ends == best.ends and likeness(fit.time, "end") < NAMED
+    }
+    if others and not best.ends:
         found.remarks.append(
             f"the onset could also be {shortened(sorted(others))}, which goes with the duration as "
-            f'well; "{best.onset}" was taken. If texts have an onset in log time (trials.onset), '
+            f'well; "{best.time}" was taken. If texts have an onset in log time (trials.onset), '
             "both must be on the same clock"
         )
-    for name, header in (("duration", best.duration), ("onset", best.onset)):
+    own = {"duration": best.duration, "onset": best.time}
+    for name, header in own.items() if not best.ends else ():
         for other in columns:
             if likeness(header, name) < NAMED <= likeness(other, name) and other != header:
                 found.remarks.append(
                     f'column "{other}" is called like the {name}, but its cells are not; those of '
                     f'"{header}" are'
                 )
+
+
+def _could_be_either(best: _Fit, fits: Sequence[_Fit]) -> bool:
+    """Whether fixations might as well end at the times at which they begin, or the reverse."""
+    same = [f for f in fits if f.pair == best.pair and f.ends != best.ends]
+    other = next(iter(same), None)
+    if other is None or best.fits - other.fits > _CLEARLY:
+        return False
+    return best.named - other.named < NAMED
 
 
 def _unit_of_durations(values: Floats, stated: str | None) -> tuple[str, str]:
@@ -240,7 +284,9 @@ def _take_ends(
             if onset == end or share_of(lasted > 0) < _NEARLY_ALL:
                 continue
             before = share_of(ended[:-1][same] <= begun[1:][same] + 0.05 * lasted[:-1][same])
-            if before < _MOST:
+            usual = float(np.median(lasted[~np.isnan(lasted)]))
+            plausible = any(low <= usual < high for low, high in _MEDIAN_DURATION.values())
+            if before < _MOST or not plausible:
                 continue
             score = before + likeness(onset, "onset") + likeness(end, "end")
             if best is None or score > best[0]:

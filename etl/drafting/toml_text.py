@@ -201,7 +201,7 @@ class StudyText:
     def example(self, key: str, value: Value, remark: str = "") -> None:
         """A key that does nothing until the # before it is removed."""
         line = f"# {key_text(key)} = {value_text(value)}"
-        self.lines.append(f"{line:<42}# {plain(remark)}" if remark else line)
+        self.lines.append(f"{line:<40}  # {plain(remark)}" if remark else line)
 
     def example_table(self, table: str, remark: str = "") -> None:
         """The header of a table that does nothing until the # before it is removed."""

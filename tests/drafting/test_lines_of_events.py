@@ -10,8 +10,8 @@ from typing import Any
 import pytest
 
 import etl
+from etl.drafting.event_clusters import shapes_of
 from etl.drafting.event_patterns import pattern_of_line
-from etl.drafting.event_shapes import shapes_of
 from tests.drafting.small_logs import Fixated, put, reading
 
 Wording = Callable[[Fixated], str]
@@ -100,13 +100,14 @@ def test_order_of_numbers_is_found_by_what_they_are(tmp_path: Path) -> None:
 
 
 def test_saccades_and_other_lines_are_left_aside(tmp_path: Path) -> None:
-    """Lines that tell of something else are counted, each kind by its own beginning."""
+    """Lines that tell of something else are counted, each kind by a pattern of whole lines."""
 
     def more(row: Fixated) -> list[str]:
         return [f"saccade {row.end_ms} {row.end_ms + 25} {row.x_px} {row.y_px} 3.2", "beep!"]
 
     found = patterns_of(log(plain, more=more), tmp_path)
-    assert found["ignore"] == ["^saccade ", "^beep!$"]
+    numbers = " ".join([r"\d+"] * 2 + ["[-+0-9.]+"] * 3)
+    assert found["ignore"] == [f"^saccade {numbers}$", "^beep!$"]
     assert found["fixation"].startswith("^fix ")
 
 
