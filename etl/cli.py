@@ -15,7 +15,7 @@ from rich.console import Console
 from rich.progress import BarColumn, MofNCompleteColumn, Progress, TextColumn, TimeRemainingColumn
 
 import etl
-from etl.session import Wanted, explained, told, write_picture
+from etl.session import Wanted, explained, told, write_lines, write_picture
 
 INPUT_WRONG = 2
 FAULT = 1
@@ -150,7 +150,15 @@ def build(study: Path, into: Path | None, workers: int | None, *, quiet: bool) -
 @click.option(
     "--picture",
     type=click.Path(path_type=Path),
+    metavar="FILE",
     help="Write a picture (FILE.svg), or a page with picture and explanation (FILE.html).",
+)
+@click.option(
+    "--lines",
+    type=click.Path(path_type=Path),
+    metavar="FILE",
+    help="Write the line of each fixation into a table (FILE.csv) to be corrected by hand; to a "
+    "table that is there, fixations that it lacks are added.",
 )
 @_QUIET
 def trace(study: Path, participant: str, trial: str, *, quiet: bool, **wanted: Any) -> None:
@@ -159,7 +167,7 @@ def trace(study: Path, participant: str, trial: str, *, quiet: bool, **wanted: A
     PARTICIPANT and TRIAL are named as in the tables.
     """
     loaded = etl.load_study(study)
-    picture = wanted["picture"]
+    picture, lines = wanted["picture"], wanted["lines"]
     outcomes = Wanted(wanted["regions"], wanted["measures"])
     with _progress(quiet=quiet) as progress:
         traced = etl.trace(
@@ -173,6 +181,9 @@ def trace(study: Path, participant: str, trial: str, *, quiet: bool, **wanted: A
     if picture is not None:
         write_picture(traced, picture, outcomes)
         click.echo(f"Written to {picture}")
+    if lines is not None:
+        click.echo(write_lines(traced, lines, loaded))
+    if picture is not None or lines is not None:
         return
     encoding = sys.stdout.encoding or "ascii"
     click.echo(explained(traced, shutil.get_terminal_size().columns, encoding, outcomes))

@@ -26,6 +26,9 @@ _WRITTEN: dict[str, pa.DataType] = {
 }
 #: The ledger of everything left out, a CSV file.
 LEDGER = "exclusions"
+#: What the ledger says of lines: fixations that belong to none, and lines that were set by hand.
+#: Neither leaves a fixation out.
+LINE_RULES = ("no_line", "line_corrections")
 #: The tables, in the order in which they are described.
 TABLES = ("outcomes", "outcomes_wide", "trials", "regressions", "fixations")
 
@@ -129,6 +132,8 @@ class TableDesign:
         What can leave a fixation out.
     files : tuple of str
         The logs.
+    lines : bool
+        Whether texts have several lines and a method says which one each fixation belongs to.
     """
 
     ids: Mapping[str, IdColumn]
@@ -140,6 +145,7 @@ class TableDesign:
     reasons: tuple[str, ...]
     left_out_by: tuple[str, ...]
     files: tuple[str, ...]
+    lines: bool = False
 
     def id_columns(self) -> tuple[Column, ...]:
         """The columns that say which trial a row is about."""
@@ -153,6 +159,11 @@ class TableDesign:
             Column(name, known.type, meanings[name], nullable=name == "item")
             for name, known in self.ids.items()
         )
+
+    @property
+    def ledger_rules(self) -> tuple[str, ...]:
+        """The rules that the ledger may name."""
+        return (*self.left_out_by, "outlier_sd", *(LINE_RULES if self.lines else ()))
 
     def factor_columns(self) -> tuple[Column, ...]:
         """The experimental factors."""
@@ -183,7 +194,10 @@ class TableDesign:
         if table == "trials":
             measured = (_measure_column(m) for m in self.trial_measures)
             why = "why outcomes of this trial are missing (outcome: reason), empty where none is"
-            return (*design, *measured, Column("missing", "text", why, nullable=True))
+            sure = "chance that the lines of the trial are right; empty where none was told"
+            lines = (Column("line_confidence", "number", sure, nullable=True),)
+            missing = Column("missing", "text", why, nullable=True)
+            return (*design, *measured, *(lines if self.lines else ()), missing)
         if table == "regressions":
             return (*ids, *factors, *self._regression_columns())
         if table == "fixations":
@@ -199,16 +213,19 @@ class TableDesign:
         what = "what was left out or changed: fixation, trial, participant or value"
         where = "region of the value; empty where it is not about one"
         which = "number of the fixation in its trial; empty where it is not about one"
+        done = "left out, merged into fixation n, or set missing"
+        if self.lines:
+            done += "; counted as outside, or line set to n"
         later = "later rules that would have left it out too, separated by blanks"
         return (
             Column("level", "category", what, levels=("fixation", "trial", "participant", "value")),
             *ids,
             Column("region", "category", where, nullable=True, levels=self.regions),
             Column("fixation", "integer", which, nullable=True),
-            Column("rule", "category", "the rule", levels=(*self.left_out_by, "outlier_sd")),
+            Column("rule", "category", "the rule", levels=self.ledger_rules),
             Column("limit", "text", "the limit that the study sets", nullable=True),
             Column("observed", "text", "what was found", nullable=True),
-            Column("action", "text", "left out, merged into fixation n, or set missing"),
+            Column("action", "text", done),
             Column("source_file", "text", "the log; empty for a reader", nullable=True),
             Column("source_line", "integer", "the line in that log", nullable=True),
             Column("also", "text", later, nullable=True),
@@ -266,6 +283,7 @@ class TableDesign:
             Column("region_order", "integer", "its place in reading order", nullable=True),
             Column("visit", "integer", "which visit to its region, from 1", nullable=True),
             Column("first_pass", "flag", first, nullable=True),
+            *(self._line_columns() if self.lines else ()),
             Column("kept", "flag", "1 if the outcomes are computed from it, 0 if left out"),
             Column(
                 "left_out_by",
@@ -278,9 +296,20 @@ class TableDesign:
             Column("source_line", "integer", "its line in that log, from 1"),
         )
 
+    def _line_columns(self) -> tuple[Column, ...]:
+        sure = "chance that its line is right; empty where none was told"
+        sweep = "1 if a return sweep to a later line came down on it, 0 if not"
+        short = "1 if that sweep fell short and the next saccade corrects it, 0 if not"
+        return (
+            Column("line_confidence", "number", sure, nullable=True),
+            Column("return_sweep", "flag", sweep),
+            Column("undersweep", "flag", short),
+        )
 
-#: The tables of a study without factors, measures or readers: the columns that every study has.
-BARE_DESIGN = TableDesign({}, {}, {}, (), (), (), ("",), (), ())
+
+#: The tables of a study without factors, measures or readers: the columns that studies have, with
+#: those about lines.
+BARE_DESIGN = TableDesign({}, {}, {}, (), (), (), ("",), (), (), lines=True)
 
 
 def _measure_column(measure: MeasureColumn) -> Column:

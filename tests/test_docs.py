@@ -85,6 +85,7 @@ KEYS_OF = {
         "first",
         "last",
         "blink",
+        "undersweep",
         "merge",
         "under_ms",
         "over_ms",
@@ -92,6 +93,7 @@ KEYS_OF = {
     "screening.trials": (
         "notes",
         "fewest_fixations",
+        "line_confidence_under",
         "outside_share_over",
         "duration_ms",
         "blink_in_first_pass_of",

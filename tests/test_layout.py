@@ -35,12 +35,13 @@ MAY_USE = {
     # A draft is checked by reading the first log as a build would.
     "drafting": {"errors", "tables", "files", "parsers", "study"},
     "screening": {"errors"},
+    "lines": {"errors"},
     # The ledger and the accounts are handed over as plain rows.
     "export": {"errors", "tables", "screening"},
     "report": {"errors", "tables"},
     "session": {
         *("errors", "tables", "files", "study", "parsers", "trials", "regions", "measures"),
-        *("screening", "export", "report"),
+        *("screening", "lines", "export", "report"),
     },
     "cli": {"etl", "session"},
     "etl": {"drafting", "errors", "session", "study"},
@@ -51,7 +52,7 @@ MAY_NAME_THE_STUDY = {"parsers", "trials", "regions"}
 USED_IN = {
     "numpy": {
         *("files", "parsers", "trials", "regions", "measures", "screening", "export", "report"),
-        *("session", "drafting"),
+        *("session", "drafting", "lines"),
     },
     "pyarrow": {"files", "parsers", "export", "report", "session", "tables", "drafting"},
     "openpyxl": {"files"},

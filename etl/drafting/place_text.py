@@ -150,4 +150,4 @@ def write_regions(out: StudyText, found: Understanding, extent: Extent | None) -
         out.example("line_height_px", 60, "from the top of a line to that of the next")
     if not by_label:
         out.example_table("lines", "For texts of several lines: which line a fixation is on.")
-        out.example("method", "nearest", "the line whose middle is nearest")
+        out.example("method", "consensus", "by all published methods together")

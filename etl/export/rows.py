@@ -8,116 +8,29 @@ after the other without a look at their texts.
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
 
 import numpy as np
 import pyarrow as pa
 from numpy.typing import NDArray
 
+from etl.export.row_columns import (
+    CellMeasures,
+    FixationColumns,
+    LineColumns,
+    RegressionColumns,
+    TrialColumns,
+)
 from etl.screening.ledger import LEVELS, Entry
 from etl.tables import CODED, LEDGER, TABLES, TableDesign, written_schema
 
-
-@dataclass(frozen=True, slots=True)
-class TrialColumns:
-    """What is known of a reader's trials, one row a trial, in the order of the tables.
-
-    Attributes
-    ----------
-    ids : dict of str to (trials,) int32 array
-        Place of each id in the design's list of values; -1 where a trial has none.
-    factors : dict of str to (trials,) int32 array
-        Place of each level in the design's list; of no meaning for trials that are skipped.
-    covariates : dict of str to (trials,) array
-        Numbers, NaN where missing, or places in the design's list of texts, -1 where missing.
-    text : (trials,) int32 array
-        The text that was read; -1 for a trial that is no part of the study.
-    came_ms, went_ms, answer : (trials,) float64 array
-        When the text came up and went away, and whether the answer was right; NaN where unknown.
-    notes : tuple of str
-        The experimenter's note on each trial, empty where there is none.
-    skipped_by : tuple of str
-        Why each trial is no part of the study, empty where it is.
-    """
-
-    ids: Mapping[str, NDArray[np.int32]]
-    factors: Mapping[str, NDArray[np.int32]]
-    covariates: Mapping[str, NDArray[np.float64] | NDArray[np.int32]]
-    text: NDArray[np.int32]
-    came_ms: NDArray[np.float64]
-    went_ms: NDArray[np.float64]
-    answer: NDArray[np.float64]
-    notes: tuple[str, ...]
-    skipped_by: tuple[str, ...]
-
-    def __len__(self) -> int:
-        return len(self.text)
-
-    def take(self, rows: NDArray[np.int64]) -> TrialColumns:
-        """Some of the trials."""
-        return TrialColumns(
-            {name: codes[rows] for name, codes in self.ids.items()},
-            {name: codes[rows] for name, codes in self.factors.items()},
-            {name: values[rows] for name, values in self.covariates.items()},
-            self.text[rows],
-            self.came_ms[rows],
-            self.went_ms[rows],
-            self.answer[rows],
-            tuple([self.notes[row] for row in rows.tolist()]),
-            tuple([self.skipped_by[row] for row in rows.tolist()]),
-        )
-
-
-@dataclass(frozen=True, slots=True)
-class CellMeasures:
-    """Measures over cells: a cell is a trial × region, or a trial.
-
-    Attributes
-    ----------
-    values : dict of str to (cells,) float64 array
-        NaN where missing.
-    reasons : dict of str to (cells,) uint8 array
-        Index into the design's reasons.
-    """
-
-    values: Mapping[str, NDArray[np.float64]]
-    reasons: Mapping[str, NDArray[np.uint8]]
-
-
-@dataclass(frozen=True, slots=True)
-class FixationColumns:
-    """The columns of ``fixations`` for one reader; 0 in an order, line or visit is missing."""
-
-    trial: NDArray[np.int64]
-    number: NDArray[np.int64]
-    onset_ms: NDArray[np.float64]
-    duration_ms: NDArray[np.float64]
-    x_px: NDArray[np.float64]
-    y_px: NDArray[np.float64]
-    line: NDArray[np.int32]
-    region_code: NDArray[np.int32]
-    region_order: NDArray[np.int32]
-    visit: NDArray[np.int32]
-    first_pass: NDArray[np.bool_]
-    left_out_by: NDArray[np.int32]
-    file: NDArray[np.int32]
-    source_line: NDArray[np.int32]
-
-
-@dataclass(frozen=True, slots=True)
-class RegressionColumns:
-    """The columns of ``regressions`` for one reader."""
-
-    trial: NDArray[np.int64]
-    from_code: NDArray[np.int32]
-    from_order: NDArray[np.int32]
-    to_code: NDArray[np.int32]
-    to_order: NDArray[np.int32]
-    ends_first_pass: NDArray[np.bool_]
-    launch_number: NDArray[np.int64]
-    landing_number: NDArray[np.int64]
-    onset_ms: NDArray[np.float64]
-    amplitude_px: NDArray[np.float64]
+__all__ = [
+    "CellMeasures",
+    "FixationColumns",
+    "LineColumns",
+    "RegressionColumns",
+    "RowMaker",
+    "TrialColumns",
+]
 
 
 class RowMaker:
@@ -248,12 +161,18 @@ class RowMaker:
         ]
         return pa.RecordBatch.from_arrays(columns, schema=self.schemas["outcomes_wide"])
 
-    def trials(self, facts: Mapping[str, pa.Array], measured: CellMeasures) -> pa.RecordBatch:
-        """One row a kept trial."""
+    def trials(
+        self,
+        facts: Mapping[str, pa.Array],
+        measured: CellMeasures,
+        line_confidence: NDArray[np.float64] | None = None,
+    ) -> pa.RecordBatch:
+        """One row a kept trial; how sure its lines are where the study tells lines."""
         measures = self.design.trial_measures
         columns = [
             *(facts[name] for name in self._design_names()),
             *(_measure(measured.values[m.name], m.kind) for m in measures),
+            *(() if line_confidence is None else [pa.array(line_confidence, from_pandas=True)]),
             self._why_missing(measured),
         ]
         return pa.RecordBatch.from_arrays(columns, schema=self.schemas["trials"])
@@ -309,6 +228,7 @@ class RowMaker:
             pa.array(c.region_order.astype(np.int64), mask=c.region_order == 0),
             pa.array(c.visit.astype(np.int64), mask=c.visit == 0),
             pa.array(c.first_pass.astype(np.int8), mask=~inside),
+            *(() if c.lines is None else _lines(c.lines)),
             pa.array(kept.astype(np.int8)),
             _coded(c.left_out_by, self._left_out_by),
             _coded(c.file, self._files),
@@ -354,7 +274,7 @@ class RowMaker:
             column = _coded(codes, self._id_values[name])
             columns.append(column.dictionary_decode() if known.type == "integer" else column)
         file, line = (np.where(row >= 0, part[row], -1).astype(np.int32) for part in source)
-        rules = {rule: code for code, rule in enumerate((*self.design.left_out_by, "outlier_sd"))}
+        rules = {rule: code for code, rule in enumerate(self.design.ledger_rules)}
         columns += [
             _coded(np.array([e.region for e in entries], dtype=np.int32), self._regions),
             _place([e.fixation for e in entries]),
@@ -370,6 +290,15 @@ class RowMaker:
             _text([e.also for e in entries]),
         ]
         return pa.RecordBatch.from_arrays(columns, schema=self.schemas[LEDGER])
+
+
+def _lines(columns: LineColumns) -> tuple[pa.Array, ...]:
+    """The columns of ``fixations`` about lines."""
+    return (
+        pa.array(columns.confidence, from_pandas=True),
+        pa.array(columns.return_sweep.astype(np.int8)),
+        pa.array(columns.undersweep.astype(np.int8)),
+    )
 
 
 def _text(texts: Sequence[str]) -> pa.Array:

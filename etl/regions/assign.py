@@ -18,6 +18,7 @@ import shapely
 from numpy.typing import NDArray
 
 from etl.regions.geometry import Floats, Geometry, Integers, Offsets
+from etl.regions.line_search import last_at_or_before, nearest_line, numbered_line
 
 Overlap = Literal["error", "first", "nearest"]
 Flags = NDArray[np.bool_]
@@ -90,7 +91,12 @@ class _Points:
 
 
 def assign(
-    geometry: Geometry, manner: Manner, text: NDArray[np.integer], x_px: Floats, y_px: Floats
+    geometry: Geometry,
+    manner: Manner,
+    text: NDArray[np.integer],
+    x_px: Floats,
+    y_px: Floats,
+    line: Integers | None = None,
 ) -> Assigned:
     """Take points to the regions of their texts.
 
@@ -104,27 +110,41 @@ def assign(
         The text each point was made on, from 0; -1 for none.
     x_px, y_px : (n,) float64 arrays
         Where it is, y down. NaN: no coordinate.
+    line : (n,) int32 array, optional
+        The line of each point where it is known, numbered as the text's lines are; 0 for none, -1
+        where it is not known. On a known line only x decides.
 
     Returns
     -------
     Assigned
-        A point without a coordinate that is needed, or without a text, is outside, on line 0.
+        A point without a coordinate that is needed, or without a text, is outside, on line 0 if
+        its line is not known.
+
+    Raises
+    ------
+    FaultError
+        If a text has no line of the number given.
     """
     order = np.zeros(len(text), dtype=np.int32)
-    line = np.zeros(len(text), dtype=np.int32)
-    usable = (text >= 0) & np.isfinite(x_px)
+    given = np.full(len(text), -1, dtype=np.int32) if line is None else line
+    # A point whose line is known is on it, also where it has no coordinate to be looked up by.
+    number = np.where((text >= 0) & (given > 0), given, 0).astype(np.int32)
+    usable = (text >= 0) & np.isfinite(x_px) & (given != 0)
     if not manner.only_x:
-        usable &= np.isfinite(y_px)
+        usable &= np.isfinite(y_px) | (given > 0)
     at = np.flatnonzero(usable)
     texts, x, y = text[at].astype(np.int64), x_px[at], y_px[at]
+    known_line = given[at] > 0
     by_line = np.full(len(geometry.line_counts), manner.nearest_line or manner.only_x)
     if manner.laid_out:
         by_line |= geometry.line_counts > 1
-    on_line = by_line[texts]
+    on_line = by_line[texts] | known_line
     slot = geometry.line_offsets[texts]
     if not manner.only_x:
-        rows = np.flatnonzero(on_line)
+        rows = np.flatnonzero(on_line & ~known_line)
         slot[rows] = nearest_line(geometry, texts[rows], y[rows])
+    rows = np.flatnonzero(known_line)
+    slot[rows] = numbered_line(geometry, texts[rows], given[at][rows])
     points = _Points(
         x,
         y,
@@ -146,50 +166,8 @@ def assign(
     inside = piece >= 0
     order[at] = np.where(inside, geometry.orders[piece], 0)
     of_piece = np.where(inside, geometry.piece_lines[piece], 0)
-    line[at] = np.where(known, geometry.line_numbers[slot], of_piece)
-    return Assigned(order, line)
-
-
-def nearest_line(geometry: Geometry, text: Offsets, y_px: Floats) -> Offsets:
-    """The line whose middle is vertically nearest; of two equally near ones the later.
-
-    Parameters
-    ----------
-    geometry : Geometry
-        The lines of the texts.
-    text : (n,) int64 array
-        The text of each point.
-    y_px : (n,) float64 array
-        Finite vertical positions.
-
-    Returns
-    -------
-    (n,) int64 array
-        Index into the geometry's lines.
-    """
-    middles = geometry.line_middles_px
-    first, stop = geometry.line_offsets[text], geometry.line_offsets[text + 1]
-    above = _last_at_or_before(middles, first, stop, y_px)
-    upper = np.maximum(above, first)
-    lower = np.minimum(above + 1, stop - 1)
-    return np.where(middles[lower] - y_px <= y_px - middles[upper], lower, upper)
-
-
-def _last_at_or_before(values: Floats, first: Offsets, stop: Offsets, wanted: Floats) -> Offsets:
-    """The last index in each ``first:stop`` with a value of at most ``wanted``, or ``first - 1``.
-
-    Values ascend within each stretch; the binary search runs over all stretches at once.
-    """
-    low, high = first.copy(), stop.copy()
-    longest = int((stop - first).max(initial=0))
-    for _ in range(longest.bit_length()):
-        middle = (low + high) >> 1
-        searching = low < high
-        middle_value = values[np.minimum(middle, len(values) - 1)]
-        right = searching & (middle_value <= wanted)
-        high = np.where(searching & ~right, middle, high)
-        low = np.where(right, middle + 1, low)
-    return low - 1
+    number[at] = np.where(known, geometry.line_numbers[slot], of_piece)
+    return Assigned(order, number)
 
 
 def _along_lines(geometry: Geometry, manner: Manner, points: _Points, level: Flags) -> Offsets:
@@ -211,7 +189,7 @@ def _along_lines(geometry: Geometry, manner: Manner, points: _Points, level: Fla
     )
     if not len(start):
         return np.full(len(along), -1, dtype=np.int64)
-    before = _last_at_or_before(start, points.first, points.stop, along)
+    before = last_at_or_before(start, points.first, points.stop, along)
     has_before = before >= points.first
     safe = np.maximum(before, 0)
     inside = level & has_before & (along < end[safe])

@@ -66,7 +66,7 @@ def read_definitions(
     layout = regions.layout
     manner = Manner(
         only_x=regions.vertical == "any",
-        nearest_line=lines is not None,
+        nearest_line=lines is not None and lines.method not in ("consensus", "none"),
         laid_out=regions.kind in LAID_OUT,
         right_to_left=layout is not None and layout.direction == "rtl",
         tolerance_px=float(regions.tolerance_px),

@@ -91,7 +91,13 @@ class RegionLibrary:
         """
         return self.text_of.get(values, -1)
 
-    def assign_points(self, text: NDArray[np.integer], x_px: Floats, y_px: Floats) -> Assigned:
+    def assign_points(
+        self,
+        text: NDArray[np.integer],
+        x_px: Floats,
+        y_px: Floats,
+        line: Integers | None = None,
+    ) -> Assigned:
         """Take points on the screen to regions.
 
         Parameters
@@ -100,26 +106,29 @@ class RegionLibrary:
             Index into ``texts`` for each point; -1 for none.
         x_px, y_px : (n,) float64 arrays
             Where the points are, from the left and from the top. NaN: no coordinate.
+        line : (n,) int32 array, optional
+            The line of each point where it is known, from 1; 0 for none, -1 where it is not known.
 
         Returns
         -------
         Assigned
-            Order of each point's region (0 outside) and number of its line (0 on none). Laid-out
+            Order of each point's region (0 outside) and number of its line (0 on none). On a known
+            line only x decides; a point on none is outside. Where the line is not known: laid-out
             text of one line: the point is on the line at the height of its box. Of several lines,
-            or with ``[lines]``: on the nearest. Boxes and polygons: on the line of the region hit,
-            with ``[lines]`` on the nearest. Without a coordinate: on none.
+            or with a nearest line asked for: on the nearest. Boxes and polygons: on the line of the
+            region hit, with a nearest line asked for on that. Without a coordinate: on none.
 
         Raises
         ------
         FaultError
-            If the definitions are labels.
+            If the definitions are labels, or a text has no such line.
 
         Notes
         -----
         A point on the edge between two neighbours goes to the later one. Of boxes the right and
         bottom edge are not their own (of right-to-left text the left one); a polygon has all of
-        its edges. With ``[lines]``, or ``vertical = "any"``, a polygon is looked up at the height
-        of its line's middle.
+        its edges. On a line that is known, and with ``vertical = "any"``, a polygon is looked up at
+        the height of its line's middle.
         """
         if self.geometry is None or self.manner is None:
             raise FaultError("regions known by labels were asked for points")
@@ -131,7 +140,15 @@ class RegionLibrary:
             text,
             np.asarray(x_px, dtype=np.float64),
             np.asarray(y_px, dtype=np.float64),
+            line,
         )
+
+    @property
+    def has_lines(self) -> bool:
+        """Whether some text has several lines, which y tells apart."""
+        if self.geometry is None or self.manner is None or self.manner.only_x:
+            return False
+        return bool((self.geometry.line_counts > 1).any())
 
     def assign_labels(
         self, text: NDArray[np.integer], label_code: NDArray[np.integer], labels: Sequence[str]

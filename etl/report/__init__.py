@@ -1,7 +1,8 @@
 """The audit page: what a build took in, what it left out, and which readers stand out."""
 
 from etl.report.audit import AUDIT, write_audit
-from etl.report.inputs import AccountRow, AuditInput, GalleryEntry, NotRecorded
+from etl.report.inputs import AccountRow, AuditInput, GalleryEntry, NotRecorded, UnsureTrial
+from etl.report.line_trust import LineTally, LineTrust
 from etl.report.logs import LogFate, LogMatter, LogsTold
 from etl.report.reader_profile import LineGrid, Profiles, ReaderProfile, TrialFates, profile_of
 
@@ -11,6 +12,8 @@ __all__ = [
     "AuditInput",
     "GalleryEntry",
     "LineGrid",
+    "LineTally",
+    "LineTrust",
     "LogFate",
     "LogMatter",
     "LogsTold",
@@ -18,6 +21,7 @@ __all__ = [
     "Profiles",
     "ReaderProfile",
     "TrialFates",
+    "UnsureTrial",
     "profile_of",
     "write_audit",
 ]

@@ -7,9 +7,9 @@ from dataclasses import dataclass
 
 from markupsafe import Markup, escape
 
-from etl.report.compared_by import MEASURES, Measure
 from etl.report.comparing import FENCE, FEWEST_TO_COMPARE
 from etl.report.inputs import AuditInput, GalleryEntry
+from etl.report.line_part import LinesPart, collect_lines, lines_headline
 from etl.report.logs import LogsPart, collect_logs, doubtful
 from etl.report.losses import Losses, collect_losses, differing
 from etl.report.rates import Rates, collect_rates
@@ -31,7 +31,7 @@ class Headline:
 
     Attributes
     ----------
-    kind : {"loss", "reader", "log", "absent", "fine"}
+    kind : {"loss", "lines", "reader", "log", "absent", "fine"}
         Decides its sign.
     label : str
         What kind of thing it is, in a word or two.
@@ -84,9 +84,7 @@ class AuditFacts:
     losses : Losses
         Where trials and fixations went.
     readers : Comparison
-        The readers beside one another.
-    measures : tuple of Measure
-        What they are compared by.
+        The readers beside one another, and what they are compared by.
     fence : str
         How many deviations off a reader stands out.
     fewest : int
@@ -101,6 +99,8 @@ class AuditFacts:
         Trials worth looking at.
     logs : LogsPart or None
         The logs; None where nothing is known of them.
+    lines : LinesPart or None
+        The lines of texts; None where nothing is known of them.
     study : tuple of Section
         As understood.
     says : dict of str to str
@@ -112,7 +112,6 @@ class AuditFacts:
     headlines: tuple[Headline, ...]
     losses: Losses
     readers: Comparison
-    measures: tuple[Measure, ...]
     fence: str
     fewest: int
     rates: Rates
@@ -121,6 +120,7 @@ class AuditFacts:
     notes: tuple[str, ...]
     gallery: tuple[GalleryEntry, ...]
     logs: LogsPart | None
+    lines: LinesPart | None
     study: tuple[Section, ...]
     says: dict[str, str]
 
@@ -147,7 +147,6 @@ def collect(given: AuditInput) -> AuditFacts:
         tuple(_headlines(given, losses, readers)),
         losses,
         readers,
-        MEASURES,
         f"{FENCE:g}",
         FEWEST_TO_COMPARE,
         collect_rates(given),
@@ -156,6 +155,7 @@ def collect(given: AuditInput) -> AuditFacts:
         tuple(text.removeprefix("note: ") for grave, text in told if not grave),
         tuple(given.gallery),
         collect_logs(given.logs) if given.logs.logs else None,
+        collect_lines(given),
         sections(given.study),
         _says(losses, readers, len(given.profiles.readers)),
     )
@@ -201,6 +201,9 @@ def _headlines(given: AuditInput, losses: Losses, readers: Comparison) -> list[H
         for loss in losses.factors
         if loss.differs
     ]
+    lines = lines_headline(given)
+    if lines is not None and lines[0] != "fine":
+        out.append(Headline(lines[0], "Lines not sure", lines[1], "#lines"))
     if readers.left_out:
         out.append(Headline("reader", "Left out", listed(readers.left_out, 12) + ".", "#readers"))
     out += [
@@ -217,6 +220,8 @@ def _headlines(given: AuditInput, losses: Losses, readers: Comparison) -> list[H
     if not out:
         text = "No reader stands out, and no loss of trials differs between conditions."
         out.append(Headline("fine", "Nothing", escape(text), "#losses"))
+    if lines is not None and lines[0] == "fine":
+        out.append(Headline(lines[0], "Lines", lines[1], "#lines"))
     return out
 
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 from functools import partial
 
@@ -136,8 +136,8 @@ MEASURES = (
     Measure(
         "height",
         "Height on the line",
-        "Median distance of fixations below the middle of the nearest line of their text; negative "
-        "is above.",
+        "Median distance of fixations below the middle of their line, or of the nearest one where "
+        "they are on none; negative is above.",
         lambda r: r.numbers.offset_px,
         _px,
         " px",
@@ -164,3 +164,30 @@ MEASURES = (
         100,
     ),
 )
+
+#: Compared only where some text has several lines and a method says how sure it is.
+LINES = Measure(
+    "lines",
+    "Lines not sure",
+    "Of a reader’s trials of several lines, the share whose lines are not sure.",
+    lambda r: _share(r.numbers.lines.unsure, r.numbers.lines.judged),
+    percent,
+    "%",
+    100,
+)
+
+
+def measures_of(readers: Iterable[ReaderNumbers]) -> tuple[Measure, ...]:
+    """What the readers of a study are compared by.
+
+    Parameters
+    ----------
+    readers : iterable of ReaderNumbers
+        All of them.
+
+    Returns
+    -------
+    tuple of Measure
+        With the lines where anything is known of them.
+    """
+    return (*MEASURES, LINES) if any(reader.lines.judged for reader in readers) else MEASURES

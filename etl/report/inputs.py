@@ -65,6 +65,24 @@ class NotRecorded:
 
 
 @dataclass(frozen=True, slots=True)
+class UnsureTrial:
+    """A trial that is not sure of its lines.
+
+    Attributes
+    ----------
+    participant, session, trial : str
+        Which; session is empty where readers came once.
+    confidence : float
+        Chance that its lines are right.
+    """
+
+    participant: str
+    session: str
+    trial: str
+    confidence: float
+
+
+@dataclass(frozen=True, slots=True)
 class GalleryEntry:
     """A trial worth looking at.
 
@@ -111,6 +129,8 @@ class AuditInput:
         Drawings of the trials most worth looking at.
     logs : LogsTold
         Where the lines of the logs went, and how the logs differ.
+    unsure : sequence of UnsureTrial
+        The trials least sure of their lines, the least sure first.
     """
 
     study: Mapping[str, Any]
@@ -122,3 +142,4 @@ class AuditInput:
     not_recorded: Sequence[NotRecorded] = ()
     gallery: Sequence[GalleryEntry] = field(default_factory=tuple)
     logs: LogsTold = field(default_factory=LogsTold)
+    unsure: Sequence[UnsureTrial] = ()

@@ -24,6 +24,7 @@ from etl.report.counts import (
     missing_counts,
     rate_counts,
 )
+from etl.report.line_trust import LineTally, LineTrust, tally
 from etl.tables import TableDesign
 
 #: The quantiles of fixation durations that are kept of a reader.
@@ -63,10 +64,13 @@ class TrialFates:
         The level of each factor, as its place in ``design.factors``.
     left_out_by : (trials,) int32 array
         The rule that left the trial out, as its place in ``design.left_out_by``; -1 where kept.
+    trust : LineTrust or None
+        How far the lines of the trials can be trusted; None where no lines are told apart.
     """
 
     factors: Mapping[str, NDArray[np.int32]]
     left_out_by: NDArray[np.int32]
+    trust: LineTrust | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -111,6 +115,8 @@ class ReaderNumbers:
         Median distance in the last third of the trials minus that in the first third.
     levels : mapping of str to str
         Factors of which the reader met one level only.
+    lines : LineTally
+        The reader's trials of several lines.
     """
 
     participant: str
@@ -124,6 +130,7 @@ class ReaderNumbers:
     offset_px: float | None
     drift_px: float | None
     levels: Mapping[str, str]
+    lines: LineTally = field(default_factory=LineTally)
 
 
 @dataclass(frozen=True, slots=True)
@@ -156,6 +163,11 @@ class Profiles:
 
     readers: list[ReaderNumbers] = field(default_factory=list)
     counts: StudyCounts = field(default_factory=StudyCounts)
+
+    @property
+    def lines(self) -> LineTally:
+        """The trials of several lines of all readers."""
+        return sum((reader.lines for reader in self.readers), LineTally())
 
     def add(self, profile: ReaderProfile) -> None:
         """Take in one more reader."""
@@ -215,6 +227,7 @@ def profile_of(
             offset_px=offset_px,
             drift_px=drift_px,
             levels=_only_levels(fates, design),
+            lines=tally(fates.trust),
         ),
         StudyCounts(
             Counter(zip(condition.tolist(), fates.left_out_by.tolist(), strict=True)),
@@ -286,7 +299,7 @@ def _steps(kept: _Kept, outside: str) -> tuple[int, int]:
 
 def _height(kept: _Kept, grid: LineGrid | None) -> tuple[float | None, float | None]:
     """How far below the middle of their lines fixations are, and how that changes."""
-    distance = _from_own_line(kept) if grid is None else _from_nearest_line(kept, grid)
+    distance = _from_own_line(kept) if grid is None else _from_line(kept, grid)
     known = np.isfinite(distance)
     if not known.any():
         return None, None
@@ -306,8 +319,8 @@ def _height(kept: _Kept, grid: LineGrid | None) -> tuple[float | None, float | N
     return offset, float(np.median(distance[part == 2]) - np.median(distance[part == 1]))
 
 
-def _from_nearest_line(kept: _Kept, grid: LineGrid) -> Floats:
-    """Distance of each fixation below the middle of the nearest line of its trial.
+def _from_line(kept: _Kept, grid: LineGrid) -> Floats:
+    """Distance of each fixation below the middle of its line; of one on none, of the nearest.
 
     A fixation may be so far off that the build gave it no line; leaving it out would hide just
     what is looked for. So the nearest of the lines up to the last that the trial has fixations on.
@@ -318,7 +331,8 @@ def _from_nearest_line(kept: _Kept, grid: LineGrid) -> Floats:
     np.maximum.at(last, kept.trial, kept.line)
     from_top = (kept.y_px - grid.top_px) / grid.height_px
     known = np.isfinite(from_top)
-    line = np.clip(np.floor(np.where(known, from_top, 0)), 0, last[kept.trial] - 1)
+    nearest = np.clip(np.floor(np.where(known, from_top, 0)), 0, last[kept.trial] - 1)
+    line = np.where(kept.line > 0, kept.line - 1, nearest)
     return kept.y_px - (grid.top_px + (line + 0.5) * grid.height_px)
 
 

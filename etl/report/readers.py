@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from markupsafe import Markup, escape
 
 from etl.report import charts
-from etl.report.compared_by import MEASURES, RAYNER, Measure, Reader
+from etl.report.compared_by import RAYNER, Measure, Reader, measures_of
 from etl.report.comparing import FENCE, FEWEST_TO_COMPARE, robust_fence
 from etl.report.inputs import AuditInput
 from etl.report.losses import of_study
@@ -122,6 +122,8 @@ class Comparison:
         Each reader who was left out, with the rule.
     judged : bool
         Whether there are readers enough to compare.
+    measures : tuple of Measure
+        What they are compared by.
     """
 
     strips: tuple[Strip, ...]
@@ -131,6 +133,7 @@ class Comparison:
     standing_out: tuple[Markup, ...]
     left_out: tuple[Markup, ...]
     judged: bool
+    measures: tuple[Measure, ...]
 
 
 def collect_readers(given: AuditInput, levels: Mapping[str, str]) -> Comparison:
@@ -146,7 +149,8 @@ def collect_readers(given: AuditInput, levels: Mapping[str, str]) -> Comparison:
     readers = _with_trials(given, levels)
     reasons: dict[str, list[Markup]] = {}
     strange: set[tuple[str, str]] = set()
-    strips = tuple(_strip(measure, readers, reasons, strange) for measure in MEASURES)
+    measures = measures_of(given.profiles.readers)
+    strips = tuple(_strip(measure, readers, reasons, strange) for measure in measures)
     groups = tuple(
         factor
         for factor in given.design.factors
@@ -156,7 +160,7 @@ def collect_readers(given: AuditInput, levels: Mapping[str, str]) -> Comparison:
     ends = [q for own in every for q in own]
     scale = charts.round_scale(min(ends, default=0), max(ends, default=1), most=3)
     rows = tuple(
-        _row(place, reader, groups, scale, (reasons, strange))
+        _row((place, reader), measures, groups, scale, (reasons, strange))
         for place, reader in enumerate(readers, start=1)
     )
     named = {r.numbers.participant: r for r in readers}
@@ -176,6 +180,7 @@ def collect_readers(given: AuditInput, levels: Mapping[str, str]) -> Comparison:
             if r.left_out
         ),
         len(readers) >= FEWEST_TO_COMPARE,
+        measures,
     )
 
 
@@ -289,19 +294,20 @@ def _drawn(
 
 
 def _row(
-    place: int,
-    reader: Reader,
+    which: tuple[int, Reader],
+    measures: Sequence[Measure],
     groups: Sequence[str],
     scale: charts.Scale,
     noted: tuple[Mapping[str, Sequence[Markup]], set[tuple[str, str]]],
 ) -> TableRow:
     """A reader in the table."""
+    place, reader = which
     reasons, strange = noted
     who = reader.numbers.participant
     remarks = [f"left out by {reader.left_out}"] if reader.left_out else []
     own = [*remarks, *reasons.get(who, ())]
     cells = []
-    for measure in MEASURES:
+    for measure in measures:
         value = measure.value(reader)
         cells.append(
             Cell(

@@ -12,6 +12,7 @@ _FIXATIONS = {
     "first": "among the first {} of a trial",
     "last": "among the last {} of a trial",
     "blink": "touched by a blink",
+    "undersweep": "where the eyes came down short of the beginning of a line and went on to it",
     "merge": "joined to a neighbour: {}",
     "under_ms": "shorter than {} ms",
     "over_ms": "longer than {} ms",
@@ -19,6 +20,7 @@ _FIXATIONS = {
 _TRIALS = {
     "notes": "named in the experimenter’s notes",
     "fewest_fixations": "fewer than {} fixations left",
+    "line_confidence_under": "less than {} sure which lines were read",
     "outside_share_over": "more than {} of the fixations outside every region",
     "duration_ms": "not within {} ms from the first fixation to the last",
     "blink_in_first_pass_of": "a blink in the first pass on {}",
@@ -92,4 +94,5 @@ def _limit(rule: str, limit: Any) -> str:
         return " to ".join(f"{v:,g}" for v in limit) if numbers else ", ".join(map(str, limit))
     if isinstance(limit, bool | str) or limit is None:
         return ""
-    return f"{100 * limit:g}%" if "share" in rule else f"{limit:g}"
+    in_percent = "share" in rule or "confidence" in rule
+    return f"{100 * limit:g}%" if in_percent else f"{limit:g}"

@@ -6,6 +6,8 @@ from typing import Final
 
 from etl.report.trace_glyphs import width_of
 from etl.report.trace_input import TracedFixation, TracedTrial
+from etl.report.trace_lines import line_facts
+from etl.report.trace_marks import diamond, line_marks
 from etl.report.trace_markup import number, straight, tag, text, wrapped
 from etl.report.trace_phrases import ms
 from etl.report.trace_places import PLOT_RIGHT, Bar, Places
@@ -94,6 +96,11 @@ def _bar(traced: TracedTrial, bar: Bar, own: str, taken: list[tuple[float, float
             ],
         ),
     ]
+    marks = line_marks(fixation, (bar.x, middle - 4), (half, (bar.bottom - bar.top) / 2))
+    if traced.lines is not None and not fixation.line:
+        marks.append(diamond(bar.x, middle - 4))
+    if marks:
+        parts.insert(2, wrapped("g", {"class": "line-marks"}, marks))
     if bar.beyond:
         tip = bar.x + bar.beyond * 12
         d = f"M{number(tip)} {number(middle - 4)} l{-6 * bar.beyond} -5 l0 10 z"
@@ -128,6 +135,9 @@ def _hint(traced: TracedTrial, fixation: TracedFixation) -> str:
         parts.append(f"from {ms(fixation.onset_ms)} ms in log time")
     if fixation.placed:
         parts.append(f"x {ms(fixation.x_px)} px, y {ms(fixation.y_px)} px")
+    if traced.lines is not None:
+        parts.append(f"line {fixation.line}" if fixation.line else "no line")
+        parts += line_facts(fixation)
     if fixation.region_order:
         visit = f", visit {fixation.visit}" if fixation.visit else ""
         first = ", first pass" if fixation.first_pass else ""

@@ -5,7 +5,11 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from typing import Literal
+from typing import Final, Literal
+
+#: Below this confidence the line of a fixation is called unsure (our choice: of those above it, on
+#: simulated trials, hardly any is wrong).
+UNSURE_BELOW: Final = 0.9
 
 
 @dataclass(frozen=True, slots=True)
@@ -102,6 +106,17 @@ class TracedFixation:
         Why it was left out; None where it is kept.
     merged_into : int
         Number of the fixation it was merged into; 0 where it was not.
+    line_confidence : float
+        Chance that its line, or that it is on none, is right; NaN where none was told.
+    return_sweep : bool
+        Whether a return sweep came down on it.
+    undersweep : bool
+        Whether that sweep fell short and was corrected.
+    on_none : str
+        Why it belongs to no line of the text, such as ``stray``; empty where no method says so.
+    line_told : int or None
+        Where its line was set by hand: the line on which it was without that, 0 for none. None
+        where no hand set it.
     """
 
     number: int
@@ -117,6 +132,11 @@ class TracedFixation:
     source_line: int
     removal: Removal | None = None
     merged_into: int = 0
+    line_confidence: float = math.nan
+    return_sweep: bool = False
+    undersweep: bool = False
+    on_none: str = ""
+    line_told: int | None = None
 
     @property
     def kept(self) -> bool:
@@ -132,6 +152,46 @@ class TracedFixation:
     def placed(self) -> bool:
         """Whether it has coordinates."""
         return not math.isnan(self.x_px)
+
+    @property
+    def by_hand(self) -> bool:
+        """Whether its line was set by hand."""
+        return self.line_told is not None
+
+    @property
+    def moved_by_hand(self) -> bool:
+        """Whether the hand set another line than was there."""
+        return self.line_told is not None and self.line_told != self.line
+
+    @property
+    def unsure(self) -> bool:
+        """Whether its line was told with little confidence."""
+        return self.line_confidence < UNSURE_BELOW
+
+
+@dataclass(frozen=True, slots=True)
+class TracedLines:
+    """How the lines of a trial of several lines were told.
+
+    Attributes
+    ----------
+    method : str
+        As ``[lines] method``.
+    middles_px : mapping of int to float
+        The height of the middle of each line, by its number.
+    confidence : float
+        Chance that the lines of the trial are right; NaN where none was told.
+    sure : bool
+        Whether that is enough.
+    corrections : str
+        The table of lines set by hand, as the study file names it; empty where it names none.
+    """
+
+    method: str
+    middles_px: Mapping[int, float]
+    confidence: float = math.nan
+    sure: bool = False
+    corrections: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -179,6 +239,8 @@ class TracedTrial:
         Why the whole trial is left out; None where it is kept.
     values_set_missing : dict of (str, int) to Removal
         Outcomes that a rule on values set missing, by measure and region order.
+    lines : TracedLines or None
+        How lines were told; None where the text has one line, or nobody told.
     """
 
     participant: str
@@ -199,6 +261,7 @@ class TracedTrial:
     no_opportunity: Literal["missing", "zero"] = "missing"
     removal: Removal | None = None
     values_set_missing: Mapping[tuple[str, int], Removal] = field(default_factory=dict)
+    lines: TracedLines | None = None
 
     def region(self, order: int) -> str:
         """The name of the region with an order; ``outside`` for 0."""

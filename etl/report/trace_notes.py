@@ -6,6 +6,7 @@ from typing import Final
 
 from etl.report.trace_glyphs import printable, shortened, width_of
 from etl.report.trace_input import Piece, TracedFixation, TracedTrial
+from etl.report.trace_lines import WHY_ON_NONE, confidence_text
 from etl.report.trace_markup import number, tag, text, wrapped
 from etl.report.trace_phrases import ms
 from etl.report.trace_places import PLOT_RIGHT, Bar, Places
@@ -50,7 +51,7 @@ def _wanted(traced: TracedTrial, places: Places) -> list[tuple[float, str, str]]
         found.append((y, "back", f"R{place} {_from_to(traced, orders, ends)}"))
     whole = traced.removal.rule if traced.removal is not None else ""
     for bar in places.bars:
-        words = _note(traced, bar, whole)
+        words = _joined(bar.fixation, _note(traced, bar, whole), _line_note(bar.fixation))
         if words:
             kind = "out" if not bar.fixation.kept else "outside"
             found.append(((bar.top + bar.bottom) / 2, kind, words))
@@ -81,9 +82,30 @@ def _note(traced: TracedTrial, bar: Bar, whole: str) -> str:
         limit = f" = {removal.limit}" if removal.limit else ""
         found = f", found {removal.observed}" if removal.observed else ""
         return f"{fixation.number} left out: {removal.rule}{limit}{found}"
+    if fixation.on_none:
+        why = WHY_ON_NONE.get(fixation.on_none, fixation.on_none)
+        return f"{fixation.number} on no line{beyond or ': ' + why}"
     if not fixation.region_order:
         return f"{fixation.number} outside{beyond or _how_far(traced, fixation)}"
     return f"{fixation.number} lies{beyond[1:]}" if beyond else ""
+
+
+def _line_note(fixation: TracedFixation) -> str:
+    """What is to be said of a fixation's line: that it is unsure, or was changed by hand."""
+    on = f"line {fixation.line}" if fixation.line else "no line"
+    if fixation.moved_by_hand:
+        was = f"line {fixation.line_told}" if fixation.line_told else "no line"
+        return f"{on} by hand, was {was}"
+    if fixation.unsure:
+        return f"{on if fixation.line else 'that'} {confidence_text(fixation.line_confidence)} sure"
+    return "undersweep" if fixation.undersweep else ""
+
+
+def _joined(fixation: TracedFixation, note: str, of_line: str) -> str:
+    """Both notes on a fixation in one."""
+    if not of_line:
+        return note
+    return f"{note}; {of_line}" if note else f"{fixation.number} {of_line}"
 
 
 def _how_far(traced: TracedTrial, fixation: TracedFixation) -> str:

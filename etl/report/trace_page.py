@@ -9,6 +9,7 @@ from __future__ import annotations
 from typing import Final
 
 from etl.report.trace_input import TracedTrial
+from etl.report.trace_line_table import lines_on_page
 from etl.report.trace_markup import text, wrapped
 from etl.report.trace_picture import draw, identity
 from etl.report.trace_words import Explanation, Statement, explain
@@ -29,6 +30,8 @@ _STYLE: Final = (
     "th,td{text-align:left;vertical-align:top;padding:3px 12px 3px 0;"
     "border-top:1px solid var(--edge);overflow-wrap:anywhere}"
     "th{font-weight:600;width:16em}td.fixations{width:9em;color:var(--muted)}"
+    "table.lines{width:auto}.lines th,.lines td{width:auto;font-variant-numeric:tabular-nums}"
+    "summary{cursor:pointer;margin:8px 0}tr.unsure td{font-weight:600}"
     "tr.missing td{color:var(--missing)}a{color:var(--link)}"
     "nav ol{list-style:none;padding:0;margin:6px 0;display:flex;flex-wrap:wrap;gap:2px 14px}"
     "@media print{nav{display:none}tr{break-inside:avoid}h3{break-after:avoid}}"
@@ -66,6 +69,14 @@ def page(traced: TracedTrial, explanation: Explanation | None = None) -> str:
     if said.left_out:
         items = [wrapped("li", {}, [text(sentence)]) for sentence in said.left_out]
         parts += [wrapped("h2", {}, ["Left out, or aside"]), wrapped("ul", {}, items)]
+    if said.lines:
+        items = [wrapped("li", {}, [text(sentence)]) for sentence in said.lines]
+        parts += [wrapped("h2", {}, ["Lines"]), wrapped("ul", {}, items)]
+        if said.whole:
+            summary = wrapped("summary", {}, ["Every fixation and its line"])
+            table = lines_on_page(traced, own)
+            within = wrapped("div", {"class": "scroll", "tabindex": "0"}, [table])
+            parts.append(wrapped("details", {}, [summary, within]))
     regions = [region for region in said.regions if region.statements]
     if regions:
         parts.append(wrapped("h2", {}, ["Why each outcome is what it is"]))

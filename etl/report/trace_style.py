@@ -34,6 +34,7 @@ _RULES: Final = (
     (" .halo", "paint-order:stroke;stroke:var(--ground);stroke-width:5px;stroke-linejoin:round"),
     (" .banner", "fill:var(--banner);stroke:var(--edge)"),
     (" .text", f"font-family:{_MONO};white-space:pre"),
+    (" .under-marks", "fill:var(--muted)"),
     (" .name", "font-size:11px;fill:var(--muted)"),
     (" .stripe.odd", "fill:var(--odd)"),
     (" .stripe.even", "fill:var(--even)"),
@@ -63,7 +64,12 @@ _RULES: Final = (
     (" .note.out,{0} .note.outside", "fill:var(--muted)"),
     (" .dot", "stroke:var(--first);stroke-width:1.2;fill:var(--first)"),
     (" .dot.later", "fill:var(--ground)"),
-    (" .dot.out", "stroke:var(--out);fill:none;stroke-dasharray:1.5 1"),
+    (" .link", "stroke:var(--muted);stroke-width:1;fill:none"),
+    (" .link.moved", "stroke:var(--back);stroke-width:1.6"),
+    (" .link-tip", "fill:var(--back)"),
+    (" .none", "stroke:var(--ink);stroke-width:1.4;fill:var(--ground)"),
+    (" .doubt", "stroke:var(--ink);stroke-width:1.3;stroke-dasharray:2.4 2;fill:none"),
+    (" .hand", "stroke:var(--ink);stroke-width:1.3;fill:none"),
     (" .fixation:target .bar", "stroke:var(--ink);stroke-width:4"),
 )
 _ROOT: Final = ".trace-picture"

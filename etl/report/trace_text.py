@@ -7,6 +7,7 @@ from typing import Final
 
 from etl.report.trace_glyphs import printable, shortened, width_of
 from etl.report.trace_input import TracedFixation, TracedTrial
+from etl.report.trace_line_table import KEY, lines_in_columns
 from etl.report.trace_phrases import ms
 from etl.report.trace_places import Across, Places, Stretch, onsets_of, place
 from etl.report.trace_words import Explanation, Statement, explain
@@ -39,6 +40,10 @@ class Marks:
 DRAWN: Final = Marks("█", "▒", "·", "×", "│", "◀", "▶", "═", "╝", "╚", "…")
 PLAIN: Final = Marks("#", "o", ".", "x", "|", "<", ">", "=", "'", "'", "~")
 
+#: What is said where lines may be wrong.
+_TO_CORRECT: Final = (
+    "To correct lines, add --lines FILE.csv to this command: it writes them into a table to edit."
+)
 #: What stands for typographic characters where the terminal has plain ones only; one for one.
 _PLAIN_QUOTES: Final = str.maketrans({"“": '"', "”": '"', "…": "~"})
 
@@ -89,6 +94,8 @@ def as_text(
     marks = DRAWN if _can_show(encoding) else PLAIN
     said = explanation or explain(traced)
     lines = [*_head(traced, width), "", *_Drawing(traced, width, marks).lines(), ""]
+    if said.lines:
+        lines += _lines(traced, said, width)
     lines += _words(said, width)
     text = "\n".join(line.rstrip() for line in lines).rstrip() + "\n"
     if marks is PLAIN:
@@ -255,6 +262,19 @@ class _Drawing:
         if fixation.number in self.named:
             words = f"R{self.named[fixation.number]} {words}"
         return shortened(printable(words), _NAME, self.marks.ellipsis)
+
+
+def _lines(traced: TracedTrial, said: Explanation, width: int) -> list[str]:
+    """What is said of lines, and every fixation with its own where all is to be told."""
+    lines = ["Lines"]
+    for sentence in said.lines:
+        lines += wrapped_text(sentence, width, first="  ", rest="    ")
+    if said.whole:
+        lines += ["", *lines_in_columns(traced, width), *wrapped_text(KEY, width)]
+    sure = traced.lines is None or traced.lines.sure
+    if not sure or any(fixation.unsure for fixation in traced.fixations):
+        lines += wrapped_text(_TO_CORRECT, width)
+    return [*lines, ""]
 
 
 def _words(said: Explanation, width: int) -> list[str]:

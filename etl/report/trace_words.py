@@ -8,6 +8,7 @@ from dataclasses import dataclass, replace
 
 from etl.errors import FaultError
 from etl.report.trace_input import Cell, TracedFixation, TracedTrial
+from etl.report.trace_lines import tell_lines
 from etl.report.trace_phrases import Said, fixations, ms, numbers, quoted, sentence
 from etl.report.trace_region_words import tell_region
 from etl.report.trace_story import Story
@@ -65,17 +66,24 @@ class Explanation:
         What it holds.
     left_out : tuple of str
         A sentence for all that was left out, or stands aside, and why.
+    lines : tuple of str
+        How the lines of a text of several were told, and how far that can be trusted; the first
+        sentence is about the trial as a whole.
     trial : tuple of Statement
         The outcomes of the trial.
     regions : tuple of RegionExplained
         The regions in reading order.
+    whole : bool
+        Whether it is about all regions and outcomes.
     """
 
     heading: str
     summary: str
     left_out: tuple[str, ...]
+    lines: tuple[str, ...]
     trial: tuple[Statement, ...]
     regions: tuple[RegionExplained, ...]
+    whole: bool = True
 
     def only(self, regions: Collection[str], measures: Collection[str]) -> Explanation:
         """The part of it that is about some regions and outcomes; empty stands for all.
@@ -95,6 +103,8 @@ class Explanation:
 
         return replace(
             self,
+            lines=self.lines[:1],
+            whole=False,
             trial=() if regions else chosen(self.trial),
             regions=tuple(
                 replace(region, statements=chosen(region.statements))
@@ -161,7 +171,9 @@ fixation 3 came to it only afterwards'
         raise FaultError(
             f"{traced.heading}: the explanation and the tables differ: {'; '.join(problems)}"
         )
-    return Explanation(traced.heading, traced.summary, _left_out(traced), trial, regions)
+    return Explanation(
+        traced.heading, traced.summary, _left_out(traced), tell_lines(traced), trial, regions
+    )
 
 
 def _region_statement(

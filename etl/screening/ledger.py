@@ -53,6 +53,12 @@ class Entry(NamedTuple):
     also: str
     row: int
 
+    @property
+    def place(self) -> tuple[bool, int, int, int, int]:
+        """Where the row stands among those of a reader."""
+        level = LEVELS.index(self.level)
+        return (self.trial < 0, self.trial, level, self.fixation, self.region)
+
 
 @dataclass(slots=True)
 class Accounts:
@@ -175,7 +181,7 @@ def entries_of(
         also = " ".join(_later(screened.reader, 0, rule))
         shown = limits.shown.get(rule, "")
         entries.append(Entry("participant", -1, -1, -1, rule, shown, why, LEFT_OUT, also, -1))
-    return sorted(entries, key=_place)
+    return sorted(entries, key=lambda entry: entry.place)
 
 
 def _observed_of_reader(screened: Screened, note: str) -> str:
@@ -216,18 +222,7 @@ def with_values(entries: list[Entry], far: Sequence[FarValue], limits: Limits) -
         )
         for one in far
     ]
-    return sorted([*entries, *added], key=_place)
-
-
-def _place(entry: Entry) -> tuple[bool, int, int, int, int]:
-    """Where an entry stands among those of a reader."""
-    return (
-        entry.trial < 0,
-        entry.trial,
-        LEVELS.index(entry.level),
-        entry.fixation,
-        entry.region,
-    )
+    return sorted([*entries, *added], key=lambda entry: entry.place)
 
 
 def _fixation_entries(screened: Screened, limits: Limits, above: list[str]) -> Iterable[Entry]:

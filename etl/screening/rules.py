@@ -15,6 +15,8 @@ FIXATION_RULES: Final = (
     "first",
     "last",
     "blink",
+    # Before merging: what is no reading of its place is joined to no other fixation.
+    "undersweep",
     "merge",
     "under_ms",
     "over_ms",
@@ -22,6 +24,8 @@ FIXATION_RULES: Final = (
 TRIAL_RULES: Final = (
     "notes",
     "fewest_fixations",
+    # Before the rules that look at regions: where lines are not sure, regions are not.
+    "line_confidence_under",
     "outside_share_over",
     "duration_ms",
     "blink_in_first_pass_of",
@@ -82,6 +86,8 @@ class Limits:
         Durations out of range.
     fewest_fixations : int
         Kept fixations that a trial needs.
+    line_confidence_under : float
+        How sure the lines of a trial must be, from 0 to 1.
     outside_share_over : float
         Share of kept fixations outside every region.
     duration_ms : tuple of float
@@ -106,6 +112,7 @@ class Limits:
     under_ms: float = 0.0
     over_ms: float = math.inf
     fewest_fixations: int = 0
+    line_confidence_under: float = -math.inf
     outside_share_over: float = math.inf
     duration_ms: tuple[float, float] = (-math.inf, math.inf)
     blink_regions: tuple[str, ...] = ()

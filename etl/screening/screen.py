@@ -29,6 +29,9 @@ class Recorded:
         Whether a blink touches the fixation.
     left_out : (n,) int8 array
         Code of what left it out before screening; -1 where nothing did.
+    undersweep : (n,) bool array, optional
+        Whether a return sweep came down here short of the beginning of a line; None where nothing
+        is known of lines.
     """
 
     trial: NDArray[np.int64]
@@ -40,6 +43,7 @@ class Recorded:
     y_px: NDArray[np.float64]
     blink: Mask
     left_out: NDArray[np.int8]
+    undersweep: Mask | None = None
 
 
 @dataclass(slots=True)
@@ -123,6 +127,9 @@ def _speaks_against(
         return recorded.from_end <= limits.last
     if rule == "blink":
         return recorded.blink.copy()
+    if rule == "undersweep":
+        none = np.zeros(len(recorded.trial), dtype=bool)
+        return none if recorded.undersweep is None else recorded.undersweep.copy()
     if rule == "under_ms":
         return screened.duration_ms < limits.under_ms
     if rule == "over_ms":
@@ -176,6 +183,9 @@ class TrialQuantities:
         1 right, 0 wrong, NaN where nothing was asked.
     cell : (trials,) int64 array
         Which combination of the factors.
+    line_confidence : (trials,) float64 array, optional
+        How sure the lines of the trial are, from 0 to 1; NaN where no method tells, None where none
+        does for any trial.
     """
 
     in_study: Mask
@@ -187,6 +197,7 @@ class TrialQuantities:
     no_first_pass: Mask
     answer: NDArray[np.float64]
     cell: NDArray[np.int64]
+    line_confidence: NDArray[np.float64] | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -225,6 +236,9 @@ def screen_trials(trials: TrialQuantities, limits: Limits) -> Verdict:
     """
     with np.errstate(invalid="ignore"):
         share = np.where(trials.kept > 0, trials.outside / np.maximum(trials.kept, 1), 0.0)
+    sure = trials.line_confidence
+    if sure is None:
+        sure = np.full(len(trials.kept), np.nan)
     low, high = limits.duration_ms
     against: dict[str, tuple[Mask, NDArray[np.float64]]] = {
         "notes": (trials.noted, trials.noted.astype(np.float64)),
@@ -232,6 +246,8 @@ def screen_trials(trials: TrialQuantities, limits: Limits) -> Verdict:
             trials.kept < limits.fewest_fixations,
             trials.kept.astype(np.float64),
         ),
+        # Not knowing speaks against nobody: NaN is under no limit.
+        "line_confidence_under": (sure < limits.line_confidence_under, sure),
         "outside_share_over": (share > limits.outside_share_over, share),
         "duration_ms": (
             (trials.duration_ms < low) | (trials.duration_ms > high),

@@ -6,6 +6,7 @@ import os
 from pathlib import Path
 
 from etl.measures import SELECTABLE
+from etl.session.line_file import write_lines
 from etl.session.one_trial import Wanted, explained, trace, write_picture
 from etl.session.result import Result
 from etl.session.run import build, check
@@ -20,6 +21,7 @@ __all__ = [
     "explained",
     "load_study",
     "trace",
+    "write_lines",
     "write_picture",
 ]
 

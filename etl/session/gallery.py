@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Final, NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-from etl.report import GalleryEntry
+from etl.report import GalleryEntry, LineTrust, UnsureTrial
 from etl.report.trace_picture import draw
 from etl.screening.ledger import Screened
 from etl.screening.rules import LEFT_OUT_BY, TRIAL_RULES
@@ -18,8 +18,12 @@ if TYPE_CHECKING:
     from etl.session.tracing import Tracer
     from etl.session.work import ReaderTask
 
-#: How many trials are shown for each reason that is a matter of degree.
+#: How many trials are shown for each reason that is a matter of degree; of those not sure of their
+#: lines, how many are drawn, and how many are named.
 _BEST = 2
+_UNSURE_DRAWN = 4
+_UNSURE_NAMED = 24
+_UNSURE = "lines not sure"
 _DEGREES: Final = {
     "left out": "of all trials kept, {score:.0%} of its fixations were left out, the largest share",
     "outside": "of all trials kept, {score:.0%} of its fixations lie outside every region, the "
@@ -51,6 +55,9 @@ class Candidate(NamedTuple):
 
     def why(self, place: int) -> str:
         """Why it was chosen, in words; ``place`` counts those with the same reason, from 0."""
+        if self.reason == _UNSURE:
+            least = " the least sure of all:" if place == 0 else ""
+            return f"not sure of its lines,{least} a confidence of {1 - self.score:.0%}"
         if self.reason in TRIAL_RULES:
             return f"the first trial that the rule {self.reason} left out"
         words = _DEGREES[self.reason].format(score=self.score)
@@ -68,6 +75,7 @@ def candidates(
     screened: Screened,
     outside: NDArray[np.bool_],
     regressions: NDArray[np.int64],
+    trust: LineTrust | None = None,
 ) -> list[Candidate]:
     """The trials of one reader that may be worth looking at: the utmost of each kind.
 
@@ -81,6 +89,8 @@ def candidates(
         Which kept fixations lie outside every region.
     regressions : (trials,) int64 array
         Regressive saccades of each trial; 0 where it is left out.
+    trust : LineTrust, optional
+        How far the lines of each trial can be trusted; absent where texts have no lines.
 
     Returns
     -------
@@ -92,6 +102,7 @@ def candidates(
         for code in np.unique(codes).tolist()
         if code >= 0 and LEFT_OUT_BY[code] in TRIAL_RULES
     ]
+    found += _unsure(participant, trust)
     kept_trials = codes < 0
     if not kept_trials.any():
         return found
@@ -113,6 +124,18 @@ def candidates(
     return found
 
 
+def _unsure(participant: str, trust: LineTrust | None) -> list[Candidate]:
+    """The trials of one reader that are not sure of their lines, the least sure first."""
+    if trust is None:
+        return []
+    rows = np.flatnonzero(trust.unsure)
+    rows = rows[np.argsort(trust.confidence[rows], kind="stable")][:_UNSURE_NAMED]
+    return [
+        Candidate(_UNSURE, 1 - float(trust.confidence[row]), participant, row)
+        for row in rows.tolist()
+    ]
+
+
 class Choice:
     """Chooses among the candidates of all readers, in the order of the readers."""
 
@@ -125,19 +148,46 @@ class Choice:
             best = self._best.setdefault(one.reason, [])
             best.append(one)
             best.sort(key=lambda candidate: -candidate.score)  # stable: earlier readers first
-            del best[1 if one.reason in TRIAL_RULES else _BEST :]
+            del best[_most(one.reason) :]
+
+    def unsure(self, tasks: Mapping[str, ReaderTask], tracer: Tracer) -> Sequence[UnsureTrial]:
+        """The trials least sure of their lines, the least sure first.
+
+        Parameters
+        ----------
+        tasks : mapping of str to ReaderTask
+            The work on each reader.
+        tracer : Tracer
+            Knows the names of trials.
+
+        Returns
+        -------
+        sequence of UnsureTrial
+        """
+        named = []
+        for one in self._best.get(_UNSURE, ()):
+            key = tracer.key(tasks[one.participant].trials, one.trial)
+            named.append(UnsureTrial(one.participant, key.session, key.trial, 1 - one.score))
+        return named
 
     def chosen(self) -> Sequence[tuple[Candidate, str]]:
         """The trials to be shown, each once, with every reason why."""
-        order = (*_DEGREES, *TRIAL_RULES)
+        order = (_UNSURE, *_DEGREES, *TRIAL_RULES)
         reasons: dict[tuple[str, int], list[str]] = {}
         first: dict[tuple[str, int], Candidate] = {}
         for reason in order:
-            for place, one in enumerate(self._best.get(reason, ())):
+            for place, one in enumerate(self._best.get(reason, ())[:_UNSURE_DRAWN]):
                 key = (one.participant, one.trial)
                 first.setdefault(key, one)
                 reasons.setdefault(key, []).append(one.why(place))
         return [(first[key], "; ".join(why)) for key, why in reasons.items()]
+
+
+def _most(reason: str) -> int:
+    """How many candidates are kept for a reason."""
+    if reason == _UNSURE:
+        return _UNSURE_NAMED
+    return 1 if reason in TRIAL_RULES else _BEST
 
 
 def drawn(
@@ -176,6 +226,7 @@ def drawn(
             one.participant,
             key,
             int(task.trials.text[one.trial]),
+            done[one.participant].trust,
         )
         entries.append(GalleryEntry(traced.heading, why, draw(traced), traced.heading))
     return entries

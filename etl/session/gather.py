@@ -12,7 +12,6 @@ import pyarrow as pa
 from numpy.typing import NDArray
 
 from etl.errors import Findings
-from etl.export.rows import TrialColumns
 from etl.files import Coded, group_rows, number_of
 from etl.measures import MEASURES, REASONS, TRIAL_MEASURES, Measure, select
 from etl.parsers import LogReader
@@ -25,7 +24,8 @@ from etl.session.notices import notice_similar_readers, notice_what_is_missing
 from etl.session.odd_values import notice_odd_regions, notice_odd_values
 from etl.session.plan import Plan
 from etl.session.reader import Options
-from etl.session.trial_facts import TrialFacts, trial_facts
+from etl.session.reader_tasks import Corrections, reader_tasks, texts_in
+from etl.session.trial_facts import trial_facts
 from etl.session.work import LogAnswer, LogTask, LogWork, ReaderTask, map_tasks
 from etl.tables import CovariateColumn, IdColumn, MeasureColumn, TableDesign
 from etl.trials import IDS, KnownTrials, SeenTrials
@@ -158,7 +158,8 @@ def gather(
     }
     design = _design(plan, trials, levels, covariates)
     facts = trial_facts(plan, trials, shown, findings, complete=complete)
-    tasks = _tasks(design, trials, (text, good), facts, parts)
+    corrections = Corrections(plan.corrections, findings, complete)
+    tasks = reader_tasks(design, trials, (text, good), facts, parts, corrections)
     study = plan.study
     options = Options(
         study.trials.repeated,
@@ -168,6 +169,7 @@ def gather(
         None
         if study.regions.layout is None
         else LineGrid(study.regions.layout.top_px, study.regions.layout.line_height_px),
+        plan.lines,
     )
     return Gathered(design, options, plan.library, kept[1], tasks, facts.inputs, unrecorded)
 
@@ -273,7 +275,7 @@ def _design(
     study = plan.study
     known = trials.known
     ids = {
-        name: IdColumn.of(_present(known[name]) if name in known else ())
+        name: IdColumn.of(texts_in(known[name]) if name in known else ())
         for name in IDS
         if name in known or name == "item"
     }
@@ -288,12 +290,8 @@ def _design(
         (*REASONS, OUTLIER) if plan.limits.on("outlier_sd") else REASONS,
         columns_of_accounts(plan.limits),
         tuple(shown for _, shown in plan.logs),
+        lines=plan.lines is not None,
     )
-
-
-def _present(column: Coded) -> tuple[str, ...]:
-    """The texts that occur in a column."""
-    return tuple(column.values[code] for code in np.unique(column.codes).tolist() if code >= 0)
 
 
 def _covariate(
@@ -306,7 +304,7 @@ def _covariate(
     """Numbers where every value that is there is one; a value such as 007 is a name."""
     trials, text = known
     column = trials.known[name]
-    texts = _present(column.take(text >= 0))
+    texts = texts_in(column.take(text >= 0))
     words = [value for value in texts if number_of(value) is None]
     if texts and not words and not any(_PADDED.match(value) for value in texts):
         return CovariateColumn("number")
@@ -322,68 +320,6 @@ def _covariate(
                 fix="correct the cell, or add the word to [logs] missing if it stands for no value",
             )
     return CovariateColumn("text", tuple(sorted(texts)))
-
-
-def _tasks(
-    design: TableDesign,
-    trials: KnownTrials,
-    looked_up: tuple[NDArray[np.int32], NDArray[np.bool_]],
-    facts: TrialFacts,
-    parts: dict[str, list[tuple[Path, int, int]]],
-) -> list[ReaderTask]:
-    """The readers with their trials in the order of the tables; readers with a problem left out."""
-    text, good = looked_up
-    known = trials.known
-    length = len(trials)
-    ids = {
-        name: known[name].recoded(design.ids[name].values)
-        if name in known
-        else np.full(length, -1, dtype=np.int32)
-        for name in design.ids
-    }
-    covariates: dict[str, NDArray[np.float64] | NDArray[np.int32]] = {}
-    for name, covariate in design.covariates.items():
-        column = known[name]
-        if covariate.type == "number":
-            # Values of skipped trials need not be numbers; they are not carried along.
-            present = set(_present(column.take(text >= 0)))
-            numbers = [float(v) if v in present else np.nan for v in column.values]
-            covariates[name] = np.array([*numbers, np.nan])[column.codes]
-        else:
-            covariates[name] = column.recoded(covariate.values)
-    columns = TrialColumns(
-        ids,
-        {name: known[name].recoded(levels) for name, levels in design.factors.items()},
-        covariates,
-        text,
-        facts.came_ms,
-        facts.went_ms,
-        facts.answer,
-        tuple(facts.notes),
-        tuple(trials.skipped_by),
-    )
-    keys = [ids[name] for name in ("trial", "session", "participant") if name in ids]
-    order = np.lexsort(keys)
-    readers = ids["participant"][order]
-    starts = np.flatnonzero(np.diff(readers, prepend=-1))
-    stops = np.append(starts[1:], length)
-    tasks = []
-    for start, stop in zip(starts.tolist(), stops.tolist(), strict=True):
-        rows = order[start:stop]
-        if not good[rows].all():
-            continue
-        participant = design.ids["participant"].values[int(readers[start])]
-        own = parts[participant]
-        tasks.append(
-            ReaderTask(
-                participant,
-                tuple((path, batch) for path, batch, _ in own),
-                tuple(number for _, _, number in own),
-                columns.take(rows),
-                facts.reader_notes.get(participant, ""),
-            )
-        )
-    return tasks
 
 
 def _measure_column(measure: Measure) -> MeasureColumn:

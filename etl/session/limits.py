@@ -71,6 +71,7 @@ _PLAIN = (
     "under_ms",
     "over_ms",
     "fewest_fixations",
+    "line_confidence_under",
     "outside_share_over",
     "duration_ms",
     "correct_share_under",

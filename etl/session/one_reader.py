@@ -13,14 +13,15 @@ from etl.errors import Findings
 from etl.export.rows import (
     CellMeasures,
     FixationColumns,
+    LineColumns,
     RegressionColumns,
     RowMaker,
     TrialColumns,
 )
 from etl.measures import Outcomes, Sequences, compute
 from etl.parsers import CanonicalLog
-from etl.regions import Assigned, RegionLibrary
-from etl.report import ReaderProfile, TrialFates, profile_of
+from etl.regions import RegionLibrary
+from etl.report import LineTrust, ReaderProfile, TrialFates, profile_of
 from etl.screening import LEFT_OUT_BY, outlying
 from etl.screening.ledger import (
     Accounts,
@@ -33,8 +34,12 @@ from etl.screening.ledger import (
 from etl.screening.rules import OUTLIER
 from etl.session.gallery import candidates
 from etl.session.labels import Unlisted, unlisted_labels
+from etl.session.line_ledger import check_lines, counts_of_lines, with_lines
+from etl.session.line_trust import trust_of
+from etl.session.lines import LineWork, ReaderLines
 from etl.session.misplaced import outside_by_log
 from etl.session.ordering import OrderedFixations, ReaderLog, TrialNames, order_fixations
+from etl.session.placing import Placed, place_fixations
 from etl.session.reader import Options, Reader, ReaderTables
 from etl.session.screening import Unscreened, screen
 from etl.tables import LEDGER, TableDesign
@@ -65,6 +70,9 @@ class Bench:
         self.library = library
         self.options = options
         self.rows = RowMaker(design)
+        self._lines = (
+            None if options.lines is None else LineWork(library, options.lines, options.limits)
+        )
         used = {rule: code for code, rule in enumerate(design.left_out_by)}
         # From a rule's code among all rules to its place among those of this study; -1 stays -1.
         self._named = np.array([*(used.get(rule, -1) for rule in LEFT_OUT_BY), -1], dtype=np.int32)
@@ -106,9 +114,12 @@ class Bench:
         in_order = bool((ordered.rows[1:] > ordered.rows[:-1]).all())
         log = reader.log if in_order else reader.log.take(ordered.rows)
         texts = reader.trials.text.astype(np.int64)
-        line, order = self._assigned(log, texts[ordered.trial])
+        placed = place_fixations(reader, log, ordered, (self.library, self._lines), findings)
+        if findings.failed:
+            return ReaderTables(reader.participant, {}, {}, findings=findings)
+        order = placed.order
         screened = screen(
-            Unscreened(reader.trials, log, ordered, order, reader.note),
+            Unscreened(reader.trials, log, ordered, order, reader.note, placed.lines),
             self.library,
             self.options,
         )
@@ -137,14 +148,15 @@ class Bench:
             (reader.trials.skipped_by, reader.trials.notes, reader.note),
             np.searchsorted(ordered.trial, np.arange(len(texts))),
         )
-        batches, far = self._outcome_rows(own, (texts, in_study), outcomes)
+        batches, far = self._outcome_rows(own, (texts, in_study), outcomes, placed.lines)
         entries = with_values(entries, far, self.options.limits)
+        entries = with_lines(entries, screened, placed.lines)
         batches["regressions"] = self._regression_rows(
             own, place, ordered, (screened, log.x_px, kept), (order, code), outcomes
         )
         batches["fixations"] = self.rows.fixations(
             own if every else self.rows.ids(reader.trials),
-            self._fixation_columns(screened, log, (line, order, code), outcomes, source),
+            self._fixation_columns(screened, log, (placed, code), outcomes, source),
         )
         batches[LEDGER] = self.rows.ledger(
             self.design.ids["participant"].ranks[reader.participant],
@@ -165,6 +177,7 @@ class Bench:
                 "fixations": pc.sum(fixations.column("kept")).as_py() or 0,
             },
         )
+        check_lines(entries, screened, placed.lines, fixations)
         counts = {
             "readers left out": int(screened.reader.left_out[0] >= 0),
             "fixations read": len(order),
@@ -177,30 +190,38 @@ class Bench:
             "trials skipped": accounts["trials"].by_rule["skip"],
             "trials kept": len(in_study),
             "trials kept without a fixation": len(in_study) - len(np.unique(ordered.trial[kept])),
+            **counts_of_lines(entries, placed.lines),
         }
         outside = np.zeros(len(order), dtype=bool)
         outside[kept] = order[kept] == 0
+        trust = trust_of(placed.lines, ordered.trial)
         return ReaderTables(
             reader.participant,
             batches,
             counts,
             accounts,
-            self._profile(reader, screened, batches) if page else None,
+            self._profile(reader, screened, batches, trust) if page else None,
             candidates(
                 reader.participant,
                 screened,
                 outside,
                 np.bincount(ordered.trial[kept[outcomes.regressions.launch]], minlength=len(texts)),
+                trust,
             ),
             findings,
             outside_by_log(reader, ordered.trial, source[0], (order, self._placed(log))),
             ordered.moved,
             ordered.gaps,
             self._unlisted(reader, ordered),
+            trust,
         )
 
     def _profile(
-        self, reader: Reader, screened: Screened, batches: Mapping[str, pa.RecordBatch]
+        self,
+        reader: Reader,
+        screened: Screened,
+        batches: Mapping[str, pa.RecordBatch],
+        trust: LineTrust | None,
     ) -> ReaderProfile:
         """The summary of the reader for the audit page."""
         read = reader.trials.text >= 0
@@ -210,6 +231,7 @@ class Bench:
             TrialFates(
                 {name: levels[read] for name, levels in reader.trials.factors.items()},
                 self._named[screened.trial_codes()[read]],
+                None if trust is None else trust.of(read),
             ),
             self.design,
             outside=self.options.outside,
@@ -229,7 +251,7 @@ class Bench:
         self,
         screened: Screened,
         log: CanonicalLog,
-        places: tuple[NDArray[np.int32], NDArray[np.int32], NDArray[np.int32]],
+        places: tuple[Placed, NDArray[np.int32]],
         outcomes: Outcomes,
         source: tuple[NDArray[np.int32], NDArray[np.int32]],
     ) -> FixationColumns:
@@ -237,7 +259,8 @@ class Bench:
         gone = screened.fixation_codes()
         kept = np.flatnonzero(gone < 0)
         visit, first_pass = _spread(outcomes, kept, len(gone))
-        line, order, code = places
+        placed, code = places
+        lines = placed.lines
         return FixationColumns(
             screened.recorded.trial,
             screened.number,
@@ -245,29 +268,17 @@ class Bench:
             np.where(gone < 0, screened.fixations.duration_ms, log.duration_ms),
             log.x_px,
             log.y_px,
-            line,
+            placed.line,
             code,
-            order,
+            placed.order,
             visit,
             first_pass,
             self._named[gone],
             *source,
+            None
+            if lines is None
+            else LineColumns(lines.confidence, lines.return_sweep, lines.undersweep),
         )
-
-    def _assigned(
-        self, log: CanonicalLog, text: NDArray[np.int64]
-    ) -> tuple[NDArray[np.int32], NDArray[np.int32]]:
-        """Line and region order of every fixation; 0 where there is none."""
-        line = np.zeros(len(text), dtype=np.int32)
-        order = np.zeros(len(text), dtype=np.int32)
-        rows = np.flatnonzero(text >= 0)
-        found: Assigned
-        if self.library.labels is not None and log.label is not None:
-            found = self.library.assign_labels(text[rows], log.label.codes[rows], log.label.values)
-        else:
-            found = self.library.assign_points(text[rows], log.x_px[rows], log.y_px[rows])
-        line[rows], order[rows] = found.line, found.order
-        return line, order
 
     def _unlisted(self, reader: Reader, ordered: OrderedFixations) -> dict[str, Unlisted]:
         """Labels that no region definition lists, of trials of the study."""
@@ -288,6 +299,7 @@ class Bench:
         facts: Mapping[str, pa.Array],
         trials: tuple[NDArray[np.int64], NDArray[np.int64]],
         outcomes: Outcomes,
+        lines: ReaderLines | None,
     ) -> tuple[dict[str, pa.RecordBatch], list[FarValue]]:
         """Rows of the three tables of outcomes, and the values that were set missing."""
         every_text, in_study = trials
@@ -320,7 +332,9 @@ class Bench:
         batches = {
             "outcomes": self.rows.outcomes(facts, cells, regions),
             "outcomes_wide": self.rows.outcomes_wide(facts, cells, regions),
-            "trials": self.rows.trials(facts, of_trials),
+            "trials": self.rows.trials(
+                facts, of_trials, None if lines is None else lines.trial_confidence[in_study]
+            ),
         }
         return batches, far
 

@@ -66,7 +66,9 @@ def trace(
         tables = make_reader_work(*gathered.bench())(task)
         if tables.findings.failed:
             raise DataError(tables.findings)
-        return tracer_of(plan, gathered).traced(tables.batches, participant, key, text)
+        return tracer_of(plan, gathered).traced(
+            tables.batches, participant, key, text, tables.trust
+        )
 
 
 @dataclass(frozen=True, slots=True)

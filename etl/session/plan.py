@@ -5,16 +5,28 @@ from __future__ import annotations
 from dataclasses import dataclass
 from functools import cached_property
 from pathlib import Path
+from typing import Any
 
 from etl.errors import Findings
 from etl.files import header_of_table, marks_of
+from etl.lines import (
+    ChainSettings,
+    MergeSettings,
+    MethodSettings,
+    RegressSettings,
+    SliceSettings,
+    StretchSettings,
+)
 from etl.measures import MEASURES, TRIAL_MEASURES
 from etl.parsers import EyeChoice, LogReader, reader_for
 from etl.regions import RegionLibrary, TrialWords, read_definitions
 from etl.screening import Limits
 from etl.session.limits import check_rules, limits_of
+from etl.session.line_corrections import LineCorrections, read_corrections
+from etl.session.lines import LineChoice
 from etl.session.log_files import find_logs
 from etl.study import Study
+from etl.study.models import Lines
 from etl.tables import BARE_DESIGN, TABLES
 from etl.trials import IDS, FactBook, gather_facts
 from etl.trials.facts import shown_path
@@ -38,6 +50,8 @@ class Plan:
         The texts and their regions.
     limits : Limits
         The rules of screening.
+    corrections : LineCorrections or None
+        Lines that were set by hand.
     """
 
     study: Study
@@ -46,6 +60,22 @@ class Plan:
     facts: FactBook
     library: RegionLibrary
     limits: Limits
+    corrections: LineCorrections | None = None
+
+    @cached_property
+    def lines(self) -> LineChoice | None:
+        """How lines are told; None where no text has several."""
+        told = self.study.lines or Lines()
+        if not self.library.has_lines:
+            return None
+        return LineChoice(told.method, settings_of(told), self.study.regions.layout)
+
+    def understood(self) -> dict[str, Any]:
+        """The study as understood, with how its lines are told where it does not say so."""
+        whole = self.study.understood()
+        if self.lines is not None and self.study.lines is None:
+            whole["lines"] = Lines().model_dump(mode="json")
+        return whole
 
     @cached_property
     def supplied(self) -> tuple[str, ...]:
@@ -93,7 +123,17 @@ def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tupl
     eyes = EyeChoice.of(study.logs, facts.eyes)
     reader = reader_for(study.logs, study.screen, facts.from_log, eyes)
     check_rules(study, library.region_names, findings)
-    return Plan(study, logs, reader, facts, library, limits_of(study)), logs
+    corrections = read_corrections(study, findings)
+    if corrections is not None and not library.has_lines:
+        findings.error(
+            "lines are set by hand, but no text has several",
+            path=study.shown,
+            line=study.line_of("lines", "corrections"),
+            where="lines.corrections",
+            found=corrections.shown,
+            fix=f"remove the key, or correct the lines of the texts in {study.regions.file}",
+        )
+    return Plan(study, logs, reader, facts, library, limits_of(study), corrections), logs
 
 
 def _names_are_free(study: Study, findings: Findings) -> bool:
@@ -115,3 +155,24 @@ def _names_are_free(study: Study, findings: Findings) -> bool:
                     fix="rename the column in its table, and here",
                 )
     return free
+
+
+def settings_of(lines: Lines) -> MethodSettings:
+    """What the study file sets of the methods of line assignment.
+
+    Parameters
+    ----------
+    lines : Lines
+        ``[lines]`` of the study file.
+
+    Returns
+    -------
+    MethodSettings
+    """
+    return MethodSettings(
+        ChainSettings(**lines.chain.model_dump()),
+        MergeSettings(**lines.merge.model_dump()),
+        RegressSettings(**lines.regress.model_dump()),
+        SliceSettings(**lines.slice.model_dump()),
+        StretchSettings(**lines.stretch.model_dump()),
+    )

@@ -12,22 +12,27 @@ from etl.errors import Findings
 from etl.export.rows import TrialColumns
 from etl.measures import NoOpportunity, Outside
 from etl.parsers import CanonicalLog
-from etl.report import LineGrid, ReaderProfile
+from etl.report import LineGrid, LineTrust, ReaderProfile
 from etl.screening import Limits
 from etl.screening.ledger import Accounts
 from etl.session.gallery import Candidate
 from etl.session.labels import Unlisted
+from etl.session.lines import NO_HAND, HandLines, LineChoice
 
 
 @dataclass(frozen=True, slots=True)
 class Options:
-    """The decisions of the study that the work on a reader depends on."""
+    """The decisions of the study that the work on a reader depends on.
+
+    ``lines`` is None where no text has several lines.
+    """
 
     repeated: str
     outside: Outside
     no_opportunity: NoOpportunity
     limits: Limits
     grid: LineGrid | None
+    lines: LineChoice | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,6 +51,10 @@ class Reader:
         The trials that were recorded, in the order of the tables.
     note : str
         The experimenter's note on the reader, empty where there is none.
+    hand : HandLines
+        Lines that were set by hand.
+    corrections : str
+        The table in which they are, for messages.
     """
 
     participant: str
@@ -53,6 +62,8 @@ class Reader:
     file: NDArray[np.int32]
     trials: TrialColumns
     note: str = ""
+    hand: HandLines = NO_HAND
+    corrections: str = ""
 
 
 @dataclass(slots=True)
@@ -85,6 +96,8 @@ class ReaderTables:
         The same for fixations before which a number is left out.
     unlisted : dict of str to Unlisted
         Labels that no region definition lists.
+    trust : LineTrust or None
+        How far the lines of the trials can be trusted; None where texts have no lines.
     """
 
     participant: str
@@ -98,3 +111,4 @@ class ReaderTables:
     moved: dict[int, tuple[int, int]] = field(default_factory=dict)
     gaps: dict[int, tuple[int, int]] = field(default_factory=dict)
     unlisted: dict[str, Unlisted] = field(default_factory=dict)
+    trust: LineTrust | None = None

@@ -51,6 +51,9 @@ from etl.trials.facts import shown_path
 #: A study whose logs are smaller than this is done sooner by one process than by starting more:
 #: 400 logs of 50 kB took one process 2 s, and two processes 3 s, of which 2 s to start twice over.
 _WORTH_WORKERS_BYTES = 50_000_000
+#: The same where lines are told by consensus: a megabyte of log holds some 15,000 fixations, whose
+#: lines take one process 5 s.
+_WORTH_WORKERS_BY_CONSENSUS_BYTES = 1_000_000
 
 
 def silent(stage: str, done: int, total: int) -> None:
@@ -166,7 +169,7 @@ def build(
         write_audit(shop.fresh, _audit(plan, gathered, totals, answers, noticed))
         told = {**log_counts(answers), **totals.counts}
         RunRecord(
-            study.understood(),
+            plan.understood(),
             _inputs(plan, gathered, answers),
             told,
             rows,
@@ -212,7 +215,9 @@ def examine(
     """Everything up to the work on readers; None where that makes no sense."""
     with _collector_at_rest():
         plan, logs = make_plan(study, findings)
-    count = _workers(workers, logs)
+    told = plan is not None and plan.lines is not None and plan.lines.method == "consensus"
+    worth = _WORTH_WORKERS_BY_CONSENSUS_BYTES if told else _WORTH_WORKERS_BYTES
+    count = _workers(workers, logs, worth)
     reader = plan.reader if plan is not None else reader_for(_logs_alone(study), study.screen)
     # Processes of their own share nothing in memory: then everything goes to the disk.
     aside = (kept, Shelf(ROOM_BYTES if count == 1 else 0))
@@ -234,8 +239,8 @@ def _logs_alone(study: Study) -> Logs:
     return study.logs.model_copy(update={"eye": None})
 
 
-def _workers(asked: int | None, logs: Iterable[tuple[Path, str]]) -> int:
-    """How many processes to use."""
+def _workers(asked: int | None, logs: Iterable[tuple[Path, str]], worth_bytes: int) -> int:
+    """How many processes to use: one for logs that are smaller than is worth more."""
     if asked is not None:
         if asked < 1:
             raise ValueError(f"workers must be 1 or more, or None, not {asked}")
@@ -244,7 +249,7 @@ def _workers(asked: int | None, logs: Iterable[tuple[Path, str]]) -> int:
     for path, _ in logs:
         with suppress(OSError):  # a log that is gone is told of when it is read
             size += path.stat().st_size
-    return (os.cpu_count() or 1) if size >= _WORTH_WORKERS_BYTES else 1
+    return (os.cpu_count() or 1) if size >= worth_bytes else 1
 
 
 def _finish(
@@ -263,8 +268,10 @@ def _audit(
 ) -> AuditInput:
     """Everything that the audit page tells of."""
     study = plan.study
+    tasks = {task.participant: task for task in gathered.tasks}
+    tracer = Tracer(study, plan.library, gathered.design)
     return AuditInput(
-        study.understood(),
+        plan.understood(),
         gathered.design,
         totals.profiles,
         totals.audit_rows(),
@@ -273,11 +280,12 @@ def _audit(
         gathered.unrecorded,
         drawn(
             totals.choice.chosen(),
-            {task.participant: task for task in gathered.tasks},
+            tasks,
             make_reader_work(*gathered.bench()),
-            Tracer(study, plan.library, gathered.design),
+            tracer,
         ),
         logs_told(answers),
+        totals.choice.unsure(tasks, tracer),
     )
 
 
@@ -304,4 +312,7 @@ def _inputs(plan: Plan, gathered: Gathered, answers: list[LogAnswer]) -> list[di
     inputs += [
         {"file": notes.shown, "role": "notes", "sha256": notes.sha256} for notes in gathered.notes
     ]
+    if plan.corrections is not None:
+        made = plan.corrections
+        inputs.append({"file": made.shown, "role": "line corrections", "sha256": made.sha256})
     return inputs + log_inputs(answers)

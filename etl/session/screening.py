@@ -25,6 +25,7 @@ from etl.screening.rules import CODE
 from etl.session.ordering import OrderedFixations
 
 if TYPE_CHECKING:
+    from etl.session.lines import ReaderLines
     from etl.session.reader import Options
 
 Mask = NDArray[np.bool_]
@@ -46,6 +47,8 @@ class Unscreened:
         Order of each fixation's region; 0 outside.
     note : str
         The experimenter's note on the reader.
+    lines : ReaderLines, optional
+        Which lines were read; None where the texts have no lines to tell apart.
     """
 
     trials: TrialColumns
@@ -53,6 +56,7 @@ class Unscreened:
     ordered: OrderedFixations
     order: NDArray[np.int32]
     note: str
+    lines: ReaderLines | None = None
 
 
 def screen(reader: Unscreened, library: RegionLibrary, options: Options) -> Screened:
@@ -110,6 +114,7 @@ def _recorded(reader: Unscreened, in_study: Mask) -> Recorded:
         log.y_px,
         log.blink,
         left_out.astype(np.int8),
+        None if reader.lines is None else reader.lines.undersweep,
     )
 
 
@@ -151,6 +156,7 @@ def _quantities(
         lacking,
         reader.trials.answer,
         cell,
+        None if reader.lines is None else reader.lines.trial_confidence,
     )
 
 

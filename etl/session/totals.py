@@ -15,6 +15,7 @@ from etl.screening.rules import BEFORE, key_of
 from etl.session.far_off import FEWEST_PLACED
 from etl.session.gallery import Choice
 from etl.session.labels import Unlisted, tell_unlisted
+from etl.session.line_ledger import notice_lines
 from etl.session.misplaced import refuse_misplaced
 from etl.session.ordering import OVERLAP_TOLERATED_MS
 from etl.session.reader import ReaderTables
@@ -191,6 +192,7 @@ class Totals:
             )
         self._notice_rules(study, findings)
         self._notice_readers(study, findings)
+        notice_lines(self.counts, study, findings)
         overlaps = self.counts["overlaps taken for rounding"]
         if overlaps:
             findings.note(

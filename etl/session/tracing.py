@@ -14,25 +14,38 @@ import pyarrow.compute as pc
 from etl.export.rows import TrialColumns
 from etl.regions import RegionLibrary
 from etl.regions.layout import columns, edge_px, line_extent_px
+from etl.report import LineTrust
 from etl.report.trace_input import (
     Cell,
     Piece,
     Regression,
     Removal,
     TracedFixation,
+    TracedLines,
     TracedTrial,
     Word,
 )
+from etl.session.line_ledger import CORRECTED
 from etl.study import Study
-from etl.tables import LEDGER, TableDesign
+from etl.study.models import Lines
+from etl.tables import LEDGER, LINE_RULES, TableDesign
 
 
 @dataclass(frozen=True, slots=True)
 class TrialKey:
-    """Which trial of a reader; session is empty where the logs have none."""
+    """Which trial of a reader; session is empty where the logs have none.
+
+    Attributes
+    ----------
+    session, trial : str
+        Its names.
+    row : int
+        Its place among the reader's trials.
+    """
 
     session: str
     trial: str
+    row: int
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,7 +67,12 @@ class Tracer:
     design: TableDesign
 
     def traced(
-        self, batches: Mapping[str, pa.RecordBatch], participant: str, key: TrialKey, text: int
+        self,
+        batches: Mapping[str, pa.RecordBatch],
+        participant: str,
+        key: TrialKey,
+        text: int,
+        trust: LineTrust | None = None,
     ) -> TracedTrial:
         """Gather all about one trial of a reader.
 
@@ -68,6 +86,8 @@ class Tracer:
             The trial.
         text : int
             Its text in the library; -1 for a trial that is no part of the study.
+        trust : LineTrust, optional
+            How far the lines of the reader's trials can be trusted.
 
         Returns
         -------
@@ -75,7 +95,10 @@ class Tracer:
             Without outcomes where the trial is left out.
         """
         fixations = self._rows(batches["fixations"], key)
-        ledger = self._rows(batches[LEDGER], key)
+        entries = self._rows(batches[LEDGER], key)
+        # Those about lines leave nothing out.
+        ledger = [row for row in entries if row["rule"] not in LINE_RULES]
+        of_lines = {row["fixation"]: row for row in entries if row["rule"] in LINE_RULES}
         removals = {row["fixation"]: _removal(row) for row in ledger if row["level"] == "fixation"}
         merged = {
             row["fixation"]: int(row["action"].removeprefix("merged into "))
@@ -97,7 +120,13 @@ class Tracer:
             {name: str(facts[name]) for name in self.design.factors if name in facts},
             *self._regions(text),
             fixations=tuple(
-                _fixation(row, removals.get(row["fixation"], removal), merged) for row in fixations
+                _fixation(
+                    row,
+                    removals.get(row["fixation"], removal),
+                    merged,
+                    of_lines.get(row["fixation"], {}),
+                )
+                for row in fixations
             ),
             regressions=tuple(
                 Regression(
@@ -116,6 +145,23 @@ class Tracer:
                 for row in ledger
                 if row["level"] == "value"
             },
+            lines=self._lines(text, trust, key.row),
+        )
+
+    def _lines(self, text: int, trust: LineTrust | None, row: int) -> TracedLines | None:
+        """How lines were told; None where the text has one line, or they were not told."""
+        geometry = self.library.geometry
+        if trust is None or geometry is None or text < 0 or geometry.line_counts[text] < 2:
+            return None
+        own = slice(*geometry.line_offsets[text : text + 2].tolist())
+        middles = geometry.line_middles_px[own].tolist()
+        told = self.study.lines or Lines()
+        return TracedLines(
+            told.method,
+            dict(zip(geometry.line_numbers[own].tolist(), middles, strict=True)),
+            float(trust.confidence[row]),
+            bool(trust.sure[row]),
+            told.corrections or "",
         )
 
     def key(self, trials: TrialColumns, row: int) -> TrialKey:
@@ -124,7 +170,7 @@ class Tracer:
         session = ""
         if "session" in ids:
             session = ids["session"].values[int(trials.ids["session"][row])]
-        return TrialKey(session, ids["trial"].values[int(trials.ids["trial"][row])])
+        return TrialKey(session, ids["trial"].values[int(trials.ids["trial"][row])], row)
 
     def _rows(self, batch: pa.RecordBatch, key: TrialKey) -> list[dict[str, Any]]:
         """The rows of one trial."""
@@ -209,13 +255,18 @@ def _removal(row: Mapping[str, Any]) -> Removal:
 
 
 def _fixation(
-    row: Mapping[str, Any], removal: Removal | None, merged: Mapping[int, int]
+    row: Mapping[str, Any],
+    removal: Removal | None,
+    merged: Mapping[int, int],
+    of_line: Mapping[str, Any],
 ) -> TracedFixation:
-    """A row of the table of fixations."""
+    """A row of the table of fixations, with what the ledger says of its line."""
 
     def number(name: str) -> float:
-        return math.nan if row[name] is None else float(row[name])
+        return math.nan if row.get(name) is None else float(row[name])
 
+    observed = of_line.get("observed") or ""
+    by_hand = of_line.get("rule") == CORRECTED
     return TracedFixation(
         row["fixation"],
         number("onset_ms"),
@@ -230,4 +281,15 @@ def _fixation(
         row["source_line"],
         None if row["kept"] else removal or Removal(row["left_out_by"]),
         merged.get(row["fixation"], 0),
+        line_confidence=number("line_confidence"),
+        return_sweep=bool(row.get("return_sweep")),
+        undersweep=bool(row.get("undersweep")),
+        on_none="" if by_hand else observed.split(",")[0],
+        line_told=_line_in(observed) if by_hand else None,
     )
+
+
+def _line_in(observed: str) -> int:
+    """The line that a row of the ledger found: ``line 3``, or ``no line``."""
+    found = re.fullmatch(r"line (\d+)", observed)
+    return int(found[1]) if found else 0

@@ -19,6 +19,7 @@ from etl.parsers import LogReader
 from etl.parsers.canonical import LogNote
 from etl.regions import RegionLibrary
 from etl.session.kept_logs import Shelf, keep_log, kept_log
+from etl.session.lines import NO_HAND, HandLines
 from etl.session.log_figures import LogFigures, figures_of
 from etl.session.one_reader import Bench
 from etl.session.reader import Options, Reader, ReaderTables
@@ -59,6 +60,8 @@ class ReaderTask:
     files: tuple[int, ...]
     trials: TrialColumns
     note: str = ""
+    hand: HandLines = NO_HAND
+    corrections: str = ""
 
 
 class LogWork:
@@ -104,7 +107,9 @@ class ReaderWork:
         """Finish one reader."""
         log, part = kept_log(task.parts, self._shelf)
         file = np.asarray(task.files, dtype=np.int32)[part]
-        reader = Reader(task.participant, log, file, task.trials, task.note)
+        reader = Reader(
+            task.participant, log, file, task.trials, task.note, task.hand, task.corrections
+        )
         tables = self._bench.tables(reader, page=self._write)
         if not self._write:
             tables.batches = {}

@@ -24,6 +24,7 @@ _FILE_KEYS = (
     (("items",), "table"),
     (("trials",), "table"),
     (("regions",), "file"),
+    (("lines",), "corrections"),
     (("screening", "trials"), "notes"),
     (("screening", "participants"), "notes"),
     (("output",), "folder"),

@@ -12,6 +12,7 @@ from typing import Annotated, Literal
 from pydantic import AfterValidator, ConfigDict, Field
 
 from etl.study.columns import Column, PlaceColumn, PlainColumn, TimeColumn
+from etl.study.lines import Lines
 from etl.study.log_kinds import Bids, Eye, EyeColumns, LinePatterns, Samples
 from etl.study.logs import Columns, Logs
 from etl.study.screening import (
@@ -264,16 +265,6 @@ class Regions(Table):
     layout: Layout | None = Field(
         default=None,
         description='Where the text stood on the screen; for the kinds "marked_text" and "words".',
-    )
-
-
-class Lines(Table):
-    """Which line of a text a fixation belongs to."""
-
-    model_config = ConfigDict(title="[lines]")
-
-    method: Literal["nearest"] = Field(
-        default="nearest", description="The line whose middle is nearest to the fixation."
     )
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
+from etl.study.lines import WITH_SETTINGS
 from etl.study.models import StudyFile
 from etl.study.rule import Problem, Rule, quoted, rule
 
@@ -191,11 +192,11 @@ def lines_have_a_height(study: StudyFile) -> Iterator[Problem]:
     """Lines are told apart by y, where regions are laid out in lines."""
     if study.lines is None:
         return
-    if study.regions.kind in ("wkt", "labels"):
+    if study.regions.kind == "labels":
         yield Problem(
             ("lines",),
-            f'regions.kind = "{study.regions.kind}" has no lines',
-            expected='kind = "marked_text", "words" or "boxes"',
+            'regions.kind = "labels" has no lines',
+            expected="a kind of regions that have positions",
             fix="remove [lines], or correct kind",
         )
     elif study.regions.vertical == "any":
@@ -205,6 +206,36 @@ def lines_have_a_height(study: StudyFile) -> Iterator[Problem]:
             expected='vertical = "box"',
             fix='remove [lines] for texts of one line, or write vertical = "box"',
         )
+
+
+@rule("lines.method", *(f"lines.{method}" for method in WITH_SETTINGS))
+def line_method_reads_its_own_keys(study: StudyFile) -> Iterator[Problem]:
+    """No settings are given of a method that is not asked; the consensus asks all."""
+    lines = study.lines
+    if lines is None or lines.method == "consensus":
+        return
+    for method in WITH_SETTINGS:
+        if method != lines.method and method in lines.model_fields_set:
+            yield Problem(
+                ("lines", method),
+                f'this means nothing with method = "{lines.method}"',
+                expected=f'method = "{method}" or "consensus"',
+                fix="correct the method, or remove the table",
+            )
+
+
+@rule("lines.method", "regions.kind")
+def text_is_read_by_lines(study: StudyFile) -> Iterator[Problem]:
+    """Regions of a laid-out text are found by lines; boxes and polygons may be by themselves."""
+    if study.lines is None or study.lines.method != "none" or study.regions.kind not in TEXT_KINDS:
+        return
+    yield Problem(
+        ("lines", "method"),
+        f'regions.kind = "{study.regions.kind}" is laid out by lines, so each fixation needs one',
+        found="none",
+        expected='another method; "none" is for boxes and polygons',
+        fix='write method = "consensus", or "nearest"',
+    )
 
 
 @rule("regions.kind", "regions.vertical", "regions.tolerance_px", "regions.overlap")

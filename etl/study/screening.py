@@ -127,6 +127,14 @@ class FixationRules(Rules):
         "when absent or false.",
         examples=["drop"],
     )
+    undersweep: Literal["drop"] | None = Field(
+        default=None,
+        description="Leave out a fixation on which a return sweep came down short of the beginning "
+        "of a line, where the next saccade goes on towards it; before merging, so that it is "
+        "merged into no other. Needs texts of several lines; in others it leaves nothing out. Off "
+        "when absent or false.",
+        examples=["drop"],
+    )
     merge: Merge | None = Field(
         default=None,
         description="Merge a short fixation into the nearer of its two neighbours in time, where "
@@ -184,6 +192,16 @@ class TrialRules(Rules):
         description="Leave out a trial with fewer kept fixations than this. Off when absent or "
         "false.",
         examples=[3],
+    )
+    line_confidence_under: Number | None = Field(
+        default=None,
+        ge=0,
+        le=1,
+        description="Leave out a trial whose lines are less sure than this, from 0 to 1: how "
+        "likely it is that at least 97 in 100 of its fixations are on their right line. Needs "
+        'texts of several lines and lines.method = "consensus"; a trial of another text is not '
+        "judged. Off when absent or false.",
+        examples=[0.9],
     )
     outside_share_over: Number | None = Field(
         default=None,

@@ -227,6 +227,48 @@ def merge_in_characters_has_a_layout(study: StudyFile) -> Iterator[Problem]:
         )
 
 
+def _needs_lines(key: str) -> Rule:
+    """Make the rule that a rule of screening needs lines that can be told apart."""
+
+    @rule(key, "regions.kind", "regions.vertical")
+    def lines_can_be_told_apart(study: StudyFile) -> Iterator[Problem]:
+        if not _is_on(study, key):
+            return
+        if study.regions.kind == "labels":
+            yield Problem(
+                _path(key),
+                'regions.kind = "labels" has no lines',
+                expected="a kind of regions that have positions",
+                fix="remove this rule, or correct kind",
+            )
+        elif study.regions.vertical == "any":
+            yield Problem(
+                _path(key),
+                'with regions.vertical = "any" no line can be told from another',
+                expected='vertical = "box"',
+                fix='remove this rule for texts of one line, or write vertical = "box"',
+            )
+
+    return lines_can_be_told_apart
+
+
+undersweep_has_lines = _needs_lines("screening.fixations.undersweep")
+confidence_has_lines = _needs_lines("screening.trials.line_confidence_under")
+
+
+@rule("screening.trials.line_confidence_under", "lines.method")
+def confidence_has_its_method(study: StudyFile) -> Iterator[Problem]:
+    """Only all methods together tell how sure the lines of a trial are."""
+    key = "screening.trials.line_confidence_under"
+    if _is_on(study, key) and study.lines is not None and study.lines.method != "consensus":
+        yield Problem(
+            _path(key),
+            f'lines.method = "{study.lines.method}" does not tell how sure the lines are',
+            expected='method = "consensus"',
+            fix='write method = "consensus" in [lines], or remove this rule',
+        )
+
+
 @rule("screening.fixations.under_ms", "screening.fixations.over_ms")
 def some_duration_is_kept(study: StudyFile) -> Iterator[Problem]:
     """The limits of a fixation's duration leave room between them."""

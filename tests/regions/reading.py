@@ -46,7 +46,7 @@ class Read:
 def read_file(path: Path, kind: str, **options: Any) -> Read:
     """Read a definition file under the options of a study file."""
     findings = Findings()
-    lines = Lines() if options.pop("lines", False) else None
+    lines = Lines(method="nearest") if options.pop("lines", False) else None
     known = options.pop("known", ("item",))
     wanted = options.pop("wanted", ())
     if kind in {"marked_text", "words"}:

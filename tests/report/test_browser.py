@@ -16,8 +16,10 @@ from typing import Any
 
 import pytest
 
+import etl
 from tests.report.making import Made
 from tests.report.test_page_numbers import expected_readers
+from tests.trace.tracing import unsure_sample
 
 PACKAGES = ("playwright-core@1.65.1", "axe-core@4.14.1")
 BROWSERS = ("chromium", "chromium-browser", "google-chrome", "chrome", "msedge")
@@ -59,9 +61,22 @@ def seen(
     page_text: str, packages: Path, tmp_path_factory: pytest.TempPathFactory
 ) -> dict[str, Any]:
     """What the browser saw of the page of the screened orchard study."""
-    node, browser = needed("node"), needed(*BROWSERS)
     page = tmp_path_factory.mktemp("page") / "audit.html"
     page.write_text(page_text, encoding="utf-8", newline="\n")
+    return looked_at(page, packages)
+
+
+@pytest.fixture(scope="session")
+def seen_lines(packages: Path, tmp_path_factory: pytest.TempPathFactory) -> dict[str, Any]:
+    """What the browser saw of the page of texts of several lines, with drawings of unsure ones."""
+    root = tmp_path_factory.mktemp("lines")
+    etl.build(etl.load_study(unsure_sample(root)), into=root / "out", workers=1)
+    return looked_at(root / "out" / "audit.html", packages)
+
+
+def looked_at(page: Path, packages: Path) -> dict[str, Any]:
+    """What the browser sees of a page."""
+    node, browser = needed("node"), needed(*BROWSERS)
     script = Path(__file__).with_name("browser.mjs")
     done = subprocess.run(
         [node, os.fspath(script), browser, os.fspath(page), os.fspath(packages)],
@@ -73,6 +88,14 @@ def seen(
     assert done.returncode == 0, done.stderr
     answer: dict[str, Any] = json.loads(done.stdout)
     return answer
+
+
+@pytest.mark.parametrize("look", ["light", "dark", "phone"])
+def test_page_with_unsure_lines_is_as_sound(seen_lines: dict[str, Any], look: str) -> None:
+    """The part on lines and the maps in the gallery: no fault, no request, nothing too wide."""
+    assert seen_lines["faults"][look] == []
+    assert (seen_lines["requests"], seen_lines["console"]) == ([], [])
+    assert seen_lines["overflow"][look] == 0
 
 
 def test_no_request_leaves_the_page(seen: dict[str, Any]) -> None:

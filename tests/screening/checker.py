@@ -25,10 +25,11 @@ Key = tuple[Any, ...]
 
 BEFORE = ("skip", "repeated")
 OF_FIXATIONS = (
-    *("outside_text_time", "off_screen", "first", "last", "blink", "merge", "under_ms", "over_ms"),
+    *("outside_text_time", "off_screen", "first", "last", "blink", "undersweep"),
+    *("merge", "under_ms", "over_ms"),
 )
 OF_TRIALS = (
-    *("notes", "fewest_fixations", "outside_share_over", "duration_ms"),
+    *("notes", "fewest_fixations", "line_confidence_under", "outside_share_over", "duration_ms"),
     *("blink_in_first_pass_of", "no_first_pass_on", "answer_wrong"),
 )
 OF_READERS = (
@@ -312,6 +313,7 @@ AGAINST: Mapping[str, Callable[[Mapping[str, str]], bool]] = {
     "last": lambda row: int(row["observed"]) <= _limit(row),
     "merge": lambda row: float(row["observed"]) <= float(re.findall(r"[\d.]+", row["limit"])[0]),
     "fewest_fixations": lambda row: int(row["observed"]) < _limit(row),
+    "line_confidence_under": lambda row: float(row["observed"]) < _limit(row),
     "outside_share_over": lambda row: float(row["observed"]) > _limit(row),
     "correct_share_under": lambda row: float(row["observed"]) < _limit(row),
     "lost_trials_share_over": lambda row: float(row["observed"]) > _limit(row),

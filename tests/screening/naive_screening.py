@@ -14,10 +14,11 @@ from tests.measures.naive import Reading
 from tests.measures.naive import Trial as NaiveTrial
 
 FIXATION_RULES = (
-    *("outside_text_time", "off_screen", "first", "last", "blink", "merge", "under_ms", "over_ms"),
+    *("outside_text_time", "off_screen", "first", "last", "blink", "undersweep"),
+    *("merge", "under_ms", "over_ms"),
 )
 TRIAL_RULES = (
-    *("notes", "fewest_fixations", "outside_share_over", "duration_ms"),
+    *("notes", "fewest_fixations", "line_confidence_under", "outside_share_over", "duration_ms"),
     *("blink_in_first_pass_of", "no_first_pass_on", "answer_wrong"),
 )
 READER_RULES = (
@@ -42,6 +43,7 @@ class Fixation:
     blink: bool
     order: int
     aside: bool = False
+    undersweep: bool = False
     left_out: str = ""
     into: int = 0
     against: list[str] = field(default_factory=list)
@@ -49,7 +51,10 @@ class Fixation:
 
 @dataclass
 class Trial:
-    """One trial with what is known of it; ``regions`` names those of its text in order."""
+    """One trial with what is known of it; ``regions`` names those of its text in order.
+
+    ``confidence`` says how sure its lines are; None where no method tells.
+    """
 
     fixations: list[Fixation]
     regions: tuple[str, ...]
@@ -59,6 +64,7 @@ class Trial:
     note: str = ""
     cell: tuple[Any, ...] = ()
     skipped: bool = False
+    confidence: float | None = None
     left_out: str = ""
     against: list[str] = field(default_factory=list)
 
@@ -138,6 +144,8 @@ def speaks_against(
         return place[1] < limit
     if rule == "blink":
         return f.blink
+    if rule == "undersweep":
+        return f.undersweep
     return f.duration_ms < limit if rule == "under_ms" else f.duration_ms > limit
 
 
@@ -197,6 +205,8 @@ def speaks_against_trial(rule: str, limit: Any, trial: Trial, outside: str) -> b
         return bool(trial.note)
     if rule == "fewest_fixations":
         return len(still) < limit
+    if rule == "line_confidence_under":
+        return trial.confidence is not None and trial.confidence < limit
     if rule == "outside_share_over":
         return bool(still) and sum(f.order == 0 for f in still) / len(still) > limit
     if rule == "duration_ms":

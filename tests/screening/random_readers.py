@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from functools import partial
+from typing import Any
+
 import numpy as np
 
 from etl.export.rows import TrialColumns
@@ -10,6 +13,7 @@ from etl.parsers import CanonicalLog
 from etl.regions import RegionLibrary
 from etl.screening import Limits
 from etl.screening.rules import LEFT_OUT_BY
+from etl.session.lines import ReaderLines
 from etl.session.ordering import OrderedFixations
 from etl.session.reader import Options
 from etl.session.screening import Unscreened
@@ -36,12 +40,14 @@ LIBRARY = RegionLibrary(
 )
 
 
+def one_of(rng: np.random.Generator, *values: Any) -> Any:
+    """One of some values, each as likely."""
+    return values[rng.integers(len(values))]
+
+
 def random_rules(rng: np.random.Generator) -> dict[str, object]:
     """Some rules, with limits near what the readers are like."""
-
-    def one(*values: object) -> object:
-        return values[rng.integers(len(values))]
-
+    one = partial(one_of, rng)
     names = [["who"], ["verb"], ["fruit", "place"], ["verb", "who", "place"]]
     every = {
         "outside_text_time": True,
@@ -49,11 +55,13 @@ def random_rules(rng: np.random.Generator) -> dict[str, object]:
         "first": one(1, 2, 3),
         "last": one(1, 2, 3),
         "blink": "drop",
+        "undersweep": "drop",
         "merge": (one(60, 80, 120, 200), one(3.0, 7.5, 14.0, 60.0)),
         "under_ms": one(40, 80, 100),
         "over_ms": one(180, 250, 400),
         "notes": True,
         "fewest_fixations": one(1, 2, 4),
+        "line_confidence_under": one(0.5, 0.9, 1.0),
         "outside_share_over": one(0.0, 0.2, 0.3, 1 / 3, 0.5),
         "duration_ms": one((0, 500), (200, 1000), (300.5, 5000)),
         "blink_in_first_pass_of": names[rng.integers(4)],
@@ -72,6 +80,7 @@ def random_reader(rng: np.random.Generator) -> tuple[naive.Reader, list[int]]:
     """A reader with a few trials, and the text of each trial."""
     trials, texts = [], []
     has_y = rng.random() < 0.8
+    has_lines = rng.random() < 0.7
     clock_ms = 1000
     for _ in range(rng.integers(1, 6)):
         text = int(rng.integers(3))
@@ -93,6 +102,7 @@ def random_reader(rng: np.random.Generator) -> tuple[naive.Reader, list[int]]:
                     bool(rng.random() < 0.15),
                     int(rng.integers(0, len(TEXTS[text]) + 1)),
                     aside=bool(second) and (number <= count) == which,
+                    undersweep=has_lines and bool(rng.random() < 0.12),
                 )
             )
             clock_ms += duration + int(rng.integers(0, 40))
@@ -108,6 +118,7 @@ def random_reader(rng: np.random.Generator) -> tuple[naive.Reader, list[int]]:
                 "sneezed" if rng.random() < 0.1 else "",
                 (int(rng.integers(2)), int(rng.integers(2))),
                 skipped=bool(rng.random() < 0.1),
+                confidence=one_of(rng, None, 0.5, 0.7, 0.9, 0.95, 1.0) if has_lines else None,
             )
         )
         texts.append(text)
@@ -161,7 +172,29 @@ def unscreened(reader: naive.Reader, texts: list[int]) -> Unscreened:
         np.array([f.aside for f in every], bool),
         0,
     )
-    return Unscreened(columns, log, ordered, coded([f.order for f in every]), reader.note)
+    order = coded([f.order for f in every])
+    return Unscreened(columns, log, ordered, order, reader.note, lines_of(reader))
+
+
+def lines_of(reader: naive.Reader) -> ReaderLines | None:
+    """What is known of the reader's lines, as far as screening asks; None where nothing is."""
+    every = [f for trial in reader.trials for f in trial.fixations]
+    confidence = [NAN if t.confidence is None else t.confidence for t in reader.trials]
+    undersweep = np.array([f.undersweep for f in every], bool)
+    if not undersweep.any() and np.isnan(confidence).all():
+        return None
+    count = len(every)
+    return ReaderLines(
+        line=np.zeros(count, np.int32),
+        confidence=np.full(count, NAN),
+        trial_confidence=np.array(confidence, np.float64),
+        sure=np.zeros(len(confidence), bool),
+        by_hand=np.zeros(count, bool),
+        reason=np.zeros(count, np.int8),
+        before=np.full(count, -1, np.int32),
+        return_sweep=undersweep,
+        undersweep=undersweep,
+    )
 
 
 def options(rules: dict[str, object], outside: str) -> Options:
@@ -169,7 +202,13 @@ def options(rules: dict[str, object], outside: str) -> Options:
     given = {
         name: rules[name] for name in ("first", "last", "under_ms", "over_ms") if name in rules
     }
-    for name in ("fewest_fixations", "outside_share_over", "duration_ms", *naive.READER_RULES[1:]):
+    for name in (
+        "fewest_fixations",
+        "line_confidence_under",
+        "outside_share_over",
+        "duration_ms",
+        *naive.READER_RULES[1:],
+    ):
         if name in rules:
             given[name] = rules[name]
     if "merge" in rules:

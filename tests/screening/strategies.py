@@ -16,6 +16,7 @@ FIXATION_LIMITS: dict[str, st.SearchStrategy[str]] = {
     "first": st.sampled_from(["1", "2"]),
     "last": st.sampled_from(["1", "2"]),
     "blink": st.just('"drop"'),
+    "undersweep": st.just('"drop"'),
     "merge": st.builds(
         "{{ under_ms = {}, within_px = {} }}".format,
         st.sampled_from([60, 80, 150]),
@@ -28,6 +29,7 @@ _REGIONS = st.sampled_from(['["verb"]', '["who", "fruit"]', '["fruit"]'])
 TRIAL_LIMITS: dict[str, st.SearchStrategy[str]] = {
     "notes": st.just('"notes.csv"'),
     "fewest_fixations": st.sampled_from(["1", "2", "3"]),
+    "line_confidence_under": st.sampled_from(["0.5", "1"]),
     "outside_share_over": st.sampled_from(["0", "0.25", "0.5"]),
     "duration_ms": st.sampled_from(["[0, 900]", "[200, 5000]"]),
     "blink_in_first_pass_of": _REGIONS,

@@ -24,7 +24,7 @@ from tests.screening.random_readers import (
     unscreened,
 )
 
-READERS = 4000
+READERS = 6000
 
 
 @dataclass(frozen=True)
@@ -199,13 +199,19 @@ def test_outlying_values() -> None:
 
 
 def test_random_readers_are_worth_comparing(readers: list[Both]) -> None:
-    """Chains of merges, merged blinks, repeated recordings and skipped trials all occur."""
-    chains = blinks = repeated = skipped = 0
+    """Chains of merges, merged blinks, repeated recordings and skipped trials all occur.
+
+    And undersweeps that are short enough to be merged, had they not been left out before.
+    """
+    chains = blinks = repeated = skipped = short = 0
     for both in readers:
         for trial in both.slow.trials:
             into = {f.number: f.into for f in trial.fixations if f.into}
             chains += sum(target in into for target in into.values())
             repeated += any(f.aside for f in trial.fixations)
             skipped += trial.skipped
+            if "merge" in both.rules:
+                gone = [f for f in trial.fixations if f.left_out == "undersweep"]
+                short += sum(f.duration_ms < both.rules["merge"][0] for f in gone)
         blinks += int((both.told.fixations.blink & ~both.told.recorded.blink).sum())
-    assert min(chains, blinks, repeated, skipped) > 100
+    assert min(chains, blinks, repeated, skipped, short) > 100

@@ -1,4 +1,4 @@
-"""The passages study: notes of several lines, every word a region, the nearest line taken."""
+"""The passages study: notes of several lines, every word a region, lines told by consensus."""
 
 from __future__ import annotations
 
@@ -156,8 +156,8 @@ line_height_px = 80
 space = "following"               # the space before a word belongs to that word
 direction = "ltr"
 
-[lines]
-method = "nearest"                # a fixation belongs to the line whose middle is nearest
+# Which line a fixation belongs to is told by all published methods together, for nothing else is
+# said: [lines] method = "consensus" is what texts of several lines are read by.
 
 # ---- What is wanted ------------------------------------------------------------------------
 [measures]

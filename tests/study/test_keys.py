@@ -141,11 +141,12 @@ def test_missing_key_is_asked_for(
         ),
         pytest.param(
             "[regions]",
-            '[lines]\nmethod = "chain"\n[regions]',
+            '[lines]\nmethod = "attached"\n[regions]',
             "study.toml:13: lines.method: this is not one of the choices; found "
-            '"chain", expected "nearest" (no other in this version)\n'
-            '    fix: write "nearest"',
-            id="only method",
+            '"attached", expected "consensus", "attach", "chain", "cluster", "merge", "regress", '
+            '"segment", "slice", "split", "stretch", "warp", "nearest" or "none"\n'
+            '    fix: did you mean "attach"?',
+            id="method of lines",
         ),
         pytest.param(
             "[regions]",

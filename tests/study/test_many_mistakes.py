@@ -43,7 +43,7 @@ origin = "top-left"
 file = 'a\b.csv'
 
 [lines]
-method = "chain"
+method = "chains"
 
 [screening.fixations]
 first = 0
@@ -118,9 +118,10 @@ found "top-left", expected "centre"
     fix: write origin = "centre", or remove the key
 study.toml:38: regoins: unknown key
     fix: did you mean "regions"?
-study.toml:42: lines.method: this is not one of the choices; found "chain", expected "nearest" \
-(no other in this version)
-    fix: write "nearest"
+study.toml:42: lines.method: this is not one of the choices; found "chains", expected \
+"consensus", "attach", "chain", "cluster", "merge", "regress", "segment", "slice", "split", \
+"stretch", "warp", "nearest" or "none"
+    fix: did you mean "chain"?
 study.toml:45: screening.fixations.first: out of bounds; found "0", expected a number of 1 or more
     fix: write for example first = 1
 study.toml:46: screening.fixations.blnik: unknown key

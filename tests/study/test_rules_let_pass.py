@@ -54,6 +54,18 @@ LAYOUT = "[regions.layout]\nleft_px = 1\ntop_px = 1\ncharacter_width_px = 14\nli
         ),
         pytest.param({'"boxes"\n': '"words"\n' + LAYOUT}, id="words with a layout"),
         pytest.param({'kind = "boxes"\n': 'kind = "boxes"\n[lines]\n'}, id="lines of boxes"),
+        pytest.param({'kind = "boxes"\n': 'kind = "wkt"\n[lines]\n'}, id="lines of polygons"),
+        pytest.param(
+            {
+                'kind = "boxes"\n': 'kind = "boxes"\n[lines]\nmethod = "consensus"\n'
+                "chain = { x_px = 100 }\nstretch = { scale = [0.8, 1.2] }\n"
+            },
+            id="consensus with settings of the methods",
+        ),
+        pytest.param(
+            {'kind = "boxes"\n': 'kind = "boxes"\n[lines]\nmethod = "none"\n'},
+            id="boxes by themselves",
+        ),
     ],
 )
 def test_sound_combination_is_accepted(load: Callable[..., Study], changes: dict[str, str]) -> None:

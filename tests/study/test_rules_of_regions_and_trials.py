@@ -30,19 +30,12 @@ from tests.study.written import changed, changed_at
             id="layout for boxes",
         ),
         pytest.param(
-            {'kind = "boxes"\n': 'kind = "wkt"\n[lines]\n'},
-            'study.toml:15: lines: regions.kind = "wkt" has no lines; expected kind ='
-            ' "marked_text", "words" or "boxes"\n'
-            "    fix: remove [lines], or correct kind",
-            id="lines of polygons",
-        ),
-        pytest.param(
             {
                 'y = "gy"': 'y = "gy"\nlabel = "area"',
                 'kind = "boxes"\n': 'kind = "labels"\n[lines]\n',
             },
             'study.toml:16: lines: regions.kind = "labels" has no lines; expected '
-            'kind = "marked_text", "words" or "boxes"\n'
+            "a kind of regions that have positions\n"
             "    fix: remove [lines], or correct kind",
             id="lines of labels",
         ),
@@ -52,6 +45,28 @@ from tests.study.written import changed, changed_at
             'from another; expected vertical = "box"\n'
             '    fix: remove [lines] for texts of one line, or write vertical = "box"',
             id="lines at any height",
+        ),
+        pytest.param(
+            {
+                'kind = "boxes"\n': 'kind = "boxes"\n[lines]\nmethod = "slice"\n'
+                "slice = { next_px = 60 }\nchain = { x_px = 100 }\n"
+            },
+            'study.toml:18: lines.chain: this means nothing with method = "slice"; expected '
+            'method = "chain" or "consensus"\n'
+            "    fix: correct the method, or remove the table",
+            id="settings of another method",
+        ),
+        pytest.param(
+            {
+                'kind = "boxes"\n': 'kind = "words"\n[lines]\nmethod = "none"\n'
+                "[regions.layout]\nleft_px = 1\ntop_px = 1\ncharacter_width_px = 14\n"
+                "line_height_px = 60\n"
+            },
+            'study.toml:16: lines.method: regions.kind = "words" is laid out by lines, so each '
+            'fixation needs one; found "none", expected another method; "none" is for boxes and '
+            "polygons\n"
+            '    fix: write method = "consensus", or "nearest"',
+            id="text without lines",
         ),
         pytest.param(
             {

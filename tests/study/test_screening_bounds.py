@@ -116,6 +116,20 @@ from tests.study.written import SOUND
             id="fewest_fixations too many",
         ),
         pytest.param(
+            "[screening.trials]\nline_confidence_under = 90\n",
+            'study.toml:16: screening.trials.line_confidence_under: out of bounds; found "90", '
+            "expected a number of 1 or less\n"
+            "    fix: write for example line_confidence_under = 0.9",
+            id="line_confidence_under in percent",
+        ),
+        pytest.param(
+            "[screening.trials]\nline_confidence_under = -0.1\n",
+            'study.toml:16: screening.trials.line_confidence_under: out of bounds; found "-0.1", '
+            "expected a number of 0 or more\n"
+            "    fix: write for example line_confidence_under = 0.9",
+            id="line_confidence_under below 0",
+        ),
+        pytest.param(
             "[screening.trials]\noutside_share_over = 30\n",
             'study.toml:16: screening.trials.outside_share_over: out of bounds; found "30", '
             "expected a number of 1 or less\n"

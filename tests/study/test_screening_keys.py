@@ -30,8 +30,8 @@ from tests.study.written import SOUND
         pytest.param(
             "[screening.trials]\nunder_ms = 80\n",
             "study.toml:16: screening.trials.under_ms: unknown key; expected notes, "
-            "fewest_fixations, outside_share_over, duration_ms, blink_in_first_pass_of, "
-            "no_first_pass_on or answer_wrong\n"
+            "fewest_fixations, line_confidence_under, outside_share_over, duration_ms, "
+            "blink_in_first_pass_of, no_first_pass_on or answer_wrong\n"
             "    fix: it belongs in [screening.fixations] or [screening.fixations.merge]",
             id="rule of another level",
         ),
@@ -106,6 +106,13 @@ def test_key_astray_is_sent_home(refusal: Callable[..., str], tables: str, expec
             '"true", expected "drop" (no other in this version)\n'
             '    fix: write "drop"',
             id="true for blink",
+        ),
+        pytest.param(
+            "[screening.fixations]\nundersweep = true\n",
+            "study.toml:16: screening.fixations.undersweep: this is not one of the choices; found "
+            '"true", expected "drop" (no other in this version)\n'
+            '    fix: write "drop"',
+            id="true for undersweep",
         ),
         pytest.param(
             '[screening.fixations]\nblink = "keep"\n',

@@ -54,6 +54,25 @@ OFF_SCREEN = "off_screen = true\n"
             id="merge by characters",
         ),
         pytest.param({}, f"{FIXATIONS}over_ms = 80\n", "over_ms", id="one limit alone"),
+        pytest.param({}, f'{FIXATIONS}undersweep = "drop"\n', "undersweep", id="boxes in lines"),
+        pytest.param(
+            {'kind = "boxes"': 'kind = "wkt"'},
+            f'{FIXATIONS}undersweep = "drop"\n',
+            "undersweep",
+            id="polygons in lines",
+        ),
+        pytest.param(
+            {'kind = "boxes"\n': f'kind = "marked_text"\n{LAYOUT}'},
+            "[screening.trials]\nline_confidence_under = 0\n",
+            "line_confidence_under",
+            id="text in lines",
+        ),
+        pytest.param(
+            {},
+            '[lines]\nmethod = "consensus"\n[screening.trials]\nline_confidence_under = 0.9\n',
+            "line_confidence_under",
+            id="consensus by name",
+        ),
     ],
 )
 def test_rule_with_what_it_needs_is_accepted(

@@ -4,7 +4,7 @@ from collections.abc import Callable
 
 import pytest
 
-from tests.study.written import changed_at
+from tests.study.written import SOUND, changed_at
 
 NO_ONSET = {'onset = "t_start"': 'fixation = "n"'}
 LABELS_ALONE = {
@@ -164,6 +164,61 @@ def test_rule_about_places_has_positions(
 ) -> None:
     """Rules about places are refused without positions, and off_screen without a screen."""
     assert refusal(changed_at(changes) + tables).rsplit("\n", 1)[0] == expected
+
+
+@pytest.mark.parametrize(
+    ("key", "written"),
+    [
+        ("screening.fixations.undersweep", '[screening.fixations]\nundersweep = "drop"\n'),
+        (
+            "screening.trials.line_confidence_under",
+            "[screening.trials]\nline_confidence_under = 0.9\n",
+        ),
+    ],
+    ids=["undersweep", "line_confidence_under"],
+)
+@pytest.mark.parametrize(
+    ("changes", "line", "expected"),
+    [
+        pytest.param(
+            LABELS_ALONE,
+            15,
+            'regions.kind = "labels" has no lines; expected a kind of regions that have '
+            "positions\n    fix: remove this rule, or correct kind",
+            id="labels",
+        ),
+        pytest.param(
+            X_ALONE,
+            16,
+            'with regions.vertical = "any" no line can be told from another; expected '
+            'vertical = "box"\n    fix: remove this rule for texts of one line, or write '
+            'vertical = "box"',
+            id="x alone",
+        ),
+    ],
+)
+def test_rule_about_lines_has_lines(
+    refusal: Callable[..., str],
+    key: str,
+    written: str,
+    changes: dict[str, str],
+    line: int,
+    expected: str,
+) -> None:
+    """Rules about lines are refused where regions are in no lines, or y does not count."""
+    message = refusal(changed_at(changes) + written).rsplit("\n", 1)[0]
+    assert message == f"study.toml:{line}: {key}: {expected}"
+
+
+@pytest.mark.parametrize("method", ["slice", "nearest", "none"])
+def test_confidence_needs_all_methods(refusal: Callable[..., str], method: str) -> None:
+    """A method by itself does not tell how sure it is, so that the rule could never apply."""
+    tables = f'[lines]\nmethod = "{method}"\n[screening.trials]\nline_confidence_under = 0.9\n'
+    assert refusal(SOUND + tables).rsplit("\n", 1)[0] == (
+        f'study.toml:18: screening.trials.line_confidence_under: lines.method = "{method}" does '
+        'not tell how sure the lines are; expected method = "consensus"\n'
+        '    fix: write method = "consensus" in [lines], or remove this rule'
+    )
 
 
 @pytest.mark.parametrize(

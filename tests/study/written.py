@@ -89,7 +89,7 @@ space = "following"
 direction = "ltr"
 
 [lines]
-method = "nearest"
+method = "consensus"
 
 [screening.fixations]             # in this order
 outside_text_time = true          # starts before the text's onset or after its offset
@@ -97,6 +97,7 @@ off_screen = true
 first = 1                         # the first n of a trial (a fixation on the starting mark)
 last = 1                          # the last n (looking at the answer key)
 blink = "drop"                    # a fixation a blink touches
+undersweep = "drop"               # where a return sweep fell short and was corrected
 merge = { under_ms = 80, within_px = 14 }
 under_ms = 80
 over_ms = 800
@@ -104,6 +105,7 @@ over_ms = 800
 [screening.trials]
 notes = "notes.csv"               # the experimenter's own: participant, trial, reason
 fewest_fixations = 3
+line_confidence_under = 0.9       # which lines were read is less sure than this
 outside_share_over = 0.30
 duration_ms = [500, 30000]
 blink_in_first_pass_of = ["verb"]
@@ -140,6 +142,7 @@ off_screen = false
 first = false
 last = false
 blink = false
+undersweep = false
 merge = false
 under_ms = false
 over_ms = false
@@ -147,6 +150,7 @@ over_ms = false
 [screening.trials]
 notes = false
 fewest_fixations = false
+line_confidence_under = false
 outside_share_over = false
 duration_ms = false
 blink_in_first_pass_of = false

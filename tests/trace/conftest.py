@@ -7,7 +7,7 @@ import re
 import pytest
 
 from tests.end_to_end.building import PROJECT, copied_sample
-from tests.trace.tracing import BuiltStudy
+from tests.trace.tracing import BuiltStudy, unsure_sample
 
 
 @pytest.fixture(scope="session")
@@ -22,6 +22,13 @@ def passages(tmp_path_factory: pytest.TempPathFactory) -> BuiltStudy:
     """Texts of several lines."""
     folder = tmp_path_factory.mktemp("traced") / "passages"
     return BuiltStudy(PROJECT / "sample_logs" / "passages" / "study.toml", folder)
+
+
+@pytest.fixture(scope="session")
+def unsure(tmp_path_factory: pytest.TempPathFactory) -> BuiltStudy:
+    """Texts of several lines, half of them recorded badly."""
+    root = tmp_path_factory.mktemp("unsure")
+    return BuiltStudy(unsure_sample(root), root / "out")
 
 
 SCREENING = """
@@ -48,7 +55,7 @@ def screened(tmp_path_factory: pytest.TempPathFactory) -> BuiltStudy:
     return BuiltStudy(study_file, root / "out")
 
 
-@pytest.fixture(params=["orchard", "passages", "screened"])
+@pytest.fixture(params=["orchard", "passages", "screened", "unsure"])
 def study(request: pytest.FixtureRequest) -> BuiltStudy:
     """Each of the sample studies in turn."""
     return request.getfixturevalue(request.param)

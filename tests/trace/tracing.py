@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import math
+import random
 import re
 from collections.abc import Sequence
 from dataclasses import replace
@@ -14,6 +15,7 @@ import numpy as np
 
 import etl
 from etl.errors import Findings
+from etl.lines.consensus import SURE
 from etl.measures import REASONS, Measured, Sequences, compute
 from etl.regions.layout import columns, edge_px, line_extent_px
 from etl.report.trace_input import (
@@ -22,11 +24,13 @@ from etl.report.trace_input import (
     Regression,
     Removal,
     TracedFixation,
+    TracedLines,
     TracedTrial,
     Word,
 )
 from etl.session.plan import Plan, make_plan
-from tests.end_to_end.building import rows_of
+from etl.tables import LINE_RULES
+from tests.end_to_end.building import copied_sample, rows_of
 
 NAN = float("nan")
 NAMES = ("when", "topic", "auxiliary", "verb", "object", "spillover", "place")
@@ -150,6 +154,58 @@ def worked_example() -> TracedTrial:
     )
 
 
+#: Places and lines of a trial on three lines 60 px apart, whose middles are at 130, 190 and 250:
+#: x, y, line, confidence, and what else is known.
+DRIFTING = (
+    (150.0, 128.0, 1, 0.99, {}),
+    (250.0, 131.0, 1, 0.99, {}),
+    (350.0, 150.0, 1, 0.99, {}),
+    (250.0, 165.0, 2, 0.99, {"return_sweep": True, "undersweep": True}),
+    (120.0, 185.0, 2, 0.9, {}),
+    (250.0, 225.0, 2, 0.6249, {}),
+    (350.0, 400.0, 0, 0.95, {"on_none": "off_text"}),
+    (130.0, 248.0, 3, 1.0, {"return_sweep": True, "line_told": 2}),
+    (150.0, 252.0, 3, 1.0, {"line_told": 3}),
+    (250.0, 262.0, 3, 0.97, {"removal": Removal("under_ms", "80", "40")}),
+)
+
+
+def drifting(**more: Any) -> TracedTrial:
+    """A trial on three lines with all that can be said of lines."""
+    pieces = tuple(
+        Piece(3 * line + k + 1, line + 1, 100.0 * k + 100, 60.0 * line + 100, 100.0 * k + 200,
+              60.0 * line + 160)
+        for line in range(3)
+        for k in range(3)
+    )  # fmt: skip
+    words = tuple(
+        Word(p.line, "plum", p.left_px, p.top_px, p.right_px - 20, p.bottom_px) for p in pieces
+    )
+    orders = [3 * (line - 1) + int(x_px // 100) if line else 0 for x_px, _, line, _, _ in DRIFTING]
+    traced = by_hand(orders, [200.0] * 9 + [40.0], 9, pieces=pieces, words=words)
+    fixations = tuple(
+        replace(f, x_px=x_px, y_px=y_px, line=line, line_confidence=sure, **known)
+        for f, (x_px, y_px, line, sure, known) in zip(traced.fixations, DRIFTING, strict=True)
+    )
+    lines = TracedLines("consensus", {1: 130.0, 2: 190.0, 3: 250.0}, 1.0, True, "by_hand.csv")
+    return measured(replace(traced, fixations=fixations, **{"lines": lines, **more}))
+
+
+def unsure_sample(root: Path) -> Path:
+    """The passages sample, two of its readers as a bad recording has them; its study file."""
+    study_file = copied_sample("passages", root)
+    chance = random.Random(5)
+    for log in sorted((study_file.parent / "logs").glob("P3[34]_*")):
+        with log.open(encoding="utf-8", newline="") as file:
+            header, *rows = csv.reader(file)
+        y_px, lower = header.index("gaze_y"), 44.0 if log.name.startswith("P33") else 0.0
+        for row in rows:
+            row[y_px] = f"{float(row[y_px]) + lower + chance.gauss(0, 24):.1f}"
+        with log.open("w", encoding="utf-8", newline="") as file:
+            csv.writer(file, lineterminator="\n").writerows([header, *rows])
+    return study_file
+
+
 def geometry_of(plan: Plan, text: int) -> dict[str, Any]:
     """Lines, pieces and direction of a text of the library."""
     library = plan.library
@@ -200,6 +256,7 @@ class BuiltStudy:
             for row in rows_of(folder, table):
                 rows.setdefault((str(row["participant"]), str(row["trial"])), []).append(row)
         self._ledger = ledger_of(folder / "exclusions.csv")
+        self._of_lines = lines_in_ledger(folder / "exclusions.csv")
 
     @property
     def trials(self) -> list[tuple[str, str]]:
@@ -220,6 +277,7 @@ class BuiltStudy:
             outcomes.setdefault(row["measure"], []).append(Cell(value, row["missing"] or ""))
         why = dict(part.split(": ") for part in (facts["missing"] or "").split("; ") if part)
         names = list(facts)[list(facts).index("any_regression") : -1]
+        names = [name for name in names if name != "line_confidence"]
         return TracedTrial(
             participant,
             own.get("session", ""),
@@ -227,7 +285,11 @@ class BuiltStudy:
             own["item"],
             {name: own[name] for name in self.study.trials.factors},
             fixations=tuple(
-                traced_fixation(row, self._ledger.get((*key, str(row["fixation"]), "")))
+                traced_fixation(
+                    row,
+                    self._ledger.get((*key, str(row["fixation"]), "")),
+                    self._of_lines.get((*key, str(row["fixation"])), ("", "")),
+                )
                 for row in self._by_trial["fixations"][key]
             ),
             regressions=tuple(
@@ -249,7 +311,24 @@ class BuiltStudy:
                 for name in outcomes
                 if (row := self._ledger.get((*key, region, name)))
             },
+            lines=self._lines(facts, geometry),
             **geometry,
+        )
+
+    def _lines(self, facts: dict[str, Any], geometry: dict[str, Any]) -> TracedLines | None:
+        """How the lines of a trial of several were told, by the tables and the layout alone."""
+        numbers = sorted({piece.line for piece in geometry.get("pieces", ())})
+        if "line_confidence" not in facts or len(numbers) < 2:
+            return None
+        layout, told = self.study.regions.layout, self.study.lines
+        middles = {n: layout.top_px + layout.line_height_px * (n - 0.5) for n in numbers}
+        sure = facts["line_confidence"]
+        return TracedLines(
+            told.method if told else "consensus",
+            middles,
+            NAN if sure is None else sure,
+            sure is not None and sure >= SURE,
+            (told.corrections if told else None) or "",
         )
 
 
@@ -266,8 +345,18 @@ def ledger_of(path: Path) -> dict[tuple[str, str, str, str], dict[str, str]]:
             row["observed"].split()[0] if row["level"] == "value" else "",
         ): row
         for row in rows
-        if row["level"] in {"fixation", "value"}
+        if row["level"] in {"fixation", "value"} and row["rule"] not in LINE_RULES
     }
+
+
+def lines_in_ledger(path: Path) -> dict[tuple[str, str, str], tuple[str, str]]:
+    """What the ledger says of lines: rule and finding by participant, trial and fixation."""
+    with path.open(encoding="utf-8", newline="") as file:
+        return {
+            (row["participant"], row["trial"], row["fixation"]): (row["rule"], row["observed"])
+            for row in csv.DictReader(file)
+            if row["rule"] in LINE_RULES
+        }
 
 
 def removal_of(row: dict[str, str]) -> Removal:
@@ -276,13 +365,18 @@ def removal_of(row: dict[str, str]) -> Removal:
     return Removal(row["rule"], row["limit"], observed, row["also"])
 
 
-def traced_fixation(row: dict[str, Any], entry: dict[str, str] | None) -> TracedFixation:
-    """A row of the table of fixations, with its row of the ledger where it has one."""
+def traced_fixation(
+    row: dict[str, Any], entry: dict[str, str] | None, of_line: tuple[str, str]
+) -> TracedFixation:
+    """A row of the table of fixations, with its rows of the ledger where it has some."""
     merged = re.fullmatch(r"merged into (\d+)", entry["action"]) if entry else None
 
     def number(name: str) -> float:
-        return math.nan if row[name] is None else float(row[name])
+        return math.nan if row.get(name) is None else float(row[name])
 
+    rule, observed = of_line
+    found = re.fullmatch(r"line (\d+)", observed)
+    by_hand = (int(found[1]) if found else 0) if rule == "line_corrections" else None
     return TracedFixation(
         row["fixation"],
         number("onset_ms"),
@@ -297,4 +391,9 @@ def traced_fixation(row: dict[str, Any], entry: dict[str, str] | None) -> Traced
         row["source_line"],
         None if row["kept"] else (removal_of(entry) if entry else Removal(row["left_out_by"])),
         int(merged[1]) if merged else 0,
+        line_confidence=number("line_confidence"),
+        return_sweep=row.get("return_sweep") == 1,
+        undersweep=row.get("undersweep") == 1,
+        on_none=observed.split(",")[0] if rule == "no_line" else "",
+        line_told=by_hand,
     )

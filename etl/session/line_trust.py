@@ -1,0 +1,33 @@
+"""How far the lines of a reader's trials can be trusted, for what is told of them."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import NDArray
+
+from etl.report import LineTrust
+
+if TYPE_CHECKING:
+    from etl.session.lines import ReaderLines
+
+
+def trust_of(lines: ReaderLines | None, trial: NDArray[np.int64]) -> LineTrust | None:
+    """How far each trial of a reader can be trusted.
+
+    Parameters
+    ----------
+    lines : ReaderLines or None
+        How lines were told; None where texts have no lines to tell apart.
+    trial : (n,) int64 array
+        The trial of each fixation.
+
+    Returns
+    -------
+    LineTrust or None
+    """
+    if lines is None:
+        return None
+    by_hand = np.bincount(trial[lines.by_hand], minlength=len(lines.sure)) > 0
+    return LineTrust(lines.trial_confidence, lines.sure, by_hand)
