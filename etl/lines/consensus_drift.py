@@ -25,7 +25,7 @@ from etl.lines.passage import Passage, Positions
 #: How large drifts are expected to be, as standard deviations of normal distributions about 0.
 #: Slope and stretch are of the ranges that Carr et al. (2022) simulate (-0.1 to 0.1 px per px,
 #: -0.2 to 0.2), the others are judgements. Heights are in distances between lines.
-OFFSET_SD: Final = 0.6
+OFFSET_SD: Final = 0.35
 SLOPE_SD: Final = 0.06  # px per px
 STRETCH_SD: Final = 0.12  # of the distance from the middle of the text
 ARC_SD: Final = 0.08  # of a bow over the width

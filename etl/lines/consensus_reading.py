@@ -36,7 +36,7 @@ FAR_AT, FAR_SOFT = 0.2, 0.05
 SHORTEST_LINE: Final = 0.15
 
 #: Chance that reading begins on the first line; the rest is shared by all lines.
-BEGINS_FIRST: Final = 0.9
+BEGINS_FIRST: Final = 0.5
 #: Chances of being away: for any fixation (1 to 2 in 100 were left out by hand in the data of Carr
 #: et al. 2022), for a lone one among the first few, in mid sweep, and once more after another.
 AWAY, AWAY_EARLY, AWAY_MID_SWEEP, AWAY_AGAIN = 0.015, 0.2, 0.6, 0.2

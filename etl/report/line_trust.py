@@ -23,7 +23,7 @@ class LineTrust:
     sure : (trials,) bool array
         Whether that is enough.
     by_hand : (trials,) bool array
-        Whether a line of the trial was set by hand; its confidence is then 1.
+        Whether all lines of the trial were set by hand; its confidence is then 1.
     """
 
     confidence: NDArray[np.float64]

@@ -29,5 +29,9 @@ def trust_of(lines: ReaderLines | None, trial: NDArray[np.int64]) -> LineTrust |
     """
     if lines is None:
         return None
-    by_hand = np.bincount(trial[lines.by_hand], minlength=len(lines.sure)) > 0
+    count = len(lines.sure)
+    some = np.bincount(trial[lines.by_hand], minlength=count) > 0
+    # Some corrections say nothing about the rest of a trial.
+    left = np.bincount(trial[(lines.line >= 0) & ~lines.by_hand], minlength=count) > 0
+    by_hand = some & ~left
     return LineTrust(lines.trial_confidence, lines.sure, by_hand)

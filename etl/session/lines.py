@@ -252,8 +252,12 @@ class LineWork:
         hand: HandLines,
         at: NDArray[np.int64],
         before: Numbers,
+        trial: NDArray[np.int64],
     ) -> ReaderLines:
         """Put the lines set by hand in place of those told.
+
+        A trial is sure by hand where the line of every fixation about which the method was asked
+        was set by hand. Some corrections say nothing about the rest.
 
         Parameters
         ----------
@@ -265,18 +269,24 @@ class LineWork:
             The fixation of each.
         before : (k,) int32 array
             The line on which each would be without it.
+        trial : (n,) int64 array
+            Index of the trial of every fixation.
 
         Returns
         -------
         ReaderLines
         """
+        asked = told.line >= 0
         told.line[at] = hand.line
         told.confidence[at] = 1.0
         told.reason[at] = 0
         told.by_hand[at] = True
         told.before[at] = before
-        told.trial_confidence[hand.trial] = 1.0
-        told.sure[hand.trial] = True
+        left = np.zeros(len(told.sure), dtype=bool)
+        left[trial[asked & ~told.by_hand]] = True
+        whole = hand.trial[~left[hand.trial]]
+        told.trial_confidence[whole] = 1.0
+        told.sure[whole] = True
         return told
 
     def labelled(

@@ -70,7 +70,7 @@ def place_fixations(
     if len(hand):
         hand, at = _fixations_meant(reader, ordered, library, findings)
         before = _assigned(library, log, text, told.line).line[at]
-        told = work.corrected(told, hand, at, before)
+        told = work.corrected(told, hand, at, before, ordered.trial)
     found = _assigned(library, log, text, told.line)
     told = work.labelled(told, reader.trials, log, ordered, found.line)
     return Placed(found.line, found.order, told)

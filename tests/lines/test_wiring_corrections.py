@@ -66,9 +66,14 @@ def test_ledger_says_what_was_there_before(built: Built) -> None:
     assert built.result.counts["lines set by hand"] == 2
 
 
-def test_trial_with_a_line_set_by_hand_is_sure(built: Built) -> None:
-    """Somebody has looked at it."""
+def test_trial_is_sure_by_hand_where_all_of_it_was_set(built: Built, tmp_path: Path) -> None:
+    """Two corrections say nothing about the rest of a trial; a table of all its lines does."""
     sure = {r["participant"]: r["line_confidence"] for r in rows_of(built.folder, "trials")}
+    assert sure["A1"] < 1.0
+    assert sure["A2"] < 1.0
+    every = "".join(f"A1,1,{n},{f.line}\n" for n, f in enumerate(TRIALS["A1", "1"], start=1))
+    whole = corrected(every).built(tmp_path)
+    sure = {r["participant"]: r["line_confidence"] for r in rows_of(whole.folder, "trials")}
     assert sure["A1"] == 1.0
     assert sure["A2"] < 1.0
 

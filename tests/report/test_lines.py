@@ -42,11 +42,17 @@ def built(tmp_path_factory: pytest.TempPathFactory) -> Built:
 
 @pytest.fixture(scope="module")
 def by_hand(tmp_path_factory: pytest.TempPathFactory) -> Built:
-    """The same with a line of one unsure trial set by hand, and a limit for the rest."""
+    """The same with all lines of one unsure trial set by hand, and a limit for the rest."""
     root = tmp_path_factory.mktemp("by_hand")
     study_file = unsure_sample(root)
+    fixations = Built(study_file, root / "before").result.table("fixations")
+    own = fixations[(fixations["participant"].astype(str) == "P33") & (fixations["trial"] == 3)]
+    rows = "".join(
+        f"P33,3,{number},{line}\n"
+        for number, line in zip(own["fixation"], own["line"].fillna(0).astype(int), strict=True)
+    )
     (study_file.parent / "lines.csv").write_text(
-        "participant,trial,fixation,line\nP33,3,1,1\n", encoding="utf-8", newline="\n"
+        "participant,trial,fixation,line\n" + rows, encoding="utf-8", newline="\n"
     )
     text = study_file.read_text(encoding="utf-8")
     more = (
