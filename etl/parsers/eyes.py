@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from etl.errors import Finding, Findings
 from etl.files import Coded, marks_of
 from etl.parsers.canonical import LogNote
+from etl.parsers.time_checks import WAY_OUT
 
 if TYPE_CHECKING:
     from etl.study.models import Logs
@@ -225,7 +226,7 @@ class EyeChoice:
                 where=f'column "{header}"',
                 found=cells[header][row].as_py(),
                 expected="an eye",
-                fix=_WAY_OUT,
+                fix=WAY_OUT,
             )
         listed = [
             v for name, values in logs.where.items() if name in ("eye", header) for v in values
@@ -242,7 +243,7 @@ class EyeChoice:
                     where=f'column "{header}"',
                     found=eye.text(row),
                     expected=f"{wanted[code]}, or the other eye in about as many rows",
-                    fix=f'{_WAY_OUT}; where = {{ "{header}" = […] }} with all eyes keeps them',
+                    fix=f'{WAY_OUT}; where = {{ "{header}" = […] }} with all eyes keeps them',
                 )
         code_of = {text: code for code, text in enumerate(eye.values)}
         codes = np.array([*(code_of.get(one, -2) for one in wanted), -2], dtype=np.int32)
@@ -251,7 +252,6 @@ class EyeChoice:
 
 #: Line of each row, who read it, and the eye that counts for each reader.
 _Who = tuple[NDArray[np.int32], Coded, list[str]]
-_WAY_OUT = "correct the cell, remove the row, or leave such rows out by [logs.where]"
 
 
 def _doubtful(eye: Coded, own: NDArray[np.int64], known: Collection[str]) -> Iterator[int]:

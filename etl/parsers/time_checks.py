@@ -20,7 +20,7 @@ _TO_MS = {"ms": 1.0, "s": 1000.0, "us": 0.001}
 #: 300 ms and not 299.99999999999994.
 _MS_DIGITS = 6
 #: What to do about a row that cannot be used.
-_WAY_OUT = "correct the cell, remove the row, or leave such rows out by [logs.where]"
+WAY_OUT = "correct the cell, remove the row, or leave such rows out by [logs.where]"
 
 
 def in_ms(values: NDArray[np.float64], unit: str) -> NDArray[np.float64]:
@@ -86,7 +86,7 @@ def check_times(
                 where=f'column "{columns[name]}"',
                 found=cells[columns[name]][row].as_py(),
                 expected=expected,
-                fix=_WAY_OUT,
+                fix=WAY_OUT,
             )
 
     for name, what in (("onset", "onset"), ("end", "end"), ("fixation", "number")):

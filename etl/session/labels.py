@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.parsers import CanonicalLog
+from etl.session.listing import first_few
 
 #: How many labels a message lists.
 _LISTED = 12
@@ -114,13 +115,11 @@ def tell_unlisted(
             "or with a region of its own",
         )
     if others:
-        more = "" if len(others) <= _LISTED else f" and {len(others) - _LISTED:,} more"
         count = sum(unlisted[label].count for label in others)
         findings.note(
             (f"{count:,} fixations bear labels" if count > 1 else "1 fixation bears a label")
             + f" that {region_file} does not list, outside every region: "
-            + ", ".join(others[:_LISTED])
-            + more
+            + first_few(others, _LISTED)
         )
 
 

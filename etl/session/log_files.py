@@ -15,6 +15,7 @@ from etl.session.datasets import (
     tell_of_lost_recordings,
     tell_of_other_recordings,
 )
+from etl.session.listing import first_few
 from etl.study import Study
 from etl.trials.facts import shown_path
 
@@ -123,7 +124,6 @@ def _note_unread(study: Study, logs: list[Path], findings: Findings) -> None:
         and path.absolute() not in named
     )
     if unread:
-        more = f" and {len(unread) - _LISTED:,} more" if len(unread) > _LISTED else ""
         one = len(unread) == 1
         findings.warning(
             f"{'a file lies' if one else f'{len(unread):,} files lie'} among the logs and "
@@ -131,7 +131,7 @@ def _note_unread(study: Study, logs: list[Path], findings: Findings) -> None:
             path=study.shown,
             line=study.line_of("logs", "files"),
             where="logs.files",
-            found=", ".join(unread[:_LISTED]) + more,
+            found=first_few(unread, _LISTED),
             fix="if it is a log, add a pattern for its name; else move it to another folder"
             if one
             else "if they are logs, add a pattern for their names; else move them elsewhere",

@@ -16,6 +16,7 @@ from etl.session.far_off import FEWEST_PLACED
 from etl.session.gallery import Choice
 from etl.session.labels import Unlisted, tell_unlisted
 from etl.session.line_ledger import notice_lines
+from etl.session.listing import first_few
 from etl.session.misplaced import refuse_misplaced
 from etl.session.ordering import OVERLAP_TOLERATED_MS
 from etl.session.reader import ReaderTables
@@ -132,10 +133,7 @@ class Totals:
             "rows may be missing",
             path=logs[files[0]],
             line=first.first_line,
-            found=", ".join(told[:MOST_LISTED])
-            + (f" and {len(told) - MOST_LISTED:,} more logs" if len(told) > MOST_LISTED else "")
-            if len(told) > 1
-            else None,
+            found=first_few(told, MOST_LISTED, of=" logs") if len(told) > 1 else None,
             expected="numbers without a gap within a trial, as elsewhere in these logs",
         )
 
@@ -231,13 +229,12 @@ class Totals:
                 if read and own.by_rule[rule] / read > TAKEN_OF_READER:
                     hit.append(f"{reader} ({own.by_rule[rule]:,} of {read:,})")
             if hit:
-                more = f" and {len(hit) - MOST_LISTED:,} more" if len(hit) > MOST_LISTED else ""
                 findings.warning(
                     f"the rule {rule} takes most fixations of "
                     + ("a reader" if len(hit) == 1 else f"{len(hit):,} readers"),
                     path=study.shown,
                     line=study.line_of(*key_of(rule)),
                     where=".".join(key_of(rule)),
-                    found=", ".join(hit[:MOST_LISTED]) + more,
+                    found=first_few(hit, MOST_LISTED),
                     fix="check the times and units in the logs and tables of these readers",
                 )
