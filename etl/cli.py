@@ -164,7 +164,8 @@ def build(study: Path, into: Path | None, workers: int | None, *, quiet: bool) -
 def trace(study: Path, participant: str, trial: str, *, quiet: bool, **wanted: Any) -> None:
     """Show one TRIAL of a PARTICIPANT, and why each outcome is what it is.
 
-    PARTICIPANT and TRIAL are named as in the tables.
+    PARTICIPANT and TRIAL are named as in the tables. A reader who has a pseudonym may be named by
+    id too, and is shown by pseudonym.
     """
     loaded = etl.load_study(study)
     picture, lines = wanted["picture"], wanted["lines"]

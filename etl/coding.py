@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
+import math
 import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from fractions import Fraction
 from typing import Final
 
 import numpy as np
@@ -105,19 +107,66 @@ def coding_of(
     return Coding(factor, wanted, levels, _named(factor, ends), _rows(matrix))
 
 
+def tells_levels_apart(columns: Sequence[Sequence[float]], levels: int) -> bool:
+    """Whether columns of numbers can stand for a factor in a model.
+
+    Parameters
+    ----------
+    columns : sequence of sequence of float
+        ``levels`` finite numbers each.
+    levels : int
+        How many the factor has.
+
+    Returns
+    -------
+    bool
+        Whether there are ``levels - 1`` columns, of which none can be computed from the others and
+        a constant: the columns with the intercept have full rank.
+
+    Examples
+    --------
+    >>> tells_levels_apart([[-0.5, 0.5]], 2), tells_levels_apart([[1, 1]], 2)
+    (True, False)
+    """
+    if len(columns) != levels - 1:
+        return False
+    matrix = np.ones((levels, levels))
+    for place, numbers in enumerate(columns, start=1):
+        # A column in other units is the same column.
+        largest = max(map(abs, numbers))
+        matrix[:, place] = np.array(numbers, dtype=np.float64) / (largest or 1.0)
+    return bool(np.linalg.matrix_rank(matrix) == levels)
+
+
 def _named(factor: str, ends: Sequence[str]) -> tuple[str, ...]:
     """Names of columns that need no quotes in a formula; numbered where signs would clash."""
-    start = _plain(factor) or "factor"
+    start = plain_name(factor) or "factor"
     if not start[0].isalpha():
         start = f"f_{start}"
-    plain = [_plain(end) for end in ends]
+    plain = [plain_name(end) for end in ends]
     if "" in plain or len(set(plain)) < len(plain):
         plain = [str(place) for place in range(1, len(ends) + 1)]
     return tuple(f"{start}_{end}" for end in plain)
 
 
-def _plain(text: str) -> str:
-    """Letters, digits and single underscores only."""
+def plain_name(text: str) -> str:
+    """What can be kept of a text in the name of a column that needs no quotes in a formula.
+
+    Parameters
+    ----------
+    text : str
+        A factor, a level, or the name of a column.
+
+    Returns
+    -------
+    str
+        Its unaccented letters and digits, with single underscores between; perhaps nothing.
+
+    Examples
+    --------
+    >>> plain_name("too early (1)"), plain_name("+")
+    ('too_early_1', '')
+    """
     return re.sub(r"[^0-9A-Za-z]+", "_", text).strip("_")
 
 
@@ -146,10 +195,25 @@ def _helmert(k: int) -> NDArray[np.float64]:
 
 
 def _polynomial(k: int) -> NDArray[np.float64]:
-    """Orthonormal polynomials over equally spaced levels."""
-    if k < 2:
-        return np.zeros((k, 0))
-    steps = np.arange(k) - (k - 1) / 2
-    q, r = np.linalg.qr(np.vander(steps, k, increasing=True))
-    # The decomposition leaves signs open: each polynomial is to end above zero.
-    return np.round(q * np.sign(np.diag(r)), 15)[:, 1:]
+    """Orthonormal polynomials over equally spaced levels; each ends above zero.
+
+    Exact fractions until the last step give the same digits on every machine: a decomposition of
+    powers does not, and loses them where there are many levels.
+    """
+    matrix = np.zeros((k, max(k - 1, 0)))
+    steps = [Fraction(2 * place - k + 1) for place in range(k)]
+    before, now = [Fraction(0)] * k, [Fraction(1)] * k
+    ratio = Fraction(0)
+    for degree in range(1, k):
+        length = sum((value * value for value in now), Fraction(0))
+        before, now = (
+            now,
+            [x * y - ratio * z for x, y, z in zip(steps, now, before, strict=True)],
+        )
+        squares = sum((value * value for value in now), Fraction(0))
+        ratio = squares / length
+        matrix[:, degree - 1] = [
+            math.copysign(math.sqrt(value * value / squares), value) if value else 0.0
+            for value in now
+        ]
+    return matrix

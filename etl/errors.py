@@ -6,8 +6,9 @@ lists every problem at once. Only this module turns findings into text.
 
 from __future__ import annotations
 
+import re
 from collections import Counter
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from typing import Literal, TypedDict, Unpack
 
@@ -22,6 +23,9 @@ SPELLED_OUT = 5
 FILES_SPELLED_OUT = 10
 #: Lists of files are broken into lines of about this many letters.
 _LIST_WIDTH = 96
+
+#: Words that may stand for another name; see :mod:`etl.pseudonyms`.
+_STANDING_FOR = re.compile(r"(?<![0-9A-Za-z])(?:log-|file-)?[0-9A-Z]{8}(?![0-9A-Za-z])")
 
 Kind = tuple[str, str, str, str]
 
@@ -137,6 +141,9 @@ class Findings:
 
     items: list[Finding] = field(default_factory=list)
     more: Counter[Kind] = field(default_factory=Counter)
+    #: What names that stand for others are turned back into where findings become text; empty for
+    #: records that travel.
+    names: Mapping[str, str] = field(default_factory=dict)
 
     def add(self, finding: Finding) -> None:
         """Record a finding; of a kind that has been spelled out often enough it is only counted."""
@@ -160,6 +167,7 @@ class Findings:
     def extend(self, others: Findings) -> None:
         """Take over all that another list holds, in its order."""
         told: Counter[Kind] = Counter()
+        self.names = self.names or others.names
         for finding in others.items:
             self.add(finding)
             told[finding.kind] += 1
@@ -225,7 +233,13 @@ class Findings:
                     f"    … and {count:,} more in {len(rest):,} more {what}: {place}{problem}"
                     + "".join(f"\n    {line}" for line in in_lines([path for path, _ in rest]))
                 )
-        return out
+        return [self._turned_back(line) for line in out]
+
+    def _turned_back(self, text: str) -> str:
+        """A text with the names that stand for others turned back."""
+        if not self.names:
+            return text
+        return _STANDING_FOR.sub(lambda found: self.names.get(found[0], found[0]), text)
 
     def _spelled(self, kind: Kind) -> int:
         """How many findings of a kind are spelled out."""

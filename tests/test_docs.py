@@ -107,7 +107,7 @@ KEYS_OF = {
         "fewest_trials_per_cell",
     ),
     "screening.values": ("outlier_sd",),
-    "output": ("folder", "formats"),
+    "output": ("folder", "formats", "contrasts", "centred", "pseudonyms"),
 }
 KEYS = [f"{table}.{key}".lstrip(".") for table, keys in KEYS_OF.items() for key in keys]
 

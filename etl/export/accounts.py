@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-import csv
 from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import Final, Literal
 
+from etl.cells import write_csv
 from etl.errors import FaultError
 from etl.screening.ledger import Accounts
 
@@ -58,8 +58,8 @@ def _row(reader: str, unit: str, own: Accounts, rules: Sequence[str]) -> list[st
 
 def write_accounts(rows: Sequence[Sequence[str | int]], folder: Path) -> None:
     """Write ``accounts.csv`` into a folder."""
-    with (folder / ACCOUNTS).open("w", encoding="utf-8", newline="") as file:
-        csv.writer(file, lineterminator="\n").writerows(rows)
+    header, *body = rows
+    write_csv(folder / ACCOUNTS, [str(name) for name in header], body)
 
 
 def account_text(rows: Sequence[Sequence[str | int]]) -> str:

@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-import csv
 from collections.abc import Iterable
 from dataclasses import dataclass
 from pathlib import Path
 
+from etl.cells import write_csv
 from etl.errors import FaultError
 
 LOG_ACCOUNTS = "log_accounts.csv"
@@ -102,6 +102,5 @@ def _row(name: str, unit: str, counted: Counted) -> list[str | int]:
 
 def write_log_accounts(logs: Iterable[LogAccount], folder: Path) -> None:
     """Write ``log_accounts.csv`` into a folder."""
-    rows = log_account_rows(logs)
-    with (folder / LOG_ACCOUNTS).open("w", encoding="utf-8", newline="") as file:
-        csv.writer(file, lineterminator="\n").writerows(rows)
+    _, *rows = log_account_rows(logs)
+    write_csv(folder / LOG_ACCOUNTS, list(COLUMNS), rows)

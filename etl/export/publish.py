@@ -4,10 +4,11 @@ from __future__ import annotations
 
 import contextlib
 import glob
+import hashlib
 import json
 import shutil
 import tempfile
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping, Sequence, Set
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
@@ -17,6 +18,8 @@ from etl.errors import DataError, Findings
 #: The file by which an output folder is known as one of ours.
 RECORD = "run.json"
 PROGRAM = "trialwright"
+#: The folder within the output folder that can be sent away whole.
+BUNDLE = "handoff"
 _ASIDE = "old"
 
 
@@ -54,7 +57,7 @@ def check_target(target: Path, shown: str) -> None:
             fix="name a folder, by [output] folder or --into",
         )
     elif target.is_dir():
-        there = {path.name for path in target.iterdir()} - _LITTER
+        there = any(path.name not in _LITTER for path in target.iterdir())
         record = _record_of(target)
         if there and record is None:
             findings.error(
@@ -63,19 +66,71 @@ def check_target(target: Path, shown: str) -> None:
                 expected=f"a new or empty folder, or one that {PROGRAM} wrote (it has a {RECORD})",
                 fix="name another folder, by [output] folder or --into, or empty this one yourself",
             )
-        elif record is not None and (strange := sorted(there - {RECORD, *record.get("files", ())})):
-            more = f" and {len(strange) - 5} more" if len(strange) > 5 else ""
-            findings.error(
-                "the output folder holds files that no build wrote, and a build replaces the "
-                "folder as a whole",
-                path=shown,
-                found=", ".join(strange[:5]) + more,
-                expected="nothing but an earlier build",
-                fix="move these files elsewhere, or name another folder, by [output] folder or "
-                "--into",
-            )
+        elif record is not None:
+            _refuse_to_lose(target, shown, record, findings)
     if findings.failed:
         raise DataError(findings)
+
+
+def _refuse_to_lose(
+    target: Path, shown: str, record: Mapping[str, Any], findings: Findings
+) -> None:
+    """Find what people have put or changed in an earlier build, which would go with it."""
+    known = {RECORD, *_texts(record.get("files"))}
+    fix = "move {} elsewhere, or name another folder, by [output] folder or --into"
+    if strange := sorted(_strange(target, "", known)):
+        findings.error(
+            "the output folder holds files that no build wrote, and a build replaces the "
+            "folder as a whole",
+            path=shown,
+            found=_first_of(strange),
+            expected="nothing but an earlier build",
+            fix=fix.format("these files"),
+        )
+    digests = record.get("to_be_changed")
+    digests = digests if isinstance(digests, dict) else {}
+    if changed := sorted(
+        name
+        for name, digest in digests.items()
+        if (target / name).is_file() and digest_of(target / name) != digest
+    ):
+        findings.error(
+            "files of the output folder were changed since the build that wrote them, and a build "
+            "replaces the folder as a whole",
+            path=shown,
+            found=_first_of(changed),
+            expected="an earlier build as it was written",
+            fix=fix.format("them"),
+        )
+
+
+def _texts(found: object) -> list[str]:
+    """The texts of a list, as far as it is one."""
+    return [name for name in found if isinstance(name, str)] if isinstance(found, list) else []
+
+
+def _strange(folder: Path, before: str, known: Set[str]) -> Iterator[str]:
+    """What no build wrote, by its path within the output folder; a folder only as a whole."""
+    for path in folder.iterdir():
+        name = f"{before}{path.name}"
+        if path.is_dir() and not path.is_symlink():
+            if any(one.startswith(f"{name}/") for one in known):
+                yield from _strange(path, f"{name}/", known)
+            else:
+                yield name
+        elif name not in known and path.name not in _LITTER:
+            yield name
+
+
+def _first_of(names: Sequence[str]) -> str:
+    """Some names, and how many more there are."""
+    return ", ".join(names[:5]) + (f" and {len(names) - 5} more" if len(names) > 5 else "")
+
+
+def digest_of(path: Path) -> str:
+    """The SHA-256 of a file, as it stands in the record."""
+    with path.open("rb") as file:
+        return hashlib.file_digest(file, "sha256").hexdigest()
 
 
 @dataclass(frozen=True, slots=True)

@@ -21,7 +21,7 @@ from etl.export.row_columns import (
     TrialColumns,
 )
 from etl.screening.ledger import LEVELS, Entry
-from etl.tables import CODED, LEDGER, TABLES, TableDesign, written_schema
+from etl.tables import CODED, LEDGER, TABLES, TableDesign, centred_name, written_schema
 
 __all__ = [
     "CellMeasures",
@@ -52,6 +52,13 @@ class RowMaker:
             for name, known in design.ids.items()
         }
         self._levels = {n: pa.array(levels, pa.string()) for n, levels in design.factors.items()}
+        self._codings = {
+            factor: np.array(coding.matrix).reshape(len(coding.levels), len(coding.columns))
+            for factor, coding in design.codings.items()
+        }
+        described = (*design.id_columns(), *design.factor_columns())
+        self._of_saccades = tuple(column.name for column in described)
+        self._of_outcomes = (*self._of_saccades, *(c.name for c in design.covariate_columns()))
         self._covariates = {
             n: pa.array(c.values, pa.string()) for n, c in design.covariates.items()
         }
@@ -82,12 +89,18 @@ class RowMaker:
         columns = self.ids(trials)
         for name, levels in self._levels.items():
             columns[name] = _coded(trials.factors[name], levels)
+            if name in self._codings:
+                numbers = self._codings[name][trials.factors[name]]
+                for place, column in enumerate(self.design.codings[name].columns):
+                    columns[column] = pa.array(numbers[:, place])
         for name, values in trials.covariates.items():
             columns[name] = (
                 pa.array(values, from_pandas=True)
                 if self.design.covariates[name].type == "number"
                 else _coded(values.astype(np.int32), self._covariates[name])
             )
+        for name, mean in self.design.centred.items():
+            columns[centred_name(name)] = pa.array(trials.covariates[name] - mean, from_pandas=True)
         return columns
 
     def _repeated(
@@ -96,9 +109,6 @@ class RowMaker:
         """Facts of each row's trial."""
         index = pa.array(trial)
         return [facts[name].take(index) for name in names]
-
-    def _design_names(self) -> tuple[str, ...]:
-        return (*self.design.ids, *self.design.factors, *self.design.covariates)
 
     def outcomes(
         self,
@@ -125,7 +135,7 @@ class RowMaker:
         reasons = np.stack([measured.reasons[n] for n in self._measures], axis=1).ravel()
         names, kinds = self._tiled_names(len(trial))
         columns = [
-            *self._repeated(facts, np.repeat(trial, width), self._design_names()),
+            *self._repeated(facts, np.repeat(trial, width), self._of_outcomes),
             _coded(np.repeat(code, width), self._regions),
             pa.array(np.repeat(order, width).astype(np.int64)),
             names,
@@ -154,7 +164,7 @@ class RowMaker:
         """Wide rows: one a cell; parameters as for :meth:`outcomes`."""
         trial, order, code = cells
         columns = [
-            *self._repeated(facts, trial, self._design_names()),
+            *self._repeated(facts, trial, self._of_outcomes),
             _coded(code, self._regions),
             pa.array(order.astype(np.int64)),
             *(_measure(measured.values[m.name], m.kind) for m in self.design.measures),
@@ -170,7 +180,7 @@ class RowMaker:
         """One row a kept trial; how sure its lines are where the study tells lines."""
         measures = self.design.trial_measures
         columns = [
-            *(facts[name] for name in self._design_names()),
+            *(facts[name] for name in self._of_outcomes),
             *(_measure(measured.values[m.name], m.kind) for m in measures),
             *(() if line_confidence is None else [pa.array(line_confidence, from_pandas=True)]),
             self._why_missing(measured),
@@ -195,9 +205,8 @@ class RowMaker:
     ) -> pa.RecordBatch:
         """One row a regressive saccade."""
         c = columns
-        names = (*self.design.ids, *self.design.factors)
         arrays = [
-            *self._repeated(facts, c.trial, names),
+            *self._repeated(facts, c.trial, self._of_saccades),
             _coded(c.from_code, self._regions),
             pa.array(c.from_order.astype(np.int64)),
             _coded(c.to_code, self._regions),

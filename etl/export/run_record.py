@@ -10,8 +10,10 @@ from importlib.metadata import version
 from pathlib import Path
 from typing import Any
 
-from etl.export.publish import PROGRAM, RECORD
+from etl.export.publish import BUNDLE, PROGRAM, RECORD, digest_of
 
+#: Files that people are asked to change: a changed one is theirs, and no build may replace it.
+_TO_BE_CHANGED = ("start.R", "start.py")
 _LIBRARIES = ("numpy", "pandas", "pyarrow", "pydantic", "shapely")
 
 
@@ -46,7 +48,21 @@ class RunRecord:
     elapsed_s: float
 
     def write(self, folder: Path) -> None:
-        """Write the record into a folder."""
+        """Write the record into a folder, and into the bundle within it where there is one.
+
+        Parameters
+        ----------
+        folder : Path
+            Where everything else that the build writes is already. The record lists its files,
+            those of the bundle by their path, and the digests of the scripts that people change.
+        """
+        bundle = folder / BUNDLE
+        files = {
+            path.relative_to(folder).as_posix() for path in folder.rglob("*") if path.is_file()
+        }
+        scripts = [bundle / name for name in _TO_BE_CHANGED if (bundle / name).is_file()]
+        places = [folder, bundle] if bundle.is_dir() else [folder]
+        files |= {(place / RECORD).relative_to(folder).as_posix() for place in places[1:]}
         record = {
             "program": PROGRAM,
             "version": version("trialwright"),
@@ -55,11 +71,15 @@ class RunRecord:
             "study": self.study,
             "inputs": list(self.inputs),
             "counts": dict(self.counts),
-            "files": sorted(path.name for path in folder.iterdir()),
+            "files": sorted(files),
+            "to_be_changed": {
+                path.relative_to(folder).as_posix(): digest_of(path) for path in scripts
+            },
             "rows": dict(self.rows),
             "warnings": list(self.warnings),
             "not_recorded": list(self.not_recorded),
             "elapsed_s": round(self.elapsed_s, 3),
         }
         text = json.dumps(record, ensure_ascii=False, indent=2) + "\n"
-        (folder / RECORD).write_text(text, encoding="utf-8", newline="\n")
+        for place in places:
+            (place / RECORD).write_text(text, encoding="utf-8", newline="\n")

@@ -10,12 +10,60 @@ import pyarrow as pa
 import pyarrow.parquet as pq
 from pyarrow import csv as arrow_csv
 
+from etl.cells import safe, safe_array
 from etl.tables import Column, TableDesign, read_schema, schema_note, written_schema
 
 #: Cells (rows times columns) collected before a row group is written: enough for good compression,
 #: little enough for a laptop. It does not depend on workers, so that the bytes do not either.
 CELLS_A_GROUP = 4_000_000
 _COMPRESSION = "zstd"
+
+
+class CsvTable:
+    """Writes one table as CSV, with cells and headers that no spreadsheet runs as formulas.
+
+    Parameters
+    ----------
+    path : Path
+        The file.
+    columns : tuple of Column
+        The table's columns.
+    """
+
+    def __init__(self, path: Path, columns: tuple[Column, ...]) -> None:
+        self._schema = pa.schema(
+            [
+                pa.field(safe(f.name), pa.string() if pa.types.is_dictionary(f.type) else f.type)
+                for f in read_schema(columns)
+            ]
+        )
+        self._writer = arrow_csv.CSVWriter(path, self._schema)
+
+    def write(self, table: pa.Table) -> None:
+        """Add rows, whose texts are codes."""
+        columns = [_safe_column(column) for column in table.columns]
+        safe_table = pa.Table.from_arrays(columns, names=self._schema.names)
+        self._writer.write_table(safe_table.cast(self._schema))
+
+    def close(self) -> None:
+        """Finish the file."""
+        self._writer.close()
+
+
+def _safe_column(column: pa.ChunkedArray) -> pa.ChunkedArray:
+    """A column as it may stand in a CSV file."""
+    if not pa.types.is_dictionary(column.type):
+        return column
+    chunks, before, after = [], None, None
+    for chunk in column.chunks:
+        # Batches share their texts: those of the one before are looked at once.
+        if before is None or not chunk.dictionary.equals(before):
+            before, after = chunk.dictionary, safe_array(chunk.dictionary)
+        same = after is before
+        chunks.append(
+            chunk if same else pa.DictionaryArray.from_arrays(chunk.indices, after, safe=False)
+        )
+    return pa.chunked_array(chunks, column.type)
 
 
 class TableWriter:
@@ -25,7 +73,6 @@ class TableWriter:
         self, folder: Path, name: str, columns: tuple[Column, ...], formats: Collection[str]
     ) -> None:
         self._schema = written_schema(columns)
-        self._plain = read_schema(columns)
         self._note = schema_note(columns)
         self._parquet = (
             pq.ParquetWriter(
@@ -38,14 +85,7 @@ class TableWriter:
             if "parquet" in formats
             else None
         )
-        text = pa.schema(
-            [
-                pa.field(f.name, pa.string() if pa.types.is_dictionary(f.type) else f.type)
-                for f in self._plain
-            ]
-        )
-        self._text = text
-        self._csv = arrow_csv.CSVWriter(folder / f"{name}.csv", text) if "csv" in formats else None
+        self._csv = CsvTable(folder / f"{name}.csv", columns) if "csv" in formats else None
         self._batches: list[pa.RecordBatch] = []
         self._waiting = 0
         self.rows = 0
@@ -66,7 +106,7 @@ class TableWriter:
         if self._parquet is not None:
             self._parquet.write_table(table, row_group_size=len(table) or None)
         if self._csv is not None:
-            self._csv.write_table(table.cast(self._text))
+            self._csv.write(table)
 
     def close(self) -> None:
         """Write what is waiting and finish the files."""

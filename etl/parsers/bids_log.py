@@ -67,7 +67,7 @@ class BidsReader:
             fixations.
         """
         own = Findings()
-        read = self._read(path, Place(path, shown), own)
+        read = self._read(path, Place(path, shown, self.reading.pseudonyms), own)
         findings.extend(own)
         return None if own.failed else read
 
@@ -81,7 +81,7 @@ class BidsReader:
         if recording is None or findings.failed:
             return None
         eyes = recorded_eyes(recording, logs.files, place, findings)
-        reader = recording.entities["sub"]
+        reader = self._reader(recording)
         wanted = None if logs.eye is None else self.reading.eyes.of_reader(reader)
         counts = None if findings.failed else eye_counts(recording, eyes, wanted, place, findings)
         if counts is None:
@@ -101,6 +101,11 @@ class BidsReader:
             return self._other_eye(recording, file, place, (named, has_session), findings)
         run = begin_run(recording, self.reading, place, has_session, findings)
         return None if run is None else read_run(run, file, named, findings)
+
+    def _reader(self, recording: Recording) -> str:
+        """The reader as the study knows them."""
+        label, pseudonyms = recording.entities["sub"], self.reading.pseudonyms
+        return label if pseudonyms is None else pseudonyms.of_reader(label)
 
     def _has_sessions(self, path: Path) -> bool:
         """Whether any reader of a recording's dataset came in sessions."""
@@ -133,7 +138,7 @@ class BidsReader:
         none, whole = np.zeros(0), np.zeros(0, dtype=np.int32)
         log = CanonicalLog(
             {
-                "participant": Coded.constant(recording.entities["sub"], 0),
+                "participant": Coded.constant(self._reader(recording), 0),
                 **{name: Coded.absent(0) for name in sorted(own - {"participant"})},
             },
             {name: Coded.absent(0) for name in self.reading.facts},

@@ -8,6 +8,8 @@ import re
 from dataclasses import dataclass
 from pathlib import Path
 
+from etl.pseudonyms import Pseudonyms
+
 #: A gaze recording, and the events that were found in it.
 RECORDING, RECORDING_EVENTS = "_physio.tsv.gz", "_physioevents.tsv.gz"
 _NAME = re.compile(
@@ -189,6 +191,8 @@ class Place:
         The log.
     shown : str
         Its name in messages; its own name, or that of a file in the same folder.
+    pseudonyms : Pseudonyms or None
+        What gives other names to files, where the study asks for it.
 
     Examples
     --------
@@ -199,8 +203,12 @@ class Place:
 
     path: Path
     shown: str
+    pseudonyms: Pseudonyms | None = None
 
     def of(self, other: Path) -> str:
         """The name of another file in messages."""
+        if self.pseudonyms is not None:
+            # Their own names tell of whom they are.
+            return self.pseudonyms.of_file(other.absolute())
         way = Path(os.path.relpath(other, self.path.parent)).as_posix()
         return posixpath.normpath(posixpath.join(posixpath.dirname(self.shown), way))

@@ -7,6 +7,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from etl.files import number_of, truth_of
+
 
 @dataclass(frozen=True, slots=True)
 class Moments:
@@ -136,3 +138,28 @@ def _marked(
     np.add.at(steps, first[some], 1)
     np.add.at(steps, stop[some], -1)
     return np.asarray(np.cumsum(steps)[:-1] > 0)
+
+
+def touches(text: str) -> bool | None:
+    """Whether a cell of a fixation says that there was a blink.
+
+    Parameters
+    ----------
+    text : str
+        A number, or a word for yes or no.
+
+    Returns
+    -------
+    bool or None
+        None where it does not say.
+
+    Examples
+    --------
+    >>> [touches(text) for text in ("0", "0,5", "yes", "perhaps")]
+    [False, True, True, None]
+    """
+    truth = truth_of(text)
+    if truth is not None:
+        return truth
+    number = number_of(text.replace(",", "."))
+    return None if number is None else number != 0

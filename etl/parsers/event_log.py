@@ -107,7 +107,12 @@ class EventReader:
             return None
         note = LogNote(shown, text.sha256, text.encoding, columns=self.header(path))
         note.ends_open = not text.data.endswith(b"\n")
-        _account(lines, found, note, findings)
+        _account(lines, found, note)
+        if len(found.like_lines):
+            first = int(found.like_lines[0])
+            # Where readers have pseudonyms no line is repeated: it may name one.
+            told = lines.text(first) if self.reading.pseudonyms is None else None
+            _warn_of_remarks(len(found.like_lines), (shown, first + 1, told), findings)
         log = EventRows(self.reading, found, patterns, note, findings).canonical(named)
         return None if log is None else (log, note)
 
@@ -129,7 +134,7 @@ def _has_lines(found: SortedLines, shown: str, findings: Findings) -> bool:
     return not findings.failed
 
 
-def _account(lines: LogLines, found: SortedLines, note: LogNote, findings: Findings) -> None:
+def _account(lines: LogLines, found: SortedLines, note: LogNote) -> None:
     """Count every line of a log under what became of it."""
     note.account.total = len(lines)
     told = {_FATES[kind]: own.lines for kind, own in found.told.items()}
@@ -137,15 +142,17 @@ def _account(lines: LogLines, found: SortedLines, note: LogNote, findings: Findi
         note.account.line(fate, len(places), int(places[0]) + 1 if len(places) else None)
     if not note.account.balances():
         raise FaultError(f"lines of {note.shown} are lost: {note.account}")
-    if len(found.like_lines):
-        count = len(found.like_lines)
-        findings.warning(
-            f"{count:,} remarks would be lines of the log without the mark of a remark"
-            if count > 1
-            else "a remark would be a line of the log without the mark of a remark",
-            path=note.shown,
-            line=int(found.like_lines[0]) + 1,
-            found=lines.text(int(found.like_lines[0])),
-            expected="remarks, which are not read",
-            fix="if it is to be read, take the mark away, or out of [logs] comment",
-        )
+
+
+def _warn_of_remarks(count: int, first: tuple[str, int, str | None], findings: Findings) -> None:
+    """Warn of remarks that look like lines; ``first``: the log, the first line and its text."""
+    findings.warning(
+        f"{count:,} remarks would be lines of the log without the mark of a remark"
+        if count > 1
+        else "a remark would be a line of the log without the mark of a remark",
+        path=first[0],
+        line=first[1],
+        found=first[2],
+        expected="remarks, which are not read",
+        fix="if it is to be read, take the mark away, or out of [logs] comment",
+    )

@@ -14,6 +14,7 @@ from etl.errors import Finding, Findings
 from etl.files import Coded, marks_of
 from etl.parsers.canonical import LogNote
 from etl.parsers.time_checks import WAY_OUT
+from etl.pseudonyms import Pseudonyms
 
 if TYPE_CHECKING:
     from etl.study.models import Logs
@@ -101,7 +102,12 @@ class EyeChoice:
     readers: Mapping[str, str] = field(default_factory=dict)
 
     @classmethod
-    def of(cls, logs: Logs, table: Mapping[str, str] | None = None) -> EyeChoice:
+    def of(
+        cls,
+        logs: Logs,
+        table: Mapping[str, str] | None = None,
+        pseudonyms: Pseudonyms | None = None,
+    ) -> EyeChoice:
         """The choice of a study.
 
         Parameters
@@ -110,6 +116,8 @@ class EyeChoice:
             The study's ``[logs]``.
         table : mapping of str to str, optional
             What the reader table says of each reader.
+        pseudonyms : Pseudonyms, optional
+            By which readers go; those of the table do so already.
 
         Returns
         -------
@@ -118,7 +126,9 @@ class EyeChoice:
         eye = logs.eye
         if eye is None:
             return cls()
-        return cls(eye.use or "", {**(table or {}), **eye.readers})
+        hide = str if pseudonyms is None else pseudonyms.of_reader
+        own = {hide(name): which for name, which in eye.readers.items()}
+        return cls(eye.use or "", {**(table or {}), **own})
 
     def of_reader(self, participant: str) -> str:
         """The eye that counts for a reader; empty where nothing says so."""

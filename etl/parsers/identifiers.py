@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import Coded
+from etl.pseudonyms import Pseudonyms
 
 #: What identifies a fixation's trial.
 IDS = ("participant", "session", "trial", "item")
@@ -82,7 +83,7 @@ def read_ids(
     columns: Mapping[str, str],
     named: Mapping[str, str],
     missing: Collection[str],
-    shown: str,
+    place: tuple[str, Pseudonyms | None],
     findings: Findings,
 ) -> dict[str, Coded]:
     """Reader, session, trial and item of every row; a missing one is an error.
@@ -97,8 +98,9 @@ def read_ids(
         What the file's name says, from :func:`ids_in_name`.
     missing : collection of str
         What stands for no value.
-    shown : str
-        The log's name for messages.
+    place : tuple of str and Pseudonyms or None
+        The log's name for messages; and what gives pseudonyms in place of readers' ids, where the
+        study asks for them.
     findings : Findings
         Where missing identifiers, and those that contradict the file's name, are recorded.
 
@@ -107,7 +109,7 @@ def read_ids(
     dict of str to Coded
         By canonical name.
     """
-    cells, lines = rows
+    (cells, lines), (shown, pseudonyms) = rows, place
     ids: dict[str, Coded] = {}
     for name in IDS:
         if name not in columns:
@@ -142,4 +144,6 @@ def read_ids(
                     expected=named[name],
                     fix="correct the log or its name, or remove logs.participant_from_name",
                 )
+    if pseudonyms is not None and "participant" in ids:
+        ids["participant"] = pseudonyms.readers_of(ids["participant"])
     return ids

@@ -12,13 +12,15 @@ import pyarrow as pa
 from numpy.typing import NDArray
 
 from etl.errors import Findings
-from etl.files import Coded, NumberReading, find_decimal, marks_of, number_of, numbers_in, truth_of
+from etl.files import Coded, NumberReading, find_decimal, marks_of, numbers_in
 from etl.parsers.canonical import CanonicalLog, LogNote
 from etl.parsers.coordinates import degrees_to_px, tell_far_positions, to_screen_px
 from etl.parsers.detection import SampleRows, log_of_samples
+from etl.parsers.event_blinks import touches
 from etl.parsers.eyes import ChosenEye, EyeChoice
 from etl.parsers.identifiers import IDS, ids_in_name, read_ids
 from etl.parsers.time_checks import DIFFERENCE_DIGITS, check_times, in_ms
+from etl.pseudonyms import Pseudonyms
 
 if TYPE_CHECKING:
     from etl.study.models import Column, Logs, Screen
@@ -79,12 +81,15 @@ class RowReading:
         Headers of facts about trials that are taken from the log.
     eyes : EyeChoice
         Which eye counts for each reader.
+    pseudonyms : Pseudonyms or None
+        What gives pseudonyms in place of readers' ids, where the study asks for them.
     """
 
     logs: Logs
     screen: Screen | None
     facts: tuple[str, ...]
     eyes: EyeChoice = field(default_factory=EyeChoice)
+    pseudonyms: Pseudonyms | None = None
 
     def columns(self) -> dict[str, Column]:
         """The columns that are read, by canonical name."""
@@ -157,7 +162,8 @@ class RowReading:
             coded = Coded.of(rows.columns[header], ())
             asked = coded.among(values)
             others = [text for text in coded.values if text not in values][:_MOST_OTHERS]
-            note.asked[name] = (*(v for v in values if v in coded.values), *others)
+            there = (*(v for v in values if v in coded.values), *others)
+            note.asked[name] = self._hidden(header, Coded.of(pa.array(there), ())).values
             if not asked.any():
                 findings.error(
                     "no row has the value asked for",
@@ -208,9 +214,8 @@ class RowReading:
             return None
         rows, columns, told = asked, self.headers(), Findings()
         chosen: ChosenEye | None = None
-        ids = read_ids(
-            (rows.columns, rows.lines), columns, named, self.missing(), note.shown, findings
-        )
+        place = (note.shown, self.pseudonyms)
+        ids = read_ids((rows.columns, rows.lines), columns, named, self.missing(), place, findings)
         if self.logs.eye is not None and "participant" in ids:
             if findings.failed:
                 return None
@@ -255,7 +260,7 @@ class RowReading:
             note.shown,
             findings,
         )
-        facts = {name: Coded.of(cells[name], missing) for name in self.facts}
+        facts = {name: self._hidden(name, Coded.of(cells[name], missing)) for name in self.facts}
         blink = self._blinks(cells, lines, columns, note.shown, findings)
         blink = blink if rows.blink is None else blink | rows.blink
         if self.logs.samples is not None:
@@ -299,9 +304,9 @@ class RowReading:
         if "blink" not in columns:
             return np.zeros(len(lines), dtype=bool)
         coded = Coded.of(cells[columns["blink"]], self.missing())
-        known = [_touches(text) for text in coded.values]
-        for code, touches in enumerate(known):
-            if touches is None:
+        known = [touches(text) for text in coded.values]
+        for code, said in enumerate(known):
+            if said is None:
                 row = int(np.flatnonzero(coded.codes == code)[0])
                 findings.error(
                     "this does not say whether a blink touches the fixation",
@@ -312,7 +317,13 @@ class RowReading:
                     expected="a number (0 for no blink), or a word for yes or no",
                     fix="correct the cells, or take blink out of [logs.columns]",
                 )
-        return np.array([*(bool(touches) for touches in known), False])[coded.codes]
+        return np.array([*(bool(said) for said in known), False])[coded.codes]
+
+    def _hidden(self, header: str, column: Coded) -> Coded:
+        """A column of the log; pseudonyms where it is that of the readers."""
+        if self.pseudonyms is None or header != self.headers().get("participant"):
+            return column
+        return self.pseudonyms.readers_of(column)
 
     def _dispersion_px(self) -> float:
         """The limit of dispersion in pixels; one in degrees is converted at the screen's middle."""
@@ -383,12 +394,3 @@ def _without(rows: LogRows, mask: NDArray[np.bool_], fate: str, note: LogNote) -
     if left.size and "fixations" in note.account.lines:
         note.account.lines["fixations"].first_line = int(rows.lines[left[0]])
     return rows.take(left)
-
-
-def _touches(text: str) -> bool | None:
-    """Whether a cell says that there was a blink; None where it does not say."""
-    truth = truth_of(text)
-    if truth is not None:
-        return truth
-    number = number_of(text.replace(",", "."))
-    return None if number is None else number != 0

@@ -12,6 +12,7 @@ from etl.parsers.event_log import EventReader
 from etl.parsers.eyes import EyeChoice
 from etl.parsers.log_rows import RowReading
 from etl.parsers.table_log import TableReader
+from etl.pseudonyms import Pseudonyms
 
 if TYPE_CHECKING:
     from etl.study.models import Logs, Screen
@@ -36,6 +37,7 @@ def reader_for(
     screen: Screen | None,
     facts: tuple[str, ...] = (),
     eyes: EyeChoice | None = None,
+    pseudonyms: Pseudonyms | None = None,
 ) -> LogReader:
     """The reader for a study's logs.
 
@@ -49,13 +51,16 @@ def reader_for(
         Headers of facts about trials that are taken from the logs.
     eyes : EyeChoice, optional
         Which eye counts for each reader, where both were recorded.
+    pseudonyms : Pseudonyms, optional
+        What gives pseudonyms in place of readers' ids, where the study asks for them.
 
     Returns
     -------
     LogReader
         Reads a log of that kind.
     """
-    reading = RowReading(logs, screen, facts, eyes or EyeChoice.of(logs))
+    eyes = eyes or EyeChoice.of(logs, pseudonyms=pseudonyms)
+    reading = RowReading(logs, screen, facts, eyes, pseudonyms)
     if logs.kind == "bids":
         return BidsReader(reading)
     return EventReader(reading) if logs.kind == "events" else TableReader(reading)

@@ -10,6 +10,23 @@ CellState = Literal["", "empty", "all 0", "all 1"]
 #: How far an outcome in a region can be taken, from worst to best.
 Verdict = Literal["no values", "constant", "separated", "sparse", "ready"]
 VERDICTS: tuple[Verdict, ...] = ("no values", "constant", "separated", "sparse", "ready")
+#: By which rule a verdict is given.
+VERDICT_RULES: dict[Verdict, str] = {
+    "no values": "no row has a value",
+    "constant": "every value is 0, or every value is 1",
+    "separated": "the fixed effects of the ladder predict the outcome without error somewhere",
+    "sparse": "something speaks against every step of the ladder",
+    "ready": "there is a step of the ladder that nothing speaks against",
+}
+#: What regions are called where they are counted together.
+ALL_REGIONS = "(all regions)"
+#: What holds of the rows of every outcome.
+ROWS_REMARK = (
+    "Rows of one reader are not independent, nor are rows of one item, nor the regions of one "
+    "trial, which rest on the same fixations: random effects by reader and by item allow for the "
+    "first two, and nothing in a formula for one region allows for the third, so effects found in "
+    "several regions or outcomes of the same trials are not separate pieces of evidence."
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -99,6 +116,11 @@ class Variation:
     units: int
     repeated: bool
 
+    @property
+    def supported(self) -> bool:
+        """Whether the design can carry a random slope: within all or most units, and repeated."""
+        return self.repeated and 2 * self.varying > self.units
+
 
 @dataclass(frozen=True, slots=True)
 class Separation:
@@ -175,11 +197,15 @@ class OutcomeReadiness:
     ladder : tuple of Step
         From the maximal formula down; empty where nothing can be fitted.
     start : int
-        Number of the first step that nothing speaks against, or of the last; 0 without a ladder.
+        Number of the first step that nothing speaks against. Where there is none, of the simplest
+        one that keeps all groupings, or of the last where these have too few levels; 0 without a
+        ladder. Separation by the fixed effects counts for nothing here: it is there at every step.
     verdict : {"no values", "constant", "separated", "sparse", "ready"}
         The worst that can be said.
     sentences : tuple of str
         What to expect, in plain sentences.
+    cell_units : tuple of tuple of UnitCount
+        For each of ``cells``, readers (and items) with values there.
     """
 
     outcome: str
@@ -193,6 +219,7 @@ class OutcomeReadiness:
     start: int
     verdict: Verdict
     sentences: tuple[str, ...]
+    cell_units: tuple[tuple[UnitCount, ...], ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

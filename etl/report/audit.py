@@ -16,6 +16,7 @@ from etl.report.inputs import AuditInput
 
 #: The name of the page in the output folder.
 AUDIT = "audit.html"
+_SCRIPTS = ("sorting.js", "unfolding.js")
 
 
 def write_audit(folder: Path, facts: AuditInput) -> None:
@@ -46,7 +47,7 @@ def audit_page(facts: AuditInput) -> str:
     """
     environment = _environment()
     # Template text itself is not escaped, so style and script go in as they are.
-    script = environment.get_template("sorting.js").render()
+    script = "".join(environment.get_template(name).render() for name in _SCRIPTS)
     digest = base64.b64encode(hashlib.sha256(script.encode("utf-8")).digest()).decode("ascii")
     page = environment.get_template("audit.html").render(
         page=collect(facts),

@@ -206,6 +206,29 @@ def share_bar(parts: Sequence[Part], whole: float, *, height: int = 18) -> Marku
     return drawing(body, height, "shares")
 
 
+def counts_bar(ones: int, zeros: int, most: int) -> Markup:
+    """Ones, filled, against zeros, hollow.
+
+    Parameters
+    ----------
+    ones, zeros : int
+        How many there are.
+    most : int
+        What the full width stands for.
+
+    Examples
+    --------
+    >>> print(counts_bar(1, 2, 4))
+    <svg class="counts" aria-hidden="true"><rect width="75%"/><rect class="ones" width="25%"/></svg>
+    """
+    # Hundreds of these can be on a page: sizes that all share stand in the style sheet.
+    all_, filled = (f"{100 * part / max(most, 1):.4g}%" for part in (zeros + ones, ones))
+    body = f'<rect width="{all_}"/>' if ones + zeros else ""
+    if ones:
+        body += f'<rect class="ones" width="{filled}"/>'
+    return Markup(f'<svg class="counts" aria-hidden="true">{body}</svg>')  # noqa: S704 - numbers
+
+
 def quantile_bar(quantiles: Sequence[float], scale: Scale) -> Markup:
     """Five quantiles: a thin line over the middle 80 %, a thick one over the middle half, a dot.
 

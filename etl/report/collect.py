@@ -14,6 +14,7 @@ from etl.report.logs import LogsPart, collect_logs, doubtful
 from etl.report.losses import Losses, collect_losses, differing
 from etl.report.rates import Rates, collect_rates
 from etl.report.readers import Comparison, collect_readers
+from etl.report.readiness_part import ReadinessPart, collect_readiness, readiness_headline
 from etl.report.study_view import Section, sections
 from etl.report.wording import NOTHING, count, counted, listed, name
 
@@ -31,7 +32,7 @@ class Headline:
 
     Attributes
     ----------
-    kind : {"loss", "lines", "reader", "log", "absent", "fine"}
+    kind : {"loss", "lines", "readiness", "reader", "log", "absent", "fine"}
         Decides its sign.
     label : str
         What kind of thing it is, in a word or two.
@@ -101,6 +102,8 @@ class AuditFacts:
         The logs; None where nothing is known of them.
     lines : LinesPart or None
         The lines of texts; None where nothing is known of them.
+    readiness : ReadinessPart or None
+        How ready the binary outcomes are for a model; None where nothing is told of them.
     study : tuple of Section
         As understood.
     says : dict of str to str
@@ -121,6 +124,7 @@ class AuditFacts:
     gallery: tuple[GalleryEntry, ...]
     logs: LogsPart | None
     lines: LinesPart | None
+    readiness: ReadinessPart | None
     study: tuple[Section, ...]
     says: dict[str, str]
 
@@ -156,6 +160,7 @@ def collect(given: AuditInput) -> AuditFacts:
         tuple(given.gallery),
         collect_logs(given.logs) if given.logs.logs else None,
         collect_lines(given),
+        collect_readiness(given.readiness),
         sections(given.study),
         _says(losses, readers, len(given.profiles.readers)),
     )
@@ -204,6 +209,9 @@ def _headlines(given: AuditInput, losses: Losses, readers: Comparison) -> list[H
     lines = lines_headline(given)
     if lines is not None and lines[0] != "fine":
         out.append(Headline(lines[0], "Lines not sure", lines[1], "#lines"))
+    unready = readiness_headline(given.readiness)
+    if unready is not None:
+        out.append(Headline("readiness", "Hard to model", unready, "#readiness"))
     if readers.left_out:
         out.append(Headline("reader", "Left out", listed(readers.left_out, 12) + ".", "#readers"))
     out += [

@@ -6,6 +6,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any, Literal
 
+from etl.readiness.facts import Readiness
 from etl.report.logs import LogsTold
 from etl.report.reader_profile import Profiles
 from etl.tables import TableDesign
@@ -131,6 +132,8 @@ class AuditInput:
         Where the lines of the logs went, and how the logs differ.
     unsure : sequence of UnsureTrial
         The trials least sure of their lines, the least sure first.
+    readiness : Readiness or None
+        What is told of the binary outcomes before a model is fitted; None where nothing is.
     """
 
     study: Mapping[str, Any]
@@ -143,3 +146,4 @@ class AuditInput:
     gallery: Sequence[GalleryEntry] = field(default_factory=tuple)
     logs: LogsTold = field(default_factory=LogsTold)
     unsure: Sequence[UnsureTrial] = ()
+    readiness: Readiness | None = None

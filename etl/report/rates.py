@@ -9,10 +9,10 @@ from itertools import product
 import numpy as np
 from markupsafe import Markup
 
+from etl.readiness.intervals import wilson_interval
 from etl.report import charts
 from etl.report.counts import Ints, binary_measures, conditions
 from etl.report.inputs import AuditInput
-from etl.report.intervals import wilson_interval
 from etl.report.wording import NOTHING, count, percent
 
 #: With more region names than this they are taken together: a study in which every word is a

@@ -8,6 +8,7 @@ from pathlib import Path
 
 from etl.errors import Findings
 from etl.parsers.bids_names import RECORDING, RECORDING_EVENTS, subject_folder
+from etl.pseudonyms import Pseudonyms
 from etl.study import Study
 from etl.trials.facts import shown_path
 
@@ -15,8 +16,8 @@ from etl.trials.facts import shown_path
 def tell_of_other_recordings(
     study: Study,
     pattern: tuple[int, str],
-    others: Collection[Path],
-    files: Sequence[Path],
+    found: tuple[Collection[Path], Sequence[Path]],
+    pseudonyms: Pseudonyms | None,
     findings: Findings,
 ) -> bool:
     """Say which recordings that a pattern finds are not of the eyes.
@@ -27,10 +28,10 @@ def tell_of_other_recordings(
         As loaded.
     pattern : tuple of int and str
         Its place in the study file, and the pattern.
-    others : collection of Path
-        What the pattern finds that is no log.
-    files : sequence of Path
-        The logs that it finds.
+    found : tuple of collection of Path and sequence of Path
+        What the pattern finds that is no log, and the logs that it finds.
+    pseudonyms : Pseudonyms or None
+        What gives other names to files, where the study asks for it.
     findings : Findings
         Where it is noted that there are such recordings; an error where there is nothing else.
 
@@ -39,6 +40,7 @@ def tell_of_other_recordings(
     bool
         Whether an error was recorded.
     """
+    others, files = found
     recordings = sorted(path for path in others if path.name.endswith(RECORDING))
     for path in recordings:
         if not path.exists():
@@ -52,6 +54,8 @@ def tell_of_other_recordings(
     if not passed:
         return False
     shown = shown_path(study, passed[0].absolute())
+    if pseudonyms is not None:
+        shown = pseudonyms.of_file(shown, "file")
     count = f"{len(passed):,} recording{'' if len(passed) == 1 else 's'}"
     if files:
         findings.note(

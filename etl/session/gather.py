@@ -13,21 +13,29 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import Coded, group_rows, number_of
-from etl.measures import MEASURES, REASONS, TRIAL_MEASURES, Measure, select
+from etl.measures import MEASURES, REASONS, TRIAL_MEASURES, select
 from etl.parsers import LogReader
+from etl.pseudonyms import Pseudonyms
 from etl.regions import RegionLibrary
 from etl.report import LineGrid, NotRecorded
 from etl.screening.ledger import columns_of_accounts
 from etl.screening.rules import OUTLIER
 from etl.session.kept_logs import Shelf
+from etl.session.model_columns import (
+    centred_means,
+    codings_wanted,
+    measure_column,
+    tell_clashes,
+)
 from etl.session.notices import notice_similar_readers, notice_what_is_missing
 from etl.session.odd_values import notice_odd_regions, notice_odd_values
 from etl.session.plan import Plan
+from etl.session.pseudonym_guards import hide_in_reasons, refuse_ids_in_values
 from etl.session.reader import Options
 from etl.session.reader_tasks import Corrections, reader_tasks, texts_in
 from etl.session.trial_facts import trial_facts
 from etl.session.work import LogAnswer, LogTask, LogWork, ReaderTask, map_tasks
-from etl.tables import CovariateColumn, IdColumn, MeasureColumn, TableDesign
+from etl.tables import CovariateColumn, IdColumn, TableDesign
 from etl.trials import IDS, KnownTrials, SeenTrials
 from etl.trials.notes import Notes
 
@@ -78,6 +86,7 @@ def read_logs(
     kept: tuple[Path, Shelf],
     workers: int,
     progress: Progress,
+    pseudonyms: Pseudonyms | None = None,
 ) -> list[LogAnswer]:
     """Read all logs and put their fixations aside, in a folder or on a shelf."""
     folder, shelf = kept
@@ -86,7 +95,7 @@ def read_logs(
         for number, (path, shown) in enumerate(logs)
     ]
     answers = []
-    for answer in map_tasks(LogWork, (reader, shelf), tasks, workers):
+    for answer in map_tasks(LogWork, (reader, shelf, pseudonyms), tasks, workers):
         answers.append(answer)
         progress("reading logs", len(answers), len(tasks))
     return answers
@@ -113,13 +122,14 @@ def gather(
     Gathered or None
         None where no reader is left to work on. Readers with a problem are not among the tasks.
     """
-    shown = [name for _, name in plan.logs]
+    shown = plan.log_names
     parts: dict[str, list[tuple[Path, int, int]]] = {}
     for number, answer in enumerate(answers):
         for participant, batch in answer.batches.items():
-            parts.setdefault(participant, []).append((kept[0] / f"{number}.arrow", batch, number))
+            part = (kept[0] / f"{number}.arrow", batch, plan.places[number])
+            parts.setdefault(participant, []).append(part)
     every = [
-        replace(answer.trials, file=answer.trials.file + number)
+        replace(answer.trials, file=answer.trials.file + np.int32(plan.places[number]))
         for number, answer in enumerate(answers)
         if answer.trials is not None
     ]
@@ -132,15 +142,17 @@ def gather(
     seen = SeenTrials.joined(every).once(shown, findings)
     del every
     trials = plan.facts.know(seen, shown, findings)
+    hide_in_reasons(trials, plan.pseudonyms)
     text = _texts(plan, trials, shown, findings)
     for name in plan.supplied:
         supplied = pa.array([known.facts[name] for known in plan.library.texts], pa.string())
         trials.known[name] = Coded.of(supplied, {""}).take(text)
     good = trials.good & (trials.skipped | (text >= 0))
+    refuse_ids_in_values(plan, (trials, text), shown, findings)
     levels = _levels(plan, trials, text, shown, findings)
     notice_odd_values(plan.study, trials, text >= 0, shown, findings)
     notice_odd_regions(plan.library, plan.study.regions.file, findings)
-    notice_similar_readers(seen, shown, findings)
+    notice_similar_readers(seen, shown, findings, plan.pseudonyms)
     unrecorded = notice_what_is_missing(plan, trials, findings) if complete else []
     if not (text >= 0).any():
         if not findings.failed:
@@ -156,7 +168,7 @@ def gather(
         name: _covariate(plan, name, (trials, text), shown, findings)
         for name in plan.study.trials.covariates
     }
-    design = _design(plan, trials, levels, covariates)
+    design = _design(plan, (trials, text), levels, covariates, findings)
     facts = trial_facts(plan, trials, shown, findings, complete=complete)
     corrections = Corrections(plan.corrections, findings, complete)
     tasks = reader_tasks(design, trials, (text, good), facts, parts, corrections)
@@ -265,14 +277,50 @@ def _places(
         yield int(rows[at]), table if listed[at] else shown[int(file[at])], int(lines[at])
 
 
+def _tell_text(
+    plan: Plan,
+    name: str,
+    known: tuple[KnownTrials, NDArray[np.int32]],
+    shown: Sequence[str],
+    findings: Findings,
+) -> None:
+    """Say where a covariate that is to be centred holds what is no number."""
+    trials, text = known
+    column = trials.known[name]
+    wrong = [v for v in column.values if number_of(v) is None or _PADDED.match(v)]
+    rows = np.flatnonzero((text >= 0) & column.among(wrong))[:1]
+    for at, path, line in _places(plan, name, known, rows, shown):
+        findings.error(
+            f"the covariate {name} is to be centred, and this is no number",
+            path=path,
+            line=line,
+            where=f'column "{name}"',
+            found=column.text(at),
+            expected="a number without zeros before it",
+            fix="correct the cell, add the word to [logs] missing if it stands for no value, or "
+            "remove the covariate from [output] centred",
+        )
+    if not len(rows):
+        findings.error(
+            f"the covariate {name} is to be centred, and no trial has a value of it",
+            path=plan.study.shown,
+            line=plan.study.line_of("output", "centred"),
+            where="output.centred",
+            found=name,
+            fix="fill in the column, or remove the covariate from the list",
+        )
+
+
 def _design(
     plan: Plan,
-    trials: KnownTrials,
+    looked_up: tuple[KnownTrials, NDArray[np.int32]],
     levels: dict[str, tuple[str, ...]],
     covariates: dict[str, CovariateColumn],
+    findings: Findings,
 ) -> TableDesign:
-    """What all tables of the study have in common."""
+    """What all tables of the study have in common; new columns need names of their own."""
     study = plan.study
+    trials, text = looked_up
     known = trials.known
     ids = {
         name: IdColumn.of(texts_in(known[name]) if name in known else ())
@@ -280,18 +328,22 @@ def _design(
         if name in known or name == "item"
     }
     chosen = [MEASURES[name] for name in select(study.measures.outcomes)]
-    return TableDesign(
+    design = TableDesign(
         ids,
         levels,
         covariates,
         plan.library.region_names,
-        tuple(_measure_column(m) for m in chosen),
-        tuple(_measure_column(m) for m in TRIAL_MEASURES.values()),
+        tuple(measure_column(plan, m) for m in chosen),
+        tuple(measure_column(plan, m) for m in TRIAL_MEASURES.values()),
         (*REASONS, OUTLIER) if plan.limits.on("outlier_sd") else REASONS,
         columns_of_accounts(plan.limits),
-        tuple(shown for _, shown in plan.logs),
-        lines=plan.lines is not None,
+        plan.log_names,
+        plan.lines is not None,
+        codings_wanted(study, levels, findings),
+        centred_means(study, covariates, (known, text)),
     )
+    tell_clashes(study, design, findings)
+    return design
 
 
 def _covariate(
@@ -308,7 +360,9 @@ def _covariate(
     words = [value for value in texts if number_of(value) is None]
     if texts and not words and not any(_PADDED.match(value) for value in texts):
         return CovariateColumn("number")
-    if words and len(words) < len(texts):
+    if name in plan.study.output.centred:
+        _tell_text(plan, name, known, shown, findings)
+    elif words and len(words) < len(texts):
         row = np.flatnonzero((text >= 0) & column.among(words))[:1]
         for at, path, line in _places(plan, name, known, row, shown):
             findings.note(
@@ -320,8 +374,3 @@ def _covariate(
                 fix="correct the cell, or add the word to [logs] missing if it stands for no value",
             )
     return CovariateColumn("text", tuple(sorted(texts)))
-
-
-def _measure_column(measure: Measure) -> MeasureColumn:
-    """What the tables need to know of a measure."""
-    return MeasureColumn(measure.name, measure.kind, measure.unit, measure.definition)

@@ -73,6 +73,9 @@ def keep_log(log: CanonicalLog, path: Path, shelf: Shelf) -> dict[str, int]:
     dict of str to int
         For each reader, the number of the batch that holds the fixations.
     """
+    if not len(log):
+        # A recording of the eye that does not count: nobody will ask for it.
+        return {}
     participant = log.ids["participant"]
     # What is known about trials is gathered apart; only which trial it is must stay with each row.
     coded = {name: column for name, column in log.ids.items() if name != "item"}

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import NDArray
 
+from etl.cells import plain_array
 from etl.errors import Findings
 from etl.files import Cells, Coded, marks_of, number_of, read_table
 from etl.session.lines import HandLines
@@ -83,7 +84,9 @@ def read_corrections(study: Study, findings: Findings) -> LineCorrections | None
     absent = marks_of(study.logs.missing)
     prefixes = labels_of(study.logs.kind)
     ids: dict[str, Coded] = {
-        name: without_prefix(Coded.of(cells.column(headers[name]), absent), prefixes.get(name))
+        name: without_prefix(
+            Coded.of(plain_array(cells.column(headers[name])), absent), prefixes.get(name)
+        )
         for name in ("participant", "session", "trial")
         if name in headers
     }

@@ -2,21 +2,20 @@
 
 from __future__ import annotations
 
-import csv
-import io
 import math
 import os
-from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Final
 
+from etl.cells import csv_text, plain
 from etl.errors import DataError, Findings
 from etl.files import Cells, number_of, read_cells
 from etl.report.trace_input import TracedFixation, TracedTrial
 from etl.report.trace_lines import line_middles
 from etl.session.line_corrections import headers_of
 from etl.session.lines import NO_READING
+from etl.session.pseudonym_key import open_key
 from etl.study import Study
 
 #: Separators of fields by the ending of a file's name.
@@ -60,7 +59,8 @@ def write_lines(traced: TracedTrial, path: Path, study: Study) -> str:
     ``fixation`` and ``line`` are what ``[lines] corrections`` reads. The others, ``line_told`` (the
     line without what was set by hand), ``confidence``, ``x_px``, ``y_px`` and ``word``, are to be
     looked at; they are ignored when the table is read. UTF-8, with a byte-order mark where there
-    is more than ASCII, by which spreadsheet programs know it.
+    is more than ASCII, by which spreadsheet programs know it. Texts that a spreadsheet would run
+    have an apostrophe in front (:func:`etl.cells.safe`), which is taken off when they are read.
     """
     findings = Findings()
     fixations = [f for f in traced.fixations if f.left_out_by not in _NOT_ASKED]
@@ -113,17 +113,10 @@ class _Sheet:
 
     def rows(self, traced: TracedTrial, fixations: list[TracedFixation]) -> str:
         """Rows for fixations, in the table's own columns."""
-        return _spelled(
+        return csv_text(
             ([_row(traced, f).get(name, "") for name in self.header] for f in fixations),
             self.delimiter,
         )
-
-
-def _spelled(rows: Iterable[Sequence[str]], delimiter: str) -> str:
-    """Rows as delimited text."""
-    out = io.StringIO(newline="")
-    csv.writer(out, delimiter=delimiter, lineterminator="\n").writerows(rows)
-    return out.getvalue()
 
 
 def _new(traced: TracedTrial, path: Path) -> _Sheet:
@@ -131,7 +124,7 @@ def _new(traced: TracedTrial, path: Path) -> _Sheet:
     session = ("session",) if traced.session else ()
     header = ("participant", *session, "trial", "fixation", "line", *TO_LOOK_AT)
     delimiter = _DELIMITERS[path.suffix.lower()]
-    return _Sheet(_spelled([header], delimiter), header, delimiter)
+    return _Sheet(csv_text([header], delimiter), header, delimiter)
 
 
 def _known(traced: TracedTrial, path: Path, study: Study, findings: Findings) -> _Sheet | None:
@@ -156,14 +149,23 @@ def _known(traced: TracedTrial, path: Path, study: Study, findings: Findings) ->
         text if text.endswith("\n") else text + "\n",
         tuple(names.get(header, header) for header in cells.header),
         cells.delimiter,
-        _there(traced, cells, headers),
+        _there(traced, cells, headers, study),
     )
 
 
-def _there(traced: TracedTrial, cells: Cells, headers: dict[str, str]) -> frozenset[int]:
-    """The fixations of a trial that a table has."""
+def _there(
+    traced: TracedTrial, cells: Cells, headers: dict[str, str], study: Study
+) -> frozenset[int]:
+    """The fixations of a trial that a table has; it may name the reader by id or by pseudonym."""
+    held = open_key(study, Findings())
     own = {name: getattr(traced, name) for name in ("participant", "session", "trial")}
-    columns = {name: cells.texts(headers[name]) for name in own if name in headers}
+    columns = {
+        name: [plain(text) for text in cells.texts(headers[name])]
+        for name in own
+        if name in headers
+    }
+    if held is not None:
+        columns["participant"] = [held.pseudonyms.of_either(t) for t in columns["participant"]]
     numbers = [number_of(text) for text in cells.texts(headers["fixation"])]
     return frozenset(
         int(number)

@@ -10,12 +10,14 @@ from pathlib import Path
 from etl.errors import Findings
 from etl.export.publish import is_ours
 from etl.parsers import counted_file, is_log
+from etl.pseudonyms import FileKind, Pseudonyms
 from etl.session.datasets import (
     tell_of_datasets,
     tell_of_lost_recordings,
     tell_of_other_recordings,
 )
 from etl.session.listing import first_few
+from etl.session.pseudonym_key import is_key_file, key_path
 from etl.study import Study
 from etl.trials.facts import shown_path
 
@@ -25,7 +27,9 @@ _LOG_ENDINGS = frozenset({".txt", ".csv", ".tsv", ".log", ".asc", ".dat", ".tab"
 _LISTED = 10
 
 
-def find_logs(study: Study, findings: Findings) -> tuple[tuple[Path, str], ...]:
+def find_logs(
+    study: Study, findings: Findings, pseudonyms: Pseudonyms | None = None
+) -> tuple[tuple[Path, str], ...]:
     """The logs that the study's patterns name, each once, in the order of their names.
 
     Digits in names count as numbers: ``P01_2`` comes before ``P01_10``. The order decides how a
@@ -38,6 +42,8 @@ def find_logs(study: Study, findings: Findings) -> tuple[tuple[Path, str], ...]:
     findings : Findings
         Where patterns that find nothing, and files that are named like logs and are none, are
         recorded.
+    pseudonyms : Pseudonyms, optional
+        What gives other names to logs, where the study asks for it.
 
     Returns
     -------
@@ -52,13 +58,16 @@ def find_logs(study: Study, findings: Findings) -> tuple[tuple[Path, str], ...]:
         files = [
             path
             for path in paths
-            if is_log(study.logs.kind, path) and not any(is_ours(up) for up in path.parents[:2])
+            if is_log(study.logs.kind, path)
+            and not any(is_ours(up) for up in path.parents[:2])
+            and not is_key_file(study, path)
         ]
-        _tell_of_what_is_no_file(study, pattern, paths, findings)
+        _tell_of_what_is_no_file(study, paths, pattern, pseudonyms, findings)
         if study.logs.kind == "bids":
             tell_of_lost_recordings(study, pattern, findings)
             others = set(paths) - set(files)
-            if tell_of_other_recordings(study, (number, pattern), others, files, findings):
+            named = (number, pattern)
+            if tell_of_other_recordings(study, named, (others, files), pseudonyms, findings):
                 continue
         if not files:
             findings.error(
@@ -76,17 +85,26 @@ def find_logs(study: Study, findings: Findings) -> tuple[tuple[Path, str], ...]:
     if study.logs.kind == "bids":
         tell_of_datasets(study, [path for _, path in found.values()], findings)
     else:
-        _note_unread(study, [path for _, path in found.values()], findings)
+        _note_unread(study, [path for _, path in found.values()], pseudonyms, findings)
     in_order = sorted(found.values(), key=lambda log: _in_natural_order(log[0]))
-    return tuple((path, shown) for shown, path in in_order)
+    return tuple((path, _shown(shown, "log", pseudonyms)) for shown, path in in_order)
+
+
+def _shown(name: str, kind: FileKind, pseudonyms: Pseudonyms | None) -> str:
+    """A file that was found, in messages: where readers have pseudonyms, its name may name one."""
+    return name if pseudonyms is None else pseudonyms.of_file(name, kind)
 
 
 def _tell_of_what_is_no_file(
-    study: Study, pattern: str, paths: list[Path], findings: Findings
+    study: Study,
+    paths: list[Path],
+    pattern: str,
+    pseudonyms: Pseudonyms | None,
+    findings: Findings,
 ) -> None:
     """Tell of folders and broken links that are named like logs."""
     for path in sorted(path for path in paths if not path.is_file()):
-        shown = shown_path(study, path.absolute())
+        shown = _shown(shown_path(study, path.absolute()), "file", pseudonyms)
         if path.is_dir():
             # A pattern for whatever lies in folders finds the folders too.
             if "." in pattern.rsplit("/", 1)[-1].replace("**", ""):
@@ -103,9 +121,11 @@ def _tell_of_what_is_no_file(
             )
 
 
-def _note_unread(study: Study, logs: list[Path], findings: Findings) -> None:
+def _note_unread(
+    study: Study, logs: list[Path], pseudonyms: Pseudonyms | None, findings: Findings
+) -> None:
     """Warn of files among the logs that may be logs too, and that no pattern names."""
-    named = {study.path.absolute()} | {path.absolute() for path in logs}
+    named = {study.path.absolute(), key_path(study)} | {path.absolute() for path in logs}
     tables = (study.participants, study.items, study.trials)
     names = [table.table for table in tables if table is not None]
     names += [study.regions.file]
@@ -115,7 +135,7 @@ def _note_unread(study: Study, logs: list[Path], findings: Findings) -> None:
     named |= {(study.folder / name.split("#")[0]).absolute() for name in names if name}
     endings = _LOG_ENDINGS | {_ending(path) for path in logs}
     unread = sorted(
-        shown_path(study, path.absolute())
+        _shown(shown_path(study, path.absolute()), "file", pseudonyms)
         for folder in {path.parent for path in logs}
         for path in folder.iterdir()
         if _ending(path) in endings

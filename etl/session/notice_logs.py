@@ -7,6 +7,7 @@ from collections.abc import Collection, Sequence
 import numpy as np
 
 from etl.errors import Finding, Findings
+from etl.pseudonyms import Pseudonyms
 from etl.session.compared_logs import ComparedLog, Difference, compared
 from etl.session.differing_logs import cut_short, differences
 from etl.session.far_off import medians_of_others
@@ -34,7 +35,12 @@ _NOTHING_SET_ASIDE = (
 )
 
 
-def notice_logs(study: Study, answers: Sequence[LogAnswer], findings: Findings) -> None:
+def notice_logs(
+    study: Study,
+    answers: Sequence[LogAnswer],
+    findings: Findings,
+    pseudonyms: Pseudonyms | None = None,
+) -> None:
     """Tell of the logs: what cannot be right, how they differ, what was mended or set aside.
 
     Parameters
@@ -45,6 +51,8 @@ def notice_logs(study: Study, answers: Sequence[LogAnswer], findings: Findings) 
         What each log holds.
     findings : Findings
         Where errors, warnings and notes are recorded.
+    pseudonyms : Pseudonyms, optional
+        By which readers go, where the study asks for them.
     """
     logs = compared(answers)
     _refuse_cut_logs(logs, findings)
@@ -59,7 +67,7 @@ def notice_logs(study: Study, answers: Sequence[LogAnswer], findings: Findings) 
         notice_samples(study, [log.note for log in logs], findings)
         if aside := set_aside(logs):
             findings.note(aside)
-        notice_values_asked_for(study, [log.note for log in logs], findings)
+        notice_values_asked_for(study, [log.note for log in logs], findings, pseudonyms)
     _notice_medians(study, [log for log in logs if log.shown not in wrong], findings)
 
 

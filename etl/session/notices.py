@@ -10,8 +10,10 @@ import numpy as np
 
 from etl.errors import Findings
 from etl.parsers.canonical import LogNote
+from etl.pseudonyms import Pseudonyms
 from etl.report import NotRecorded
 from etl.session.plan import Plan
+from etl.session.pseudonym_record import in_order_of_readers, reader_columns
 from etl.study import Study
 from etl.trials import IDS, KnownTrials, SeenTrials
 
@@ -19,7 +21,12 @@ from etl.trials import IDS, KnownTrials, SeenTrials
 _LOOKED_THROUGH, _LISTED = 1000, 12
 
 
-def notice_values_asked_for(study: Study, logs: Sequence[LogNote], findings: Findings) -> None:
+def notice_values_asked_for(
+    study: Study,
+    logs: Sequence[LogNote],
+    findings: Findings,
+    pseudonyms: Pseudonyms | None = None,
+) -> None:
     """Warn of values of ``[logs.where]`` that no log has; only to be asked where all were read.
 
     Parameters
@@ -30,8 +37,12 @@ def notice_values_asked_for(study: Study, logs: Sequence[LogNote], findings: Fin
         What is told about each log.
     findings : Findings
         Where warnings are recorded.
+    pseudonyms : Pseudonyms, optional
+        By which readers go in the logs.
     """
     for name, values in study.logs.where.items():
+        if pseudonyms is not None and name in reader_columns(study):
+            values = tuple(map(pseudonyms.of_reader, values))
         occurring = list(dict.fromkeys(v for log in logs for v in log.asked.get(name, ())))
         for value in values:
             if value not in occurring:
@@ -59,7 +70,12 @@ def _warn_of_value(
     )
 
 
-def notice_similar_readers(seen: SeenTrials, shown: Sequence[str], findings: Findings) -> None:
+def notice_similar_readers(
+    seen: SeenTrials,
+    shown: Sequence[str],
+    findings: Findings,
+    pseudonyms: Pseudonyms | None = None,
+) -> None:
     """Warn of readers whose ids differ in letter case or leading zeros only.
 
     Parameters
@@ -70,12 +86,16 @@ def notice_similar_readers(seen: SeenTrials, shown: Sequence[str], findings: Fin
         The names of the logs.
     findings : Findings
         Where warnings are recorded.
+    pseudonyms : Pseudonyms, optional
+        What knows the ids, where readers go by pseudonyms.
     """
     readers = seen.ids["participant"]
+    originals = {} if pseudonyms is None else pseudonyms.originals
     codes, first = np.unique(readers.codes, return_index=True)
     earlier: dict[str, int] = {}
     for code, row in sorted(zip(codes.tolist(), first.tolist(), strict=True), key=lambda p: p[1]):
-        plain = re.sub("(?<![0-9])0+(?=[0-9])", "", readers.values[code].casefold())
+        known = originals.get(readers.values[code], readers.values[code])
+        plain = re.sub("(?<![0-9])0+(?=[0-9])", "", known.casefold())
         other = earlier.setdefault(plain, row)
         if other != row:
             findings.warning(
@@ -120,6 +140,7 @@ def notice_what_is_missing(
             )
             ids = {n: c.text(row) for n, c in book.trial_list.columns.items() if n in IDS}
             unrecorded.append(NotRecorded(ids["participant"], ids["trial"], ids.get("session", "")))
+        unrecorded = in_order_of_readers(unrecorded, plan.pseudonyms)
     if book.participants is not None:
         readers = book.participants.columns["participant"]
         for row in np.flatnonzero(~readers.among(seen.ids["participant"].values)).tolist():

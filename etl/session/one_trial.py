@@ -8,6 +8,7 @@ from difflib import get_close_matches
 from pathlib import Path
 
 from etl.errors import DataError, Findings
+from etl.pseudonyms import Pseudonyms
 from etl.report.trace_input import TracedTrial
 from etl.report.trace_page import page
 from etl.report.trace_picture import draw
@@ -15,6 +16,8 @@ from etl.report.trace_text import as_text
 from etl.report.trace_words import Explanation, explain
 from etl.session.gather import Gathered, Progress
 from etl.session.plan import Plan
+from etl.session.pseudonym_key import open_key
+from etl.session.pseudonym_record import told_study
 from etl.session.run import examine, own_faults, silent
 from etl.session.tracing import Tracer, TrialKey
 from etl.session.work import ReaderTask, make_reader_work
@@ -37,7 +40,7 @@ def trace(
     study : Study
         From :func:`etl.load_study`.
     participant, trial : str
-        Which trial, as in the tables.
+        Which trial, as in the tables; a reader who has a pseudonym may be named by id too.
     session : str, optional
         Needed where the reader read the trial in several sessions.
     workers : int or None
@@ -56,18 +59,21 @@ def trace(
         If anything is wrong with an input, or there is no such trial.
     """
     findings = Findings()
+    held = open_key(study, findings, needed=True)
+    pseudonyms = None if held is None else held.pseudonyms
     with tempfile.TemporaryDirectory(prefix="trialwright-") as folder, own_faults():
-        examined = examine(study, Path(folder), workers, progress, findings)
+        examined = examine(study, Path(folder), workers, progress, findings, held)
         if examined is None or findings.failed:
             raise DataError(findings)
         plan, gathered, _, _ = examined
-        task = _task(gathered, participant)
+        task = _task(gathered, participant, pseudonyms)
         key, text = _key(plan, gathered, task, trial, session)
         tables = make_reader_work(*gathered.bench())(task)
         if tables.findings.failed:
+            tables.findings.names = findings.names
             raise DataError(tables.findings)
         return tracer_of(plan, gathered).traced(
-            tables.batches, participant, key, text, tables.trust
+            tables.batches, task.participant, key, text, tables.trust
         )
 
 
@@ -178,15 +184,18 @@ def _explanation(traced: TracedTrial, wanted: Wanted) -> Explanation:
 
 def tracer_of(plan: Plan, gathered: Gathered) -> Tracer:
     """The maker of traced trials of a study."""
-    return Tracer(plan.study, plan.library, gathered.design)
+    return Tracer(told_study(plan.study, plan.pseudonyms), plan.library, gathered.design)
 
 
-def _task(gathered: Gathered, participant: str) -> ReaderTask:
-    """The work on one reader."""
+def _task(gathered: Gathered, participant: str, pseudonyms: Pseudonyms | None) -> ReaderTask:
+    """The work on one reader, who may be named by id or by pseudonym."""
+    meant = participant if pseudonyms is None else pseudonyms.of_either(participant)
     for task in gathered.tasks:
-        if task.participant == participant:
+        if task.participant == meant:
             return task
     readers = [task.participant for task in gathered.tasks]
+    if pseudonyms is not None:
+        readers = [pseudonyms.originals[reader] for reader in readers]
     near = get_close_matches(participant, readers, n=1, cutoff=0.5)
     raise _no_such("reader", participant, readers, near)
 

@@ -19,12 +19,14 @@ from etl.lines import (
 )
 from etl.measures import MEASURES, TRIAL_MEASURES
 from etl.parsers import EyeChoice, LogReader, reader_for
+from etl.pseudonyms import Pseudonyms
 from etl.regions import RegionLibrary, TrialWords, read_definitions
 from etl.screening import Limits
 from etl.session.limits import check_rules, limits_of
 from etl.session.line_corrections import LineCorrections, read_corrections
 from etl.session.lines import LineChoice
 from etl.session.log_files import find_logs
+from etl.session.pseudonym_record import hidden_study
 from etl.study import Study
 from etl.study.models import Lines
 from etl.tables import BARE_DESIGN, TABLES
@@ -52,6 +54,8 @@ class Plan:
         The rules of screening.
     corrections : LineCorrections or None
         Lines that were set by hand.
+    pseudonyms : Pseudonyms or None
+        By which readers and logs go, where the study asks for them.
     """
 
     study: Study
@@ -61,6 +65,7 @@ class Plan:
     library: RegionLibrary
     limits: Limits
     corrections: LineCorrections | None = None
+    pseudonyms: Pseudonyms | None = None
 
     @cached_property
     def lines(self) -> LineChoice | None:
@@ -75,7 +80,23 @@ class Plan:
         whole = self.study.understood()
         if self.lines is not None and self.study.lines is None:
             whole["lines"] = Lines().model_dump(mode="json")
-        return whole
+        return whole if self.pseudonyms is None else hidden_study(whole, self.pseudonyms)
+
+    @cached_property
+    def log_names(self) -> tuple[str, ...]:
+        """The logs in the order in which tables and records name them.
+
+        It is that in which they are read, but for other names than their own, which are sorted: or
+        their order would tell which is whose.
+        """
+        names = [name for _, name in self.logs]
+        return tuple(names if self.pseudonyms is None else sorted(names))
+
+    @cached_property
+    def places(self) -> tuple[int, ...]:
+        """For each log, in the order in which they are read, its place among ``log_names``."""
+        place = {name: at for at, name in enumerate(self.log_names)}
+        return tuple(place[name] for _, name in self.logs)
 
     @cached_property
     def supplied(self) -> tuple[str, ...]:
@@ -83,7 +104,9 @@ class Plan:
         return tuple(n for n, source in self.facts.sources.items() if source == "regions")
 
 
-def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tuple[Path, str], ...]]:
+def make_plan(
+    study: Study, findings: Findings, pseudonyms: Pseudonyms | None = None
+) -> tuple[Plan | None, tuple[tuple[Path, str], ...]]:
     """Read everything but the logs.
 
     Parameters
@@ -92,16 +115,19 @@ def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tupl
         As loaded.
     findings : Findings
         Where problems are recorded.
+    pseudonyms : Pseudonyms, optional
+        What gives readers and logs other names, where the study asks for it.
 
     Returns
     -------
     Plan or None, and the logs
         No plan where tables or region definitions are wrong; the logs can be checked all the same.
     """
-    logs = find_logs(study, findings)
+    logs = find_logs(study, findings, pseudonyms)
     log_header = reader_for(study.logs, study.screen).header(logs[0][0]) if logs else ()
     region_path = study.folder / study.regions.file
-    facts = gather_facts(study, log_header, header_of_table(region_path), findings)
+    region_header = header_of_table(region_path)
+    facts = gather_facts(study, log_header, region_header, findings, pseudonyms)
     # Where the tables are wrong, the regions are read all the same, for what is wrong with them:
     # every fact that the study names is then taken for a key.
     named = {*study.trials.factors, *study.trials.covariates, *IDS}
@@ -120,8 +146,8 @@ def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tupl
     )
     if facts is None or library is None or not _names_are_free(study, findings):
         return None, logs
-    eyes = EyeChoice.of(study.logs, facts.eyes)
-    reader = reader_for(study.logs, study.screen, facts.from_log, eyes)
+    eyes = EyeChoice.of(study.logs, facts.eyes, pseudonyms)
+    reader = reader_for(study.logs, study.screen, facts.from_log, eyes, pseudonyms)
     check_rules(study, library.region_names, findings)
     corrections = read_corrections(study, findings)
     if corrections is not None and not library.has_lines:
@@ -133,7 +159,8 @@ def make_plan(study: Study, findings: Findings) -> tuple[Plan | None, tuple[tupl
             found=corrections.shown,
             fix=f"remove the key, or correct the lines of the texts in {study.regions.file}",
         )
-    return Plan(study, logs, reader, facts, library, limits_of(study), corrections), logs
+    limits = limits_of(study)
+    return Plan(study, logs, reader, facts, library, limits, corrections, pseudonyms), logs
 
 
 def _names_are_free(study: Study, findings: Findings) -> bool:

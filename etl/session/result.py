@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING
 import pyarrow.parquet as pq
 
 from etl.errors import Findings
+from etl.readiness.facts import Readiness
 from etl.tables import TABLES
 
 if TYPE_CHECKING:
@@ -31,12 +32,18 @@ class Result:
         Rows of each table.
     findings : Findings
         Warnings and notes.
+    readiness : Readiness
+        What is told of the binary outcomes before a model is fitted.
+    key : Path or None
+        The file that says whose the pseudonyms are; None where readers go by their ids.
     """
 
     folder: Path
     counts: Mapping[str, int]
     rows: Mapping[str, int]
     findings: Findings
+    readiness: Readiness
+    key: Path | None = None
 
     def table(self, name: str) -> pd.DataFrame:
         """Read one table as a pandas frame.

@@ -10,6 +10,7 @@ import time
 from collections.abc import Generator, Iterable, Iterator
 from concurrent.futures.process import BrokenProcessPool
 from contextlib import closing, contextmanager, suppress
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -25,6 +26,7 @@ from etl.parsers import reader_for
 from etl.report import AuditInput, write_audit
 from etl.session.gallery import drawn
 from etl.session.gather import Gathered, Progress, gather, read_logs
+from etl.session.hand_over import describe, hand_over
 from etl.session.kept_logs import ROOM_BYTES, Shelf
 from etl.session.log_tellings import (
     account_for_moved,
@@ -37,6 +39,9 @@ from etl.session.log_tellings import (
 )
 from etl.session.notice_logs import notice_logs
 from etl.session.plan import Plan, make_plan
+from etl.session.pseudonym_guards import refuse_clashes
+from etl.session.pseudonym_key import KeyFile, open_key, save_key
+from etl.session.pseudonym_record import for_record, hidden_inputs, told_study, under_pseudonyms
 from etl.session.reader import ReaderTables
 from etl.session.result import Result
 from etl.session.told import summary
@@ -79,8 +84,9 @@ def check(study: Study, *, workers: int | None = 1, progress: Progress = silent)
         Errors, warnings and notes; ``findings.failed`` says whether a build would be refused.
     """
     findings = Findings()
+    held = open_key(study, findings)
     with tempfile.TemporaryDirectory(prefix="trialwright-") as folder, own_faults():
-        examined = examine(study, Path(folder), workers, progress, findings)
+        examined = examine(study, Path(folder), workers, progress, findings, held)
         if examined is not None:
             plan, gathered, answers, count = examined
             totals = Totals(plan.limits)
@@ -136,10 +142,11 @@ def build(
     started = time.perf_counter()
     target = Path(into) if into is not None else study.folder / study.output.folder
     shown = shown_path(study, study.output.folder) if into is None else str(into)
-    check_target(target, shown)
     findings = Findings()
+    held = open_key(study, findings, target=target)
+    check_target(target, shown)
     with published(target, shown) as shop, own_faults():
-        examined = examine(study, shop.kept, workers, progress, findings)
+        examined = examine(study, shop.kept, workers, progress, findings, held)
         if examined is None:
             raise DataError(findings)
         plan, gathered, answers, count = examined
@@ -164,20 +171,24 @@ def build(
         rows = writers.rows
         write_accounts(totals.account_rows(), shop.fresh)
         write_log_accounts(log_accounts(answers), shop.fresh)
-        # Where the study lay when it was built is nobody's affair who gets the tables.
-        noticed = findings.with_path(study.shown, study.path.name)
-        write_audit(shop.fresh, _audit(plan, gathered, totals, answers, noticed))
+        described = describe(shop.fresh, plan, gathered.design)
+        page = _audit(plan, gathered, totals, answers, findings)
+        write_audit(shop.fresh, replace(page, readiness=described.readiness))
+        hand_over(shop.fresh, plan, gathered.design, described)
         told = {**log_counts(answers), **totals.counts}
         RunRecord(
             plan.understood(),
             _inputs(plan, gathered, answers),
             told,
             rows,
-            noticed.lines(("warning", "note")),
+            for_record(findings, plan).lines(("warning", "note")),
             [one.spelled() for one in gathered.unrecorded],
             time.perf_counter() - started,
         ).write(shop.fresh)
-    return Result(target, told, rows, findings)
+        if held is not None:
+            save_key(held)
+    key = None if held is None else held.path
+    return Result(target, told, rows, findings, described.readiness, key)
 
 
 @contextmanager
@@ -210,26 +221,44 @@ def _collector_at_rest() -> Iterator[None]:
 
 
 def examine(
-    study: Study, kept: Path, workers: int | None, progress: Progress, findings: Findings
+    study: Study,
+    kept: Path,
+    workers: int | None,
+    progress: Progress,
+    findings: Findings,
+    held: KeyFile | None = None,
 ) -> tuple[Plan, Gathered, list[LogAnswer], int] | None:
     """Everything up to the work on readers; None where that makes no sense."""
+    pseudonyms = None if held is None else held.pseudonyms
+    if pseudonyms is not None:
+        findings.names = pseudonyms.originals
     with _collector_at_rest():
-        plan, logs = make_plan(study, findings)
-    told = plan is not None and plan.lines is not None and plan.lines.method == "consensus"
-    worth = _WORTH_WORKERS_BY_CONSENSUS_BYTES if told else _WORTH_WORKERS_BYTES
+        plan, logs = make_plan(study, findings, pseudonyms)
+    by_consensus = plan is not None and plan.lines is not None and plan.lines.method == "consensus"
+    worth = _WORTH_WORKERS_BY_CONSENSUS_BYTES if by_consensus else _WORTH_WORKERS_BYTES
     count = _workers(workers, logs, worth)
-    reader = plan.reader if plan is not None else reader_for(_logs_alone(study), study.screen)
+    alone = reader_for(_logs_alone(study), study.screen, pseudonyms=pseudonyms)
+    reader = plan.reader if plan is not None else alone
     # Processes of their own share nothing in memory: then everything goes to the disk.
     aside = (kept, Shelf(ROOM_BYTES if count == 1 else 0))
-    answers = read_logs(logs, reader, aside, count, progress)
-    for answer in answers:
+    answers = read_logs(logs, reader, aside, count, progress, pseudonyms)
+    told = answers
+    if pseudonyms is not None:
+        for answer in answers:
+            pseudonyms.learn(answer.originals)
+            pseudonyms.clashes.update(answer.clashes)
+        refuse_clashes(pseudonyms)
+        # Logs are told of in the order of the names that they have now.
+        told = sorted(answers, key=lambda answer: answer.note.shown)
+    for answer in told:
         findings.extend(answer.findings)
-    notice_logs(study, answers, findings)
+    notice_logs(study, told, findings, pseudonyms)
     if plan is None:
         return None
+    plan = under_pseudonyms(plan)
     with _collector_at_rest():
         gathered = gather(plan, answers, aside, findings)
-    return None if gathered is None else (plan, gathered, answers, count)
+    return None if gathered is None else (plan, gathered, told, count)
 
 
 def _logs_alone(study: Study) -> Logs:
@@ -264,10 +293,10 @@ def _finish(
 
 
 def _audit(
-    plan: Plan, gathered: Gathered, totals: Totals, answers: list[LogAnswer], noticed: Findings
+    plan: Plan, gathered: Gathered, totals: Totals, answers: list[LogAnswer], findings: Findings
 ) -> AuditInput:
     """Everything that the audit page tells of."""
-    study = plan.study
+    study = told_study(plan.study, plan.pseudonyms)
     tasks = {task.participant: task for task in gathered.tasks}
     tracer = Tracer(study, plan.library, gathered.design)
     return AuditInput(
@@ -276,7 +305,7 @@ def _audit(
         totals.profiles,
         totals.audit_rows(),
         REASON_MEANINGS,
-        told_elsewhere(noticed, answers).lines(("warning", "note")),
+        for_record(told_elsewhere(findings, answers), plan).lines(("warning", "note")),
         gathered.unrecorded,
         drawn(
             totals.choice.chosen(),
@@ -315,4 +344,4 @@ def _inputs(plan: Plan, gathered: Gathered, answers: list[LogAnswer]) -> list[di
     if plan.corrections is not None:
         made = plan.corrections
         inputs.append({"file": made.shown, "role": "line corrections", "sha256": made.sha256})
-    return inputs + log_inputs(answers)
+    return hidden_inputs(inputs + log_inputs(answers), plan)

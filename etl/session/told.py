@@ -2,13 +2,25 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Mapping
 from difflib import get_close_matches
 from pathlib import Path
 
 from etl.errors import Findings
+from etl.export.publish import BUNDLE
 from etl.measures import MEASURES, REASON_MEANINGS, TRIAL_MEASURES, Measure
+from etl.readiness.facts import Readiness
+from etl.report.readiness_words import gravest, region_of, summed_up
 from etl.session.result import Result
+
+#: This many of the worst outcomes are named.
+MOST_GRAVE = 5
+#: What is written besides the tables.
+_BESIDES = (
+    "accounts.csv, log_accounts.csv, regions.csv, codebook.csv, codebook.md, datapackage.json,",
+    "readiness.csv, readiness.json, formulas.csv, run.json, and audit.html to look at",
+)
 
 
 def checked(findings: Findings) -> str:
@@ -56,8 +68,39 @@ def built(result: Result) -> str:
     lines = [summary(result.counts), f"Written to {_near(result.folder)}:"]
     width = max(len(name) for name in result.rows)
     lines += [f"  {name:<{width}}  {rows:>11,} rows" for name, rows in result.rows.items()]
-    besides = "  accounts.csv, log_accounts.csv, run.json, and audit.html to look at"
-    return "\n".join([*lines, besides])
+    lines += [f"  {line}" for line in _BESIDES]
+    lines += readiness_lines(result.readiness)
+    lines.append(f"{BUNDLE}/ is what the statistician gets; start there with: Rscript start.R")
+    if result.key is not None:
+        alone = "its owner alone may read it" if os.name == "posix" else "its folder says who may"
+        lines.append(f"Whose the pseudonyms are stands in {_near(result.key)}; {alone}.")
+        lines.append("Keep it apart from the tables.")
+    return "\n".join(lines)
+
+
+def readiness_lines(readiness: Readiness) -> list[str]:
+    """How ready the outcomes are for a model, and the worst of what speaks against one.
+
+    Parameters
+    ----------
+    readiness : Readiness
+        What is told of the binary outcomes.
+
+    Returns
+    -------
+    list of str
+        The summing-up, a line for each of the worst, and where the rest is to be found.
+    """
+    lines, found = [summed_up(readiness)], gravest(readiness)
+    for grave in found[:MOST_GRAVE]:
+        where = ", ".join(filter(None, (grave.judged.outcome, region_of(grave.judged))))
+        # Not every pipe takes the sign of times; a line break in a name must not look like ours.
+        says = grave.says.replace(" × ", " and ")
+        lines.append("  " + " ".join(f"{where} ({grave.judged.verdict}): {says}".split()))
+    more = len(found) - MOST_GRAVE
+    if more > 0:
+        lines.append(f"  and {more:,} more: audit.html shows all under Readiness")
+    return lines
 
 
 def _near(folder: Path) -> Path:

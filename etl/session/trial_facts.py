@@ -108,10 +108,12 @@ def _add_notes(plan: Plan, trials: KnownTrials, facts: TrialFacts, findings: Fin
     of_readers = screening.participants.notes if screening.participants else None
     columns = plan.study.logs.columns
     synonyms = {n: column.column for n in IDS if (column := getattr(columns, n)) is not None}
+    hide = plan.pseudonyms
     for given in dict.fromkeys(name for name in (of_trials, of_readers) if name is not None):
+        shown = shown_path(plan.study, given)
         notes = read_notes(
             plan.study.folder / given,
-            shown_path(plan.study, given),
+            shown if hide is None else hide.shown_file(shown),
             synonyms,
             plan.study.logs.missing,
             findings,
@@ -120,6 +122,7 @@ def _add_notes(plan: Plan, trials: KnownTrials, facts: TrialFacts, findings: Fin
         )
         if notes is None:
             continue
+        notes = notes.under(hide)
         facts.inputs.append(notes)
         on_trials = notes.on_trials()
         if given == of_trials:

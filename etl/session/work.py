@@ -17,6 +17,7 @@ from etl.errors import Findings
 from etl.export.rows import TrialColumns
 from etl.parsers import LogReader
 from etl.parsers.canonical import LogNote
+from etl.pseudonyms import Pseudonyms
 from etl.regions import RegionLibrary
 from etl.session.kept_logs import Shelf, keep_log, kept_log
 from etl.session.lines import NO_HAND, HandLines
@@ -49,6 +50,10 @@ class LogAnswer:
     trials: SeenTrials | None = None
     figures: LogFigures | None = None
     findings: Findings = field(default_factory=Findings)
+    #: Whose the pseudonyms are that this log added.
+    originals: dict[str, str] = field(default_factory=dict)
+    #: Those that stand for two.
+    clashes: dict[str, tuple[str, str]] = field(default_factory=dict)
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,13 +70,34 @@ class ReaderTask:
 
 
 class LogWork:
-    """Reads logs."""
+    """Reads logs.
 
-    def __init__(self, reader: LogReader, shelf: Shelf) -> None:
+    Parameters
+    ----------
+    reader : LogReader
+        How they are read.
+    shelf : Shelf
+        Where fixations may be put aside.
+    pseudonyms : Pseudonyms or None
+        The very ones of the reader, which know afterwards whose they gave.
+    """
+
+    def __init__(self, reader: LogReader, shelf: Shelf, pseudonyms: Pseudonyms | None) -> None:
         self._reader = reader
         self._shelf = shelf
+        self._pseudonyms = pseudonyms
 
     def __call__(self, task: LogTask) -> LogAnswer:
+        """Read one log and put its fixations aside."""
+        if self._pseudonyms is None:
+            return self._read(task)
+        before = len(self._pseudonyms.originals)
+        answer = self._read(task)
+        answer.originals = self._pseudonyms.learnt_since(before)
+        answer.clashes = dict(self._pseudonyms.clashes)
+        return answer
+
+    def _read(self, task: LogTask) -> LogAnswer:
         """Read one log and put its fixations aside."""
         findings = Findings()
         read = self._reader.read(task.path, task.shown, findings)

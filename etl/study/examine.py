@@ -12,6 +12,7 @@ from pydantic_core import ErrorDetails
 
 from etl.errors import FaultError
 from etl.study.models import StudyFile
+from etl.study.output_rules import new_columns_called_like_others
 from etl.study.positions import KeyPath
 from etl.study.questions import asked, key_asked, open_questions, without
 from etl.study.rule import Problem
@@ -80,7 +81,12 @@ def examine(data: Mapping[str, Any], known_outcomes: Collection[str] | None) -> 
         wrong.add(("logs", "columns"))  # those that the pattern would have named are not known
     examined.problems.extend(broken_rules(draft, wrong, unanswered))
     if known_outcomes is not None:
-        for rule in (unknown_outcomes(known_outcomes), facts_called_like_measures(known_outcomes)):
+        for make in (
+            unknown_outcomes,
+            facts_called_like_measures,
+            new_columns_called_like_others,
+        ):
+            rule = make(known_outcomes)
             if rule.applies(wrong):
                 examined.problems.extend(rule.check(draft))
     return examined

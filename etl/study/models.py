@@ -12,6 +12,7 @@ from typing import Annotated, Literal
 from pydantic import AfterValidator, ConfigDict, Field
 
 from etl.study.columns import Column, PlaceColumn, PlainColumn, TimeColumn
+from etl.study.contrasts import Contrast
 from etl.study.lines import Lines
 from etl.study.log_kinds import Bids, Eye, EyeColumns, LinePatterns, Samples
 from etl.study.logs import Columns, Logs
@@ -33,7 +34,6 @@ from etl.study.values import (
     Table,
     WholeNumber,
     no_repeats,
-    refusal,
 )
 
 __all__ = [
@@ -70,17 +70,6 @@ __all__ = [
 #: No screen is larger; a bigger number is a slip in the unit.
 MOST_PX = 100_000
 MOST_CM = 10_000
-
-
-def _not_yet(switch: bool) -> bool:  # noqa: FBT001 - a validator takes its value alone
-    """Refuse what this version cannot do."""
-    if switch:
-        raise refusal(
-            "replacing participant ids is not in this version",
-            expected="false",
-            fix="remove the key; the ids in the tables will be those of the logs",
-        )
-    return switch
 
 
 class Facts(Table):
@@ -311,8 +300,25 @@ class Output(Table):
         description="The formats in which each table is written.",
         examples=[["parquet", "csv"]],
     )
-    pseudonyms: Annotated[Switch, AfterValidator(_not_yet)] = Field(
-        default=False, description="Not in this version: must be false or absent."
+    contrasts: dict[Name, Contrast] = Field(
+        default={},
+        description="Factors that the tables hold as numbers too, in columns beside the factor. "
+        'A factor is "treatment", "sum", "helmert" or "polynomial" coded, or by numbers of your '
+        "own: one for each of its [trials] levels (column `cue_contrast`), or columns by name, "
+        "each with a number for each level, one column less than there are levels.",
+        examples=[{"cue": "sum"}],
+    )
+    centred: Names = Field(
+        default=(),
+        description="Covariates that the tables hold a second time less their mean (column "
+        "`age_centred`). The mean is that over the trials of the study as read, before anything "
+        "is left out.",
+        examples=[["age"]],
+    )
+    pseudonyms: Switch = Field(
+        default=False,
+        description="Whether readers and logs go by keyed pseudonyms in all that is written. Whose "
+        "they are is kept beside the study file, in a file that its owner alone may read.",
     )
 
 

@@ -8,6 +8,7 @@ from pydantic.fields import FieldInfo
 from pydantic_core import PydanticUndefined
 
 from etl.study.columns import Column
+from etl.study.contrasts import Contrast
 from etl.study.shape import choices_in, known_keys, table_in
 from etl.study.wording import dotted, toml_text
 
@@ -16,6 +17,7 @@ _KINDS: dict[Any, str] = {
     int: "whole number",
     float: "number",
     str: "text",
+    get_args(Contrast)[0]: "contrasts",
 }
 
 

@@ -9,7 +9,15 @@ from __future__ import annotations
 
 from collections.abc import Collection, Iterator
 
-from etl.study import bids_rules, log_rules, place_rules, sample_rules, screening_rules, trial_rules
+from etl.study import (
+    bids_rules,
+    log_rules,
+    output_rules,
+    place_rules,
+    sample_rules,
+    screening_rules,
+    trial_rules,
+)
 from etl.study.event_rules import EVENT_RULES
 from etl.study.models import StudyFile
 from etl.study.positions import KeyPath
@@ -53,6 +61,10 @@ RULES = (
     trial_rules.levels_belong_to_factors,
     trial_rules.factors_are_no_covariates,
     trial_rules.facts_keep_their_own_names,
+    output_rules.contrasts_belong_to_factors,
+    output_rules.given_numbers_have_levels,
+    output_rules.given_numbers_fit_their_levels,
+    output_rules.centred_facts_are_covariates,
     screening_rules.text_time_has_limits,
     screening_rules.text_time_has_onsets,
     screening_rules.off_screen_has_a_screen,

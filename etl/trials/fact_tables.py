@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import Cells, Coded, group_rows, marks_of, place_rows, read_table
+from etl.pseudonyms import Pseudonyms
 from etl.trials.labels import without_prefix
 
 
@@ -50,6 +51,13 @@ class FactTable:
         """The table with its keys and some other columns: what else it holds is let go."""
         kept = {n: c for n, c in self.columns.items() if n in names or n in self.keys}
         return replace(self, columns=kept)
+
+    def under(self, pseudonyms: Pseudonyms | None) -> FactTable:
+        """The table with pseudonyms in place of readers' ids."""
+        if pseudonyms is None or "participant" not in self.columns:
+            return self
+        readers = pseudonyms.readers_of(self.columns["participant"])
+        return replace(self, columns={**self.columns, "participant": readers})
 
     def spelled(self, row: int) -> str:
         """The key of a row, for messages."""

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from difflib import get_close_matches
 from pathlib import Path
@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import Coded, group_rows, place_rows
+from etl.pseudonyms import Pseudonyms
 from etl.trials.fact_tables import FactTable, read_fact_table
 from etl.trials.labels import labels_of
 from etl.trials.seen import IDS, SeenTrials
@@ -68,6 +69,8 @@ class FactBook:
         Values by which trials are no part of the study.
     eyes : dict of str to str
         The eye that counts, for readers of whom the reader table says so.
+    pseudonyms : Pseudonyms or None
+        By which readers go in the tables, where the study asks for them.
     """
 
     trial_list: FactTable | None
@@ -77,6 +80,7 @@ class FactBook:
     from_log: tuple[str, ...]
     skip: dict[str, tuple[str, ...]] = field(default_factory=dict)
     eyes: dict[str, str] = field(default_factory=dict)
+    pseudonyms: Pseudonyms | None = None
 
     def known_facts(self) -> frozenset[str]:
         """What is known of a trial before its text is looked up."""
@@ -137,8 +141,9 @@ class FactBook:
             if rows.size:
                 # A reader or an item that is not in its table is told once, not for every trial.
                 keys = [known[key].take(rows) for key in table.keys if key in known]
+                originals = {} if self.pseudonyms is None else self.pseudonyms.originals
                 for row in rows[np.sort(group_rows(keys)[0])].tolist():
-                    _tell_missing_row(table, known, row, (seen, shown), findings)
+                    _tell_missing_row(table, known, row, (seen, shown, originals), findings)
         return KnownTrials(seen, known, skipped, skipped_by, good | skipped)
 
     def _agree_on_item(
@@ -233,20 +238,23 @@ def _tell_missing_row(
     table: FactTable,
     known: dict[str, Coded],
     row: int,
-    place: tuple[SeenTrials, Sequence[str]],
+    place: tuple[SeenTrials, Sequence[str], Mapping[str, str]],
     findings: Findings,
 ) -> None:
-    """Record that a table has no row for a trial."""
-    seen, shown = place
+    """Record that a table has no row for a trial; ``place``: the trials, the logs, whose ids."""
+    seen, shown, originals = place
     texts = {key: known[key].text(row) if key in known else "" for key in table.keys}
     near: list[str] = []
     if len(table.keys) == 1:
         (key,) = table.keys
-        values = table.columns[key].values
-        bare = texts[key].lstrip("0")
+        # Of pseudonyms none is like another.
+        values = [originals.get(value, value) for value in table.columns[key].values]
+        bare = originals.get(texts[key], texts[key]).lstrip("0")
         # A spreadsheet drops the zeros before a number.
         near = [value for value in values if value.lstrip("0") == bare]
-        near = near or get_close_matches(texts[key], values, n=1, cutoff=0.75)
+        near = near or get_close_matches(
+            originals.get(texts[key], texts[key]), values, n=1, cutoff=0.75
+        )
     findings.error(
         f"{table.shown} has no row for this {' and '.join(table.keys)}",
         path=shown[int(seen.file[row])],
@@ -260,7 +268,11 @@ def _tell_missing_row(
 
 
 def gather_facts(
-    study: Study, log_header: Iterable[str], region_header: Iterable[str], findings: Findings
+    study: Study,
+    log_header: Iterable[str],
+    region_header: Iterable[str],
+    findings: Findings,
+    pseudonyms: Pseudonyms | None = None,
 ) -> FactBook | None:
     """Read the study's tables and find out where each fact comes from.
 
@@ -274,6 +286,8 @@ def gather_facts(
         The header of its region file; empty where that could not be read.
     findings : Findings
         Where problems are recorded.
+    pseudonyms : Pseudonyms, optional
+        What gives pseudonyms in place of readers' ids, where the study asks for them.
 
     Returns
     -------
@@ -294,9 +308,10 @@ def gather_facts(
         shown = shown_path(study, given)
         missing = study.logs.missing
         labels = labels_of(study.logs.kind)
-        return read_fact_table(
+        read = read_fact_table(
             study.folder / given, shown, keys, synonyms, missing, findings, labels
         )
+        return None if read is None else read.under(pseudonyms)
 
     participants = table(study.participants.table if study.participants else None, ("participant",))
     items = table(study.items.table if study.items else None, ("item",))
@@ -323,6 +338,9 @@ def gather_facts(
     if findings.count("error") > before:
         return None
     skip = {name: tuple(values) for name, values in trials.skip.items()}
+    if pseudonyms is not None:
+        for name in {"participant", synonyms.get("participant", "")} & skip.keys():
+            skip[name] = tuple(map(pseudonyms.of_reader, skip[name]))
     from_log = tuple(name for name, source in sources.items() if source == "log")
     used = {*sources, "item"}
     return FactBook(
@@ -333,6 +351,7 @@ def gather_facts(
         from_log,
         skip,
         eyes,
+        pseudonyms,
     )
 
 

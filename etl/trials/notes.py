@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Collection, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from types import MappingProxyType
 
@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import Cells, Coded, place_rows, read_table
+from etl.pseudonyms import Pseudonyms
 from etl.trials.fact_tables import FactTable
 from etl.trials.labels import without_prefix
 from etl.trials.seen import SeenTrials
@@ -37,6 +38,15 @@ class Notes:
     sha256: str
     columns: dict[str, Coded]
     lines: NDArray[np.int32]
+
+    def under(self, pseudonyms: Pseudonyms | None) -> Notes:
+        """The notes with pseudonyms in place of readers' ids, in what people wrote too."""
+        if pseudonyms is None:
+            return self
+        readers = pseudonyms.readers_of(self.columns["participant"], either=True)
+        reason = self.columns["reason"]
+        told = Coded(reason.codes, tuple(map(pseudonyms.hidden, reason.values)))
+        return replace(self, columns={**self.columns, "participant": readers, "reason": told})
 
     def on_trials(self) -> NDArray[np.bool_]:
         """Which notes are on a trial; the others are on a reader."""

@@ -71,6 +71,23 @@ out.standingOut = await names();
 out.status = await tab.locator("#shown").textContent();
 await tab.locator("#choose").selectOption("all");
 
+// Links to fold-outs unfold them: from the overview, and once more after one was folded by hand.
+const open_ones = () => tab.evaluate(() => [...document.querySelectorAll(".ready-one[open]")]
+  .map((one) => one.id));
+const tile = tab.locator(".tiles a");
+out.unfolded = [];
+if (await tile.count()) {
+  await tile.first().focus();
+  await tab.keyboard.press("Enter");
+  out.unfolded.push(await open_ones());
+  await tab.locator(".ready-one[open] > summary").click();
+  out.unfolded.push(await open_ones());
+  await tile.first().focus();
+  await tab.keyboard.press("Enter");
+  out.unfolded.push(await open_ones());
+  out.unfoldedAddress = await tab.evaluate(() => location.hash);
+}
+
 await tab.evaluate(() => document.activeElement.blur());
 await tab.evaluate(() => window.scrollTo(0, 0));
 await tab.goto(address);
@@ -98,9 +115,14 @@ out.withoutScripts = {
 
 const printed = await open({ viewport: wide });
 await printed.emulateMedia({ media: "print", colorScheme: "dark" });
+await printed.evaluate(() => document.querySelectorAll(".ready-one").forEach((one, place) => {
+  one.open = place === 0;
+}));
+await printed.evaluate(() => window.dispatchEvent(new Event("beforeprint")));
 out.print = {
   paper: await printed.evaluate(() => getComputedStyle(document.body).backgroundColor),
   nav: await printed.locator("nav").isVisible(),
+  unfolded: await printed.locator(".ready-one[open]").count(),
   bytes: (await printed.pdf({ format: "A4" })).length,
 };
 await browser.close();

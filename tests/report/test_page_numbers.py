@@ -6,7 +6,7 @@ import pandas as pd
 import pytest
 from scipy import stats
 
-from etl.report.intervals import wilson_interval
+from etl.readiness.intervals import wilson_interval
 from tests.report.making import Made
 from tests.report.reading import Node, figure
 

@@ -55,8 +55,8 @@ from tests.study.written import changed
         pytest.param(
             'kind = "boxes"',
             'kind = "boxes"\n[output]\nzzz = 1',
-            "study.toml:16: output.zzz: unknown key; expected folder, formats or "
-            "pseudonyms\n"
+            "study.toml:16: output.zzz: unknown key; expected folder, formats, contrasts, "
+            "centred or pseudonyms\n"
             "    fix: remove it",
             id="unknown key like nothing",
         ),

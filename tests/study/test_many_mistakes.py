@@ -60,7 +60,7 @@ outcomes = ["binary", "frist_pass_time"]
 factors = ["fit"]
 
 [output]
-pseudonyms = true
+pseudonyms = "yes"
 """
 
 EXPECTED = """\
@@ -140,9 +140,8 @@ expected a group (binary, count or duration) or the name of a measure
     fix: did you mean "first_pass_time"?
 study.toml:56: measures.factors: unknown key; expected outcomes, outside or no_opportunity
     fix: it belongs in [trials]
-study.toml:59: output.pseudonyms: replacing participant ids is not in this version; found \
-"true", expected false
-    fix: remove the key; the ids in the tables will be those of the logs
+study.toml:59: output.pseudonyms: this is text; found "yes", expected true or false
+    fix: remove the key
 30 problems; nothing was written"""
 
 

@@ -75,7 +75,13 @@ DEFAULTS = {
         "outside": "ignore",
         "no_opportunity": "missing",
     },
-    "output": {"folder": "out", "formats": ["parquet"], "pseudonyms": False},
+    "output": {
+        "folder": "out",
+        "formats": ["parquet"],
+        "contrasts": {},
+        "centred": [],
+        "pseudonyms": False,
+    },
 }
 
 

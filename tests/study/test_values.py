@@ -108,14 +108,6 @@ from tests.study.written import changed
             "    fix: rename the group, or write (?:…) where it only groups",
             id="pattern with a strange group",
         ),
-        pytest.param(
-            "[regions]",
-            "[output]\npseudonyms = true\n[regions]",
-            "study.toml:13: output.pseudonyms: replacing participant ids is not in "
-            'this version; found "true", expected false\n'
-            "    fix: remove the key; the ids in the tables will be those of the logs",
-            id="pseudonyms",
-        ),
     ],
 )
 def test_value_that_cannot_work_is_refused(

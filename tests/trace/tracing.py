@@ -14,6 +14,7 @@ from typing import Any
 import numpy as np
 
 import etl
+from etl.cells import plain
 from etl.errors import Findings
 from etl.lines.consensus import SURE
 from etl.measures import REASONS, Measured, Sequences, compute
@@ -335,7 +336,8 @@ class BuiltStudy:
 def ledger_of(path: Path) -> dict[tuple[str, str, str, str], dict[str, str]]:
     """The ledger's rows by participant, trial, and fixation, or region and measure."""
     with path.open(encoding="utf-8", newline="") as file:
-        rows = list(csv.DictReader(file))
+        # A position left of the screen begins with a minus sign, and is marked as text.
+        rows = [{k: plain(v) for k, v in row.items()} for row in csv.DictReader(file)]
     # Of a value, what was found is its measure and the value: "total_time 2310".
     return {
         (

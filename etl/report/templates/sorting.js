@@ -58,7 +58,7 @@
   find.addEventListener("input", filter);
   choose.addEventListener("change", filter);
   window.addEventListener("beforeprint", function () {
-    document.querySelectorAll("details").forEach(function (one) { one.open = true; });
+    document.querySelectorAll("details:not(.ready-one)").forEach(function (one) { one.open = true; });
   });
   controls.hidden = false;
   filter();

@@ -1,4 +1,4 @@
-"""Intervals of the rates on the audit page."""
+"""Intervals of rates."""
 
 from __future__ import annotations
 

@@ -1,29 +1,14 @@
-"""The tables that a build writes, each declared once: column, type, unit, meaning.
-
-Writers, codebook, documentation and tests all read these declarations.
-"""
+"""The tables of a study: which there are, and the columns of each."""
 
 from __future__ import annotations
 
-import base64
-from collections.abc import Iterable, Mapping
-from dataclasses import dataclass, replace
-from functools import cached_property
-from typing import Literal
+from collections import Counter
+from collections.abc import Mapping
+from dataclasses import dataclass, field, replace
 
-import pyarrow as pa
+from etl.coding import Coding, coding_of
+from etl.tables.columns import Column, ColumnType, CovariateColumn, IdColumn, MeasureColumn
 
-ColumnType = Literal["text", "category", "flag", "integer", "number"]
-
-#: Few distinct texts in many rows: written as codes and read back as plain text.
-CODED = pa.dictionary(pa.int32(), pa.string())
-_WRITTEN: dict[str, pa.DataType] = {
-    "text": CODED,
-    "category": CODED,
-    "flag": pa.int8(),
-    "integer": pa.int64(),
-    "number": pa.float64(),
-}
 #: The ledger of everything left out, a CSV file.
 LEDGER = "exclusions"
 #: What the ledger says of lines: fixations that belong to none, and lines that were set by hand.
@@ -31,83 +16,6 @@ LEDGER = "exclusions"
 LINE_RULES = ("no_line", "line_corrections")
 #: The tables, in the order in which they are described.
 TABLES = ("outcomes", "outcomes_wide", "trials", "regressions", "fixations")
-
-
-@dataclass(frozen=True, slots=True)
-class Column:
-    """One column of a table.
-
-    Attributes
-    ----------
-    name : str
-        As it stands in the file.
-    type : {"text", "category", "flag", "integer", "number"}
-        A flag is 0 or 1; a category has a fixed order of levels.
-    meaning : str
-        In a sentence.
-    unit : str
-        Empty where there is none.
-    nullable : bool
-        Whether cells may be missing.
-    levels : tuple of str
-        Levels of a category, the reference level first.
-    """
-
-    name: str
-    type: ColumnType
-    meaning: str
-    unit: str = ""
-    nullable: bool = False
-    levels: tuple[str, ...] = ()
-
-
-@dataclass(frozen=True, slots=True)
-class MeasureColumn:
-    """What the tables need to know of a measure."""
-
-    name: str
-    kind: str
-    unit: str
-    definition: str
-
-
-@dataclass(frozen=True)
-class IdColumn:
-    """An identifier: all values that the study has, in the order in which rows are sorted."""
-
-    values: tuple[str, ...]
-    type: Literal["text", "integer"]
-
-    @classmethod
-    def of(cls, texts: Iterable[str]) -> IdColumn:
-        """Order the values of an id: as numbers where all are whole numbers, else as text.
-
-        Examples
-        --------
-        >>> IdColumn.of(["10", "9"]).values, IdColumn.of(["10", "P9"]).values
-        (('9', '10'), ('10', 'P9'))
-        """
-        distinct = set(texts)
-        # "007" is a name, not the number 7: it must come back as it was.
-        if distinct and all(
-            text.isascii() and text.isdigit() and str(int(text)) == text and len(text) < 19
-            for text in distinct
-        ):
-            return cls(tuple(sorted(distinct, key=int)), "integer")
-        return cls(tuple(sorted(distinct)), "text")
-
-    @cached_property
-    def ranks(self) -> dict[str, int]:
-        """The place of each value."""
-        return {text: rank for rank, text in enumerate(self.values)}
-
-
-@dataclass(frozen=True, slots=True)
-class CovariateColumn:
-    """A fact that is carried along: a number, or one of some texts."""
-
-    type: Literal["text", "number"]
-    values: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -134,6 +42,10 @@ class TableDesign:
         The logs.
     lines : bool
         Whether texts have several lines and a method says which one each fixation belongs to.
+    codings : dict of str to Coding
+        The factors that the study wants as numbers too, with the columns that hold them.
+    centred : dict of str to float
+        The covariates that the study wants centred too, with their means over its trials as read.
     """
 
     ids: Mapping[str, IdColumn]
@@ -146,6 +58,28 @@ class TableDesign:
     left_out_by: tuple[str, ...]
     files: tuple[str, ...]
     lines: bool = False
+    codings: Mapping[str, Coding] = field(default_factory=dict)
+    centred: Mapping[str, float] = field(default_factory=dict)
+
+    def coding(self, factor: str) -> Coding:
+        """A factor as numbers: as the study wants it, else treatment-coded.
+
+        Parameters
+        ----------
+        factor : str
+            Its name.
+
+        Returns
+        -------
+        Coding
+            Its columns are in the tables only where the study wants them.
+
+        Raises
+        ------
+        KeyError
+            If the study has no such factor.
+        """
+        return self.codings.get(factor) or coding_of(factor, self.factors[factor])
 
     def id_columns(self) -> tuple[Column, ...]:
         """The columns that say which trial a row is about."""
@@ -166,18 +100,43 @@ class TableDesign:
         return (*self.left_out_by, "outlier_sd", *(LINE_RULES if self.lines else ()))
 
     def factor_columns(self) -> tuple[Column, ...]:
-        """The experimental factors."""
-        return tuple(
-            Column(name, "category", "experimental factor", levels=levels)
-            for name, levels in self.factors.items()
-        )
+        """The experimental factors, each followed by the numbers that the study wants for it."""
+        columns: list[Column] = []
+        for name, levels in self.factors.items():
+            columns.append(Column(name, "category", "experimental factor", levels=levels))
+            if name in self.codings:
+                columns += _contrast_columns(self.codings[name])
+        return tuple(columns)
 
     def covariate_columns(self) -> tuple[Column, ...]:
-        """The facts that are carried along."""
-        return tuple(
+        """The facts that are carried along, and after them the centred ones."""
+        carried = tuple(
             Column(name, known.type, "covariate, carried along", nullable=True)
             for name, known in self.covariates.items()
         )
+        mean = "{} minus {!r}, its mean over the trials of the study as read, before screening"
+        return carried + tuple(
+            Column(centred_name(name), "number", mean.format(name, number), nullable=True)
+            for name, number in self.centred.items()
+        )
+
+    def clashes(self) -> dict[str, str]:
+        """New columns that have the name of another one, each with a table where they meet.
+
+        Returns
+        -------
+        dict of str to str
+            By name of a column of numbers for a factor, or of a centred one.
+        """
+        made = {end for coding in self.codings.values() for end in coding.columns}
+        made |= {centred_name(name) for name in self.centred}
+        met: dict[str, str] = {}
+        for table in TABLES:
+            counted = Counter(column.name for column in self.columns(table))
+            for name, times in counted.items():
+                if times > 1 and name in made:
+                    met.setdefault(name, table)
+        return met
 
     def columns(self, table: str) -> tuple[Column, ...]:
         """The columns of one table, in order."""
@@ -321,52 +280,43 @@ def _measure_column(measure: MeasureColumn) -> Column:
         measure.definition,
         measure.unit,
         nullable=True,
+        source=measure.source,
+        reasons=measure.reasons,
     )
 
 
-def written_schema(columns: tuple[Column, ...]) -> pa.Schema:
-    """The types in which rows are handed to the writers (texts as codes)."""
-    return pa.schema([pa.field(c.name, _WRITTEN[c.type], nullable=c.nullable) for c in columns])
+def centred_name(covariate: str) -> str:
+    """The column of a covariate without its mean.
 
-
-def read_schema(columns: tuple[Column, ...]) -> pa.Schema:
-    """The types in which a Parquet reader gets them back (only categories as codes)."""
-    return pa.schema(
-        [
-            pa.field(
-                c.name, pa.string() if c.type == "text" else _WRITTEN[c.type], nullable=c.nullable
-            )
-            for c in columns
-        ]
-    )
-
-
-def schema_note(columns: tuple[Column, ...]) -> dict[str, str]:
-    """The Parquet metadata entry that carries :func:`read_schema`.
-
-    Texts are written from codes, which costs a tenth of writing them as text; Arrow's own entry
-    would make every reader get codes back, also for ids, where categories are a nuisance.
-    """
-    return {"ARROW:schema": base64.b64encode(read_schema(columns).serialize()).decode("ascii")}
-
-
-def table_reference() -> str:
-    """The columns of every table as Markdown, as the README shows them.
+    Parameters
+    ----------
+    covariate : str
+        Its name.
 
     Returns
     -------
     str
-        A heading and a table for each; measures, factors and covariates, which differ from study
-        to study, are named in a sentence.
+        The name of the column.
+
+    Examples
+    --------
+    >>> centred_name("age")
+    'age_centred'
     """
-    ids = {name: IdColumn((), "text") for name in ("participant", "session", "trial", "item")}
-    design = replace(BARE_DESIGN, ids=ids)
-    units = {"flag": "0 or 1", "number": "number", "integer": "whole number"}
-    parts = []
-    for name in (*TABLES, LEDGER):
-        lines = [f"#### `{name}`", "", "| Column | Holds | Meaning |", "|---|---|---|"]
-        for column in design.columns(name):
-            holds = column.unit or units.get(column.type, "text")
-            lines.append(f"| `{column.name}` | {holds} | {column.meaning} |")
-        parts.append("\n".join(lines))
-    return "\n\n".join(parts) + "\n"
+    return f"{covariate}_centred"
+
+
+def _contrast_columns(coding: Coding) -> list[Column]:
+    """The columns that hold a factor as numbers."""
+    return [
+        Column(
+            name,
+            "number",
+            f"{coding.factor} as {coding.name} contrast: "
+            + ", ".join(
+                f"{level} {numbers[place]:.6g}"
+                for level, numbers in zip(coding.levels, coding.matrix, strict=True)
+            ),
+        )
+        for place, name in enumerate(coding.columns)
+    ]

@@ -6,7 +6,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from etl.report.intervals import wilson_interval
+from etl.readiness.intervals import wilson_interval
 
 
 @st.composite
