@@ -113,7 +113,7 @@ def test_types_are_those_of_the_codebook(odd_bundle: Callable[[str], Path], tmp_
     columns = [line for line in shown.splitlines() if line.startswith(" $ ")]
     lines = {line[3:28].strip(): line.partition(": ")[2] for line in columns}
     assert lines["participant"].startswith('chr  "007"')
-    assert lines["item"].startswith('chr  "NA" "TRUE"')
+    assert lines["item"].startswith('chr  "NA" "NA"')
     assert lines["trial"].startswith("int  1 ")
     assert lines["cue type"].startswith('Factor w/ 2 levels "early","late": 1')
     assert lines["if"].startswith('Factor w/ 3 levels "=SUM(A1)","\'=x",..: 3 ')

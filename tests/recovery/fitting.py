@@ -23,8 +23,8 @@ STUDIES = 40
 SOUND: Mapping[str, Mapping[str, Any]] = {"sound": {}}
 #: The columns of what R is told to do.
 PLAN = ("study", "variant", "outcome", "table", "region", "formula", "coding", "agq")
-#: The published tables that are looked at.
-NEEDED = ("outcomes.csv", "outcomes_wide.csv")
+#: What is looked at, of all that is built: what a statistician is handed.
+NEEDED = ("handoff/outcomes.csv", "handoff/outcomes_wide.csv")
 #: The critical region.
 REGION = "verb"
 SCRIPT = Path(__file__).with_name("fit.R")
@@ -64,8 +64,8 @@ class Built:
         }
 
     def table(self, variant: str = "sound") -> Path:
-        """The built table with a row for each trial and region."""
-        return self.folder / variant / "outcomes_wide.csv"
+        """The table handed off that has a row for each trial and region."""
+        return self.folder / variant / "handoff" / "outcomes_wide.csv"
 
 
 @dataclass(frozen=True, slots=True)
@@ -119,10 +119,8 @@ def build_study(
         study_file = folder / f"{variant}.toml"
         study_file.write_text(study_text(dialect, **said), encoding="utf-8", newline="")
         etl.build(etl.load_study(study_file), into=folder / variant)
-        for path in (folder / variant).iterdir():
-            if path.is_dir():
-                shutil.rmtree(path)
-            elif path.name not in NEEDED:
+        for path in (folder / variant).rglob("*"):
+            if path.is_file() and path.relative_to(folder / variant).as_posix() not in NEEDED:
                 path.unlink()
     shutil.rmtree(folder / "logs")
 
