@@ -21,10 +21,26 @@ from tests.simulator.writing import Places
 PROJECT = Path(__file__).resolve().parents[2]
 TABLES = ("outcomes", "outcomes_wide", "trials", "regressions", "fixations")
 #: What a build writes besides the tables, whatever the formats.
-BESIDES = ("exclusions.csv", "accounts.csv", "log_accounts.csv", "audit.html", "run.json")
-#: Every file that a build writes, with the tables in Parquet alone, and in CSV too.
-PUBLISHED = {*(f"{table}.parquet" for table in TABLES), *BESIDES}
-PUBLISHED_WITH_CSV = {*(f"{table}.csv" for table in TABLES), *PUBLISHED}
+BESIDES = (
+    *("exclusions.csv", "accounts.csv", "log_accounts.csv", "regions.csv", "codebook.csv"),
+    *("codebook.md", "datapackage.json", "readiness.csv", "readiness.json", "formulas.csv"),
+    *("run.json", "audit.html"),
+)
+#: What the bundle holds that the output folder does not.
+OF_THE_BUNDLE = ("README.md", "start.R", "start.py")
+_PARQUET = {f"{table}.parquet" for table in TABLES}
+_CSV = {f"{table}.csv" for table in TABLES}
+_BUNDLED = {*_PARQUET, *BESIDES, *OF_THE_BUNDLE}
+#: Every file that a build writes, with the tables in Parquet alone, and in CSV too. The scripts of
+#: the bundle read two tables as CSV always.
+PUBLISHED = {
+    *(*_PARQUET, *BESIDES),
+    *(f"handoff/{name}" for name in (*_BUNDLED, "outcomes_wide.csv", "trials.csv")),
+}
+PUBLISHED_WITH_CSV = {
+    *(*_PARQUET, *_CSV, *BESIDES),
+    *(f"handoff/{name}" for name in (*_BUNDLED, *_CSV)),
+}
 
 Row = dict[str, Any]
 

@@ -20,6 +20,9 @@ from tests.end_to_end.building import (
 )
 from tests.end_to_end.odd_study import odd_study
 
+#: What the data package of a folder is called.
+PACKAGE = "datapackage.json"
+
 
 def different(folder: Path, other: Path) -> list[str]:
     """Names of the published files that differ; every table must be there in both formats."""
@@ -55,8 +58,11 @@ def test_order_in_which_logs_are_named_changes_no_byte(orchard: Sample, tmp_path
     """Patterns the other way round, and overlapping ones, name the same logs."""
     changes = {'"logs/*.tsv", "logs/*.csv", "logs/*.gz"': '"logs/P2*", "logs/*.gz", "logs/P*"'}
     again = build(copied_sample("orchard", tmp_path, changes), tmp_path / "built")
-    # The page shows the study as understood, and so the patterns themselves.
-    assert different(orchard.result.folder, again.folder) == ["audit.html"]
+    # The page shows the study as understood, and so the patterns themselves; the data packages
+    # know the page by its digest.
+    assert different(orchard.result.folder, again.folder) == sorted(
+        f"{folder}{name}" for folder in ("", "handoff/") for name in ("audit.html", PACKAGE)
+    )
 
 
 def test_order_in_which_the_file_system_lists_logs_changes_no_byte(
@@ -79,8 +85,8 @@ def test_order_of_trials_in_a_log_changes_only_their_lines(tmp_path: Path) -> No
     """Trials in another order give the same tables; lines of the log, where told, are new."""
     one = build(odd_study(tmp_path / "one"))
     other = build(odd_study(tmp_path / "other", later_trials_first=True))
-    lines = ["audit.html", "exclusions.csv", "fixations.csv", "fixations.parquet"]
-    assert different(one.folder, other.folder) == lines
+    lines = ["audit.html", PACKAGE, "exclusions.csv", "fixations.csv", "fixations.parquet"]
+    assert different(one.folder, other.folder) == [*lines, *(f"handoff/{name}" for name in lines)]
     plain, moved = (r.fixations.drop(columns="source_line") for r in (one, other))
     assert plain.equals(moved)
     plain, moved = (
