@@ -248,7 +248,7 @@ class Readiness:
     factors : tuple of str
         The factors by which cells are made, in the order of ``CellCount.levels``.
     outcomes : tuple of OutcomeReadiness
-        Outcomes of regions in the order of the catalogue, each over its regions in reading order;
+        Outcomes of regions in the order of the catalogue, each over the study's regions;
         then those of trials.
     dependences : tuple of Dependence
         Among all outcomes that the study asks for.

@@ -114,8 +114,8 @@ def readiness_of(folder: Path, design: TableDesign) -> Readiness:
     Returns
     -------
     Readiness
-        Outcomes of regions in the order of the catalogue, over regions in reading order; then
-        those of trials.
+        Outcomes of regions in the order of the catalogue, over the design's regions in
+        their order; then those of trials.
     """
     trials = pq.ParquetFile(folder / "trials.parquet", read_dictionary=_texts(design))
     wide = pq.ParquetFile(folder / "outcomes_wide.parquet", read_dictionary=_texts(design))
@@ -135,15 +135,13 @@ def readiness_of(folder: Path, design: TableDesign) -> Readiness:
         together = len(design.regions) > MOST_REGIONS
         regions = [(0, ALL_REGIONS)] if together else list(enumerate(design.regions))
         counting = _Counting(of_regions, max(len(regions), 1), len(conditions), pairs)
-        order = np.zeros((max(len(regions), 1), 2), dtype=np.int64)
-        extra = () if together else ("region", "region_order")
+        rows = np.zeros(max(len(regions), 1), dtype=np.int64)
+        extra = () if together else ("region",)
         for group in _groups(wide, design, of_regions, extra) if of_regions else ():
             region = np.zeros(len(group), dtype=np.int64)
             if not together:
                 region = _codes(group, "region", design.regions)
-                places = _array(group.column("region_order"), 0)
-                order[:, 0] += np.bincount(region, minlength=len(order))
-                order[:, 1] += np.bincount(region, places, len(order)).astype(np.int64)
+                rows += np.bincount(region, minlength=len(rows))
             counting.add(
                 _states(group, of_regions),
                 _condition(group, conditions),
@@ -151,7 +149,8 @@ def readiness_of(folder: Path, design: TableDesign) -> Readiness:
                 _owners(group, design),
             )
     if not together:
-        regions = _in_reading_order(regions, order)
+        # A region that no kept trial has is left out.
+        regions = [region for region in regions if rows[region[0]]] or regions
     outcomes = [
         outcome_readiness(counting.counts(name, region, conditions), codings)
         for name in of_regions
@@ -291,10 +290,3 @@ def _among(codes: Codes, conditions: Conditions) -> Codes:
     if len(both) > len(conditions):
         raise FaultError("outcomes_wide has a combination of levels that trials has not")
     return place.reshape(-1)[len(conditions) :]
-
-
-def _in_reading_order(regions: list[tuple[int, str]], order: Codes) -> list[tuple[int, str]]:
-    """Regions by their mean place in texts; those that no kept trial has are left out."""
-    seen = [region for region in regions if order[region[0], 0]]
-    mean = order[:, 1] / np.maximum(order[:, 0], 1)
-    return sorted(seen or regions, key=lambda region: (mean[region[0]], region[0]))
