@@ -12,9 +12,9 @@ import hmac
 import os
 import re
 import unicodedata
-from collections.abc import Iterable, Mapping
-from pathlib import Path
-from typing import Any, Literal
+from collections.abc import Callable, Container, Iterable, Mapping
+from pathlib import Path, PurePosixPath
+from typing import Any, Literal, NamedTuple
 
 import numpy as np
 
@@ -41,6 +41,17 @@ _NUMBER_DIGITS = 4
 #: In sentences of this program only ids as long as this are looked for (our choice): "no" or "at",
 #: somebody's initials, would be found in every sentence.
 _IN_SENTENCES_FROM = 4
+
+#: Parts of words are taken for an id in a value from this length on: with a digit in it, or of
+#: letters alone. Shorter ones are in too many words: Anna in savanna, Tina in destination (our
+#: choice).
+_WITHIN_VALUES_FROM = 4
+_LETTERS_WITHIN_VALUES_FROM = 5
+#: In free text, where a word too many that is replaced does no harm, the same (our choice).
+_WITHIN_FREE_TEXT_FROM = 3
+
+#: What stands where a text is left out altogether.
+WITHHELD = "withheld: pseudonyms"
 
 FileKind = Literal["log", "file"]
 FILE_KINDS: tuple[FileKind, ...] = ("log", "file")
@@ -104,6 +115,35 @@ def is_distinctive(text: str) -> bool:
     return sum(sign.isdigit() for sign in text) >= _NUMBER_DIGITS
 
 
+def _is_told_within_values(text: str) -> bool:
+    """Whether an id is looked for within the words of values."""
+    if not any(sign.isalpha() for sign in text):
+        return False
+    digits = any(sign.isdigit() for sign in text)
+    return len(text) >= (_WITHIN_VALUES_FROM if digits else _LETTERS_WITHIN_VALUES_FROM)
+
+
+def _is_told_within_free_text(text: str) -> bool:
+    """Whether an id is looked for within the words of free text."""
+    return is_distinctive(text) and len(text) >= _WITHIN_FREE_TEXT_FROM
+
+
+class _Found(NamedTuple):
+    """What finds ids: each pattern is None where there is nothing to find."""
+
+    #: How many readers and files were known.
+    known: int
+    words: re.Pattern[str] | None
+    within_values: re.Pattern[str] | None
+    within_free_text: re.Pattern[str] | None
+    in_sentences: re.Pattern[str] | None
+    logs: re.Pattern[str] | None
+    #: The name that stands for each log, by its own names in small letters.
+    names_of_logs: dict[str, str]
+    #: The pseudonym of each reader.
+    by_id: dict[str, str]
+
+
 class Pseudonyms:
     """Gives pseudonyms, and remembers of whom.
 
@@ -133,7 +173,7 @@ class Pseudonyms:
         self.originals: dict[str, str] = {}
         #: Pseudonyms that stand for two: the pseudonym, and both.
         self.clashes: dict[str, tuple[str, str]] = {}
-        self._patterns: tuple[int, re.Pattern[str] | None, re.Pattern[str] | None] | None = None
+        self._patterns: _Found | None = None
 
     def __getstate__(self) -> dict[str, Any]:
         """All but what can be made again."""
@@ -189,57 +229,113 @@ class Pseudonyms:
         return {name: text for name, text in self.originals.items() if not is_reader(name)}
 
     def hidden(self, text: str) -> str:
-        """A text of others with the ids in it replaced, as far as they are distinctive.
+        """A value of others with the ids in it replaced, as far as they are distinctive.
 
         Parameters
         ----------
         text : str
-            Free text, a value, the name of a file.
+            A value, the name of a column.
 
         Returns
         -------
         str
             The text in the composed form (Unicode NFC), with a pseudonym for every id of a reader
-            that is known by now and stands in it as a word of its own.
+            that is known by now and stands in it as a word of its own, and for every word that
+            holds one of four characters or more with a letter and a digit, or of five letters.
         """
-        return self._replaced(text, self._pattern(within_sentences=False))
+        found = self._finders()
+        return self._replaced(text, found.within_values, found.words)
+
+    def hidden_in_free_text(self, text: str) -> str:
+        """The same for free text: any word that may tell of a reader or a log is replaced.
+
+        Parameters
+        ----------
+        text : str
+            What people wrote for people.
+
+        Returns
+        -------
+        str
+            As :meth:`hidden` gives it; besides, names of logs, with and without folder and ending,
+            and words that hold an id of three characters or more with a letter, or a number of four
+            digits or more. Shorter ids cannot be told from other words.
+        """
+        found = self._finders()
+        return self._replaced(self._without_logs(text, found), found.within_free_text, found.words)
 
     def hidden_in_sentence(self, text: str) -> str:
         """The same for a sentence of this program: ids of four characters or more only."""
-        return self._replaced(text, self._pattern(within_sentences=True))
+        return self._replaced(text, self._finders().in_sentences)
+
+    def names_log(self, text: str) -> bool:
+        """Whether a text holds the name of a log, with its ending."""
+        found = self._finders()
+        return found.logs is not None and any(
+            "." in name[0] for name in found.logs.finditer(_composed(text))
+        )
 
     def shown_file(self, name: str) -> str:
         """The name of a file that a study file names: another where an id is part of it."""
-        return name if self.hidden(name) == _composed(name) else self.of_file(name, "file")
+        found = self._finders()
+        hidden = self._replaced(name, found.within_free_text, found.words)
+        return name if hidden == _composed(name) else self.of_file(name, "file")
 
     def digest_of(self, sha256: str) -> str:
         """A keyed digest in place of a digest, which would let people try what a file may hold."""
         return hmac.new(self.key, f"digest\0{sha256}".encode(), hashlib.sha256).hexdigest()
 
-    def _replaced(self, text: str, pattern: re.Pattern[str] | None) -> str:
-        """A text with what a pattern finds as pseudonyms."""
+    def _replaced(self, text: str, *patterns: re.Pattern[str] | None) -> str:
+        """A text with what patterns find, one after the other, as pseudonyms."""
         composed = _composed(text)
-        if pattern is None or not pattern.search(composed):
+        for pattern in patterns:
+            if pattern is not None:
+                composed = pattern.sub(self._pseudonym_of, composed)
+        return composed
+
+    def _pseudonym_of(self, found: re.Match[str]) -> str:
+        """What stands for a word in which an id was found, the first group of the pattern."""
+        word, text, by_id = found[0], found[1], self._finders().by_id
+        # Signs of a pseudonym may be an id by chance.
+        if any(f"{before}{word}" in self.originals for before in ("", "log-", "file-")):
+            return word
+        return by_id.get(text) or next(
+            name
+            for original, name in by_id.items()
+            if re.fullmatch(re.escape(original), text, re.IGNORECASE)
+        )
+
+    def _without_logs(self, text: str, found: _Found) -> str:
+        """A text with other names for the logs in it."""
+        composed = _composed(text)
+        if found.logs is None:
             return composed
-        by_id = {original: name for name, original in self.readers().items()}
+        # A letter that folds in a way of its own is no key; then nothing is told at all.
+        return found.logs.sub(
+            lambda name: found.names_of_logs.get(name[0].casefold(), WITHHELD), composed
+        )
 
-        def pseudonym(found: re.Match[str]) -> str:
-            return by_id.get(found[0]) or next(
-                name
-                for original, name in by_id.items()
-                if re.fullmatch(re.escape(original), found[0], re.IGNORECASE)
+    def _finders(self) -> _Found:
+        """What finds the ids and names known by now."""
+        if self._patterns is None or self._patterns.known != len(self.originals):
+            by_id = {original: name for name, original in self.readers().items()}
+            ids = sorted(filter(is_distinctive, by_id), key=len, reverse=True)
+
+            def within(told: Callable[[str], bool]) -> re.Pattern[str] | None:
+                return _finding(filter(told, ids), within=True)
+
+            logs = _names_of_logs(self.files(), {text.casefold() for text in by_id})
+            self._patterns = _Found(
+                len(self.originals),
+                _finding(ids),
+                within(_is_told_within_values),
+                within(_is_told_within_free_text),
+                _finding(text for text in ids if len(text) >= _IN_SENTENCES_FROM),
+                _names(logs),
+                logs,
+                by_id,
             )
-
-        return pattern.sub(pseudonym, composed)
-
-    def _pattern(self, *, within_sentences: bool) -> re.Pattern[str] | None:
-        """What finds the distinctive ids known by now; None where there is none."""
-        if self._patterns is None or self._patterns[0] != len(self.originals):
-            ids = sorted(filter(is_distinctive, self.readers().values()), key=len, reverse=True)
-            long = [text for text in ids if len(text) >= _IN_SENTENCES_FROM]
-            self._patterns = len(self.originals), _finding(ids), _finding(long)
-        _, anywhere, of_sentences = self._patterns
-        return of_sentences if within_sentences else anywhere
+        return self._patterns
 
 
 def is_reader(pseudonym: str) -> bool:
@@ -251,15 +347,46 @@ def is_reader(pseudonym: str) -> bool:
     )
 
 
-def _finding(ids: Iterable[str]) -> re.Pattern[str] | None:
-    """A pattern that finds some ids as words of their own; longer ones must come first."""
-    spelled = [
-        f"(?i:{re.escape(text)})" if len(text) >= _ANY_CASE_FROM else re.escape(text)
-        for text in ids
-    ]
+def _finding(ids: Iterable[str], *, within: bool = False) -> re.Pattern[str] | None:
+    """A pattern that finds ids as words of their own, or words that hold one; longer ones first."""
+    spelled = []
+    for text in ids:
+        one = f"(?i:{re.escape(text)})" if len(text) >= _ANY_CASE_FROM else re.escape(text)
+        if within:
+            # P01 is not in P012, which is another number.
+            one = (r"(?<!\d)" if text[0].isdigit() else "") + one
+            one += r"(?!\d)" if text[-1].isdigit() else ""
+        spelled.append(one)
     if not spelled:
         return None
-    return re.compile(f"(?<!{_INNER})(?:{'|'.join(spelled)})(?!{_INNER})")
+    either = f"({'|'.join(spelled)})"
+    if within:
+        return re.compile(f"(?<!{_INNER}){_INNER}*?{either}{_INNER}*")
+    return re.compile(f"(?<!{_INNER}){either}(?!{_INNER})")
+
+
+def _names_of_logs(files: Mapping[str, str], readers: Container[str]) -> dict[str, str]:
+    """What stands for each log, by all that it may be called: longer names first.
+
+    What is the id of a reader as well is left to that one.
+    """
+    called: dict[str, str] = {}
+    for name, original in files.items():
+        if name.startswith("log-"):
+            own = PurePosixPath(original)
+            bare = {own.stem, own.name.partition(".")[0]}
+            for text in (original, own.name, *filter(is_distinctive, bare)):
+                if text.casefold() not in readers:
+                    called.setdefault(text.casefold(), name)
+    return dict(sorted(called.items(), key=lambda pair: -len(pair[0])))
+
+
+def _names(called: Iterable[str]) -> re.Pattern[str] | None:
+    """A pattern that finds names of files, in any letter case."""
+    either = "|".join(map(re.escape, called))
+    if not either:
+        return None
+    return re.compile(f"(?<!{_INNER})(?:{either})(?!{_INNER})", re.IGNORECASE)
 
 
 def _composed(text: str) -> str:

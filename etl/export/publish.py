@@ -23,11 +23,15 @@ BUNDLE = "handoff"
 _ASIDE = "old"
 
 
-#: What an operating system leaves in any folder that somebody looked into.
-_LITTER = frozenset({".DS_Store", "Thumbs.db", "desktop.ini"})
+#: What programs leave by themselves in any folder that somebody looked into or ran a script in, and
+#: that holds nobody's work. What may hold some stays out of this: a workspace of R (.RData), plots
+#: (Rplots.pdf), what editors keep of texts that were not saved (.Rproj.user, .ipynb_checkpoints).
+_LITTER = frozenset({".DS_Store", "Thumbs.db", "desktop.ini", ".Rhistory"})
+#: Where Python keeps compiled scripts, and the ending of these.
+_COMPILED = ("__pycache__", ".pyc")
 
 
-def _record_of(folder: Path) -> dict[str, Any] | None:
+def record_of(folder: Path) -> dict[str, Any] | None:
     """The run record of a folder; None where it is not one of ours."""
     try:
         record = json.loads((folder / RECORD).read_text(encoding="utf-8"))
@@ -38,7 +42,7 @@ def _record_of(folder: Path) -> dict[str, Any] | None:
 
 def is_ours(folder: Path) -> bool:
     """Whether a folder was written by this program."""
-    return _record_of(folder) is not None
+    return record_of(folder) is not None
 
 
 def check_target(target: Path, shown: str) -> None:
@@ -47,9 +51,20 @@ def check_target(target: Path, shown: str) -> None:
     Raises
     ------
     DataError
-        If the target is a file, or a folder that holds anything but an earlier build.
+        If the target is a file, or a folder that holds anything but an earlier build as it was
+        written, or one that cannot be read.
     """
     findings = Findings()
+    try:
+        _judge_target(target, shown, findings)
+    except OSError as why:
+        raise cannot_write(shown, why) from why
+    if findings.failed:
+        raise DataError(findings)
+
+
+def _judge_target(target: Path, shown: str, findings: Findings) -> None:
+    """Find what speaks against replacing a folder."""
     if target.exists() and not target.is_dir():
         findings.error(
             "the output folder is a file",
@@ -57,8 +72,8 @@ def check_target(target: Path, shown: str) -> None:
             fix="name a folder, by [output] folder or --into",
         )
     elif target.is_dir():
-        there = any(path.name not in _LITTER for path in target.iterdir())
-        record = _record_of(target)
+        there = any(not _is_litter(path) for path in target.iterdir())
+        record = record_of(target)
         if there and record is None:
             findings.error(
                 "the output folder holds something else than an earlier build",
@@ -68,8 +83,6 @@ def check_target(target: Path, shown: str) -> None:
             )
         elif record is not None:
             _refuse_to_lose(target, shown, record, findings)
-    if findings.failed:
-        raise DataError(findings)
 
 
 def _refuse_to_lose(
@@ -87,7 +100,11 @@ def _refuse_to_lose(
             expected="nothing but an earlier build",
             fix=fix.format("these files"),
         )
-    digests = record.get("to_be_changed")
+    # Every file, not scripts and pages only: a table that a spreadsheet saved again may have a day
+    # of coding by hand in it, or ids that lost their zeros by accident: neither may go, or stay,
+    # unseen. Size and time of a file prove nothing, and reading an earlier build takes seconds a
+    # gigabyte, far less than making it.
+    digests = record.get("sha256")
     digests = digests if isinstance(digests, dict) else {}
     if changed := sorted(
         name
@@ -100,7 +117,8 @@ def _refuse_to_lose(
             path=shown,
             found=_first_of(changed),
             expected="an earlier build as it was written",
-            fix=fix.format("them"),
+            fix="undo the changes or delete these files where they are nobody's work; else "
+            + fix.format("them"),
         )
 
 
@@ -113,13 +131,27 @@ def _strange(folder: Path, before: str, known: Set[str]) -> Iterator[str]:
     """What no build wrote, by its path within the output folder; a folder only as a whole."""
     for path in folder.iterdir():
         name = f"{before}{path.name}"
+        if _is_litter(path) and name not in known:
+            continue
         if path.is_dir() and not path.is_symlink():
             if any(one.startswith(f"{name}/") for one in known):
                 yield from _strange(path, f"{name}/", known)
             else:
                 yield name
-        elif name not in known and path.name not in _LITTER:
+        elif name not in known:
             yield name
+
+
+def _is_litter(path: Path) -> bool:
+    """Whether a program left it there, and it holds nobody's work."""
+    if path.is_symlink():
+        return False
+    folder, ending = _COMPILED
+    if path.is_dir():
+        return path.name == folder and all(
+            one.suffix == ending and one.is_file() for one in path.iterdir()
+        )
+    return path.name in _LITTER
 
 
 def _first_of(names: Sequence[str]) -> str:

@@ -4,8 +4,8 @@ from __future__ import annotations
 
 import json
 import math
-from collections.abc import Iterator
-from dataclasses import asdict
+from collections.abc import Iterator, Mapping
+from dataclasses import fields, is_dataclass
 from pathlib import Path
 from typing import Any, Final
 
@@ -42,7 +42,7 @@ def count_columns(readiness: Readiness) -> tuple[str, ...]:
     """The columns of ``readiness.csv``: one for each factor stands after the region."""
     units = [f"{word}{end}" for _, word in _UNITS for end in ("", "_all_zero", "_all_one")]
     counted = ("zeros", "ones", "missing", "rate", "rate_low", "rate_high", "state")
-    return ("outcome", "region", *readiness.factors, *counted, *units, "verdict")
+    return ("outcome", "region", *readiness.factors, *counted, *units, "verdict", "why")
 
 
 def count_rows(readiness: Readiness) -> Iterator[list[Cell]]:
@@ -57,14 +57,14 @@ def count_rows(readiness: Readiness) -> Iterator[list[Cell]]:
     ------
     list of str, int, float or None
         For each outcome and region first the row for all conditions, which names no levels and has
-        the verdict; then, in a study with factors, one for each condition.
+        the verdict and why; then, in a study with factors, one for each condition.
     """
     none = ("",) * len(readiness.factors)
     for own in readiness.outcomes:
-        yield [*_counted(own, own.total, none), *_units(own.units), own.verdict]
+        yield [*_counted(own, own.total, none), *_units(own.units), own.verdict, own.why]
         if readiness.factors:
             for cell, units in zip(own.cells, own.cell_units, strict=True):
-                yield [*_counted(own, cell, cell.levels), *_units(units), None]
+                yield [*_counted(own, cell, cell.levels), *_units(units), None, None]
 
 
 def _counted(own: OutcomeReadiness, cell: CellCount, levels: tuple[str, ...]) -> list[Cell]:
@@ -124,7 +124,7 @@ def as_json(readiness: Readiness) -> dict[str, Any]:
         The fields of :class:`etl.readiness.facts.Readiness`, with ``null`` for what is not a
         number, after what verdicts mean and what holds of all rows.
     """
-    told: dict[str, Any] = _plain(asdict(readiness))
+    told: dict[str, Any] = _plain(readiness)
     for own, facts in zip(told["outcomes"], readiness.outcomes, strict=True):
         cells = zip((own["total"], *own["cells"]), (facts.total, *facts.cells), strict=True)
         for cell, fact in cells:
@@ -135,10 +135,10 @@ def as_json(readiness: Readiness) -> dict[str, Any]:
 
 
 def _plain(value: Any) -> Any:
-    """Lists for tuples; None for numbers that are none."""
-    if isinstance(value, dict):
-        return {name: _plain(own) for name, own in value.items()}
-    if isinstance(value, list | tuple):
+    """Mappings for facts, lists for tuples; None for numbers that are none."""
+    if is_dataclass(value):
+        return {one.name: _plain(getattr(value, one.name)) for one in fields(value)}
+    if isinstance(value, tuple):
         return [_plain(own) for own in value]
     return None if isinstance(value, float) and not math.isfinite(value) else value
 
@@ -155,5 +155,15 @@ def write_readiness_files(readiness: Readiness, folder: Path) -> None:
     """
     write_csv(folder / COUNTS, count_columns(readiness), count_rows(readiness))
     write_csv(folder / FORMULAS, FORMULA_COLUMNS, formula_rows(readiness))
-    text = json.dumps(as_json(readiness), ensure_ascii=False, indent=1) + "\n"
-    (folder / EVERYTHING).write_text(text, encoding="utf-8", newline="\n")
+    (folder / EVERYTHING).write_text(_laid_out(as_json(readiness)), encoding="utf-8", newline="\n")
+
+
+def _laid_out(told: Mapping[str, Any]) -> str:
+    """JSON with a line for each entry of a list: an indented text takes five times as long."""
+    write = json.JSONEncoder(ensure_ascii=False).encode
+    parts = []
+    for name, value in told.items():
+        listed = isinstance(value, list) and value
+        text = "[\n" + ",\n".join(map(write, value)) + "\n]" if listed else write(value)
+        parts.append(f"{write(name)}: {text}")
+    return "{\n" + ",\n".join(parts) + "\n}\n"

@@ -12,8 +12,8 @@ from typing import Any
 
 from etl.export.publish import BUNDLE, PROGRAM, RECORD, digest_of
 
-#: Files that people are asked to change: a changed one is theirs, and no build may replace it.
-_TO_BE_CHANGED = ("start.R", "start.py")
+#: Where the record says which key the pseudonyms are of.
+KEY_KNOWN_BY = "pseudonyms_of_key"
 _LIBRARIES = ("numpy", "pandas", "pyarrow", "pydantic", "shapely")
 
 
@@ -37,6 +37,9 @@ class RunRecord:
         Trials of the trial list that no log has.
     elapsed_s : float
         How long the build took.
+    key : str
+        By what the key to the pseudonyms is known again, which tells nothing of it; empty where
+        readers go by their ids.
     """
 
     study: Mapping[str, Any]
@@ -46,6 +49,7 @@ class RunRecord:
     warnings: Sequence[str]
     not_recorded: Sequence[str]
     elapsed_s: float
+    key: str = ""
 
     def write(self, folder: Path) -> None:
         """Write the record into a folder, and into the bundle within it where there is one.
@@ -54,27 +58,29 @@ class RunRecord:
         ----------
         folder : Path
             Where everything else that the build writes is already. The record lists its files,
-            those of the bundle by their path, and the digests of the scripts that people change.
+            those of the bundle by their path, and the digests of all but itself: a changed file is
+            somebody's work, and no build may replace it.
         """
         bundle = folder / BUNDLE
-        files = {
-            path.relative_to(folder).as_posix() for path in folder.rglob("*") if path.is_file()
+        written = {
+            path.relative_to(folder).as_posix(): path
+            for path in folder.rglob("*")
+            if path.is_file()
         }
-        scripts = [bundle / name for name in _TO_BE_CHANGED if (bundle / name).is_file()]
         places = [folder, bundle] if bundle.is_dir() else [folder]
-        files |= {(place / RECORD).relative_to(folder).as_posix() for place in places[1:]}
+        records = {(place / RECORD).relative_to(folder).as_posix() for place in places}
+        digests = {name: digest_of(written[name]) for name in sorted(written.keys() - records)}
         record = {
             "program": PROGRAM,
             "version": version("trialwright"),
             "python": platform.python_version(),
             "libraries": {name: version(name) for name in _LIBRARIES},
             "study": self.study,
+            **({KEY_KNOWN_BY: self.key} if self.key else {}),
             "inputs": list(self.inputs),
             "counts": dict(self.counts),
-            "files": sorted(files),
-            "to_be_changed": {
-                path.relative_to(folder).as_posix(): digest_of(path) for path in scripts
-            },
+            "files": sorted({*digests, *records} - {RECORD}),
+            "sha256": digests,
             "rows": dict(self.rows),
             "warnings": list(self.warnings),
             "not_recorded": list(self.not_recorded),

@@ -58,7 +58,7 @@ _EMPTY_IN: Final = {
     (READINESS, "rate_high"): "there is no value",
     (READINESS, "state"): "there are zeros and ones",
     **{(READINESS, f"items{end}"): "no texts are known" for end in ("", "_all_zero", "_all_one")},
-    (READINESS, "verdict"): "the row is about one condition",
+    **{(READINESS, name): "the row is about one condition" for name in ("verdict", "why")},
     (FORMULAS, "region"): "the outcome is one of trials",
     (FORMULAS, "change"): "it is the first step",
     (FORMULAS, "expectation"): "nothing speaks against the formula",

@@ -25,8 +25,10 @@ _OUTSIDE: Final = {
 _NO_OPPORTUNITY: Final = {
     "missing": "Where the reader had no chance of an outcome, it is missing, with the reason "
     "(no_opportunity = missing).",
-    "zero": "Where the reader had no chance of a binary outcome or a count, it is 0; times stay "
-    "missing (no_opportunity = zero).",
+    "zero": "Where the reader had no chance of a binary outcome or a count, because the region was "
+    "not reached, not passed, skipped or never fixated, it is 0; times stay missing, and so does "
+    "what a text leaves no room for: a region without an earlier one, or a later one, and a trial "
+    "of fewer than two fixations (no_opportunity = zero).",
 }
 _KINDS: Final = {
     "treatment": "treatment contrasts: each level against the first",

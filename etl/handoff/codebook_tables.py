@@ -8,7 +8,7 @@ from typing import Final
 
 from etl.handoff.codebook_study import StudyFacts
 from etl.handoff.regions_table import REGIONS, region_columns
-from etl.readiness.facts import ALL_REGIONS, VERDICTS
+from etl.readiness.facts import ALL_REGIONS, VERDICT_RULES, VERDICTS
 from etl.tables import BARE_DESIGN, LEDGER, TABLES, Column, TableDesign
 
 CODEBOOK: Final = "codebook"
@@ -207,10 +207,12 @@ def readiness_columns(design: TableDesign) -> tuple[Column, ...]:
         Column(
             "verdict",
             "category",
-            "the worst that can be said of the outcome in the region, from worst to best",
+            "the worst that can be said of the outcome in the region, from worst to best: "
+            + "; ".join(f"{verdict}: {rule}" for verdict, rule in VERDICT_RULES.items()),
             nullable=True,
             levels=VERDICTS,
         ),
+        Column("why", "text", "what the verdict rests on", nullable=True),
     )
 
 

@@ -12,7 +12,15 @@ from jinja2 import Environment, PackageLoader, StrictUndefined
 
 from etl.cells import MARKED
 from etl.handoff.codebook_study import StudyFacts
-from etl.readiness.facts import ALL_REGIONS, ROWS_REMARK, VERDICTS, OutcomeReadiness, Readiness
+from etl.readiness.facts import (
+    ALL_REGIONS,
+    ROWS_REMARK,
+    VERDICT_RULES,
+    VERDICTS,
+    OutcomeReadiness,
+    Readiness,
+    Verdict,
+)
 from etl.tables import TableDesign
 
 #: The tables that the scripts read.
@@ -44,10 +52,40 @@ what was left out (exclusions.csv), and whether the result hangs on it;
 estimation: Laplace or quadrature, tests, bootstrap, priors; penalties where cells are one-sided.
 """.strip().split("\n")
 )
+#: What can be done with an outcome of each verdict. The ways out of separation: Firth (1993), Bias
+#: reduction of maximum likelihood estimates, Biometrika, 80, 27-38, doi:10.1093/biomet/80.1.27,
+#: taken up for separation by Heinze & Schemper (2002), A solution to the problem of separation in
+#: logistic regression, Statistics in Medicine, 21, 2409-2419, doi:10.1002/sim.1047; and Gelman,
+#: Jakulin, Pittau & Su (2008), A weakly informative default prior distribution for logistic and
+#: other regression models, Annals of Applied Statistics, 2, 1360-1383, doi:10.1214/08-AOAS191.
+VERDICT_ADVICE: Final[dict[Verdict, str]] = {
+    "no values": "nothing can be fitted; the column missing of outcomes says why each is missing",
+    "constant": "there is nothing to model: report the count, with the interval in readiness.csv",
+    "separated": (
+        "some estimates run off to infinity, often with huge standard errors and no warning, and "
+        "simpler random effects do not mend that: put levels or regions together where that makes "
+        "sense, leave out the effect that does it and report its counts, or fit with a penalty "
+        "(Firth 1993, Heinze & Schemper 2002) or weakly informative priors (Gelman et al. 2008)"
+    ),
+    "sparse": (
+        "the expectations in formulas.csv say what speaks against each step: ask less of the data "
+        "(fewer effects, levels or regions), collect more, or report the model as unsure, with "
+        "intervals"
+    ),
+    "ready": "begin with the step that is marked as the start, and check the fit as any other",
+}
+#: By what the ladder leaves slopes out, and by what it cannot.
+LADDER_REMARK: Final = (
+    "Slopes go in the order of how many of the rarer value stand behind them, fewest first: how "
+    "little a slope varies is known only after a fit, and may call for another order."
+)
 #: Standard deviations of normal priors in the Python model, on the log-odds scale: those that
 #: statsmodels takes by itself.
 _PRIOR_FIXED: Final = 2
 _PRIOR_SCALE: Final = 1
+#: On the log-odds scale: an interval of 95 % would go over odds of some 10 to the power of 17. What
+#: limit one takes hardly matters, as separation makes far larger ones (common practice, no source).
+_ABSURD_ERROR: Final = 10
 _KINDS: Final = {
     "text": "text",
     "category": "factor",
@@ -138,6 +176,9 @@ def starter_texts(facts: BundleFacts) -> dict[str, str]:
         "formats": facts.formats,
         "sharing": _sharing(readiness),
         "rows_remark": ROWS_REMARK,
+        "verdicts": [(own, VERDICT_RULES[own], VERDICT_ADVICE[own]) for own in VERDICTS],
+        "ladder_remark": LADDER_REMARK,
+        "absurd_error": _ABSURD_ERROR,
     }
     return {
         name: _environment().get_template(f"{name}.jinja").render(told)
@@ -241,8 +282,14 @@ def _r(text: str) -> str:
 
 
 def _number(number: float) -> str:
-    """A number as R and Python write it, with all its digits."""
-    return str(int(number)) if number == int(number) else repr(float(number))
+    """A number as R and Python both read it, in the shortest form that gives the same number.
+
+    Examples
+    --------
+    >>> [_number(number) for number in (-1.0, 0.1, 1e308, -2.5e-9)]
+    ['-1', '0.1', '1e+308', '-2.5e-09']
+    """
+    return repr(float(number)).removesuffix(".0")
 
 
 def _py(text: str) -> str:

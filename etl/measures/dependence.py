@@ -7,14 +7,30 @@ from dataclasses import dataclass
 from itertools import combinations
 from typing import Final, Literal
 
+from etl.measures.conventions import NoOpportunity, Outside
+
 When = Literal["= 0", "= 1", "> 0", "has a value"]
-Then = Literal["= 0", "= 1", ">= 1", ">= 2", "> 0", "missing", "not 1", "not > 0", ">= it", "= it"]
+Then = Literal[
+    "= 0",
+    "= 1",
+    ">= 1",
+    ">= 2",
+    "> 0",
+    "missing",
+    "not 0",
+    "not 1",
+    "not > 0",
+    ">= it",
+    "= it",
+]
 Level = Literal["region", "trial", "both"]
+#: What a study does with fixations outside every region, and where there was no opportunity.
+Conventions = tuple[Outside, NoOpportunity]
 
 
 @dataclass(frozen=True, slots=True)
 class Implication:
-    """What one outcome says of another, in every trial that there is and under every option.
+    """What one outcome says of another, in every trial that there is.
 
     Attributes
     ----------
@@ -29,6 +45,10 @@ class Implication:
     level : {"region", "trial", "both"}
         Whether both are outcomes of the same region, both of the same trial, or the first of a
         region and the second of its trial.
+    only_under : {"", "ignore", "interrupt", "missing", "zero"}
+        The one convention under which it holds; empty where it holds under all.
+    because : str
+        Why it does, where that is not plain.
     """
 
     first: str
@@ -36,6 +56,12 @@ class Implication:
     second: str
     then: Then
     level: Level = "region"
+    only_under: Literal["", Outside, NoOpportunity] = ""
+    because: str = ""
+
+    def holds(self, conventions: Conventions | None) -> bool:
+        """Whether it holds under a study's conventions; under all that there are for None."""
+        return not self.only_under or self.only_under in (conventions or ())
 
     @property
     def words(self) -> str:
@@ -46,6 +72,13 @@ class Implication:
         >>> Implication("first_pass_skip", "= 1", "first_pass_time", "missing").words
         'first_pass_skip = 1 means that first_pass_time is missing'
         """
+        under = " under the study's options" if self.only_under else ""
+        because = f": {self.because}" if self.because else ""
+        return f"{self._bare}{under}{because}"
+
+    @property
+    def _bare(self) -> str:
+        """The implication without the conventions under which it holds."""
         first, second = named(self)
         if self.when == "has a value":
             if self.then == ">= it":
@@ -54,6 +87,7 @@ class Implication:
                 return f"{second} is the same wherever {first} has a value"
         said = {
             "missing": "is missing",
+            "not 0": "is not 0",
             "not 1": "is not 1",
             "not > 0": "is not above 0",
             ">= 1": "is at least 1",
@@ -86,6 +120,11 @@ def _all(
 ) -> list[Implication]:
     """The same said of several outcomes."""
     return [Implication(first, when, second, then, level) for second in seconds]
+
+
+def _ignoring(firsts: Sequence[str], second: str, then: Then) -> list[Implication]:
+    """The same of outcomes that are 1, where fixations outside every region are ignored."""
+    return [Implication(first, "= 1", second, then, "both", "ignore") for first in firsts]
 
 
 _OF_FIRST_PASS: Final = ("first_pass_refixation", "first_pass_regression_out", "reread")
@@ -125,6 +164,9 @@ IMPLICATIONS: Final[tuple[Implication, ...]] = (
     *_all("regression_in_count", "> 0", ["second_pass_time"], "> 0"),
     *_all("reread", "= 1", ["visit_count", "fixation_count"], ">= 2"),
     *_all("reread", "= 1", ["second_pass_time"], "> 0"),
+    # Who comes in from a later region has been there before, or has skipped it: then reread is
+    # missing, but 0 where want of opportunity counts as 0.
+    Implication("regression_in", "= 1", "reread", "not 0", only_under="missing"),
     *_all("first_pass_fixation_count", "has a value", ["fixation_count"], ">= it"),
     *_all("visit_count", "has a value", ["fixation_count"], ">= it"),
     *_all("single_fixation_duration", "has a value", ["first_fixation_duration"], "= it"),
@@ -145,6 +187,18 @@ IMPLICATIONS: Final[tuple[Implication, ...]] = (
     *_all("regression_in_count", "has a value", ["regression_count"], ">= it", "both"),
     *_all("fixation_count", "has a value", ["fixation_count"], ">= it", "both"),
     *_all("total_time", "has a value", ["reading_time"], ">= it", "both"),
+    # Before the first regression every step goes on, so the first one always ends a first pass; a
+    # fixation outside can end that pass before, unless such fixations are ignored.
+    *_ignoring(("regression_out", "regression_in"), "any_first_pass_regression", "= 1"),
+    # A region is left for an earlier one and reached again, or for a later one and come back to.
+    *_ignoring(("reread",), "any_first_pass_regression", "= 1"),
+    *_ignoring(("reread",), "any_regression", "= 1"),
+    *_ignoring(("reread",), "regression_count", ">= 1"),
+    Implication("fixated", "= 0", "any_skip", "= 1", "both", "zero"),
+    Implication(
+        *("any_first_pass_regression", "has a value", "any_regression", "= it", "trial", "ignore"),
+        "the first regression of a trial always ends a first pass, so both are the same outcome",
+    ),
     *_all("any_regression", "= 1", ["regression_count"], ">= 1", "trial"),
     *_all("any_regression", "= 0", ["any_first_pass_regression"], "not 1", "trial"),
     *_all("any_regression", "= 0", ["regression_count"], "= 0", "trial"),
@@ -195,7 +249,7 @@ _IN: Final = ("regression_in", "regression_in_count")
 #: Outcomes of trials that are made from the same fixations as those of a region.
 _MADE_FROM: Final = {
     "any_regression": ("first_pass_regression_out", *_OUT, *_IN),
-    "any_first_pass_regression": ("first_pass_regression_out", *_OUT),
+    "any_first_pass_regression": ("first_pass_regression_out", *_OUT, *_IN),
     "any_skip": ("first_pass_skip",),
     "fixation_count": ("fixated", "fixation_count", "visit_count"),
     "regression_count": ("first_pass_regression_out", *_OUT, *_IN),
@@ -218,7 +272,9 @@ _OF_TRIALS: Final = {
 
 
 def shared_fixations(
-    measures: Sequence[str], trial_measures: Sequence[str]
+    measures: Sequence[str],
+    trial_measures: Sequence[str],
+    conventions: Conventions | None = None,
 ) -> tuple[tuple[str, str, str], ...]:
     """Pairs of outcomes that rest on the same fixations by design.
 
@@ -226,6 +282,9 @@ def shared_fixations(
     ----------
     measures, trial_measures : sequence of str
         Names of outcomes of regions, and of trials, in the order of the catalogue.
+    conventions : tuple of str or None
+        What the study does with fixations outside every region, and where there was no
+        opportunity; for None only what holds whatever it does is told.
 
     Returns
     -------
@@ -239,9 +298,14 @@ def shared_fixations(
     ...     print(*pair, sep="; ")
     first_pass_skip; first_pass_time; first_pass_skip = 1 means that first_pass_time is missing
     first_pass_skip; any_skip; first_pass_skip = 1 means that any_skip = 1
+    >>> shared_fixations(["reread"], ["any_regression"])
+    ()
+    >>> ((_, _, why),) = shared_fixations(["reread"], ["any_regression"], ("ignore", "zero"))
+    >>> why
+    "reread = 1 means that any_regression = 1 under the study's options"
     """
     said: dict[tuple[str, str, str], str] = {}
-    for one in IMPLICATIONS:
+    for one in (one for one in IMPLICATIONS if one.holds(conventions)):
         said.setdefault((one.level, one.first, one.second), one.words)
         said.setdefault((one.level, one.second, one.first), one.words)
     pairs = []
@@ -254,10 +318,10 @@ def shared_fixations(
             pairs.append((first, second, why))
     for name in trial_measures:
         for first in measures:
-            if first in _MADE_FROM.get(name, ()):
-                why = said.get(("both", first, name)) or (
-                    "what happens in the region is part of what the trial counts"
-                )
+            why = said.get(("both", first, name), "")
+            if not why and first in _MADE_FROM.get(name, ()):
+                why = "what happens in the region is part of what the trial counts"
+            if why:
                 pairs.append((first, of_trial(name), why))
     for first, second in combinations(trial_measures, 2):
         if (first, second) in _OF_TRIALS:

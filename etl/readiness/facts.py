@@ -101,12 +101,15 @@ class Variation:
     unit : {"participant", "item"}
         Within what.
     kind : {"within", "between", "within some"}
-        Varies within all of them (that have two values or more), within none, within some.
+        Varies within all of them, within none, within some.
     varying, units : int
-        In how many of how many it varies.
+        In how many it varies, of all that have a value.
     repeated : bool
         Whether units have more values than combinations of levels, so that a slope can be told
         from the scatter of single values.
+    several : int
+        How many of them have two values or more: within the others nothing can vary. Where none
+        has, nothing varies within, but whether it would cannot be told.
     """
 
     factors: tuple[str, ...]
@@ -115,10 +118,11 @@ class Variation:
     varying: int
     units: int
     repeated: bool
+    several: int
 
     @property
     def supported(self) -> bool:
-        """Whether the design can carry a random slope: within all or most units, and repeated."""
+        """Whether the design allows a random slope: within all or most units, and repeated."""
         return self.repeated and 2 * self.varying > self.units
 
 
@@ -161,7 +165,7 @@ class Step:
     ones_per_parameter : float
         Ones (or zeros, where they are rarer) for each parameter.
     expectation : str
-        What to expect of it, in a sentence; empty where nothing speaks against it.
+        What to expect of it, in a sentence or two; empty where nothing speaks against it.
     """
 
     number: int
@@ -206,6 +210,11 @@ class OutcomeReadiness:
         What to expect, in plain sentences.
     cell_units : tuple of tuple of UnitCount
         For each of ``cells``, readers (and items) with values there.
+    why : str
+        What the verdict rests on, in a sentence.
+    separated : str
+        With what the expectation of each step ends where its fixed effects separate the outcome;
+        else empty.
     """
 
     outcome: str
@@ -220,6 +229,8 @@ class OutcomeReadiness:
     verdict: Verdict
     sentences: tuple[str, ...]
     cell_units: tuple[tuple[UnitCount, ...], ...] = ()
+    why: str = ""
+    separated: str = ""
 
 
 @dataclass(frozen=True, slots=True)

@@ -8,12 +8,7 @@ import numpy as np
 
 from etl.coding import Coding
 from etl.readiness.counts import OutcomeCounts
-from etl.readiness.facts import (
-    CellCount,
-    OutcomeReadiness,
-    Separation,
-    Verdict,
-)
+from etl.readiness.facts import CellCount, OutcomeReadiness, Separation
 from etl.readiness.intervals import wilson_interval
 from etl.readiness.ladder import Grouping, Ladder, Model, ladder_of
 from etl.readiness.sentences import sentences_of
@@ -27,6 +22,7 @@ from etl.readiness.terms import (
     written,
 )
 from etl.readiness.variation import Behind, cell_unit_counts, unit_counts, variations
+from etl.readiness.verdicts import separation_of_the_ladder, verdict_of, with_reasons
 
 
 def outcome_readiness(counts: OutcomeCounts, codings: Mapping[str, Coding]) -> OutcomeReadiness:
@@ -59,7 +55,8 @@ def outcome_readiness(counts: OutcomeCounts, codings: Mapping[str, Coding]) -> O
     if zeros and ones:
         told = separations(counts)
         ladder = _ladder(counts, codings, behind, order)
-    verdict = _verdict(zeros, ones, _of_the_ladder(told, order), ladder)
+    fixed = separation_of_the_ladder(told, order)
+    verdict = verdict_of(zeros, ones, fixed, ladder)
     units = unit_counts(counts)
     facts = OutcomeReadiness(
         counts.outcome,
@@ -75,7 +72,7 @@ def outcome_readiness(counts: OutcomeCounts, codings: Mapping[str, Coding]) -> O
         (),
         cell_unit_counts(counts),
     )
-    return sentences_of(facts, counts, _of_the_ladder(told, order))
+    return with_reasons(sentences_of(facts, counts, fixed), fixed)
 
 
 def _cell(levels: tuple[str, ...], values: tuple[int, ...]) -> CellCount:
@@ -85,22 +82,6 @@ def _cell(levels: tuple[str, ...], values: tuple[int, ...]) -> CellCount:
     if zeros + ones:
         low, high = wilson_interval(ones, zeros + ones)
     return CellCount(levels, zeros, ones, missing, low, high)
-
-
-def _of_the_ladder(told: tuple[Separation, ...], order: int) -> Separation | None:
-    """The separation by the fixed effects that the formulas have."""
-    return told[min(order, len(told)) - 1] if order < len(told) else (told[-1] if told else None)
-
-
-def _verdict(zeros: int, ones: int, told: Separation | None, ladder: Ladder) -> Verdict:
-    """The worst that can be said, by the rules of ``VERDICT_RULES``."""
-    if not zeros + ones:
-        return "no values"
-    if not (zeros and ones):
-        return "constant"
-    if told is not None and told.kind != "none":
-        return "separated"
-    return "ready" if ladder.free else "sparse"
 
 
 def _ladder(

@@ -19,6 +19,11 @@ FEW_A_PARAMETER: Final = 10
 FEW_LEVELS: Final = 5
 #: With more slopes than this all of the highest order go at once.
 _MOST_ONE_BY_ONE: Final = 6
+#: What is said of the last step with random effects, where something speaks against it.
+_SINGULAR: Final = (
+    "A singular fit with the variance 0 is here the same as a logistic regression without random "
+    "effects."
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -42,6 +47,11 @@ class Grouping:
     levels: int
     values: int
     slopes: Mapping[Term, float]
+
+    @property
+    def repeated(self) -> bool:
+        """Whether any of them has more values than one, without which nothing tells them apart."""
+        return self.values > self.levels
 
 
 @dataclass(frozen=True, slots=True)
@@ -104,7 +114,9 @@ def ladder_of(model: Model, groupings: Sequence[Grouping]) -> Ladder:
     """The formulas that a design can carry, simpler and simpler.
 
     First correlations go; then slopes, those with the fewest rarer values behind each coefficient
-    first, an interaction before the effects within it; then, with intercepts only, the items.
+    first, an interaction before the effects within it; then, with intercepts only, the items (or
+    the readers, where each has one value only). A last step without random effects, a logistic
+    regression, is there only where no grouping has more values than units.
 
     Parameters
     ----------
@@ -136,12 +148,24 @@ def ladder_of(model: Model, groupings: Sequence[Grouping]) -> Ladder:
         step, severity = _step(model, stage, number)
         steps.append(step)
         grave.append(severity)
+    if grave[-1] == 1 and "|" in steps[-1].formula:
+        told = f"{steps[-1].expectation} {_SINGULAR}"
+        steps[-1] = replace(steps[-1], expectation=told)
     for step, severity in zip(steps, grave, strict=True):
         if not severity:
             return Ladder(tuple(steps), step.number, free=True)
-    last = steps[-1]
-    keep_items = len(groupings) > 1 and groupings[-1].levels >= FEW_LEVELS and grave[-2] < 2
-    return Ladder(tuple(steps), last.number - 1 if keep_items else last.number, free=False)
+    start = len(steps)
+    lost = [own for own in groupings if own.unit != _kept(groupings).unit] if groupings else []
+    # Leaving items out mends nothing but a want of levels, or of values.
+    if any(own.repeated and own.levels >= FEW_LEVELS for own in lost) and grave[-2] < 2:
+        start -= 1
+    return Ladder(tuple(steps), start, free=False)
+
+
+def _kept(groupings: Sequence[Grouping]) -> Grouping:
+    """The grouping that goes last: readers, unless each has one value and items have more."""
+    first, last = groupings[0], groupings[-1]
+    return last if last.repeated and not first.repeated else first
 
 
 def _stages(groupings: tuple[Grouping, ...]) -> Iterator[_Stage]:
@@ -161,9 +185,12 @@ def _stages(groupings: tuple[Grouping, ...]) -> Iterator[_Stage]:
         )
         yield _Stage(change, correlated=False, groupings=groupings)
     if len(groupings) > 1:
-        yield _Stage(
-            "without items", correlated=False, groupings=groupings[:1], given_up=groupings[1:]
-        )
+        kept = _kept(groupings)
+        lost = tuple(own for own in groupings if own is not kept)
+        change = f"without {UNIT_WORDS[lost[0].unit]}s"
+        yield _Stage(change, correlated=False, groupings=(kept,), given_up=lost)
+    if groupings and not any(own.repeated for own in groupings):
+        yield _Stage("without random effects", correlated=False, groupings=())
 
 
 def _next_gone(left: Mapping[tuple[str, Term], float]) -> list[tuple[str, Term]]:
@@ -249,12 +276,17 @@ def _expectation(
             f"with {each:.1f} {model.rarer_word} a parameter, where {FEW_A_PARAMETER} for each "
             f"fixed effect are asked for, {likely}"
         )
-    if any(own.levels >= FEW_LEVELS for own in stage.given_up):
-        told.append(
-            "what items have in common is taken for chance, so effects look surer than they are"
-        )
+    told += [
+        f"what {UNIT_WORDS[own.unit]}s have in common is taken for chance, so effects look surer "
+        "than they are"
+        for own in stage.given_up
+        if own.repeated and own.levels >= FEW_LEVELS
+    ]
     if not stage.groupings:
-        told.append("nothing to group by: a logistic regression (glm), not a mixed one")
+        why = "nothing to group by"
+        if stage.change:
+            why = "no random effect can be told from the scatter of single values"
+        told.append(f"{why}: a logistic regression (glm), not a mixed one")
     if not told:
         return "", 0
     text = "; ".join(told)

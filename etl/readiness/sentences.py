@@ -19,6 +19,9 @@ from etl.readiness.ladder import FEW_LEVELS
 
 #: This many cells are named; the rest are counted.
 _MOST_NAMED = 4
+#: Where more than one in so many units is constant, slopes within them have little to go by
+#: (common practice, no source).
+FEW_OF = 3
 
 
 def sentences_of(
@@ -186,7 +189,7 @@ def _slopes(facts: OutcomeReadiness) -> Iterator[str]:
         if not own:
             continue
         have = [_name(v) for v in own if v.supported]
-        text = f"By-{word} slopes for {_listed(have)} are supported" if have else ""
+        text = f"The design allows by-{word} slopes for {_listed(have)}" if have else ""
         lacking = [v for v in own if not v.supported and len(v.factors) == 1]
         # An interaction is told of only where the effects within it have slopes.
         have_one = {v.factors for v in own if v.supported}
@@ -199,22 +202,44 @@ def _slopes(facts: OutcomeReadiness) -> Iterator[str]:
         ]
         for why, names in _reasons(lacking, word).items():
             listed = _listed(names)
-            lead = f"; for {listed} they are not" if text else ""
+            lead = f"; none for {listed}" if text else ""
             they = names[0] if len(names) == 1 else "these"
             verb = "does" if len(names) == 1 else "do"
-            text += lead or f"By-{word} slopes for {listed} are not supported"
+            text += lead or f"The design allows no by-{word} slopes for {listed}"
             text += f": {why.format(they=they, do=verb)}"
         yield f"{text}."
+        hardly = _hardly(unit, facts.total) if have else ""
+        if hardly:
+            yield f"{hardly}, so these by-{word} slopes will hardly be estimated."
+
+
+def _hardly(unit: UnitCount, total: CellCount) -> str:
+    """Why slopes that the design allows have little to go by; empty where they have something."""
+    word = UNIT_WORDS[unit.unit]
+    constant, value = max((unit.all_zero, "zeros"), (unit.all_one, "ones"))
+    if constant * FEW_OF > unit.units:
+        verb = "has" if constant == 1 else "have"
+        return f"{constant:,} of {_many(unit.units, word)} {verb} {value} only"
+    each = min(total.zeros, total.ones) / unit.units
+    if each < 2:
+        rarer = "zeros" if total.zeros < total.ones else "ones"
+        return f"There are {each:.1f} {rarer} for each {word} on average"
+    return ""
 
 
 def _reasons(lacking: Sequence[Variation], word: str) -> dict[str, list[str]]:
     """Why slopes are not supported, and which."""
     out: dict[str, list[str]] = {}
     for own in lacking:
-        if own.kind == "between":
+        if not own.several:
+            why = f"each {word} has one value, so it cannot be told what varies within {word}s"
+        elif own.kind == "between":
             why = f"{{they}} {{do}} not vary within {word}s"
         elif 2 * own.varying <= own.units:
-            why = f"{{they}} {{do}} not vary within most {word}s"
+            single = own.units - own.several
+            why = f"{{they}} {{do}} not vary within most {word}s" + (
+                f" ({single:,} of {own.units:,} have one value)" if single else ""
+            )
         else:
             why = f"most {word}s have one value for each combination of levels"
         out.setdefault(why, []).append(_name(own))
@@ -233,7 +258,8 @@ def _begin(facts: OutcomeReadiness, counts: OutcomeCounts) -> Iterator[str]:
     if start is not facts.ladder[-1]:
         down = ", and go down where it does not converge or is singular"
     if start is first and not first.expectation:
-        yield f"{text}, and nothing speaks against it. Begin there{down}: {first.formula}"
+        nothing = "nothing else" if facts.verdict == "separated" else "nothing"
+        yield f"{text}, and {nothing} speaks against it. Begin there{down}: {first.formula}"
         return
     yield f"{text}. {first.expectation}"
     if start is not first:

@@ -90,7 +90,7 @@ def variations(counts: OutcomeCounts, order: int) -> tuple[Behind, ...]:
     -------
     tuple of Behind
         For each unit in turn, main effects first. Factors with one level that has values are left
-        out.
+        out. Units count that have a value; one with a single value is one in which nothing varies.
 
     References
     ----------
@@ -122,9 +122,8 @@ def _variation(counts: OutcomeCounts, own: UnitCells, term: Term) -> Behind:
     seen = np.zeros((units, prod(sizes)), dtype=np.bool_)
     seen[owner[some], cell_of(codes, sizes)] = True
     values = np.bincount(owner, total, units)
-    able = values >= 2
-    varies = able & _vary(seen, sizes)
-    varying, eligible = int(varies.sum()), int(able.sum())
+    varies = _vary(seen, sizes)
+    varying, eligible = int(varies.sum()), int((values > 0).sum())
     kind: Literal["within", "between", "within some"] = "within some"
     if not varying:
         kind = "between"
@@ -133,7 +132,9 @@ def _variation(counts: OutcomeCounts, own: UnitCells, term: Term) -> Behind:
     repeated = bool((values > seen.sum(axis=1))[varies].sum() * 2 > varying)
     rarer = np.bincount(owner, own.values[:, counts.rarer], units)[varies].sum()
     return Behind(
-        Variation(term, own.unit, kind, varying, eligible, repeated),
+        Variation(
+            term, own.unit, kind, varying, eligible, repeated, several=int((values >= 2).sum())
+        ),
         float(rarer) / (varying * prod(sizes)) if varying else 0.0,
     )
 

@@ -242,7 +242,9 @@ def _variations(own: Sequence[Variation]) -> Markup:
         if len(one.factors) > 1 and constant & set(one.factors):
             continue
         where = f"in {count(one.varying)} of {count(one.units)}"
-        if one.kind == "between":
+        if not one.several:
+            where = "cannot be told: one value each"
+        elif one.kind == "between":
             where = "in none"
         elif one.kind == "within":
             where = f"in all {count(one.units)}"
@@ -300,7 +302,9 @@ def _rungs(judged: OutcomeReadiness, common: str) -> tuple[Rung, ...]:
     rungs, before = [], ""
     for step in judged.ladder:
         each = each_parameter(step, judged.total)
-        expected = step.expectation.replace(each, "")
+        # Separation is told above the formulas, once.
+        expectation = step.expectation.removesuffix(judged.separated).rstrip()
+        expected = expectation.replace(each, "")
         again = bool(expected) and expected == before and step.number != judged.start
         before = expected
         rungs.append(
@@ -308,8 +312,8 @@ def _rungs(judged: OutcomeReadiness, common: str) -> tuple[Rung, ...]:
                 step.number,
                 step.formula.removeprefix(common),
                 step.change,
-                _size(step, each if again or each not in step.expectation else ""),
-                AGAIN if again else step.expectation,
+                _size(step, each if again or each not in expectation else ""),
+                AGAIN if again else expectation,
                 step.number == judged.start,
             )
         )

@@ -30,7 +30,11 @@ from etl.session.model_columns import (
 from etl.session.notices import notice_similar_readers, notice_what_is_missing
 from etl.session.odd_values import notice_odd_regions, notice_odd_values
 from etl.session.plan import Plan
-from etl.session.pseudonym_guards import hide_in_reasons, refuse_ids_in_values
+from etl.session.pseudonym_guards import (
+    hide_in_reasons,
+    refuse_ids_in_names,
+    refuse_ids_in_values,
+)
 from etl.session.reader import Options
 from etl.session.reader_tasks import Corrections, reader_tasks, texts_in
 from etl.session.trial_facts import trial_facts
@@ -149,6 +153,7 @@ def gather(
         trials.known[name] = Coded.of(supplied, {""}).take(text)
     good = trials.good & (trials.skipped | (text >= 0))
     refuse_ids_in_values(plan, (trials, text), shown, findings)
+    refuse_ids_in_names(plan, findings)
     levels = _levels(plan, trials, text, shown, findings)
     notice_odd_values(plan.study, trials, text >= 0, shown, findings)
     notice_odd_regions(plan.library, plan.study.regions.file, findings)
@@ -242,7 +247,11 @@ def _levels(
                 found=value or None,
                 expected=("one of " + ", ".join(stated)) if stated else "a level",
                 fix="correct the cell"
-                + (", or add the level to [trials] levels" if value else "")
+                + (
+                    ", or add the level to [trials] levels"
+                    if value
+                    else ", or take a word that is a level out of [logs] missing"
+                )
                 + "; trials that are no part of the study belong in [trials] skip",
             )
         levels[name] = IdColumn.of(found).values if stated is None else tuple(stated)

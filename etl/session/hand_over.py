@@ -48,7 +48,8 @@ def describe(folder: Path, plan: Plan, design: TableDesign) -> Described:
     Described
         What page and bundle tell, too.
     """
-    readiness = readiness_of(folder, design)
+    measures = plan.study.measures
+    readiness = readiness_of(folder, design, (measures.outside, measures.no_opportunity))
     write_readiness(readiness, folder)
     return Described(write_described(folder, plan, design), readiness)
 

@@ -9,6 +9,7 @@ from typing import Any
 
 from etl.errors import Findings
 from etl.files import header_of_table, marks_of
+from etl.handoff import names_in_use
 from etl.lines import (
     ChainSettings,
     MergeSettings,
@@ -26,7 +27,7 @@ from etl.session.limits import check_rules, limits_of
 from etl.session.line_corrections import LineCorrections, read_corrections
 from etl.session.lines import LineChoice
 from etl.session.log_files import find_logs
-from etl.session.pseudonym_record import hidden_study
+from etl.session.pseudonym_study import hidden_study
 from etl.study import Study
 from etl.study.models import Lines
 from etl.tables import BARE_DESIGN, TABLES
@@ -169,8 +170,10 @@ def _names_are_free(study: Study, findings: Findings) -> bool:
     taken |= {*MEASURES, *TRIAL_MEASURES, *IDS}
     free = True
     for key in ("factors", "covariates"):
+        # The files that count by condition have a column for each factor, too.
+        used = taken | names_in_use() if key == "factors" else taken
         for name in getattr(study.trials, key):
-            if name in taken:
+            if name in used:
                 free = False
                 findings.error(
                     "the tables have a column of this name already",

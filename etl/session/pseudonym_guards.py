@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from functools import lru_cache
 from typing import TYPE_CHECKING
 
@@ -24,6 +24,10 @@ _FEWEST_READERS = 3
 #: What is said of a value, or of a whole column.
 _ONE = "holds the id of a reader"
 _ALL = "is that of the readers' ids"
+_LOG = "holds the name of a log"
+#: Keys of [trials] that name columns of the tables, and columns that are called so by us.
+_COLUMNS = ("factors", "covariates")
+_OWN = frozenset({"participant", "session", "trial", "item"})
 _FIX = (
     "rename the values in all files in which they stand; or leave the column out of the study, "
     "or set pseudonyms = false"
@@ -66,12 +70,13 @@ def hide_in_reasons(trials: KnownTrials, pseudonyms: Pseudonyms | None) -> None:
     """
     if pseudonyms is None:
         return
-    readers, hidden = trials.seen.ids["participant"], lru_cache(None)(pseudonyms.hidden)
+    readers = trials.seen.ids["participant"]
+    hidden = lru_cache(None)(pseudonyms.hidden_in_free_text)
     for row in np.flatnonzero(trials.skipped).tolist():
         name, _, value = trials.skipped_by[row].partition(" = ")
         own = readers.text(row)
         same = value == pseudonyms.originals.get(own)
-        trials.skipped_by[row] = f"{name} = {own if same else hidden(value)}"
+        trials.skipped_by[row] = f"{pseudonyms.hidden(name)} = {own if same else hidden(value)}"
 
 
 def refuse_ids_in_values(
@@ -110,8 +115,8 @@ def refuse_ids_in_values(
             for row in np.flatnonzero(rows & (column.codes >= 0))[:1].tolist():
                 _tell(plan, name, (trials, text, row), shown, _ALL, findings)
             continue
-        for row in _naming_readers(column, rows, pseudonyms):
-            _tell(plan, name, (trials, text, row), shown, _ONE, findings)
+        for row, what in _telling(column, rows, pseudonyms):
+            _tell(plan, name, (trials, text, row), shown, what, findings)
     for name in plan.library.region_names:
         if pseudonyms.hidden(name) != name:
             findings.error(
@@ -123,15 +128,55 @@ def refuse_ids_in_values(
             )
 
 
-def _naming_readers(
+def refuse_ids_in_names(plan: Plan, findings: Findings) -> None:
+    """Record columns of the study that are called like a reader.
+
+    Parameters
+    ----------
+    plan : Plan
+        The study, when all readers of the logs are known.
+    findings : Findings
+        Where an error is recorded for each name: the tables have columns of these names.
+    """
+    pseudonyms, study = plan.pseudonyms, plan.study
+    if pseudonyms is None:
+        return
+    named: list[tuple[str, tuple[str, ...]]] = [
+        (name, ("trials", key)) for key in _COLUMNS for name in getattr(study.trials, key)
+    ]
+    for factor, contrast in study.output.contrasts.items():
+        if isinstance(contrast, Mapping):
+            named += [(name, ("output", "contrasts", factor)) for name in contrast]
+    known = {name for name, _ in named}
+    named += [(key, ("regions", "file")) for key in plan.library.keys if key not in known | _OWN]
+    readers = {text.casefold() for text in pseudonyms.readers().values()}
+    for name, keys in named:
+        if name.casefold() in readers or pseudonyms.hidden(name) != name:
+            findings.error(
+                "a column is called like a reader, and readers go by pseudonyms",
+                path=study.shown,
+                line=study.line_of(*keys),
+                where=".".join(keys),
+                found=name,
+                expected="names that tell of no reader",
+                fix="rename the column in all files in which it stands; or leave it out of the "
+                "study, or set pseudonyms = false",
+            )
+
+
+def _telling(
     column: Coded, rows: NDArray[np.bool_], pseudonyms: Pseudonyms
-) -> Iterator[int]:
-    """The first row of each value that holds an id."""
+) -> Iterator[tuple[int, str]]:
+    """The first row of each value that holds an id or the name of a log, and which it is."""
     for code in np.unique(column.codes[rows]).tolist():
         value = "" if code < 0 else column.values[code]
         # A number by itself is a number: trial 2041 has nothing to do with reader 2041.
-        if value and number_of(value) is None and pseudonyms.hidden(value) != value:
-            yield int(np.flatnonzero(rows & (column.codes == code))[0])
+        if not value or number_of(value) is not None:
+            continue
+        named = pseudonyms.hidden(value) != value
+        if named or pseudonyms.names_log(value):
+            row = int(np.flatnonzero(rows & (column.codes == code))[0])
+            yield row, _ONE if named else _LOG
 
 
 def _are_the_readers(

@@ -8,9 +8,7 @@ from __future__ import annotations
 
 import csv
 import io
-import os
 import secrets
-import stat
 from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
@@ -18,7 +16,10 @@ from typing import TYPE_CHECKING
 
 from etl.cells import csv_text, plain
 from etl.errors import DataError, Findings
+from etl.export.publish import record_of
+from etl.export.run_record import KEY_KNOWN_BY
 from etl.pseudonyms import FILE_KINDS, KEY_BYTES, Pseudonyms, is_reader, signs_of
+from etl.session.pseudonym_owner import keep_to_owner, write_for_owner
 
 if TYPE_CHECKING:
     from etl.study import Study
@@ -27,9 +28,8 @@ COLUMNS = ("kind", "name", "stands_for")
 #: What a row of the file is about.
 _KEY, _READER, _END = "key", "reader", "end"
 _CHECK_SIGNS = 8
-#: Who else than the owner may do anything with the file.
-_OTHERS = stat.S_IRWXG | stat.S_IRWXO
-_OWNER_ONLY = stat.S_IRUSR | stat.S_IWUSR
+#: By 80 bits no two keys are taken for one; they tell nothing of the key, which has 256.
+_KNOWN_BY_SIGNS = 16
 _WAY_OUT = (
     "put the file back as the program wrote it; to give everybody a new pseudonym, move it away"
 )
@@ -137,12 +137,53 @@ def open_key(
         raise DataError(wrong)
     if stored is None:
         key = bytes(KEY_BYTES) if target is None else secrets.token_bytes(KEY_BYTES)
+        _compare_with_last(path.name, target, key, findings)
         return KeyFile(path, None, Pseudonyms(key, study.folder))
     pseudonyms = _read(stored, path.name, study.folder, wrong)
     if pseudonyms is None:
         raise DataError(wrong)
-    _keep_to_owner(path, findings, narrow=target is not None)
+    _compare_with_last(path.name, target, pseudonyms.key, findings)
+    keep_to_owner(path, findings, narrow=target is not None)
     return KeyFile(path, stored, pseudonyms)
+
+
+def known_by(key: bytes) -> str:
+    """By what a key is known again in the record of a build, which may be handed on.
+
+    Parameters
+    ----------
+    key : bytes
+        The secret.
+
+    Returns
+    -------
+    str
+        Signs of a keyed digest of nothing.
+
+    Examples
+    --------
+    >>> known_by(b"k" * 32)
+    '9K906DXPZVGHCFEY'
+    """
+    return signs_of(key, "record", "", _KNOWN_BY_SIGNS)
+
+
+def _compare_with_last(shown: str, target: Path | None, key: bytes, findings: Findings) -> None:
+    """Warn where the build that is to be replaced had other pseudonyms.
+
+    It is no error: to move the key away is how one gives everybody a new pseudonym.
+    """
+    record = None if target is None else record_of(target)
+    last = None if record is None else record.get(KEY_KNOWN_BY)
+    if last is not None and last != known_by(key):
+        findings.warning(
+            "the last build in the output folder had another key, so every reader and log has "
+            "another pseudonym now",
+            path=shown,
+            expected="the key of the last build",
+            fix="if the key was moved, renamed or lost, put it back under this name and build "
+            "again before you hand tables on: they do not go with those handed on before",
+        )
 
 
 def _refuse_inside(path: Path, target: Path, findings: Findings) -> None:
@@ -240,21 +281,6 @@ def _tell(shown: str, line: int, problem: str, findings: Findings) -> None:
     findings.error(f"in the key to the pseudonyms, {problem}", path=shown, line=line, fix=_WAY_OUT)
 
 
-def _keep_to_owner(path: Path, findings: Findings, *, narrow: bool) -> None:
-    """Warn where others may read the file; a build takes that from them."""
-    if os.name != "posix" or not path.stat().st_mode & _OTHERS:
-        return
-    if narrow:
-        path.chmod(path.stat().st_mode & ~_OTHERS & 0o7777)
-    findings.warning(
-        "others on this computer could read the key to the pseudonyms"
-        + ("; that is taken from them now" if narrow else ""),
-        path=path.name,
-        expected="a file that its owner alone may read",
-        fix="find out who may have read it; with the key every pseudonym can be told",
-    )
-
-
 def save_key(held: KeyFile) -> None:
     """Write the key and whose the pseudonyms are; the file is there as a whole or as it was.
 
@@ -279,7 +305,16 @@ def save_key(held: KeyFile) -> None:
                 fix="build again",
             )
         elif now != text:
-            _write(held.path.resolve(), text)
+            write_for_owner(held.path.resolve(), text)
+    except PermissionError as why:
+        findings.error(
+            f"the key to the pseudonyms cannot be written ({why.strerror})",
+            path=held.path.name,
+            expected="a file of your own, in a folder in which you may write: readers or logs were "
+            "added",
+            fix="let the owner of the file build the study, or see that you may write in its "
+            "folder, and close the key in other programs",
+        )
     except OSError as why:
         findings.error(
             f"the key to the pseudonyms cannot be written ({why.strerror or type(why).__name__})",
@@ -289,22 +324,6 @@ def save_key(held: KeyFile) -> None:
         )
     if findings.failed:
         raise DataError(findings)
-
-
-def _write(path: Path, content: bytes) -> None:
-    """Write a file that its owner alone may read, from its first byte on."""
-    beside = path.with_name(f".{path.name}.new")
-    beside.unlink(missing_ok=True)
-    try:
-        made = os.open(beside, os.O_WRONLY | os.O_CREAT | os.O_EXCL, _OWNER_ONLY)
-        with os.fdopen(made, "wb") as file:
-            file.write(content)
-            file.flush()
-            os.fsync(file.fileno())
-        beside.replace(path)
-    except BaseException:  # an interruption too
-        beside.unlink(missing_ok=True)
-        raise
 
 
 def _spelled(pseudonyms: Pseudonyms) -> str:

@@ -6,13 +6,14 @@ are texts that people wrote: names of files, free text, the study file itself.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
 from etl.errors import Finding, Findings, Kind
 from etl.pseudonyms import Pseudonyms
 from etl.session.pseudonym_key import key_path
+from etl.session.pseudonym_study import FILE_KEYS
 from etl.trials import FactTable
 from etl.trials.facts import shown_path
 
@@ -20,15 +21,6 @@ if TYPE_CHECKING:
     from etl.report import NotRecorded
     from etl.session.plan import Plan
     from etl.study import Study
-
-#: What stands in the record for what tells how logs are called.
-WITHHELD = "withheld: pseudonyms"
-#: Where a study names a file or a folder: the tables around the key, and the key.
-_FILE_KEYS = (
-    *(("participants", "table"), ("items", "table"), ("trials", "table"), ("regions", "file")),
-    *(("lines", "corrections"), ("screening", "trials", "notes")),
-    *(("screening", "participants", "notes"), ("output", "folder")),
-)
 
 
 def reader_columns(study: Study) -> tuple[str, ...]:
@@ -45,56 +37,6 @@ def reader_columns(study: Study) -> tuple[str, ...]:
     """
     column = study.logs.columns.participant
     return ("participant", *(() if column is None else (column.column,)))
-
-
-def hidden_study(understood: Mapping[str, Any], pseudonyms: Pseudonyms) -> dict[str, Any]:
-    """A study as understood, with no id and no name of a log in it.
-
-    Parameters
-    ----------
-    understood : mapping
-        ``study.understood()``.
-    pseudonyms : Pseudonyms
-        Those of the study, when all readers are known.
-
-    Returns
-    -------
-    dict
-        Names of logs and the pattern for them are withheld; ids, and names of files with an id in
-        them, are replaced, and so are distinctive ids in any other text.
-    """
-    whole: dict[str, Any] = _each_text(dict(understood), pseudonyms.hidden)
-    for keys in _FILE_KEYS:
-        given, inner = understood, whole
-        for key in keys[:-1]:
-            given, inner = (given or {}).get(key) or {}, (inner or {}).get(key) or {}
-        if given.get(keys[-1]) is not None:
-            inner[keys[-1]] = pseudonyms.shown_file(given[keys[-1]])
-    logs = understood["logs"]
-    whole["logs"]["files"] = [WITHHELD]
-    if logs.get("participant_from_name") is not None:
-        whole["logs"]["participant_from_name"] = WITHHELD
-    if logs.get("eye"):
-        readers = {pseudonyms.of_reader(n): eye for n, eye in logs["eye"]["readers"].items()}
-        whole["logs"]["eye"]["readers"] = dict(sorted(readers.items()))
-    column = (logs.get("columns") or {}).get("participant") or {}
-    for table, key in (("logs", "where"), ("trials", "skip")):
-        for name, values in understood[table][key].items():
-            if name in ("participant", column.get("column")):
-                hidden = sorted(map(pseudonyms.of_reader, values))
-                whole[table][key][name] = hidden
-    return whole
-
-
-def _each_text(value: Any, change: Callable[[str], str]) -> Any:
-    """A value with every text in it changed, names of keys included."""
-    if isinstance(value, str):
-        return change(value)
-    if isinstance(value, Mapping):
-        return {change(key): _each_text(inner, change) for key, inner in value.items()}
-    if isinstance(value, list | tuple):
-        return [_each_text(inner, change) for inner in value]
-    return value
 
 
 def under_pseudonyms(plan: Plan) -> Plan:
@@ -264,7 +206,7 @@ class _Hiding:
 def _files_of(study: Study) -> list[str]:
     """The names of files and folders that a study file gives, besides the logs."""
     found = []
-    for *tables, key in _FILE_KEYS:
+    for *tables, key in FILE_KEYS:
         inner: Any = study
         for table in tables:
             inner = None if inner is None else getattr(inner, table)

@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from etl.errors import FaultError
 from etl.export.readiness_files import write_readiness_files
-from etl.measures.dependence import shared_fixations
+from etl.measures.dependence import Conventions, shared_fixations
 from etl.readiness import Conditions, OutcomeCounts, UnitCells, outcome_readiness
 from etl.readiness.counts import cell_of
 from etl.readiness.facts import ALL_REGIONS, Dependence, Readiness
@@ -101,7 +101,9 @@ class _Counting:
         return OutcomeCounts(outcome, name, conditions, cells, tuple(units))
 
 
-def readiness_of(folder: Path, design: TableDesign) -> Readiness:
+def readiness_of(
+    folder: Path, design: TableDesign, conventions: Conventions | None = None
+) -> Readiness:
     """What is to be known of all binary outcomes of a study before the first fit.
 
     Parameters
@@ -110,6 +112,9 @@ def readiness_of(folder: Path, design: TableDesign) -> Readiness:
         Where ``outcomes_wide.parquet`` and ``trials.parquet`` are, finished.
     design : TableDesign
         What the tables have in common.
+    conventions : tuple of str or None
+        What the study does with fixations outside every region, and where there was no
+        opportunity; for None dependences are told that hold whatever it does.
 
     Returns
     -------
@@ -160,7 +165,7 @@ def readiness_of(folder: Path, design: TableDesign) -> Readiness:
         outcome_readiness(counted.counts(name, (0, ""), conditions), codings) for name in of_trials
     ]
     names = tuple(m.name for m in design.measures), tuple(m.name for m in design.trial_measures)
-    shared = tuple(Dependence(*pair) for pair in shared_fixations(*names))
+    shared = tuple(Dependence(*pair) for pair in shared_fixations(*names, conventions))
     return Readiness(tuple(design.factors), tuple(outcomes), shared, together)
 
 

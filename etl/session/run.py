@@ -40,7 +40,7 @@ from etl.session.log_tellings import (
 from etl.session.notice_logs import notice_logs
 from etl.session.plan import Plan, make_plan
 from etl.session.pseudonym_guards import refuse_clashes
-from etl.session.pseudonym_key import KeyFile, open_key, save_key
+from etl.session.pseudonym_key import KeyFile, known_by, open_key, save_key
 from etl.session.pseudonym_record import for_record, hidden_inputs, told_study, under_pseudonyms
 from etl.session.reader import ReaderTables
 from etl.session.result import Result
@@ -184,6 +184,7 @@ def build(
             for_record(findings, plan).lines(("warning", "note")),
             [one.spelled() for one in gathered.unrecorded],
             time.perf_counter() - started,
+            "" if held is None else known_by(held.pseudonyms.key),
         ).write(shop.fresh)
         if held is not None:
             save_key(held)

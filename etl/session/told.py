@@ -12,6 +12,7 @@ from etl.export.publish import BUNDLE
 from etl.measures import MEASURES, REASON_MEANINGS, TRIAL_MEASURES, Measure
 from etl.readiness.facts import Readiness
 from etl.report.readiness_words import gravest, region_of, summed_up
+from etl.session.pseudonym_owner import is_open
 from etl.session.result import Result
 
 #: This many of the worst outcomes are named.
@@ -72,7 +73,11 @@ def built(result: Result) -> str:
     lines += readiness_lines(result.readiness)
     lines.append(f"{BUNDLE}/ is what the statistician gets; start there with: Rscript start.R")
     if result.key is not None:
-        alone = "its owner alone may read it" if os.name == "posix" else "its folder says who may"
+        alone = "its folder says who may read it"
+        if os.name == "posix":
+            alone = (
+                "others may read it, too" if is_open(result.key) else "its owner alone may read it"
+            )
         lines.append(f"Whose the pseudonyms are stands in {_near(result.key)}; {alone}.")
         lines.append("Keep it apart from the tables.")
     return "\n".join(lines)

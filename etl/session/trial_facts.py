@@ -123,6 +123,12 @@ def _add_notes(plan: Plan, trials: KnownTrials, facts: TrialFacts, findings: Fin
         if notes is None:
             continue
         notes = notes.under(hide)
+        if hide is not None:
+            findings.note(
+                "readers go by pseudonyms, so the reasons in the notes are left out of the output; "
+                "the tables say which trials and readers have a note",
+                path=notes.shown,
+            )
         facts.inputs.append(notes)
         on_trials = notes.on_trials()
         if given == of_trials:

@@ -22,6 +22,9 @@ _WANTED: Final = (
 _EXAMPLE: Final = 'write for example { cue = "sum" }, { cue = [-0.5, 0.5] } or { cue = { late = '
 _EXAMPLE_END: Final = "[-0.5, 0.5] } }"
 
+#: Numbers beyond these are slips, and would leave a model nothing to compute with.
+_LEAST, _GREATEST = 1e-6, 1e6
+
 #: Columns by name, each with a number for each level.
 Numbers = Mapping[str, tuple[float, ...]]
 
@@ -55,7 +58,7 @@ def _spelled(contrast: str | Numbers) -> str | dict[str, list[float]]:
 def _named_plainly(name: str) -> None:
     """Refuse a name that a formula would have to put in quotes."""
     plain = plain_name(name)
-    if plain != name:
+    if plain != name or not name:
         raise refusal(
             f"a formula would need quotes around {json.dumps(name, ensure_ascii=False)}",
             expected="unaccented letters and digits, with single underscores between",
@@ -82,6 +85,12 @@ def _numbers(values: Any, what: str) -> tuple[float, ...]:
                 f"entry {place} of {'the list' if what == 'this' else what} is no finite number",
                 expected="a number for each level",
                 fix="write numbers without quotes, such as -0.5",
+            )
+        if value and not _LEAST <= abs(value) <= _GREATEST:
+            raise refusal(
+                f"entry {place} of {'the list' if what == 'this' else what} is {value:g}",
+                expected="0, or a number between a millionth and a million, or minus that",
+                fix="write numbers such as -0.5, 1 or 2",
             )
     # A zero with a minus sign would be another text in the tables.
     return tuple(float(value) + 0.0 for value in values)

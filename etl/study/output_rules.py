@@ -31,17 +31,25 @@ def contrasts_belong_to_factors(study: StudyFile) -> Iterator[Problem]:
 
 
 @rule("output.contrasts", "trials.factors", "trials.levels")
-def given_numbers_have_levels(study: StudyFile) -> Iterator[Problem]:
-    """Numbers are given in the order of the levels, which must be stated for that."""
-    for name, columns in _given(study):
-        if name not in study.trials.levels:
-            yield Problem(
-                (*_CONTRASTS, name),
-                "numbers belong to levels in order, and no order is stated",
-                found=_spelled(columns),
-                expected=f"the levels of {name} in [trials] levels",
-                fix=f"add [trials] levels = {{ {name} = […] }}, in the order of the numbers",
-            )
+def contrasts_have_levels_in_order(study: StudyFile) -> Iterator[Problem]:
+    """Every contrast but treatment goes by the order of the levels, which must be stated for that.
+
+    Sorted as texts, low, medium and high would make a linear trend of high, low, medium.
+    """
+    for name, wanted in study.output.contrasts.items():
+        named = isinstance(wanted, str)
+        if name not in study.trials.factors or name in study.trials.levels or wanted == "treatment":
+            continue
+        yield Problem(
+            (*_CONTRASTS, name),
+            "this contrast goes by the order of the levels, and no order is stated"
+            if named
+            else "numbers belong to levels in order, and no order is stated",
+            found=wanted if isinstance(wanted, str) else _spelled(wanted),
+            expected=f"the levels of {name} in [trials] levels",
+            fix=f"add [trials] levels = {{ {name} = […] }}, in the order "
+            + ("that is meant" if named else "of the numbers"),
+        )
 
 
 @rule("output.contrasts", "trials.factors", "trials.levels")

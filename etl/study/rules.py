@@ -62,7 +62,7 @@ RULES = (
     trial_rules.factors_are_no_covariates,
     trial_rules.facts_keep_their_own_names,
     output_rules.contrasts_belong_to_factors,
-    output_rules.given_numbers_have_levels,
+    output_rules.contrasts_have_levels_in_order,
     output_rules.given_numbers_fit_their_levels,
     output_rules.centred_facts_are_covariates,
     screening_rules.text_time_has_limits,

@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import Cells, Coded, place_rows, read_table
-from etl.pseudonyms import Pseudonyms
+from etl.pseudonyms import WITHHELD, Pseudonyms
 from etl.trials.fact_tables import FactTable
 from etl.trials.labels import without_prefix
 from etl.trials.seen import SeenTrials
@@ -40,12 +40,16 @@ class Notes:
     lines: NDArray[np.int32]
 
     def under(self, pseudonyms: Pseudonyms | None) -> Notes:
-        """The notes with pseudonyms in place of readers' ids, in what people wrote too."""
+        """The notes with pseudonyms in place of readers' ids, and without what people wrote.
+
+        Free text may tell of a reader in more ways than can be looked for: by an id of one sign,
+        by a nickname. What was written stays in the laboratory's own file.
+        """
         if pseudonyms is None:
             return self
         readers = pseudonyms.readers_of(self.columns["participant"], either=True)
         reason = self.columns["reason"]
-        told = Coded(reason.codes, tuple(map(pseudonyms.hidden, reason.values)))
+        told = Coded(np.where(reason.codes < 0, -1, 0).astype(np.int32), (WITHHELD,))
         return replace(self, columns={**self.columns, "participant": readers, "reason": told})
 
     def on_trials(self) -> NDArray[np.bool_]:

@@ -7,7 +7,7 @@ from pathlib import Path
 
 import pytest
 
-from tests.bundle.odd_studies import ODD_STUDIES
+from tests.bundle.odd_studies import ODD_STUDIES, even_study
 from tests.end_to_end.building import build, copied_sample
 from tests.handoff.bundles import bundle_of, small_study
 
@@ -24,6 +24,12 @@ def passages_bundle(tmp_path_factory: pytest.TempPathFactory) -> Path:
     """The bundle of the passages study as committed."""
     root = tmp_path_factory.mktemp("passages")
     return build(copied_sample("passages", root, rules=None), root / "built").folder / "handoff"
+
+
+@pytest.fixture(scope="session")
+def even_bundle(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """The bundle of a study whose readers do not differ."""
+    return bundle_of(even_study(tmp_path_factory.mktemp("even")))
 
 
 @pytest.fixture(scope="session")

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import hashlib
 import json
 from pathlib import Path
 
@@ -87,6 +88,17 @@ def test_run_record_lists_the_files_of_the_bundle(with_csv: Path) -> None:
     """The record names every file of the build and of the bundle but itself."""
     record = json.loads((with_csv / "run.json").read_text(encoding="utf-8"))
     assert set(record["files"]) == files_of(with_csv.parent).keys() - {"run.json"}
+
+
+def test_run_record_has_a_digest_of_every_file(with_csv: Path) -> None:
+    """By SHA-256, of all files of build and bundle but the record itself."""
+    record = json.loads((with_csv / "run.json").read_text(encoding="utf-8"))
+    built = files_of(with_csv.parent)
+    assert record["sha256"] == {
+        name: hashlib.sha256(own).hexdigest()
+        for name, own in built.items()
+        if name not in ("run.json", "handoff/run.json")
+    }
 
 
 def test_bundle_names_no_place_of_the_computer(with_csv: Path, tmp_path: Path) -> None:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import os
 from pathlib import Path
 
 import pytest
@@ -28,7 +29,13 @@ def bundle(study_file: Path, tmp_path: Path) -> Path:
 
 
 @pytest.mark.parametrize(
-    "name", ["my_model.R", ".RData", "figures/rates.png", "start.R/notes.txt"], ids=str
+    "name",
+    [
+        "my_model.R",
+        *(".RData", "Rplots.pdf", ".Rproj.user/a/unsaved", ".ipynb_checkpoints/a.ipynb"),
+        *("__pycache__/notes.txt", "figures/rates.png", "start.R/notes.txt"),
+    ],
+    ids=str,
 )
 def test_file_of_a_statistician_in_the_bundle_stops_a_build(
     study_file: Path, tmp_path: Path, name: str
@@ -45,22 +52,63 @@ def test_file_of_a_statistician_in_the_bundle_stops_a_build(
     assert files_of(tmp_path) == before
 
 
-@pytest.mark.parametrize("name", ["start.R", "start.py"])
-def test_changed_script_stops_a_build(study_file: Path, bundle: Path, name: str) -> None:
-    """A starter script that somebody worked on is named and stays as it is."""
-    changed = bundle / name
+@pytest.mark.parametrize(
+    "name",
+    [
+        *("handoff/start.R", "handoff/start.py", "handoff/README.md", "handoff/codebook.md"),
+        *("handoff/outcomes_wide.csv", "codebook.md", "outcomes.csv", "audit.html"),
+    ],
+)
+def test_changed_file_stops_a_build(study_file: Path, bundle: Path, name: str) -> None:
+    """A script, page or table that somebody worked on is named and stays as it is."""
+    changed = bundle.parent / name
     changed.write_bytes(changed.read_bytes() + b"# mine\n")
     before = files_of(bundle.parent)
-    with pytest.raises(etl.DataError, match=f'were changed since .*found "handoff/{name}"'):
+    with pytest.raises(
+        etl.DataError,
+        match=f'were changed since .*found "{name}"(?s:.*)undo the changes or delete these files',
+    ):
         etl.build(etl.load_study(study_file), into=bundle.parent)
     assert files_of(bundle.parent) == before
 
 
+def test_changed_value_of_the_same_length_is_seen(study_file: Path, bundle: Path) -> None:
+    """Neither size nor time of a file tell whether somebody worked on it."""
+    table = bundle / "trials.csv"
+    times = (table.stat().st_atime_ns, table.stat().st_mtime_ns)
+    table.write_bytes(table.read_bytes().replace(b"late", b"LATE", 1))
+    os.utime(table, ns=times)
+    with pytest.raises(etl.DataError, match=r'were changed since .*found "handoff/trials\.csv"'):
+        etl.build(etl.load_study(study_file), into=bundle.parent)
+
+
+def test_changed_file_that_was_deleted_stops_no_build(study_file: Path, bundle: Path) -> None:
+    """A table that a spreadsheet spoiled is deleted, and the build makes it anew."""
+    before = (bundle / "outcomes.csv").read_bytes()
+    (bundle / "outcomes.csv").unlink()
+    etl.build(etl.load_study(study_file), into=bundle.parent)
+    assert (bundle / "outcomes.csv").read_bytes() == before
+
+
+def test_file_that_cannot_be_read_stops_a_build(
+    study_file: Path, bundle: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """A table that another program holds is told of, without a traceback."""
+
+    def held(_: Path) -> str:
+        raise PermissionError(13, "Permission denied")
+
+    monkeypatch.setattr("etl.export.publish.digest_of", held)
+    with pytest.raises(etl.DataError, match="close programs that have files of it open"):
+        etl.build(etl.load_study(study_file), into=bundle.parent)
+
+
 def test_untouched_bundle_is_replaced(study_file: Path, bundle: Path) -> None:
     """A second build needs no tidying up after the first."""
-    write(bundle, {".DS_Store": "what a computer leaves behind"})
+    litter = (".DS_Store", ".Rhistory", "__pycache__/start.cpython-311.pyc")
+    write(bundle, dict.fromkeys(litter, "what programs leave behind"))
     etl.build(etl.load_study(study_file), into=bundle.parent)
-    assert not (bundle / ".DS_Store").exists()
+    assert [name for name in litter if (bundle / name).exists()] == []
     assert (bundle / "start.R").exists()
 
 

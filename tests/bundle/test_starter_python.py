@@ -15,6 +15,8 @@ import pandas as pd
 import pytest
 from statsmodels.genmod.bayes_mixed_glm import BinomialBayesMixedGLM
 
+from etl.handoff.scripts import VERDICT_ADVICE
+from etl.readiness.facts import VERDICT_RULES
 from tests.bundle.odd_studies import ODD_STUDIES
 from tests.handoff.bundles import bundle_of, rows_of, small_study
 
@@ -166,6 +168,43 @@ def test_study_without_binary_outcomes_in_regions_ends_well(tmp_path: Path) -> N
     ran = run_python(bundle_of(study_file) / "start.py")
     assert (ran.returncode, ran.stderr) == (0, "")
     assert AGREE.search(ran.stdout)
+
+
+def test_errors_that_are_too_small_are_warned_of(copied: Path) -> None:
+    """Behind the table of the model stands what its standard deviations are worth."""
+    _, _, behind = run_python(copied / "start.py").stdout.partition("Post. SD")
+    assert "(Post. SD) are most often too small" in " ".join(behind.split())
+
+
+def test_verdict_is_explained(copied: Path) -> None:
+    """Meaning, reason and what to do stand below the counts."""
+    said = " ".join(run_python(copied / "start.py", "reread", "a").stdout.split())
+    row = next(
+        row
+        for row in rows_of(copied / "readiness.csv")
+        if (row["outcome"], row["region"], row["cue"]) == ("reread", "a", "")
+    )
+    verdict = row["verdict"]
+    assert f'What "{verdict}" means: {VERDICT_RULES[verdict]}. Why: {row["why"]} What' in said
+    assert f"What to do: {VERDICT_ADVICE[verdict]}." in said
+
+
+@pytest.mark.parametrize("name", ["outcome", "zeros", "state", "verdict", "why", "our zeros"])
+def test_factor_may_be_called_like_a_column_of_readiness(
+    odd_bundle: Callable[[str], Path], tmp_path: Path, name: str
+) -> None:
+    """Columns of readiness.csv are found by their places, not by names that come twice."""
+    bundle = shutil.copytree(odd_bundle("no items"), tmp_path / "b")
+    for file in ("start.py", "outcomes_wide.csv", "trials.csv", "readiness.csv"):
+        text = (bundle / file).read_text(encoding="utf-8")
+        renamed = re.sub(r'(?<![\w-])"?\bcue\b"?(?![\w-])', f'"{name}"', text, count=0)
+        assert renamed != text
+        renamed = renamed.replace("FIT_MODEL = True", "FIT_MODEL = False")
+        (bundle / file).write_text(renamed, encoding="utf-8", newline="\n")
+    ran = run_python(bundle / "start.py")
+    assert (ran.returncode, ran.stderr) == (0, "")
+    assert AGREE.search(ran.stdout)
+    assert re.search(rf"^ *{name} +zeros +ones +missing +rate ", ran.stdout, re.MULTILINE)
 
 
 def test_model_is_that_of_a_hand_made_call(copied: Path) -> None:

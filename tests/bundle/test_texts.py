@@ -9,8 +9,8 @@ from pathlib import Path
 
 import pytest
 
-from etl.handoff.scripts import CHOICES, first_choice
-from etl.readiness.facts import CellCount, OutcomeReadiness, Readiness, Verdict
+from etl.handoff.scripts import CHOICES, VERDICT_ADVICE, _number, first_choice
+from etl.readiness.facts import VERDICT_RULES, CellCount, OutcomeReadiness, Readiness, Verdict
 from tests.bundle.odd_studies import ODD_STUDIES
 from tests.handoff.bundles import bundle_of, rows_of, small_study
 
@@ -111,6 +111,37 @@ def test_page_says_what_remains_to_be_decided(orchard_bundle: Path) -> None:
     for name in ("README.md", "start.R", "start.py"):
         text = (orchard_bundle / name).read_text(encoding="utf-8")
         assert [choice for choice in CHOICES if f"- {choice}" not in text] == []
+
+
+def test_page_explains_every_verdict(orchard_bundle: Path) -> None:
+    """For each verdict a row with its meaning and with what to do."""
+    page = (orchard_bundle / "README.md").read_text(encoding="utf-8")
+    rows = re.findall(r"^\| (.+?) \| (.+?) \| (.+?) \|$", page, re.MULTILINE)
+    told = {verdict: (meaning, advice) for verdict, meaning, advice in rows}
+    for verdict, meaning in VERDICT_RULES.items():
+        assert told[verdict] == (meaning, VERDICT_ADVICE[verdict])
+
+
+def test_texts_say_by_what_slopes_are_left_out(orchard_bundle: Path) -> None:
+    """The order of the ladder is one of counts, and a fit may call for another."""
+    for name in ("README.md", "start.R", "start.py"):
+        text = (orchard_bundle / name).read_text(encoding="utf-8")
+        assert "is known only after a fit, and may call for another order" in text
+
+
+def test_page_says_what_the_next_build_does(orchard_bundle: Path) -> None:
+    """Who works in the folder learns which files stop a build, and which go."""
+    page = " ".join((orchard_bundle / "README.md").read_text(encoding="utf-8").split())
+    assert "The next build of the study replaces the folder as a whole" in page
+    assert "such as `.RData` or `Rplots.pdf`" in page
+
+
+@pytest.mark.parametrize("number", [1e308, -1e308, 5e-324, 0.1, 1 / 3, -0.5, 1.0, 0.0, 2.0**60])
+def test_number_is_short_and_the_same_when_read(number: float) -> None:
+    """However large or small, a number of contrasts stands in few digits and loses none."""
+    text = _number(number)
+    assert float(text) == number
+    assert len(text) <= 24  # a sign, 17 digits, a point, an exponent
 
 
 def test_page_says_that_no_chance_counts_as_zero_where_it_does(tmp_path: Path) -> None:

@@ -35,8 +35,11 @@ label = "area"
 [trials]
 factors = ["cue", "fit", "step"]
 covariates = ["height", "age"]
-levels = { cue = ["middle", "early", "late"], fit = ["good", "bad"] }
 skip = { item = ["practice"] }
+[trials.levels]
+cue = ["middle", "early", "late"]
+fit = ["good", "bad"]
+step = ["high", "low", "mid", "top"]
 [screening.trials]
 fewest_fixations = 2
 [regions]

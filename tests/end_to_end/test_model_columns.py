@@ -24,7 +24,7 @@ from tests.end_to_end.model_study import OF_STUDY, STUDY, model_study
 
 ROOT2, ROOT20 = math.sqrt(2), math.sqrt(20)
 #: For each contrast of each factor, the columns, and the numbers of each level written by hand.
-#: The levels of cue are stated (middle, early, late), those of step found (high, low, mid, top).
+#: The levels are stated: of cue middle, early, late; of step high, low, mid, top.
 BY_HAND = {
     'cue = "treatment"': (
         "cue",
@@ -111,6 +111,14 @@ def test_numbers_stand_beside_their_factor(tmp_path: Path, without: Path, wanted
                 assert abs(number - numbers[level]) <= NEAR, (table, column, level)
 
 
+def test_treatment_of_levels_found_goes_by_their_sorted_order(tmp_path: Path) -> None:
+    """Treatment contrasts need no stated order: the first of the sorted levels is the reference."""
+    study = STUDY.replace('fit = ["good", "bad"]\n', "")
+    folder = build(model_study(tmp_path, 'contrasts = { fit = "treatment" }\n', study)).folder
+    told = pq.read_table(folder / "trials.parquet", columns=["fit", "fit_good"]).to_pydict()
+    assert set(zip(told["fit"], told["fit_good"], strict=True)) == {("bad", 0.0), ("good", 1.0)}
+
+
 @pytest.mark.parametrize("table", TABLES)
 def test_all_other_columns_are_as_without(tmp_path: Path, without: Path, table: str) -> None:
     """New columns change no other one, and no row."""
@@ -180,7 +188,7 @@ def test_factor_with_one_level_is_told(tmp_path: Path) -> None:
     study = STUDY.replace('"step"]', '"step", "text"]').replace(
         "skip = { item = [", 'skip = { trial = ["1", "3", "4"], item = ['
     )
-    result = build(model_study(tmp_path, 'contrasts = { text = "sum" }\n', study))
+    result = build(model_study(tmp_path, 'contrasts = { text = "treatment" }\n', study))
     [told] = [f for f in result.findings.of("warning") if "no contrast" in f.problem]
     assert told.problem == "the factor text has no contrast: it has only one level"
     assert told.fix == "remove it from [output] contrasts, or correct its levels"

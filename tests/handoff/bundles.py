@@ -63,16 +63,18 @@ def small_study(
     formats: str = '["parquet", "csv"]',
     output: str = "",
     title: str = "A small study",
+    region_names: Sequence[str] = (),
 ) -> Path:
     """Write a study of ten readers and twelve texts; gives its study file.
 
-    Levels go round readers and texts, each factor at its own pace. Regions are called a, b, c, …;
-    eyes go on from one to the next, leave out some and go back at random, with a fixed seed.
+    Levels go round readers and texts, each factor at its own pace. Regions are called a, b, c, …,
+    unless they are named; eyes go on from one to the next, leave out some and go back at random,
+    with a fixed seed.
     """
     draw = np.random.default_rng(20)
     header = ["who", "n", *(["text"] if items else []), *factors, "fix", "dur", "area"]
     lines = [",".join(map(quoted, header))]
-    names = [chr(ord("a") + place) for place in range(regions)]
+    names = list(region_names) or [chr(ord("a") + place) for place in range(regions)]
     for r, reader in enumerate(READERS):
         eagerness = draw.normal(0.0, 0.7)
         for i, item in enumerate(ITEMS):

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 import os
 import re
 import stat
@@ -11,6 +12,7 @@ from pathlib import Path
 import pytest
 
 import etl
+from etl.pseudonyms import signs_of
 from etl.session.pseudonym_key import KeyFile, open_key, save_key
 from tests.bad_input.small_study import SmallStudy
 from tests.end_to_end.building import build, tables_of
@@ -114,6 +116,102 @@ def test_wider_permission_is_told_and_narrowed(study: SmallStudy) -> None:
         "    fix: find out who may have read it; with the key every pseudonym can be told"
     ) in result.findings.lines()
     assert mode_of(study.folder / KEY) == 0o600
+
+
+def refuse(*_given: object) -> None:
+    """What the system says of somebody else's file."""
+    raise PermissionError(1, "Operation not permitted")
+
+
+@on_posix
+def test_permission_that_is_not_ours_to_narrow_is_told(
+    study: SmallStudy, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """A key that somebody else shares with a group is read; the build goes on."""
+    build(study.folder / "study.toml")
+    (study.folder / KEY).chmod(0o640)
+    monkeypatch.setattr(Path, "chmod", refuse)
+    ran = study.run("build", "study.toml")
+    assert ran.exit_code == 0
+    assert (
+        f"warning: {KEY}: others on this computer could read the key to the pseudonyms, and you "
+        "may not take that from them; expected a file that its owner alone may read\n"
+        "    fix: ask the owner of the file who may read it; with the key every pseudonym can be "
+        "told\n"
+    ) in ran.stdout
+    assert f"stands in {KEY}; others may read it, too." in ran.stdout
+    assert mode_of(study.folder / KEY) == 0o640
+
+
+@on_posix
+def test_key_of_somebody_else_stays_theirs(
+    study: SmallStudy, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Where a reader is added and the new file cannot be its owner's, the build is refused."""
+    build(study.folder / "study.toml")
+    before = (study.folder / KEY).read_bytes()
+    text = (study.folder / "logs/P01.tsv").read_text(encoding="utf-8")
+    study.write("logs/P00.tsv", text.replace("P01", "P00"))
+    whose = os.fstat
+
+    def somebody_else(descriptor: int) -> os.stat_result:
+        """The state of an open file, as if another user had made it."""
+        seen = whose(descriptor)
+        return os.stat_result([*seen[:4], seen.st_uid + 1, *seen[5:10]])
+
+    monkeypatch.setattr("etl.session.pseudonym_owner.os.fstat", somebody_else)
+    monkeypatch.setattr("etl.session.pseudonym_owner.os.fchown", refuse)
+    assert (
+        f"{KEY}: the key to the pseudonyms cannot be written (Operation not permitted); expected a "
+        "file of your own, in a folder in which you may write: readers or logs were added\n"
+        "    fix: let the owner of the file build the study, or see that you may write in its "
+        "folder, and close the key in other programs\n"
+    ) in study.refusal()
+    assert (study.folder / KEY).read_bytes() == before
+    assert [path.name for path in study.folder.glob(f"*{KEY}*")] == [KEY]
+
+
+@pytest.mark.parametrize("how", ["gone", "another"])
+def test_build_that_gives_other_pseudonyms_than_the_last_says_so(
+    study: SmallStudy, how: str
+) -> None:
+    """A key that was moved or mixed up is missed before the tables are handed on."""
+    build(study.folder / "study.toml")
+    (study.folder / KEY).unlink()
+    if how == "another":
+        build(study.folder / "study.toml", study.folder / "elsewhere")
+    said = study.run("build", "study.toml").stdout
+    assert (
+        f"warning: {KEY}: the last build in the output folder had another key, so every reader and "
+        "log has another pseudonym now; expected the key of the last build\n"
+        "    fix: if the key was moved, renamed or lost, put it back under this name and build "
+        "again before you hand tables on: they do not go with those handed on before\n"
+    ) in said
+    assert "another key" not in study.run("build", "study.toml").stdout
+
+
+def test_key_put_back_gives_the_first_pseudonyms_again(study: SmallStudy) -> None:
+    """What the warning advises helps."""
+    build(study.folder / "study.toml")
+    first = (study.folder / "out/outcomes.parquet").read_bytes()
+    key = (study.folder / KEY).read_bytes()
+    (study.folder / KEY).unlink()
+    build(study.folder / "study.toml")
+    assert (study.folder / "out/outcomes.parquet").read_bytes() != first
+    study.write(KEY, key)
+    build(study.folder / "study.toml")
+    assert (study.folder / "out/outcomes.parquet").read_bytes() == first
+
+
+def test_record_knows_the_key_again_and_tells_nothing_of_it(study: SmallStudy) -> None:
+    """Sixteen signs of a keyed digest; none where readers go by their ids."""
+    record = json.loads((build(study.folder / "study.toml").folder / "run.json").read_text("utf-8"))
+    key = bytes.fromhex(rows_of(study)[1][2])
+    assert record["pseudonyms_of_key"] == signs_of(key, "record", "", 16)
+    assert record["pseudonyms_of_key"][:8] != rows_of(study)[1][1]
+    study.change("study.toml", "pseudonyms = true", "pseudonyms = false")
+    record = json.loads((build(study.folder / "study.toml").folder / "run.json").read_text("utf-8"))
+    assert "pseudonyms_of_key" not in record
 
 
 @on_posix

@@ -6,6 +6,7 @@ import csv
 import json
 from pathlib import Path
 
+import openpyxl
 import pyarrow.parquet as pq
 import pytest
 
@@ -18,6 +19,7 @@ from tests.pseudonyms.named_study import (
     ELSEWHERE,
     NEVER,
     READERS,
+    STUDY,
     log_of,
     trial_list,
     write_study,
@@ -150,12 +152,91 @@ def test_record_names_no_line_of_a_list_of_readers(built: Result) -> None:
     assert spoken in built.findings.lines()
 
 
-def test_ids_in_notes_are_replaced(built: Result) -> None:
-    """The ledger repeats what the experimenter wrote, but for the ids in it."""
-    key = key_of(built)
+def test_what_notes_say_is_withheld(built: Result) -> None:
+    """The ledger has a row for each note, with its file, and nothing of what was written."""
     with (built.folder / "exclusions.csv").open(encoding="utf-8", newline="") as file:
-        told = {row["observed"] for row in csv.DictReader(file) if row["rule"] == "notes"}
-    assert told == {f"{key['Quillfeather07']} sneezed, and {key['94417']} came in"}
+        rows = [row for row in csv.DictReader(file) if row["rule"].endswith("notes")]
+    name = key_of(built)["notes_Brambleton-12.csv"]
+    assert {row["rule"] for row in rows} == {"notes", "participant_notes"}
+    assert {(row["observed"], row["limit"]) for row in rows} == {("withheld: pseudonyms", name)}
+    assert found_in(built.folder, ["sneezed", "came in", "to stop"]) == {}
+
+
+def test_console_says_once_that_reasons_of_notes_are_left_out(built: Result) -> None:
+    """Nobody wonders where the reasons are."""
+    said = [line for line in built.findings.lines() if "the reasons in the notes" in line]
+    assert len(said) == 1
+    assert said[0] == (
+        "note: notes_Brambleton-12.csv: readers go by pseudonyms, so the reasons in the notes are "
+        "left out of the output; the tables say which trials and readers have a note"
+    )
+
+
+def test_notes_that_give_no_reason_are_told_so(tmp_path: Path) -> None:
+    """An empty cell hides nothing."""
+    notes = {"notes_Brambleton-12.csv": "participant,trial,reason\nQuillfeather07,2,\n"}
+    result = build(write_study(tmp_path, notes))
+    with (result.folder / "exclusions.csv").open(encoding="utf-8", newline="") as file:
+        told = [row["observed"] for row in csv.DictReader(file) if row["rule"] == "notes"]
+    assert told == ["no reason given"]
+
+
+def test_codebook_does_not_promise_the_notes(built: Result) -> None:
+    """It says that they are left out."""
+    told = (built.folder / "codebook.md").read_text(encoding="utf-8")
+    assert "What the experimenter's notes say is left out of `observed`" in told
+    assert "as they were written" not in told
+
+
+def test_free_words_of_the_study_lose_logs_and_words_around_ids(tmp_path: Path) -> None:
+    """In the title, in skipped values, in the ledger's rows of these."""
+    text = STUDY.replace("How Quillfeather07 and others read", "R94417 in spare_Zorblax1.tsv")
+    text = text.replace('owner = ["of 94417"]', 'owner = ["spare_Zorblax1, R94417"]')
+    text = text.replace('files = ["logs', 'files = ["spare_Zorblax1.tsv", "logs')
+    trials = trial_list().replace("of 94417", '"spare_Zorblax1, R94417"')
+    changes = {
+        "study.toml": text,
+        "trial_list.csv": trials + "".join(f"Gone77,{n},late,test,all\n" for n in range(1, 5)),
+        "spare_Zorblax1.tsv": log_of("Gone77"),
+    }
+    study_file = write_study(tmp_path, changes)
+    book = openpyxl.load_workbook(tmp_path / "readers Quillfeather07.xlsx")
+    book.active.append(["Gone77", "visitor", 44, ""])
+    book.save(tmp_path / "readers Quillfeather07.xlsx")
+    result = build(study_file)
+    assert found_in(result.folder, ["Zorblax1.tsv", "spare_Zorblax1", "94417"]) == {}
+
+
+def test_words_for_nothing_and_for_remarks_are_withheld(tmp_path: Path) -> None:
+    """A reader may be left out by them, and so be known to nobody; common marks are shown."""
+    marks = (
+        'missing = ["", ".", "NA", "-9999", "Absent44", "Zephyrine"]\ncomment = ["#", "Remark33"]\n'
+    )
+    text = STUDY.replace("\n[logs.columns]", f"{marks}\n[logs.columns]", 1)
+    result = build(write_study(tmp_path, {"study.toml": text}))
+    study = record_of(result)["study"]
+    assert isinstance(study, dict)
+    hidden = "withheld: pseudonyms"
+    assert study["logs"]["missing"] == ["", ".", "NA", "-9999", hidden, hidden]
+    assert study["logs"]["comment"] == ["#", hidden]
+    assert found_in(result.folder, ["Absent44", "Zephyrine", "Remark33"]) == {}
+
+
+def test_words_of_the_program_stay_what_they_are(tmp_path: Path) -> None:
+    """A reader who is called like a key of study files does not change the record's keys."""
+    changes = {
+        "logs/regions.tsv": log_of("regions"),
+        "trial_list.csv": trial_list()
+        + "".join(f"regions,{trial},late,test,all\n" for trial in range(1, 5)),
+    }
+    text = STUDY.replace('"94417", 7', '"94417", "regions", 7')
+    study_file = write_study(tmp_path, {**changes, "study.toml": text})
+    book = openpyxl.load_workbook(tmp_path / "readers Quillfeather07.xlsx")
+    book.active.append(["regions", "visitor", 44, ""])
+    book.save(tmp_path / "readers Quillfeather07.xlsx")
+    study = record_of(build(study_file))["study"]
+    assert isinstance(study, dict)
+    assert study["regions"]["kind"] == "boxes"
 
 
 @pytest.fixture(scope="module")

@@ -143,15 +143,75 @@ def test_id_and_its_pseudonym_in_one_column_are_one_reader() -> None:
         ("logs_quillfeather07.csv", "logs_{}.csv"),
         ("QUILLFEATHER07", "{}"),
         ("Quillfeather071", None),
-        ("xQuillfeather07", None),
+        ("xQuillfeather07", "{}"),
+        ("likeQUILLFEATHER07x is", "{} is"),
         ("Quillfeather", None),
     ],
 )
 def test_distinctive_id_is_hidden_as_a_word_of_its_own(text: str, found: str | None) -> None:
-    """Letter case and what is no letter or digit around it do not matter; parts of words do."""
+    """Letter case and letters around it do not matter; another number is another id."""
     held = Pseudonyms(KEY)
     name = held.of_reader("Quillfeather07")
     assert held.hidden(text) == (text if found is None else found.format(name))
+
+
+@pytest.mark.parametrize(
+    ("reader", "text", "in_values", "in_free_text"),
+    [
+        pytest.param("Quimby", "QuimbyA", True, True, id="six letters, one behind"),
+        pytest.param("Quimby", "likeQUIMBYx", True, True, id="six letters, other case"),
+        pytest.param("Quimby", "Quimby2", True, True, id="six letters, a digit behind"),
+        pytest.param("Tina", "destination", False, True, id="four letters in a word"),
+        pytest.param("S101", "xs101y", True, True, id="four signs with digits"),
+        pytest.param("S101", "S1012", False, False, id="another number"),
+        pytest.param("P01", "P01a", False, True, id="three signs"),
+        pytest.param("P7", "P7a", False, False, id="two signs"),
+        pytest.param("48211", "R48211", False, True, id="five digits behind a letter"),
+        pytest.param("48211", "148211", False, False, id="part of a number"),
+        pytest.param("482", "R482", False, False, id="three digits"),
+    ],
+)
+def test_word_that_holds_an_id_is_replaced_as_a_whole(
+    reader: str, text: str, in_values: bool, in_free_text: bool
+) -> None:
+    """In values by long ids with a letter only, in free text by shorter ones and numbers too."""
+    held = Pseudonyms(KEY)
+    name = held.of_reader(reader)
+    assert held.hidden(f"a {text}.") == f"a {name if in_values else text}."
+    assert held.hidden_in_free_text(f"a {text}.") == f"a {name if in_free_text else text}."
+
+
+@pytest.mark.parametrize(
+    ("log", "text"),
+    [
+        ("logs/QuimbyB.tsv", "see logs/QuimbyB.tsv"),
+        ("logs/subj7xyz.tsv", "see SUBJ7xyz.tsv"),
+        ("logs/20240501_Zorblax.tsv.gz", "see 20240501_Zorblax"),
+        ("7.tsv", "see 7.tsv"),
+    ],
+)
+def test_free_text_loses_names_of_logs(log: str, text: str) -> None:
+    """With folder and ending, or without; a number is too common to be one without."""
+    held = Pseudonyms(KEY)
+    name = held.of_file(log)
+    assert held.hidden_in_free_text(text) == f"see {name}"
+    assert held.hidden_in_free_text("see 7") == "see 7"
+
+
+def test_log_that_is_called_like_its_reader_is_told_as_the_reader() -> None:
+    """A title that names a reader tells of the reader."""
+    held = Pseudonyms(KEY)
+    held.of_file("logs/Quimby.tsv")
+    name = held.of_reader("Quimby")
+    assert held.hidden_in_free_text("How Quimby read") == f"How {name} read"
+
+
+def test_pseudonym_in_which_an_id_is_by_chance_stays() -> None:
+    """The second time a text is looked at nothing of a pseudonym is replaced."""
+    held = Pseudonyms(KEY)
+    name = held.of_reader("Quimby")
+    held.of_reader(name[2:7])
+    assert held.hidden_in_free_text(name) == held.hidden(name) == name
 
 
 def test_short_id_is_hidden_only_as_it_is_written() -> None:

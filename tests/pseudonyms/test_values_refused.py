@@ -41,8 +41,14 @@ def give_fact(study: SmallStudy, values: tuple[str, ...], *, key: str = "covaria
 @pytest.mark.parametrize("key", ["factors", "covariates"])
 @pytest.mark.parametrize(
     "value",
-    ["Quillfeather07", "quillfeather07", "friend of Brambleton12", "room_95123"],
-    ids=["the id", "in other letters", "of another reader", "a number in a text"],
+    [
+        "Quillfeather07",
+        "quillfeather07",
+        "friend of Brambleton12",
+        "room_95123",
+        "likeBRAMBLETON12x",
+    ],
+    ids=["the id", "in other letters", "of another reader", "a number in a text", "in a word"],
 )
 def test_fact_that_holds_an_id_is_refused(study: SmallStudy, key: str, value: str) -> None:
     """A level or a covariate would carry the id into every table."""
@@ -57,10 +63,10 @@ def test_fact_that_holds_an_id_is_refused(study: SmallStudy, key: str, value: st
 @pytest.mark.parametrize(
     "values",
     [("tall", "95123", "8", "7"), ("9", "8", "6", "5"), ("Quillfeather071", "a", "b", "c")],
-    ids=["a number by itself", "other numbers", "within a word"],
+    ids=["a number by itself", "other numbers", "another number"],
 )
 def test_fact_that_holds_no_id_is_taken(study: SmallStudy, values: tuple[str, ...]) -> None:
-    """A number by itself is a number, and part of a word is another word."""
+    """A number by itself is a number, and a longer one is another."""
     give_fact(study, values)
     assert study.run("build", "study.toml").exit_code == 0
 
@@ -84,6 +90,44 @@ def test_readers_column_as_a_fact_is_refused(study: SmallStudy) -> None:
     """The column of the log that names the readers would be a second column of readers."""
     study.add("study.toml", '\n[trials]\ncovariates = ["reader"]\n')
     assert 'column "reader": the column reader is that of the readers\' ids' in study.refusal()
+
+
+def test_fact_that_holds_the_name_of_a_log_is_refused(study: SmallStudy) -> None:
+    """Logs have other names in the tables, too."""
+    (study.folder / "logs/7.tsv").rename(study.folder / "logs/monday_Zorblax.tsv")
+    give_fact(study, ("tall", "see monday_zorblax.tsv", "short", "tall"))
+    said = study.refusal()
+    assert said.startswith(
+        'who.csv:3: column "nickname": a value of nickname holds the name of a log, and readers go '
+        'by pseudonyms; found "see monday_zorblax.tsv"'
+    )
+
+
+@pytest.mark.parametrize("key", ["factors", "covariates"])
+@pytest.mark.parametrize("name", ["Brambleton12", "brambleton12", "isBrambleton12", "95123"])
+def test_column_that_is_called_like_a_reader_is_refused(
+    study: SmallStudy, key: str, name: str
+) -> None:
+    """Its name heads a column of every table."""
+    give_fact(study, ("tall", "short", "tall", "short"), key=key)
+    study.change("who.csv", "nickname", name)
+    study.change("study.toml", '["nickname"]', f'["{name}"]')
+    said = study.refusal()
+    assert f"trials.{key}: a column is called like a reader, and readers go by pseudonyms" in said
+    assert f'found "{name}", expected names that tell of no reader' in said
+    assert "fix: rename the column in all files in which it stands" in said
+
+
+def test_contrast_that_is_called_like_a_reader_is_refused(study: SmallStudy) -> None:
+    """Its name is part of that of a column."""
+    give_fact(study, ("tall", "short", "tall", "short"), key="factors")
+    study.add(
+        "study.toml",
+        'levels.nickname = ["tall", "short"]\n[output.contrasts.nickname]\nBrambleton12 = [0, 1]\n',
+    )
+    said = study.refusal()
+    assert "output.contrasts.nickname: a column is called like a reader" in said
+    assert 'found "Brambleton12"' in said
 
 
 def test_item_that_holds_an_id_is_refused(study: SmallStudy) -> None:

@@ -25,13 +25,12 @@ def constant(rows: Rows, outcome: str, unit: str) -> tuple[int, int, int]:
 
 
 def varies(rows: Rows, outcome: str, unit: str, factor: str) -> tuple[int, int]:
-    """In how many units with two values or more a factor has two levels or more."""
+    """In how many of the units with a value a factor has two levels or more."""
     own: dict[Any, list[str]] = {}
     for row in rows:
         if row.get(unit) is not None and row[outcome] is not None:
             own.setdefault(row[unit], []).append(row[factor])
-    able = [levels for levels in own.values() if len(levels) > 1]
-    return sum(len(set(levels)) > 1 for levels in able), len(able)
+    return sum(len(set(levels)) > 1 for levels in own.values()), len(own)
 
 
 def both_vary(rows: Rows, outcome: str, unit: str, factors: tuple[str, str]) -> tuple[int, int]:
@@ -45,8 +44,7 @@ def both_vary(rows: Rows, outcome: str, unit: str, factors: tuple[str, str]) -> 
     for row in rows:
         if row.get(unit) is not None and row[outcome] is not None:
             own.setdefault(row[unit], []).append((row[factors[0]], row[factors[1]]))
-    able = [pairs for pairs in own.values() if len(pairs) > 1]
-    return sum(_cycle(set(pairs)) for pairs in able), len(able)
+    return sum(_cycle(set(pairs)) for pairs in own.values()), len(own)
 
 
 def _cycle(edges: set[tuple[str, str]]) -> bool:

@@ -85,6 +85,7 @@ def test_variation_is_that_of_a_loop(judged: list[tuple[MadeStudy, OutcomeReadin
             else:
                 continue
             assert (own.varying, own.units) == expected
+            assert own.varying <= own.several <= own.units
             kinds = {own.units: "within", 0: "between"}
             assert own.kind == kinds.get(own.varying, "within some")
             looked_at += 1

@@ -46,12 +46,12 @@ def written(made: Readiness, tmp_path: Path) -> Path:
 def test_counts_have_a_row_for_all_and_one_for_each_condition(
     made: Readiness, written: Path
 ) -> None:
-    """The row for all comes first, names no level, and alone has the verdict."""
+    """The row for all comes first, names no level, and alone has the verdict and why."""
     rows = read(written / COUNTS)
     assert list(rows[0]) == [
         *("outcome", "region", "cue", "zeros", "ones", "missing", "rate", "rate_low", "rate_high"),
         *("state", "readers", "readers_all_zero", "readers_all_one", "items", "items_all_zero"),
-        *("items_all_one", "verdict"),
+        *("items_all_one", "verdict", "why"),
     ]
     heads = [(row["outcome"], row["region"], row["cue"], row["verdict"]) for row in rows]
     assert heads == [
@@ -66,6 +66,10 @@ def test_counts_have_a_row_for_all_and_one_for_each_condition(
     assert (int(rows[0]["zeros"]), int(rows[0]["ones"])) == (total.zeros, total.ones)
     assert float(rows[0]["rate"]) == total.ones / 400
     assert (float(rows[0]["rate_low"]), float(rows[0]["rate_high"])) == (total.low, total.high)
+    assert [row["why"] for row in rows] == [
+        *("Nothing speaks against step 1 of 5, the maximal formula.", "", ""),
+        *("All 400 values are 1: there is nothing to model.", "", ""),
+    ]
     last = rows[-1]
     assert (last["state"], last["readers_all_one"], last["items"]) == ("all 1", "20", "")
 

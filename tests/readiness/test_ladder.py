@@ -130,8 +130,8 @@ def test_factor_between_readers_has_no_slope_by_reader() -> None:
         "regression_out ~ cue * group + (1 + cue | participant) + (1 + cue + group | item)"
     )
     assert (
-        "By-reader slopes for cue are supported; for group they are not: group does not vary "
-        "within readers."
+        "The design allows by-reader slopes for cue; none for group: group does not vary within "
+        "readers."
     ) in one.sentences
 
 
@@ -166,6 +166,62 @@ def test_study_without_factors_has_intercepts() -> None:
         "regression_out ~ 1 + (1 | participant)",
     ]
     assert one.separations == ()
+
+
+LAST = "A singular fit with the variance 0 is here the same as a logistic regression without random"
+
+
+def test_last_step_with_random_effects_says_what_a_singular_fit_means() -> None:
+    """There, and nowhere else: variances of other steps can be 0 one by one."""
+    steps = ladder(20, READERS, ITEMS).steps
+    assert [LAST in step.expectation for step in steps] == [False] * 6 + [True]
+    assert LAST in ladder(20, READERS).steps[-1].expectation
+
+
+def test_one_value_an_item_leaves_a_logistic_regression() -> None:
+    """One reader with 40 items of one row each: no random effect differs from chance."""
+    rows = crossed(CUE, 1, 40)
+    one = judged(CUE, rows)
+    assert [(step.formula, step.change) for step in one.ladder] == [
+        ("regression_out ~ cue + (1 | item)", ""),
+        ("regression_out ~ cue", "without random effects"),
+    ]
+    assert (one.ladder[1].random_parameters, one.ladder[1].random_effects) == (0, 0)
+    assert one.ladder[1].expectation.endswith(
+        "; no random effect can be told from the scatter of single values: a logistic regression "
+        "(glm), not a mixed one."
+    )
+    assert (one.start, one.verdict) == (2, "sparse")
+
+
+def test_one_value_a_reader_and_an_item_leaves_a_logistic_regression() -> None:
+    """As many readers as items as values."""
+    rows = [(f"P{n}", f"i{n}", (CUE["cue"][n % 2],), int(n % 3 == 0)) for n in range(60)]
+    one = judged(CUE, rows)
+    assert [step.formula for step in one.ladder] == [
+        "regression_out ~ cue + (1 | participant) + (1 | item)",
+        "regression_out ~ cue + (1 | participant)",
+        "regression_out ~ cue",
+    ]
+    assert one.start == 3
+
+
+def test_readers_with_one_value_go_before_items_with_several() -> None:
+    """Of two groupings the one stays that can be told from chance."""
+    rows = [(f"P{n}", f"i{n % 8}", (CUE["cue"][n // 8 % 2],), int(n % 3 == 0)) for n in range(240)]
+    one = judged(CUE, rows)
+    last = one.ladder[-1]
+    assert (last.formula, last.change) == ("regression_out ~ cue + (1 | item)", "without readers")
+    assert "surer than they are" not in last.expectation
+    assert one.start == last.number
+
+
+def test_random_effects_stay_where_any_unit_has_two_values() -> None:
+    """One item with a second row is enough for a variance to be there."""
+    rows = [*crossed(CUE, 1, 40), ("P0", "i0", ("late",), 1)]
+    assert [step.formula for step in judged(CUE, rows).ladder] == [
+        "regression_out ~ cue + (1 | item)"
+    ]
 
 
 def test_one_reader_is_no_grouping() -> None:

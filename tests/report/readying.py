@@ -73,12 +73,12 @@ def steps(outcome: str, *expectations: str) -> tuple[Step, ...]:
 #: What every study of the two factors has; the second does not vary within items.
 UNITS = (UnitCount("participant", 24, 3, 0), UnitCount("item", 32, 0, 0))
 VARIATIONS = (
-    Variation(("cue",), "participant", "within", 24, 24, repeated=True),
-    Variation(("fit",), "participant", "within some", 20, 24, repeated=True),
-    Variation(("cue", "fit"), "participant", "within", 24, 24, repeated=False),
-    Variation(("cue",), "item", "within", 32, 32, repeated=True),
-    Variation(("fit",), "item", "between", 0, 32, repeated=False),
-    Variation(("cue", "fit"), "item", "between", 0, 32, repeated=False),
+    Variation(("cue",), "participant", "within", 24, 24, repeated=True, several=24),
+    Variation(("fit",), "participant", "within some", 20, 24, repeated=True, several=24),
+    Variation(("cue", "fit"), "participant", "within", 24, 24, repeated=False, several=24),
+    Variation(("cue",), "item", "within", 32, 32, repeated=True, several=32),
+    Variation(("fit",), "item", "between", 0, 32, repeated=False, several=32),
+    Variation(("cue", "fit"), "item", "between", 0, 32, repeated=False, several=32),
 )
 
 READY = OutcomeReadiness(
@@ -210,7 +210,7 @@ def named(text: str) -> Readiness:
         SEPARATED,
         region=f"{text} a",
         cells=cells,
-        variations=(Variation((text,), "participant", "within", 24, 24, repeated=True),),
+        variations=(replace(VARIATIONS[0], factors=(text,)),),
         separations=(
             Separation(effects, "complete", (f"{text} = {text} 0 has zeros only",)),
         ),

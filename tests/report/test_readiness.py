@@ -322,6 +322,19 @@ def test_study_without_factors(plain: Made) -> None:
     assert "Varying" not in fold
 
 
+def test_units_with_one_value_each_are_not_said_to_be_constant(plain: Made) -> None:
+    """Whether a factor varies within them cannot be told."""
+    single = replace(READY.variations[4], several=0)
+    page = page_with(plain, alone(replace(READY, variations=(single,))))
+    text = folded(page, "first_pass_skip, verb").text
+    assert "Varying within itemsfit cannot be told: one value each" in text
+
+
+def test_bars_are_said_to_be_alike_within_a_group_only(every: Node) -> None:
+    """Groups have columns of different widths."""
+    assert "within a group all bars have the same scale" in part(every).text
+
+
 def test_study_without_items(plain: Made) -> None:
     """Nothing is said of items."""
     page = page_with(plain, alone(without_items(READY)))
@@ -492,9 +505,12 @@ def test_every_figure_of_the_ladders_is_in_the_facts(
             assert f" {step.ones_per_parameter:.1f} " in rung.text
             assert step.change in rung.text
             each = f"{step.ones_per_parameter:.1f} "
+            # Separation is told above the formulas, once.
+            expectation = step.expectation.removesuffix(one.separated).rstrip()
+            assert "Separated:" not in rung.text
             if "Expect the same." in rung.text:
-                assert step.expectation.replace(each, "") == said
+                assert expectation.replace(each, "") == said
             else:
-                assert step.expectation in rung.text
-            said = step.expectation.replace(each, "")
+                assert expectation in rung.text
+            said = expectation.replace(each, "")
             assert ("start" in rung.attributes.get("class", "")) == (step.number == one.start)

@@ -94,6 +94,21 @@ def test_schema_and_models_agree(refusal: Callable[..., str], written: str, soun
             id="name near one",
         ),
         pytest.param(
+            "contrasts = { fit = [1e308, 0] }",
+            ": output.contrasts.fit: entry 1 of the list is 1e+308; expected 0, or a number "
+            "between a millionth and a million, or minus that\n"
+            "    fix: write numbers such as -0.5, 1 or 2",
+            id="number beyond reason",
+        ),
+        pytest.param(
+            'contrasts = { fit = { "" = [0, 1] } }',
+            ': output.contrasts.fit: a formula would need quotes around ""; found '
+            '"{ "" = [0, 1] }", expected unaccented letters and digits, with single underscores '
+            "between\n"
+            "    fix: give it another name",
+            id="name that is empty",
+        ),
+        pytest.param(
             "contrasts = { fit = [0.5, inf] }",
             ": output.contrasts.fit: entry 2 of the list is no finite number; expected a number "
             "for each level\n"
@@ -212,6 +227,16 @@ def test_numbers_need_stated_levels(refusal: Callable[..., str]) -> None:
         "study.toml:18: output.contrasts.cue: numbers belong to levels in order, and no order is "
         'stated; found "[0.5, -0.5]", expected the levels of cue in [trials] levels\n'
         "    fix: add [trials] levels = { cue = […] }, in the order of the numbers"
+    )
+
+
+def test_named_contrast_needs_stated_levels(refusal: Callable[..., str]) -> None:
+    """All but treatment go by the order of the levels: sorted as texts, a trend means nothing."""
+    study = SOUND + '[trials]\nfactors = ["cue"]\n[output]\ncontrasts.cue = "polynomial"\n'
+    assert text(refusal(study)) == (
+        "study.toml:18: output.contrasts.cue: this contrast goes by the order of the levels, and "
+        'no order is stated; found "polynomial", expected the levels of cue in [trials] levels\n'
+        "    fix: add [trials] levels = { cue = […] }, in the order that is meant"
     )
 
 
