@@ -130,7 +130,8 @@ def test_factor_without_a_value(tabled: SmallStudy) -> None:
     tabled.change("trial_list.csv", "P01,2,late", "P01,2,")
     assert tabled.refusal() == one_problem(
         'trial_list.csv:3: column "cue": the factor cue has no value; expected a level',
-        "    fix: correct the cell; trials that are no part of the study belong in [trials] skip",
+        "    fix: correct the cell, or take a word that is a level out of [logs] missing; trials "
+        "that are no part of the study belong in [trials] skip",
     )
 
 

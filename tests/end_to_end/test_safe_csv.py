@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+import json
 import re
 import shutil
 import subprocess
@@ -39,6 +40,7 @@ label = "area"
 [trials]
 factors = ["{FACTOR}"]
 covariates = ["{COVARIATE}"]
+levels = {{ "{FACTOR}" = {json.dumps(sorted(LEVELS), ensure_ascii=False)} }}
 [screening.trials]
 notes = "notes.csv"
 fewest_fixations = 2
