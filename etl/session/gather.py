@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
 
@@ -20,6 +20,7 @@ from etl.regions import RegionLibrary
 from etl.report import LineGrid, NotRecorded
 from etl.screening.ledger import columns_of_accounts
 from etl.screening.rules import OUTLIER
+from etl.session.crew import Crew, Progress
 from etl.session.kept_logs import Shelf
 from etl.session.model_columns import (
     centred_means,
@@ -38,12 +39,10 @@ from etl.session.pseudonym_guards import (
 from etl.session.reader import Options
 from etl.session.reader_tasks import Corrections, reader_tasks, texts_in
 from etl.session.trial_facts import trial_facts
-from etl.session.work import LogAnswer, LogTask, LogWork, ReaderTask, map_tasks
+from etl.session.work import LogAnswer, LogTask, LogWork, ReaderTask
 from etl.tables import CovariateColumn, IdColumn, TableDesign
 from etl.trials import IDS, KnownTrials, SeenTrials
 from etl.trials.notes import Notes
-
-Progress = Callable[[str, int, int], None]
 
 #: A number that is written with zeros before it, as only names are.
 _PADDED = re.compile(r"[+-]?0[0-9]")
@@ -88,7 +87,7 @@ def read_logs(
     logs: tuple[tuple[Path, str], ...],
     reader: LogReader,
     kept: tuple[Path, Shelf],
-    workers: int,
+    crew: Crew,
     progress: Progress,
     pseudonyms: Pseudonyms | None = None,
 ) -> list[LogAnswer]:
@@ -99,7 +98,7 @@ def read_logs(
         for number, (path, shown) in enumerate(logs)
     ]
     answers = []
-    for answer in map_tasks(LogWork, (reader, shelf, pseudonyms), tasks, workers):
+    for answer in crew.map(LogWork, (reader, shelf, pseudonyms), tasks):
         answers.append(answer)
         progress("reading logs", len(answers), len(tasks))
     return answers

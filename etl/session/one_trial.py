@@ -14,11 +14,12 @@ from etl.report.trace_page import page
 from etl.report.trace_picture import draw
 from etl.report.trace_text import as_text
 from etl.report.trace_words import Explanation, explain
-from etl.session.gather import Gathered, Progress
+from etl.session.crew import Progress, Room, silent
+from etl.session.gather import Gathered
 from etl.session.plan import Plan
 from etl.session.pseudonym_key import open_key
 from etl.session.pseudonym_record import told_study
-from etl.session.run import examine, own_faults, silent
+from etl.session.run import examine, own_faults
 from etl.session.tracing import Tracer, TrialKey
 from etl.session.work import ReaderTask, make_reader_work
 from etl.study import Study
@@ -61,8 +62,12 @@ def trace(
     findings = Findings()
     held = open_key(study, findings, needed=True)
     pseudonyms = None if held is None else held.pseudonyms
-    with tempfile.TemporaryDirectory(prefix="trialwright-") as folder, own_faults():
-        examined = examine(study, Path(folder), workers, progress, findings, held)
+    with (
+        tempfile.TemporaryDirectory(prefix="trialwright-") as folder,
+        own_faults(),
+        Room(Path(folder), workers, progress) as room,
+    ):
+        examined = examine(study, room, findings, held)
         if examined is None or findings.failed:
             raise DataError(findings)
         plan, gathered, _, _ = examined

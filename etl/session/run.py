@@ -24,8 +24,9 @@ from etl.files import file_and_sheet
 from etl.measures import REASON_MEANINGS
 from etl.parsers import reader_for
 from etl.report import AuditInput, write_audit
+from etl.session.crew import Crew, Progress, Room, silent
 from etl.session.gallery import drawn
-from etl.session.gather import Gathered, Progress, gather, read_logs
+from etl.session.gather import Gathered, gather, read_logs
 from etl.session.hand_over import describe, hand_over
 from etl.session.kept_logs import ROOM_BYTES, Shelf
 from etl.session.log_tellings import (
@@ -47,7 +48,7 @@ from etl.session.result import Result
 from etl.session.told import summary
 from etl.session.totals import Totals
 from etl.session.tracing import Tracer
-from etl.session.work import LogAnswer, make_reader_work, map_tasks
+from etl.session.work import LogAnswer, make_reader_work
 from etl.study import Study
 from etl.study.models import Logs
 from etl.tables import LEDGER, TABLES
@@ -59,10 +60,6 @@ _WORTH_WORKERS_BYTES = 50_000_000
 #: The same where lines are told by consensus: a megabyte of log holds some 15,000 fixations, whose
 #: lines take one process 5 s.
 _WORTH_WORKERS_BY_CONSENSUS_BYTES = 1_000_000
-
-
-def silent(stage: str, done: int, total: int) -> None:
-    """Show no progress."""
 
 
 def check(study: Study, *, workers: int | None = 1, progress: Progress = silent) -> Findings:
@@ -85,12 +82,16 @@ def check(study: Study, *, workers: int | None = 1, progress: Progress = silent)
     """
     findings = Findings()
     held = open_key(study, findings)
-    with tempfile.TemporaryDirectory(prefix="trialwright-") as folder, own_faults():
-        examined = examine(study, Path(folder), workers, progress, findings, held)
+    with (
+        tempfile.TemporaryDirectory(prefix="trialwright-") as folder,
+        own_faults(),
+        Room(Path(folder), workers, progress) as room,
+    ):
+        examined = examine(study, room, findings, held)
         if examined is not None:
-            plan, gathered, answers, count = examined
+            plan, gathered, answers, crew = examined
             totals = Totals(plan.limits)
-            with closing(_finish(gathered, count, progress, write=False)) as readers:
+            with closing(_finish(gathered, crew, progress, write=False)) as readers:
                 for tables in readers:
                     findings.extend(tables.findings)
                     totals.add(tables)
@@ -145,15 +146,19 @@ def build(
     findings = Findings()
     held = open_key(study, findings, target=target)
     check_target(target, shown)
-    with published(target, shown) as shop, own_faults():
-        examined = examine(study, shop.kept, workers, progress, findings, held)
+    with (
+        published(target, shown) as shop,
+        own_faults(),
+        Room(shop.kept, workers, progress) as room,
+    ):
+        examined = examine(study, room, findings, held)
         if examined is None:
             raise DataError(findings)
-        plan, gathered, answers, count = examined
+        plan, gathered, answers, crew = examined
         totals = Totals(plan.limits)
         with TableWriters(shop.fresh, gathered.design, _formats(study)) as writers:
             write = not findings.failed
-            with closing(_finish(gathered, count, progress, write=write)) as readers:
+            with closing(_finish(gathered, crew, progress, write=write)) as readers:
                 for tables in readers:
                     findings.extend(tables.findings)
                     totals.add(tables)
@@ -223,12 +228,10 @@ def _collector_at_rest() -> Iterator[None]:
 
 def examine(
     study: Study,
-    kept: Path,
-    workers: int | None,
-    progress: Progress,
+    room: Room,
     findings: Findings,
     held: KeyFile | None = None,
-) -> tuple[Plan, Gathered, list[LogAnswer], int] | None:
+) -> tuple[Plan, Gathered, list[LogAnswer], Crew] | None:
     """Everything up to the work on readers; None where that makes no sense."""
     pseudonyms = None if held is None else held.pseudonyms
     if pseudonyms is not None:
@@ -237,12 +240,12 @@ def examine(
         plan, logs = make_plan(study, findings, pseudonyms)
     by_consensus = plan is not None and plan.lines is not None and plan.lines.method == "consensus"
     worth = _WORTH_WORKERS_BY_CONSENSUS_BYTES if by_consensus else _WORTH_WORKERS_BYTES
-    count = _workers(workers, logs, worth)
+    crew = room.hire(_workers(room.workers, logs, worth))
     alone = reader_for(_logs_alone(study), study.screen, pseudonyms=pseudonyms)
     reader = plan.reader if plan is not None else alone
     # Processes of their own share nothing in memory: then everything goes to the disk.
-    aside = (kept, Shelf(ROOM_BYTES if count == 1 else 0))
-    answers = read_logs(logs, reader, aside, count, progress, pseudonyms)
+    aside = (room.folder, Shelf(ROOM_BYTES if crew.workers == 1 else 0))
+    answers = read_logs(logs, reader, aside, crew, room.progress, pseudonyms)
     told = answers
     if pseudonyms is not None:
         for answer in answers:
@@ -259,7 +262,7 @@ def examine(
     plan = under_pseudonyms(plan)
     with _collector_at_rest():
         gathered = gather(plan, answers, aside, findings)
-    return None if gathered is None else (plan, gathered, told, count)
+    return None if gathered is None else (plan, gathered, told, crew)
 
 
 def _logs_alone(study: Study) -> Logs:
@@ -272,8 +275,6 @@ def _logs_alone(study: Study) -> Logs:
 def _workers(asked: int | None, logs: Iterable[tuple[Path, str]], worth_bytes: int) -> int:
     """How many processes to use: one for logs that are smaller than is worth more."""
     if asked is not None:
-        if asked < 1:
-            raise ValueError(f"workers must be 1 or more, or None, not {asked}")
         return asked
     size = 0
     for path, _ in logs:
@@ -283,11 +284,11 @@ def _workers(asked: int | None, logs: Iterable[tuple[Path, str]], worth_bytes: i
 
 
 def _finish(
-    gathered: Gathered, workers: int, progress: Progress, *, write: bool
+    gathered: Gathered, crew: Crew, progress: Progress, *, write: bool
 ) -> Generator[ReaderTables, None, None]:
     """Work on one reader after the other."""
     arguments = (*gathered.bench(), write)
-    finished = map_tasks(make_reader_work, arguments, gathered.tasks, workers)
+    finished = crew.map(make_reader_work, arguments, gathered.tasks)
     for done, tables in enumerate(finished, start=1):
         yield tables
         progress("working on readers", done, len(gathered.tasks))

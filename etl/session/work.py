@@ -2,14 +2,8 @@
 
 from __future__ import annotations
 
-import multiprocessing
-import signal
-from collections import deque
-from collections.abc import Callable, Iterator, Sequence
-from concurrent.futures import Future, ProcessPoolExecutor
 from dataclasses import dataclass, field
 from pathlib import Path
-from typing import Any, TypeVar
 
 import numpy as np
 
@@ -27,9 +21,6 @@ from etl.session.reader import Options, Reader, ReaderTables
 from etl.session.seen import seen_trials
 from etl.tables import TableDesign
 from etl.trials import SeenTrials
-
-Task = TypeVar("Task")
-Answer = TypeVar("Answer")
 
 
 @dataclass(frozen=True, slots=True)
@@ -142,23 +133,6 @@ class ReaderWork:
         return tables
 
 
-_work: Callable[[Any], Any] | None = None
-
-
-def _begin(make: Callable[..., Callable[[Any], Any]], arguments: tuple[Any, ...]) -> None:
-    """Set up a worker process once."""
-    # An interruption from the keyboard reaches every process; the parent alone answers it.
-    signal.signal(signal.SIGINT, signal.SIG_IGN)
-    global _work  # noqa: PLW0603  (the one thing a worker process keeps between tasks)
-    _work = make(*arguments)
-
-
-def _do(task: Any) -> Any:
-    """Do one task in a worker process."""
-    assert _work is not None  # noqa: S101
-    return _work(task)
-
-
 def make_reader_work(
     design: TableDesign,
     library: RegionLibrary,
@@ -168,50 +142,3 @@ def make_reader_work(
 ) -> ReaderWork:
     """Set up the work on readers in whichever process."""
     return ReaderWork(Bench(design, library, options), shelf, write=write)
-
-
-def map_tasks(
-    make: Callable[..., Callable[[Task], Answer]],
-    arguments: tuple[Any, ...],
-    tasks: Sequence[Task],
-    workers: int,
-) -> Iterator[Answer]:
-    """Answers in the order of the tasks, from this process or from worker processes.
-
-    Parameters
-    ----------
-    make : callable
-        Gives the function that does a task, from ``arguments``; called once in each process.
-    arguments : tuple
-        What ``make`` needs; pickled once for each worker.
-    tasks : sequence
-        The tasks.
-    workers : int
-        Number of processes; 1 works in this one.
-
-    Yields
-    ------
-    answers
-        One a task. At most four tasks a worker are under way or waiting to be taken, so that
-        memory does not grow with the number of tasks.
-    """
-    if workers <= 1 or len(tasks) <= 1:
-        work = make(*arguments)
-        for task in tasks:
-            yield work(task)
-        return
-    # Workers start afresh ("spawn") on every system, as they do on Windows and macOS.
-    context = multiprocessing.get_context("spawn")
-    with ProcessPoolExecutor(
-        min(workers, len(tasks)), context, initializer=_begin, initargs=(make, arguments)
-    ) as pool:
-        waiting: deque[Future[Answer]] = deque()
-        try:
-            for task in tasks:
-                waiting.append(pool.submit(_do, task))
-                if len(waiting) >= 4 * workers:
-                    yield waiting.popleft().result()
-            while waiting:
-                yield waiting.popleft().result()
-        finally:
-            pool.shutdown(wait=True, cancel_futures=True)

@@ -14,10 +14,11 @@ from etl.cells import plain
 from etl.errors import Findings
 from etl.handoff import DATA_PACKAGE, StudyFacts, write_data_package
 from etl.session.codebook_facts import codebook_facts, write_described
+from etl.session.crew import Room, silent
 from etl.session.plan import Plan
 from etl.session.readiness import readiness_of, write_readiness
 from etl.session.region_rows import region_rows
-from etl.session.run import examine, silent
+from etl.session.run import examine
 from etl.tables import TableDesign
 
 #: What a spreadsheet would run, what looks like a mark for no value, what Markdown takes for signs.
@@ -79,8 +80,8 @@ def described(study_file: Path, into: Path) -> Described:
 def planned(study: etl.Study) -> tuple[Plan, TableDesign]:
     """A study's plan, and what its tables have in common."""
     findings = Findings()
-    with tempfile.TemporaryDirectory() as folder:
-        examined = examine(study, Path(folder), 1, silent, findings)
+    with tempfile.TemporaryDirectory() as folder, Room(Path(folder), 1, silent) as room:
+        examined = examine(study, room, findings)
     assert examined is not None, findings.text()
     return examined[0], examined[1].design
 

@@ -1,0 +1,248 @@
+"""Who does the work: this process, processes of its own, or a cluster.
+
+A stage is the function that does the tasks of one kind, with all that these have in common. It is
+made ready once in each process, from a file that all of them can read; a task names the file. So
+one crew does every stage of a build, and its processes are started once.
+"""
+
+from __future__ import annotations
+
+import contextlib
+import multiprocessing
+import pickle
+import signal
+from collections import deque
+from collections.abc import Callable, Iterable, Iterator
+from concurrent.futures import Future, ProcessPoolExecutor
+from pathlib import Path
+from types import TracebackType
+from typing import Any, Final, Protocol, TypeVar
+
+Task = TypeVar("Task")
+Answer = TypeVar("Answer")
+Make = Callable[..., Callable[[Task], Answer]]
+Progress = Callable[[str, int, int], None]
+
+#: Tasks that are under way, or done and waiting to be taken, for each worker: enough for none to
+#: be idle, few enough for memory not to grow with the number of tasks.
+_UNDER_WAY: Final = 4
+#: Stages that a process keeps ready.
+_STAGES_READY: Final = 2
+
+
+class Crew(Protocol):
+    """Does tasks, and gives the answers in the order of the tasks."""
+
+    @property
+    def workers(self) -> int:
+        """How many work side by side; 1 is this process."""
+
+    def map(
+        self, make: Make[Task, Answer], arguments: tuple[Any, ...], tasks: Iterable[Task]
+    ) -> Iterator[Answer]:
+        """Answers in the order of the tasks.
+
+        Parameters
+        ----------
+        make : callable
+            Gives the function that does a task, from ``arguments``; called once in each process.
+        arguments : tuple
+            What ``make`` needs.
+        tasks : iterable
+            The tasks, asked for as they are needed.
+
+        Yields
+        ------
+        answers
+            One a task.
+        """
+
+
+class Alone:
+    """A crew of this process, which does one task after the other."""
+
+    workers: Final = 1
+
+    def map(
+        self, make: Make[Task, Answer], arguments: tuple[Any, ...], tasks: Iterable[Task]
+    ) -> Iterator[Answer]:
+        """Answers in the order of the tasks, as in :class:`Crew`."""
+        work = make(*arguments)
+        for task in tasks:
+            yield work(task)
+
+
+class Processes:
+    """Processes of its own on this machine.
+
+    They start afresh ("spawn") on every system, as they do on Windows and macOS.
+
+    Parameters
+    ----------
+    workers : int
+        How many, 2 or more.
+    folder : Path
+        Where what stages have in common is put aside.
+    """
+
+    def __init__(self, workers: int, folder: Path) -> None:
+        self.workers = workers
+        self._stages = StageFiles(folder)
+        self._pool = ProcessPoolExecutor(
+            workers, multiprocessing.get_context("spawn"), initializer=_begin
+        )
+
+    def map(
+        self, make: Make[Task, Answer], arguments: tuple[Any, ...], tasks: Iterable[Task]
+    ) -> Iterator[Answer]:
+        """Answers in the order of the tasks, as in :class:`Crew`."""
+        stage = self._stages.put(make, arguments)
+        return in_order(
+            lambda task: self._pool.submit(do_task, stage, task), tasks, _UNDER_WAY * self.workers
+        )
+
+    def close(self) -> None:
+        """End the processes when they have done what they are at."""
+        self._pool.shutdown(wait=True, cancel_futures=True)
+
+    def __enter__(self) -> Processes:
+        return self
+
+    def __exit__(
+        self,
+        kind: type[BaseException] | None,
+        error: BaseException | None,
+        trace: TracebackType | None,
+    ) -> None:
+        self.close()
+
+
+def in_order(
+    submit: Callable[[Task], Future[Answer]], tasks: Iterable[Task], most: int
+) -> Iterator[Answer]:
+    """Answers in the order of the tasks, of which only some are under way.
+
+    Parameters
+    ----------
+    submit : callable
+        Sets a worker to a task.
+    tasks : iterable
+        The tasks.
+    most : int
+        How many may be under way, or done and waiting to be taken.
+
+    Yields
+    ------
+    answers
+        One a task. When the caller wants no more, what has not begun is called off.
+    """
+    waiting: deque[Future[Answer]] = deque()
+    try:
+        for task in tasks:
+            waiting.append(submit(task))
+            if len(waiting) >= most:
+                yield waiting.popleft().result()
+        while waiting:
+            yield waiting.popleft().result()
+    finally:
+        for future in waiting:
+            future.cancel()
+
+
+class StageFiles:
+    """What stages have in common, in files.
+
+    Parameters
+    ----------
+    folder : Path
+        Where they are; every process of the crew can read it.
+    """
+
+    def __init__(self, folder: Path) -> None:
+        self._folder = folder
+        self._number = 0
+
+    def put(self, make: Callable[..., Any], arguments: tuple[Any, ...]) -> Path:
+        """Put a stage aside."""
+        self._number += 1
+        path = self._folder / f"stage{self._number}.pickle"
+        with path.open("wb") as file:
+            pickle.dump((make, arguments), file, protocol=pickle.HIGHEST_PROTOCOL)
+        return path
+
+
+_ready: dict[Path, Callable[[Any], Any]] = {}
+
+
+def _begin() -> None:
+    """Set up a worker process once."""
+    # An interruption from the keyboard reaches every process; the parent alone answers it.
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
+
+
+def do_task(stage: Path, task: Any) -> Any:
+    """Do one task in a worker process, which makes the stage ready if it is new to it.
+
+    Parameters
+    ----------
+    stage : Path
+        From :class:`StageFiles`.
+    task : object
+        The task.
+
+    Returns
+    -------
+    object
+        The answer.
+    """
+    if stage not in _ready:
+        while len(_ready) >= _STAGES_READY:
+            del _ready[next(iter(_ready))]
+        with stage.open("rb") as file:
+            # Written by the process that started this one, into a folder of its own.
+            make, arguments = pickle.load(file)  # noqa: S301
+        _ready[stage] = make(*arguments)
+    return _ready[stage](task)
+
+
+class Room:
+    """Where a build or check works, and with whom; what it hires is let go at the end.
+
+    Parameters
+    ----------
+    folder : Path
+        For what is put aside meanwhile.
+    workers : int or None
+        How many work side by side; None finds it out from the size of the logs.
+    progress : callable
+        Called with a stage's name, how much of it is done, and how much there is.
+    """
+
+    def __init__(self, folder: Path, workers: int | None, progress: Progress) -> None:
+        if workers is not None and workers < 1:
+            raise ValueError(f"workers must be 1 or more, or None, not {workers}")
+        self.folder = folder
+        self.workers = workers
+        self.progress = progress
+        self._hired = contextlib.ExitStack()
+
+    def hire(self, workers: int) -> Crew:
+        """A crew of so many; for 1 this process alone."""
+        if workers == 1:
+            return Alone()
+        return self._hired.enter_context(Processes(workers, self.folder))
+
+    def __enter__(self) -> Room:
+        return self
+
+    def __exit__(
+        self,
+        kind: type[BaseException] | None,
+        error: BaseException | None,
+        trace: TracebackType | None,
+    ) -> None:
+        self._hired.close()
+
+
+def silent(stage: str, done: int, total: int) -> None:
+    """Show no progress."""
