@@ -11,10 +11,11 @@ from etl.handoff.regions_table import (
     region_key_columns,
     write_regions,
 )
-from etl.handoff.scripts import BundleFacts
+from etl.handoff.scripts import READ_TABLES, BundleFacts
 
 __all__ = [
     "DATA_PACKAGE",
+    "READ_TABLES",
     "BundleFacts",
     "RegionRow",
     "Rule",

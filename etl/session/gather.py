@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from collections import Counter
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
@@ -68,6 +69,8 @@ class Gathered:
         The experimenter's notes that were read.
     unrecorded : list of NotRecorded
         Trials of the trial list that no log has.
+    fixations : dict of str to int
+        How many each reader has.
     """
 
     design: TableDesign
@@ -77,6 +80,7 @@ class Gathered:
     tasks: list[ReaderTask]
     notes: list[Notes]
     unrecorded: list[NotRecorded]
+    fixations: dict[str, int]
 
     def bench(self) -> tuple[TableDesign, RegionLibrary, Options, Shelf]:
         """What the work on readers needs."""
@@ -127,7 +131,9 @@ def gather(
     """
     shown = plan.log_names
     parts: dict[str, list[tuple[Path, int, int]]] = {}
+    fixations: Counter[str] = Counter()
     for number, answer in enumerate(answers):
+        fixations.update(answer.fixations)
         for participant, batch in answer.batches.items():
             part = (kept[0] / f"{number}.arrow", batch, plan.places[number])
             parts.setdefault(participant, []).append(part)
@@ -187,7 +193,9 @@ def gather(
         else LineGrid(study.regions.layout.top_px, study.regions.layout.line_height_px),
         plan.lines,
     )
-    return Gathered(design, options, plan.library, kept[1], tasks, facts.inputs, unrecorded)
+    return Gathered(
+        design, options, plan.library, kept[1], tasks, facts.inputs, unrecorded, fixations
+    )
 
 
 def _texts(

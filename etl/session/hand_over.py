@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
 
-from etl.export.csv_copy import write_csv_copy
 from etl.export.publish import BUNDLE, RECORD
 from etl.handoff import BundleFacts, StudyFacts, write_bundle, write_data_package
 from etl.readiness.facts import Readiness
@@ -54,7 +54,13 @@ def describe(folder: Path, plan: Plan, design: TableDesign) -> Described:
     return Described(write_described(folder, plan, design), readiness)
 
 
-def hand_over(folder: Path, plan: Plan, design: TableDesign, described: Described) -> None:
+def hand_over(
+    folder: Path,
+    plan: Plan,
+    design: TableDesign,
+    described: Described,
+    csv_apart: Mapping[str, Path],
+) -> None:
     """Write the bundle and the data packages; only the run record is left to come.
 
     Parameters
@@ -67,10 +73,13 @@ def hand_over(folder: Path, plan: Plan, design: TableDesign, described: Describe
         What its tables have in common.
     described : Described
         From :func:`describe`.
+    csv_apart : mapping of str to Path
+        Tables that the study does not want as CSV and the bundle has so, and where they are; they
+        are moved into the bundle.
     """
 
     def csv_copy(table: str, into: Path) -> None:
-        write_csv_copy(folder / f"{table}.parquet", into, design.columns(table))
+        csv_apart[table].replace(into)
 
     formats = tuple(plan.study.output.formats)
     facts = BundleFacts(described.study, design, described.readiness, formats)

@@ -56,7 +56,7 @@ class Shelf:
         return self._held[path][number] if path in self._held else None
 
 
-def keep_log(log: CanonicalLog, path: Path, shelf: Shelf) -> dict[str, int]:
+def keep_log(log: CanonicalLog, path: Path, shelf: Shelf) -> tuple[dict[str, int], dict[str, int]]:
     """Put a log's fixations aside, one batch a reader.
 
     Parameters
@@ -70,12 +70,12 @@ def keep_log(log: CanonicalLog, path: Path, shelf: Shelf) -> dict[str, int]:
 
     Returns
     -------
-    dict of str to int
-        For each reader, the number of the batch that holds the fixations.
+    two dicts of str to int
+        For each reader, the number of the batch that holds the fixations, and how many these are.
     """
     if not len(log):
         # A recording of the eye that does not count: nobody will ask for it.
-        return {}
+        return {}, {}
     participant = log.ids["participant"]
     # What is known about trials is gathered apart; only which trial it is must stay with each row.
     coded = {name: column for name, column in log.ids.items() if name != "item"}
@@ -99,7 +99,9 @@ def keep_log(log: CanonicalLog, path: Path, shelf: Shelf) -> dict[str, int]:
         with pa.OSFile(str(path), "wb") as sink, pa.ipc.new_file(sink, batch.schema) as writer:
             for own in batches:
                 writer.write_batch(own)
-    return {participant.values[code]: number for number, code in enumerate(present.tolist())}
+    readers = [participant.values[code] for code in present.tolist()]
+    counts = {name: own.num_rows for name, own in zip(readers, batches, strict=True)}
+    return {name: number for number, name in enumerate(readers)}, counts
 
 
 def kept_log(

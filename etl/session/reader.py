@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -112,3 +113,17 @@ class ReaderTables:
     gaps: dict[int, tuple[int, int]] = field(default_factory=dict)
     unlisted: dict[str, Unlisted] = field(default_factory=dict)
     trust: LineTrust | None = None
+
+    def name_files(self, places: Sequence[int]) -> None:
+        """Count logs by their places among the study's.
+
+        Parameters
+        ----------
+        places : sequence of int
+            Of each log by which they are counted so far.
+        """
+        self.outside = {places[file]: own for file, own in self.outside.items()}
+        self.moved = {places[file]: own for file, own in self.moved.items()}
+        self.gaps = {places[file]: own for file, own in self.gaps.items()}
+        for found in self.unlisted.values():
+            found.file = places[found.file]

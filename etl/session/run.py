@@ -7,7 +7,7 @@ import hashlib
 import os
 import tempfile
 import time
-from collections.abc import Generator, Iterable, Iterator
+from collections.abc import Iterable, Iterator
 from concurrent.futures.process import BrokenProcessPool
 from contextlib import closing, contextmanager, suppress
 from dataclasses import replace
@@ -21,12 +21,14 @@ from etl.export.publish import check_target, published
 from etl.export.run_record import RunRecord
 from etl.export.writers import TableWriters
 from etl.files import file_and_sheet
+from etl.handoff import READ_TABLES
 from etl.measures import REASON_MEANINGS
 from etl.parsers import reader_for
 from etl.report import AuditInput, write_audit
 from etl.session.crew import Crew, Progress, Room, silent
 from etl.session.gallery import drawn
 from etl.session.gather import Gathered, gather, read_logs
+from etl.session.group_work import finish_groups
 from etl.session.hand_over import describe, hand_over
 from etl.session.kept_logs import ROOM_BYTES, Shelf
 from etl.session.log_tellings import (
@@ -43,7 +45,6 @@ from etl.session.plan import Plan, make_plan
 from etl.session.pseudonym_guards import refuse_clashes
 from etl.session.pseudonym_key import KeyFile, known_by, open_key, save_key
 from etl.session.pseudonym_record import for_record, hidden_inputs, told_study, under_pseudonyms
-from etl.session.reader import ReaderTables
 from etl.session.result import Result
 from etl.session.told import summary
 from etl.session.totals import Totals
@@ -91,10 +92,11 @@ def check(study: Study, *, workers: int | None = 1, progress: Progress = silent)
         if examined is not None:
             plan, gathered, answers, crew = examined
             totals = Totals(plan.limits)
-            with closing(_finish(gathered, crew, progress, write=False)) as readers:
-                for tables in readers:
-                    findings.extend(tables.findings)
-                    totals.add(tables)
+            with closing(finish_groups(gathered, crew, progress, {})) as groups:
+                for answer in groups:
+                    for tables in answer.readers:
+                        findings.extend(tables.findings)
+                        totals.add(tables)
             labels = plan.library.labels
             known = () if labels is None else labels.codes
             totals.notice_places(study, known, gathered.design.files, findings)
@@ -156,14 +158,17 @@ def build(
             raise DataError(findings)
         plan, gathered, answers, crew = examined
         totals = Totals(plan.limits)
-        with TableWriters(shop.fresh, gathered.design, _formats(study)) as writers:
-            write = not findings.failed
-            with closing(_finish(gathered, crew, progress, write=write)) as readers:
-                for tables in readers:
-                    findings.extend(tables.findings)
-                    totals.add(tables)
+        formats, apart = _formats(study), _csv_apart(study, shop.kept)
+        with TableWriters(shop.fresh, gathered.design, formats, apart) as writers:
+            as_csv = {name: (*formats[name], "csv") for name in apart}
+            wanted = {} if findings.failed else {**formats, **as_csv}
+            with closing(finish_groups(gathered, crew, progress, wanted)) as groups:
+                for answer in groups:
+                    for tables in answer.readers:
+                        findings.extend(tables.findings)
+                        totals.add(tables)
                     if not findings.failed:
-                        writers.add(tables.batches)
+                        writers.add(answer.parts)
             labels = plan.library.labels
             known = () if labels is None else labels.codes
             totals.notice_places(study, known, gathered.design.files, findings)
@@ -179,7 +184,7 @@ def build(
         described = describe(shop.fresh, plan, gathered.design)
         page = _audit(plan, gathered, totals, answers, findings)
         write_audit(shop.fresh, replace(page, readiness=described.readiness))
-        hand_over(shop.fresh, plan, gathered.design, described)
+        hand_over(shop.fresh, plan, gathered.design, described, apart)
         told = {**log_counts(answers), **totals.counts}
         RunRecord(
             plan.understood(),
@@ -283,17 +288,6 @@ def _workers(asked: int | None, logs: Iterable[tuple[Path, str]], worth_bytes: i
     return (os.cpu_count() or 1) if size >= worth_bytes else 1
 
 
-def _finish(
-    gathered: Gathered, crew: Crew, progress: Progress, *, write: bool
-) -> Generator[ReaderTables, None, None]:
-    """Work on one reader after the other."""
-    arguments = (*gathered.bench(), write)
-    finished = crew.map(make_reader_work, arguments, gathered.tasks)
-    for done, tables in enumerate(finished, start=1):
-        yield tables
-        progress("working on readers", done, len(gathered.tasks))
-
-
 def _audit(
     plan: Plan, gathered: Gathered, totals: Totals, answers: list[LogAnswer], findings: Findings
 ) -> AuditInput:
@@ -324,6 +318,13 @@ def _formats(study: Study) -> dict[str, tuple[str, ...]]:
     """The formats of each table; the ledger is a CSV file always."""
     formats = ("parquet", "csv") if "csv" in study.output.formats else ("parquet",)
     return {**dict.fromkeys(TABLES, formats), LEDGER: ("csv",)}
+
+
+def _csv_apart(study: Study, folder: Path) -> dict[str, Path]:
+    """Tables that the bundle has as CSV though the study does not ask for it."""
+    if "csv" in study.output.formats:
+        return {}
+    return {name: folder / f"{name}.csv" for name in READ_TABLES}
 
 
 def _inputs(plan: Plan, gathered: Gathered, answers: list[LogAnswer]) -> list[dict[str, Any]]:

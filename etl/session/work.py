@@ -38,6 +38,8 @@ class LogAnswer:
 
     note: LogNote
     batches: dict[str, int] = field(default_factory=dict)
+    #: How many fixations each reader has.
+    fixations: dict[str, int] = field(default_factory=dict)
     trials: SeenTrials | None = None
     figures: LogFigures | None = None
     findings: Findings = field(default_factory=Findings)
@@ -96,10 +98,10 @@ class LogWork:
             return LogAnswer(LogNote(task.shown), findings=findings)
         log, note = read
         trials = seen_trials(log, task.shown, findings)
-        batches = keep_log(log, task.kept, self._shelf)
+        batches, fixations = keep_log(log, task.kept, self._shelf)
         # A recording of the eye that does not count holds no fixation to compare with others.
         figures = figures_of(log, len(batches), len(trials)) if len(log) else None
-        return LogAnswer(note, batches, trials, figures, findings)
+        return LogAnswer(note, batches, fixations, trials, figures, findings)
 
 
 class ReaderWork:
@@ -111,34 +113,24 @@ class ReaderWork:
         The study's texts, tables and decisions.
     shelf : Shelf
         Where fixations may have been put aside.
-    write : bool
-        Whether rows are wanted; if not, only what is wrong with the reader's fixations.
     """
 
-    def __init__(self, bench: Bench, shelf: Shelf, *, write: bool) -> None:
+    def __init__(self, bench: Bench, shelf: Shelf) -> None:
         self._bench = bench
         self._shelf = shelf
-        self._write = write
 
-    def __call__(self, task: ReaderTask) -> ReaderTables:
-        """Finish one reader."""
+    def __call__(self, task: ReaderTask, *, page: bool = True) -> ReaderTables:
+        """Finish one reader; the summary for the audit page may be left out."""
         log, part = kept_log(task.parts, self._shelf)
         file = np.asarray(task.files, dtype=np.int32)[part]
         reader = Reader(
             task.participant, log, file, task.trials, task.note, task.hand, task.corrections
         )
-        tables = self._bench.tables(reader, page=self._write)
-        if not self._write:
-            tables.batches = {}
-        return tables
+        return self._bench.tables(reader, page=page)
 
 
 def make_reader_work(
-    design: TableDesign,
-    library: RegionLibrary,
-    options: Options,
-    shelf: Shelf,
-    write: bool = True,  # noqa: FBT001, FBT002  (handed over to processes by place)
+    design: TableDesign, library: RegionLibrary, options: Options, shelf: Shelf
 ) -> ReaderWork:
-    """Set up the work on readers in whichever process."""
-    return ReaderWork(Bench(design, library, options), shelf, write=write)
+    """Set up the work on single readers in this process."""
+    return ReaderWork(Bench(design, library, options), shelf)

@@ -14,7 +14,7 @@ import pyarrow as pa
 import pytest
 
 from etl.coding import Coding, coding_of
-from etl.export import writers
+from etl.export import parts
 from etl.export.writers import TableWriters
 from etl.readiness import Conditions, OutcomeCounts, UnitCells, outcome_readiness
 from etl.readiness.facts import OutcomeReadiness
@@ -169,8 +169,9 @@ def _value(source: random.Random, rate: float) -> int | None:
 def write_study(study: MadeStudy, folder: Path, patch: pytest.MonkeyPatch | None = None) -> None:
     """Write both tables as a build does, a batch for each reader; small row groups if patched."""
     if patch is not None:
-        patch.setattr(writers, "CELLS_A_GROUP", 60)
+        patch.setattr(parts, "CELLS_A_GROUP", 60)
     formats = {"outcomes_wide": ("parquet",), "trials": ("parquet",)}
+    maker = parts.PartMaker(study.design, formats)
     with TableWriters(folder, study.design, formats) as out:
         readers = dict.fromkeys(row["participant"] for row in study.trials)
         for reader in readers:
@@ -179,4 +180,4 @@ def write_study(study: MadeStudy, folder: Path, patch: pytest.MonkeyPatch | None
                 schema = written_schema(study.design.columns(name))
                 own = [row for row in rows if row["participant"] == reader]
                 batches[name] = pa.RecordBatch.from_pylist(own, schema=schema)
-            out.add(batches)
+            out.add(maker.parts([batches]))

@@ -1,0 +1,124 @@
+"""The work on a group of readers: kept fixations in, parts of all tables out."""
+
+from __future__ import annotations
+
+from collections import deque
+from collections.abc import Generator, Iterator, Mapping
+from dataclasses import dataclass, replace
+
+from etl.export.parts import Part, PartMaker
+from etl.regions import RegionLibrary
+from etl.session.crew import Crew, Progress
+from etl.session.gather import Gathered
+from etl.session.kept_logs import Shelf
+from etl.session.one_reader import Bench
+from etl.session.reader import Options, ReaderTables
+from etl.session.reader_groups import GroupTask, group_sizes, group_tasks, without_values
+from etl.session.work import ReaderWork
+from etl.tables import TableDesign
+
+
+@dataclass(slots=True)
+class GroupAnswer:
+    """What became of the readers of a group.
+
+    Attributes
+    ----------
+    readers : list of ReaderTables
+        What was counted and noticed, without rows.
+    parts : dict of str to Part
+        Their rows, by table; empty where rows were not wanted, or a problem was found.
+    """
+
+    readers: list[ReaderTables]
+    parts: dict[str, Part]
+
+
+class GroupWork:
+    """Finishes groups of readers.
+
+    Parameters
+    ----------
+    design : TableDesign
+        The study's tables, without the values that groups have of their own.
+    library : RegionLibrary
+        Its texts.
+    options : Options
+        Its decisions.
+    shelf : Shelf
+        Where fixations may have been put aside.
+    formats : mapping of str to tuple of str
+        For each table, the formats in which it is wanted; empty where only what is wrong is.
+    """
+
+    def __init__(
+        self,
+        design: TableDesign,
+        library: RegionLibrary,
+        options: Options,
+        shelf: Shelf,
+        formats: Mapping[str, tuple[str, ...]],
+    ) -> None:
+        self._design = design
+        self._library = library
+        self._options = options
+        self._shelf = shelf
+        self._parts = PartMaker(design, formats)
+        self._write = bool(formats)
+
+    def __call__(self, task: GroupTask) -> GroupAnswer:
+        """Finish one group."""
+        bench = Bench(task.own.design(self._design), self._library, self._options)
+        work = ReaderWork(bench, self._shelf)
+        readers = [work(reader, page=self._write) for reader in task.readers]
+        wrong = any(tables.findings.failed for tables in readers)
+        parts = {}
+        if self._write and not wrong:
+            parts = self._parts.parts([tables.batches for tables in readers])
+        return GroupAnswer([replace(tables, batches={}) for tables in readers], parts)
+
+
+def finish_groups(
+    gathered: Gathered,
+    crew: Crew,
+    progress: Progress,
+    formats: Mapping[str, tuple[str, ...]],
+) -> Generator[GroupAnswer, None, None]:
+    """Work on one group of readers after the other.
+
+    Parameters
+    ----------
+    gathered : Gathered
+        The readers.
+    crew : Crew
+        Does the work.
+    progress : callable
+        Told how many readers are done.
+    formats : mapping of str to tuple of str
+        For each table, the formats in which it is wanted; empty where only what is wrong is.
+
+    Yields
+    ------
+    GroupAnswer
+        In the order of the tables.
+    """
+    design, library, options, shelf = gathered.bench()
+    arguments = (without_values(design), library, options, shelf, formats)
+    names = [task.participant for task in gathered.tasks]
+    sizes = group_sizes(names, [gathered.fixations[name] for name in names])
+    under_way: deque[GroupTask] = deque()
+
+    def tasks() -> Iterator[GroupTask]:
+        for task in group_tasks(design, gathered.tasks, sizes):
+            under_way.append(task)
+            yield task
+
+    place = {name: number for number, name in enumerate(design.files)}
+    done = 0
+    for answer in crew.map(GroupWork, arguments, tasks()):
+        files = [place[name] for name in under_way.popleft().own.files]
+        for tables in answer.readers:
+            tables.name_files(files)
+        yield answer
+        done += len(answer.readers)
+        progress("working on readers", done, len(names))
