@@ -7,7 +7,7 @@ from pathlib import Path
 from types import TracebackType
 
 from etl.export.parquet_parts import ParquetParts
-from etl.export.parts import Part, csv_header
+from etl.export.parts import Part, PartMaker, csv_header
 from etl.tables import Column, TableDesign, schema_note
 
 
@@ -20,15 +20,20 @@ class TableWriter:
         Of the table.
     parquet, csv : Path or None
         The files; None where there is to be none.
+    empty : Part
+        A part without rows, which has the schema.
     """
 
-    def __init__(self, columns: tuple[Column, ...], parquet: Path | None, csv: Path | None) -> None:
+    def __init__(
+        self, columns: tuple[Column, ...], parquet: Path | None, csv: Path | None, empty: Part
+    ) -> None:
         self._note = schema_note(columns)
         self._parquet = None if parquet is None else ParquetParts(parquet)
         self._csv = None if csv is None else csv.open("wb")
         if self._csv is not None:
             self._csv.write(csv_header(columns))
         self.rows = 0
+        self.add(empty)
 
     def add(self, part: Part) -> None:
         """Take over some rows."""
@@ -76,11 +81,13 @@ class TableWriters:
         csv_apart: Mapping[str, Path] | None = None,
     ) -> None:
         apart = csv_apart or {}
+        empty = PartMaker(design, formats).parts([])
         self._writers = {
             name: TableWriter(
                 design.columns(name),
                 folder / f"{name}.parquet" if "parquet" in wanted else None,
                 folder / f"{name}.csv" if "csv" in wanted else apart.get(name),
+                empty[name],
             )
             for name, wanted in formats.items()
         }
