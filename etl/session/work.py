@@ -11,19 +11,18 @@ from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any, TypeVar
 
-import numpy as np
-
 from etl.errors import Findings
 from etl.export.rows import TrialColumns
 from etl.parsers import LogReader
 from etl.parsers.canonical import LogNote
 from etl.pseudonyms import Pseudonyms
 from etl.regions import RegionLibrary
-from etl.session.kept_logs import Shelf, keep_log, kept_log
+from etl.session.bench import Bench
+from etl.session.kept_logs import Shelf, keep_log
 from etl.session.lines import NO_HAND, HandLines
 from etl.session.log_figures import LogFigures, figures_of
-from etl.session.one_reader import Bench
-from etl.session.reader import Options, Reader, ReaderTables
+from etl.session.reader import Options, ReaderTables
+from etl.session.reader_group import group_of
 from etl.session.seen import seen_trials
 from etl.tables import TableDesign
 from etl.trials import SeenTrials
@@ -131,12 +130,7 @@ class ReaderWork:
 
     def __call__(self, task: ReaderTask) -> ReaderTables:
         """Finish one reader."""
-        log, part = kept_log(task.parts, self._shelf)
-        file = np.asarray(task.files, dtype=np.int32)[part]
-        reader = Reader(
-            task.participant, log, file, task.trials, task.note, task.hand, task.corrections
-        )
-        tables = self._bench.tables(reader, page=self._write)
+        (tables,) = self._bench.tables(group_of([task], self._shelf), page=self._write).one_by_one()
         if not self._write:
             tables.batches = {}
         return tables
