@@ -1,0 +1,236 @@
+"""What builds keep beside the output for the next one: parsed logs, and rows of groups of readers.
+
+Every entry is named by a digest of all that it was made from: the content of the log, the study as
+far as it matters, the program. So an entry is right or is not found; none is ever updated. Each
+also bears a digest of itself, so that half a file counts as none.
+"""
+
+from __future__ import annotations
+
+import contextlib
+import hashlib
+import importlib
+import io
+import os
+import pickle
+import tempfile
+from collections.abc import Iterable
+from dataclasses import dataclass, is_dataclass
+from pathlib import Path
+from typing import Any, Final
+
+import pyarrow as pa
+
+_MAGIC: Final = b"trialwright kept 1\n"
+_DIGEST_BYTES: Final = 32
+_LENGTH_BYTES: Final = 8
+_BEFORE: Final = len(_MAGIC) + _DIGEST_BYTES + _LENGTH_BYTES
+#: Arrow reads without copying what begins at a multiple of so many bytes.
+_ALIGNED: Final = 64
+_ENDINGS: Final = (".log", ".group")
+#: The mark by which programs that make copies know a folder that can be made again (Cache Directory
+#: Tagging Specification, https://bford.info/cachedir/).
+_TAG: Final = (
+    "CACHEDIR.TAG",
+    "Signature: 8a477f597d28d172789f06886806bc55\n"
+    "# Kept by trialwright so that the next build is quicker.\n",
+)
+_TOLD: Final = (
+    "README.txt",
+    "Parsed fixations and rows of an earlier build, kept so that the next build is quicker.\n"
+    "It is safe to delete this folder: the next build then reads all logs again.\n"
+    "It holds what the logs hold. Treat it like the logs, and do not pass it on.\n",
+)
+
+
+@dataclass(frozen=True, slots=True)
+class KeptStore:
+    """Where entries are found, and where new ones go until the build is published.
+
+    Attributes
+    ----------
+    earlier : Path
+        Entries of earlier builds; need not be there.
+    fresh : Path
+        A folder for new ones.
+    """
+
+    earlier: Path
+    fresh: Path
+
+    def find(self, name: str) -> Path | None:
+        """An entry that is there and whole.
+
+        Parameters
+        ----------
+        name : str
+            Of the entry.
+
+        Returns
+        -------
+        Path or None
+        """
+        for folder in (self.fresh, self.earlier):
+            path = folder / name
+            with contextlib.suppress(OSError):
+                if _is_whole(path):
+                    return path
+        return None
+
+    def put(self, name: str, head: object, body: pa.Buffer | None = None) -> Path:
+        """Make an entry.
+
+        Parameters
+        ----------
+        name : str
+            Of the entry.
+        head : object
+            Read back by :func:`head_of`.
+        body : pa.Buffer or None
+            Read back by :func:`body_of`.
+
+        Returns
+        -------
+        Path
+            The entry, which may have been there already.
+        """
+        path = self.fresh / name
+        data = pickle.dumps(head, protocol=pickle.HIGHEST_PROTOCOL)
+        data += bytes(-(len(data) + _BEFORE) % _ALIGNED)
+        digest = hashlib.sha256(data)
+        if body is not None:
+            digest.update(body)
+        # Two logs with the same content may be read at the same time.
+        handle, draft = tempfile.mkstemp(prefix="draft", dir=self.fresh)
+        with os.fdopen(handle, "wb") as file:
+            file.write(_MAGIC + digest.digest() + len(data).to_bytes(_LENGTH_BYTES, "little"))
+            file.write(data)
+            if body is not None:
+                file.write(body)
+        Path(draft).replace(path)
+        return path
+
+    def settle(self, used: Iterable[str]) -> None:
+        """Keep what a build has used, and nothing else.
+
+        Where the folder cannot be written, nothing is kept: the build is none the worse.
+
+        Parameters
+        ----------
+        used : iterable of str
+            Names of entries.
+        """
+        wanted = set(used)
+        with contextlib.suppress(OSError):
+            self.earlier.mkdir(mode=0o700, parents=True, exist_ok=True)
+            for name, text in (_TAG, _TOLD):
+                if not (self.earlier / name).exists():
+                    (self.earlier / name).write_text(text, encoding="utf-8", newline="\n")
+            for path in list(self.earlier.iterdir()):
+                if path.suffix in _ENDINGS and path.name not in wanted:
+                    path.unlink()
+            for path in list(self.fresh.iterdir()):
+                if path.name in wanted:
+                    path.replace(self.earlier / path.name)
+
+
+def _is_whole(path: Path) -> bool:
+    """Whether an entry is what was written."""
+    with path.open("rb") as file:
+        before = file.read(_BEFORE)
+        if len(before) < _BEFORE or not before.startswith(_MAGIC):
+            return False
+        digest = hashlib.file_digest(_Rest(file), "sha256").digest()  # type: ignore[arg-type]
+    return digest == before[len(_MAGIC) : -_LENGTH_BYTES]
+
+
+class _Rest(io.RawIOBase):
+    """A file from where it stands on."""
+
+    def __init__(self, file: io.BufferedReader) -> None:
+        super().__init__()
+        self._file = file
+
+    def readable(self) -> bool:
+        """It is."""
+        return True
+
+    def readinto(self, buffer: Any) -> int:
+        """Read some."""
+        return self._file.readinto(buffer)
+
+
+def head_of(path: Path) -> Any:
+    """What an entry says.
+
+    Parameters
+    ----------
+    path : Path
+        From :meth:`KeptStore.find` or :meth:`KeptStore.put`.
+
+    Returns
+    -------
+    object
+        As it was put.
+
+    Raises
+    ------
+    pickle.UnpicklingError
+        If it names anything but values of this program: whoever can write the folder must not be
+        able to have other code run.
+    """
+    with path.open("rb") as file:
+        length = int.from_bytes(file.read(_BEFORE)[-_LENGTH_BYTES:], "little")
+        return _Values(io.BytesIO(file.read(length))).load()
+
+
+def body_of(path: Path) -> pa.Buffer:
+    """The rest of an entry, which stays in the file.
+
+    Parameters
+    ----------
+    path : Path
+        From :meth:`KeptStore.find` or :meth:`KeptStore.put`.
+
+    Returns
+    -------
+    pa.Buffer
+        As it was put.
+    """
+    with pa.memory_map(str(path)) as file:
+        whole = file.read_buffer()
+    length = int.from_bytes(whole[_BEFORE - _LENGTH_BYTES : _BEFORE].to_pybytes(), "little")
+    return whole.slice(_BEFORE + length)
+
+
+class _Values(pickle.Unpickler):
+    """Reads values of this program, and arrays (after Python's own advice on restricting globals)."""
+
+    _NUMPY: Final = {
+        ("numpy", "dtype"),
+        ("numpy", "ndarray"),
+        ("numpy._core.multiarray", "_reconstruct"),
+        ("numpy._core.multiarray", "scalar"),
+        ("numpy._core.numeric", "_frombuffer"),
+    }
+    _OTHERS: Final = {
+        ("collections", "Counter"),
+        ("collections", "defaultdict"),
+        ("collections", "deque"),
+        ("builtins", "set"),
+        ("builtins", "frozenset"),
+        ("builtins", "bytearray"),
+        ("copyreg", "_reconstructor"),
+        ("builtins", "object"),
+    }
+
+    def find_class(self, module: str, name: str) -> Any:
+        """A type that may be there."""
+        if (module, name) in self._NUMPY | self._OTHERS or module == "pathlib":
+            return getattr(importlib.import_module(module), name)
+        if module.split(".")[0] == "etl":
+            found = getattr(importlib.import_module(module), name)
+            named = isinstance(found, type) and issubclass(found, tuple) and hasattr(found, "_fields")
+            if is_dataclass(found) or named or found.__module__ == "etl.errors":
+                return found
+        raise pickle.UnpicklingError(f"a kept entry names {module}.{name}")
