@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import Coded, group_rows, number_of
+from etl.files.packed import Packed
 from etl.measures import MEASURES, REASONS, TRIAL_MEASURES, select
 from etl.parsers import LogReader
 from etl.pseudonyms import Pseudonyms
@@ -36,9 +37,9 @@ from etl.session.pseudonym_guards import (
     refuse_ids_in_values,
 )
 from etl.session.reader import Options
-from etl.session.reader_tasks import Corrections, reader_tasks, texts_in
+from etl.session.reader_tasks import Corrections, ReaderTasks, reader_tasks, texts_in
 from etl.session.trial_facts import trial_facts
-from etl.session.work import LogAnswer, LogTask, LogWork, ReaderTask, map_tasks
+from etl.session.work import LogAnswer, LogTask, LogWork, map_tasks
 from etl.tables import CovariateColumn, IdColumn, TableDesign
 from etl.trials import IDS, KnownTrials, SeenTrials
 from etl.trials.notes import Notes
@@ -63,7 +64,7 @@ class Gathered:
         Its texts.
     shelf : Shelf
         Where fixations may have been put aside.
-    tasks : list of ReaderTask
+    tasks : ReaderTasks
         The readers, in the order of the tables.
     notes : list of Notes
         The experimenter's notes that were read.
@@ -75,7 +76,7 @@ class Gathered:
     options: Options
     library: RegionLibrary
     shelf: Shelf
-    tasks: list[ReaderTask]
+    tasks: ReaderTasks
     notes: list[Notes]
     unrecorded: list[NotRecorded]
 
@@ -132,25 +133,25 @@ def gather(
         for participant, batch in answer.batches.items():
             part = (kept[0] / f"{number}.arrow", batch, plan.places[number])
             parts.setdefault(participant, []).append(part)
-    every = [
-        replace(answer.trials, file=answer.trials.file + np.int32(plan.places[number]))
-        for number, answer in enumerate(answers)
-        if answer.trials is not None
-    ]
+    every = []
+    for number, answer in enumerate(answers):
+        if answer.trials is not None:
+            file = answer.trials.file + np.int32(plan.places[number])
+            every.append(replace(answer.trials, file=file))
+            answer.trials = None  # joined below; twice would be too much for a large study
     if not every:
         return None
     # A log that could not be read says nothing about what was not recorded.
     complete = len(every) == len(answers)
-    for answer in answers:
-        answer.trials = None  # joined below; twice would be too much for a large study
-    seen = SeenTrials.joined(every).once(shown, findings)
-    del every
+    seen = SeenTrials.joined(every)
+    every.clear()
+    seen = seen.once(shown, findings)
     trials = plan.facts.know(seen, shown, findings)
     hide_in_reasons(trials, plan.pseudonyms)
     text = _texts(plan, trials, shown, findings)
     for name in plan.supplied:
         supplied = pa.array([known.facts[name] for known in plan.library.texts], pa.string())
-        trials.known[name] = Coded.of(supplied, {""}).take(text)
+        trials.known[name] = Packed.of(Coded.of(supplied, {""})).take(text)
     good = trials.good & (trials.skipped | (text >= 0))
     refuse_ids_in_values(plan, (trials, text), shown, findings)
     refuse_ids_in_names(plan, findings)

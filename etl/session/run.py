@@ -298,7 +298,7 @@ def _audit(
 ) -> AuditInput:
     """Everything that the audit page tells of."""
     study = told_study(plan.study, plan.pseudonyms)
-    tasks = {task.participant: task for task in gathered.tasks}
+    tasks = gathered.tasks.by_name()
     tracer = Tracer(study, plan.library, gathered.design)
     return AuditInput(
         plan.understood(),

@@ -70,10 +70,13 @@ class SeenTrials:
         """
         keys = [self.ids[name] for name in IDS[:3] if name in self.ids]
         first, group = group_rows(keys)
-        own = np.arange(len(self))
-        again = np.flatnonzero(first[group] != own)
-        if again.size:
-            self._compare(again, first[group[again]], shown, findings)
+        if len(first) == len(self):
+            return self
+        again = np.ones(len(self), dtype=bool)
+        again[first] = False
+        rows = np.flatnonzero(again)
+        self._compare(rows, first[group[rows]], shown, findings)
+        del group
         return self.take(np.sort(first))
 
     def _compare(
