@@ -65,11 +65,16 @@ class Coded:
         if len(parts) == 1:
             return parts[0]
         known: dict[str, int] = {}
-        codes = []
+        codes = np.empty(sum(map(len, parts)), dtype=np.int32)
+        stop, values, new = 0, None, np.zeros(0, dtype=np.int32)
         for part in parts:
-            new = [known.setdefault(text, len(known)) for text in part.values]
-            codes.append(np.array([*new, -1], dtype=np.int32)[part.codes])
-        return cls(np.concatenate(codes), tuple(known))
+            if part.values is not values:  # columns of many logs may share one list of texts
+                values = part.values
+                found = [known.setdefault(text, len(known)) for text in values]
+                new = np.array([*found, -1], dtype=np.int32)
+            start, stop = stop, stop + len(part)
+            codes[start:stop] = new[part.codes]
+        return cls(codes, tuple(known))
 
     def __len__(self) -> int:
         return len(self.codes)

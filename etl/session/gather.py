@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
@@ -38,6 +38,7 @@ from etl.session.pseudonym_guards import (
 )
 from etl.session.reader import Options
 from etl.session.reader_tasks import Corrections, ReaderTasks, reader_tasks, texts_in
+from etl.session.seen import Sharing
 from etl.session.trial_facts import trial_facts
 from etl.session.work import LogAnswer, LogTask, LogWork, map_tasks
 from etl.tables import CovariateColumn, IdColumn, TableDesign
@@ -99,8 +100,11 @@ def read_logs(
         LogTask(path, shown, folder / f"{number}.arrow")
         for number, (path, shown) in enumerate(logs)
     ]
-    answers = []
+    answers, sharing = [], Sharing()
     for answer in map_tasks(LogWork, (reader, shelf, pseudonyms), tasks, workers):
+        answer.note = sharing.note(answer.note)
+        if answer.trials is not None:
+            answer.trials = sharing.trials(answer.trials)
         answers.append(answer)
         progress("reading logs", len(answers), len(tasks))
     return answers
@@ -133,17 +137,17 @@ def gather(
         for participant, batch in answer.batches.items():
             part = (kept[0] / f"{number}.arrow", batch, plan.places[number])
             parts.setdefault(participant, []).append(part)
-    every = []
+    every, places = [], []
     for number, answer in enumerate(answers):
         if answer.trials is not None:
-            file = answer.trials.file + np.int32(plan.places[number])
-            every.append(replace(answer.trials, file=file))
+            every.append(answer.trials)
+            places.append(plan.places[number])
             answer.trials = None  # joined below; twice would be too much for a large study
     if not every:
         return None
     # A log that could not be read says nothing about what was not recorded.
     complete = len(every) == len(answers)
-    seen = SeenTrials.joined(every)
+    seen = SeenTrials.joined(every, places)
     every.clear()
     seen = seen.once(shown, findings)
     trials = plan.facts.know(seen, shown, findings)
