@@ -11,6 +11,11 @@ import pyarrow as pa
 import pyarrow.compute as pc
 from numpy.typing import NDArray
 
+#: Keys stay below this, so that one more column never overflows them.
+_MOST_KEYS = 1 << 62
+#: Where there are no more than so many keys a row, each has a place of its own in memory.
+_ROOMY = 4
+
 
 @dataclass(frozen=True, slots=True)
 class Coded:
@@ -60,11 +65,16 @@ class Coded:
         if len(parts) == 1:
             return parts[0]
         known: dict[str, int] = {}
-        codes = []
+        codes = np.empty(sum(map(len, parts)), dtype=np.int32)
+        stop, values, new = 0, None, np.zeros(0, dtype=np.int32)
         for part in parts:
-            new = [known.setdefault(text, len(known)) for text in part.values]
-            codes.append(np.array([*new, -1], dtype=np.int32)[part.codes])
-        return cls(np.concatenate(codes), tuple(known))
+            if part.values is not values:  # columns of many logs may share one list of texts
+                values = part.values
+                found = [known.setdefault(text, len(known)) for text in values]
+                new = np.array([*found, -1], dtype=np.int32)
+            start, stop = stop, stop + len(part)
+            codes[start:stop] = new[part.codes]
+        return cls(codes, tuple(known))
 
     def __len__(self) -> int:
         return len(self.codes)
@@ -135,10 +145,25 @@ def place_rows(wanted: Sequence[Coded], table: Sequence[Coded]) -> NDArray[np.in
     known = np.ones(len(wanted[0]), dtype=bool)
     keys = np.zeros(len(wanted[0]), dtype=np.int64)
     own = np.zeros(len(table[0]), dtype=np.int64)
+    span = 1
     for ask, have in zip(wanted, table, strict=True):
         codes = ask.recoded(have.values)
         known &= codes >= 0
-        keys, own = _paired(keys, own, codes, have)
+        width = len(have.values) + 1
+        if span * width > _MOST_KEYS:
+            own, keys, span = _numbered(own, keys)
+        for place, own_codes in ((keys, codes), (own, have.codes)):
+            place *= width
+            place += own_codes
+            place += 1
+        span *= width
+    if span <= _ROOMY * (len(keys) + len(own)):
+        row_of = np.full(span, -1, dtype=np.int64)
+        # Written from behind, so that of rows alike the first is found.
+        row_of[own[::-1]] = np.arange(len(own) - 1, -1, -1)
+        rows = row_of[keys]
+        rows[~known] = -1
+        return rows
     order = np.argsort(own, kind="stable")
     at = np.searchsorted(own[order], keys)
     at = np.minimum(at, len(own) - 1)
@@ -147,16 +172,12 @@ def place_rows(wanted: Sequence[Coded], table: Sequence[Coded]) -> NDArray[np.in
     return np.where(known, rows, -1)
 
 
-def _paired(
-    keys: NDArray[np.int64], own: NDArray[np.int64], codes: NDArray[np.int32], have: Coded
-) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
-    """One more column in the keys, which are numbered anew so that they never overflow."""
-    width = len(have.values) + 1
-    keys = keys * width + codes + 1
-    own = own * width + have.codes + 1
-    distinct, place = np.unique(np.concatenate([own, keys]), return_inverse=True)
-    del distinct
-    return place[len(own) :], place[: len(own)]
+def _numbered(
+    one: NDArray[np.int64], other: NDArray[np.int64]
+) -> tuple[NDArray[np.int64], NDArray[np.int64], int]:
+    """Keys of two tables numbered anew, so that they never overflow; and how many there are."""
+    distinct, place = np.unique(np.concatenate([one, other]), return_inverse=True)
+    return place[: len(one)], place[len(one) :], len(distinct)
 
 
 def group_rows(columns: Sequence[Coded]) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
@@ -180,9 +201,23 @@ def group_rows(columns: Sequence[Coded]) -> tuple[NDArray[np.int64], NDArray[np.
     >>> first.tolist(), group.tolist()
     ([0, 1], [0, 1, 0])
     """
-    group = np.zeros(len(columns[0]), dtype=np.int64)
-    first = np.zeros(0, dtype=np.int64)
+    keys = np.zeros(len(columns[0]), dtype=np.int64)
+    span = 1
     for column in columns:
-        keys = group * (len(column.values) + 1) + column.codes + 1
+        width = len(column.values) + 1
+        if span * width > _MOST_KEYS:
+            keys, _, span = _numbered(keys, keys[:0])
+        keys *= width
+        keys += column.codes
+        keys += 1
+        span *= width
+    if span > _ROOMY * len(keys):
         _, first, group = np.unique(keys, return_index=True, return_inverse=True)
-    return first, group
+        return first, group
+    # Where nearly all combinations occur, a place for each is sooner done than sorting.
+    row_of = np.full(span, -1, dtype=np.int64)
+    row_of[keys[::-1]] = np.arange(len(keys) - 1, -1, -1)
+    there = np.flatnonzero(row_of >= 0)
+    first = row_of[there]
+    row_of[there] = np.arange(len(there))
+    return first, row_of[keys]

@@ -40,6 +40,9 @@ class BidsReader:
     reading: RowReading
     sessions: dict[Path, bool] = field(default_factory=dict)
 
+    #: Sidecars say what is in a recording.
+    reads_one_file = False
+
     def header(self, path: Path) -> tuple[str, ...]:
         """Columns of the events of the task, and entities of the recording's name."""
         name = BidsName.of(path.name)

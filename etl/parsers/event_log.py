@@ -46,6 +46,9 @@ class EventReader:
 
     reading: RowReading
 
+    #: Nothing but the log itself says what is in it.
+    reads_one_file = True
+
     def header(self, path: Path) -> tuple[str, ...]:  # noqa: ARG002 - it is the same for all logs
         """What the lines of a log can say, by the names of groups."""
         every = self._patterns().every()

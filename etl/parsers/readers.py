@@ -21,6 +21,11 @@ if TYPE_CHECKING:
 class LogReader(Protocol):
     """Reads one log after another; can be pickled, for workers of any kind."""
 
+    @property
+    def reads_one_file(self) -> bool:
+        """Whether nothing but the log itself says what is in it."""
+        ...
+
     def header(self, path: Path) -> tuple[str, ...]:
         """What a log can say about trials by name; empty where it cannot be read."""
         ...

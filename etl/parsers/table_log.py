@@ -26,6 +26,9 @@ class TableReader:
 
     reading: RowReading
 
+    #: Nothing but the log itself says what is in it.
+    reads_one_file = True
+
     def header(self, path: Path) -> tuple[str, ...]:
         """The columns of a log; empty where it cannot be read, which is told when it is read."""
         logs = self.reading.logs

@@ -109,7 +109,7 @@ def _feed_object(digest: Any, value: object) -> None:
         parts = value.name
     elif isinstance(value, re.Pattern):
         parts = (value.pattern, value.flags)
-    elif isinstance(value, type) or callable(value) and hasattr(value, "__qualname__"):
+    elif isinstance(value, type) or (callable(value) and hasattr(value, "__qualname__")):
         parts = (value.__module__, value.__qualname__)
     elif kind.__module__.split(".")[0] == "etl":
         parts = value.__getstate__()

@@ -18,6 +18,8 @@ from pathlib import Path
 from types import TracebackType
 from typing import Any, Final, Protocol, TypeVar
 
+from etl.session.kept_store import KeptStore
+
 Task = TypeVar("Task")
 Answer = TypeVar("Answer")
 Make = Callable[..., Callable[[Task], Answer]]
@@ -216,14 +218,20 @@ class Room:
         How many work side by side; None finds it out from the size of the logs.
     progress : callable
         Called with a stage's name, how much of it is done, and how much there is.
+    kept : Path or None
+        What earlier builds kept; None where nothing is kept.
     """
 
-    def __init__(self, folder: Path, workers: int | None, progress: Progress) -> None:
+    def __init__(
+        self, folder: Path, workers: int | None, progress: Progress, kept: Path | None = None
+    ) -> None:
         if workers is not None and workers < 1:
             raise ValueError(f"workers must be 1 or more, or None, not {workers}")
         self.folder = folder
         self.workers = workers
         self.progress = progress
+        self.keep = kept is not None
+        self.store = KeptStore(kept or folder / "earlier", folder)
         self._hired = contextlib.ExitStack()
 
     def hire(self, workers: int) -> Crew:

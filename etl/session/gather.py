@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 from collections import Counter
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import Coded, group_rows, number_of
+from etl.files.packed import Packed
 from etl.measures import MEASURES, REASONS, TRIAL_MEASURES, select
 from etl.parsers import LogReader
 from etl.pseudonyms import Pseudonyms
@@ -22,7 +23,7 @@ from etl.report import LineGrid, NotRecorded
 from etl.screening.ledger import columns_of_accounts
 from etl.screening.rules import OUTLIER
 from etl.session.crew import Crew, Progress
-from etl.session.kept_logs import Shelf
+from etl.session.kept_logs import Aside
 from etl.session.model_columns import (
     centred_means,
     codings_wanted,
@@ -38,9 +39,10 @@ from etl.session.pseudonym_guards import (
     refuse_ids_in_values,
 )
 from etl.session.reader import Options
-from etl.session.reader_tasks import Corrections, reader_tasks, texts_in
+from etl.session.reader_tasks import Corrections, ReaderTasks, reader_tasks, texts_in
+from etl.session.seen import Sharing
 from etl.session.trial_facts import trial_facts
-from etl.session.work import LogAnswer, LogTask, LogWork, ReaderTask
+from etl.session.work import LogAnswer, LogTask, LogWork
 from etl.tables import CovariateColumn, IdColumn, TableDesign
 from etl.trials import IDS, KnownTrials, SeenTrials
 from etl.trials.notes import Notes
@@ -61,9 +63,9 @@ class Gathered:
         Its decisions.
     library : RegionLibrary
         Its texts.
-    shelf : Shelf
-        Where fixations may have been put aside.
-    tasks : list of ReaderTask
+    aside : Aside
+        Where fixations were put aside.
+    tasks : ReaderTasks
         The readers, in the order of the tables.
     notes : list of Notes
         The experimenter's notes that were read.
@@ -76,40 +78,39 @@ class Gathered:
     design: TableDesign
     options: Options
     library: RegionLibrary
-    shelf: Shelf
-    tasks: list[ReaderTask]
+    aside: Aside
+    tasks: ReaderTasks
     notes: list[Notes]
     unrecorded: list[NotRecorded]
     fixations: dict[str, int]
 
-    def bench(self) -> tuple[TableDesign, RegionLibrary, Options, Shelf]:
+    def bench(self) -> tuple[TableDesign, RegionLibrary, Options, Aside]:
         """What the work on readers needs."""
-        return self.design, self.library, self.options, self.shelf
+        return self.design, self.library, self.options, self.aside
 
 
 def read_logs(
     logs: tuple[tuple[Path, str], ...],
     reader: LogReader,
-    kept: tuple[Path, Shelf],
+    aside: Aside,
     crew: Crew,
     progress: Progress,
     pseudonyms: Pseudonyms | None = None,
 ) -> list[LogAnswer]:
-    """Read all logs and put their fixations aside, in a folder or on a shelf."""
-    folder, shelf = kept
-    tasks = [
-        LogTask(path, shown, folder / f"{number}.arrow")
-        for number, (path, shown) in enumerate(logs)
-    ]
-    answers = []
-    for answer in crew.map(LogWork, (reader, shelf, pseudonyms), tasks):
+    """Read all logs and put their fixations aside."""
+    tasks = [LogTask(path, shown, number) for number, (path, shown) in enumerate(logs)]
+    answers, sharing = [], Sharing()
+    for answer in crew.map(LogWork, (reader, aside, pseudonyms), tasks):
+        answer.note = sharing.note(answer.note)
+        if answer.trials is not None:
+            answer.trials = sharing.trials(answer.trials)
         answers.append(answer)
         progress("reading logs", len(answers), len(tasks))
     return answers
 
 
 def gather(
-    plan: Plan, answers: list[LogAnswer], kept: tuple[Path, Shelf], findings: Findings
+    plan: Plan, answers: list[LogAnswer], aside: Aside, findings: Findings
 ) -> Gathered | None:
     """Join facts and texts to every trial that the logs show.
 
@@ -119,7 +120,7 @@ def gather(
         The study's tables and texts.
     answers : list of LogAnswer
         What each log holds, in the order of the plan's logs.
-    kept : tuple of Path and Shelf
+    aside : Aside
         Where their fixations were put aside.
     findings : Findings
         Where trials without facts or texts are recorded.
@@ -130,32 +131,32 @@ def gather(
         None where no reader is left to work on. Readers with a problem are not among the tasks.
     """
     shown = plan.log_names
-    parts: dict[str, list[tuple[Path, int, int]]] = {}
+    parts: dict[str, list[tuple[str, int, int]]] = {}
     fixations: Counter[str] = Counter()
     for number, answer in enumerate(answers):
         fixations.update(answer.fixations)
         for participant, batch in answer.batches.items():
-            part = (kept[0] / f"{number}.arrow", batch, plan.places[number])
+            part = (answer.kept, batch, plan.places[number])
             parts.setdefault(participant, []).append(part)
-    every = [
-        replace(answer.trials, file=answer.trials.file + np.int32(plan.places[number]))
-        for number, answer in enumerate(answers)
-        if answer.trials is not None
-    ]
+    every, places = [], []
+    for number, answer in enumerate(answers):
+        if answer.trials is not None:
+            every.append(answer.trials)
+            places.append(plan.places[number])
+            answer.trials = None  # joined below; twice would be too much for a large study
     if not every:
         return None
     # A log that could not be read says nothing about what was not recorded.
     complete = len(every) == len(answers)
-    for answer in answers:
-        answer.trials = None  # joined below; twice would be too much for a large study
-    seen = SeenTrials.joined(every).once(shown, findings)
-    del every
+    seen = SeenTrials.joined(every, places)
+    every.clear()
+    seen = seen.once(shown, findings)
     trials = plan.facts.know(seen, shown, findings)
     hide_in_reasons(trials, plan.pseudonyms)
     text = _texts(plan, trials, shown, findings)
     for name in plan.supplied:
         supplied = pa.array([known.facts[name] for known in plan.library.texts], pa.string())
-        trials.known[name] = Coded.of(supplied, {""}).take(text)
+        trials.known[name] = Packed.of(Coded.of(supplied, {""})).take(text)
     good = trials.good & (trials.skipped | (text >= 0))
     refuse_ids_in_values(plan, (trials, text), shown, findings)
     refuse_ids_in_names(plan, findings)
@@ -194,7 +195,7 @@ def gather(
         plan.lines,
     )
     return Gathered(
-        design, options, plan.library, kept[1], tasks, facts.inputs, unrecorded, fixations
+        design, options, plan.library, aside, tasks, facts.inputs, unrecorded, fixations
     )
 
 

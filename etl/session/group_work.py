@@ -9,9 +9,11 @@ from dataclasses import dataclass
 from etl.export.parts import Part, PartMaker
 from etl.regions import RegionLibrary
 from etl.session.bench import Bench
+from etl.session.content_digest import content_digest, program_digest
 from etl.session.crew import Crew, Progress
 from etl.session.gather import Gathered
-from etl.session.kept_logs import Shelf
+from etl.session.kept_logs import Aside
+from etl.session.kept_store import GROUP, head_of
 from etl.session.reader import Options, ReaderTables
 from etl.session.reader_group import group_of
 from etl.session.reader_groups import GroupTask, group_sizes, group_tasks, without_values
@@ -28,10 +30,13 @@ class GroupAnswer:
         What was counted and noticed, without rows.
     parts : dict of str to Part
         Their rows, by table; empty where rows were not wanted, or a problem was found.
+    kept : str
+        The entry that has this answer for later builds; empty where there is none.
     """
 
     readers: list[ReaderTables]
     parts: dict[str, Part]
+    kept: str = ""
 
 
 class GroupWork:
@@ -45,8 +50,8 @@ class GroupWork:
         Its texts.
     options : Options
         Its decisions.
-    shelf : Shelf
-        Where fixations may have been put aside.
+    aside : Aside
+        Where fixations were put aside.
     formats : mapping of str to tuple of str
         For each table, the formats in which it is wanted; empty where only what is wrong is.
     """
@@ -56,20 +61,41 @@ class GroupWork:
         design: TableDesign,
         library: RegionLibrary,
         options: Options,
-        shelf: Shelf,
+        aside: Aside,
         formats: Mapping[str, tuple[str, ...]],
     ) -> None:
         self._design = design
         self._library = library
         self._options = options
-        self._shelf = shelf
+        self._aside = aside
         self._parts = PartMaker(design, formats)
         self._write = bool(formats)
+        self._key = ""
+        if aside.keep and self._write:
+            self._key = content_digest(design, library, options, formats, program_digest())
 
     def __call__(self, task: GroupTask) -> GroupAnswer:
-        """Finish one group."""
+        """Finish one group, or find that an earlier build did."""
+        if not self._key:
+            return self._finished(task)
+        # All that the answer can hang on: what the task says, and by name what the entries hold
+        # that it names.
+        name = content_digest(task, self._key) + GROUP
+        store = self._aside.store
+        found = store.find(name)
+        if found is not None:
+            answer: GroupAnswer = head_of(found)
+        else:
+            answer = self._finished(task)
+            if any(tables.findings.failed for tables in answer.readers):
+                return answer
+            store.put(name, answer)
+        answer.kept = name
+        return answer
+
+    def _finished(self, task: GroupTask) -> GroupAnswer:
         bench = Bench(task.own.design(self._design), self._library, self._options)
-        tables = bench.tables(group_of(task.readers, self._shelf), page=self._write)
+        tables = bench.tables(group_of(task.readers, self._aside), page=self._write)
         wrong = any(reader.findings.failed for reader in tables.readers)
         parts = self._parts.parts([tables.batches]) if self._write and not wrong else {}
         return GroupAnswer(tables.readers, parts)
@@ -99,9 +125,9 @@ def finish_groups(
     GroupAnswer
         In the order of the tables.
     """
-    design, library, options, shelf = gathered.bench()
-    arguments = (without_values(design), library, options, shelf, formats)
-    names = [task.participant for task in gathered.tasks]
+    design, library, options, aside = gathered.bench()
+    arguments = (without_values(design), library, options, aside, formats)
+    names = gathered.tasks.participants
     sizes = group_sizes(names, [gathered.fixations[name] for name in names])
     under_way: deque[GroupTask] = deque()
 

@@ -10,7 +10,7 @@ from __future__ import annotations
 
 import json
 from collections.abc import Sequence
-from pathlib import Path
+from dataclasses import dataclass
 
 import numpy as np
 import pyarrow as pa
@@ -18,6 +18,7 @@ from numpy.typing import NDArray
 
 from etl.files import Coded
 from etl.parsers import CanonicalLog
+from etl.session.kept_store import KeptStore, body_of
 
 _PLAIN = (
     *("onset_ms", "number", "duration_ms", "x_px", "y_px", "source_line", "blink"),
@@ -30,7 +31,7 @@ ROOM_BYTES = 64 * 1024 * 1024
 
 
 class Shelf:
-    """Batches that are kept in memory, up to a limit; workers of their own share an empty one.
+    """Batches that are kept in memory, up to a limit.
 
     Parameters
     ----------
@@ -40,42 +41,78 @@ class Shelf:
 
     def __init__(self, room_bytes: int = 0) -> None:
         self._room = room_bytes
-        self._held: dict[Path, list[pa.RecordBatch]] = {}
+        self._held: dict[str, list[pa.RecordBatch]] = {}
 
-    def put(self, path: Path, batches: list[pa.RecordBatch]) -> bool:
+    def put(self, name: str, batches: list[pa.RecordBatch]) -> bool:
         """Hold the batches of a log, if there is room for them."""
         size = sum(batch.nbytes for batch in batches)
         if size > self._room:
             return False
         self._room -= size
-        self._held[path] = batches
+        self._held[name] = batches
         return True
 
-    def get(self, path: Path, number: int) -> pa.RecordBatch | None:
+    def get(self, name: str, number: int) -> pa.RecordBatch | None:
         """A batch that is held; None for one on the disk."""
-        return self._held[path][number] if path in self._held else None
+        return self._held[name][number] if name in self._held else None
 
 
-def keep_log(log: CanonicalLog, path: Path, shelf: Shelf) -> tuple[dict[str, int], dict[str, int]]:
-    """Put a log's fixations aside, one batch a reader.
+@dataclass(frozen=True, slots=True)
+class Aside:
+    """Where fixations are put aside.
+
+    Attributes
+    ----------
+    store : KeptStore
+        The files.
+    keep : bool
+        Whether the files are to serve later builds too.
+    shelf : Shelf
+        Where one process does all the work, and no later build is to be served, takes what fits.
+    """
+
+    store: KeptStore
+    keep: bool
+    shelf: Shelf
+
+    def put(self, name: str, head: object, batches: list[pa.RecordBatch]) -> None:
+        """Put the batches of a log aside."""
+        if not self.keep and self.shelf.put(name, batches):
+            return
+        body = None
+        if batches:
+            sink = pa.BufferOutputStream()
+            with pa.ipc.new_file(sink, batches[0].schema) as writer:
+                for own in batches:
+                    writer.write_batch(own)
+            body = sink.getvalue()
+        self.store.put(name, head, body)
+
+    def get(self, name: str, number: int) -> pa.RecordBatch:
+        """A batch that was put aside."""
+        held = self.shelf.get(name, number)
+        if held is not None:
+            return held
+        with pa.ipc.open_file(body_of(self.store.where(name))) as reader:
+            return reader.get_batch(number)
+
+
+def batches_of(log: CanonicalLog) -> tuple[list[pa.RecordBatch], list[str]]:
+    """A log's fixations, one batch a reader.
 
     Parameters
     ----------
     log : CanonicalLog
         The fixations of one log.
-    path : Path
-        The file to write, where the shelf has no room.
-    shelf : Shelf
-        Takes them, if it has.
 
     Returns
     -------
-    two dicts of str to int
-        For each reader, the number of the batch that holds the fixations, and how many these are.
+    list of pa.RecordBatch and list of str
+        The batches, and the reader of each.
     """
     if not len(log):
         # A recording of the eye that does not count: nobody will ask for it.
-        return {}, {}
+        return [], []
     participant = log.ids["participant"]
     # What is known about trials is gathered apart; only which trial it is must stay with each row.
     coded = {name: column for name, column in log.ids.items() if name != "item"}
@@ -95,43 +132,49 @@ def keep_log(log: CanonicalLog, path: Path, shelf: Shelf) -> tuple[dict[str, int
         batch.slice(start, stop - start)
         for start, stop in zip(starts.tolist(), stops.tolist(), strict=True)
     ]
-    if not shelf.put(path, batches):
-        with pa.OSFile(str(path), "wb") as sink, pa.ipc.new_file(sink, batch.schema) as writer:
-            for own in batches:
-                writer.write_batch(own)
-    readers = [participant.values[code] for code in present.tolist()]
-    counts = {name: own.num_rows for name, own in zip(readers, batches, strict=True)}
-    return {name: number for number, name in enumerate(readers)}, counts
+    return batches, [participant.values[code] for code in present.tolist()]
+
+
+def arrays_of(log: CanonicalLog) -> dict[str, object]:
+    """What of a log is put aside.
+
+    Parameters
+    ----------
+    log : CanonicalLog
+        The fixations of one log.
+
+    Returns
+    -------
+    dict of str to object
+        For a digest of it.
+    """
+    return {"ids": log.ids, "label": log.label, **{name: getattr(log, name) for name in _PLAIN}}
 
 
 def kept_log(
-    parts: Sequence[tuple[Path, int]], shelf: Shelf
+    parts: Sequence[tuple[str, int]], aside: Aside
 ) -> tuple[CanonicalLog, NDArray[np.int32]]:
     """Take back the fixations of one reader.
 
     Parameters
     ----------
-    parts : sequence of (Path, int)
-        File and batch, in the order of the logs.
-    shelf : Shelf
-        May hold them.
+    parts : sequence of (str, int)
+        Entry and batch, in the order of the logs.
+    aside : Aside
+        Where they are.
 
     Returns
     -------
     CanonicalLog and (n,) int32 array
         The fixations, and which part each is from.
     """
-    logs = [_one(path, batch, shelf) for path, batch in parts]
+    logs = [_one(aside.get(name, batch)) for name, batch in parts]
     file = np.repeat(np.arange(len(logs), dtype=np.int32), [len(log) for log in logs])
     return (logs[0] if len(logs) == 1 else _joined(logs)), file
 
 
-def _one(path: Path, number: int, shelf: Shelf) -> CanonicalLog:
+def _one(batch: pa.RecordBatch) -> CanonicalLog:
     """One reader's fixations of one log."""
-    batch = shelf.get(path, number)
-    if batch is None:
-        with pa.OSFile(str(path), "rb") as source, pa.ipc.open_file(source) as reader:
-            batch = reader.get_batch(number)
     values = json.loads(batch.schema.metadata[b"values"])
     arrays = {
         name: column.to_numpy(zero_copy_only=False)

@@ -27,20 +27,19 @@ _LENGTH_BYTES: Final = 8
 _BEFORE: Final = len(_MAGIC) + _DIGEST_BYTES + _LENGTH_BYTES
 #: Arrow reads without copying what begins at a multiple of so many bytes.
 _ALIGNED: Final = 64
-_ENDINGS: Final = (".log", ".group")
+#: Entries of logs, and of groups of readers.
+LOG, GROUP = ".log", ".group"
 #: The mark by which programs that make copies know a folder that can be made again (Cache Directory
 #: Tagging Specification, https://bford.info/cachedir/).
-_TAG: Final = (
-    "CACHEDIR.TAG",
-    "Signature: 8a477f597d28d172789f06886806bc55\n"
-    "# Kept by trialwright so that the next build is quicker.\n",
-)
-_TOLD: Final = (
-    "README.txt",
-    "Parsed fixations and rows of an earlier build, kept so that the next build is quicker.\n"
-    "It is safe to delete this folder: the next build then reads all logs again.\n"
-    "It holds what the logs hold. Treat it like the logs, and do not pass it on.\n",
-)
+_TAG: Final = """\
+Signature: 8a477f597d28d172789f06886806bc55
+# Kept by trialwright so that the next build is quicker.
+"""
+_TOLD: Final = """\
+Parsed fixations and rows of an earlier build, kept so that the next build is quicker.
+It is safe to delete this folder: the next build then reads all logs again.
+It holds what the logs hold. Treat it like the logs, and do not pass it on.
+"""
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,6 +75,21 @@ class KeptStore:
                 if _is_whole(path):
                     return path
         return None
+
+    def where(self, name: str) -> Path:
+        """Where an entry is that this build has found or made.
+
+        Parameters
+        ----------
+        name : str
+            Of the entry.
+
+        Returns
+        -------
+        Path
+        """
+        fresh = self.fresh / name
+        return fresh if fresh.exists() else self.earlier / name
 
     def put(self, name: str, head: object, body: pa.Buffer | None = None) -> Path:
         """Make an entry.
@@ -123,11 +137,11 @@ class KeptStore:
         wanted = set(used)
         with contextlib.suppress(OSError):
             self.earlier.mkdir(mode=0o700, parents=True, exist_ok=True)
-            for name, text in (_TAG, _TOLD):
+            for name, text in (("CACHEDIR.TAG", _TAG), ("README.txt", _TOLD)):
                 if not (self.earlier / name).exists():
                     (self.earlier / name).write_text(text, encoding="utf-8", newline="\n")
             for path in list(self.earlier.iterdir()):
-                if path.suffix in _ENDINGS and path.name not in wanted:
+                if path.suffix in (LOG, GROUP) and path.name not in wanted:
                     path.unlink()
             for path in list(self.fresh.iterdir()):
                 if path.name in wanted:
@@ -140,7 +154,7 @@ def _is_whole(path: Path) -> bool:
         before = file.read(_BEFORE)
         if len(before) < _BEFORE or not before.startswith(_MAGIC):
             return False
-        digest = hashlib.file_digest(_Rest(file), "sha256").digest()  # type: ignore[arg-type]
+        digest = hashlib.file_digest(_Rest(file), "sha256").digest()
     return digest == before[len(_MAGIC) : -_LENGTH_BYTES]
 
 
@@ -204,7 +218,7 @@ def body_of(path: Path) -> pa.Buffer:
 
 
 class _Values(pickle.Unpickler):
-    """Reads values of this program, and arrays (after Python's own advice on restricting globals)."""
+    """Reads values of this program, and arrays, as Python's documentation of pickle advises."""
 
     _NUMPY: Final = {
         ("numpy", "dtype"),
@@ -228,9 +242,11 @@ class _Values(pickle.Unpickler):
         """A type that may be there."""
         if (module, name) in self._NUMPY | self._OTHERS or module == "pathlib":
             return getattr(importlib.import_module(module), name)
-        if module.split(".")[0] == "etl":
+        if module.split(".", maxsplit=1)[0] == "etl":
             found = getattr(importlib.import_module(module), name)
-            named = isinstance(found, type) and issubclass(found, tuple) and hasattr(found, "_fields")
+            named = (
+                isinstance(found, type) and issubclass(found, tuple) and hasattr(found, "_fields")
+            )
             if is_dataclass(found) or named or found.__module__ == "etl.errors":
                 return found
         raise pickle.UnpicklingError(f"a kept entry names {module}.{name}")

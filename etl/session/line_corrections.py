@@ -12,13 +12,13 @@ from numpy.typing import NDArray
 from etl.cells import plain_array
 from etl.errors import Findings
 from etl.files import Cells, Coded, marks_of, number_of, read_table
+from etl.files.packed import Narrow, RowTexts
 from etl.session.lines import HandLines
 from etl.trials import IDS
 from etl.trials.facts import shown_path
 from etl.trials.labels import labels_of, without_prefix
 
 if TYPE_CHECKING:
-    from etl.export.rows import TrialColumns
     from etl.study import Study
     from etl.tables import TableDesign
 
@@ -205,7 +205,7 @@ def _spelled(table: LineCorrections, row: int) -> str:
 
 def match_corrections(
     table: LineCorrections,
-    columns: TrialColumns,
+    trials: tuple[Mapping[str, Narrow], RowTexts],
     design: TableDesign,
     findings: Findings,
     *,
@@ -217,8 +217,9 @@ def match_corrections(
     ----------
     table : LineCorrections
         As read.
-    columns : TrialColumns
-        All trials of the study, each once.
+    trials : tuple of mapping of str to (trials,) array of whole numbers, and RowTexts
+        All trials of the study, each once: the places of their ids among the design's values, and
+        why each is no part of the study.
     design : TableDesign
         The values of the ids.
     findings : Findings
@@ -229,13 +230,17 @@ def match_corrections(
     Returns
     -------
     dict of int to (k,) int64 array
-        The rows of the table that are about each trial, by the trial's place among ``columns``.
+        The rows of the table that are about each trial, by the trial's place among all.
     """
+    ids, skipped_by = trials
     names = [name for name in ("participant", "session", "trial") if name in design.ids]
     given = [name for name in names if name in table.ids]
     places: dict[tuple[str, ...], list[int]] = {}
-    for trial in range(len(columns)):
-        key = tuple([design.ids[name].values[int(columns.ids[name][trial])] for name in given])
+    # Only the readers whom the table names are looked through: there may be very many others.
+    named = np.unique(table.ids["participant"].recoded(design.ids["participant"].values))
+    of_named = np.isin(ids["participant"], named)
+    for trial in np.flatnonzero(of_named).tolist():
+        key = tuple([design.ids[name].values[int(ids[name][trial])] for name in given])
         places.setdefault(key, []).append(trial)
     found: dict[int, list[int]] = {}
     for row in range(len(table.fixation)):
@@ -246,7 +251,7 @@ def match_corrections(
             _tell_unmatched(table, row, design, findings, several=len(fits) > 1)
     for trial, rows in found.items():
         _tell_repeats(table, rows, findings)
-        if columns.skipped_by[trial]:
+        if skipped_by[trial]:
             findings.note(
                 "lines are set in a trial that is no part of the study, which changes nothing",
                 path=table.shown,
@@ -275,7 +280,7 @@ def _tell_unmatched(
 
 
 def hand_lines(
-    table: LineCorrections, of_trials: Mapping[int, NDArray[np.int64]], order: NDArray[np.int64]
+    table: LineCorrections, of_trials: Mapping[int, NDArray[np.int64]], trials: range
 ) -> HandLines:
     """The corrections of one reader.
 
@@ -285,14 +290,14 @@ def hand_lines(
         As read.
     of_trials : mapping of int to (k,) int64 array
         From :func:`match_corrections`.
-    order : (trials,) int64 array
+    trials : range
         The reader's trials, as places among all trials, in the order of the tables.
 
     Returns
     -------
     HandLines
     """
-    own = [(at, of_trials[t]) for at, t in enumerate(order.tolist()) if t in of_trials]
+    own = [(at, of_trials[t]) for at, t in enumerate(trials) if t in of_trials]
     none = np.zeros(0, dtype=np.int64)
     rows = np.concatenate([none, *(rows for _, rows in own)])
     trial = np.concatenate([none, *(np.full(len(rows), at) for at, rows in own)])

@@ -138,7 +138,8 @@ def notice_what_is_missing(
                 line=int(book.trial_list.lines[row]),
                 found=book.trial_list.spelled(row),
             )
-            ids = {n: c.text(row) for n, c in book.trial_list.columns.items() if n in IDS}
+            listed = book.trial_list
+            ids = {name: listed.text(name, row) for name in IDS if name in listed.columns}
             unrecorded.append(NotRecorded(ids["participant"], ids["trial"], ids.get("session", "")))
         unrecorded = in_order_of_readers(unrecorded, plan.pseudonyms)
     if book.participants is not None:

@@ -71,16 +71,15 @@ def _look(
     if len(values) > len(np.unique(readers.codes)) + len(column) // 4:
         return  # a fact of its own for nearly every trial has no levels
     known = {_plain(mark): mark for mark in marks}
-    whom = {value: np.unique(readers.codes[in_study & column.among([value])]) for value in values}
-    everybody = len(np.unique(readers.codes[in_study]))
-    for value in sorted(values, key=lambda value: -len(whom[value])):
-        row = int(np.flatnonzero(in_study & column.among([value]))[0])
+    whom, first, everybody = _with_whom(column, readers, in_study)
+    for value in sorted(values, key=lambda value: -whom[value]):
+        row = first[value]
         other = known.setdefault(_plain(value), value)
         problem = ""
         if other != value:
             problem = "differs from another one in spelling only"
-        elif len(whom[value]) == 1 and everybody >= _FEWEST_READERS:
-            others = [v for v in values if v != value and len(whom[v]) > 1]
+        elif whom[value] == 1 and everybody >= _FEWEST_READERS:
+            others = [v for v in values if v != value and whom[v] > 1]
             near = get_close_matches(value, [*others, *marks], n=1, cutoff=_ALIKE)
             problem = "occurs with one reader only" if near or len(others) > 1 else ""
             other = near[0] if near else ""
@@ -94,6 +93,26 @@ def _look(
                 fix=f"correct it where {name} stands"
                 + ("" if marks else "; if it is right, list it in [trials] levels"),
             )
+
+
+def _with_whom(
+    column: Coded, readers: Coded, rows: NDArray[np.bool_]
+) -> tuple[dict[str, int], dict[str, int], int]:
+    """How many readers have each text, in which row it comes first, and how many readers are."""
+    there = np.flatnonzero(rows)
+    owner = readers.codes[there]
+    there = there[column.codes[there] >= 0]
+    pair = column.codes[there].astype(np.int64) * (len(readers.values) + 1)
+    distinct, first = np.unique(pair + readers.codes[there], return_index=True)
+    code = distinct // (len(readers.values) + 1)
+    present, starts, counts = np.unique(code, return_index=True, return_counts=True)
+    rows_of = there[np.minimum.reduceat(first, starts)] if len(starts) else there[:0]
+    texts = [column.values[one] for one in present.tolist()]
+    return (
+        dict(zip(texts, counts.tolist(), strict=True)),
+        dict(zip(texts, rows_of.tolist(), strict=True)),
+        len(np.unique(owner)),
+    )
 
 
 def _values(column: Coded, rows: NDArray[np.bool_]) -> list[str]:

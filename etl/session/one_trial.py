@@ -195,10 +195,10 @@ def tracer_of(plan: Plan, gathered: Gathered) -> Tracer:
 def _task(gathered: Gathered, participant: str, pseudonyms: Pseudonyms | None) -> ReaderTask:
     """The work on one reader, who may be named by id or by pseudonym."""
     meant = participant if pseudonyms is None else pseudonyms.of_either(participant)
-    for task in gathered.tasks:
-        if task.participant == meant:
-            return task
-    readers = [task.participant for task in gathered.tasks]
+    tasks = gathered.tasks.by_name()
+    if meant in tasks:
+        return tasks[meant]
+    readers = list(tasks)
     if pseudonyms is not None:
         readers = [pseudonyms.originals[reader] for reader in readers]
     near = get_close_matches(participant, readers, n=1, cutoff=0.5)

@@ -72,11 +72,18 @@ def hide_in_reasons(trials: KnownTrials, pseudonyms: Pseudonyms | None) -> None:
         return
     readers = trials.seen.ids["participant"]
     hidden = lru_cache(None)(pseudonyms.hidden_in_free_text)
-    for row in np.flatnonzero(trials.skipped).tolist():
+    rows = np.flatnonzero(trials.skipped)
+    # A reader's own id may be the value, so each reason is looked at once for each reader.
+    reason = trials.skipped_by.codes[rows].astype(np.int64)
+    pair = reason * (len(readers.values) + 1) + readers.codes[rows]
+    _, first, which = np.unique(pair, return_index=True, return_inverse=True)
+    texts = []
+    for row in rows[first].tolist():
         name, _, value = trials.skipped_by[row].partition(" = ")
         own = readers.text(row)
         same = value == pseudonyms.originals.get(own)
-        trials.skipped_by[row] = f"{pseudonyms.hidden(name)} = {own if same else hidden(value)}"
+        texts.append(f"{pseudonyms.hidden(name)} = {own if same else hidden(value)}")
+    trials.skipped_by.put(rows, texts, which)
 
 
 def refuse_ids_in_values(
@@ -185,8 +192,9 @@ def _are_the_readers(
     """Whether a column says of each trial who read it: by id, or by the number in the id."""
     readers = trials.seen.ids["participant"]
     said_of = rows & (column.codes >= 0)
-    pairs = np.unique(np.stack([column.codes, readers.codes])[:, said_of], axis=1)
-    said = [(column.values[v], readers.values[r]) for v, r in pairs.T.tolist()]
+    width = max(len(readers.values), 1)
+    pairs = np.unique(column.codes[said_of].astype(np.int64) * width + readers.codes[said_of])
+    said = [(column.values[v // width], readers.values[v % width]) for v in pairs.tolist()]
     if any(value == reader for value, reader in said):
         return True
     if len({reader for _, reader in said}) < _FEWEST_READERS:

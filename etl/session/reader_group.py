@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from etl.export.rows import TrialColumns
 from etl.files import Coded
 from etl.parsers import CanonicalLog
-from etl.session.kept_logs import Shelf, kept_log
+from etl.session.kept_logs import Aside, kept_log
 from etl.session.lines import NO_HAND, HandLines
 from etl.session.reader import ReaderGroup, starts_of
 
@@ -21,15 +21,15 @@ if TYPE_CHECKING:
 _PLAIN = ("onset_ms", "number", "duration_ms", "x_px", "y_px", "source_line", "blink", "recording")
 
 
-def group_of(tasks: Sequence[ReaderTask], shelf: Shelf) -> ReaderGroup:
+def group_of(tasks: Sequence[ReaderTask], aside: Aside) -> ReaderGroup:
     """Take back the fixations of some readers.
 
     Parameters
     ----------
     tasks : sequence of ReaderTask
         The readers, in the order of the tables; at least one.
-    shelf : Shelf
-        May hold their fixations.
+    aside : Aside
+        Where their fixations are.
 
     Returns
     -------
@@ -37,7 +37,7 @@ def group_of(tasks: Sequence[ReaderTask], shelf: Shelf) -> ReaderGroup:
     """
     logs, files = [], []
     for task in tasks:
-        log, part = kept_log(task.parts, shelf)
+        log, part = kept_log(task.parts, aside)
         logs.append(log)
         files.append(np.asarray(task.files, dtype=np.int32)[part])
     trials = [task.trials for task in tasks]

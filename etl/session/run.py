@@ -30,7 +30,7 @@ from etl.session.gallery import drawn
 from etl.session.gather import Gathered, gather, read_logs
 from etl.session.group_work import finish_groups
 from etl.session.hand_over import describe, hand_over
-from etl.session.kept_logs import ROOM_BYTES, Shelf
+from etl.session.kept_logs import ROOM_BYTES, Aside, Shelf
 from etl.session.log_tellings import (
     account_for_moved,
     check_nothing_lost,
@@ -114,6 +114,7 @@ def build(
     into: str | os.PathLike[str] | None = None,
     workers: int | None = 1,
     progress: Progress = silent,
+    keep: bool = True,
 ) -> Result:
     """Build all tables of a study.
 
@@ -130,6 +131,10 @@ def build(
         ``if __name__ == "__main__":``.
     progress : callable, optional
         Called with a stage's name, how much of it is done, and how much there is.
+    keep : bool
+        Whether to use what the build before kept beside the output folder (or, where readers have
+        pseudonyms, beside the file of these), and to keep parsed logs for the next one there. The
+        tables are the same bytes either way.
 
     Returns
     -------
@@ -148,10 +153,12 @@ def build(
     findings = Findings()
     held = open_key(study, findings, target=target)
     check_target(target, shown)
+    kept = kept_folder(target, held) if keep else None
+    groups_kept: list[str] = []
     with (
         published(target, shown) as shop,
         own_faults(),
-        Room(shop.kept, workers, progress) as room,
+        Room(shop.kept, workers, progress, kept) as room,
     ):
         examined = examine(study, room, findings, held)
         if examined is None:
@@ -163,12 +170,13 @@ def build(
             as_csv = {name: (*formats[name], "csv") for name in apart}
             wanted = {} if findings.failed else {**formats, **as_csv}
             with closing(finish_groups(gathered, crew, progress, wanted)) as groups:
-                for answer in groups:
-                    for tables in answer.readers:
+                for group in groups:
+                    groups_kept.append(group.kept)
+                    for tables in group.readers:
                         findings.extend(tables.findings)
                         totals.add(tables)
                     if not findings.failed:
-                        writers.add(answer.parts)
+                        writers.add(group.parts)
             labels = plan.library.labels
             known = () if labels is None else labels.codes
             totals.notice_places(study, known, gathered.design.files, findings)
@@ -198,6 +206,8 @@ def build(
         ).write(shop.fresh)
         if held is not None:
             save_key(held)
+        if keep:
+            room.store.settle([answer.kept for answer in answers] + groups_kept)
     key = None if held is None else held.path
     return Result(target, told, rows, findings, described.readiness, key)
 
@@ -249,7 +259,7 @@ def examine(
     alone = reader_for(_logs_alone(study), study.screen, pseudonyms=pseudonyms)
     reader = plan.reader if plan is not None else alone
     # Processes of their own share nothing in memory: then everything goes to the disk.
-    aside = (room.folder, Shelf(ROOM_BYTES if crew.workers == 1 else 0))
+    aside = Aside(room.store, room.keep, Shelf(ROOM_BYTES if crew.workers == 1 else 0))
     answers = read_logs(logs, reader, aside, crew, room.progress, pseudonyms)
     told = answers
     if pseudonyms is not None:
@@ -268,6 +278,26 @@ def examine(
     with _collector_at_rest():
         gathered = gather(plan, answers, aside, findings)
     return None if gathered is None else (plan, gathered, told, crew)
+
+
+def kept_folder(target: Path, held: KeyFile | None) -> Path:
+    """Where a build keeps parsed logs for the next one.
+
+    Parameters
+    ----------
+    target : Path
+        The output folder.
+    held : KeyFile or None
+        The pseudonyms of the study. What is kept names readers by id, too, where they have
+        pseudonyms; so it lies where these are kept, and not where the output is.
+
+    Returns
+    -------
+    Path
+    """
+    target = target.resolve()
+    beside = target if held is None else held.path.resolve().with_name(target.name)
+    return beside.with_name(f"{beside.name}.kept")
 
 
 def _logs_alone(study: Study) -> Logs:
@@ -293,7 +323,7 @@ def _audit(
 ) -> AuditInput:
     """Everything that the audit page tells of."""
     study = told_study(plan.study, plan.pseudonyms)
-    tasks = {task.participant: task for task in gathered.tasks}
+    tasks = gathered.tasks.by_name()
     tracer = Tracer(study, plan.library, gathered.design)
     return AuditInput(
         plan.understood(),

@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import number_of, truth_of
+from etl.files.packed import RowTexts
 from etl.parsers.time_checks import in_ms
 from etl.session.plan import Plan
 from etl.trials import IDS, KnownTrials
@@ -33,7 +34,7 @@ class TrialFacts:
         When the text came up and went away, in log time; NaN where unknown.
     answer : (trials,) float64 array
         1 right, 0 wrong, NaN where nothing was asked.
-    notes : list of str
+    notes : RowTexts
         The experimenter's note on each trial, empty where there is none.
     reader_notes : dict of str to str
         The note on each reader who has one.
@@ -44,7 +45,7 @@ class TrialFacts:
     came_ms: NDArray[np.float64]
     went_ms: NDArray[np.float64]
     answer: NDArray[np.float64]
-    notes: list[str]
+    notes: RowTexts
     reader_notes: dict[str, str] = field(default_factory=dict)
     inputs: list[Notes] = field(default_factory=list)
 
@@ -78,8 +79,9 @@ def trial_facts(
         Of facts that no rule needs, all values are missing.
     """
     settings, limits = plan.study.trials, plan.limits
-    unknown = np.full(len(trials), np.nan)
-    facts = TrialFacts(unknown, unknown, unknown, [""] * len(trials))
+    # One number for all trials, which takes no room.
+    unknown = np.broadcast_to(np.nan, len(trials))
+    facts = TrialFacts(unknown, unknown, unknown, RowTexts(len(trials)))
     place = _Place(plan, trials, shown, findings)
     if limits.on("outside_text_time"):
         onset = plan.study.logs.columns.clock
@@ -133,14 +135,13 @@ def _add_notes(plan: Plan, trials: KnownTrials, facts: TrialFacts, findings: Fin
         on_trials = notes.on_trials()
         if given == of_trials:
             facts.notes = notes_on_trials(notes, trials.seen, plan.facts.trial_list, findings)
-            for row in np.flatnonzero(trials.skipped).tolist():
-                if facts.notes[row]:
-                    findings.note(
-                        "a note is on a trial that is no part of the study, and changes nothing",
-                        path=notes.shown,
-                        found=f"participant {trials.seen.ids['participant'].text(row)}, "
-                        f"trial {trials.seen.ids['trial'].text(row)}",
-                    )
+            for row in np.flatnonzero(trials.skipped & facts.notes.some()).tolist():
+                findings.note(
+                    "a note is on a trial that is no part of the study, and changes nothing",
+                    path=notes.shown,
+                    found=f"participant {trials.seen.ids['participant'].text(row)}, "
+                    f"trial {trials.seen.ids['trial'].text(row)}",
+                )
         if given == of_readers:
             facts.reader_notes = notes_on_readers(notes, trials.seen, findings)
         for used, rows, what, key in (

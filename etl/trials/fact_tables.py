@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import Cells, Coded, group_rows, marks_of, place_rows, read_table
+from etl.files.packed import Packed, PackedColumns
 from etl.pseudonyms import Pseudonyms
 from etl.trials.labels import without_prefix
 
@@ -29,7 +30,7 @@ class FactTable:
         Digest of the file.
     keys : tuple of str
         What joins it to the trials, by canonical name (``participant``) or fact.
-    columns : dict of str to Coded
+    columns : PackedColumns
         The facts it holds, keys included, by canonical name where they have one.
     lines : (rows,) int32 array
         The line of each row in the file.
@@ -38,30 +39,35 @@ class FactTable:
     shown: str
     sha256: str
     keys: tuple[str, ...]
-    columns: dict[str, Coded]
+    columns: PackedColumns
     lines: NDArray[np.int32]
 
     def find(self, known: Mapping[str, Coded]) -> NDArray[np.int64]:
         """The row for each trial, by what is known of the trials; -1 where there is none."""
-        length = len(next(iter(known.values())))
+        length = len(known[next(iter(known))])
         wanted = [known.get(key, Coded.absent(length)) for key in self.keys]
         return place_rows(wanted, [self.columns[key] for key in self.keys])
 
     def only(self, names: Collection[str]) -> FactTable:
         """The table with its keys and some other columns: what else it holds is let go."""
-        kept = {n: c for n, c in self.columns.items() if n in names or n in self.keys}
-        return replace(self, columns=kept)
+        kept = [n for n in self.columns if n in names or n in self.keys]
+        return replace(self, columns=PackedColumns({n: self.columns.packed(n) for n in kept}))
 
     def under(self, pseudonyms: Pseudonyms | None) -> FactTable:
         """The table with pseudonyms in place of readers' ids."""
         if pseudonyms is None or "participant" not in self.columns:
             return self
-        readers = pseudonyms.readers_of(self.columns["participant"])
-        return replace(self, columns={**self.columns, "participant": readers})
+        readers = Packed.of(pseudonyms.readers_of(self.columns["participant"]))
+        columns = {name: self.columns.packed(name) for name in self.columns}
+        return replace(self, columns=PackedColumns({**columns, "participant": readers}))
+
+    def text(self, name: str, row: int) -> str:
+        """The text of one cell, empty where it is missing."""
+        return self.columns.packed(name).text(row)
 
     def spelled(self, row: int) -> str:
         """The key of a row, for messages."""
-        return ", ".join(f"{key} {self.columns[key].text(row)}" for key in self.keys)
+        return ", ".join(f"{key} {self.text(key, row)}" for key in self.keys)
 
 
 def read_fact_table(
@@ -118,11 +124,13 @@ def read_fact_table(
         )
         return None
     absent = marks_of(missing)
-    columns = {
-        name: without_prefix(Coded.of(cells.column(header), absent), prefixes.get(name))
-        for name, header in names.items()
-    }
-    table = FactTable(shown, cells.text.sha256, keys, columns, cells.lines)
+    columns = {}
+    for name, header in names.items():
+        packed = Packed.of_cells(cells.column(header), absent)
+        if prefixes.get(name):
+            packed = Packed.of(without_prefix(packed.coded(), prefixes[name]))
+        columns[name] = packed
+    table = FactTable(shown, cells.text.sha256, keys, PackedColumns(columns), cells.lines)
     _check_keys(table, names, findings)
     return None if findings.count("error") > before else table
 

@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import Coded, group_rows, place_rows
+from etl.files.packed import Packed, PackedColumns, RowTexts
 from etl.pseudonyms import Pseudonyms
 from etl.trials.fact_tables import FactTable, read_fact_table
 from etl.trials.labels import labels_of
@@ -32,20 +33,20 @@ class KnownTrials:
     ----------
     seen : SeenTrials
         Where and how the logs show them.
-    known : dict of str to Coded
+    known : PackedColumns
         Identifiers and facts, by name.
     skipped : (trials,) bool array
         Whether the trial is no part of the study.
-    skipped_by : list of str
+    skipped_by : RowTexts
         By which fact, such as ``block = practice``; empty where it is part of the study.
     good : (trials,) bool array
         Whether all that must be known of the trial is known.
     """
 
     seen: SeenTrials
-    known: dict[str, Coded]
+    known: PackedColumns
     skipped: NDArray[np.bool_]
-    skipped_by: list[str]
+    skipped_by: RowTexts
     good: NDArray[np.bool_]
 
     def __len__(self) -> int:
@@ -108,7 +109,7 @@ class FactBook:
         -------
         KnownTrials
         """
-        known = {**seen.ids, **seen.facts}
+        known = PackedColumns({**seen.ids, **seen.facts})
         good = np.ones(len(seen), dtype=bool)
         missing: list[tuple[FactTable, NDArray[np.bool_]]] = []
         for source, table in (
@@ -121,17 +122,21 @@ class FactBook:
             rows = table.find(known)
             missing.append((table, rows < 0))
             for name in (n for n, origin in self.sources.items() if origin == source):
-                known[name] = _looked_up(table.columns[name], rows)
+                known[name] = table.columns.packed(name).take(rows)
             if "item" in table.columns and "item" not in table.keys:
                 good &= self._agree_on_item(known, table, rows, (seen, shown), findings)
+            del rows
         skipped = np.zeros(len(seen), dtype=bool)
-        skipped_by = [""] * len(seen)
+        skipped_by = RowTexts(len(seen))
         for name, values in self.skip.items():
             if name not in known:
                 continue
-            listed = known[name].among(values)
-            for row in np.flatnonzero(listed & ~skipped).tolist():
-                skipped_by[row] = f"{name} = {known[name].text(row)}"
+            column = known[name]
+            listed = column.among(values)
+            first = np.flatnonzero(listed & ~skipped)
+            for code in np.unique(column.codes[first]).tolist():
+                own = first[column.codes[first] == code]
+                skipped_by[own] = f"{name} = {'' if code < 0 else column.values[code]}"
             skipped |= listed
         for table, absent in missing:
             # A practice trial need not stand in any table.
@@ -148,21 +153,22 @@ class FactBook:
 
     def _agree_on_item(
         self,
-        known: dict[str, Coded],
+        known: PackedColumns,
         table: FactTable,
         rows: NDArray[np.int64],
         place: tuple[SeenTrials, Sequence[str]],
         findings: Findings,
     ) -> NDArray[np.bool_]:
         """Take the item from a table; where the log has one too, say whether they agree."""
-        theirs = _looked_up(table.columns["item"], rows)
+        packed = table.columns.packed("item").take(rows)
         own = known.get("item")
         if own is None:
-            known["item"] = theirs
+            known["item"] = packed
             return np.ones(len(rows), dtype=bool)
+        theirs = packed.coded()
         both = Coded.joined([own, theirs])
         mine, other = both.codes[: len(rows)], both.codes[len(rows) :]
-        known["item"] = Coded(np.where(mine >= 0, mine, other), both.values)
+        known["item"] = Packed(np.where(mine >= 0, mine, other), both.values)
         clash: NDArray[np.bool_] = (mine >= 0) & (other >= 0) & (mine != other)
         seen, shown = place
         for row in np.flatnonzero(clash).tolist():
@@ -208,7 +214,8 @@ class FactBook:
         lines = trials.seen.line[rows]
         if table is None or not len(rows):
             return "", np.zeros(len(rows), dtype=bool), lines
-        at = table.find({key: column.take(rows) for key, column in trials.known.items()})
+        known = {key: trials.known[key].take(rows) for key in table.keys if key in trials.known}
+        at = table.find(known or {"": Coded.absent(len(rows))})
         return table.shown, at >= 0, np.where(at >= 0, table.lines[at], lines)
 
     def unrecorded(self, seen: SeenTrials) -> list[int]:
@@ -229,14 +236,9 @@ class FactBook:
         return rows
 
 
-def _looked_up(column: Coded, rows: NDArray[np.int64]) -> Coded:
-    """The texts of a table's column for trials; missing where there is no row."""
-    return Coded(np.where(rows >= 0, column.codes[rows], -1).astype(np.int32), column.values)
-
-
 def _tell_missing_row(
     table: FactTable,
-    known: dict[str, Coded],
+    known: PackedColumns,
     row: int,
     place: tuple[SeenTrials, Sequence[str], Mapping[str, str]],
     findings: Findings,

@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import Cells, Coded, place_rows, read_table
+from etl.files.packed import RowTexts
 from etl.pseudonyms import WITHHELD, Pseudonyms
 from etl.trials.fact_tables import FactTable
 from etl.trials.labels import without_prefix
@@ -139,7 +140,7 @@ def _tell_missing_column(name: str, cells: Cells, findings: Findings) -> None:
 
 def notes_on_trials(
     notes: Notes, seen: SeenTrials, trial_list: FactTable | None, findings: Findings
-) -> list[str]:
+) -> RowTexts:
     """The note on each trial; a note that matches no trial is an error.
 
     Parameters
@@ -162,7 +163,7 @@ def notes_on_trials(
     keys = ["participant", "trial"]
     if "session" in seen.ids and "session" in notes.columns:
         keys.append("session")
-    reasons = [""] * len(seen)
+    reasons = RowTexts(len(seen))
     if not rows.size:
         return reasons
     # Several notes may be on one trial, so the notes are placed among the trials.
@@ -191,9 +192,9 @@ def _without_session(
     seen: SeenTrials,
     trial_list: FactTable | None,
     findings: Findings,
-) -> list[str]:
+) -> RowTexts:
     """Notes that name no session although trials have one: good where only one trial fits."""
-    reasons = [""] * len(seen)
+    reasons = RowTexts(len(seen))
     for row in rows.tolist():
         fits = _fitting(notes, row, seen.ids)
         if len(fits) == 1:
@@ -256,7 +257,7 @@ def notes_on_readers(notes: Notes, seen: SeenTrials, findings: Findings) -> dict
     return found
 
 
-def _add(reasons: list[str], at: int, reason: str) -> None:
+def _add(reasons: RowTexts, at: int, reason: str) -> None:
     """Add a reason to a trial's."""
     reason = reason or "no reason given"
     reasons[at] = f"{reasons[at]}; {reason}" if reasons[at] else reason

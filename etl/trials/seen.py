@@ -49,12 +49,26 @@ class SeenTrials:
         )
 
     @classmethod
-    def joined(cls, parts: Sequence[SeenTrials]) -> SeenTrials:
-        """The trials of several logs, one below the other."""
+    def joined(cls, parts: Sequence[SeenTrials], places: Sequence[int]) -> SeenTrials:
+        """The trials of several logs, one below the other.
+
+        Parameters
+        ----------
+        parts : sequence of SeenTrials
+            Those of each log, at least one.
+        places : sequence of int
+            What is added to the number of the log in each part.
+        """
+        lengths = [len(part) for part in parts]
+        file = np.repeat(np.asarray(places, dtype=np.int32), lengths)
+        stop = 0
+        for part in parts:
+            start, stop = stop, stop + len(part)
+            file[start:stop] += part.file
         return cls(
             {name: Coded.joined([part.ids[name] for part in parts]) for name in parts[0].ids},
             {name: Coded.joined([part.facts[name] for part in parts]) for name in parts[0].facts},
-            np.concatenate([part.file for part in parts]),
+            file,
             np.concatenate([part.line for part in parts]),
         )
 
@@ -70,10 +84,13 @@ class SeenTrials:
         """
         keys = [self.ids[name] for name in IDS[:3] if name in self.ids]
         first, group = group_rows(keys)
-        own = np.arange(len(self))
-        again = np.flatnonzero(first[group] != own)
-        if again.size:
-            self._compare(again, first[group[again]], shown, findings)
+        if len(first) == len(self):
+            return self
+        again = np.ones(len(self), dtype=bool)
+        again[first] = False
+        rows = np.flatnonzero(again)
+        self._compare(rows, first[group[rows]], shown, findings)
+        del group
         return self.take(np.sort(first))
 
     def _compare(
