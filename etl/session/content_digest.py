@@ -69,6 +69,9 @@ def _feed(digest: Any, value: object) -> None:
         _feed_array(digest, np.asarray(value))
     elif isinstance(value, tuple | list):
         _mark(digest, kind.__qualname__, len(value))
+        if all(type(item) is str for item in value):  # many and short: all at once
+            _feed(digest, repr(value))
+            return
         for item in value:
             _feed(digest, item)
     elif isinstance(value, Mapping):

@@ -13,7 +13,7 @@ from etl.session.content_digest import content_digest, program_digest
 from etl.session.crew import Crew, Progress
 from etl.session.gather import Gathered
 from etl.session.kept_logs import Aside
-from etl.session.kept_store import GROUP, head_of
+from etl.session.kept_store import GROUP
 from etl.session.reader import Options, ReaderTables
 from etl.session.reader_group import group_of
 from etl.session.reader_groups import GroupTask, group_sizes, group_tasks, without_values
@@ -82,10 +82,8 @@ class GroupWork:
         # that it names.
         name = content_digest(task, self._key) + GROUP
         store = self._aside.store
-        found = store.find(name)
-        if found is not None:
-            answer: GroupAnswer = head_of(found)
-        else:
+        answer: GroupAnswer | None = store.head(name)
+        if answer is None:
             answer = self._finished(task)
             if any(tables.findings.failed for tables in answer.readers):
                 return answer

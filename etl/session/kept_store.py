@@ -13,7 +13,7 @@ import importlib
 import io
 import os
 import pickle
-import tempfile
+import socket
 from collections.abc import Iterable
 from dataclasses import dataclass, is_dataclass
 from pathlib import Path
@@ -57,8 +57,8 @@ class KeptStore:
     earlier: Path
     fresh: Path
 
-    def find(self, name: str) -> Path | None:
-        """An entry that is there and whole.
+    def head(self, name: str) -> Any:
+        """What an entry says that is there and whole.
 
         Parameters
         ----------
@@ -67,13 +67,14 @@ class KeptStore:
 
         Returns
         -------
-        Path or None
+        object or None
+            As it was put; None where there is no such entry, or not one that this program wrote.
         """
         for folder in (self.fresh, self.earlier):
-            path = folder / name
-            with contextlib.suppress(OSError):
-                if _is_whole(path):
-                    return path
+            # Whatever is wrong with an entry, it can be made again.
+            with contextlib.suppress(OSError, pickle.UnpicklingError, AttributeError, ImportError):
+                if _is_whole(folder / name):
+                    return head_of(folder / name)
         return None
 
     def where(self, name: str) -> Path:
@@ -115,13 +116,13 @@ class KeptStore:
         if body is not None:
             digest.update(body)
         # Two logs with the same content may be read at the same time.
-        handle, draft = tempfile.mkstemp(prefix="draft", dir=self.fresh)
-        with os.fdopen(handle, "wb") as file:
+        draft = self.fresh / f"{name}.{socket.gethostname()}.{os.getpid()}"
+        with draft.open("wb") as file:
             file.write(_MAGIC + digest.digest() + len(data).to_bytes(_LENGTH_BYTES, "little"))
             file.write(data)
             if body is not None:
                 file.write(body)
-        Path(draft).replace(path)
+        draft.replace(path)
         return path
 
     def settle(self, used: Iterable[str]) -> None:
@@ -180,7 +181,7 @@ def head_of(path: Path) -> Any:
     Parameters
     ----------
     path : Path
-        From :meth:`KeptStore.find` or :meth:`KeptStore.put`.
+        From :meth:`KeptStore.where` or :meth:`KeptStore.put`.
 
     Returns
     -------
@@ -204,7 +205,7 @@ def body_of(path: Path) -> pa.Buffer:
     Parameters
     ----------
     path : Path
-        From :meth:`KeptStore.find` or :meth:`KeptStore.put`.
+        From :meth:`KeptStore.where` or :meth:`KeptStore.put`.
 
     Returns
     -------

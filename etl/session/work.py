@@ -15,7 +15,7 @@ from etl.regions import RegionLibrary
 from etl.session.bench import Bench
 from etl.session.content_digest import content_digest, program_digest
 from etl.session.kept_logs import Aside, arrays_of, batches_of
-from etl.session.kept_store import LOG, head_of
+from etl.session.kept_store import LOG
 from etl.session.lines import NO_HAND, HandLines
 from etl.session.log_figures import LogFigures, figures_of
 from etl.session.reader import Options, ReaderTables
@@ -89,9 +89,8 @@ class LogWork:
         """Read one log and put its fixations aside, or find that an earlier build did."""
         name = self._name(task)
         if self._aside.keep and name:
-            found = self._aside.store.find(name)
-            if found is not None:
-                answer: LogAnswer = head_of(found)
+            answer: LogAnswer | None = self._aside.store.head(name)
+            if answer is not None:
                 answer.kept = name
                 return answer
         return self._read(task, name)
