@@ -1,4 +1,4 @@
-"""Builds that find what earlier ones kept: the same bytes as without, and no more work than needed."""
+"""Builds that find what earlier ones kept: the same bytes, and no more work than is needed."""
 
 from __future__ import annotations
 
