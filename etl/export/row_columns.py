@@ -1,9 +1,10 @@
-"""A reader's arrays as rows are made of them: trials, fixations, regressions, measures."""
+"""The arrays that rows are made of: trials, fixations, regressions, measures."""
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from itertools import chain
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,7 +12,7 @@ from numpy.typing import NDArray
 
 @dataclass(frozen=True, slots=True)
 class TrialColumns:
-    """What is known of a reader's trials, one row a trial, in the order of the tables.
+    """What is known of trials, one row a trial, in the order of the tables.
 
     Attributes
     ----------
@@ -58,6 +59,24 @@ class TrialColumns:
             tuple([self.skipped_by[row] for row in rows.tolist()]),
         )
 
+    @classmethod
+    def joined(cls, parts: Sequence[TrialColumns]) -> TrialColumns:
+        """The trials of several readers, one below the other."""
+        if len(parts) == 1:
+            return parts[0]
+        first = parts[0]
+        return cls(
+            {name: np.concatenate([p.ids[name] for p in parts]) for name in first.ids},
+            {name: np.concatenate([p.factors[name] for p in parts]) for name in first.factors},
+            {n: np.concatenate([p.covariates[n] for p in parts]) for n in first.covariates},
+            np.concatenate([part.text for part in parts]),
+            np.concatenate([part.came_ms for part in parts]),
+            np.concatenate([part.went_ms for part in parts]),
+            np.concatenate([part.answer for part in parts]),
+            tuple(chain.from_iterable(part.notes for part in parts)),
+            tuple(chain.from_iterable(part.skipped_by for part in parts)),
+        )
+
 
 @dataclass(frozen=True, slots=True)
 class CellMeasures:
@@ -77,7 +96,7 @@ class CellMeasures:
 
 @dataclass(frozen=True, slots=True)
 class LineColumns:
-    """What ``fixations`` says of lines, beside their numbers, for one reader; NaN is missing."""
+    """What ``fixations`` says of lines, beside their numbers; NaN is missing."""
 
     confidence: NDArray[np.float64]
     return_sweep: NDArray[np.bool_]
@@ -86,7 +105,7 @@ class LineColumns:
 
 @dataclass(frozen=True, slots=True)
 class FixationColumns:
-    """The columns of ``fixations`` for one reader; 0 in an order, line or visit is missing."""
+    """The columns of ``fixations``; 0 in an order, line or visit is missing."""
 
     trial: NDArray[np.int64]
     number: NDArray[np.int64]
@@ -107,7 +126,7 @@ class FixationColumns:
 
 @dataclass(frozen=True, slots=True)
 class RegressionColumns:
-    """The columns of ``regressions`` for one reader."""
+    """The columns of ``regressions``."""
 
     trial: NDArray[np.int64]
     from_code: NDArray[np.int32]

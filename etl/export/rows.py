@@ -1,8 +1,8 @@
-"""From a reader's arrays to rows of the tables.
+"""From arrays to rows of the tables.
 
 A :class:`RowMaker` lives once in every process and makes record batches whose coded columns all
-share the study's own lists of values, so that batches of different readers can be written one
-after the other without a look at their texts.
+share the study's own lists of values, so that batches can be written one after the other without a
+look at their texts.
 """
 
 from __future__ import annotations
@@ -13,6 +13,7 @@ import numpy as np
 import pyarrow as pa
 from numpy.typing import NDArray
 
+from etl.export.arrays import Fact, array_of, coded_of, numbers_of
 from etl.export.row_columns import (
     CellMeasures,
     FixationColumns,
@@ -45,11 +46,15 @@ class RowMaker:
     def __init__(self, design: TableDesign) -> None:
         self.design = design
         self.schemas = {name: written_schema(design.columns(name)) for name in (*TABLES, LEDGER)}
-        self._id_values = {
-            name: pa.array([int(v) for v in known.values], pa.int64())
-            if known.type == "integer"
-            else pa.array(known.values, pa.string())
+        self._id_texts = {
+            name: pa.array(known.values, pa.string())
             for name, known in design.ids.items()
+            if known.type != "integer"
+        }
+        self._id_numbers = {
+            name: np.array([int(value) for value in known.values], dtype=np.int64)
+            for name, known in design.ids.items()
+            if known.type == "integer"
         }
         self._levels = {n: pa.array(levels, pa.string()) for n, levels in design.factors.items()}
         self._codings = {
@@ -76,43 +81,39 @@ class RowMaker:
         self._tiles = (none, none)
         self._empty_ledger = pa.RecordBatch.from_pylist([], schema=self.schemas[LEDGER])
 
-    def ids(self, trials: TrialColumns) -> dict[str, pa.Array]:
+    def ids(self, trials: TrialColumns) -> dict[str, Fact]:
         """The columns that identify trials, one row a trial."""
-        columns: dict[str, pa.Array] = {}
-        for name, known in self.design.ids.items():
-            column = _coded(trials.ids[name], self._id_values[name])
-            columns[name] = column.dictionary_decode() if known.type == "integer" else column
-        return columns
+        return {name: self._id(name, trials.ids[name]) for name in self.design.ids}
 
-    def facts(self, trials: TrialColumns) -> dict[str, pa.Array]:
+    def _id(self, name: str, codes: NDArray[np.int32]) -> Fact:
+        """One of the columns that identify."""
+        if name in self._id_numbers:
+            return Fact.of_whole(codes, self._id_numbers[name])
+        return Fact.of_codes(codes, self._id_texts[name])
+
+    def facts(self, trials: TrialColumns) -> dict[str, Fact]:
         """The columns that describe trials of the study, ids first, one row a trial."""
         columns = self.ids(trials)
         for name, levels in self._levels.items():
-            columns[name] = _coded(trials.factors[name], levels)
+            columns[name] = Fact.of_codes(trials.factors[name], levels)
             if name in self._codings:
                 numbers = self._codings[name][trials.factors[name]]
                 for place, column in enumerate(self.design.codings[name].columns):
-                    columns[column] = pa.array(numbers[:, place])
+                    columns[column] = Fact(numbers[:, place], array_of)
         for name, values in trials.covariates.items():
             columns[name] = (
-                pa.array(values, from_pandas=True)
+                Fact.of_numbers(values.astype(np.float64, copy=False))
                 if self.design.covariates[name].type == "number"
-                else _coded(values.astype(np.int32), self._covariates[name])
+                else Fact.of_codes(values.astype(np.int32), self._covariates[name])
             )
         for name, mean in self.design.centred.items():
-            columns[centred_name(name)] = pa.array(trials.covariates[name] - mean, from_pandas=True)
+            numbers = trials.covariates[name].astype(np.float64, copy=False)
+            columns[centred_name(name)] = Fact.of_numbers(numbers - mean)
         return columns
-
-    def _repeated(
-        self, facts: Mapping[str, pa.Array], trial: NDArray[np.int64], names: Sequence[str]
-    ) -> list[pa.Array]:
-        """Facts of each row's trial."""
-        index = pa.array(trial)
-        return [facts[name].take(index) for name in names]
 
     def outcomes(
         self,
-        facts: Mapping[str, pa.Array],
+        facts: Mapping[str, Fact],
         cells: tuple[NDArray[np.int64], NDArray[np.int32], NDArray[np.int32]],
         measured: CellMeasures,
     ) -> pa.RecordBatch:
@@ -120,69 +121,74 @@ class RowMaker:
 
         Parameters
         ----------
-        facts : dict of str to pa.Array
+        facts : dict of str to Fact
             From :meth:`facts`, of the kept trials.
-        cells : tuple of (cells,) arrays
-            Trial, region order and region code of each cell.
+        cells : tuple of arrays
+            How many cells each trial has; region order and region code of each cell.
         measured : CellMeasures
             The measures by name.
         """
-        trial, order, code = cells
+        counts, order, code = cells
         width = len(self._measures)
         if not width:  # a study that asks for outcomes of trials only
             return pa.RecordBatch.from_pylist([], schema=self.schemas["outcomes"])
-        values = np.stack([measured.values[n] for n in self._measures], axis=1).ravel()
-        reasons = np.stack([measured.reasons[n] for n in self._measures], axis=1).ravel()
-        names, kinds = self._tiled_names(len(trial))
+        values = np.empty((len(order), width))
+        missing = np.empty((len(order), width), dtype=np.int32)
+        for place, name in enumerate(self._measures):
+            values[:, place] = measured.values[name]
+            missing[:, place] = measured.reasons[name]
+        missing -= 1
+        names, kinds = self._tiled_names(len(order))
         columns = [
-            *self._repeated(facts, np.repeat(trial, width), self._of_outcomes),
-            _coded(np.repeat(code, width), self._regions),
-            pa.array(np.repeat(order, width).astype(np.int64)),
+            *(facts[name].repeated(counts * width) for name in self._of_outcomes),
+            coded_of(np.repeat(code, width), self._regions, whole=True),
+            array_of(np.repeat(order.astype(np.int64), width)),
             names,
             kinds,
-            pa.array(values, from_pandas=True),
-            _coded(reasons.astype(np.int32) - 1, self._reasons),
+            numbers_of(values.ravel()),
+            coded_of(missing.ravel(), self._reasons),
         ]
         return pa.RecordBatch.from_arrays(columns, schema=self.schemas["outcomes"])
 
     def _tiled_names(self, cells: int) -> tuple[pa.Array, pa.Array]:
-        """Names and kinds of the measures, over and over: the same for every reader."""
+        """Names and kinds of the measures, over and over: the same for all readers."""
         rows = cells * len(self._measures)
         if len(self._tiles[0]) < rows:
+            places = np.arange(len(self._measures), dtype=np.int32)
             self._tiles = (
-                _coded(np.tile(np.arange(len(self._measures), dtype=np.int32), cells), self._names),
-                _coded(np.tile(self._kind_of_measure, cells), self._kinds),
+                coded_of(np.tile(places, cells), self._names),
+                coded_of(np.tile(self._kind_of_measure, cells), self._kinds),
             )
         return self._tiles[0].slice(0, rows), self._tiles[1].slice(0, rows)
 
     def outcomes_wide(
         self,
-        facts: Mapping[str, pa.Array],
+        facts: Mapping[str, Fact],
         cells: tuple[NDArray[np.int64], NDArray[np.int32], NDArray[np.int32]],
         measured: CellMeasures,
     ) -> pa.RecordBatch:
         """Wide rows: one a cell; parameters as for :meth:`outcomes`."""
-        trial, order, code = cells
+        counts, order, code = cells
         columns = [
-            *self._repeated(facts, trial, self._of_outcomes),
-            _coded(code, self._regions),
-            pa.array(order.astype(np.int64)),
+            *(facts[name].repeated(counts) for name in self._of_outcomes),
+            coded_of(code, self._regions, whole=True),
+            array_of(order.astype(np.int64)),
             *(_measure(measured.values[m.name], m.kind) for m in self.design.measures),
         ]
         return pa.RecordBatch.from_arrays(columns, schema=self.schemas["outcomes_wide"])
 
     def trials(
         self,
-        facts: Mapping[str, pa.Array],
+        facts: Mapping[str, Fact],
         measured: CellMeasures,
         line_confidence: NDArray[np.float64] | None = None,
     ) -> pa.RecordBatch:
         """One row a kept trial; how sure its lines are where the study tells lines."""
         measures = self.design.trial_measures
         columns = [
-            *(facts[name] for name in self._of_outcomes),
+            *(facts[name].column() for name in self._of_outcomes),
             *(_measure(measured.values[m.name], m.kind) for m in measures),
-            *(() if line_confidence is None else [pa.array(line_confidence, from_pandas=True)]),
+            *(() if line_confidence is None else [numbers_of(line_confidence)]),
             self._why_missing(measured),
         ]
         return pa.RecordBatch.from_arrays(columns, schema=self.schemas["trials"])
@@ -200,54 +206,51 @@ class RowMaker:
             )
         return pa.array(texts, pa.string()).dictionary_encode().cast(CODED)
 
-    def regressions(
-        self, facts: Mapping[str, pa.Array], columns: RegressionColumns
-    ) -> pa.RecordBatch:
+    def regressions(self, facts: Mapping[str, Fact], columns: RegressionColumns) -> pa.RecordBatch:
         """One row a regressive saccade."""
         c = columns
         arrays = [
-            *self._repeated(facts, c.trial, self._of_saccades),
-            _coded(c.from_code, self._regions),
-            pa.array(c.from_order.astype(np.int64)),
-            _coded(c.to_code, self._regions),
-            pa.array(c.to_order.astype(np.int64)),
-            pa.array((c.from_order - c.to_order).astype(np.int64)),
-            pa.array(c.ends_first_pass.astype(np.int8)),
-            pa.array(c.launch_number),
-            pa.array(c.landing_number),
-            pa.array(c.onset_ms, from_pandas=True),
-            pa.array(c.amplitude_px, from_pandas=True),
+            *(facts[name].taken(c.trial) for name in self._of_saccades),
+            coded_of(c.from_code, self._regions, whole=True),
+            array_of(c.from_order.astype(np.int64)),
+            coded_of(c.to_code, self._regions, whole=True),
+            array_of(c.to_order.astype(np.int64)),
+            array_of((c.from_order - c.to_order).astype(np.int64)),
+            array_of(c.ends_first_pass.astype(np.int8)),
+            array_of(c.launch_number),
+            array_of(c.landing_number),
+            numbers_of(c.onset_ms),
+            numbers_of(c.amplitude_px),
         ]
         return pa.RecordBatch.from_arrays(arrays, schema=self.schemas["regressions"])
 
-    def fixations(self, facts: Mapping[str, pa.Array], columns: FixationColumns) -> pa.RecordBatch:
-        """One row a fixation; ``facts`` are those of all trials of the reader."""
+    def fixations(self, facts: Mapping[str, Fact], columns: FixationColumns) -> pa.RecordBatch:
+        """One row a fixation; ``facts`` are those of all trials, left out or not."""
         c = columns
         kept = c.left_out_by < 0
-        inside = kept & (c.region_order > 0)
         arrays = [
-            *self._repeated(facts, c.trial, tuple(self.design.ids)),
-            pa.array(c.number),
-            pa.array(c.onset_ms, from_pandas=True),
-            pa.array(c.duration_ms),
-            pa.array(c.x_px, from_pandas=True),
-            pa.array(c.y_px, from_pandas=True),
-            pa.array(c.line.astype(np.int64), mask=c.line == 0),
-            _coded(c.region_code, self._regions),
-            pa.array(c.region_order.astype(np.int64), mask=c.region_order == 0),
-            pa.array(c.visit.astype(np.int64), mask=c.visit == 0),
-            pa.array(c.first_pass.astype(np.int8), mask=~inside),
+            *(facts[name].taken(c.trial) for name in self.design.ids),
+            array_of(c.number),
+            numbers_of(c.onset_ms),
+            array_of(c.duration_ms),
+            numbers_of(c.x_px),
+            numbers_of(c.y_px),
+            array_of(c.line.astype(np.int64), c.line > 0),
+            coded_of(c.region_code, self._regions),
+            array_of(c.region_order.astype(np.int64), c.region_order > 0),
+            array_of(c.visit.astype(np.int64), c.visit > 0),
+            array_of(c.first_pass.astype(np.int8), kept & (c.region_order > 0)),
             *(() if c.lines is None else _lines(c.lines)),
-            pa.array(kept.astype(np.int8)),
-            _coded(c.left_out_by, self._left_out_by),
-            _coded(c.file, self._files),
-            pa.array(c.source_line.astype(np.int64)),
+            array_of(kept.astype(np.int8)),
+            coded_of(c.left_out_by, self._left_out_by),
+            coded_of(c.file, self._files, whole=True),
+            array_of(c.source_line.astype(np.int64)),
         ]
         return pa.RecordBatch.from_arrays(arrays, schema=self.schemas["fixations"])
 
     def ledger(
         self,
-        participant: int,
+        participants: NDArray[np.int32],
         trials: TrialColumns,
         entries: Sequence[Entry],
         source: tuple[NDArray[np.int32], NDArray[np.int32]],
@@ -256,45 +259,44 @@ class RowMaker:
 
         Parameters
         ----------
-        participant : int
-            Place of the reader among the study's readers.
+        participants : (readers,) int32 array
+            Place of each reader among the study's readers.
         trials : TrialColumns
-            All trials of the reader.
+            All trials of the readers.
         entries : sequence of Entry
             The rows, in order.
         source : tuple of two (n,) int32 arrays
-            Log and line of each fixation of the reader.
+            Log and line of each fixation of the readers.
         """
         if not entries:
             return self._empty_ledger
         trial = np.array([entry.trial for entry in entries], dtype=np.int64)
         row = np.array([entry.row for entry in entries], dtype=np.int64)
         columns = [
-            _coded(
+            coded_of(
                 np.array([LEVELS.index(entry.level) for entry in entries], dtype=np.int32),
                 pa.array(LEVELS, pa.string()),
             )
         ]
-        for name, known in self.design.ids.items():
+        for name in self.design.ids:
             own = trials.ids[name][trial] if len(trials) else trial.astype(np.int32)
             codes = np.where(trial >= 0, own, -1).astype(np.int32)
             if name == "participant":
-                codes = np.full(len(entries), participant, dtype=np.int32)
-            column = _coded(codes, self._id_values[name])
-            columns.append(column.dictionary_decode() if known.type == "integer" else column)
+                codes = participants[[entry.reader for entry in entries]]
+            columns.append(self._id(name, codes).column())
         file, line = (np.where(row >= 0, part[row], -1).astype(np.int32) for part in source)
         rules = {rule: code for code, rule in enumerate(self.design.ledger_rules)}
         columns += [
-            _coded(np.array([e.region for e in entries], dtype=np.int32), self._regions),
+            coded_of(np.array([e.region for e in entries], dtype=np.int32), self._regions),
             _place([e.fixation for e in entries]),
-            _coded(
+            coded_of(
                 np.array([rules[e.rule] for e in entries], dtype=np.int32),
                 pa.array(list(rules), pa.string()),
             ),
             _text([e.limit for e in entries]),
             _text([e.observed for e in entries]),
             _text([e.action for e in entries]),
-            _coded(file, self._files),
+            coded_of(file, self._files),
             _place(line.tolist()),
             _text([e.also for e in entries]),
         ]
@@ -304,9 +306,9 @@ class RowMaker:
 def _lines(columns: LineColumns) -> tuple[pa.Array, ...]:
     """The columns of ``fixations`` about lines."""
     return (
-        pa.array(columns.confidence, from_pandas=True),
-        pa.array(columns.return_sweep.astype(np.int8)),
-        pa.array(columns.undersweep.astype(np.int8)),
+        numbers_of(columns.confidence),
+        array_of(columns.return_sweep.astype(np.int8)),
+        array_of(columns.undersweep.astype(np.int8)),
     )
 
 
@@ -320,18 +322,10 @@ def _place(places: Sequence[int]) -> pa.Array:
     return pa.array([place if place >= 0 else None for place in places], pa.int64())
 
 
-def _coded(codes: NDArray[np.int32], values: pa.Array) -> pa.Array:
-    """Codes with their texts; a negative code is missing."""
-    some = len(codes) > 0 and codes.min() < 0
-    indices = pa.array(codes, mask=codes < 0) if some else pa.array(codes)
-    # The codes are ours: checking each of them again would cost as much as making the column.
-    return pa.DictionaryArray.from_arrays(indices, values, safe=False)
-
-
 def _measure(values: NDArray[np.float64], kind: str) -> pa.Array:
     """One measure in the type of its kind."""
     if kind == "duration":
-        return pa.array(values, from_pandas=True)
-    absent = np.isnan(values)
-    whole = np.where(absent, 0, values).astype(np.int8 if kind == "binary" else np.int64)
-    return pa.array(whole, mask=absent)
+        return numbers_of(values)
+    there = ~np.isnan(values)
+    whole = np.where(there, values, 0).astype(np.int8 if kind == "binary" else np.int64)
+    return array_of(whole, there)

@@ -4,7 +4,14 @@ from etl.report.audit import AUDIT, write_audit
 from etl.report.inputs import AccountRow, AuditInput, GalleryEntry, NotRecorded, UnsureTrial
 from etl.report.line_trust import LineTally, LineTrust
 from etl.report.logs import LogFate, LogMatter, LogsTold
-from etl.report.reader_profile import LineGrid, Profiles, ReaderProfile, TrialFates, profile_of
+from etl.report.reader_profile import (
+    LineGrid,
+    Profiles,
+    ReaderProfile,
+    TrialFates,
+    profile_of,
+    profiles_of,
+)
 
 __all__ = [
     "AUDIT",
@@ -23,5 +30,6 @@ __all__ = [
     "TrialFates",
     "UnsureTrial",
     "profile_of",
+    "profiles_of",
     "write_audit",
 ]

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections import Counter
 from dataclasses import dataclass, field
-from itertools import product
+from itertools import pairwise, product
 from typing import Any
 
 import numpy as np
@@ -126,51 +126,93 @@ def filled(column: pa.Array, value: float) -> NDArray[Any]:
     return np.asarray(column if column.null_count == 0 else column.fill_null(value))
 
 
-def rate_counts(wide: pa.RecordBatch, design: TableDesign) -> RateCounts:
-    """Count binary outcomes in rows of ``outcomes_wide``.
+def reader_of(starts: Ints) -> Ints:
+    """The reader of each row.
+
+    Parameters
+    ----------
+    starts : (readers + 1,) int64 array
+        Where the rows of each reader begin, and how many there are.
+
+    Returns
+    -------
+    (rows,) int64 array
+        From 0.
+
+    Examples
+    --------
+    >>> reader_of(np.array([0, 2, 2, 3])).tolist()
+    [0, 0, 2]
+    """
+    return np.repeat(np.arange(len(starts) - 1), np.diff(starts))
+
+
+def rate_counts(
+    wide: pa.RecordBatch, design: TableDesign, reader: Ints, readers: int
+) -> list[RateCounts]:
+    """Count binary outcomes in rows of ``outcomes_wide``, reader by reader.
 
     Parameters
     ----------
     wide : pa.RecordBatch
-        Rows of one reader.
+        Rows of some readers.
     design : TableDesign
         The tables of the study.
+    reader : (rows,) int64 array
+        The reader of each row, from 0; non-decreasing.
+    readers : int
+        How many readers there are.
+
+    Returns
+    -------
+    list of RateCounts
+        One a reader.
     """
     condition = condition_codes([codes_of(wide, f) for f in design.factors], design, len(wide))
-    keys, place = np.unique(
-        condition * len(design.regions) + codes_of(wide, "region"), return_inverse=True
-    )
+    width = len(design.regions)
+    for levels in design.factors.values():
+        width *= len(levels)
+    key = condition * len(design.regions) + codes_of(wide, "region") + reader * width
+    keys, place = np.unique(key, return_inverse=True)
     names = binary_measures(design)
-    values = np.empty((len(wide), len(names)), dtype=np.float64)
+    ones = np.zeros((len(keys), len(names)), dtype=np.int64)
+    n = np.zeros_like(ones)
     for column, name in enumerate(names):
-        values[:, column] = wide.column(name).to_numpy(zero_copy_only=False)
-    # All outcomes at once: a cell of the counts is a key and an outcome.
-    cell = place[:, None] * len(names) + np.arange(len(names))
-    shape, size = (len(keys), len(names)), len(keys) * len(names)
-    ones = np.bincount(cell[values == 1], minlength=size).reshape(shape)
-    n = np.bincount(cell[~np.isnan(values)], minlength=size).reshape(shape)
-    return RateCounts(keys, ones, n)
+        values = filled(wide.column(name), -1)
+        ones[:, column] = np.bincount(place[values == 1], minlength=len(keys))
+        n[:, column] = np.bincount(place[values >= 0], minlength=len(keys))
+    starts = np.searchsorted(keys, np.arange(readers + 1) * width)
+    return [
+        RateCounts(keys[start:stop] - own * width, ones[start:stop], n[start:stop])
+        for own, (start, stop) in enumerate(pairwise(starts.tolist()))
+    ]
 
 
-def missing_counts(outcomes: pa.RecordBatch, design: TableDesign) -> Ints:
-    """Count the rows of ``outcomes`` by measure and reason.
+def missing_counts(outcomes: pa.RecordBatch, design: TableDesign, starts: Ints) -> list[Ints]:
+    """Count the rows of ``outcomes`` by measure and reason, reader by reader.
 
     Parameters
     ----------
     outcomes : pa.RecordBatch
-        Rows of one reader.
+        Rows of some readers.
     design : TableDesign
         The tables of the study.
+    starts : (readers + 1,) int64 array
+        Where the rows of each reader begin, and how many there are.
 
     Returns
     -------
-    (outcomes, reasons) int64 array
-        Measures in the order of ``design.measures``; column 0 counts rows with a value.
+    list of (outcomes, reasons) int64 array
+        One a reader. Measures in the order of ``design.measures``; column 0 counts rows with a
+        value.
     """
     by_name = sorted(measure.name for measure in design.measures)
     width = len(design.reasons)
     # Codes of the column count from the first true reason; the empty one is a missing cell.
     code = codes_of(outcomes, "measure") * np.int64(width) + codes_of(outcomes, "missing") + 1
-    counted = np.bincount(code, minlength=len(by_name) * width).reshape(len(by_name), width)
     rows = [by_name.index(measure.name) for measure in design.measures]
-    return counted[rows].astype(np.int64)
+    size = len(by_name) * width
+    return [
+        np.bincount(code[start:stop], minlength=size).reshape(len(by_name), width)[rows]
+        for start, stop in pairwise(starts.tolist())
+    ]

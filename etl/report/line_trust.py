@@ -30,7 +30,7 @@ class LineTrust:
     sure: NDArray[np.bool_]
     by_hand: NDArray[np.bool_]
 
-    def of(self, rows: NDArray[np.bool_]) -> LineTrust:
+    def of(self, rows: NDArray[np.bool_] | slice) -> LineTrust:
         """Some of the trials."""
         return LineTrust(self.confidence[rows], self.sure[rows], self.by_hand[rows])
 

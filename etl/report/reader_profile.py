@@ -1,4 +1,4 @@
-"""The summary of one reader that the audit page needs, from the finished rows of that reader.
+"""The summary of each reader that the audit page needs, from the finished rows of that reader.
 
 It is made where the rows are made, in the worker, and is small: its size depends on the number of
 conditions, regions and outcomes, never on the number of fixations. :class:`Profiles` adds the
@@ -8,8 +8,9 @@ summaries up as they arrive.
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
+from itertools import pairwise
 from typing import Literal
 
 import numpy as np
@@ -23,6 +24,7 @@ from etl.report.counts import (
     filled,
     missing_counts,
     rate_counts,
+    reader_of,
 )
 from etl.report.line_trust import LineTally, LineTrust, tally
 from etl.tables import TableDesign
@@ -32,6 +34,7 @@ QUANTILES = (0.10, 0.25, 0.50, 0.75, 0.90)
 #: Drift compares the first and the last third of a reader's trials; with fewer trials than this,
 #: a third would rest on a single trial.
 FEWEST_TRIALS_FOR_DRIFT = 6
+_AT = np.array(QUANTILES)
 
 Ints = NDArray[np.int64]
 Floats = NDArray[np.float64]
@@ -56,7 +59,7 @@ class LineGrid:
 
 @dataclass(frozen=True, slots=True)
 class TrialFates:
-    """What became of each trial of the study that a reader read; skipped ones are not among them.
+    """What became of each trial of the study that was read; skipped ones are not among them.
 
     Attributes
     ----------
@@ -66,11 +69,14 @@ class TrialFates:
         The rule that left the trial out, as its place in ``design.left_out_by``; -1 where kept.
     trust : LineTrust or None
         How far the lines of the trials can be trusted; None where no lines are told apart.
+    starts : (readers + 1,) int64 array, optional
+        Where the trials of each reader begin, and how many there are; None for one reader.
     """
 
     factors: Mapping[str, NDArray[np.int32]]
     left_out_by: NDArray[np.int32]
     trust: LineTrust | None = None
+    starts: Ints | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -206,41 +212,84 @@ def profile_of(
     ReaderProfile
         Of a size that does not depend on the number of fixations.
     """
-    fixations = batches["fixations"]
-    kept = _kept(fixations)
+    starts = {name: np.array([0, batch.num_rows]) for name, batch in batches.items()}
+    (profile,) = profiles_of([participant], (batches, starts), fates, design, (outside, grid))
+    return profile
+
+
+def profiles_of(
+    participants: Sequence[str],
+    tables: tuple[Mapping[str, pa.RecordBatch], Mapping[str, Ints]],
+    fates: TrialFates,
+    design: TableDesign,
+    options: tuple[Literal["ignore", "interrupt"], LineGrid | None],
+) -> list[ReaderProfile]:
+    """Sum up some readers, each alone.
+
+    Parameters
+    ----------
+    participants : sequence of str
+        The readers.
+    tables : tuple of two mappings
+        The finished rows of ``outcomes``, ``outcomes_wide`` and ``fixations``, reader after reader,
+        and for each table where the rows of each reader begin and how many there are.
+    fates : TrialFates
+        What became of the readers' trials.
+    design : TableDesign
+        The tables of the study.
+    options : tuple
+        ``outside`` and ``grid``, as for :func:`profile_of`.
+
+    Returns
+    -------
+    list of ReaderProfile
+        One a reader.
+    """
+    batches, starts = tables
+    outside, grid = options
+    kept = _kept(batches["fixations"], starts["fixations"])
     back, forward = _steps(kept, outside)
-    offset_px, drift_px = _height(kept, grid)
-    skips = _values(batches["outcomes_wide"], "first_pass_skip")
+    heights = _heights(kept, grid)
+    of_cells = reader_of(starts["outcomes_wide"])
+    skips, chances = _skips(batches["outcomes_wide"], of_cells, len(participants))
+    beside = np.bincount(kept.reader[kept.order == 0], minlength=len(participants)).tolist()
+    of_trials = np.array([0, len(fates.left_out_by)]) if fates.starts is None else fates.starts
+    levels = _only_levels(fates, reader_of(of_trials), design, len(participants))
     condition = condition_codes(
         [fates.factors[name] for name in design.factors], design, len(fates.left_out_by)
     )
-    return ReaderProfile(
-        ReaderNumbers(
+    rates = rate_counts(batches["outcomes_wide"], design, of_cells, len(participants))
+    missing = missing_counts(batches["outcomes"], design, starts["outcomes"])
+    fate = list(zip(condition.tolist(), fates.left_out_by.tolist(), strict=True))
+    profiles = []
+    for place, participant in enumerate(participants):
+        rows = slice(*kept.starts[place : place + 2].tolist())
+        trials = slice(*of_trials[place : place + 2].tolist())
+        numbers = ReaderNumbers(
             participant,
-            fixations=len(kept.order),
-            outside=int((kept.order == 0).sum()),
-            durations=_durations(kept.duration_ms),
-            back=back,
-            forward=forward,
-            skips=int((skips == 1).sum()),
-            skip_chances=len(skips),
-            offset_px=offset_px,
-            drift_px=drift_px,
-            levels=_only_levels(fates, design),
-            lines=tally(fates.trust),
-        ),
-        StudyCounts(
-            Counter(zip(condition.tolist(), fates.left_out_by.tolist(), strict=True)),
-            rate_counts(batches["outcomes_wide"], design),
-            missing_counts(batches["outcomes"], design),
-        ),
-    )
+            fixations=rows.stop - rows.start,
+            outside=beside[place],
+            durations=_durations(kept.duration_ms[rows]),
+            back=back[place],
+            forward=forward[place],
+            skips=skips[place],
+            skip_chances=chances[place],
+            offset_px=heights[place][0],
+            drift_px=heights[place][1],
+            levels=levels[place],
+            lines=tally(None if fates.trust is None else fates.trust.of(trials)),
+        )
+        counts = StudyCounts(Counter(fate[trials]), rates[place], missing[place])
+        profiles.append(ReaderProfile(numbers, counts))
+    return profiles
 
 
 @dataclass(frozen=True, slots=True)
 class _Kept:
-    """The kept fixations of one reader in time order; trials are numbered as they stand."""
+    """The kept fixations in time order, reader after reader; trials are numbered as they stand."""
 
+    starts: Ints
+    reader: Ints
     trial: Ints
     duration_ms: Floats
     y_px: Floats
@@ -249,22 +298,27 @@ class _Kept:
     place: Ints
 
 
-def _kept(fixations: pa.RecordBatch) -> _Kept:
+def _kept(fixations: pa.RecordBatch, starts: Ints) -> _Kept:
     """Read the columns of the kept fixations."""
     rows = np.flatnonzero(np.asarray(fixations.column("kept")) == 1)
-    changes = np.zeros(len(fixations), dtype=bool)
+    changes = np.zeros(len(fixations) + 1, dtype=bool)
+    changes[starts[1:]] = True
+    changes = changes[:-1]
     for name in ("session", "trial"):
         if name in fixations.schema.names:
             column = fixations.column(name)
             own = column.indices if pa.types.is_dictionary(column.type) else column
-            values = np.asarray(own)
+            values = filled(own, -1)
             changes[1:] |= values[1:] != values[:-1]
     needed = ["duration_ms", "y_px", "line", "region_order", "source_file", "source_line"]
     whole = fixations.select(needed)
     if len(rows) < len(fixations):
         whole = whole.take(pa.array(rows))
     file = codes_of(whole, "source_file").astype(np.int64)
+    kept_starts = np.searchsorted(rows, starts)
     return _Kept(
+        kept_starts,
+        reader_of(kept_starts),
         np.cumsum(changes)[rows],
         np.asarray(whole.column("duration_ms"), dtype=np.float64),
         filled(whole.column("y_px"), np.nan),
@@ -275,48 +329,82 @@ def _kept(fixations: pa.RecordBatch) -> _Kept:
 
 
 def _durations(duration_ms: Floats) -> Durations | None:
-    """Mean, spread and quantiles."""
-    if len(duration_ms) == 0:
+    """Mean, spread and quantiles.
+
+    As numpy's mean, std and quantile (linear between the order statistics) have them, without their
+    preparations: this is done for every reader.
+    """
+    count = len(duration_ms)
+    if count == 0:
         return None
-    spread = float(np.std(duration_ms, ddof=1)) if len(duration_ms) > 1 else None
+    mean = np.add.reduce(duration_ms) / count
+    apart = duration_ms - mean
+    spread = float(np.sqrt(np.add.reduce(apart * apart) / (count - 1))) if count > 1 else None
     ascending = np.sort(duration_ms)
-    # Linear between the order statistics, as numpy.quantile has it, without its preparations: this
-    # is done for every reader.
-    at = np.array(QUANTILES) * (len(ascending) - 1)
-    quantiles = np.interp(at, np.arange(len(ascending)), ascending)
-    return Durations(float(np.mean(duration_ms)), spread, tuple(quantiles.tolist()))
+    quantiles = np.interp(_AT * (count - 1), np.arange(count), ascending)
+    return Durations(float(mean), spread, tuple(quantiles.tolist()))
 
 
-def _steps(kept: _Kept, outside: str) -> tuple[int, int]:
-    """How many saccades go from a region to an earlier one, and to a later one."""
+def _steps(kept: _Kept, outside: str) -> tuple[list[int], list[int]]:
+    """How many saccades of each reader go to an earlier region, and to a later one."""
     inside = kept.order > 0
-    rows = np.flatnonzero(inside) if outside == "ignore" else np.arange(len(inside))
-    trial, order = kept.trial[rows], kept.order[rows]
+    reader, trial, order = kept.reader, kept.trial, kept.order
+    if outside == "ignore" and not inside.all():
+        rows = np.flatnonzero(inside)
+        reader, trial, order = reader[rows], trial[rows], order[rows]
     between = (trial[1:] == trial[:-1]) & (order[1:] > 0) & (order[:-1] > 0)
-    step = np.diff(order)[between]
-    return int((step < 0).sum()), int((step > 0).sum())
+    readers = len(kept.starts) - 1
+    back, forward = order[1:] < order[:-1], order[1:] > order[:-1]
+    return (
+        np.bincount(reader[1:][between & back], minlength=readers).tolist(),
+        np.bincount(reader[1:][between & forward], minlength=readers).tolist(),
+    )
 
 
-def _height(kept: _Kept, grid: LineGrid | None) -> tuple[float | None, float | None]:
-    """How far below the middle of their lines fixations are, and how that changes."""
+def _heights(kept: _Kept, grid: LineGrid | None) -> list[tuple[float | None, float | None]]:
+    """How far below the middle of their lines each reader's are, and how that changes."""
     distance = _from_own_line(kept) if grid is None else _from_line(kept, grid)
     known = np.isfinite(distance)
-    if not known.any():
-        return None, None
-    offset = None if grid is None else float(np.median(distance[known]))
-    # Trials in the order in which the logs hold them: ids of trials need not be in the order of
-    # reading, and the time in a log may begin anew with every trial.
+    part = _thirds(kept, known)
+    every = []
+    for start, stop in pairwise(kept.starts.tolist()):
+        own, when, there = distance[start:stop], part[start:stop], known[start:stop]
+        offset = None if grid is None or not there.any() else _median(own[there])
+        early, late = own[when == 1], own[when == 2]
+        drift = _median(late) - _median(early) if len(early) else None
+        every.append((offset, drift))
+    return every
+
+
+def _median(values: Floats) -> float:
+    """The median of one or more numbers; numpy's own looks for NaN and more."""
+    half = len(values) // 2
+    if len(values) % 2:
+        return float(np.partition(values, half)[half])
+    middle = np.partition(values, [half - 1, half])[half - 1 : half + 1]
+    return float((middle[0] + middle[1]) / 2)
+
+
+def _thirds(kept: _Kept, known: Flags) -> NDArray[np.int8]:
+    """Which fixations are of the first third of the reader's trials (1), and of the last (2).
+
+    Trials are in the order in which the logs hold them: ids of trials need not be in the order of
+    reading, and the time in a log may begin anew with every trial.
+    """
+    if not len(known):
+        return np.zeros(0, dtype=np.int8)
     first = np.flatnonzero(known)
     first = first[np.diff(kept.trial[first], prepend=-1) != 0]
-    trials = kept.trial[first]
-    if len(trials) < FEWEST_TRIALS_FOR_DRIFT:
-        return offset, None
-    in_order = trials[np.argsort(kept.place[first], kind="stable")]
-    third = len(trials) // 3
+    reader = kept.reader[first]
+    first = first[np.lexsort((kept.place[first], reader))]
+    starts = np.searchsorted(reader, np.arange(len(kept.starts)))
+    count = np.diff(starts)[reader]
+    rank = np.arange(len(first)) - starts[reader]
+    enough, third = count >= FEWEST_TRIALS_FOR_DRIFT, count // 3
     when = np.zeros(int(kept.trial[-1]) + 1, dtype=np.int8)
-    when[in_order[:third]], when[in_order[-third:]] = 1, 2
-    part = np.where(known, when[kept.trial], 0)
-    return offset, float(np.median(distance[part == 2]) - np.median(distance[part == 1]))
+    when[kept.trial[first[enough & (rank < third)]]] = 1
+    when[kept.trial[first[enough & (rank >= count - third)]]] = 2
+    return np.where(known, when[kept.trial], np.int8(0))
 
 
 def _from_line(kept: _Kept, grid: LineGrid) -> Floats:
@@ -325,39 +413,57 @@ def _from_line(kept: _Kept, grid: LineGrid) -> Floats:
     A fixation may be so far off that the build gave it no line; leaving it out would hide just
     what is looked for. So the nearest of the lines up to the last that the trial has fixations on.
     """
-    if len(kept.trial) == 0:
-        return np.zeros(0)
-    last = np.ones(int(kept.trial.max()) + 1, dtype=np.int64)
-    np.maximum.at(last, kept.trial, kept.line)
-    from_top = (kept.y_px - grid.top_px) / grid.height_px
-    known = np.isfinite(from_top)
-    nearest = np.clip(np.floor(np.where(known, from_top, 0)), 0, last[kept.trial] - 1)
-    line = np.where(kept.line > 0, kept.line - 1, nearest)
+    line = kept.line - 1
+    lost = np.flatnonzero(line < 0)
+    if len(lost):
+        last = np.ones(int(kept.trial[-1]) + 1, dtype=np.int64)
+        np.maximum.at(last, kept.trial, kept.line)
+        from_top = (kept.y_px[lost] - grid.top_px) / grid.height_px
+        nearest = np.floor(np.where(np.isfinite(from_top), from_top, 0))
+        line = line.astype(np.float64)
+        line[lost] = np.clip(nearest, 0, last[kept.trial[lost]] - 1)
     return kept.y_px - (grid.top_px + (line + 0.5) * grid.height_px)
 
 
 def _from_own_line(kept: _Kept) -> Floats:
     """Distance of each fixation below the reader's own median height on its line."""
     distance = np.full(len(kept.line), np.nan)
-    for line in np.unique(kept.line[kept.line > 0]).tolist():
-        rows = (kept.line == line) & np.isfinite(kept.y_px)
-        if rows.any():
-            distance[rows] = kept.y_px[rows] - np.median(kept.y_px[rows])
+    rows = np.flatnonzero((kept.line > 0) & np.isfinite(kept.y_px))
+    if not len(rows):
+        return distance
+    key = kept.reader[rows] * (int(kept.line.max()) + 1) + kept.line[rows]
+    rows = rows[np.argsort(key, kind="stable")]
+    key = np.sort(key)
+    starts = np.flatnonzero(np.diff(key, prepend=-1))
+    for own in np.split(rows, starts[1:]):
+        distance[own] = kept.y_px[own] - _median(kept.y_px[own])
     return distance
 
 
-def _values(wide: pa.RecordBatch, measure: str) -> Ints:
-    """The values of an outcome that are not missing; none where it was not asked for."""
-    if measure not in wide.schema.names:
-        return np.zeros(0, dtype=np.int64)
-    return np.asarray(wide.column(measure).drop_null(), dtype=np.int64)
+def _skips(wide: pa.RecordBatch, reader: Ints, readers: int) -> tuple[list[int], list[int]]:
+    """Skips of each reader, and values that are not missing; none where it was not asked for."""
+    if "first_pass_skip" not in wide.schema.names:
+        return [0] * readers, [0] * readers
+    values = filled(wide.column("first_pass_skip"), -1)
+    return (
+        np.bincount(reader[values == 1], minlength=readers).tolist(),
+        np.bincount(reader[values >= 0], minlength=readers).tolist(),
+    )
 
 
-def _only_levels(fates: TrialFates, design: TableDesign) -> dict[str, str]:
-    """The factors of which a reader met one level only, with that level."""
-    levels = {name: np.unique(fates.factors[name]) for name in design.factors}
-    return {
-        name: design.factors[name][int(own[0])]
-        for name, own in levels.items()
-        if len(own) == 1 and own[0] >= 0
-    }
+def _only_levels(
+    fates: TrialFates, reader: Ints, design: TableDesign, readers: int
+) -> list[dict[str, str]]:
+    """The factors of which each reader met one level only, with that level."""
+    found: list[dict[str, str]] = [{} for _ in range(readers)]
+    trials = np.bincount(reader, minlength=readers)
+    some = np.flatnonzero(trials)
+    first = np.searchsorted(reader, some)
+    for name in design.factors:
+        levels = fates.factors[name]
+        met = np.full(readers, -1, dtype=np.int64)
+        met[some] = levels[first]
+        alike = np.bincount(reader, levels == met[reader], minlength=readers) == trials
+        for place in np.flatnonzero(alike & (met >= 0)).tolist():
+            found[place][name] = design.factors[name][int(met[place])]
+    return found

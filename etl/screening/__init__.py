@@ -8,7 +8,7 @@ from etl.screening.screen import (
     Verdict,
     outlying,
     screen_fixations,
-    screen_reader,
+    screen_readers,
     screen_trials,
 )
 
@@ -21,6 +21,6 @@ __all__ = [
     "Verdict",
     "outlying",
     "screen_fixations",
-    "screen_reader",
+    "screen_readers",
     "screen_trials",
 ]

@@ -40,6 +40,8 @@ class Entry(NamedTuple):
         As the ledger shows them.
     row : int
         The fixation whose place in the log is named.
+    reader : int
+        The place of the reader among those of the group.
     """
 
     level: str
@@ -52,17 +54,18 @@ class Entry(NamedTuple):
     action: str
     also: str
     row: int
+    reader: int = 0
 
     @property
-    def place(self) -> tuple[bool, int, int, int, int]:
-        """Where the row stands among those of a reader."""
+    def place(self) -> tuple[int, bool, int, int, int, int]:
+        """Where the row stands among all."""
         level = LEVELS.index(self.level)
-        return (self.trial < 0, self.trial, level, self.fixation, self.region)
+        return (self.reader, self.trial < 0, self.trial, level, self.fixation, self.region)
 
 
 @dataclass(slots=True)
 class Accounts:
-    """What became of the trials or the fixations of a reader.
+    """What became of the trials or the fixations of one or more readers.
 
     Attributes
     ----------
@@ -79,9 +82,36 @@ class Accounts:
     @classmethod
     def of(cls, left_out: NDArray[np.int8]) -> Accounts:
         """Count codes of what left things out; -1 is kept."""
-        counts = np.bincount(left_out.astype(np.int64) + 1, minlength=len(LEFT_OUT_BY) + 1)
-        by_rule = {rule: int(counts[code + 1]) for rule, code in CODE.items() if counts[code + 1]}
-        return cls(len(left_out), int(counts[0]), Counter(by_rule))
+        (accounts,) = cls.of_each(left_out, np.zeros(len(left_out), dtype=np.int64), 1)
+        return accounts
+
+    @classmethod
+    def of_each(
+        cls, left_out: NDArray[np.int8], reader: NDArray[np.int64], readers: int
+    ) -> list[Accounts]:
+        """Count codes of what left things out reader by reader.
+
+        Parameters
+        ----------
+        left_out : (n,) int8 array
+            Codes; -1 is kept.
+        reader : (n,) int64 array
+            Whose each is, from 0.
+        readers : int
+            How many readers there are.
+
+        Returns
+        -------
+        list of Accounts
+            One a reader.
+        """
+        width = len(LEFT_OUT_BY) + 1
+        counts = np.bincount(reader * width + left_out + 1, minlength=readers * width)
+        every = []
+        for own in counts.reshape(readers, width).tolist():
+            by_rule = {rule: own[code + 1] for rule, code in CODE.items() if own[code + 1]}
+            every.append(cls(sum(own), own[0], Counter(by_rule)))
+        return every
 
     def add(self, other: Accounts) -> None:
         """Add the accounts of another reader."""
@@ -96,7 +126,7 @@ class Accounts:
 
 @dataclass(frozen=True, slots=True)
 class Screened:
-    """Everything that screening found out about a reader.
+    """Everything that screening found out about one or more readers.
 
     Attributes
     ----------
@@ -106,37 +136,43 @@ class Screened:
         Number of each fixation in its trial.
     fixations : FixationScreening
         After the rules for fixations.
-    trials, reader : Verdict
+    trials, readers : Verdict
         What the rules for trials and readers say.
     before : (trials,) int8 array
         Code of ``skip`` for trials that are no part of the study, else -1.
+    reader : (trials,) int64 array
+        The reader of each trial, from 0; non-decreasing.
     """
 
     recorded: Recorded
     number: NDArray[np.int64]
     fixations: FixationScreening
     trials: Verdict
-    reader: Verdict
+    readers: Verdict
     before: NDArray[np.int8]
+    reader: NDArray[np.int64]
 
     def trial_codes(self) -> NDArray[np.int8]:
         """What left each trial out: ``skip``, a rule for trials, a rule for readers; -1 kept."""
         codes = np.where(self.before >= 0, self.before, self.trials.left_out)
-        return np.where(codes >= 0, codes, self.reader.left_out[0]).astype(np.int8)
+        return np.where(codes >= 0, codes, self.readers.left_out[self.reader]).astype(np.int8)
 
     def fixation_codes(self) -> NDArray[np.int8]:
         """What left each fixation out; those of a trial or reader left out are charged to that."""
         own = self.fixations.left_out
-        return np.where(own >= 0, own, self.trial_codes()[self.recorded.trial]).astype(np.int8)
+        of_trial = self.trial_codes()
+        if (of_trial < 0).all():
+            return own
+        return np.where(own >= 0, own, of_trial[self.recorded.trial]).astype(np.int8)
 
 
 def entries_of(
     screened: Screened,
     limits: Limits,
-    reasons: tuple[Sequence[str], Sequence[str], str],
+    reasons: tuple[Sequence[str], Sequence[str], Sequence[str]],
     first_row: NDArray[np.int64],
 ) -> list[Entry]:
-    """The rows of the ledger for fixations, trials and the reader.
+    """The rows of the ledger for fixations, trials and readers.
 
     Parameters
     ----------
@@ -146,60 +182,70 @@ def entries_of(
         The study's rules.
     reasons : tuple
         For each trial why it is skipped (``block = practice``) and the experimenter's note, and the
-        note on the reader.
+        note on each reader.
     first_row : (trials,) int64 array
         The first fixation of each trial.
 
     Returns
     -------
     list of Entry
-        Sorted by trial, level and fixation; the reader last.
+        Sorted by reader, trial, level and fixation; of each reader the row on the reader last.
     """
-    skipped, notes, reader_note = reasons
-    above = _also_of_reader(screened)
-    why = _observed_of_reader(screened, reader_note)
+    skipped, notes, reader_notes = reasons
+    above, why = _of_readers(screened, reader_notes)
     entries = [*_fixation_entries(screened, limits, above)]
-    for trial, code in enumerate(screened.trial_codes().tolist()):
-        if code < 0:
-            continue
-        rule = LEFT_OUT_BY[code]
+    codes = screened.trial_codes()
+    for trial in np.flatnonzero(codes >= 0).tolist():
+        rule, reader = LEFT_OUT_BY[int(codes[trial])], int(screened.reader[trial])
         limit, observed = limits.shown.get(rule, ""), ""
-        also = "" if rule == "skip" else _join(_later(screened.trials, trial, rule), above)
+        also = "" if rule == "skip" else _join(_later(screened.trials, trial, rule), above[reader])
         if rule == "skip":
             limit = skipped[trial]
         elif rule == "notes":
             observed = notes[trial]
         elif rule in READER_RULES:
             # The trials of a reader who is left out are told one by one as well.
-            also, observed = " ".join(_later(screened.reader, 0, rule)), why
+            also, observed = " ".join(_later(screened.readers, reader, rule)), why[reader]
         else:
             observed = _number(screened.trials.observed[rule][trial])
         row = int(first_row[trial])
-        entries.append(Entry("trial", trial, -1, -1, rule, limit, observed, LEFT_OUT, also, row))
-    if screened.reader.left_out[0] >= 0:
-        rule = LEFT_OUT_BY[int(screened.reader.left_out[0])]
-        also = " ".join(_later(screened.reader, 0, rule))
-        shown = limits.shown.get(rule, "")
-        entries.append(Entry("participant", -1, -1, -1, rule, shown, why, LEFT_OUT, also, -1))
+        entries.append(
+            Entry("trial", trial, -1, -1, rule, limit, observed, LEFT_OUT, also, row, reader)
+        )
+    for reader in np.flatnonzero(screened.readers.left_out >= 0).tolist():
+        rule = LEFT_OUT_BY[int(screened.readers.left_out[reader])]
+        also = " ".join(_later(screened.readers, reader, rule))
+        limit, observed = limits.shown.get(rule, ""), why[reader]
+        entries.append(
+            Entry("participant", -1, -1, -1, rule, limit, observed, LEFT_OUT, also, -1, reader)
+        )
     return sorted(entries, key=lambda entry: entry.place)
 
 
-def _observed_of_reader(screened: Screened, note: str) -> str:
-    """What the rule that leaves the reader out looked at; empty where none does."""
-    code = int(screened.reader.left_out[0])
-    if code < 0:
-        return ""
-    rule = LEFT_OUT_BY[code]
-    return note if rule == "participant_notes" else _number(screened.reader.observed[rule][0])
+def _of_readers(screened: Screened, notes: Sequence[str]) -> tuple[list[list[str]], list[str]]:
+    """For each reader who is left out: all rules against the reader; what the first looked at."""
+    above: list[list[str]] = [[] for _ in notes]
+    why = [""] * len(notes)
+    for reader in np.flatnonzero(screened.readers.left_out >= 0).tolist():
+        rule = LEFT_OUT_BY[int(screened.readers.left_out[reader])]
+        holds = screened.readers.holds
+        above[reader] = [name for name in holds if holds[name][reader]]
+        why[reader] = (
+            notes[reader]
+            if rule == "participant_notes"
+            else _number(screened.readers.observed[rule][reader])
+        )
+    return above, why
 
 
 class FarValue(NamedTuple):
-    """A value that ``outlier_sd`` sets aside: trial, region code, measure and the value."""
+    """A value that ``outlier_sd`` sets aside: trial, region code, measure, value and reader."""
 
     trial: int
     region: int
     measure: str
     value: float
+    reader: int = 0
 
 
 def with_values(entries: list[Entry], far: Sequence[FarValue], limits: Limits) -> list[Entry]:
@@ -219,13 +265,16 @@ def with_values(entries: list[Entry], far: Sequence[FarValue], limits: Limits) -
             SET_MISSING,
             "",
             -1,
+            one.reader,
         )
         for one in far
     ]
     return sorted([*entries, *added], key=lambda entry: entry.place)
 
 
-def _fixation_entries(screened: Screened, limits: Limits, above: list[str]) -> Iterable[Entry]:
+def _fixation_entries(
+    screened: Screened, limits: Limits, above: Sequence[list[str]]
+) -> Iterable[Entry]:
     """A row for each fixation that a rule for fixations, or a repeated trial, leaves out."""
     own = screened.fixations
     rows = np.flatnonzero(
@@ -235,13 +284,14 @@ def _fixation_entries(screened: Screened, limits: Limits, above: list[str]) -> I
     for row in rows.tolist():
         rule = LEFT_OUT_BY[int(own.left_out[row])]
         trial = int(screened.recorded.trial[row])
+        reader = int(screened.reader[trial])
         also: list[str] = []
         if rule != "repeated":
             later = FIXATION_RULES[FIXATION_RULES.index(rule) + 1 :]
             also = [name for name in later if name in own.holds and own.holds[name][row]]
             if trial_code[trial] >= 0:
                 also += [name for name, holds in screened.trials.holds.items() if holds[trial]]
-            also += above
+            also += above[reader]
         action = LEFT_OUT
         if rule == "merge":
             action = f"merged into {int(screened.number[own.into[row]])}"
@@ -256,6 +306,7 @@ def _fixation_entries(screened: Screened, limits: Limits, above: list[str]) -> I
             action,
             " ".join(also),
             row,
+            reader,
         )
 
 
@@ -275,13 +326,6 @@ def _observed(rule: str, screened: Screened, row: int) -> str:
     return "1"
 
 
-def _also_of_reader(screened: Screened) -> list[str]:
-    """The rules that speak against the reader, where one leaves the reader out."""
-    if screened.reader.left_out[0] < 0:
-        return []
-    return [rule for rule, holds in screened.reader.holds.items() if holds[0]]
-
-
 def _later(verdict: Verdict, at: int, rule: str) -> list[str]:
     """Rules of the same level, after the one that is charged, that hold as well."""
     return [name for name, holds in verdict.holds.items() if holds[at] and CODE[name] > CODE[rule]]
@@ -297,40 +341,52 @@ def _number(value: float) -> str:
 
 
 def check_balance(
-    accounts: Mapping[str, Accounts], entries: Sequence[Entry], kept: Mapping[str, int]
+    accounts: Mapping[str, Sequence[Accounts]],
+    entries: Sequence[Entry],
+    kept: Mapping[str, NDArray[np.int64]],
 ) -> None:
-    """See that accounts, ledger and tables of a reader say the same.
+    """See that accounts, ledger and tables of each reader say the same.
 
     Parameters
     ----------
-    accounts : mapping of str to Accounts
-        Of ``trials`` and ``fixations``.
+    accounts : mapping of str to sequence of Accounts
+        Of ``trials`` and ``fixations``, one a reader.
     entries : sequence of Entry
-        The reader's rows of the ledger.
-    kept : mapping of str to int
-        Rows of the table ``trials``, and rows of ``fixations`` that are kept.
+        The rows of the ledger.
+    kept : mapping of str to (readers,) int64 array
+        For each reader, rows of the table ``trials``, and rows of ``fixations`` that are kept.
 
     Raises
     ------
     FaultError
         If anything is not accounted for. Nothing is published then.
     """
-    told = Counter((entry.level, entry.rule) for entry in entries)
-    for unit, own in accounts.items():
-        if not own.balance() or own.kept != kept[unit]:
-            raise FaultError(
-                f"the accounts of {unit} do not balance: {own.read} read, {own.kept} kept, "
-                f"{kept[unit]} in the tables, left out {dict(own.by_rule)}"
-            )
+    told: Counter[tuple[str, int, str]] = Counter(
+        (entry.level, entry.reader, entry.rule) for entry in entries
+    )
+    for unit, every in accounts.items():
+        for own, there in zip(every, kept[unit].tolist(), strict=True):
+            if not own.balance() or own.kept != there:
+                raise FaultError(
+                    f"the accounts of {unit} do not balance: {own.read} read, {own.kept} kept, "
+                    f"{there} in the tables, left out {dict(own.by_rule)}"
+                )
     for level, unit, rules in (
         ("trial", "trials", ("skip", *TRIAL_RULES, *READER_RULES)),
         ("fixation", "fixations", ("repeated", *FIXATION_RULES)),
     ):
-        for rule in rules:
-            if told[level, rule] != accounts[unit].by_rule[rule]:
+        charged = {
+            (level, reader, rule): count
+            for reader, own in enumerate(accounts[unit])
+            for rule, count in own.by_rule.items()
+            if rule in rules
+        }
+        listed = {key: told[key] for key in told if key[0] == level and key[2] in rules}
+        for key in sorted({*charged, *listed}):
+            if told[key] != charged.get(key, 0):
                 raise FaultError(
-                    f"the ledger has {told[level, rule]} {level} rows for {rule}, the accounts "
-                    f"{accounts[unit].by_rule[rule]}"
+                    f"the ledger has {told[key]} {level} rows for {key[2]}, the accounts "
+                    f"{charged.get(key, 0)}"
                 )
 
 

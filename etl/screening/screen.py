@@ -1,4 +1,4 @@
-"""Screening of one reader: which fixations, trials and values are left out, and by which rule."""
+"""Screening of readers: which fixations, trials and values are left out, and by which rule."""
 
 from __future__ import annotations
 
@@ -15,12 +15,12 @@ Mask = NDArray[np.bool_]
 
 @dataclass(frozen=True, slots=True)
 class Recorded:
-    """The fixations of a reader as recorded, sorted by trial and time.
+    """The fixations of one or more readers as recorded, sorted by trial and time.
 
     Attributes
     ----------
     trial : (n,) int64 array
-        Index into the reader's trials.
+        Index into the readers' trials.
     from_start, from_end : (n,) int64 array
         Place in the recording, from 1, counted from either end.
     onset_ms, duration_ms : (n,) float64 array, milliseconds
@@ -32,6 +32,8 @@ class Recorded:
     undersweep : (n,) bool array, optional
         Whether a return sweep came down here short of the beginning of a line; None where nothing
         is known of lines.
+    reader : (n,) int64 array, optional
+        The reader of each, from 0; None where there is one.
     """
 
     trial: NDArray[np.int64]
@@ -44,6 +46,7 @@ class Recorded:
     blink: Mask
     left_out: NDArray[np.int8]
     undersweep: Mask | None = None
+    reader: NDArray[np.int64] | None = None
 
 
 @dataclass(slots=True)
@@ -82,7 +85,7 @@ def screen_fixations(
     Parameters
     ----------
     recorded : Recorded
-        The fixations of a reader.
+        The fixations.
     text_time_ms : tuple of two (trials,) float64 arrays
         When each trial's text came up and went away, in log time; NaN where unknown.
     limits : Limits
@@ -93,7 +96,7 @@ def screen_fixations(
     FixationScreening
         What is kept, by which rule the rest is left out, and onsets and durations after merging.
     """
-    came, went = (times[recorded.trial] for times in text_time_ms)
+    came, went = text_time_ms
     screened = FixationScreening(
         recorded.left_out.copy(),
         recorded.onset_ms,
@@ -108,7 +111,9 @@ def screen_fixations(
         if rule == "merge":
             holds = _merge(recorded, screened, limits)
         elif rule == "outside_text_time":
-            holds = (recorded.onset_ms < came) | (recorded.onset_ms > went)
+            holds = (recorded.onset_ms < came[recorded.trial]) | (
+                recorded.onset_ms > went[recorded.trial]
+            )
         else:
             holds = _speaks_against(rule, recorded, screened, limits)
         holds &= in_study
@@ -146,7 +151,7 @@ def _merge(recorded: Recorded, screened: FixationScreening, limits: Limits) -> M
         recorded.trial[rows],
         recorded.onset_ms[rows],
         recorded.duration_ms[rows],
-        (recorded.x_px[rows], recorded.y_px[rows]),
+        (recorded.x_px[rows], _heights(recorded, rows)),
         recorded.blink[rows],
         (limits.merge_under_ms, limits.merge_within_px),
     )
@@ -163,9 +168,19 @@ def _merge(recorded: Recorded, screened: FixationScreening, limits: Limits) -> M
     return holds
 
 
+def _heights(recorded: Recorded, rows: NDArray[np.int64]) -> NDArray[np.float64]:
+    """Y of some fixations; 0 for a reader none of whose has one, so that x alone decides."""
+    y = recorded.y_px[rows]
+    if recorded.reader is None or not np.isnan(y).any():
+        return y
+    reader = recorded.reader[rows]
+    some = np.bincount(reader, ~np.isnan(y)) > 0
+    return np.where(some[reader], y, 0.0)
+
+
 @dataclass(frozen=True, slots=True)
 class TrialQuantities:
-    """What the rules for trials look at, one value a trial of the reader.
+    """What the rules for trials and readers look at, one value a trial.
 
     Attributes
     ----------
@@ -181,8 +196,12 @@ class TrialQuantities:
         Whether a blink touches a first pass, or a first pass lacks, that the study asks for.
     answer : (trials,) float64 array
         1 right, 0 wrong, NaN where nothing was asked.
-    cell : (trials,) int64 array
-        Which combination of the factors.
+    cell : (trials,) int64 array, optional
+        Which combination of the factors; None where no rule asks.
+    reader : (trials,) int64 array
+        The reader of each, from 0.
+    readers : int
+        How many readers there are.
     line_confidence : (trials,) float64 array, optional
         How sure the lines of the trial are, from 0 to 1; NaN where no method tells, None where none
         does for any trial.
@@ -196,13 +215,15 @@ class TrialQuantities:
     blink_in_first_pass: Mask
     no_first_pass: Mask
     answer: NDArray[np.float64]
-    cell: NDArray[np.int64]
+    cell: NDArray[np.int64] | None
+    reader: NDArray[np.int64]
+    readers: int
     line_confidence: NDArray[np.float64] | None = None
 
 
 @dataclass(frozen=True, slots=True)
 class Verdict:
-    """What rules say of trials, or of a reader.
+    """What rules say of trials, or of readers.
 
     Attributes
     ----------
@@ -225,14 +246,14 @@ def screen_trials(trials: TrialQuantities, limits: Limits) -> Verdict:
     Parameters
     ----------
     trials : TrialQuantities
-        The trials of a reader after the rules for fixations.
+        The trials after the rules for fixations.
     limits : Limits
         The study's rules.
 
     Returns
     -------
     Verdict
-        Of the length of the reader's trials.
+        Of the length of the trials.
     """
     with np.errstate(invalid="ignore"):
         share = np.where(trials.kept > 0, trials.outside / np.maximum(trials.kept, 1), 0.0)
@@ -263,50 +284,66 @@ def screen_trials(trials: TrialQuantities, limits: Limits) -> Verdict:
     return _judge({r: against[r] for r in TRIAL_RULES if limits.on(r)}, trials.in_study)
 
 
-def screen_reader(trials: TrialQuantities, lost: Mask, noted: bool, limits: Limits) -> Verdict:  # noqa: FBT001
+def screen_readers(trials: TrialQuantities, lost: Mask, noted: Mask, limits: Limits) -> Verdict:
     """Apply the rules for readers, in order.
 
     Parameters
     ----------
     trials : TrialQuantities
-        The trials of the reader.
+        The trials of the readers.
     lost : (trials,) bool array
         The trials that the rules for trials left out.
-    noted : bool
-        Whether the experimenter's notes leave the reader out.
+    noted : (readers,) bool array
+        Whether the experimenter's notes leave each reader out.
     limits : Limits
         The study's rules.
 
     Returns
     -------
     Verdict
-        Of length 1. A share that cannot be computed, for want of trials or answers, speaks against
-        nobody.
+        Of the length of the readers. A share that cannot be computed, for want of trials or
+        answers, speaks against nobody.
     """
     read = trials.in_study
-    answers = trials.answer[read & ~np.isnan(trials.answer)]
-    correct = answers.mean() if answers.size else np.nan
-    lost_share = lost[read].mean() if read.any() else np.nan
-    cells = trials.cell[read]
-    kept = np.bincount(
-        trials.cell[read & ~lost], minlength=int(cells.max()) + 1 if len(cells) else 0
-    )
-    fewest = float(kept[np.unique(cells)].min()) if len(cells) else np.nan
-    with np.errstate(invalid="ignore"):
-        against = {
-            "participant_notes": (noted, float(noted)),
-            "correct_share_under": (correct < limits.correct_share_under, correct),
-            "lost_trials_share_over": (lost_share > limits.lost_trials_share_over, lost_share),
-            "fewest_trials_per_cell": (fewest < limits.fewest_trials_per_cell, fewest),
-        }
-    return _judge(
-        {
-            rule: (np.array([holds], dtype=bool), np.array([observed], dtype=np.float64))
-            for rule, (holds, observed) in against.items()
-            if rule in READER_RULES and limits.on(rule)
-        },
-        np.ones(1, dtype=bool),
-    )
+    against: dict[str, tuple[Mask, NDArray[np.float64]]] = {}
+    for rule in (rule for rule in READER_RULES if limits.on(rule)):
+        if rule == "participant_notes":
+            against[rule] = (noted, noted.astype(np.float64))
+        elif rule == "correct_share_under":
+            correct = _share(trials, trials.answer, read & ~np.isnan(trials.answer))
+            against[rule] = (correct < limits.correct_share_under, correct)
+        elif rule == "lost_trials_share_over":
+            share = _share(trials, lost, read)
+            against[rule] = (share > limits.lost_trials_share_over, share)
+        else:
+            fewest = _fewest_per_cell(trials, read, lost)
+            against[rule] = (fewest < limits.fewest_trials_per_cell, fewest)
+    return _judge(against, np.ones(trials.readers, dtype=bool))
+
+
+def _share(
+    trials: TrialQuantities, counted: NDArray[np.float64] | Mask, among: Mask
+) -> NDArray[np.float64]:
+    """For each reader the mean over some of the trials; NaN where there are none."""
+    own = trials.reader[among]
+    every = np.bincount(own, minlength=trials.readers)
+    some = np.bincount(own, counted[among], minlength=trials.readers)
+    return np.where(every > 0, some / np.maximum(every, 1), np.nan)
+
+
+def _fewest_per_cell(trials: TrialQuantities, read: Mask, lost: Mask) -> NDArray[np.float64]:
+    """For each reader the kept trials of the combination of factors that has the fewest.
+
+    Of the combinations that the reader met; NaN for a reader without trials.
+    """
+    cell = np.zeros(len(read), dtype=np.int64) if trials.cell is None else trials.cell
+    width = int(cell.max(initial=0)) + 1
+    place = trials.reader * width + cell
+    shape = (trials.readers, width)
+    met = np.bincount(place[read], minlength=trials.readers * width).reshape(shape) > 0
+    kept = np.bincount(place[read & ~lost], minlength=trials.readers * width).reshape(shape)
+    fewest = np.where(met, kept, np.inf).min(axis=1)
+    return np.where(np.isfinite(fewest), fewest, np.nan)
 
 
 def _judge(against: dict[str, tuple[Mask, NDArray[np.float64]]], judged: Mask) -> Verdict:

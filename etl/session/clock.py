@@ -60,7 +60,7 @@ def tell_long_gaps(
 
 def tell_overlapping_trials(
     log: CanonicalLog,
-    file: NDArray[np.int32],
+    file: NDArray[np.integer],
     trial: NDArray[np.int64],
     place: Place,
     tolerated_ms: float,
@@ -72,8 +72,8 @@ def tell_overlapping_trials(
     ----------
     log : CanonicalLog
         The fixations of one reader, in the order of the logs.
-    file : (n,) int32 array
-        Which log each is from.
+    file : (n,) integer array
+        Which log each is from; a log that holds several readers is another for each.
     trial : (n,) int64 array
         Which trial.
     place : callable
@@ -87,27 +87,31 @@ def tell_overlapping_trials(
     if count < 2 or np.isnan(onset[0]):
         return
     change = np.flatnonzero((trial[1:] != trial[:-1]) & (file[1:] == file[:-1])) + 1
-    for own in np.unique(file[change]).tolist():
-        at = change[file[change] == own]
+    over = np.round(
+        onset[change - 1] + log.duration_ms[change - 1] - onset[change],
+        DIFFERENCE_DIGITS,
+    )
+    late = over > tolerated_ms
+    if not late.any():
+        return
+    of_file = file[change]
+    for own in np.unique(of_file[late]).tolist():
+        at = change[of_file == own]
         if len(at) < _TRIALS_IN_A_ROW or not _runs_on(onset, at):
             continue
-        over = np.round(
-            onset[at - 1] + log.duration_ms[at - 1] - onset[at],
-            DIFFERENCE_DIGITS,
-        )
-        for row, by_ms in zip(at.tolist(), over.tolist(), strict=True):
-            if by_ms > tolerated_ms:
-                shown, line = place(row - 1)
-                after = place(row)
-                findings.error(
-                    "the fixation is not over when the next trial's first one begins",
-                    path=shown,
-                    line=line,
-                    found=f"{by_ms:g} ms too late",
-                    expected=f"an end before the onset in {after[0]}:{after[1]}",
-                    fix="check that onset and duration are the right columns with the right "
-                    "units, and the two cells",
-                )
+        mine = late & (of_file == own)
+        for row, by_ms in zip(change[mine].tolist(), over[mine].tolist(), strict=True):
+            shown, line = place(row - 1)
+            after = place(row)
+            findings.error(
+                "the fixation is not over when the next trial's first one begins",
+                path=shown,
+                line=line,
+                found=f"{by_ms:g} ms too late",
+                expected=f"an end before the onset in {after[0]}:{after[1]}",
+                fix="check that onset and duration are the right columns with the right "
+                "units, and the two cells",
+            )
 
 
 def _runs_on(onset: NDArray[np.float64], change: Sequence[int] | NDArray[np.int64]) -> bool:

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from etl.report import GalleryEntry, LineTrust, UnsureTrial
 from etl.report.trace_picture import draw
 from etl.screening.ledger import Screened
-from etl.screening.rules import LEFT_OUT_BY, TRIAL_RULES
+from etl.screening.rules import CODE, LEFT_OUT_BY, TRIAL_RULES
 
 if TYPE_CHECKING:
     from etl.session.reader import ReaderTables
@@ -71,18 +71,18 @@ class Candidate(NamedTuple):
 
 
 def candidates(
-    participant: str,
+    participants: Sequence[str],
     screened: Screened,
     outside: NDArray[np.bool_],
     regressions: NDArray[np.int64],
     trust: LineTrust | None = None,
-) -> list[Candidate]:
-    """The trials of one reader that may be worth looking at: the utmost of each kind.
+) -> list[list[Candidate]]:
+    """The trials of each reader that may be worth looking at: the utmost of each kind.
 
     Parameters
     ----------
-    participant : str
-        The reader.
+    participants : sequence of str
+        The readers.
     screened : Screened
         What was left out.
     outside : (n,) bool array
@@ -94,18 +94,16 @@ def candidates(
 
     Returns
     -------
-    list of Candidate
+    list of list of Candidate
+        One a reader; trials are counted within the reader's.
     """
-    codes = screened.trial_codes()
-    found = [
-        Candidate(LEFT_OUT_BY[code], 1.0, participant, int(np.flatnonzero(codes == code)[0]))
-        for code in np.unique(codes).tolist()
-        if code >= 0 and LEFT_OUT_BY[code] in TRIAL_RULES
-    ]
-    found += _unsure(participant, trust)
-    kept_trials = codes < 0
-    if not kept_trials.any():
-        return found
+    codes, reader = screened.trial_codes(), screened.reader
+    starts = np.searchsorted(reader, np.arange(len(participants)))
+    found = _of_rules(participants, codes, reader, starts)
+    if trust is not None:
+        stops = [*starts[1:].tolist(), len(reader)]
+        for place, (start, stop) in enumerate(zip(starts.tolist(), stops, strict=True)):
+            found[place] += _unsure(participants[place], trust.of(slice(start, stop)))
     trial, width = screened.recorded.trial, len(codes)
     gone = screened.fixations.left_out
     read = np.maximum(np.bincount(trial, minlength=width), 1)
@@ -117,17 +115,38 @@ def candidates(
         "fixations": kept.astype(np.float64),
     }
     for reason, score in scores.items():
-        own = np.where(kept_trials, score, -1.0)
-        best = int(own.argmax())
-        if own[best] > 0:
-            found.append(Candidate(reason, float(own[best]), participant, best))
+        own = np.where(codes < 0, score, -1.0)
+        most = np.maximum.reduceat(own, starts)
+        # The first trial of each reader that has the most.
+        best = np.flatnonzero((own == most[reader]) & (own > 0))
+        first = np.flatnonzero(np.diff(reader[best], prepend=-1))
+        for row in best[first].tolist():
+            place = int(reader[row])
+            within = row - int(starts[place])
+            found[place].append(Candidate(reason, float(own[row]), participants[place], within))
     return found
 
 
-def _unsure(participant: str, trust: LineTrust | None) -> list[Candidate]:
+def _of_rules(
+    participants: Sequence[str],
+    codes: NDArray[np.int8],
+    reader: NDArray[np.int64],
+    starts: NDArray[np.int64],
+) -> list[list[Candidate]]:
+    """For each reader the first trial that each rule for trials left out."""
+    found: list[list[Candidate]] = [[] for _ in participants]
+    rows = np.flatnonzero((codes >= CODE[TRIAL_RULES[0]]) & (codes <= CODE[TRIAL_RULES[-1]]))
+    _, first = np.unique(reader[rows] * len(LEFT_OUT_BY) + codes[rows], return_index=True)
+    for row in rows[first].tolist():
+        place = int(reader[row])
+        within = row - int(starts[place])
+        rule = LEFT_OUT_BY[int(codes[row])]
+        found[place].append(Candidate(rule, 1.0, participants[place], within))
+    return found
+
+
+def _unsure(participant: str, trust: LineTrust) -> list[Candidate]:
     """The trials of one reader that are not sure of their lines, the least sure first."""
-    if trust is None:
-        return []
     rows = np.flatnonzero(trust.unsure)
     rows = rows[np.argsort(trust.confidence[rows], kind="stable")][:_UNSURE_NAMED]
     return [

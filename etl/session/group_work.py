@@ -4,17 +4,17 @@ from __future__ import annotations
 
 from collections import deque
 from collections.abc import Generator, Iterator, Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 from etl.export.parts import Part, PartMaker
 from etl.regions import RegionLibrary
+from etl.session.bench import Bench
 from etl.session.crew import Crew, Progress
 from etl.session.gather import Gathered
+from etl.session.joined_readers import group_of
 from etl.session.kept_logs import Shelf
-from etl.session.one_reader import Bench
 from etl.session.reader import Options, ReaderTables
 from etl.session.reader_groups import GroupTask, group_sizes, group_tasks, without_values
-from etl.session.work import ReaderWork
 from etl.tables import TableDesign
 
 
@@ -69,13 +69,11 @@ class GroupWork:
     def __call__(self, task: GroupTask) -> GroupAnswer:
         """Finish one group."""
         bench = Bench(task.own.design(self._design), self._library, self._options)
-        work = ReaderWork(bench, self._shelf)
-        readers = [work(reader, page=self._write) for reader in task.readers]
-        wrong = any(tables.findings.failed for tables in readers)
+        done = bench.tables(group_of(task.readers, self._shelf), page=self._write)
         parts = {}
-        if self._write and not wrong:
-            parts = self._parts.parts([tables.batches for tables in readers])
-        return GroupAnswer([replace(tables, batches={}) for tables in readers], parts)
+        if self._write and not any(tables.findings.failed for tables in done.readers):
+            parts = self._parts.parts([done.batches])
+        return GroupAnswer(done.readers, parts)
 
 
 def finish_groups(

@@ -40,37 +40,52 @@ class Unlisted:
 
 
 def unlisted_labels(
-    log: CanonicalLog, file: NDArray[np.int32], in_study: NDArray[np.bool_], known: Collection[str]
-) -> dict[str, Unlisted]:
-    """The labels of a reader's fixations that no definition lists.
+    log: CanonicalLog,
+    file: NDArray[np.int32],
+    in_study: NDArray[np.bool_],
+    known: Collection[str],
+    readers: tuple[NDArray[np.int64], Sequence[Sequence[str]]],
+) -> list[dict[str, Unlisted]]:
+    """The labels of fixations that no definition lists.
 
     Parameters
     ----------
     log : CanonicalLog
-        The fixations of one reader.
+        The fixations of some readers, one reader after the other.
     file : (n,) int32 array
         The log of each, by its place among the study's.
     in_study : (n,) bool array
         Whether each belongs to a trial of the study.
     known : collection of str
         The labels that are listed.
+    readers : tuple of (n,) int64 array and sequence of sequence of str
+        The reader of each fixation, and the labels of each reader's logs, in their order.
 
     Returns
     -------
-    dict of str to Unlisted
-        By label.
+    list of dict of str to Unlisted
+        For each reader, by label.
     """
-    found: dict[str, Unlisted] = {}
+    reader, labels = readers
+    found: list[dict[str, Unlisted]] = [{} for _ in labels]
     if log.label is None:
         return found
-    for code, label in enumerate(log.label.values):
-        if label in known:
-            continue
-        rows = np.flatnonzero((log.label.codes == code) & in_study)
-        if rows.size:
-            first = int(rows[0])
-            found[label] = Unlisted(len(rows), int(file[first]), int(log.source_line[first]))
-    return found
+    values, codes = log.label.values, log.label.codes
+    strange = ~log.label.among(known) & (codes >= 0) & in_study
+    rows = np.flatnonzero(strange)
+    places, first, counts = np.unique(
+        reader[rows] * len(values) + codes[rows], return_index=True, return_counts=True
+    )
+    for place, row, count in zip(
+        places.tolist(), rows[first].tolist(), counts.tolist(), strict=True
+    ):
+        own, code = divmod(place, len(values))
+        found[own][values[code]] = Unlisted(count, int(file[row]), int(log.source_line[row]))
+    # In the order of the reader's own logs, whoever the other readers are.
+    return [
+        {label: own[label] for label in listed if label in own} if own else own
+        for own, listed in zip(found, labels, strict=True)
+    ]
 
 
 def tell_unlisted(

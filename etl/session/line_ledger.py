@@ -38,7 +38,7 @@ def with_lines(entries: list[Entry], screened: Screened, lines: ReaderLines | No
     Parameters
     ----------
     entries : list of Entry
-        The rows of the reader so far, in order.
+        The rows so far, in order.
     screened : Screened
         What screening found out.
     lines : ReaderLines or None
@@ -76,7 +76,8 @@ def with_lines(entries: list[Entry], screened: Screened, lines: ReaderLines | No
 def _entry(screened: Screened, row: int, rule: str, observed: str, action: str) -> Entry:
     """A row about one fixation."""
     trial, number = int(screened.recorded.trial[row]), int(screened.number[row])
-    return Entry("fixation", trial, -1, number, rule, "", observed, action, "", row)
+    reader = int(screened.reader[trial])
+    return Entry("fixation", trial, -1, number, rule, "", observed, action, "", row, reader)
 
 
 def _on_none(screened: Screened, lines: ReaderLines) -> NDArray[np.bool_]:
@@ -102,18 +103,18 @@ def check_lines(
     lines: ReaderLines | None,
     fixations: pa.RecordBatch,
 ) -> None:
-    """See that ledger and table say the same of lines.
+    """See that ledger and table say the same of the lines of each reader.
 
     Parameters
     ----------
     entries : sequence of Entry
-        The reader's rows of the ledger.
+        The rows of the ledger.
     screened : Screened
         What screening found out.
     lines : ReaderLines or None
         How lines were told.
     fixations : pa.RecordBatch
-        The reader's rows of ``fixations``.
+        The rows of ``fixations``.
 
     Raises
     ------
@@ -123,7 +124,6 @@ def check_lines(
     """
     if lines is None:
         return
-    told = Counter(entry.rule for entry in entries if entry.rule in LINE_RULES)
     in_table = pc.and_(pc.is_null(fixations.column("line")), pc.is_null(fixations.column("region")))
     on_none = _on_none(screened, lines)
     if (
@@ -132,35 +132,55 @@ def check_lines(
         .all()
     ):
         raise FaultError("a fixation that belongs to no line has a line or a region in the tables")
-    for rule, wanted in ((NO_LINE, on_none.sum()), (CORRECTED, lines.by_hand.sum())):
-        if told[rule] != int(wanted):
-            raise FaultError(f"the ledger has {told[rule]} rows for {rule}, of {int(wanted)}")
+    told = _told(entries)
+    reader, readers = screened.reader[screened.recorded.trial], len(screened.readers.left_out)
+    for rule, which in ((NO_LINE, on_none), (CORRECTED, lines.by_hand)):
+        wanted = np.bincount(reader[which], minlength=readers).tolist()
+        for place, count in enumerate(wanted):
+            if told[place, rule] != count:
+                raise FaultError(f"the ledger has {told[place, rule]} rows for {rule}, of {count}")
 
 
-def counts_of_lines(entries: Sequence[Entry], lines: ReaderLines | None) -> dict[str, int]:
-    """What is counted about the lines of a reader.
+def _told(entries: Sequence[Entry]) -> Counter[tuple[int, str]]:
+    """How many rows the ledger has about lines, by reader and rule."""
+    return Counter((entry.reader, entry.rule) for entry in entries if entry.rule in LINE_RULES)
+
+
+def counts_of_lines(
+    entries: Sequence[Entry], screened: Screened, lines: ReaderLines | None
+) -> list[dict[str, int]]:
+    """What is counted about the lines of each reader.
 
     Parameters
     ----------
     entries : sequence of Entry
-        The reader's rows of the ledger.
+        The rows of the ledger.
+    screened : Screened
+        What screening found out.
     lines : ReaderLines or None
         How lines were told; None counts nothing.
 
     Returns
     -------
-    dict of str to int
+    list of dict of str to int
+        One a reader.
     """
+    readers = len(screened.readers.left_out)
     if lines is None:
-        return {}
-    told = Counter(entry.rule for entry in entries if entry.rule in LINE_RULES)
-    judged = np.isfinite(lines.trial_confidence)
-    return {
-        ON_NONE: told[NO_LINE],
-        BY_HAND: told[CORRECTED],
-        JUDGED: int(judged.sum()),
-        SURE: int((judged & lines.sure).sum()),
-    }
+        return [{} for _ in range(readers)]
+    told = _told(entries)
+    is_judged = np.isfinite(lines.trial_confidence)
+    judged = np.bincount(screened.reader[is_judged], minlength=readers).tolist()
+    sure = np.bincount(screened.reader[is_judged & lines.sure], minlength=readers).tolist()
+    return [
+        {
+            ON_NONE: told[place, NO_LINE],
+            BY_HAND: told[place, CORRECTED],
+            JUDGED: judged[place],
+            SURE: sure[place],
+        }
+        for place in range(readers)
+    ]
 
 
 def notice_lines(counts: Mapping[str, int], study: Study, findings: Findings) -> None:

@@ -1,4 +1,4 @@
-"""How far the lines of a reader's trials can be trusted, for what is told of them."""
+"""How far the lines of trials can be trusted, for what is told of them."""
 
 from __future__ import annotations
 
@@ -14,7 +14,7 @@ if TYPE_CHECKING:
 
 
 def trust_of(lines: ReaderLines | None, trial: NDArray[np.int64]) -> LineTrust | None:
-    """How far each trial of a reader can be trusted.
+    """How far each trial can be trusted.
 
     Parameters
     ----------

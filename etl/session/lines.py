@@ -56,12 +56,12 @@ class LineChoice:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class HandLines:
-    """The lines of some of a reader's fixations that were set by hand.
+    """The lines of some fixations that were set by hand.
 
     Attributes
     ----------
     trial : (k,) int64 array
-        Index into the reader's trials.
+        Index into the trials of the reader, or of the group of readers.
     fixation : (k,) int64 array
         Number of the fixation in its trial, from 1.
     line : (k,) int32 array
@@ -77,6 +77,12 @@ class HandLines:
 
     def __len__(self) -> int:
         return len(self.trial)
+
+    def take(self, rows: NDArray[np.integer] | Mask) -> HandLines:
+        """Some of them."""
+        return HandLines(
+            self.trial[rows], self.fixation[rows], self.line[rows], self.source_line[rows]
+        )
 
 
 #: A reader whom nobody corrected.

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.session.far_off import FEWEST_PLACED, medians_of_others
-from etl.session.reader import Reader
+from etl.session.reader import ReaderGroup
 
 #: A log that has at least this share of its fixations outside every region, while the other logs
 #: have less than that one in the middle, was recorded in other coordinates (our choice: a text that
@@ -21,19 +21,19 @@ _FEWEST_OF_ALL = 5
 
 
 def outside_by_log(
-    reader: Reader,
+    group: ReaderGroup,
     trial: NDArray[np.int64],
     file: NDArray[np.int32],
     places: tuple[NDArray[np.int32], NDArray[np.bool_]],
-) -> dict[int, tuple[int, int]]:
+) -> list[dict[int, tuple[int, int]]]:
     """For each log, how many fixations have a position, and how many of these are in no region.
 
     What the experimenter has a note on is known to be odd already.
 
     Parameters
     ----------
-    reader : Reader
-        Fixations and trials of one reader.
+    group : ReaderGroup
+        Fixations and trials of some readers.
     trial : (n,) int64 array
         Index of each fixation's trial.
     file : (n,) int32 array
@@ -43,18 +43,30 @@ def outside_by_log(
 
     Returns
     -------
-    dict of int to (int, int)
-        By log.
+    list of dict of int to (int, int)
+        For each reader, by log; nothing for one on whom there is a note.
     """
-    if reader.note:
-        return {}
     order, placed = places
-    judged = (reader.trials.text >= 0) & np.array([not note for note in reader.trials.notes])
+    judged = (group.trials.text >= 0) & np.array([not note for note in group.trials.notes])
     counted = placed & judged[trial]
-    files, which = np.unique(file, return_inverse=True)
-    every = np.bincount(which[counted], minlength=len(files)).tolist()
-    outside = np.bincount(which[counted & (order == 0)], minlength=len(files)).tolist()
-    return dict(zip(files.tolist(), zip(every, outside, strict=True), strict=True))
+    found: list[dict[int, tuple[int, int]]] = [{} for _ in group.participants]
+    if not len(file):
+        return found
+    # A reader's rows are mostly of one log, so that there are few stretches to be added up.
+    reader = group.reader_of_row
+    starts = np.flatnonzero(
+        np.concatenate([[True], (reader[1:] != reader[:-1]) | (file[1:] != file[:-1])])
+    )
+    every = np.add.reduceat(counted, starts, dtype=np.int64)
+    outside = np.add.reduceat(counted & (order == 0), starts, dtype=np.int64)
+    for own, log, some, beside in zip(
+        *(reader[starts].tolist(), file[starts].tolist(), every.tolist(), outside.tolist()),
+        strict=True,
+    ):
+        if not group.notes[own]:
+            known = found[own].get(log, (0, 0))
+            found[own][log] = (known[0] + some, known[1] + beside)
+    return [dict(sorted(own.items())) for own in found]
 
 
 def refuse_misplaced(

@@ -1,9 +1,9 @@
-"""The fixations of one reader in time order, trial by trial; trials recorded twice."""
+"""The fixations of readers in time order, trial by trial; trials recorded twice."""
 
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -21,39 +21,64 @@ OVERLAP_TOLERATED_MS = 2.0
 
 @dataclass(frozen=True, slots=True)
 class OrderedFixations:
-    """All fixations of a reader, sorted by trial and time.
+    """All fixations of one or more readers, sorted by trial and time.
 
     Attributes
     ----------
     rows : (n,) int64 array
         Row of each fixation in the log.
     trial : (n,) int64 array
-        Index into the reader's trials; non-decreasing.
+        Index into the readers' trials; non-decreasing.
     number : (n,) int64 array
         Number of the fixation in its trial, from 1.
     repeated : (n,) bool array
         Whether it belongs to a recording of a trial that is not the one used.
-    overlaps : int
-        Fixations that reach into the next one by no more than is tolerated.
-    moved : dict of int to (int, int)
-        For each log, by its place among the study's, in which rows did not stand in the order of
-        their numbers: how many are elsewhere now, and the first line of these.
-    gaps : dict of int to (int, int)
-        The same for fixations before which a number is left out.
+    overlapping : (n,) bool array
+        Whether the fixation before it reaches into it by no more than is tolerated.
+    moved : (n,) bool array
+        Whether another row stood here, where rows did not stand in the order of their numbers.
+    gap : (n,) bool array
+        Whether a number is left out before it.
     """
 
     rows: NDArray[np.int64]
     trial: NDArray[np.int64]
     number: NDArray[np.int64]
     repeated: NDArray[np.bool_]
-    overlaps: int
-    moved: dict[int, tuple[int, int]] = field(default_factory=dict)
-    gaps: dict[int, tuple[int, int]] = field(default_factory=dict)
+    overlapping: NDArray[np.bool_]
+    moved: NDArray[np.bool_]
+    gap: NDArray[np.bool_]
+
+    @classmethod
+    def joined(cls, parts: Sequence[OrderedFixations], trials: Sequence[int]) -> OrderedFixations:
+        """The fixations of several readers, one below the other.
+
+        Parameters
+        ----------
+        parts : sequence of OrderedFixations
+            Of each reader alone; at least one.
+        trials : sequence of int
+            Where the trials of each begin among those of all.
+
+        Returns
+        -------
+        OrderedFixations
+        """
+        starts = np.cumsum([0, *(len(part.rows) for part in parts)])
+        return cls(
+            np.concatenate([p.rows + start for p, start in zip(parts, starts[:-1], strict=True)]),
+            np.concatenate([p.trial + first for p, first in zip(parts, trials, strict=True)]),
+            np.concatenate([part.number for part in parts]),
+            np.concatenate([part.repeated for part in parts]),
+            np.concatenate([part.overlapping for part in parts]),
+            np.concatenate([part.moved for part in parts]),
+            np.concatenate([part.gap for part in parts]),
+        )
 
 
 @dataclass(frozen=True, slots=True)
 class TrialNames:
-    """The trials of a reader, for messages.
+    """The trials of readers, for messages.
 
     Attributes
     ----------
@@ -69,7 +94,7 @@ class TrialNames:
 
 @dataclass(frozen=True, slots=True)
 class ReaderLog:
-    """The log of one reader.
+    """The logs of one or more readers.
 
     Attributes
     ----------
@@ -80,13 +105,16 @@ class ReaderLog:
     shown : sequence of str
         The files' names for messages.
     trial : (n,) int64 array
-        Index of each row's trial into the reader's trials.
+        Index of each row's trial into the readers' trials.
+    part : (n,) integer array
+        A number for each reader and file: rows of one file are looked at reader by reader.
     """
 
     log: CanonicalLog
     file: NDArray[np.int32]
     shown: Sequence[str]
     trial: NDArray[np.int64]
+    part: NDArray[np.integer]
 
     def place(self, row: int) -> tuple[str, int]:
         """File and line of a row."""
@@ -96,14 +124,15 @@ class ReaderLog:
 def order_fixations(
     reader: ReaderLog, trials: TrialNames, repeated: str, findings: Findings
 ) -> OrderedFixations:
-    """Bring a reader's fixations into time order and find trials that were recorded twice.
+    """Bring fixations into time order and find trials that were recorded twice.
 
     Parameters
     ----------
     reader : ReaderLog
-        The fixations as logged.
+        The fixations as logged. Where they are several readers', their logs all hold numbers, or
+        none does, and so with onsets, and with what logs say of recordings.
     trials : TrialNames
-        The reader's trials, in the order of the tables.
+        The readers' trials, in the order of the tables.
     repeated : {"error", "first", "last"}
         What is done with a trial that was recorded more than once.
     findings : Findings
@@ -121,17 +150,8 @@ def order_fixations(
     """
     log = reader.log
     count = len(log)
-    by_trial = np.argsort(reader.trial, kind="stable")
-    trial = reader.trial[by_trial]
-    logged = Rows(
-        by_trial,
-        trial,
-        reader.file[by_trial],
-        log.onset_ms[by_trial],
-        log.duration_ms[by_trial],
-        log.number[by_trial],
-        log.recording[by_trial],
-    )
+    logged, by_trial = _by_trial(reader)
+    trial = logged.trial
     begins = logged.begins()
     numbered = count > 0 and not np.isnan(log.number[0])
     found = find_recordings(logged)
@@ -139,25 +159,26 @@ def order_fixations(
     mixed = _tell_faults(reader, trials, by_trial, first_faults(logged, found), findings)
     _notice_straddling(reader, trials, by_trial, starts | begins, findings)
     recording = np.cumsum(starts | begins)
-    key = log.number if numbered else log.onset_ms
+    key = logged.number if numbered else logged.onset_ms
     rows = by_trial
-    if ((np.diff(key[by_trial]) < 0) & (np.diff(recording) == 0)).any():
+    begins_recording = starts | begins
+    if ((key[1:] < key[:-1]) & ~begins_recording[1:]).any():
         # Recordings count up in file order, so sorting by recording keeps trials together.
-        order = np.lexsort((key[by_trial], recording))
+        order = np.lexsort((key, recording))
         rows, recording, trial = by_trial[order], recording[order], trial[order]
-    begins_recording = np.ones(count, dtype=bool)
-    begins_recording[1:] = recording[1:] != recording[:-1]
-    overlaps = 0
+        begins_recording = np.ones(count, dtype=bool)
+        begins_recording[1:] = recording[1:] != recording[:-1]
+    overlapping = np.zeros(count, dtype=bool)
     # What is wrong with a trial's rows is told once.
     settled = starts | begins | mixed[logged.trial]
     in_order = numbered or _file_order_is_right(reader, by_trial, settled, findings)
     # Onsets that go back are sorted by now, and what overlaps then says nothing more.
     if in_order and count and not np.isnan(log.onset_ms[0]):
         told = begins_recording | mixed[trial]
-        overlaps = _check_times(reader, rows, told, numbered, findings)
+        overlapping = _check_times(reader, rows, told, numbered, findings)
         tell_long_gaps(log, rows, told | ~trials.in_study[trial], reader.place, findings)
         tell_overlapping_trials(
-            log, reader.file, reader.trial, reader.place, OVERLAP_TOLERATED_MS, findings
+            log, reader.part, reader.trial, reader.place, OVERLAP_TOLERATED_MS, findings
         )
     aside = _recordings_set_aside(
         reader,
@@ -168,27 +189,47 @@ def order_fixations(
     )
     first = np.flatnonzero(begins)
     number = np.arange(count) - np.repeat(first, np.diff(np.append(first, count))) + 1
-    skips = np.zeros(count, dtype=bool)
+    gap = np.zeros(count, dtype=bool)
     if numbered:
-        skips[1:] = (np.diff(log.number[rows]) > 1) & ~begins_recording[1:]
-    return OrderedFixations(
-        rows,
+        own = log.number[rows]
+        gap[1:] = (own[1:] - own[:-1] > 1) & ~begins_recording[1:]
+    return OrderedFixations(rows, trial, number, aside, overlapping, rows != by_trial, gap)
+
+
+def _by_trial(reader: ReaderLog) -> tuple[Rows, NDArray[np.int64]]:
+    """The rows sorted by trial, and where each stands in the logs."""
+    log, trial, by_trial = reader.log, reader.trial, np.arange(len(reader.trial))
+    logged = Rows(
+        by_trial,
         trial,
-        number,
-        aside,
-        overlaps,
-        _by_log(reader, rows[rows != by_trial]),
-        _by_log(reader, rows[skips]),
+        reader.part,
+        log.onset_ms,
+        log.duration_ms,
+        log.number,
+        log.recording,
     )
+    if (trial[1:] >= trial[:-1]).all():
+        return logged, by_trial
+    by_trial = np.argsort(trial, kind="stable")
+    return logged.take(by_trial), by_trial
 
 
-def _by_log(reader: ReaderLog, rows: NDArray[np.int64]) -> dict[int, tuple[int, int]]:
-    """For each log, how many of some rows are from it, and the first line of these."""
-    files = reader.file[rows]
-    lines = reader.log.source_line[rows]
+def by_log(file: NDArray[np.int32], line: NDArray[np.int32]) -> dict[int, tuple[int, int]]:
+    """For each log, how many of some rows are from it, and the first line of these.
+
+    Parameters
+    ----------
+    file, line : (k,) int32 arrays
+        The log of each row, by its place among the study's, and the line in it.
+
+    Returns
+    -------
+    dict of int to (int, int)
+        By log.
+    """
     return {
-        file: (int((files == file).sum()), int(lines[files == file].min()))
-        for file in np.unique(files).tolist()
+        own: (int((file == own).sum()), int(line[file == own].min()))
+        for own in np.unique(file).tolist()
     }
 
 
@@ -256,7 +297,7 @@ def _notice_straddling(
     findings: Findings,
 ) -> None:
     """Note every trial that goes on in another file."""
-    file = reader.file[by_trial]
+    file = reader.part[by_trial]
     for at in (np.flatnonzero((file[1:] != file[:-1]) & ~starts[1:]) + 1).tolist():
         index = int(reader.trial[by_trial[at]])
         if trials.in_study[index]:
@@ -310,8 +351,8 @@ def _check_times(
     begins: NDArray[np.bool_],
     numbered: bool,  # noqa: FBT001
     findings: Findings,
-) -> int:
-    """Fixations must not overlap; how many do within what is tolerated."""
+) -> NDArray[np.bool_]:
+    """Fixations must not overlap; which are reached into within what is tolerated."""
     log = reader.log
     onset = log.onset_ms[rows]
     end = onset + log.duration_ms[rows]
@@ -344,7 +385,9 @@ def _check_times(
             fix="check that onset and duration are the right columns with the right units, and "
             "that only one eye is read ([logs.where])",
         )
-    return int(((over > 0) & (over <= OVERLAP_TOLERATED_MS)).sum())
+    overlapping = np.zeros(len(rows), dtype=bool)
+    overlapping[1:] = (over > 0) & (over <= OVERLAP_TOLERATED_MS)
+    return overlapping
 
 
 def _ms(time_ms: np.float64) -> str:
@@ -361,18 +404,17 @@ def _recordings_set_aside(
 ) -> NDArray[np.bool_]:
     """Which fixations belong to recordings of a trial that are not used."""
     rows, trial, begins_recording = ordered
-    which = np.cumsum(begins_recording) - 1
-    aside = np.zeros(len(rows), dtype=bool)
-    trial_of_recording = trial[begins_recording]
-    recordings_of = np.bincount(trial_of_recording, minlength=len(trials.in_study))
-    for index in np.flatnonzero(recordings_of > 1).tolist():
-        own = np.flatnonzero(trial_of_recording == index)
-        if not trials.in_study[index]:
-            continue
-        if repeated == "error":
-            starts = np.flatnonzero(begins_recording)[own]
-            shown, line = reader.place(int(rows[starts[1]]))
-            first = reader.place(int(rows[starts[0]]))
+    starts = np.flatnonzero(begins_recording)
+    of_trial = trial[starts]
+    again = np.bincount(of_trial, minlength=len(trials.in_study)) > 1
+    again &= trials.in_study
+    if not again.any():
+        return np.zeros(len(rows), dtype=bool)
+    if repeated == "error":
+        for index in np.flatnonzero(again).tolist():
+            own = starts[of_trial == index]
+            shown, line = reader.place(int(rows[own[1]]))
+            first = reader.place(int(rows[own[0]]))
             findings.error(
                 "a trial is recorded a second time",
                 path=shown,
@@ -382,7 +424,13 @@ def _recordings_set_aside(
                 fix='say which counts by [trials] repeated = "first" or "last", or tell the two '
                 "apart by a session",
             )
-            continue
-        used = own[0] if repeated == "first" else own[-1]
-        aside |= (trial == index) & (which != used)
-    return aside
+        return np.zeros(len(rows), dtype=bool)
+    # Recordings of a trial stand one after the other.
+    used = np.full(len(again), -1, dtype=np.int64)
+    places = np.arange(len(starts))
+    if repeated == "first":
+        used[of_trial[::-1]] = places[::-1]
+    else:
+        used[of_trial] = places
+    which = np.cumsum(begins_recording) - 1
+    return np.asarray(again[trial] & (which != used[trial]))

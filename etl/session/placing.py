@@ -1,7 +1,8 @@
-"""Where each fixation of a reader was: its line and its region."""
+"""Where each fixation was: its line and its region."""
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -10,9 +11,9 @@ from numpy.typing import NDArray
 from etl.errors import Findings
 from etl.parsers import CanonicalLog
 from etl.regions import Assigned, RegionLibrary
-from etl.session.lines import HandLines, LineWork, ReaderLines
+from etl.session.lines import LineWork, ReaderLines
 from etl.session.ordering import OrderedFixations
-from etl.session.reader import Reader
+from etl.session.reader import ReaderGroup
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -35,44 +36,42 @@ class Placed:
 
 
 def place_fixations(
-    reader: Reader,
+    group: ReaderGroup,
     log: CanonicalLog,
     ordered: OrderedFixations,
     using: tuple[RegionLibrary, LineWork | None],
-    findings: Findings,
 ) -> Placed:
     """Tell lines, where the study does, and take every fixation to its region.
 
     Parameters
     ----------
-    reader : Reader
-        Trials, and lines set by hand.
+    group : ReaderGroup
+        Trials, and lines set by hand, all of which fit.
     log : CanonicalLog
         The fixations, in time order.
     ordered : OrderedFixations
         Trial and number of each.
     using : tuple
         The texts, and what tells lines; None where nothing does.
-    findings : Findings
-        Where lines set by hand that fit no fixation, or no line, are recorded.
 
     Returns
     -------
     Placed
     """
     library, work = using
-    text = reader.trials.text.astype(np.int64)[ordered.trial]
+    text = group.trials.text.astype(np.int64)[ordered.trial]
     if work is None:
         found = _assigned(library, log, text, None)
         return Placed(found.line, found.order, None)
-    told = work.told(reader.trials, log, ordered)
-    hand = reader.hand
+    told = work.told(group.trials, log, ordered)
+    # A trial that is no part of the study has no lines, which was told with the table.
+    hand = group.hand.take(group.trials.text[group.hand.trial] >= 0)
     if len(hand):
-        hand, at = _fixations_meant(reader, ordered, library, findings)
+        at = np.searchsorted(ordered.trial, hand.trial) + hand.fixation - 1
         before = _assigned(library, log, text, told.line).line[at]
         told = work.corrected(told, hand, at, before, ordered.trial)
     found = _assigned(library, log, text, told.line)
-    told = work.labelled(told, reader.trials, log, ordered, found.line)
+    told = work.labelled(told, group.trials, log, ordered, found.line)
     return Placed(found.line, found.order, told)
 
 
@@ -85,7 +84,9 @@ def _assigned(
     """Line and region order of every fixation; 0 where there is none."""
     line = np.zeros(len(text), dtype=np.int32)
     order = np.zeros(len(text), dtype=np.int32)
-    rows = np.flatnonzero(text >= 0)
+    read = text >= 0
+    # Mostly every trial is part of the study, and nothing need be picked out and put back.
+    rows = slice(None) if read.all() else np.flatnonzero(read)
     found: Assigned
     if library.labels is not None and log.label is not None:
         found = library.assign_labels(text[rows], log.label.codes[rows], log.label.values)
@@ -96,50 +97,60 @@ def _assigned(
     return Assigned(order, line)
 
 
-def _fixations_meant(
-    reader: Reader, ordered: OrderedFixations, library: RegionLibrary, findings: Findings
-) -> tuple[HandLines, NDArray[np.int64]]:
-    """The corrections that can be made, and the fixation of each."""
-    hand, geometry = reader.hand, library.geometry
+def refuse_hand_lines(
+    group: ReaderGroup,
+    ordered: OrderedFixations,
+    library: RegionLibrary,
+    told: Mapping[str, Findings],
+) -> None:
+    """Record lines set by hand that fit no fixation, or no line of the text.
+
+    Parameters
+    ----------
+    group : ReaderGroup
+        Readers, trials and lines set by hand.
+    ordered : OrderedFixations
+        Trial and number of each fixation.
+    library : RegionLibrary
+        The texts.
+    told : mapping of str to Findings
+        For each reader, where errors are recorded.
+    """
+    hand, geometry = group.hand, library.geometry
+    if not len(hand):
+        return
     assert geometry is not None  # noqa: S101 - a study with lines has places
     first = np.searchsorted(ordered.trial, hand.trial)
     count = np.searchsorted(ordered.trial, hand.trial, side="right") - first
-    text = reader.trials.text[hand.trial]
-    sound = np.ones(len(hand), dtype=bool)
-    for row in range(len(hand)):
+    text = group.trials.text[hand.trial]
+    readers = group.reader_of_trial[hand.trial].tolist()
+    for row, reader in enumerate(readers):
+        participant = group.participants[reader]
         number, line = int(hand.fixation[row]), int(hand.line[row])
         numbers: list[int] = []
         if text[row] >= 0:
             own = slice(*geometry.line_offsets[text[row] : text[row] + 2].tolist())
             numbers = geometry.line_numbers[own].tolist()
         if number > count[row]:
-            sound[row] = False
-            findings.error(
+            told[participant].error(
                 "the trial has no fixation of this number",
-                path=reader.corrections,
+                path=group.corrections,
                 line=int(hand.source_line[row]),
-                found=f"reader {reader.participant}, fixation {number}",
+                found=f"reader {participant}, fixation {number}",
                 expected=f"a number from 1 to {count[row]}, as in the table fixations",
                 fix="correct the row, or remove it",
             )
         elif text[row] >= 0 and line and line not in numbers:
-            sound[row] = False
             item = library.texts[int(text[row])]
-            findings.error(
+            told[participant].error(
                 "the text has no line of this number",
-                path=reader.corrections,
+                path=group.corrections,
                 line=int(hand.source_line[row]),
                 found=str(line),
                 expected=f"{_listed(numbers)}, or 0 for no line; the text is defined in "
                 f"{item.path}:{item.line}",
                 fix="correct the row, or remove it",
             )
-        # A trial that is no part of the study has no lines, which was told with the table.
-        sound[row] &= bool(text[row] >= 0)
-    kept = HandLines(
-        hand.trial[sound], hand.fixation[sound], hand.line[sound], hand.source_line[sound]
-    )
-    return kept, (first + hand.fixation - 1)[sound].astype(np.int64)
 
 
 def _listed(numbers: list[int]) -> str:

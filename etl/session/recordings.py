@@ -25,16 +25,16 @@ Fault = Literal["comes twice", "falls back", "alternates"]
 
 @dataclass(frozen=True, slots=True)
 class Rows:
-    """The rows of one reader, sorted by trial, in the order of the logs within each trial.
+    """The rows of readers, sorted by trial, in the order of the logs within each trial.
 
     Attributes
     ----------
     row : (n,) int64 array
-        Row in the reader's logs; those of one log stand together, in the order of the logs.
+        Row in the readers' logs; those of one log stand together, in the order of the logs.
     trial : (n,) int64 array
         Index of the trial; non-decreasing.
-    file : (n,) int32 array
-        Which log the row is from.
+    file : (n,) integer array
+        Which log the row is from; a log that holds several readers is another for each.
     onset_ms : (n,) float64 array, milliseconds
         NaN throughout where the logs have no onsets.
     duration_ms : (n,) float64 array, milliseconds
@@ -47,11 +47,23 @@ class Rows:
 
     row: NDArray[np.int64]
     trial: NDArray[np.int64]
-    file: NDArray[np.int32]
+    file: NDArray[np.integer]
     onset_ms: NDArray[np.float64]
     duration_ms: NDArray[np.float64]
     number: NDArray[np.float64]
     recording: NDArray[np.int32]
+
+    def take(self, rows: NDArray[np.int64]) -> Rows:
+        """Some of the rows."""
+        return Rows(
+            self.row[rows],
+            self.trial[rows],
+            self.file[rows],
+            self.onset_ms[rows],
+            self.duration_ms[rows],
+            self.number[rows],
+            self.recording[rows],
+        )
 
     def begins(self) -> Flags:
         """Whether each row is the first of its trial."""
@@ -86,7 +98,7 @@ def find_recordings(rows: Rows) -> Recordings:
     Parameters
     ----------
     rows : Rows
-        The rows of one reader, sorted by trial.
+        The rows, sorted by trial.
 
     Returns
     -------

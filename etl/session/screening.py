@@ -1,4 +1,4 @@
-"""Screening one reader: from fixations with their regions to what is left out, rule by rule."""
+"""Screening readers: from fixations with their regions to what is left out, rule by rule."""
 
 from __future__ import annotations
 
@@ -17,7 +17,7 @@ from etl.screening import (
     Recorded,
     TrialQuantities,
     screen_fixations,
-    screen_reader,
+    screen_readers,
     screen_trials,
 )
 from etl.screening.ledger import Screened
@@ -33,38 +33,41 @@ Mask = NDArray[np.bool_]
 
 @dataclass(frozen=True, slots=True)
 class Unscreened:
-    """A reader's fixations before screening.
+    """The fixations of one or more readers before screening.
 
     Attributes
     ----------
     trials : TrialColumns
-        The reader's trials.
+        The readers' trials.
+    reader : (trials,) int64 array
+        The reader of each trial, from 0; non-decreasing.
     log : CanonicalLog
         The fixations, in time order.
     ordered : OrderedFixations
         Trial and number of each.
     order : (n,) int32 array
         Order of each fixation's region; 0 outside.
-    note : str
-        The experimenter's note on the reader.
+    notes : tuple of str
+        The experimenter's note on each reader.
     lines : ReaderLines, optional
         Which lines were read; None where the texts have no lines to tell apart.
     """
 
     trials: TrialColumns
+    reader: NDArray[np.int64]
     log: CanonicalLog
     ordered: OrderedFixations
     order: NDArray[np.int32]
-    note: str
+    notes: tuple[str, ...]
     lines: ReaderLines | None = None
 
 
-def screen(reader: Unscreened, library: RegionLibrary, options: Options) -> Screened:
-    """Apply all rules of a study to one reader.
+def screen(readers: Unscreened, library: RegionLibrary, options: Options) -> Screened:
+    """Apply all rules of a study to some readers.
 
     Parameters
     ----------
-    reader : Unscreened
+    readers : Unscreened
         Fixations with their regions.
     library : RegionLibrary
         The texts.
@@ -76,28 +79,33 @@ def screen(reader: Unscreened, library: RegionLibrary, options: Options) -> Scre
     Screened
     """
     limits = options.limits
-    in_study = reader.trials.text >= 0
-    recorded = _recorded(reader, in_study)
-    fixations = screen_fixations(recorded, (reader.trials.came_ms, reader.trials.went_ms), limits)
-    quantities = _quantities(reader, library, options, (recorded, fixations), in_study)
+    in_study = readers.trials.text >= 0
+    recorded = _recorded(readers, in_study)
+    text_time_ms = (readers.trials.came_ms, readers.trials.went_ms)
+    fixations = screen_fixations(recorded, text_time_ms, limits)
+    quantities = _quantities(readers, library, options, (recorded, fixations), in_study)
     trials = screen_trials(quantities, limits)
+    noted = np.array([bool(note) for note in readers.notes], dtype=bool)
     return Screened(
         recorded,
-        reader.ordered.number,
+        readers.ordered.number,
         fixations,
         trials,
-        screen_reader(quantities, trials.left_out >= 0, bool(reader.note), limits),
+        screen_readers(quantities, trials.left_out >= 0, noted, limits),
         np.where(in_study, -1, CODE["skip"]).astype(np.int8),
+        readers.reader,
     )
 
 
-def _recorded(reader: Unscreened, in_study: Mask) -> Recorded:
+def _recorded(readers: Unscreened, in_study: Mask) -> Recorded:
     """What the rules for fixations look at."""
-    log, ordered = reader.log, reader.ordered
+    log, ordered = readers.log, readers.ordered
     count = len(log)
     # A recording is a run of fixations of one trial that are all used, or all not.
     starts = np.ones(count, dtype=bool)
-    starts[1:] = (np.diff(ordered.trial) != 0) | (np.diff(ordered.repeated.astype(np.int8)) != 0)
+    starts[1:] = (ordered.trial[1:] != ordered.trial[:-1]) | (
+        ordered.repeated[1:] != ordered.repeated[:-1]
+    )
     first = np.flatnonzero(starts)
     length = np.diff(np.append(first, count))
     from_start = np.arange(count) - np.repeat(first, length) + 1
@@ -114,12 +122,13 @@ def _recorded(reader: Unscreened, in_study: Mask) -> Recorded:
         log.y_px,
         log.blink,
         left_out.astype(np.int8),
-        None if reader.lines is None else reader.lines.undersweep,
+        None if readers.lines is None else readers.lines.undersweep,
+        readers.reader[ordered.trial],
     )
 
 
 def _quantities(
-    reader: Unscreened,
+    readers: Unscreened,
     library: RegionLibrary,
     options: Options,
     screened: tuple[Recorded, FixationScreening],
@@ -130,41 +139,48 @@ def _quantities(
     limits, trial = options.limits, recorded.trial
     width = len(in_study)
     kept = fixations.left_out < 0
-    outside = kept & (reader.order == 0)
+    outside = kept & (readers.order == 0)
     onset = np.full(width, np.inf)
     end = np.full(width, -np.inf)
     np.fmin.at(onset, trial[kept], fixations.onset_ms[kept])
     np.fmax.at(end, trial[kept], (fixations.onset_ms + fixations.duration_ms)[kept])
     blinked = lacking = np.zeros(width, dtype=bool)
-    passes = _Passes(reader, library, options, recorded, fixations)
+    passes = _Passes(readers, library, options, recorded, fixations)
     if limits.blink_regions:
         blinked = passes.touched_by_blink(limits.blink_regions)
     if limits.first_pass_regions:
         lacking = passes.lacking(limits.first_pass_regions)
-    cell = np.zeros(width, dtype=np.int64)
-    for levels in reader.trials.factors.values():
-        _, cell = np.unique(
-            cell * (int(levels.max(initial=0)) + 2) + levels + 1, return_inverse=True
-        )
     return TrialQuantities(
         in_study,
-        np.array([bool(note) for note in reader.trials.notes], dtype=bool),
+        np.array([bool(note) for note in readers.trials.notes], dtype=bool),
         np.bincount(trial[kept], minlength=width),
         np.bincount(trial[outside], minlength=width),
         np.where(np.isfinite(end - onset), end - onset, 0.0),
         blinked,
         lacking,
-        reader.trials.answer,
-        cell,
-        None if reader.lines is None else reader.lines.trial_confidence,
+        readers.trials.answer,
+        _cells(readers.trials) if limits.on("fewest_trials_per_cell") else None,
+        readers.reader,
+        len(readers.notes),
+        None if readers.lines is None else readers.lines.trial_confidence,
     )
+
+
+def _cells(trials: TrialColumns) -> NDArray[np.int64]:
+    """Which combination of the factors each trial has."""
+    cell = np.zeros(len(trials), dtype=np.int64)
+    for levels in trials.factors.values():
+        _, cell = np.unique(
+            cell * (int(levels.max(initial=0)) + 2) + levels + 1, return_inverse=True
+        )
+    return cell
 
 
 @dataclass(frozen=True, slots=True)
 class _Passes:
     """First passes, as far as rules ask for them."""
 
-    reader: Unscreened
+    readers: Unscreened
     library: RegionLibrary
     options: Options
     recorded: Recorded
@@ -172,7 +188,7 @@ class _Passes:
 
     def _regions(self, names: tuple[str, ...]) -> tuple[NDArray[np.int64], Mask]:
         """Where each trial's cells begin, and whether each cell is one of some regions."""
-        text = self.reader.trials.text
+        text = self.readers.trials.text
         count = np.where(text >= 0, self.library.region_count[text], 1).astype(np.int64)
         offsets = np.append(0, np.cumsum(count))
         trial = np.repeat(np.arange(len(text)), count)
@@ -185,11 +201,11 @@ class _Passes:
 
     def _sequences(self, rows: NDArray[np.int64]) -> Sequences:
         """Some of the fixations, for the kernels."""
-        text = self.reader.trials.text
+        text = self.readers.trials.text
         count = np.where(text >= 0, self.library.region_count[text], 1)
         return Sequences(
             self.recorded.trial[rows],
-            self.reader.order[rows],
+            self.readers.order[rows],
             self.fixations.duration_ms[rows],
             count.astype(np.int32),
         )
@@ -211,7 +227,7 @@ class _Passes:
         rows = np.flatnonzero((left_out < 0) | (left_out == CODE["blink"]))
         outcomes = compute(self._sequences(rows), outside=self.options.outside)
         offsets, wanted = self._regions(names)
-        trial, order = self.recorded.trial[rows], self.reader.order[rows]
+        trial, order = self.recorded.trial[rows], self.readers.order[rows]
         cell = offsets[trial] + np.maximum(order, 1) - 1
         touched = outcomes.first_pass & (order > 0) & wanted[cell] & self.fixations.blink[rows]
-        return np.bincount(trial[touched], minlength=len(self.reader.trials)) > 0
+        return np.bincount(trial[touched], minlength=len(self.readers.trials)) > 0

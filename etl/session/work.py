@@ -5,19 +5,18 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from pathlib import Path
 
-import numpy as np
-
 from etl.errors import Findings
 from etl.export.rows import TrialColumns
 from etl.parsers import LogReader
 from etl.parsers.canonical import LogNote
 from etl.pseudonyms import Pseudonyms
 from etl.regions import RegionLibrary
-from etl.session.kept_logs import Shelf, keep_log, kept_log
+from etl.session.bench import Bench
+from etl.session.joined_readers import group_of
+from etl.session.kept_logs import Shelf, keep_log
 from etl.session.lines import NO_HAND, HandLines
 from etl.session.log_figures import LogFigures, figures_of
-from etl.session.one_reader import Bench
-from etl.session.reader import Options, Reader, ReaderTables
+from etl.session.reader import Options, ReaderTables
 from etl.session.seen import seen_trials
 from etl.tables import TableDesign
 from etl.trials import SeenTrials
@@ -121,12 +120,8 @@ class ReaderWork:
 
     def __call__(self, task: ReaderTask, *, page: bool = True) -> ReaderTables:
         """Finish one reader; the summary for the audit page may be left out."""
-        log, part = kept_log(task.parts, self._shelf)
-        file = np.asarray(task.files, dtype=np.int32)[part]
-        reader = Reader(
-            task.participant, log, file, task.trials, task.note, task.hand, task.corrections
-        )
-        return self._bench.tables(reader, page=page)
+        (tables,) = self._bench.tables(group_of([task], self._shelf), page=page).one_by_one()
+        return tables
 
 
 def make_reader_work(

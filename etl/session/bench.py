@@ -1,0 +1,433 @@
+"""Some readers: canonical fixations in, finished rows of every table out. A pure function.
+
+All readers of a group are worked on at once; nothing that is told of a reader depends on who else
+is in the group.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+import numpy as np
+import pyarrow as pa
+from numpy.typing import NDArray
+
+from etl.errors import Findings
+from etl.export.arrays import Fact
+from etl.export.rows import (
+    CellMeasures,
+    FixationColumns,
+    LineColumns,
+    RegressionColumns,
+    RowMaker,
+)
+from etl.measures import Outcomes, Sequences, compute
+from etl.parsers import CanonicalLog
+from etl.regions import RegionLibrary
+from etl.screening import LEFT_OUT_BY, outlying
+from etl.screening.ledger import Entry, FarValue, Screened, entries_of, with_values
+from etl.screening.rules import OUTLIER
+from etl.session.line_ledger import with_lines
+from etl.session.lines import LineWork, ReaderLines
+from etl.session.ordering import (
+    OrderedFixations,
+    ReaderLog,
+    TrialNames,
+    order_fixations,
+)
+from etl.session.placing import Placed, place_fixations, refuse_hand_lines
+from etl.session.reader import GroupTables, Options, ReaderGroup, ReaderTables, starts_of
+from etl.session.screening import Unscreened, screen
+from etl.session.telling import Worked, told_of
+from etl.tables import LEDGER, TableDesign
+
+_PX_DIGITS = 6
+
+
+class Bench:
+    """What the work on any reader needs, set up once in a process.
+
+    Parameters
+    ----------
+    design : TableDesign
+        The tables of the study.
+    library : RegionLibrary
+        Its texts.
+    options : Options
+        Its decisions.
+    """
+
+    def __init__(
+        self,
+        design: TableDesign,
+        library: RegionLibrary,
+        options: Options,
+    ) -> None:
+        self.design = design
+        self.library = library
+        self.options = options
+        self.rows = RowMaker(design)
+        self._lines = (
+            None if options.lines is None else LineWork(library, options.lines, options.limits)
+        )
+        used = {rule: code for code, rule in enumerate(design.left_out_by)}
+        # From a rule's code among all rules to its place among those of this study; -1 stays -1.
+        self._named = np.array([*(used.get(rule, -1) for rule in LEFT_OUT_BY), -1], dtype=np.int32)
+
+    def tables(self, group: ReaderGroup, *, page: bool = True) -> GroupTables:
+        """Compute all rows of some readers.
+
+        Parameters
+        ----------
+        group : ReaderGroup
+            Fixations and trials.
+        page : bool
+            Whether the summaries for the audit page are wanted too; they take a fifth of the time.
+
+        Returns
+        -------
+        GroupTables
+            Without rows of readers of whom a problem was found.
+        """
+        told = {participant: Findings() for participant in group.participants}
+        sound, ordered = self._sound(group, told)
+        worked = self._worked(sound, ordered) if len(sound) else None
+        known = {} if worked is None else told_of(self, worked, told, page=page)
+        return self._put_together(group, worked, told, known)
+
+    def _put_together(
+        self,
+        group: ReaderGroup,
+        worked: Worked | None,
+        told: Mapping[str, Findings],
+        known: Mapping[str, ReaderTables],
+    ) -> GroupTables:
+        """The answer, with the readers of whom problems were found in their places."""
+        readers = [
+            known[one] if one in known else ReaderTables(one, {}, {}, findings=told[one])
+            for one in group.participants
+        ]
+        if worked is None:
+            return GroupTables(readers)
+        own = [one in known for one in group.participants]
+        starts = {}
+        for name, rows in worked.row_starts.items():
+            counts = np.zeros(len(group), dtype=np.int64)
+            counts[own] = np.diff(rows)
+            starts[name] = starts_of(counts)
+        return GroupTables(readers, worked.batches, starts)
+
+    def _sound(
+        self, group: ReaderGroup, told: Mapping[str, Findings]
+    ) -> tuple[ReaderGroup, OrderedFixations]:
+        """The readers of whose fixations nothing is wrong, and the fixations in time order."""
+        sound, ordered = self._ordered(group, told)
+        refuse_hand_lines(sound, ordered, self.library, told)
+        good = [at for at, one in enumerate(sound.participants) if not told[one].failed]
+        if len(good) < len(sound):
+            sound = sound.of(good)
+            # Everything has been told.
+            aside = {participant: Findings() for participant in sound.participants}
+            sound, ordered = self._ordered(sound, aside)
+        return sound, ordered
+
+    def _ordered(
+        self, group: ReaderGroup, told: Mapping[str, Findings]
+    ) -> tuple[ReaderGroup, OrderedFixations]:
+        """The readers whose fixations have an order, and that order."""
+        if len(group) == 1:
+            found = [self._order(group, told[group.participants[0]])]
+        else:
+            if _logs_alike(group):
+                # Mostly there is nothing to tell, and then all are done.
+                findings = Findings()
+                together = self._order(group, findings)
+                if not len(findings):
+                    return group, together
+            every = [group.of([place]) for place in range(len(group))]
+            found = [self._order(one, told[one.participants[0]]) for one in every]
+        good = [at for at, one in enumerate(group.participants) if not told[one].failed]
+        sound = group.of(good)
+        if not good:
+            return sound, found[0]
+        starts = sound.trial_starts[:-1].tolist()
+        return sound, OrderedFixations.joined([found[at] for at in good], starts)
+
+    def _order(self, group: ReaderGroup, findings: Findings) -> OrderedFixations:
+        """The fixations in time order."""
+        part = group.reader_of_row * len(self.design.files) + group.file
+        log = ReaderLog(
+            group.log, group.file, self.design.files, _trial_of(group, self.design), part
+        )
+        trials = TrialNames(group.trials.text >= 0, lambda trial: self._spelled(group, trial))
+        return order_fixations(log, trials, self.options.repeated, findings)
+
+    def _spelled(self, group: ReaderGroup, index: int) -> str:
+        """A trial in words, for messages."""
+        return ", ".join(
+            f"{name} {self.design.ids[name].values[int(group.trials.ids[name][index])]}"
+            for name in ("trial", "session")
+            if name in self.design.ids
+        )
+
+    def _worked(self, group: ReaderGroup, ordered: OrderedFixations) -> Worked:
+        """All rows of readers of whom nothing is wrong."""
+        in_order = bool((ordered.rows[1:] > ordered.rows[:-1]).all())
+        log = group.log if in_order else group.log.take(ordered.rows)
+        file = group.file if in_order else group.file[ordered.rows]
+        texts = group.trials.text.astype(np.int64)
+        placed = place_fixations(group, log, ordered, (self.library, self._lines))
+        order = placed.order
+        screened = screen(
+            Unscreened(
+                *(group.trials, group.reader_of_trial, log, ordered, order),
+                group.notes,
+                placed.lines,
+            ),
+            self.library,
+            self.options,
+        )
+        trial_codes, gone = screened.trial_codes(), screened.fixation_codes()
+        kept = np.flatnonzero(gone < 0)
+        in_study = np.flatnonzero(trial_codes < 0)
+        place = np.zeros(len(texts), dtype=np.int64)
+        place[in_study] = np.arange(len(in_study))
+        outcomes = compute(
+            Sequences(
+                place[ordered.trial[kept]],
+                order[kept],
+                screened.fixations.duration_ms[kept],
+                self.library.region_count[texts[in_study]].astype(np.int32),
+            ),
+            outside=self.options.outside,
+            no_opportunity=self.options.no_opportunity,
+        )
+        every = len(in_study) == len(texts)
+        own = self.rows.facts(group.trials if every else group.trials.take(in_study))
+        code = self._region_codes(texts[ordered.trial], order)
+        source = (file, log.source_line)
+        entries = entries_of(
+            screened,
+            self.options.limits,
+            (group.trials.skipped_by, group.trials.notes, group.notes),
+            np.searchsorted(ordered.trial, np.arange(len(texts))),
+        )
+        batches, far = self._outcome_rows(
+            own, (texts, in_study, group.reader_of_trial), outcomes, placed.lines
+        )
+        entries = with_values(entries, far, self.options.limits)
+        entries = with_lines(entries, screened, placed.lines)
+        batches["regressions"] = self._regression_rows(
+            own, place, ordered, (screened, log.x_px, kept), (order, code), outcomes
+        )
+        batches["fixations"] = self.rows.fixations(
+            own if every else self.rows.ids(group.trials),
+            self._fixation_columns((screened, gone, kept), log, (placed, code), outcomes, source),
+        )
+        ranks = self.design.ids["participant"].ranks
+        batches[LEDGER] = self.rows.ledger(
+            np.array([ranks[one] for one in group.participants], dtype=np.int32),
+            group.trials,
+            entries,
+            source,
+        )
+        return Worked(
+            *(group, ordered, log, file, placed, screened),
+            *(trial_codes, gone, kept, outcomes, entries, batches),
+            self._row_starts(group, in_study, outcomes, kept, ordered, entries),
+        )
+
+    def _row_starts(
+        self,
+        group: ReaderGroup,
+        in_study: NDArray[np.int64],
+        outcomes: Outcomes,
+        kept: NDArray[np.int64],
+        ordered: OrderedFixations,
+        entries: list[Entry],
+    ) -> dict[str, NDArray[np.int64]]:
+        """For each table where the rows of each reader begin."""
+        readers = np.arange(len(group) + 1)
+        of_trials = np.searchsorted(group.reader_of_trial[in_study], readers)
+        of_cells = outcomes.cell_offsets[of_trials]
+        landing = ordered.trial[kept[outcomes.regressions.landing]]
+        return {
+            "outcomes": of_cells * len(self.design.measures),
+            "outcomes_wide": of_cells,
+            "trials": of_trials,
+            "regressions": np.searchsorted(group.reader_of_trial[landing], readers),
+            "fixations": group.row_starts,
+            LEDGER: np.searchsorted([entry.reader for entry in entries], readers),
+        }
+
+    def _region_codes(self, text: NDArray[np.int64], order: NDArray[np.int32]) -> NDArray[np.int32]:
+        """The region of each fixation among all regions; -1 outside."""
+        code = np.full(len(order), -1, dtype=np.int32)
+        inside = order > 0
+        code[inside] = self.library.region_code[
+            self.library.region_offsets[text[inside]] + order[inside] - 1
+        ]
+        return code
+
+    def _fixation_columns(
+        self,
+        fates: tuple[Screened, NDArray[np.int8], NDArray[np.int64]],
+        log: CanonicalLog,
+        places: tuple[Placed, NDArray[np.int32]],
+        outcomes: Outcomes,
+        source: tuple[NDArray[np.int32], NDArray[np.int32]],
+    ) -> FixationColumns:
+        """The columns of ``fixations``: as recorded where left out, as used where kept."""
+        screened, gone, kept = fates
+        visit, first_pass = _spread(outcomes, kept, len(gone))
+        placed, code = places
+        lines = placed.lines
+        return FixationColumns(
+            screened.recorded.trial,
+            screened.number,
+            np.where(gone < 0, screened.fixations.onset_ms, log.onset_ms),
+            np.where(gone < 0, screened.fixations.duration_ms, log.duration_ms),
+            log.x_px,
+            log.y_px,
+            placed.line,
+            code,
+            placed.order,
+            visit,
+            first_pass,
+            self._named[gone],
+            *source,
+            None
+            if lines is None
+            else LineColumns(lines.confidence, lines.return_sweep, lines.undersweep),
+        )
+
+    def _outcome_rows(
+        self,
+        facts: Mapping[str, Fact],
+        trials: tuple[NDArray[np.int64], NDArray[np.int64], NDArray[np.int64]],
+        outcomes: Outcomes,
+        lines: ReaderLines | None,
+    ) -> tuple[dict[str, pa.RecordBatch], list[FarValue]]:
+        """Rows of the three tables of outcomes, and the values that were set missing."""
+        every_text, in_study, reader = trials
+        counts = np.diff(outcomes.cell_offsets)
+        cell = np.arange(outcomes.cell_offsets[-1])
+        within = cell - np.repeat(outcomes.cell_offsets[:-1], counts)
+        first = self.library.region_offsets[every_text[in_study]]
+        code = self.library.region_code[np.repeat(first, counts) + within]
+        cells = (counts, (within + 1).astype(np.int32), code)
+        values = {m.name: outcomes.regions[m.name].values for m in self.design.measures}
+        reasons = {m.name: outcomes.regions[m.name].reasons for m in self.design.measures}
+        far: list[FarValue] = []
+        if self.options.limits.on("outlier_sd"):
+            trial = np.repeat(in_study, counts)
+            far = self._set_missing((trial, reader[trial], code), values, reasons)
+        regions = CellMeasures(values, reasons)
+        of_trials = CellMeasures(
+            {m.name: outcomes.trials[m.name].values for m in self.design.trial_measures},
+            {m.name: outcomes.trials[m.name].reasons for m in self.design.trial_measures},
+        )
+        batches = {
+            "outcomes": self.rows.outcomes(facts, cells, regions),
+            "outcomes_wide": self.rows.outcomes_wide(facts, cells, regions),
+            "trials": self.rows.trials(
+                facts, of_trials, None if lines is None else lines.trial_confidence[in_study]
+            ),
+        }
+        return batches, far
+
+    def _set_missing(
+        self,
+        cells: tuple[NDArray[np.int64], NDArray[np.int64], NDArray[np.int32]],
+        values: dict[str, NDArray[np.float64]],
+        reasons: dict[str, NDArray[np.uint8]],
+    ) -> list[FarValue]:
+        """Set durations missing that are far from the others of their reader and region."""
+        trial, reader, code = cells
+        group = reader * len(self.library.region_names) + code
+        outlier = self.design.reasons.index(OUTLIER)
+        far: list[FarValue] = []
+        for name in (m.name for m in self.design.measures if m.kind == "duration"):
+            own = values[name]
+            away = outlying(own, group, self.options.limits.outlier_sd)
+            far += [
+                FarValue(int(trial[c]), int(code[c]), name, own[c], int(reader[c]))
+                for c in np.flatnonzero(away).tolist()
+            ]
+            values[name] = np.where(away, np.nan, own)
+            reasons[name] = np.where(away, outlier, reasons[name]).astype(np.uint8)
+        return far
+
+    def _regression_rows(
+        self,
+        facts: Mapping[str, Fact],
+        place: NDArray[np.int64],
+        ordered: OrderedFixations,
+        fixations: tuple[Screened, NDArray[np.float64], NDArray[np.int64]],
+        regions: tuple[NDArray[np.int32], NDArray[np.int32]],
+        outcomes: Outcomes,
+    ) -> pa.RecordBatch:
+        """One row a regressive saccade."""
+        order, code = regions
+        screened, x_px, kept = fixations
+        launch = kept[outcomes.regressions.launch]
+        landing = kept[outcomes.regressions.landing]
+        return self.rows.regressions(
+            facts,
+            RegressionColumns(
+                place[ordered.trial[launch]],
+                code[launch],
+                order[launch],
+                code[landing],
+                order[landing],
+                outcomes.regressions.ends_first_pass,
+                ordered.number[launch],
+                ordered.number[landing],
+                screened.fixations.onset_ms[landing],
+                # Positions have a tenth of a pixel at best; what is beyond is noise of subtracting.
+                np.round(x_px[landing] - x_px[launch], _PX_DIGITS),
+            ),
+        )
+
+
+def _logs_alike(group: ReaderGroup) -> bool:
+    """Whether the logs of all readers hold the same kinds of facts about order."""
+    first, log = group.row_starts[:-1], group.log
+    told = np.minimum.reduceat(log.recording, first) >= 0
+    kinds = np.stack([np.isnan(log.number[first]), np.isnan(log.onset_ms[first]), told])
+    return bool((kinds == kinds[:, :1]).all())
+
+
+def _trial_of(group: ReaderGroup, design: TableDesign) -> NDArray[np.int64]:
+    """Index of each fixation's trial into the group's trials."""
+    ids, own = group.log.ids, group.trials.ids
+
+    def places(name: str) -> NDArray[np.int64]:
+        ranks = design.ids[name].ranks
+        # A log may name trials of readers of other groups. The last place is for a reader without
+        # sessions, among others who have them.
+        table = np.array([*(ranks.get(text, -1) for text in ids[name].values), -1], dtype=np.int64)
+        return table[ids[name].codes]
+
+    width = len(design.ids["trial"].values)
+    keys, wanted = own["trial"].astype(np.int64), places("trial")
+    span = width
+    if "session" in ids:
+        keys = keys + own["session"] * width
+        wanted += places("session") * width
+        span = width * (len(design.ids["session"].values) + 1)
+    keys = keys + group.reader_of_trial * span
+    wanted += group.reader_of_row * span
+    # The trials are sorted by reader, session and trial, so their keys ascend.
+    return np.searchsorted(keys, wanted).astype(np.int64)
+
+
+def _spread(
+    outcomes: Outcomes, kept: NDArray[np.int64], count: int
+) -> tuple[NDArray[np.int32], NDArray[np.bool_]]:
+    """Visit and first pass of the kept fixations among all fixations."""
+    visit = np.zeros(count, dtype=np.int32)
+    first_pass = np.zeros(count, dtype=bool)
+    visit[kept] = outcomes.visit
+    first_pass[kept] = outcomes.first_pass
+    return visit, first_pass
