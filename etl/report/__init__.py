@@ -2,10 +2,10 @@
 
 from etl.report.audit import AUDIT, write_audit
 from etl.report.inputs import AccountRow, AuditInput, GalleryEntry, NotRecorded, UnsureTrial
+from etl.report.kept_rows import LineGrid
 from etl.report.line_trust import LineTally, LineTrust
 from etl.report.logs import LogFate, LogMatter, LogsTold
 from etl.report.reader_profile import (
-    LineGrid,
     Profiles,
     ReaderProfile,
     TrialFates,

@@ -29,15 +29,11 @@ from etl.screening.ledger import Entry, FarValue, Screened, entries_of, with_val
 from etl.screening.rules import OUTLIER
 from etl.session.line_ledger import with_lines
 from etl.session.lines import LineWork, ReaderLines
-from etl.session.ordering import (
-    OrderedFixations,
-    ReaderLog,
-    TrialNames,
-    order_fixations,
-)
-from etl.session.placing import Placed, place_fixations, refuse_hand_lines
+from etl.session.ordered import OrderedFixations
+from etl.session.placing import Placed, place_fixations
 from etl.session.reader import GroupTables, Options, ReaderGroup, ReaderTables, starts_of
 from etl.session.screening import Unscreened, screen
+from etl.session.sound_readers import sound_readers
 from etl.session.telling import Worked, told_of
 from etl.tables import LEDGER, TableDesign
 
@@ -90,7 +86,9 @@ class Bench:
             Without rows of readers of whom a problem was found.
         """
         told = {participant: Findings() for participant in group.participants}
-        sound, ordered = self._sound(group, told)
+        sound, ordered = sound_readers(
+            group, (self.design, self.library, self.options.repeated), told
+        )
         worked = self._worked(sound, ordered) if len(sound) else None
         known = {} if worked is None else told_of(self, worked, told, page=page)
         return self._put_together(group, worked, told, known)
@@ -116,59 +114,6 @@ class Bench:
             counts[own] = np.diff(rows)
             starts[name] = starts_of(counts)
         return GroupTables(readers, worked.batches, starts)
-
-    def _sound(
-        self, group: ReaderGroup, told: Mapping[str, Findings]
-    ) -> tuple[ReaderGroup, OrderedFixations]:
-        """The readers of whose fixations nothing is wrong, and the fixations in time order."""
-        sound, ordered = self._ordered(group, told)
-        refuse_hand_lines(sound, ordered, self.library, told)
-        good = [at for at, one in enumerate(sound.participants) if not told[one].failed]
-        if len(good) < len(sound):
-            sound = sound.of(good)
-            # Everything has been told.
-            aside = {participant: Findings() for participant in sound.participants}
-            sound, ordered = self._ordered(sound, aside)
-        return sound, ordered
-
-    def _ordered(
-        self, group: ReaderGroup, told: Mapping[str, Findings]
-    ) -> tuple[ReaderGroup, OrderedFixations]:
-        """The readers whose fixations have an order, and that order."""
-        if len(group) == 1:
-            found = [self._order(group, told[group.participants[0]])]
-        else:
-            if _logs_alike(group):
-                # Mostly there is nothing to tell, and then all are done.
-                findings = Findings()
-                together = self._order(group, findings)
-                if not len(findings):
-                    return group, together
-            every = [group.of([place]) for place in range(len(group))]
-            found = [self._order(one, told[one.participants[0]]) for one in every]
-        good = [at for at, one in enumerate(group.participants) if not told[one].failed]
-        sound = group.of(good)
-        if not good:
-            return sound, found[0]
-        starts = sound.trial_starts[:-1].tolist()
-        return sound, OrderedFixations.joined([found[at] for at in good], starts)
-
-    def _order(self, group: ReaderGroup, findings: Findings) -> OrderedFixations:
-        """The fixations in time order."""
-        part = group.reader_of_row * len(self.design.files) + group.file
-        log = ReaderLog(
-            group.log, group.file, self.design.files, _trial_of(group, self.design), part
-        )
-        trials = TrialNames(group.trials.text >= 0, lambda trial: self._spelled(group, trial))
-        return order_fixations(log, trials, self.options.repeated, findings)
-
-    def _spelled(self, group: ReaderGroup, index: int) -> str:
-        """A trial in words, for messages."""
-        return ", ".join(
-            f"{name} {self.design.ids[name].values[int(group.trials.ids[name][index])]}"
-            for name in ("trial", "session")
-            if name in self.design.ids
-        )
 
     def _worked(self, group: ReaderGroup, ordered: OrderedFixations) -> Worked:
         """All rows of readers of whom nothing is wrong."""
@@ -388,37 +333,6 @@ class Bench:
                 np.round(x_px[landing] - x_px[launch], _PX_DIGITS),
             ),
         )
-
-
-def _logs_alike(group: ReaderGroup) -> bool:
-    """Whether the logs of all readers hold the same kinds of facts about order."""
-    first, log = group.row_starts[:-1], group.log
-    told = np.minimum.reduceat(log.recording, first) >= 0
-    kinds = np.stack([np.isnan(log.number[first]), np.isnan(log.onset_ms[first]), told])
-    return bool((kinds == kinds[:, :1]).all())
-
-
-def _trial_of(group: ReaderGroup, design: TableDesign) -> NDArray[np.int64]:
-    """Index of each fixation's trial into the group's trials."""
-    ids, own = group.log.ids, group.trials.ids
-
-    def places(name: str) -> NDArray[np.int64]:
-        ranks = design.ids[name].ranks
-        # The last one is for a reader without sessions, among others who have them.
-        table = np.array([*(ranks[text] for text in ids[name].values), -1], dtype=np.int64)
-        return table[ids[name].codes]
-
-    width = len(design.ids["trial"].values)
-    keys, wanted = own["trial"].astype(np.int64), places("trial")
-    span = width
-    if "session" in ids:
-        keys = keys + own["session"] * width
-        wanted += places("session") * width
-        span = width * (len(design.ids["session"].values) + 1)
-    keys = keys + group.reader_of_trial * span
-    wanted += group.reader_of_row * span
-    # The trials are sorted by reader, session and trial, so their keys ascend.
-    return np.searchsorted(keys, wanted).astype(np.int64)
 
 
 def _spread(

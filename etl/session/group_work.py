@@ -12,10 +12,10 @@ from etl.session.bench import Bench
 from etl.session.content_digest import content_digest, program_digest
 from etl.session.crew import Crew, Progress
 from etl.session.gather import Gathered
+from etl.session.joined_readers import group_of
 from etl.session.kept_logs import Aside
 from etl.session.kept_store import GROUP
 from etl.session.reader import Options, ReaderTables
-from etl.session.reader_group import group_of
 from etl.session.reader_groups import GroupTask, group_sizes, group_tasks, without_values
 from etl.tables import TableDesign
 

@@ -21,7 +21,7 @@ from etl.lines.return_sweeps import label_sweeps
 from etl.parsers import CanonicalLog
 from etl.regions import RegionLibrary
 from etl.screening import Limits, Recorded, screen_fixations
-from etl.session.ordering import OrderedFixations
+from etl.session.ordered import OrderedFixations
 from etl.session.passages import is_right_to_left, passage_of
 
 if TYPE_CHECKING:

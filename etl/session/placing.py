@@ -12,7 +12,7 @@ from etl.errors import Findings
 from etl.parsers import CanonicalLog
 from etl.regions import Assigned, RegionLibrary
 from etl.session.lines import LineWork, ReaderLines
-from etl.session.ordering import OrderedFixations
+from etl.session.ordered import OrderedFixations
 from etl.session.reader import ReaderGroup
 
 

@@ -238,27 +238,15 @@ class GroupTables:
         Returns
         -------
         list of ReaderTables
-            Mostly not copied. What ``trials`` says of missing outcomes is coded anew for each
-            reader, as it would be for one alone; texts of the ledger are those of the group.
+            Not copied.
         """
-        if len(self.readers) == 1:
-            self.readers[0].batches = self.batches
-            return self.readers
         for place, reader in enumerate(self.readers):
             if not reader.findings.failed:
                 reader.batches = {
                     name: batch.slice(*_stretch(self.row_starts[name], place))
                     for name, batch in self.batches.items()
                 }
-                reader.batches["trials"] = _coded_anew(reader.batches["trials"], "missing")
         return self.readers
-
-
-def _coded_anew(batch: pa.RecordBatch, name: str) -> pa.RecordBatch:
-    """The rows with only those texts in a coded column that occur in it."""
-    column = batch.column(name)
-    texts = column.dictionary_decode().dictionary_encode().cast(column.type)
-    return batch.set_column(batch.schema.get_field_index(name), batch.schema.field(name), texts)
 
 
 def _stretch(starts: NDArray[np.int64], place: int) -> tuple[int, int]:

@@ -22,7 +22,7 @@ from etl.screening import (
 )
 from etl.screening.ledger import Screened
 from etl.screening.rules import CODE
-from etl.session.ordering import OrderedFixations
+from etl.session.ordered import OrderedFixations
 
 if TYPE_CHECKING:
     from etl.session.lines import ReaderLines

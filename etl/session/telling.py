@@ -21,7 +21,7 @@ from etl.session.labels import Unlisted, unlisted_labels
 from etl.session.line_ledger import check_lines, counts_of_lines
 from etl.session.line_trust import trust_of
 from etl.session.misplaced import outside_by_log
-from etl.session.ordering import OrderedFixations, by_log
+from etl.session.ordered import OrderedFixations, by_log
 from etl.session.placing import Placed
 from etl.session.reader import ReaderGroup, ReaderTables, starts_of
 

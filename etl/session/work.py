@@ -14,12 +14,12 @@ from etl.pseudonyms import Pseudonyms
 from etl.regions import RegionLibrary
 from etl.session.bench import Bench
 from etl.session.content_digest import content_digest, program_digest
+from etl.session.joined_readers import group_of
 from etl.session.kept_logs import Aside, arrays_of, batches_of
 from etl.session.kept_store import LOG
 from etl.session.lines import NO_HAND, HandLines
 from etl.session.log_figures import LogFigures, figures_of
 from etl.session.reader import Options, ReaderTables
-from etl.session.reader_group import group_of
 from etl.session.seen import seen_trials
 from etl.tables import TableDesign
 from etl.trials import SeenTrials

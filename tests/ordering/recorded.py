@@ -10,7 +10,8 @@ import numpy as np
 from etl.errors import Findings
 from etl.files import Coded
 from etl.parsers import CanonicalLog
-from etl.session.ordering import OrderedFixations, ReaderLog, TrialNames, order_fixations
+from etl.session.ordered import OrderedFixations
+from etl.session.ordering import ReaderLog, TrialNames, order_fixations
 
 
 class Fixation(NamedTuple):
@@ -42,7 +43,8 @@ def reader_log(fixations: Sequence[Fixation]) -> ReaderLog:
         np.zeros(len(fixations), dtype=bool),
         np.full(len(fixations), -1, dtype=np.int32),
     )
-    return ReaderLog(log, file.astype(np.int32), ("a.tsv", "b.tsv"), trial.astype(np.int64))
+    logs = file.astype(np.int32)
+    return ReaderLog(log, logs, ("a.tsv", "b.tsv"), trial.astype(np.int64), logs)
 
 
 def ordered(

@@ -33,7 +33,7 @@ def test_sound_session_stays_in_order(session: list[Fixation]) -> None:
     assert found.trial.tolist() == [f.trial for f in session]
     assert found.number.tolist() == [f.number for f in session]
     assert not found.repeated.any()
-    assert found.overlaps == 0
+    assert found.overlapping.sum() == 0
 
 
 @given(sessions(), st.randoms(use_true_random=False))
@@ -103,13 +103,13 @@ def test_overlap_is_tolerated_to_two_milliseconds(
 ) -> None:
     """An overlap of up to 2 ms is rounding and is counted; more is an error."""
     found, findings = ordered([Fixation(0, 1000, 200), Fixation(0, 1200 - overlap_ms, 100)])
-    assert (findings.count("error"), found.overlaps) == (refused, counted)
+    assert (findings.count("error"), found.overlapping.sum()) == (refused, counted)
 
 
 def test_overlap_across_trials_is_none() -> None:
     """The last fixation of a trial may be cut by the next trial's first."""
     found = in_order([Fixation(0, 1000, 500), Fixation(1, 1200, 100)])
-    assert found.overlaps == 0
+    assert found.overlapping.sum() == 0
 
 
 def test_equal_onsets_overlap() -> None:

@@ -14,7 +14,7 @@ from etl.regions import RegionLibrary
 from etl.screening import Limits
 from etl.screening.rules import LEFT_OUT_BY
 from etl.session.lines import ReaderLines
-from etl.session.ordering import OrderedFixations
+from etl.session.ordered import OrderedFixations
 from etl.session.reader import Options
 from etl.session.screening import Unscreened
 from tests.screening import naive_screening as naive
@@ -170,10 +170,12 @@ def unscreened(reader: naive.Reader, texts: list[int]) -> Unscreened:
         trial,
         np.array([f.number for f in every]),
         np.array([f.aside for f in every], bool),
-        0,
+        *np.zeros((3, len(every)), bool),
     )
     order = coded([f.order for f in every])
-    return Unscreened(columns, log, ordered, order, reader.note, lines_of(reader))
+    nobody_else = np.zeros(len(texts), np.int64)
+    notes = (reader.note,)
+    return Unscreened(columns, nobody_else, log, ordered, order, notes, lines_of(reader))
 
 
 def lines_of(reader: naive.Reader) -> ReaderLines | None:

@@ -51,7 +51,7 @@ def screened_twice(seed: int) -> Both:
     reader, texts = random_reader(rng)
     before = unscreened(reader, texts)
     told = screen(before, LIBRARY, options(rules, outside))
-    reasons = (before.trials.skipped_by, before.trials.notes, before.note)
+    reasons = (before.trials.skipped_by, before.trials.notes, before.notes)
     first_row = np.searchsorted(before.ordered.trial, np.arange(len(texts)))
     entries = entries_of(told, options(rules, outside).limits, reasons, first_row)
     ledger = [(e.level, e.trial + 1, max(e.fixation, 0), e.rule, e.action, e.also) for e in entries]
@@ -142,7 +142,7 @@ def test_readers_that_a_rule_speaks_against(readers: list[Both], rule: str) -> N
     asked = [both for both in readers if rule in both.rules]
     assert not different(
         asked,
-        lambda both: both.told.reader.holds[rule].tolist(),
+        lambda both: both.told.readers.holds[rule].tolist(),
         lambda both: [rule in both.slow.against],
     )
     spoken = Counter(rule in both.slow.against for both in asked)

@@ -45,7 +45,7 @@ class Done:
         width = len(self.told.trials.left_out)
         first_row = np.searchsorted(self.told.recorded.trial, np.arange(width))
         limits = limits_of(study(self.rules))
-        found = entries_of(self.told, limits, (("",) * width, notes, ""), first_row)
+        found = entries_of(self.told, limits, (("",) * width, notes, ("",)), first_row)
         return [
             (
                 e.level,
