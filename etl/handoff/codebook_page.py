@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterable, Sequence
+from functools import cache
 from typing import Any, Final
 
 from jinja2 import Environment, PackageLoader, StrictUndefined
@@ -60,6 +61,45 @@ def codebook_page(design: TableDesign, study: StudyFacts, entries: Sequence[Code
     str
         The whole page; the same facts give the same text.
     """
+    page = (
+        _pages()
+        .get_template("codebook.md")
+        .render(
+            title=study.title,
+            decisions=_decisions(study),
+            rules=study.rules,
+            factors=[
+                {"name": name, "levels": levels, "origin": study.origins.get(name, "")}
+                for name, levels in design.factors.items()
+            ],
+            codings=[_coding(coding) for coding in design.codings.values()],
+            covariates=[
+                {
+                    "name": name,
+                    "type": known.type,
+                    "origin": study.origins.get(name, ""),
+                    "mean": repr(design.centred[name]) if name in design.centred else "",
+                }
+                for name, known in design.covariates.items()
+            ],
+            centred=bool(design.centred),
+            zeros_only_by_chance=study.no_opportunity == "missing",
+            reasons=[(reason, study.reasons[reason]) for reason in _reasons(design)],
+            measures=[
+                (level, [_outcome(measure) for measure in own])
+                for level, own in (("regions", design.measures), ("trials", design.trial_measures))
+                if own
+            ],
+            tables=[_table(name, design, study, entries) for name in ROWS],
+            pseudonyms=study.pseudonyms,
+        )
+    )
+    return page.rstrip("\n") + "\n"
+
+
+@cache
+def _pages() -> Environment:
+    """The template, compiled once for all codebooks of a process."""
     pages = Environment(
         loader=PackageLoader("etl.handoff", "templates"),
         undefined=StrictUndefined,
@@ -68,36 +108,7 @@ def codebook_page(design: TableDesign, study: StudyFacts, entries: Sequence[Code
         autoescape=False,  # noqa: S701 - Markdown is escaped by the filters below
     )
     pages.filters |= {"words": _words, "code": _code, "codes": _codes}
-    page = pages.get_template("codebook.md").render(
-        title=study.title,
-        decisions=_decisions(study),
-        rules=study.rules,
-        factors=[
-            {"name": name, "levels": levels, "origin": study.origins.get(name, "")}
-            for name, levels in design.factors.items()
-        ],
-        codings=[_coding(coding) for coding in design.codings.values()],
-        covariates=[
-            {
-                "name": name,
-                "type": known.type,
-                "origin": study.origins.get(name, ""),
-                "mean": repr(design.centred[name]) if name in design.centred else "",
-            }
-            for name, known in design.covariates.items()
-        ],
-        centred=bool(design.centred),
-        zeros_only_by_chance=study.no_opportunity == "missing",
-        reasons=[(reason, study.reasons[reason]) for reason in _reasons(design)],
-        measures=[
-            (level, [_outcome(measure) for measure in own])
-            for level, own in (("regions", design.measures), ("trials", design.trial_measures))
-            if own
-        ],
-        tables=[_table(name, design, study, entries) for name in ROWS],
-        pseudonyms=study.pseudonyms,
-    )
-    return page.rstrip("\n") + "\n"
+    return pages
 
 
 def _decisions(study: StudyFacts) -> list[str]:

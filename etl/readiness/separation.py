@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from functools import lru_cache
 from itertools import combinations
 from typing import Literal
 
@@ -120,10 +121,19 @@ def _kernel(matrix: NDArray[np.float64]) -> NDArray[np.float64]:
 
 def _by_program(signed: NDArray[np.float64], mixed: NDArray[np.float64]) -> Flags:
     """The same by a linear program, whatever is left for b."""
+    told = _solved(signed.shape[1], signed.tobytes(), mixed.tobytes())
+    return np.frombuffer(told, dtype=np.bool_)
+
+
+@lru_cache(maxsize=4096)
+def _solved(width: int, signed_bytes: bytes, mixed_bytes: bytes) -> bytes:
+    """The solution of a program; many outcomes of a study ask for the same one."""
     # Importing the solver takes longer than a small build, so only where it is needed.
     from scipy.optimize import linprog  # noqa: PLC0415
 
-    rows, width = signed.shape
+    signed = np.frombuffer(signed_bytes).reshape(-1, width)
+    mixed = np.frombuffer(mixed_bytes).reshape(-1, width)
+    rows = len(signed)
     # Unknown are b, without bounds, and the margins z: z - signed b <= 0, and b is 0 in mixed rows.
     found = linprog(
         np.concatenate([np.zeros(width), -np.ones(rows)]),
@@ -136,8 +146,7 @@ def _by_program(signed: NDArray[np.float64], mixed: NDArray[np.float64]) -> Flag
     )
     if found.x is None:  # 0 is always a solution: without an answer the solver gave up
         raise FaultError(f"the linear program was not solved: {found.message}")
-    told: Flags = found.x[width:] > 0.5
-    return told
+    return np.asarray(found.x[width:] > 0.5).tobytes()
 
 
 def separations(counts: OutcomeCounts) -> tuple[Separation, ...]:

@@ -14,6 +14,9 @@ from etl.readiness.counts import Flags, Ints, OutcomeCounts, UnitCells, cell_of
 from etl.readiness.facts import UnitCount, Variation
 from etl.readiness.terms import Term, design_matrix, terms_of
 
+#: With more combinations than this a set of them is no longer told by a number that counts.
+_MOST_BITS = 16
+
 
 @dataclass(frozen=True, slots=True)
 class Behind:
@@ -110,7 +113,7 @@ def _variation(counts: OutcomeCounts, own: UnitCells, term: Term) -> Behind:
     sizes = tuple(len(counts.active[place]) for place in places)
     owner = own.owner
     units = int(owner.max(initial=-1)) + 1
-    total = own.values.sum(axis=1)
+    total = own.values[:, 0] + own.values[:, 1]
     some = total > 0
     codes = np.stack(
         [
@@ -147,9 +150,22 @@ def _vary(seen: Flags, sizes: tuple[int, ...]) -> Flags:
     varies: Flags = np.asarray(seen.all(axis=1), dtype=np.bool_)
     rest = np.flatnonzero(~varies)
     if len(rest):
-        patterns, which = np.unique(seen[rest], axis=0, return_inverse=True)
-        varies[rest] = _told_apart(patterns, sizes)[which.reshape(-1)]
+        patterns, which = _patterns(seen[rest])
+        varies[rest] = _told_apart(patterns, sizes)[which]
     return varies
+
+
+def _patterns(seen: Flags) -> tuple[Flags, Ints]:
+    """The sets of combinations that occur, and which of them each unit has."""
+    if seen.shape[1] > _MOST_BITS:
+        distinct, which = np.unique(seen, axis=0, return_inverse=True)
+        return distinct, which.reshape(-1)
+    # A set as one whole number: there are very many units and few sets.
+    number = seen @ (1 << np.arange(seen.shape[1], dtype=np.int64))
+    there = np.flatnonzero(np.bincount(number, minlength=1))
+    return (there[:, None] >> np.arange(seen.shape[1]) & 1).astype(np.bool_), np.searchsorted(
+        there, number
+    )
 
 
 def _told_apart(patterns: Flags, sizes: Sequence[int]) -> Flags:

@@ -22,6 +22,8 @@ from etl.report.wording import NOTHING, count, counted, listed, name
 UNTITLED = "A study without a title"
 #: This many readers who stand out are named at the top; the rest are counted there.
 MOST_NAMED = 6
+#: This many warnings, and notes, are on the page.
+MOST_FINDINGS = 1000
 #: This many trials that were not recorded are named.
 MOST_ABSENT = 12
 
@@ -59,7 +61,7 @@ class AccountTable:
     rules : tuple of str
         Columns between read and kept.
     rows : tuple of (str, tuple of str)
-        A reader each, with read, the rules, kept.
+        A reader each, with read, the rules, kept; of very many, those in the table of readers.
     total : tuple of str
         The same over all readers.
     """
@@ -145,6 +147,7 @@ def collect(given: AuditInput) -> AuditFacts:
     losses = collect_losses(given)
     readers = collect_readers(given, {rule.name: rule.level for rule in losses.rules})
     told = [(text.startswith("warning:"), text) for text in _joined(given.warnings)]
+    told = [*_first(told, grave=True), *_first(told, grave=False)]
     return AuditFacts(
         str(given.study.get("title") or UNTITLED),
         _lead(given, losses),
@@ -154,7 +157,7 @@ def collect(given: AuditInput) -> AuditFacts:
         f"{FENCE:g}",
         FEWEST_TO_COMPARE,
         collect_rates(given),
-        tuple(_accounts(given, unit) for unit in ("trials", "fixations")),
+        tuple(_accounts(given, unit, readers) for unit in ("trials", "fixations")),
         tuple(text.removeprefix("warning: ") for grave, text in told if grave),
         tuple(text.removeprefix("note: ") for grave, text in told if not grave),
         tuple(given.gallery),
@@ -175,6 +178,16 @@ def _joined(lines: Sequence[str]) -> list[str]:
         else:
             out.append(line.replace("\n    ", "\n"))
     return out
+
+
+def _first(told: Sequence[tuple[bool, str]], *, grave: bool) -> list[tuple[bool, str]]:
+    """The first warnings, or notes; of very many the rest is counted."""
+    own = [one for one in told if one[0] == grave]
+    more = len(own) - MOST_FINDINGS
+    if more > 0:
+        text = f"and {count(more)} more, which run.json lists"
+        return [*own[:MOST_FINDINGS], (grave, text)]
+    return own
 
 
 def _lead(given: AuditInput, losses: Losses) -> str:
@@ -235,14 +248,15 @@ def _headlines(given: AuditInput, losses: Losses, readers: Comparison) -> list[H
 
 def _not_recorded(given: AuditInput) -> Headline:
     """The trials that no log has."""
-    missing = [
+    missing: list[str | Markup] = [
         Markup("{} trial {}{}").format(
             name(one.participant),
             name(one.trial),
             Markup(" of session {}").format(name(one.session)) if one.session else "",
         )
-        for one in given.not_recorded
+        for one in given.not_recorded[:MOST_ABSENT]
     ]
+    missing += [""] * (len(given.not_recorded) - len(missing))  # counted, not named
     many = len(missing) != 1
     text = Markup("{} of the trial list {} in no log: {}.").format(
         counted(len(missing), "trial"), "are" if many else "is", listed(missing, MOST_ABSENT)
@@ -250,16 +264,21 @@ def _not_recorded(given: AuditInput) -> Headline:
     return Headline("absent", "Not recorded", text, "#losses")
 
 
-def _accounts(given: AuditInput, unit: str) -> AccountTable:
+def _accounts(given: AuditInput, unit: str, readers: Comparison) -> AccountTable:
     """The accounts of one unit; a rule that leaves out nothing of the unit keeps its column."""
     own = [row for row in given.accounts if row.unit == unit]
     rules = tuple(dict.fromkeys(rule for row in own for rule in row.left_out))
     figures = [(r.read, *(r.left_out.get(n, 0) for n in rules), r.kept) for r in own]
     total = tuple(map(sum, zip(*figures, strict=True))) or (0,) * (len(rules) + 2)
+    named = {row.name for row in readers.rows} if readers.unlisted else None
     return AccountTable(
         unit,
         rules,
-        tuple((row.participant, _shown(line)) for row, line in zip(own, figures, strict=True)),
+        tuple(
+            (row.participant, _shown(line))
+            for row, line in zip(own, figures, strict=True)
+            if named is None or row.participant in named
+        ),
         _shown(total),
     )
 

@@ -11,6 +11,8 @@ from etl.report.wording import count, counted, name
 
 #: So many logs are named at once; a longer list is folded away, and whole when it is opened.
 MOST_UNFOLDED = 8
+#: So many logs are named at all; the page would grow with the study otherwise.
+MOST_NAMED = 1000
 #: What the page calls each kind of matter, in the order in which it shows them.
 WORDS = {"warning": "Warning", "note": "Differs", "mended": "Mended"}
 
@@ -82,10 +84,10 @@ class MatterRow:
         What kind of matter it is.
     says : str
         The matter.
-    number : str
-        How many logs it is about, in words.
+    number, summary : str
+        How many logs it is about, in words; the same for the list of them.
     logs : Markup
-        All of them.
+        All of them; of very many, the first.
     folded : bool
         Whether the list of them is folded away.
     """
@@ -94,6 +96,7 @@ class MatterRow:
     word: str
     says: str
     number: str
+    summary: str
     logs: Markup
     folded: bool
 
@@ -152,6 +155,8 @@ def collect_logs(told: LogsTold) -> LogsPart:
                 WORDS[matter.kind],
                 matter.says,
                 counted(len(matter.logs), "log"),
+                ("All " if len(matter.logs) <= MOST_NAMED else "")
+                + counted(len(matter.logs), "log"),
                 _named(matter.logs),
                 len(matter.logs) > MOST_UNFOLDED,
             )
@@ -183,7 +188,10 @@ def doubtful(told: LogsTold) -> list[Markup]:
 
 
 def _named(logs: tuple[tuple[str, str], ...]) -> Markup:
-    """All logs with their remarks."""
-    return Markup(", ").join(
-        Markup("{} ({})").format(name(log), remark) if remark else name(log) for log, remark in logs
+    """The logs with their remarks; of very many the rest is counted."""
+    named = Markup(", ").join(
+        Markup("{} ({})").format(name(log), remark) if remark else name(log)
+        for log, remark in logs[:MOST_NAMED]
     )
+    more = len(logs) - MOST_NAMED
+    return named if more <= 0 else Markup("{} and {} more").format(named, count(more))

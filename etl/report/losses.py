@@ -207,18 +207,18 @@ def collect_losses(given: AuditInput) -> Losses:
     )
     absent = Counter(one.participant for one in given.not_recorded)
     whole = max((of_study(r) + absent[r.participant] for r in rows["trials"]), default=0)
-    readers = [_reader_row(row, absent[row.participant], whole, slots) for row in rows["trials"]]
-    drawn = readers
-    if len(readers) > MOST_BARS:
-        harmed = [row for row in readers if row.lost or row.not_recorded]
-        drawn = sorted(harmed, key=lambda row: -row.lost)[:MOST_BARS]
+    # Of very many readers only those are drawn that will be shown.
+    drawn = rows["trials"]
+    if len(drawn) > MOST_BARS:
+        harmed = [r for r in drawn if of_study(r) > r.kept or absent[r.participant]]
+        drawn = sorted(harmed, key=lambda r: r.kept - of_study(r))[:MOST_BARS]
     return Losses(
         _balance("trials", rows["trials"], slots),
         _balance("fixations", rows["fixations"], slots),
         rules,
         Legend(charts.swatch(None), tuple(r for r in rules if r.swatch)) if striking else None,
-        tuple(drawn),
-        len(readers) - len(drawn),
+        tuple(_reader_row(row, absent[row.participant], whole, slots) for row in drawn),
+        len(rows["trials"]) - len(drawn),
         whole <= charts.MOST_UNITS,
         bool(absent),
         tuple(_factor_loss(given, place, slots) for place in range(len(given.design.factors))),

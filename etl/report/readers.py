@@ -17,6 +17,11 @@ from etl.report.wording import NOTHING, count, counted, listed, name, number
 
 #: This many readers who stand out are named below a strip.
 MOST_NAMED = 12
+#: This many readers have a row in the table, and a dot on each strip: a page of very many more
+#: could not be opened. Of more readers those who were left out or stand out come first.
+MOST_ROWS = 1000
+#: This many of those who stand out have a dot then.
+MOST_STRANGE = 200
 
 
 @dataclass(frozen=True, slots=True)
@@ -111,7 +116,9 @@ class Comparison:
     strips : tuple of Strip
         A measure each.
     rows : tuple of TableRow
-        A reader each.
+        A reader each; of very many, some.
+    unlisted : int
+        How many readers have no row.
     groups : tuple of str
         Factors that differ between readers.
     axis : Markup
@@ -128,6 +135,7 @@ class Comparison:
 
     strips: tuple[Strip, ...]
     rows: tuple[TableRow, ...]
+    unlisted: int
     groups: tuple[str, ...]
     axis: Markup
     standing_out: tuple[Markup, ...]
@@ -160,13 +168,14 @@ def collect_readers(given: AuditInput, levels: Mapping[str, str]) -> Comparison:
     ends = [q for own in every for q in own]
     scale = charts.round_scale(min(ends, default=0), max(ends, default=1), most=3)
     rows = tuple(
-        _row((place, reader), measures, groups, scale, (reasons, strange))
-        for place, reader in enumerate(readers, start=1)
+        _row((place + 1, readers[place]), measures, groups, scale, (reasons, strange))
+        for place in _listed(readers, reasons)
     )
     named = {r.numbers.participant: r for r in readers}
     return Comparison(
         strips,
         rows,
+        len(readers) - len(rows),
         groups,
         charts.axis(scale, ""),
         tuple(
@@ -182,6 +191,17 @@ def collect_readers(given: AuditInput, levels: Mapping[str, str]) -> Comparison:
         len(readers) >= FEWEST_TO_COMPARE,
         measures,
     )
+
+
+def _listed(readers: Sequence[Reader], reasons: Mapping[str, Sequence[Markup]]) -> list[int]:
+    """The places of the readers who have a row: of very many, the most remarkable and the first."""
+    if len(readers) <= MOST_ROWS:
+        return list(range(len(readers)))
+    lost = [place for place, r in enumerate(readers) if r.left_out]
+    out = [place for place, r in enumerate(readers) if r.numbers.participant in reasons]
+    half = MOST_ROWS // 2
+    order = [*lost[:half], *out[:half], *lost[half:], *out[half:], *range(len(readers))]
+    return sorted(list(dict.fromkeys(order))[:MOST_ROWS])
 
 
 def _link(place: int, reader: Reader) -> Markup:
@@ -279,10 +299,11 @@ def _drawn(
     if not known:
         return Markup()
     factor = measure.factor
-    shown = sorted((value * factor, who) for who, value in known)
+    every = sorted((value * factor, who) for who, value in known)
+    shown = _some(every, strange)
     ends = [shown[0][0], shown[-1][0], *(measure.published or ())]
     scale = charts.round_scale(min(ends), max(ends), most=6)
-    middle = _median([value for value, _ in shown])
+    middle = _median([value for value, _ in every])
     return strip(
         [Dot(value, who if who in strange else "") for value, who in shown],
         scale,
@@ -291,6 +312,20 @@ def _drawn(
         published=measure.published,
         median=middle,
     )
+
+
+def _some(every: Sequence[tuple[float, str]], strange: set[str]) -> Sequence[tuple[float, str]]:
+    """The readers who have a dot: of very many those farthest out, and as many evenly spread."""
+    if len(every) <= MOST_ROWS:
+        return every
+    out = [place for place, (_, who) in enumerate(every) if who in strange]
+    low = [place for place in out if place < len(every) // 2][: MOST_STRANGE // 2]
+    high = [place for place in out if place >= len(every) // 2][-(MOST_STRANGE // 2) :]
+    rest = [place for place, (_, who) in enumerate(every) if who not in strange]
+    wanted = min(MOST_ROWS - len(low) - len(high), len(rest))
+    step = (len(rest) - 1) / max(wanted - 1, 1)
+    spread = [rest[round(step * number)] for number in range(wanted)]
+    return [every[place] for place in sorted({*low, *high, *spread})]
 
 
 def _row(

@@ -11,7 +11,7 @@ from etl.handoff import BundleFacts, StudyFacts, write_bundle, write_data_packag
 from etl.readiness.facts import Readiness
 from etl.session.codebook_facts import write_described
 from etl.session.plan import Plan
-from etl.session.readiness import readiness_of, write_readiness
+from etl.session.readiness import Mapper, map_here, readiness_of, write_readiness
 from etl.tables import TableDesign
 
 
@@ -31,7 +31,7 @@ class Described:
     readiness: Readiness
 
 
-def describe(folder: Path, plan: Plan, design: TableDesign) -> Described:
+def describe(folder: Path, plan: Plan, design: TableDesign, mapped: Mapper = map_here) -> Described:
     """Write codebook, table of regions and readiness beside the finished tables.
 
     Parameters
@@ -42,6 +42,8 @@ def describe(folder: Path, plan: Plan, design: TableDesign) -> Described:
         The study made ready.
     design : TableDesign
         What its tables have in common.
+    mapped : callable, optional
+        What has row groups counted, here or in other processes.
 
     Returns
     -------
@@ -49,7 +51,8 @@ def describe(folder: Path, plan: Plan, design: TableDesign) -> Described:
         What page and bundle tell, too.
     """
     measures = plan.study.measures
-    readiness = readiness_of(folder, design, (measures.outside, measures.no_opportunity))
+    conventions = (measures.outside, measures.no_opportunity)
+    readiness = readiness_of(folder, design, conventions, mapped)
     write_readiness(readiness, folder)
     return Described(write_described(folder, plan, design), readiness)
 
