@@ -189,7 +189,7 @@ def build(
         rows = writers.rows
         write_accounts(totals.account_rows(), shop.fresh)
         write_log_accounts(log_accounts(answers), shop.fresh)
-        described = describe(shop.fresh, plan, gathered.design)
+        described = describe(shop.fresh, plan, gathered.design, crew.map)
         page = _audit(plan, gathered, totals, answers, findings)
         write_audit(shop.fresh, replace(page, readiness=described.readiness))
         hand_over(shop.fresh, plan, gathered.design, described, apart)
