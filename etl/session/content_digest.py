@@ -18,7 +18,6 @@ from pathlib import Path, PurePath
 from typing import Any, Final
 
 import numpy as np
-import shapely
 
 from etl.pseudonyms import Pseudonyms
 
@@ -91,10 +90,11 @@ def _feed_array(digest: Any, array: np.ndarray[Any, Any]) -> None:
     """Add an array of numbers or of shapes."""
     _mark(digest, f"array {array.dtype.str} {array.shape}", array.nbytes)
     if array.dtype.hasobject:
-        shapes = shapely.is_geometry(array)
-        if not shapes.all():
-            raise TypeError("an array holds objects that are no shapes")
-        _feed(digest, [bytes(data) for data in np.ravel(shapely.to_wkb(array))])
+        for item in np.ravel(array).tolist():
+            well_known = getattr(item, "wkb", None)
+            if not isinstance(well_known, bytes):
+                raise TypeError(f"it is not known what a {type(item).__qualname__} holds")
+            _feed(digest, well_known)
     else:
         digest.update(np.ascontiguousarray(array).data)
 

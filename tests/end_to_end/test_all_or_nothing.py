@@ -138,10 +138,10 @@ def test_file_added_to_an_earlier_build_is_not_lost(study_file: Path, built: Pat
 
 
 def test_build_leaves_nothing_but_its_folder(study_file: Path) -> None:
-    """Beside the study there is only the output folder afterwards."""
+    """Beside the study there are the output folder and what is kept for the next build."""
     build(study_file)
     files = sorted(path.name for path in study_file.parent.iterdir())
-    assert files == ["log.csv", "out", "regions.csv", "study.toml"]
+    assert files == ["log.csv", "out", "out.kept", "regions.csv", "study.toml"]
 
 
 def test_empty_folder_is_a_place_to_build_into(study_file: Path, tmp_path: Path) -> None:
