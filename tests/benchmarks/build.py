@@ -1,20 +1,37 @@
-"""How long a build takes beside what pyarrow alone needs, and beside a loop over trials.
+"""How long builds take beside what pyarrow alone needs, and beside a loop over trials.
 
-Run ``python tests/benchmarks/build.py`` in a checkout. Every figure is a whole process of its own
-on one core; three are run in turn, round after round, and the ratios of their medians are what
-counts: seconds differ from machine to machine.
+Run ``python tests/benchmarks/build.py`` in a checkout for studies of one and ten million fixations;
+``--millions 100`` needs some 40 GB of disk and half an hour. It prints one table. Every figure is a
+whole process of its own; ratios count, seconds differ from machine to machine.
+
+floor
+    What pyarrow needs on one core to read the same logs and to write the very same tables, CSV
+    files included, with the same options. The tables are read into memory beforehand.
+one worker
+    A build on one core into a new place, with nothing kept from before.
+two workers
+    The same with two.
+limit changed
+    A build after a screening limit was changed: logs are not parsed again.
+one reader more
+    A build after one reader came in: the others are found finished.
+loop
+    What a lab would write (``lab_loop.py``), on some readers, scaled up; it does less.
 """
 
 from __future__ import annotations
 
 import argparse
+import json
 import os
+import shutil
 import statistics
 import subprocess
 import sys
 import tempfile
 import time
 from collections.abc import Sequence
+from dataclasses import dataclass
 from pathlib import Path
 
 import pyarrow as pa
@@ -30,56 +47,69 @@ from tests.simulator import write_bulk_study  # noqa: E402
 
 LOOPS = {"pandas": in_pandas, "numpy": in_numpy}
 TABLES = ("outcomes", "outcomes_wide", "trials", "regressions", "fixations")
+AS_CSV = ("outcomes_wide", "trials")
+TRIALS, FIXATIONS, REGIONS = 100, 20, 6
 
 
-def make(folder: Path, readers: int, trials: int, fixations: int) -> Path:
-    """Write the study and give its study file."""
-    study = write_bulk_study(folder, readers=readers, trials=trials, fixations=fixations, regions=6)
-    return study.study_file
+@dataclass(frozen=True, slots=True)
+class Measured:
+    """What a part took in a process of its own."""
+
+    seconds: float
+    peak_mib: float
+    worker_mib: float
 
 
-def floor(study: Path, built: Path) -> None:
-    """What pyarrow alone needs: read the same logs, write the very same tables.
-
-    The tables are read into memory beforehand, texts as codes, which is the fastest form to write;
-    only the reading of logs and the writing of tables is reported.
-    """
-    pa.set_cpu_count(1)
-    pa.set_io_thread_count(1)
-    tables, groups = {}, {}
-    for name in TABLES:
-        path = built / f"{name}.parquet"
-        texts = [f.name for f in pq.read_schema(path) if pa.types.is_string(f.type)]
-        tables[name] = pq.read_table(path, read_dictionary=texts)
-        groups[name] = pq.read_metadata(path).row_group(0).num_rows
-    started = time.perf_counter()
+def floor(study: Path, built: Path) -> float:
+    """Read the same logs, write the very same tables; only that is timed."""
+    took = 0.0
     for log in sorted((study.parent / "logs").iterdir()):
+        started = time.perf_counter()
         csv.read_csv(
             log,
             read_options=csv.ReadOptions(use_threads=False),
             parse_options=csv.ParseOptions(delimiter="\t"),
         )
+        took += time.perf_counter() - started
     with tempfile.TemporaryDirectory(dir=built.parent) as folder:
-        for name, table in tables.items():
-            pq.write_table(
-                table,
-                Path(folder) / f"{name}.parquet",
-                compression="zstd",
-                row_group_size=groups[name],
-            )
-        print(time.perf_counter() - started)
+        for name in TABLES:
+            took += floor_of_table(built / f"{name}.parquet", Path(folder) / name)
+    return took
 
 
-def build(study: Path, into: Path) -> None:
+def floor_of_table(path: Path, into: Path) -> float:
+    """Write one table again, a row group at a time, texts as codes: the fastest form to write."""
+    took = 0.0
+    schema = pq.read_schema(path)
+    texts = [field.name for field in schema if pa.types.is_string(field.type)]
+    texts += [field.name for field in schema if pa.types.is_dictionary(field.type)]
+    sorted_by = [name for name in ("participant", "session", "trial") if name in schema.names]
+    with pq.ParquetFile(path, read_dictionary=texts) as file:
+        first = file.read_row_group(0)
+        as_csv = csv.CSVWriter(f"{into}.csv", first.schema) if path.stem in AS_CSV else None
+        writer = pq.ParquetWriter(
+            f"{into}.parquet", first.schema, compression="zstd", write_statistics=sorted_by
+        )
+        for group in range(file.num_row_groups):
+            rows = file.read_row_group(group)
+            started = time.perf_counter()
+            writer.write_table(rows)
+            if as_csv is not None:
+                as_csv.write_table(rows)
+            took += time.perf_counter() - started
+        started = time.perf_counter()
+        writer.close()
+        return took + time.perf_counter() - started
+
+
+def build(study: Path, into: Path, workers: int) -> float:
     """The whole build, from the study file to the published folder."""
-    pa.set_cpu_count(1)
-    pa.set_io_thread_count(1)
     started = time.perf_counter()
-    etl.build(etl.load_study(study), into=into, workers=1)
-    print(time.perf_counter() - started)
+    etl.build(etl.load_study(study), into=into, workers=workers)
+    return time.perf_counter() - started
 
 
-def loop(study: Path, readers: int, style: str) -> None:
+def loop(study: Path, readers: int, style: str) -> float:
     """What a lab would write: pandas, groupby over trials, a function for each trial.
 
     It computes the same outcomes of some readers and writes the one table; it does less than the
@@ -89,89 +119,149 @@ def loop(study: Path, readers: int, style: str) -> None:
     logs = sorted((study.parent / "logs").iterdir())[:readers]
     with tempfile.TemporaryDirectory() as folder:
         outcomes_of(study, logs, LOOPS[style]).to_parquet(Path(folder) / "outcomes.parquet")
-        print(time.perf_counter() - started)
+        return time.perf_counter() - started
 
 
-def seconds(arguments: Sequence[str]) -> float:
-    """Run one part in a process of its own, on one core where the system allows that."""
+def part(arguments: Sequence[str]) -> None:
+    """Do one part in this process, and print what it took."""
+    name, study = arguments[0], Path(arguments[1])
+    if name == "floor":
+        seconds = floor(study, Path(arguments[2]))
+    elif name == "build":
+        seconds = build(study, Path(arguments[2]), int(arguments[3]))
+    else:
+        seconds = loop(study, int(arguments[2]), arguments[3])
+    peaks = [0.0, 0.0]
+    if sys.platform != "win32":
+        import resource  # noqa: PLC0415  (there is none on Windows)
+
+        unit = 1024**2 if sys.platform == "darwin" else 1024
+        whose = (resource.RUSAGE_SELF, resource.RUSAGE_CHILDREN)
+        peaks = [resource.getrusage(who).ru_maxrss / unit for who in whose]
+    print(json.dumps([seconds, *peaks]))
+
+
+def measured(*arguments: object, cores: int = 1) -> Measured:
+    """Run one part in a process of its own, on so many cores where the system allows that."""
     environment = {**os.environ, "PYTHONPATH": str(ROOT), "OMP_NUM_THREADS": "1"}
+    alone = cores == 1 and hasattr(os, "sched_setaffinity")
     done = subprocess.run(
-        [sys.executable, str(Path(__file__)), *arguments],
+        [sys.executable, str(Path(__file__)), "part", *map(str, arguments)],
         check=True,
         capture_output=True,
         text=True,
         env=environment,
-        preexec_fn=_one_core if hasattr(os, "sched_setaffinity") else None,
+        preexec_fn=_one_core if alone else None,
     )
-    return float(done.stdout.split()[-1])
+    return Measured(*json.loads(done.stdout.splitlines()[-1]))
 
 
 def _one_core() -> None:
     os.sched_setaffinity(0, {min(os.sched_getaffinity(0))})
 
 
-def peak_mib(study: Path, into: Path) -> float:
-    """Peak memory of a build in a process of its own."""
-    code = (
-        "import resource, sys, etl\n"
-        "if __name__ == '__main__':\n"
-        "    etl.build(etl.load_study(sys.argv[1]), into=sys.argv[2], workers=1)\n"
-        "    print(resource.getrusage(resource.RUSAGE_SELF).ru_maxrss)\n"
+def forget(into: Path) -> None:
+    """Remove a build and what it kept."""
+    for folder in (into, into.with_name(f"{into.name}.kept")):
+        shutil.rmtree(folder, ignore_errors=True)
+
+
+def change_limit(study: Path, under_ms: int) -> None:
+    """Another screening limit."""
+    text = study.read_text(encoding="utf-8").split("[screening")[0]
+    study.write_text(f"{text}[screening.fixations]\nunder_ms = {under_ms}\n", encoding="utf-8")
+
+
+def add_reader(study: Path, new: str) -> None:
+    """One reader more, with the trials and fixations of the first one."""
+    log = min((study.parent / "logs").iterdir())
+    old = log.stem
+    text = log.read_text(encoding="utf-8").replace(old, new)
+    log.with_name(f"{new}.tsv").write_text(text, encoding="utf-8")
+    trials = study.parent / "trial_list.csv"
+    with trials.open(encoding="utf-8") as file:
+        more = [line.replace(old, new) for line in file if line.startswith(f"{old},")]
+    with trials.open("a", encoding="utf-8") as file:
+        file.writelines(more)
+
+
+def row(millions: float, rounds: int, loops: int, room: Path) -> list[str]:
+    """All figures of one size."""
+    readers = max(round(millions * 1e6 / TRIALS / FIXATIONS), 1)
+    made = write_bulk_study(
+        room / "study", readers=readers, trials=TRIALS, fixations=FIXATIONS, regions=REGIONS
     )
-    done = subprocess.run(
-        [sys.executable, "-c", code, str(study), str(into)],
-        check=True,
-        capture_output=True,
-        text=True,
-        env={**os.environ, "PYTHONPATH": str(ROOT)},
-    )
-    return float(done.stdout.split()[-1]) / 1024
+    study, into = made.study_file, room / "built"
+    del made
+    found: dict[str, list[Measured]] = {}
+
+    def take(name: str, *arguments: object, cores: int = 1) -> None:
+        found.setdefault(name, []).append(measured(*arguments, cores=cores))
+        print(f"  {millions:g} million, {name}: {found[name][-1]}", file=sys.stderr, flush=True)
+
+    for number in range(rounds):
+        forget(into)
+        take("one", "build", study, into, 1)
+        take("floor", "floor", study, into)
+        change_limit(study, 90 + number)
+        take("limit", "build", study, into, 1)
+        add_reader(study, f"S{number}")
+        take("reader", "build", study, into, 1)
+        forget(into)
+        take("two", "build", study, into, 2, cores=2)
+    for style in LOOPS if loops else ():
+        take(style, "loop", study, loops, style)
+    seconds = {name: statistics.median(m.seconds for m in own) for name, own in found.items()}
+    one, two = seconds["one"], seconds["two"]
+    peak = max(m.peak_mib for m in found["one"])
+    shared = max(m.peak_mib for m in found["two"]), max(m.worker_mib for m in found["two"])
+    scale = readers / loops if loops else 0
+    return [
+        f"{readers * TRIALS * FIXATIONS:,}",
+        f"{seconds['floor']:.1f} s",
+        f"{one:.1f} s, {one / seconds['floor']:.2f} x floor",
+        f"{two:.1f} s, {one / two:.2f} x faster",
+        f"{seconds['limit']:.1f} s, {seconds['limit'] / one:.0%} of the first",
+        f"{seconds['reader']:.1f} s, {seconds['reader'] / one:.0%}",
+        *(f"{seconds[style] * scale / one:.0f} x" if loops else "-" for style in LOOPS),
+        f"{peak:.0f} MiB",
+        f"{shared[0]:.0f} + {shared[1]:.0f} MiB",
+    ]
 
 
 def main() -> None:
     """Measure and print."""
-    parser = argparse.ArgumentParser(description=__doc__)
-    parser.add_argument("--readers", type=int, default=500)
-    parser.add_argument("--trials", type=int, default=100)
-    parser.add_argument("--fixations", type=int, default=20)
-    parser.add_argument("--rounds", type=int, default=5)
+    parser = argparse.ArgumentParser(description=__doc__.split("\n")[0])
+    parser.add_argument("--millions", type=float, nargs="+", default=[1, 10])
+    parser.add_argument(
+        "--rounds", type=int, default=3, help="of the smallest size; fewer of others"
+    )
     parser.add_argument("--loop-readers", type=int, default=5)
+    parser.add_argument("--room", type=Path, help="a folder with enough space")
     given = parser.parse_args()
-    with tempfile.TemporaryDirectory() as name:
-        folder = Path(name)
-        study = make(folder / "study", given.readers, given.trials, given.fixations)
-        into = folder / "built"
-        times: dict[str, list[float]] = {"floor": [], "build": [], "pandas": [], "numpy": []}
-        seconds(["build", str(study), str(into)])
-        for _ in range(given.rounds):
-            times["floor"].append(seconds(["floor", str(study), str(into)]))
-            times["build"].append(seconds(["build", str(study), str(into)]))
-            for style in LOOPS:
-                part = seconds(["loop", str(study), str(given.loop_readers), style])
-                times[style].append(part * given.readers / given.loop_readers)
-        middle = {name: statistics.median(values) for name, values in times.items()}
-        total = given.readers * given.trials * given.fixations
-        print(f"{given.readers} readers x {given.trials} trials x {given.fixations}: {total:,}")
-        for part, values in times.items():
-            spread = ", ".join(f"{value:.2f}" for value in sorted(values))
-            print(f"  {part:<6} median {middle[part]:8.2f} s  ({spread})")
-        print(f"  build / floor  {middle['build'] / middle['floor']:.2f}")
-        for style in LOOPS:
-            ratio = middle[style] / middle["build"]
-            print(
-                f"  loop over trials in {style} / build  {ratio:.0f}  (scaled up from some readers)"
-            )
-        print("  peak memory of a build, one log a reader:")
-        for readers in (given.readers // 10, given.readers, given.readers * 2):
-            one = make(folder / f"study{readers}", readers, given.trials, given.fixations)
-            print(f"    {readers:>6} readers  {peak_mib(one, folder / f'out{readers}'):6.0f} MiB")
+    head = [
+        "fixations",
+        "floor",
+        "one worker",
+        "two workers",
+        "limit changed",
+        "one reader more",
+        *(f"loop in {style}" for style in LOOPS),
+        "peak, one",
+        "peak, two: parent + worker",
+    ]
+    print(" | ".join(head))
+    for millions in given.millions:
+        rounds = max(round(given.rounds / max(millions, 1)), 1)
+        loops = given.loop_readers if millions <= 1 else 0
+        with tempfile.TemporaryDirectory(dir=given.room) as room:
+            print(" | ".join(row(millions, rounds, loops, Path(room))), flush=True)
 
 
 if __name__ == "__main__":
-    parts = {"floor": floor, "build": build}
-    if len(sys.argv) > 3 and sys.argv[1] in parts:
-        parts[sys.argv[1]](Path(sys.argv[2]), Path(sys.argv[3]))
-    elif len(sys.argv) > 3 and sys.argv[1] == "loop":
-        loop(Path(sys.argv[2]), int(sys.argv[3]), sys.argv[4])
+    if sys.argv[1:2] == ["part"]:
+        pa.set_cpu_count(1)
+        pa.set_io_thread_count(1)
+        part(sys.argv[2:])
     else:
         main()
