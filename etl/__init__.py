@@ -7,10 +7,15 @@ Examples
 ['build', 'check', 'draft', 'load_study', 'trace']
 """
 
-from etl.drafting import Draft, draft
-from etl.errors import DataError, FaultError, Finding, Findings, InputError, StudyError
-from etl.session import Result, build, check, load_study, trace
-from etl.study import Study
+from typing import TYPE_CHECKING
+
+from etl.lazily import loader
+
+if TYPE_CHECKING:
+    from etl.drafting import Draft, draft
+    from etl.errors import DataError, FaultError, Finding, Findings, InputError, StudyError
+    from etl.session import Result, build, check, load_study, trace
+    from etl.study import Study
 
 __all__ = [
     "DataError",
@@ -28,3 +33,17 @@ __all__ = [
     "load_study",
     "trace",
 ]
+
+_ERRORS = ("DataError", "FaultError", "Finding", "Findings", "InputError", "StudyError")
+_HOMES = {
+    **dict.fromkeys(("Draft", "draft"), "etl.drafting"),
+    **dict.fromkeys(_ERRORS, "etl.errors"),
+    **dict.fromkeys(("Result", "build", "check", "load_study", "trace"), "etl.session"),
+    "Study": "etl.study",
+}
+__getattr__ = loader(__name__, _HOMES)
+
+
+def __dir__() -> list[str]:
+    """Every name that the package offers."""
+    return sorted({*globals(), *__all__})

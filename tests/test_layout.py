@@ -25,6 +25,7 @@ MODULES = sorted(PACKAGE.rglob("*.py"))
 #: read in the rooms that read; only the session knows all rooms, and only the command the session.
 MAY_USE = {
     "errors": set(),
+    "lazily": set(),
     "coding": set(),
     "tables": {"errors", "coding"},
     "cells": set(),
@@ -34,7 +35,7 @@ MAY_USE = {
     "pseudonyms": {"files"},
     "parsers": {"errors", "tables", "files", "pseudonyms"},
     "trials": {"errors", "tables", "files", "pseudonyms"},
-    "regions": {"errors", "tables", "files"},
+    "regions": {"errors", "lazily", "tables", "files"},
     # A draft is checked by reading the first log as a build would.
     "drafting": {"errors", "tables", "files", "parsers", "study"},
     "screening": {"errors"},
@@ -42,15 +43,15 @@ MAY_USE = {
     "readiness": {"errors", "coding"},
     # The ledger and the accounts are handed over as plain rows.
     "export": {"errors", "tables", "cells", "screening", "readiness"},
-    "report": {"errors", "tables", "readiness"},
+    "report": {"errors", "lazily", "tables", "readiness"},
     "handoff": {"errors", "tables", "cells", "coding", "readiness"},
     "session": {
         *("errors", "tables", "files", "study", "parsers", "trials", "regions", "measures"),
         *("pseudonyms", "cells", "coding", "screening", "lines", "export", "report", "readiness"),
-        "handoff",
+        *("handoff", "lazily"),
     },
     "cli": {"etl", "session"},
-    "etl": {"drafting", "errors", "session", "study"},
+    "etl": {"drafting", "errors", "lazily", "session", "study"},
 }
 #: Rooms that are handed parts of the study file: they may name its models, for type checkers only.
 MAY_NAME_THE_STUDY = {"parsers", "trials", "regions"}

@@ -15,8 +15,6 @@ from pathlib import Path
 from typing import Any, Final
 from xml.etree import ElementTree as ET
 
-from openpyxl import load_workbook
-
 from etl.errors import Findings
 from etl.files.decoding import RawText, tell_unreadable
 from etl.files.delimited import Cells
@@ -250,6 +248,9 @@ def _tell_others(
 
 def _read_values(stored: bytes, sheet: Sheet, marks: SheetMarks) -> SheetCells:
     """Every cell of a sheet as it is shown; blank ones are left out."""
+    # Loaded where there is a workbook: it takes a tenth of the start of a worker.
+    from openpyxl import load_workbook  # noqa: PLC0415
+
     rows = []
     # Most cells of a table repeat others; 1, 1.0 and TRUE are equal but are shown otherwise.
     as_shown = lru_cache(maxsize=None, typed=True)(cell_as_shown)

@@ -9,7 +9,6 @@ from dataclasses import dataclass
 import numpy as np
 import pyarrow as pa
 from numpy.typing import NDArray
-from openpyxl.utils import get_column_letter
 
 from etl.errors import Findings
 from etl.files.workbook_archive import Range, SheetMarks
@@ -162,7 +161,7 @@ class _Table:
                         "a value stands in a column without a name",
                         path=self.shown,
                         line=line,
-                        where=f"column {get_column_letter(place)}",
+                        where=f"column {column_letters(place)}",
                         found=cell.text,
                         expected=f"a name for the column in row {self.line}",
                         fix="name the column, or move the remark to another sheet",
@@ -182,7 +181,7 @@ class _Table:
 
     def _tell_wrong(self, cell: ShownCell, line: int, place: int) -> None:
         """Record a cell that holds no value that could be relied on."""
-        name = f"{get_column_letter(place)}{line}"
+        name = f"{column_letters(place)}{line}"
         uncalculated = cell.wrong == _UNCALCULATED
         self.findings.error(
             "the result of the formula is not stored in the workbook"
@@ -204,7 +203,7 @@ class _Table:
         seen: dict[str, int] = {}
         for place, name in self.names.items():
             if name and name in seen:
-                first, second = (get_column_letter(at) for at in (seen[name], place))
+                first, second = (column_letters(at) for at in (seen[name], place))
                 self.findings.error(
                     "two columns have the same name",
                     path=self.shown,
@@ -219,7 +218,7 @@ class _Table:
     def _where(self, place: int) -> str:
         """A column, for messages."""
         name = self.names.get(place, "")
-        return f'column "{name}"' if name else f"column {get_column_letter(place)}"
+        return f'column "{name}"' if name else f"column {column_letters(place)}"
 
     def _check_merged(self, corners: Range) -> None:
         """Record a range of merged cells that holds something and touches the table."""
@@ -235,7 +234,7 @@ class _Table:
         ]
         if held:
             line, place, cell = held[0]
-            spelled = f"{get_column_letter(left)}{top}:{get_column_letter(right)}{bottom}"
+            spelled = f"{column_letters(left)}{top}:{column_letters(right)}{bottom}"
             self.findings.error(
                 "merged cells hold one value, and which of their rows and columns it is for "
                 "cannot be told",
@@ -327,3 +326,18 @@ class _Table:
                 found=f"{odd.first.strange}, read as {odd.first.text}",
                 fix="give the column a plain number format, such as General or 0.00",
             )
+
+
+def column_letters(place: int) -> str:
+    """The letters by which spreadsheets name a column.
+
+    Examples
+    --------
+    >>> column_letters(1), column_letters(26), column_letters(27), column_letters(703)
+    ('A', 'Z', 'AA', 'AAA')
+    """
+    letters = ""
+    while place:
+        place, letter = divmod(place - 1, 26)
+        letters = chr(ord("A") + letter) + letters
+    return letters

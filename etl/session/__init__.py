@@ -2,16 +2,16 @@
 
 from __future__ import annotations
 
-import os
-from pathlib import Path
+from typing import TYPE_CHECKING
 
-from etl.measures import SELECTABLE
-from etl.session.line_file import write_lines
-from etl.session.one_trial import Wanted, explained, trace, write_picture
-from etl.session.result import Result
-from etl.session.run import build, check
-from etl.study import Study
-from etl.study import load_study as _load_study
+from etl.lazily import loader
+
+if TYPE_CHECKING:
+    from etl.session.line_file import write_lines
+    from etl.session.loading import load_study
+    from etl.session.one_trial import Wanted, explained, trace, write_picture
+    from etl.session.result import Result
+    from etl.session.run import build, check
 
 __all__ = [
     "Result",
@@ -25,23 +25,11 @@ __all__ = [
     "write_picture",
 ]
 
-
-def load_study(path: str | os.PathLike[str]) -> Study:
-    """Read and check a study file.
-
-    Parameters
-    ----------
-    path : path
-        The study file (TOML).
-
-    Returns
-    -------
-    Study
-        With every default filled in.
-
-    Raises
-    ------
-    StudyError
-        With every problem of the file at once, each with its line.
-    """
-    return _load_study(Path(path), known_outcomes=SELECTABLE)
+_HOMES = {
+    **dict.fromkeys(("build", "check"), "etl.session.run"),
+    **dict.fromkeys(("Wanted", "explained", "trace", "write_picture"), "etl.session.one_trial"),
+    "Result": "etl.session.result",
+    "load_study": "etl.session.loading",
+    "write_lines": "etl.session.line_file",
+}
+__getattr__ = loader(__name__, _HOMES)

@@ -25,10 +25,10 @@ from etl.handoff import READ_TABLES
 from etl.measures import REASON_MEANINGS
 from etl.parsers import reader_for
 from etl.report import AuditInput, write_audit
+from etl.session.all_groups import finish_groups
 from etl.session.crew import Crew, Progress, Room, silent
 from etl.session.gallery import drawn
 from etl.session.gather import Gathered, gather, read_logs
-from etl.session.group_work import finish_groups
 from etl.session.hand_over import describe, hand_over
 from etl.session.kept_logs import ROOM_BYTES, Aside, Shelf
 from etl.session.log_tellings import (
