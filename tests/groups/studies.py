@@ -136,7 +136,10 @@ def labelled(root: Path) -> Path:
 
 
 def in_one_log(root: Path) -> Path:
-    """All readers in one log, whose numbers of fixations run on from reader to reader."""
+    """All readers in one log; numbers of fixations run on, and the clock starts with each reader.
+
+    A fixation of the third reader is not over when the next trial begins.
+    """
     made = write_bulk_study(root, readers=6, trials=4, fixations=5, regions=3)
     header, rows = "", []
     for log in sorted((root / "logs").glob("*.tsv")):
@@ -146,6 +149,7 @@ def in_one_log(root: Path) -> Path:
     place = header.split("\t").index("fix")
     for number, row in enumerate(rows, start=1):
         row[place] = str(number)
+    rows[2 * 20 + 9][header.split("\t").index("dur_ms")] = "9000"
     whole = "\n".join([header, *("\t".join(row) for row in rows), ""])
     (root / "logs" / "all.tsv").write_text(whole, encoding="utf-8", newline="\n")
     return made.study_file

@@ -70,7 +70,7 @@ def test_studies_are_worth_comparing(studies: dict[str, Prepared]) -> None:
     assert failed[True] > 3
     assert failed[False] > 50
     wrong = {name: sum(one.findings.failed for one in own) for name, own in told.items()}
-    assert (wrong["damaged"], wrong["wrongly_by_hand"]) == (2, 2)
+    assert (wrong["damaged"], wrong["wrongly_by_hand"], wrong["in_one_log"]) == (2, 2, 1)
     assert sum(one.counts["readers left out"] for one in told["screened"]) > 1
     assert sum(one.accounts["trials"].by_rule["skip"] for one in told["screened"]) > 10
     assert sum(one.accounts["fixations"].by_rule["repeated"] for one in told["recorded_again"]) > 9
