@@ -107,7 +107,7 @@ def test_reader_of_a_random_study_is_the_same_in_any_group(
 def test_rows_of_a_group_stand_reader_after_reader(studies: dict[str, Prepared]) -> None:
     """The rows of a group are those of its readers, one below the other, in every table."""
     readers = studies["damaged"].readers
-    tables = readers.bench.tables(group_of(readers.tasks, readers.shelf))
+    tables = readers.bench.tables(group_of(readers.tasks, readers.aside))
     for name, batch in tables.batches.items():
         starts = tables.row_starts[name]
         assert (starts[0], starts[-1]) == (0, batch.num_rows)

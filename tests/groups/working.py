@@ -17,7 +17,7 @@ from etl.errors import Findings
 from etl.session.bench import Bench
 from etl.session.crew import Room, silent
 from etl.session.joined_readers import group_of
-from etl.session.kept_logs import Shelf
+from etl.session.kept_logs import Aside
 from etl.session.reader import ReaderTables
 from etl.session.run import examine
 from etl.session.work import ReaderTask
@@ -29,14 +29,14 @@ class Readers:
 
     bench: Bench
     tasks: tuple[ReaderTask, ...]
-    shelf: Shelf
+    aside: Aside
 
     def worked(self, cuts: Sequence[int]) -> list[ReaderTables]:
         """What is told of each reader, with the own rows; groups end at the cuts."""
         ends = sorted({0, *(cut for cut in cuts if 0 < cut < len(self.tasks)), len(self.tasks)})
         done: list[ReaderTables] = []
         for start, stop in pairwise(ends):
-            group = group_of(self.tasks[start:stop], self.shelf)
+            group = group_of(self.tasks[start:stop], self.aside)
             done += self.bench.tables(group).one_by_one()
         return done
 
@@ -45,13 +45,13 @@ def readers_of(study_file: Path) -> Readers | None:
     """The readers of a study, as far as its logs and facts can be read."""
     study = etl.load_study(study_file)
     findings = Findings()
-    # One process keeps all fixations in memory, so that the folder is not needed any more.
+    # One process puts all fixations on a shelf in memory; the folder is not needed any more.
     with tempfile.TemporaryDirectory() as folder, Room(Path(folder), 1, silent) as room:
         examined = examine(study, room, findings)
     if examined is None:
         return None
-    design, library, options, shelf = examined[1].bench()
-    return Readers(Bench(design, library, options), tuple(examined[1].tasks), shelf)
+    design, library, options, aside = examined[1].bench()
+    return Readers(Bench(design, library, options), tuple(examined[1].tasks), aside)
 
 
 def rows_of(batch: pa.RecordBatch) -> pa.RecordBatch:
