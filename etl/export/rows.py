@@ -21,7 +21,7 @@ from etl.export.row_columns import (
     RegressionColumns,
     TrialColumns,
 )
-from etl.screening.ledger import LEVELS, Entry
+from etl.screening.entries import LEVELS, Entry
 from etl.tables import CODED, LEDGER, TABLES, TableDesign, centred_name, written_schema
 
 __all__ = [

@@ -11,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from etl.errors import FaultError
+from etl.screening.entries import LEFT_OUT, SET_MISSING, Entry, Screened, in_order
 from etl.screening.rules import (
     BEFORE,
     CODE,
@@ -20,47 +21,7 @@ from etl.screening.rules import (
     TRIAL_RULES,
     Limits,
 )
-from etl.screening.screen import FixationScreening, Recorded, Verdict
-
-LEVELS = ("fixation", "trial", "participant", "value")
-LEFT_OUT = "left out"
-SET_MISSING = "set missing"
-
-
-class Entry(NamedTuple):
-    """One row of the ledger; -1 where a place does not apply.
-
-    Attributes
-    ----------
-    level : str
-        One of ``LEVELS``.
-    trial, region, fixation : int
-        Index of the trial, code of the region, number of the fixation in its trial.
-    rule, limit, observed, action, also : str
-        As the ledger shows them.
-    row : int
-        The fixation whose place in the log is named.
-    reader : int
-        The place of the reader among those of the group.
-    """
-
-    level: str
-    trial: int
-    region: int
-    fixation: int
-    rule: str
-    limit: str
-    observed: str
-    action: str
-    also: str
-    row: int
-    reader: int = 0
-
-    @property
-    def place(self) -> tuple[int, bool, int, int, int, int]:
-        """Where the row stands among all."""
-        level = LEVELS.index(self.level)
-        return (self.reader, self.trial < 0, self.trial, level, self.fixation, self.region)
+from etl.screening.screen import Verdict
 
 
 @dataclass(slots=True)
@@ -124,48 +85,6 @@ class Accounts:
         return self.read == self.kept + sum(self.by_rule.values())
 
 
-@dataclass(frozen=True, slots=True)
-class Screened:
-    """Everything that screening found out about one or more readers.
-
-    Attributes
-    ----------
-    recorded : Recorded
-        The fixations as they were.
-    number : (n,) int64 array
-        Number of each fixation in its trial.
-    fixations : FixationScreening
-        After the rules for fixations.
-    trials, readers : Verdict
-        What the rules for trials and readers say.
-    before : (trials,) int8 array
-        Code of ``skip`` for trials that are no part of the study, else -1.
-    reader : (trials,) int64 array
-        The reader of each trial, from 0; non-decreasing.
-    """
-
-    recorded: Recorded
-    number: NDArray[np.int64]
-    fixations: FixationScreening
-    trials: Verdict
-    readers: Verdict
-    before: NDArray[np.int8]
-    reader: NDArray[np.int64]
-
-    def trial_codes(self) -> NDArray[np.int8]:
-        """What left each trial out: ``skip``, a rule for trials, a rule for readers; -1 kept."""
-        codes = np.where(self.before >= 0, self.before, self.trials.left_out)
-        return np.where(codes >= 0, codes, self.readers.left_out[self.reader]).astype(np.int8)
-
-    def fixation_codes(self) -> NDArray[np.int8]:
-        """What left each fixation out; those of a trial or reader left out are charged to that."""
-        own = self.fixations.left_out
-        of_trial = self.trial_codes()
-        if (of_trial < 0).all():
-            return own
-        return np.where(own >= 0, own, of_trial[self.recorded.trial]).astype(np.int8)
-
-
 def entries_of(
     screened: Screened,
     limits: Limits,
@@ -219,7 +138,7 @@ def entries_of(
         entries.append(
             Entry("participant", -1, -1, -1, rule, limit, observed, LEFT_OUT, also, -1, reader)
         )
-    return sorted(entries, key=lambda entry: entry.place)
+    return in_order(entries)
 
 
 def _of_readers(screened: Screened, notes: Sequence[str]) -> tuple[list[list[str]], list[str]]:
@@ -269,61 +188,76 @@ def with_values(entries: list[Entry], far: Sequence[FarValue], limits: Limits) -
         )
         for one in far
     ]
-    return sorted([*entries, *added], key=lambda entry: entry.place)
+    return in_order([*entries, *added])
 
 
 def _fixation_entries(
     screened: Screened, limits: Limits, above: Sequence[list[str]]
 ) -> Iterable[Entry]:
     """A row for each fixation that a rule for fixations, or a repeated trial, leaves out."""
-    own = screened.fixations
-    rows = np.flatnonzero(
-        (own.left_out >= CODE["repeated"]) & (own.left_out <= CODE[FIXATION_RULES[-1]])
-    )
-    trial_code = screened.trials.left_out
-    for row in rows.tolist():
-        rule = LEFT_OUT_BY[int(own.left_out[row])]
-        trial = int(screened.recorded.trial[row])
-        reader = int(screened.reader[trial])
-        also: list[str] = []
-        if rule != "repeated":
-            later = FIXATION_RULES[FIXATION_RULES.index(rule) + 1 :]
-            also = [name for name in later if name in own.holds and own.holds[name][row]]
-            if trial_code[trial] >= 0:
-                also += [name for name, holds in screened.trials.holds.items() if holds[trial]]
-            also += above[reader]
-        action = LEFT_OUT
+    own, recorded = screened.fixations, screened.recorded
+    for rule in ("repeated", *FIXATION_RULES):
+        rows = np.flatnonzero(own.left_out == CODE[rule])
+        trial = recorded.trial[rows]
+        reader = screened.reader[trial].tolist()
+        actions = [LEFT_OUT] * len(rows)
         if rule == "merge":
-            action = f"merged into {int(screened.number[own.into[row]])}"
-        yield Entry(
-            "fixation",
-            trial,
-            -1,
-            int(screened.number[row]),
-            rule,
-            limits.shown.get(rule, ""),
-            _observed(rule, screened, row),
-            action,
-            " ".join(also),
-            row,
-            reader,
-        )
+            into = screened.number[own.into[rows]].tolist()
+            actions = [f"merged into {number}" for number in into]
+        also = [""] * len(rows)
+        if rule != "repeated":
+            also = _also_by(screened, rule, rows, above)
+        limit, observed = limits.shown.get(rule, ""), _observed(rule, screened, rows)
+        for place, row in enumerate(rows.tolist()):
+            yield Entry(
+                "fixation",
+                int(trial[place]),
+                -1,
+                int(screened.number[row]),
+                rule,
+                limit,
+                observed[place],
+                actions[place],
+                also[place],
+                row,
+                reader[place],
+            )
 
 
-def _observed(rule: str, screened: Screened, row: int) -> str:
+def _also_by(
+    screened: Screened, rule: str, rows: NDArray[np.int64], above: Sequence[list[str]]
+) -> list[str]:
+    """The later rules against each of some fixations, their trials and readers, that hold too."""
+    own, trial = screened.fixations, screened.recorded.trial[rows]
+    later = FIXATION_RULES[FIXATION_RULES.index(rule) + 1 :]
+    holding = [(name, own.holds[name][rows]) for name in later if name in own.holds]
+    lost = screened.trials.left_out[trial] >= 0
+    holding += [(name, holds[trial] & lost) for name, holds in screened.trials.holds.items()]
+    names: list[list[str]] = [[] for _ in rows]
+    for name, holds in holding:
+        for place in np.flatnonzero(holds).tolist():
+            names[place].append(name)
+    readers = screened.reader[trial].tolist()
+    return [
+        " ".join([*own_names, *above[at]]) for own_names, at in zip(names, readers, strict=True)
+    ]
+
+
+def _observed(rule: str, screened: Screened, rows: NDArray[np.int64]) -> list[str]:
     """What a rule for fixations looked at."""
     recorded = screened.recorded
     if rule in ("merge", "under_ms", "over_ms"):
-        return _number(screened.fixations.duration_ms[row])
+        return [_number(ms) for ms in screened.fixations.duration_ms[rows].tolist()]
     if rule == "outside_text_time":
-        return _number(recorded.onset_ms[row])
+        return [_number(ms) for ms in recorded.onset_ms[rows].tolist()]
     if rule == "off_screen":
-        return f"{_number(recorded.x_px[row])}, {_number(recorded.y_px[row])}"
+        places = zip(recorded.x_px[rows].tolist(), recorded.y_px[rows].tolist(), strict=True)
+        return [f"{_number(x)}, {_number(y)}" for x, y in places]
     if rule == "first":
-        return str(int(recorded.from_start[row]))
+        return [str(place) for place in recorded.from_start[rows].tolist()]
     if rule == "last":
-        return str(int(recorded.from_end[row]))
-    return "1"
+        return [str(place) for place in recorded.from_end[rows].tolist()]
+    return ["1"] * len(rows)
 
 
 def _later(verdict: Verdict, at: int, rule: str) -> list[str]:

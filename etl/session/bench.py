@@ -25,7 +25,8 @@ from etl.measures import Outcomes, Sequences, compute
 from etl.parsers import CanonicalLog
 from etl.regions import RegionLibrary
 from etl.screening import LEFT_OUT_BY, outlying
-from etl.screening.ledger import Entry, FarValue, Screened, entries_of, with_values
+from etl.screening.entries import Entry, Screened
+from etl.screening.ledger import FarValue, entries_of, with_values
 from etl.screening.rules import OUTLIER
 from etl.session.line_ledger import with_lines
 from etl.session.lines import LineWork, ReaderLines

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from etl.report import GalleryEntry, LineTrust, UnsureTrial
 from etl.report.trace_picture import draw
-from etl.screening.ledger import Screened
+from etl.screening.entries import Screened
 from etl.screening.rules import CODE, LEFT_OUT_BY, TRIAL_RULES
 
 if TYPE_CHECKING:

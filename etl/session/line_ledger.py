@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from etl.errors import FaultError, Findings
 from etl.lines.consensus import REASONS
-from etl.screening.ledger import Entry, Screened
+from etl.screening.entries import Entry, Screened, in_order
 from etl.session.lines import ReaderLines
 from etl.study import Study
 from etl.tables import LINE_RULES
@@ -69,8 +69,8 @@ def with_lines(entries: list[Entry], screened: Screened, lines: ReaderLines | No
     if not added:
         return entries
     added.sort(key=lambda entry: entry.row)
-    # Both lists are in order, and sorting keeps the order of what is equal.
-    return sorted([*added, *entries], key=lambda entry: entry.place)
+    # What is equal keeps its order.
+    return in_order([*added, *entries])
 
 
 def _entry(screened: Screened, row: int, rule: str, observed: str, action: str) -> Entry:

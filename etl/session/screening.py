@@ -20,7 +20,7 @@ from etl.screening import (
     screen_readers,
     screen_trials,
 )
-from etl.screening.ledger import Screened
+from etl.screening.entries import Screened
 from etl.screening.rules import CODE
 from etl.session.ordered import OrderedFixations
 

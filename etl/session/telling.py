@@ -15,7 +15,8 @@ from etl.measures import Outcomes
 from etl.parsers import CanonicalLog
 from etl.report import LineTrust, ReaderProfile, TrialFates, profiles_of
 from etl.screening import LEFT_OUT_BY
-from etl.screening.ledger import Accounts, Entry, Screened, check_balance
+from etl.screening.entries import Entry, Screened
+from etl.screening.ledger import Accounts, check_balance
 from etl.session.gallery import candidates
 from etl.session.labels import Unlisted, unlisted_labels
 from etl.session.line_ledger import check_lines, counts_of_lines
