@@ -5,6 +5,8 @@ from __future__ import annotations
 import unicodedata
 from collections.abc import Collection, Iterable, Sequence
 from dataclasses import dataclass
+from math import prod
+from typing import Any
 
 import numpy as np
 import pyarrow as pa
@@ -143,8 +145,9 @@ def place_rows(wanted: Sequence[Coded], table: Sequence[Coded]) -> NDArray[np.in
     [2, -1]
     """
     known = np.ones(len(wanted[0]), dtype=bool)
-    keys = np.zeros(len(wanted[0]), dtype=np.int64)
-    own = np.zeros(len(table[0]), dtype=np.int64)
+    number = _whole([len(have.values) for have in table])
+    keys: NDArray[Any] = np.zeros(len(wanted[0]), dtype=number)
+    own: NDArray[Any] = np.zeros(len(table[0]), dtype=number)
     span = 1
     for ask, have in zip(wanted, table, strict=True):
         codes = ask.recoded(have.values)
@@ -158,10 +161,7 @@ def place_rows(wanted: Sequence[Coded], table: Sequence[Coded]) -> NDArray[np.in
             place += 1
         span *= width
     if span <= _ROOMY * (len(keys) + len(own)):
-        row_of = np.full(span, -1, dtype=np.int64)
-        # Written from behind, so that of rows alike the first is found.
-        row_of[own[::-1]] = np.arange(len(own) - 1, -1, -1)
-        rows = row_of[keys]
+        rows: NDArray[np.int64] = _row_of(own, span)[keys].astype(np.int64)
         rows[~known] = -1
         return rows
     order = np.argsort(own, kind="stable")
@@ -172,8 +172,21 @@ def place_rows(wanted: Sequence[Coded], table: Sequence[Coded]) -> NDArray[np.in
     return np.where(known, rows, -1)
 
 
+def _whole(counts: Sequence[int]) -> type[np.int32] | type[np.int64]:
+    """Whole numbers that hold a key for each combination of so many texts and of missing ones."""
+    return np.int32 if prod(count + 1 for count in counts) < 1 << 31 else np.int64
+
+
+def _row_of(keys: NDArray[Any], span: int) -> NDArray[np.int32]:
+    """For each key the first row that has it, -1 where none has."""
+    row_of = np.full(span, -1, dtype=np.int32)
+    # Written from behind, so that of rows alike the first stays.
+    row_of[keys[::-1]] = np.arange(len(keys) - 1, -1, -1, dtype=np.int32)
+    return row_of
+
+
 def _numbered(
-    one: NDArray[np.int64], other: NDArray[np.int64]
+    one: NDArray[Any], other: NDArray[Any]
 ) -> tuple[NDArray[np.int64], NDArray[np.int64], int]:
     """Keys of two tables numbered anew, so that they never overflow; and how many there are."""
     distinct, place = np.unique(np.concatenate([one, other]), return_inverse=True)
@@ -201,7 +214,8 @@ def group_rows(columns: Sequence[Coded]) -> tuple[NDArray[np.int64], NDArray[np.
     >>> first.tolist(), group.tolist()
     ([0, 1], [0, 1, 0])
     """
-    keys = np.zeros(len(columns[0]), dtype=np.int64)
+    number = _whole([len(column.values) for column in columns])
+    keys: NDArray[Any] = np.zeros(len(columns[0]), dtype=number)
     span = 1
     for column in columns:
         width = len(column.values) + 1
@@ -215,9 +229,8 @@ def group_rows(columns: Sequence[Coded]) -> tuple[NDArray[np.int64], NDArray[np.
         _, first, group = np.unique(keys, return_index=True, return_inverse=True)
         return first, group
     # Where nearly all combinations occur, a place for each is sooner done than sorting.
-    row_of = np.full(span, -1, dtype=np.int64)
-    row_of[keys[::-1]] = np.arange(len(keys) - 1, -1, -1)
-    there = np.flatnonzero(row_of >= 0)
-    first = row_of[there]
-    row_of[there] = np.arange(len(there))
-    return first, row_of[keys]
+    row_of = _row_of(keys, span)
+    there = row_of >= 0
+    first = row_of[there].astype(np.int64)
+    row_of[there] = np.arange(len(first), dtype=np.int32)
+    return first, row_of[keys].astype(np.int64)

@@ -118,6 +118,8 @@ class Packed:
 
     def take(self, rows: NDArray[np.integer]) -> Packed:
         """Some of the rows; missing where a row is -1."""
+        if not len(self.codes):
+            return Packed(np.full(len(rows), -1, dtype=np.int8), self._texts)
         codes = self.codes[rows]
         codes[rows < 0] = -1
         return Packed(codes, self._texts)

@@ -14,8 +14,11 @@ from etl.files.headers import Header
 from etl.files.rows import Rows, SetAside, tell_uneven
 from etl.files.separators import BLANK, blanks, spelled, split_line
 
-#: The longest piece of text, in bytes, that pyarrow's reader is given; it takes 32-bit sizes.
-_LARGEST_BLOCK = 1 << 30
+#: The longest piece of text, in bytes, that pyarrow's reader takes at once; it needs several times
+#: as much memory for it. No row is longer.
+_LARGEST_BLOCK = 1 << 25
+#: Line ends are looked for in pieces of this many bytes.
+_PIECE_BYTES = 1 << 24
 
 
 def read_plain(
@@ -95,7 +98,10 @@ def _data_lines(body: bytes, header: Header) -> tuple[bytes, NDArray[np.int32], 
     """The body's data lines, their numbers in the file, how many lines it has, and the others."""
     aside = SetAside()
     signs = np.frombuffer(body, dtype=np.uint8)
-    ends = np.flatnonzero(signs == ord("\n"))
+    pieces = range(0, len(signs), _PIECE_BYTES)
+    found = [np.flatnonzero(signs[at : at + _PIECE_BYTES] == ord("\n")) + at for at in pieces]
+    ends = np.concatenate(found) if found else np.zeros(0, dtype=np.int64)
+    del found
     height = len(ends) + (not body.endswith(b"\n") and bool(body))
     numbers = np.arange(header.first, header.first + height, dtype=np.int32)
     # Only what begins so can be blank or a remark.

@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from etl.errors import Findings
-from etl.files import Coded
+from etl.files import Coded, group_rows
 from etl.regions import RegionLibrary
 from etl.study import Study
 from etl.trials import KnownTrials
@@ -99,19 +99,19 @@ def _with_whom(
     column: Coded, readers: Coded, rows: NDArray[np.bool_]
 ) -> tuple[dict[str, int], dict[str, int], int]:
     """How many readers have each text, in which row it comes first, and how many readers are."""
-    there = np.flatnonzero(rows)
-    owner = readers.codes[there]
-    there = there[column.codes[there] >= 0]
-    pair = column.codes[there].astype(np.int64) * (len(readers.values) + 1)
-    distinct, first = np.unique(pair + readers.codes[there], return_index=True)
-    code = distinct // (len(readers.values) + 1)
-    present, starts, counts = np.unique(code, return_index=True, return_counts=True)
-    rows_of = there[np.minimum.reduceat(first, starts)] if len(starts) else there[:0]
+    everybody = int(np.count_nonzero(np.bincount(readers.codes[rows], minlength=1)))
+    there = np.flatnonzero(rows & (column.codes >= 0))
+    if not len(there):
+        return {}, {}, everybody
+    first, _ = group_rows([column.take(there), readers.take(there)])
+    code = column.codes[there[first]]
+    order = np.lexsort((first, code))
+    present, starts, counts = np.unique(code[order], return_index=True, return_counts=True)
     texts = [column.values[one] for one in present.tolist()]
     return (
         dict(zip(texts, counts.tolist(), strict=True)),
-        dict(zip(texts, rows_of.tolist(), strict=True)),
-        len(np.unique(owner)),
+        dict(zip(texts, there[first[order[starts]]].tolist(), strict=True)),
+        everybody,
     )
 
 
