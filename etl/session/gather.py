@@ -39,6 +39,7 @@ from etl.session.pseudonym_guards import (
 )
 from etl.session.reader import Options
 from etl.session.reader_tasks import Corrections, reader_tasks, texts_in
+from etl.session.shared_logs import share_log
 from etl.session.trial_facts import trial_facts
 from etl.session.work import LogAnswer, LogTask, LogWork, ReaderTask
 from etl.tables import CovariateColumn, IdColumn, TableDesign
@@ -97,14 +98,19 @@ def read_logs(
 ) -> list[LogAnswer]:
     """Read all logs and put their fixations aside, in a folder or on a shelf."""
     folder, shelf = kept
+    share = crew.workers > 1
     tasks = [
-        LogTask(path, shown, folder / f"{number}.arrow")
+        LogTask(path, shown, folder / f"{number}.arrow", share=share)
         for number, (path, shown) in enumerate(logs)
     ]
+    arguments = (reader, shelf, pseudonyms)
     answers = []
-    for answer in crew.map(LogWork, (reader, shelf, pseudonyms), tasks):
+    for answer in crew.map(LogWork, arguments, tasks):
         answers.append(answer)
         progress("reading logs", len(answers), len(tasks))
+    for number, answer in enumerate(answers):
+        if answer.begun is not None:
+            answers[number] = share_log(tasks[number], answer, crew, arguments)
     return answers
 
 
@@ -134,9 +140,9 @@ def gather(
     fixations: Counter[str] = Counter()
     for number, answer in enumerate(answers):
         fixations.update(answer.fixations)
-        for participant, batch in answer.batches.items():
-            part = (kept[0] / f"{number}.arrow", batch, plan.places[number])
-            parts.setdefault(participant, []).append(part)
+        for path, batches in answer.kept(kept[0] / f"{number}.arrow"):
+            for participant, batch in batches.items():
+                parts.setdefault(participant, []).append((path, batch, plan.places[number]))
     every = [
         replace(answer.trials, file=answer.trials.file + np.int32(plan.places[number]))
         for number, answer in enumerate(answers)

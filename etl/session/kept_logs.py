@@ -9,7 +9,7 @@ memory takes what fits on it; only the rest goes to the disk.
 from __future__ import annotations
 
 import json
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from pathlib import Path
 
 import numpy as np
@@ -44,6 +44,7 @@ class Shelf:
 
     def put(self, path: Path, batches: list[pa.RecordBatch]) -> bool:
         """Hold the batches of a log, if there is room for them."""
+        self._room += sum(batch.nbytes for batch in self._held.pop(path, ()))
         size = sum(batch.nbytes for batch in batches)
         if size > self._room:
             return False
@@ -102,6 +103,36 @@ def keep_log(log: CanonicalLog, path: Path, shelf: Shelf) -> tuple[dict[str, int
     readers = [participant.values[code] for code in present.tolist()]
     counts = {name: own.num_rows for name, own in zip(readers, batches, strict=True)}
     return {name: number for number, name in enumerate(readers)}, counts
+
+
+def kept_columns(path: Path, count: int, name: str, shelf: Shelf) -> Iterator[pa.Array]:
+    """One column of what was put aside of a log, batch by batch.
+
+    Parameters
+    ----------
+    path : Path
+        Where it was put.
+    count : int
+        How many batches there are.
+    name : str
+        The column.
+    shelf : Shelf
+        May hold them.
+
+    Yields
+    ------
+    pa.Array
+        One a reader.
+    """
+    if shelf.get(path, 0) is None:
+        with pa.OSFile(str(path), "rb") as source, pa.ipc.open_file(source) as reader:
+            for number in range(count):
+                yield reader.get_batch(number).column(name)
+        return
+    for number in range(count):
+        batch = shelf.get(path, number)
+        if batch is not None:
+            yield batch.column(name)
 
 
 def kept_log(

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 
@@ -9,10 +10,14 @@ import numpy as np
 
 from etl.errors import Findings
 from etl.export.rows import TrialColumns
-from etl.parsers import LogReader
+from etl.files.pieces import WholeNeededError
+from etl.files.text_faults import tell_unreadable
+from etl.parsers import LogReader, TableReader
 from etl.parsers.canonical import LogNote
+from etl.parsers.table_blocks import BlockLog
 from etl.pseudonyms import Pseudonyms
 from etl.regions import RegionLibrary
+from etl.session.block_logs import BlockTask, KeptBlock, block_path, keep_blocks, whole_log
 from etl.session.kept_logs import Shelf, keep_log, kept_log
 from etl.session.lines import NO_HAND, HandLines
 from etl.session.log_figures import LogFigures, figures_of
@@ -30,6 +35,9 @@ class LogTask:
     path: Path
     shown: str
     kept: Path
+    #: Whether it may be left to others, and is not read in blocks whatever its size.
+    share: bool = False
+    whole: bool = False
 
 
 @dataclass(slots=True)
@@ -38,6 +46,10 @@ class LogAnswer:
 
     note: LogNote
     batches: dict[str, int] = field(default_factory=dict)
+    #: The same for each block, where it was read in blocks.
+    blocks: tuple[dict[str, int], ...] = ()
+    #: What is known of it, where its blocks are left to others.
+    begun: BlockLog | None = None
     #: How many fixations each reader has.
     fixations: dict[str, int] = field(default_factory=dict)
     trials: SeenTrials | None = None
@@ -47,6 +59,13 @@ class LogAnswer:
     originals: dict[str, str] = field(default_factory=dict)
     #: Those that stand for two.
     clashes: dict[str, tuple[str, str]] = field(default_factory=dict)
+
+    def kept(self, path: Path) -> Iterator[tuple[Path, dict[str, int]]]:
+        """Where fixations were put aside, and the batch of each reader there."""
+        if self.batches:
+            yield path, self.batches
+        for place, batches in enumerate(self.blocks):
+            yield block_path(path, place), batches
 
 
 @dataclass(frozen=True, slots=True)
@@ -82,13 +101,33 @@ class LogWork:
 
     def __call__(self, task: LogTask) -> LogAnswer:
         """Read one log and put its fixations aside."""
-        if self._pseudonyms is None:
-            return self._read(task)
-        before = len(self._pseudonyms.originals)
-        answer = self._read(task)
-        answer.originals = self._pseudonyms.learnt_since(before)
-        answer.clashes = dict(self._pseudonyms.clashes)
+        before = 0 if self._pseudonyms is None else len(self._pseudonyms.originals)
+        answer = self._read_big(task) or self._read(task)
+        if self._pseudonyms is not None:
+            answer.originals = self._pseudonyms.learnt_since(before)
+            answer.clashes = dict(self._pseudonyms.clashes)
         return answer
+
+    def _read_big(self, task: LogTask) -> LogAnswer | None:
+        """Read one log in blocks; None for one that is to be read as a whole."""
+        reader = self._reader
+        if task.whole or not isinstance(reader, TableReader) or not reader.is_big(task.path):
+            return None
+        findings = Findings()
+
+        def do(tasks: Iterable[BlockTask]) -> Iterator[Iterator[KeptBlock]]:
+            return (keep_blocks(own, reader, self._shelf) for own in tasks)
+
+        try:
+            log = reader.begin(task.path, task.shown, findings)
+            if log is not None and task.share and log.survey.alone:
+                return LogAnswer(LogNote(task.shown), begun=log, findings=findings)
+            return answer_of(log, reader, (task, self._shelf), do, findings)
+        except WholeNeededError:
+            return None
+        except OSError as why:
+            tell_unreadable(task.path, task.shown, why, findings)
+            return LogAnswer(LogNote(task.shown), findings=findings)
 
     def _read(self, task: LogTask) -> LogAnswer:
         """Read one log and put its fixations aside."""
@@ -101,7 +140,68 @@ class LogWork:
         batches, fixations = keep_log(log, task.kept, self._shelf)
         # A recording of the eye that does not count holds no fixation to compare with others.
         figures = figures_of(log, len(batches), len(trials)) if len(log) else None
-        return LogAnswer(note, batches, fixations, trials, figures, findings)
+        return LogAnswer(
+            note,
+            batches,
+            fixations=fixations,
+            trials=trials,
+            figures=figures,
+            findings=findings,
+        )
+
+
+def answer_of(
+    log: BlockLog | None,
+    reader: TableReader,
+    aside: tuple[LogTask, Shelf],
+    do: Callable[[Sequence[BlockTask]], Iterable[Iterable[KeptBlock]]],
+    findings: Findings,
+) -> LogAnswer:
+    """What a log holds that is read in blocks.
+
+    Parameters
+    ----------
+    log : BlockLog or None
+        The log; None where something is wrong with it already.
+    reader : TableReader
+        How the study's logs are read.
+    aside : tuple of LogTask and Shelf
+        Where its fixations are put aside.
+    do : callable
+        Does the work on blocks.
+    findings : Findings
+        What is known to be wrong.
+
+    Returns
+    -------
+    LogAnswer
+
+    Raises
+    ------
+    WholeNeededError
+        If something is the matter that is told from the whole log.
+    """
+    task, shelf = aside
+    refused = LogAnswer(LogNote(task.shown), findings=findings)
+    try:
+        whole = None
+        if log is not None:
+            whole = whole_log(log, reader, (task.kept, shelf), do, findings)
+        else:
+            findings.items.sort(key=lambda finding: finding.line or 0)
+    except OSError as why:
+        tell_unreadable(task.path, task.shown, why, findings)
+        return refused
+    if whole is None:
+        return refused
+    return LogAnswer(
+        whole.note,
+        blocks=whole.blocks,
+        fixations=whole.fixations,
+        trials=whole.trials,
+        figures=whole.figures,
+        findings=findings,
+    )
 
 
 class ReaderWork:
