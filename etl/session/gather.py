@@ -6,7 +6,6 @@ import re
 from collections import Counter
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
-from pathlib import Path
 
 import numpy as np
 import pyarrow as pa
@@ -16,13 +15,10 @@ from etl.errors import Findings
 from etl.files import Coded, group_rows, number_of
 from etl.files.packed import Packed
 from etl.measures import MEASURES, REASONS, TRIAL_MEASURES, select
-from etl.parsers import LogReader
-from etl.pseudonyms import Pseudonyms
 from etl.regions import RegionLibrary
 from etl.report import LineGrid, NotRecorded
 from etl.screening.ledger import columns_of_accounts
 from etl.screening.rules import OUTLIER
-from etl.session.crew import Crew, Progress
 from etl.session.kept_logs import Aside
 from etl.session.model_columns import (
     centred_means,
@@ -40,9 +36,8 @@ from etl.session.pseudonym_guards import (
 )
 from etl.session.reader import Options
 from etl.session.reader_tasks import Corrections, ReaderTasks, reader_tasks, texts_in
-from etl.session.seen import Sharing
 from etl.session.trial_facts import trial_facts
-from etl.session.work import LogAnswer, LogTask, LogWork
+from etl.session.work import LogAnswer
 from etl.tables import CovariateColumn, IdColumn, TableDesign
 from etl.trials import IDS, KnownTrials, SeenTrials
 from etl.trials.notes import Notes
@@ -89,26 +84,6 @@ class Gathered:
         return self.design, self.library, self.options, self.aside
 
 
-def read_logs(
-    logs: tuple[tuple[Path, str], ...],
-    reader: LogReader,
-    aside: Aside,
-    crew: Crew,
-    progress: Progress,
-    pseudonyms: Pseudonyms | None = None,
-) -> list[LogAnswer]:
-    """Read all logs and put their fixations aside."""
-    tasks = [LogTask(path, shown, number) for number, (path, shown) in enumerate(logs)]
-    answers, sharing = [], Sharing()
-    for answer in crew.map(LogWork, (reader, aside, pseudonyms), tasks):
-        answer.note = sharing.note(answer.note)
-        if answer.trials is not None:
-            answer.trials = sharing.trials(answer.trials)
-        answers.append(answer)
-        progress("reading logs", len(answers), len(tasks))
-    return answers
-
-
 def gather(
     plan: Plan, answers: list[LogAnswer], aside: Aside, findings: Findings
 ) -> Gathered | None:
@@ -135,9 +110,9 @@ def gather(
     fixations: Counter[str] = Counter()
     for number, answer in enumerate(answers):
         fixations.update(answer.fixations)
-        for participant, batch in answer.batches.items():
-            part = (answer.kept, batch, plan.places[number])
-            parts.setdefault(participant, []).append(part)
+        for name, batches in answer.entries():
+            for participant, batch in batches.items():
+                parts.setdefault(participant, []).append((name, batch, plan.places[number]))
     every, places = [], []
     for number, answer in enumerate(answers):
         if answer.trials is not None:

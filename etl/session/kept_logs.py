@@ -9,7 +9,7 @@ memory takes what fits on it; only the rest goes to the disk.
 from __future__ import annotations
 
 import json
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -45,6 +45,7 @@ class Shelf:
 
     def put(self, name: str, batches: list[pa.RecordBatch]) -> bool:
         """Hold the batches of a log, if there is room for them."""
+        self._room += sum(batch.nbytes for batch in self._held.pop(name, ()))
         size = sum(batch.nbytes for batch in batches)
         if size > self._room:
             return False
@@ -95,6 +96,26 @@ class Aside:
             return held
         with pa.ipc.open_file(body_of(self.store.where(name))) as reader:
             return reader.get_batch(number)
+
+    def column(self, name: str, count: int, of: str) -> Iterator[pa.Array]:
+        """One column of what was put aside, batch by batch.
+
+        Parameters
+        ----------
+        name : str
+            The entry.
+        count : int
+            How many batches it has.
+        of : str
+            The column.
+
+        Yields
+        ------
+        pa.Array
+            One a reader.
+        """
+        for number in range(count):
+            yield self.get(name, number).column(of)
 
 
 def batches_of(log: CanonicalLog) -> tuple[list[pa.RecordBatch], list[str]]:

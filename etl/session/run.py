@@ -26,9 +26,10 @@ from etl.measures import REASON_MEANINGS
 from etl.parsers import reader_for
 from etl.report import AuditInput, write_audit
 from etl.session.all_groups import finish_groups
+from etl.session.all_logs import read_logs
 from etl.session.crew import Crew, Progress, Room, silent
 from etl.session.gallery import drawn
-from etl.session.gather import Gathered, gather, read_logs
+from etl.session.gather import Gathered, gather
 from etl.session.hand_over import describe, hand_over
 from etl.session.kept_logs import ROOM_BYTES, Aside, Shelf
 from etl.session.log_tellings import (
@@ -207,7 +208,8 @@ def build(
         if held is not None:
             save_key(held)
         if keep:
-            room.store.settle([answer.kept for answer in answers] + groups_kept)
+            logs_kept = [name for answer in answers for name, _ in answer.entries()]
+            room.store.settle([*logs_kept, *groups_kept])
     key = None if held is None else held.path
     return Result(target, told, rows, findings, described.readiness, key)
 
