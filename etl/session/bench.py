@@ -296,9 +296,14 @@ class Bench:
         for name in (m.name for m in self.design.measures if m.kind == "duration"):
             own = values[name]
             away = outlying(own, group, self.options.limits.outlier_sd)
+            rows = np.flatnonzero(away)
             far += [
-                FarValue(int(trial[c]), int(code[c]), name, own[c], int(reader[c]))
-                for c in np.flatnonzero(away).tolist()
+                FarValue(own_trial, own_code, name, value, own_reader)
+                for own_trial, own_code, value, own_reader in zip(
+                    *(trial[rows].tolist(), code[rows].tolist(), own[rows].tolist()),
+                    reader[rows].tolist(),
+                    strict=True,
+                )
             ]
             values[name] = np.where(away, np.nan, own)
             reasons[name] = np.where(away, outlier, reasons[name]).astype(np.uint8)
