@@ -158,6 +158,7 @@ def gather(
     facts = trial_facts(plan, trials, shown, findings, complete=complete)
     corrections = Corrections(plan.corrections, findings, complete)
     tasks = reader_tasks(design, trials, (text, good), facts, parts, corrections)
+    plan.facts.release()
     study = plan.study
     options = Options(
         study.trials.repeated,

@@ -124,13 +124,16 @@ def read_fact_table(
         )
         return None
     absent = marks_of(missing)
+    sha256, lines, rest = cells.text.sha256, cells.lines, cells.table
+    del cells  # and with them the text, which is as large as all columns together
     columns = {}
     for name, header in names.items():
-        packed = Packed.of_cells(cells.column(header), absent)
+        packed = Packed.of_cells(rest.column(header).combine_chunks(), absent)
+        rest = rest.drop_columns([header])
         if prefixes.get(name):
             packed = Packed.of(without_prefix(packed.coded(), prefixes[name]))
         columns[name] = packed
-    table = FactTable(shown, cells.text.sha256, keys, PackedColumns(columns), cells.lines)
+    table = FactTable(shown, sha256, keys, PackedColumns(columns), lines)
     _check_keys(table, names, findings)
     return None if findings.count("error") > before else table
 

@@ -92,6 +92,11 @@ class FactBook:
         """The tables there are."""
         return [t for t in (self.trial_list, self.participants, self.items) if t is not None]
 
+    def release(self) -> None:
+        """Let go of the rows of the tables, when all that they say of trials has been joined."""
+        for table in self.tables():
+            table.columns.release()
+
     def know(self, seen: SeenTrials, shown: Sequence[str], findings: Findings) -> KnownTrials:
         """Join all that is known about trials.
 
