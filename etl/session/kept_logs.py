@@ -9,7 +9,7 @@ memory takes what fits on it; only the rest goes to the disk.
 from __future__ import annotations
 
 import json
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -83,9 +83,10 @@ class Aside:
         body = None
         if batches:
             sink = pa.BufferOutputStream()
-            with pa.ipc.new_file(sink, batches[0].schema) as writer:
+            with pa.ipc.new_file(sink, batches[0].schema.remove_metadata()) as writer:
                 for own in batches:
-                    writer.write_batch(own)
+                    bare = own.replace_schema_metadata(None)
+                    writer.write_batch(bare, custom_metadata=own.schema.metadata)
             body = sink.getvalue()
         self.store.put(name, head, body)
 
@@ -95,7 +96,8 @@ class Aside:
         if held is not None:
             return held
         with pa.ipc.open_file(body_of(self.store.where(name))) as reader:
-            return reader.get_batch(number)
+            batch, texts = reader.get_batch_with_custom_metadata(number)
+            return batch.replace_schema_metadata(texts)
 
     def column(self, name: str, count: int, of: str) -> Iterator[pa.Array]:
         """One column of what was put aside, batch by batch.
@@ -136,24 +138,38 @@ def batches_of(log: CanonicalLog) -> tuple[list[pa.RecordBatch], list[str]]:
         return [], []
     participant = log.ids["participant"]
     # What is known about trials is gathered apart; only which trial it is must stay with each row.
-    coded = {name: column for name, column in log.ids.items() if name != "item"}
+    coded = {n: own for n, own in log.ids.items() if n not in ("item", "participant")}
     if log.label is not None:
         coded["label"] = log.label
-    columns = {name: pa.array(column.codes) for name, column in coded.items()}
+    columns = {name: pa.array(own.codes) for name, own in coded.items()}
     columns |= {name: pa.array(getattr(log, name)) for name in _PLAIN}
-    values = json.dumps({name: column.values for name, column in coded.items()})
-    batch = pa.RecordBatch.from_pydict(columns, metadata={"values": values})
-    present, starts = np.zeros(1, dtype=np.int64), np.zeros(1, dtype=np.int64)
-    if len(participant.values) > 1:
-        order = np.argsort(participant.codes, kind="stable")
-        batch = batch.take(pa.array(order))
-        present, starts = np.unique(participant.codes[order], return_index=True)
+    batch = pa.RecordBatch.from_pydict(columns)
+    if len(participant.values) == 1:
+        texts = json.dumps({name: own.values for name, own in coded.items()})
+        return [batch.replace_schema_metadata({"values": texts})], [participant.values[0]]
+    order = np.argsort(participant.codes, kind="stable")
+    batch = batch.take(pa.array(order))
+    present, starts = np.unique(participant.codes[order], return_index=True)
     stops = np.append(starts[1:], len(log))
     batches = [
-        batch.slice(start, stop - start)
+        _own_texts(batch.slice(start, stop - start), coded)
         for start, stop in zip(starts.tolist(), stops.tolist(), strict=True)
     ]
     return batches, [participant.values[code] for code in present.tolist()]
+
+
+def _own_texts(batch: pa.RecordBatch, coded: Mapping[str, Coded]) -> pa.RecordBatch:
+    """The fixations of one reader with texts of that reader only: others may be very many."""
+    own = {}
+    for name, column in coded.items():
+        place = batch.schema.get_field_index(name)
+        codes = batch.column(place).to_numpy()
+        found, places = np.unique(codes[codes >= 0], return_inverse=True)
+        anew = np.full(len(codes), -1, dtype=np.int32)
+        anew[codes >= 0] = places
+        own[name] = [column.values[code] for code in found.tolist()]
+        batch = batch.set_column(place, batch.schema.field(place), pa.array(anew))
+    return batch.replace_schema_metadata({"values": json.dumps(own)})
 
 
 def arrays_of(log: CanonicalLog) -> dict[str, object]:
