@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import codecs
 import gzip
 import hashlib
 import zlib
@@ -10,11 +9,22 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from etl.errors import Findings
-from etl.files.text_encodings import (
-    BYTE_ORDER_MARKS,
-    encoding_of,
-    lines_by_encoding,
-    mixes_encodings,
+from etl.files.steady import read_steady
+from etl.files.text_encodings import encoding_of, mixes_encodings
+from etl.files.text_faults import (
+    REVERSED_MARK,
+    is_contradicted,
+    is_misnamed,
+    is_utf8_all_the_same,
+    plain_name,
+    tell_damaged,
+    tell_mixture,
+    tell_reversed,
+    tell_undecodable,
+    tell_unreadable,
+    tell_zero,
+    warn_of_utf8,
+    with_plain_line_ends,
 )
 
 #: Files that are no text, known by their first bytes (each signature is in the format's own
@@ -32,9 +42,6 @@ _SIGNATURES = (
     (b"PK\x03\x04", "a ZIP archive or a spreadsheet workbook"),
     (b"PAR1", "a Parquet file"),
 )
-
-#: A byte-order mark read in the other order; no character (The Unicode Standard, section 23.8).
-_REVERSED_MARK = "\ufffe"
 
 
 @dataclass(frozen=True, slots=True)
@@ -96,7 +103,7 @@ def read_text(
     Byte-order marks: The Unicode Standard, section 23.8.
     """
     try:
-        stored = path.read_bytes()
+        stored = read_steady(path)
     except OSError as why:
         tell_unreadable(path, shown, why, findings)
         return None
@@ -138,13 +145,13 @@ def text_of(
     RawText or None
         None where a problem was recorded.
     """
-    if not _is_text(data, shown, findings):
+    if not is_text(data, shown, findings):
         return None
-    if encoding is not None and _contradicted(data, encoding, shown, findings):
+    if encoding is not None and is_contradicted(data, encoding, shown, findings):
         return None
     found = encoding or encoding_of(data)
     if encoding is None and found == "cp1252" and mixes_encodings(data):
-        _tell_mixture(data, shown, findings)
+        tell_mixture(data, shown, findings)
         return None
     text = _decoded(data, found, shown, findings, stated=encoding is not None)
     if text is None:
@@ -158,54 +165,18 @@ def text_of(
     return RawText(shown, text, digest, found)
 
 
-def tell_unreadable(path: Path, shown: str, why: OSError, findings: Findings) -> None:
-    """Record why a file cannot be read."""
-    if isinstance(why, FileNotFoundError):
-        findings.error(
-            "there is no such file",
-            path=shown,
-            fix="correct the name in the study file, or put the file there",
-        )
-    elif path.is_dir():
-        # Not told from the kind of error, which differs between operating systems.
-        findings.error(
-            "this is a folder",
-            path=shown,
-            expected="a file",
-            fix="name the file in it that is meant",
-        )
-    else:
-        findings.error(
-            f"the file cannot be read ({why.strerror or type(why).__name__})",
-            path=shown,
-            fix="check that you may read the file and that no other program holds it",
-        )
-
-
 def _unpacked(stored: bytes, shown: str, findings: Findings) -> bytes | None:
     """The bytes inside a gzip file, or the bytes as they are."""
     if not stored.startswith(b"\x1f\x8b"):
-        if shown.endswith(".gz") and stored:
-            findings.error(
-                "the name ends in .gz but the file is not gzipped",
-                path=shown,
-                fix="rename the file, or compress it again",
-            )
-            return None
-        return stored
+        return None if stored and is_misnamed(shown, findings) else stored
     try:
         return gzip.decompress(stored)
     except (EOFError, gzip.BadGzipFile, zlib.error) as why:
-        cut = isinstance(why, EOFError)
-        findings.error(
-            "the gzip file is cut short" if cut else f"the gzip file is damaged ({why})",
-            path=shown,
-            fix="copy the file again from where it was recorded",
-        )
+        tell_damaged(why, shown, findings)
         return None
 
 
-def _is_text(data: bytes, shown: str, findings: Findings) -> bool:
+def is_text(data: bytes, shown: str, findings: Findings) -> bool:
     """Whether the bytes can be text at all."""
     if not data.strip(b"\xef\xbb\xbf\xff\xfe\x00 \t\r\n"):
         lost = data.count(0) > len(data) // 2 + 1
@@ -230,45 +201,23 @@ def _is_text(data: bytes, shown: str, findings: Findings) -> bool:
     return True
 
 
-def _contradicted(data: bytes, encoding: str, shown: str, findings: Findings) -> bool:
-    """Whether a byte-order mark says another encoding than the study file; says so."""
-    marked = next((name for mark, name in BYTE_ORDER_MARKS if data.startswith(mark)), None)
-    stated = _plain_name(encoding)
-    if marked is None or stated.startswith(_plain_name(marked).removesuffix("sig")):
-        return False
-    findings.error(
-        "the file's byte-order mark contradicts the study file",
-        path=shown,
-        line=1,
-        found=marked.removesuffix("-sig"),
-        expected=f"{encoding}, as [logs] encoding says",
-        fix="correct [logs] encoding, or remove it: the encoding is then found out file by file",
-    )
-    return True
-
-
-def _plain_name(encoding: str) -> str:
-    """The name of an encoding without the signs in which its spellings differ."""
-    return "".join(letter for letter in encoding.lower() if letter.isalnum())
-
-
 def _decoded(
     data: bytes, encoding: str, shown: str, findings: Findings, *, stated: bool
 ) -> bytes | None:
     """The text in UTF-8 with plain line ends."""
     try:
-        if _plain_name(encoding) in ("utf8", "utf8sig"):
+        if plain_name(encoding) in ("utf8", "utf8sig"):
             text = data.removeprefix(b"\xef\xbb\xbf")
             if not text.isascii():
                 text.decode("utf-8")
         else:
             letters = data.decode(encoding).removeprefix("\ufeff")
             text = letters.encode("utf-8")
-            if _REVERSED_MARK in letters:
-                _tell_reversed(letters, shown, findings)
+            if REVERSED_MARK in letters:
+                tell_reversed(letters, shown, findings)
                 return None
     except UnicodeError as why:
-        _tell_undecodable(why, encoding, shown, findings, stated=stated)
+        tell_undecodable(why, encoding, shown, findings, stated=stated)
         return None
     except LookupError:
         findings.error(
@@ -280,109 +229,10 @@ def _decoded(
         )
         return None
     if b"\r" in text:
-        text = _with_plain_line_ends(text)
+        text = with_plain_line_ends(text)
     if b"\x00" in text:
-        findings.error(
-            "the text holds a zero byte",
-            path=shown,
-            line=text.count(b"\n", 0, text.index(b"\x00")) + 1,
-            expected="text only",
-            fix="the file is damaged or is no text: copy or export it again",
-        )
+        tell_zero(text.count(b"\n", 0, text.index(b"\x00")) + 1, shown, findings)
         return None
-    if stated and not data.isascii() and _is_utf8_all_the_same(data, encoding):
-        findings.warning(
-            f"the text is valid UTF-8 and was read as {encoding}",
-            path=shown,
-            expected=f"{encoding}, as [logs] encoding says",
-            fix="check the letters with accents; remove [logs] encoding to have it found out file "
-            "by file",
-        )
+    if stated and not data.isascii() and is_utf8_all_the_same(data, encoding):
+        warn_of_utf8(encoding, shown, findings)
     return text
-
-
-def _is_utf8_all_the_same(data: bytes, encoding: str) -> bool:
-    """Whether bytes that are read in another encoding are valid UTF-8."""
-    if codecs.lookup(encoding).name.startswith("utf"):
-        return False
-    try:
-        data.decode("utf-8")
-    except UnicodeDecodeError:
-        return False
-    return True
-
-
-def _tell_mixture(data: bytes, shown: str, findings: Findings) -> None:
-    """Record where text that is UTF-8 in part is none; of the two kinds, the rarer is at fault."""
-    try:
-        data.decode("utf-8")
-    except UnicodeDecodeError as why:
-        if why.end == len(data) and "end of data" in why.reason:
-            findings.error(
-                "the file ends in the middle of a letter",
-                path=shown,
-                line=_with_plain_line_ends(data[: why.start]).count(b"\n") + 1,
-                found=f"byte {data[why.start]:#04x}",
-                expected="one encoding in the whole file",
-                fix="copy the file again from where it was recorded",
-            )
-            return
-    utf8, others = lines_by_encoding(_with_plain_line_ends(data))
-    foreign = not utf8 or len(others) <= len(utf8)
-    odd, usual = (others, utf8) if foreign else (utf8, others)
-    number, byte = odd[0]
-    kind = "UTF-8" if foreign else "in another one"
-    rest = ""
-    if len(usual) == 1:
-        rest = f": line {usual[0][0]} is {kind}"
-    elif usual:
-        rest = f": {len(usual):,} lines are {kind}, the first of them line {usual[0][0]}"
-    findings.error(
-        "the text is UTF-8 in part and in another encoding in part",
-        path=shown,
-        line=number,
-        found=f"byte {byte:#04x}, which {'is no' if foreign else 'begins a letter of'} UTF-8",
-        expected=f"one encoding in the whole file{rest}",
-        fix="save every part as UTF-8 before they are put together; or, if it is a log and is in "
-        "one encoding after all, state [logs] encoding",
-    )
-
-
-def _tell_reversed(letters: str, shown: str, findings: Findings) -> None:
-    """Record where a byte-order mark stands the wrong way round."""
-    before = letters[: letters.index(_REVERSED_MARK)].encode("utf-8")
-    findings.error(
-        "bytes of two orders stand in one file",
-        path=shown,
-        line=_with_plain_line_ends(before).count(b"\n") + 1,
-        expected="one byte order in the whole file",
-        fix="save every part as UTF-8 before they are put together",
-    )
-
-
-def _with_plain_line_ends(text: bytes) -> bytes:
-    """The text with a line feed for every line end."""
-    return text.replace(b"\r\n", b"\n").replace(b"\r", b"\n")
-
-
-def _tell_undecodable(
-    why: UnicodeError, encoding: str, shown: str, findings: Findings, *, stated: bool
-) -> None:
-    """Record which byte cannot be text in this encoding."""
-    line: int | None = None
-    found: str | None = None
-    if isinstance(why, UnicodeDecodeError):
-        before = why.object[: why.start].decode(encoding, errors="replace").encode("utf-8")
-        line = _with_plain_line_ends(before).count(b"\n") + 1
-        found = f"byte {why.object[why.start]:#04x}"
-    findings.error(
-        f"the text is not valid {encoding}"
-        if stated or encoding != "cp1252"
-        else "the text is neither UTF-8 nor Windows-1252",
-        path=shown,
-        line=line,
-        found=found,
-        fix="state the right encoding in [logs] encoding"
-        if stated
-        else "save the file as UTF-8, or, if it is a log, state its encoding in [logs] encoding",
-    )

@@ -18,8 +18,10 @@ from xml.etree import ElementTree as ET
 from openpyxl import load_workbook
 
 from etl.errors import Findings
-from etl.files.decoding import RawText, tell_unreadable
+from etl.files.decoding import RawText
 from etl.files.delimited import Cells
+from etl.files.steady import read_steady
+from etl.files.text_faults import tell_unreadable
 from etl.files.workbook_archive import (
     MOST_BYTES,
     DamagedWorkbookError,
@@ -82,7 +84,7 @@ def read_workbook(path: Path, sheet: str | None, shown: str, findings: Findings)
         was recorded.
     """
     try:
-        stored = path.read_bytes()
+        stored = read_steady(path)
     except OSError as why:
         tell_unreadable(path, shown, why, findings)
         return None

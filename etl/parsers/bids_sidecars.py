@@ -12,6 +12,8 @@ from pathlib import Path
 from typing import Any
 
 from etl.errors import Findings
+from etl.files.steady import ChangedError, read_steady
+from etl.files.text_faults import tell_unreadable
 from etl.parsers.bids_names import BidsName, Place, described_by
 
 #: What a sidecar must say of any continuous recording, of one of the eyes, and of the events that
@@ -264,11 +266,14 @@ def read_json(path: Path, shown: str, findings: Findings) -> JsonFile | None:
     """
     line: int | None = None
     try:
-        stored = path.read_bytes()
+        stored = read_steady(path)
         text = stored.decode("utf-8-sig")
         values = json.loads(text, object_pairs_hook=_once, parse_constant=_no_number)
     except json.JSONDecodeError as why:
         line, problem = why.lineno, f"this is no JSON: {why.msg}"
+    except ChangedError as why:
+        tell_unreadable(path, shown, why, findings)
+        return None
     except OSError as why:
         problem = f"the file cannot be read ({why.strerror or type(why).__name__})"
     except UnicodeDecodeError:
