@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from dataclasses import dataclass
 from typing import Final
 
 #: The Unicode Standard, section 23.8.
@@ -14,7 +15,7 @@ BYTE_ORDER_MARKS: Final = (
     (b"\xfe\xff", "utf-16"),
 )
 #: How much of a file is looked at to tell UTF-16 and UTF-32 without a mark from other text.
-_PROBE_BYTES = 4096
+PROBE_BYTES = 4096
 _ASCII: Final = bytes(range(0x80))
 #: Letters of more than one byte in UTF-8: The Unicode Standard, table 3-7, surrogates aside.
 _LETTER = re.compile(
@@ -49,19 +50,41 @@ def encoding_of(data: bytes) -> str:
     >>> encoding_of("crème".encode("utf-8")), encoding_of("crème".encode("cp1252"))
     ('utf-8', 'cp1252')
     """
+    found = encoding_of_prefix(data)
+    if found is not None:
+        return found
+    return "utf-8" if is_utf8(data) else "cp1252"
+
+
+def encoding_of_prefix(data: bytes) -> str | None:
+    """The encoding that the beginning of a text tells.
+
+    Parameters
+    ----------
+    data : bytes
+        The beginning.
+
+    Returns
+    -------
+    str or None
+        By the byte-order mark, or by the pattern of zero bytes; None where it is UTF-8 or not as
+        the whole text shows.
+    """
     for mark, name in BYTE_ORDER_MARKS:
         if data.startswith(mark):
             return name
-    wide = _wide_encoding_of(data[:_PROBE_BYTES])
-    if wide is not None:
-        return wide
+    return _wide_encoding_of(data[:PROBE_BYTES])
+
+
+def is_utf8(data: bytes) -> bool:
+    """Whether bytes are valid UTF-8."""
     if data.isascii():
-        return "utf-8"
+        return True
     try:
         data.decode("utf-8")
     except UnicodeDecodeError:
-        return "cp1252"
-    return "utf-8"
+        return False
+    return True
 
 
 def _wide_encoding_of(probe: bytes) -> str | None:
@@ -102,11 +125,46 @@ def mixes_encodings(data: bytes) -> bool:
     >>> mixes_encodings("« crème »".encode("cp1252"))
     False
     """
-    if _PLAIN_LETTER.search(data) is not None:
-        return True
-    rest, letters = _LETTER.subn(b"", data)
-    others = len(rest.translate(None, delete=_ASCII))
-    return letters >= _LETTERS_BY_CHANCE and letters * _BYTES_A_LETTER >= others
+    signs = EncodingSigns()
+    signs.add(data)
+    return signs.mixes()
+
+
+@dataclass(slots=True)
+class EncodingSigns:
+    """What bytes of text beyond ASCII tell of their encoding, piece by piece.
+
+    Attributes
+    ----------
+    some : bool
+        Whether there was any piece.
+    is_utf8 : bool
+        Whether all pieces are valid UTF-8.
+    """
+
+    some: bool = False
+    is_utf8: bool = True
+    _plain: bool = False
+    _letters: int = 0
+    _others: int = 0
+
+    def add(self, data: bytes) -> None:
+        """Look at a piece, which is cut at no letter."""
+        self.some = True
+        self.is_utf8 = self.is_utf8 and is_utf8(data)
+        self._plain = self._plain or _PLAIN_LETTER.search(data) is not None
+        if not self._plain:
+            # Where there is a plain letter, nobody asks for the others.
+            rest, letters = _LETTER.subn(b"", data)
+            self._letters += letters
+            self._others += len(rest.translate(None, delete=_ASCII))
+
+    def mixes(self) -> bool:
+        """Whether text that is not valid UTF-8 is UTF-8 all the same in part."""
+        if self._plain:
+            return True
+        many = self._letters >= _LETTERS_BY_CHANCE
+        return many and self._letters * _BYTES_A_LETTER >= self._others
 
 
 def lines_by_encoding(data: bytes) -> tuple[list[tuple[int, int]], list[tuple[int, int]]]:
