@@ -25,8 +25,8 @@ from etl.files.loose_quotes import split_loosely
 from etl.files.plain import read_plain
 from etl.files.quoted import Split, split_quoted
 from etl.files.repeats import Marks, repeated_headers, tell_strange_marks, without_marks
-from etl.files.rows import Rows, tell_uneven
-from etl.files.stray_quotes import stray_marks
+from etl.files.rows import Rows, Uneven, tell_uneven
+from etl.files.stray_quotes import cells_open, stray_marks
 from etl.files.tally import FileAccount, Tally
 from etl.files.units import own_names
 
@@ -263,16 +263,7 @@ def _tell_doubts(rows: Rows, header: Header, shown: str, findings: Findings, *, 
     """Warn of what may have been meant otherwise."""
     alike = rows.aside.alike
     if alike:
-        count, sign = len(alike), " or ".join(header.remarks)
-        findings.warning(
-            f"{count:,} lines begin with {sign} and have as many fields as the header"
-            if count > 1
-            else f"a line begins with {sign} and has as many fields as the header",
-            path=shown,
-            line=alike[0],
-            expected="remarks, which are not read",
-            fix="if this is a row, put its first cell in quotes",
-        )
+        tell_alike(len(alike), alike[0], header, shown, findings)
     if rows.mended.count and not wary:
         findings.warning(
             "quote marks inside a cell are not doubled; they were taken as they stand",
@@ -288,6 +279,36 @@ def _tell_doubts(rows: Rows, header: Header, shown: str, findings: Findings, *, 
             expected='a quote mark " on both sides of a cell, as others have, or in none',
             fix="check the cell: a quote mark may be lost",
         )
+
+
+def tell_alike(
+    count: int, first_line: int | None, header: Header, shown: str, findings: Findings
+) -> None:
+    """Warn of remarks that may have been meant as rows.
+
+    Parameters
+    ----------
+    count : int
+        How many there are, at least one.
+    first_line : int or None
+        Where the first one is.
+    header : Header
+        The header.
+    shown : str
+        The file's name for messages.
+    findings : Findings
+        Where it is recorded.
+    """
+    sign = " or ".join(header.remarks)
+    findings.warning(
+        f"{count:,} lines begin with {sign} and have as many fields as the header"
+        if count > 1
+        else f"a line begins with {sign} and has as many fields as the header",
+        path=shown,
+        line=first_line,
+        expected="remarks, which are not read",
+        fix="if this is a row, put its first cell in quotes",
+    )
 
 
 def _quoted(
@@ -307,7 +328,7 @@ def _quoted(
         # In a log, a row of several lines is doubtful where each of them is a row by itself.
         loose = split_loosely(text, header, places, wary=wary)
         if loose is not None:
-            return _columns(loose, text, wanted)
+            return columns_of(loose, text, wanted)
     if split is None:
         findings.extend(own)
         return None
@@ -322,15 +343,30 @@ def _quoted(
                 fix="close or double the quote mark in this line",
             )
         return None
-    count = len(split.rows) + len(split.uneven)
-    if tell_uneven(header, split.uneven, count, shown, findings):
+    uneven = Uneven.of(split.uneven, len(split.rows) + len(split.uneven))
+    if tell_uneven(header, uneven, shown, findings):
         return None
-    split.stray = stray_marks(body, text, header, split)
-    return _columns(split, text, wanted)
+    if cells_open(text, header.separator):  # else marks mean nothing in this file
+        split.stray = stray_marks(body, text, header, split)
+    return columns_of(split, text, wanted)
 
 
-def _columns(split: Split, text: str, wanted: tuple[str, ...]) -> Rows:
-    """Rows as columns."""
+def columns_of(split: Split, text: str, wanted: tuple[str, ...]) -> Rows:
+    """Rows as columns.
+
+    Parameters
+    ----------
+    split : Split
+        The rows.
+    text : str
+        What was split.
+    wanted : tuple of str
+        The names of the cells that were kept.
+
+    Returns
+    -------
+    Rows
+    """
     by_column = list(zip(*split.rows, strict=True)) or [()] * len(wanted)
     height = text.count("\n") + (not text.endswith("\n") and bool(text))
     mended, stray = (

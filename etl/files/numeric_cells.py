@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 import re
 import unicodedata
-from collections.abc import Callable, Collection
+from collections.abc import Callable, Collection, Iterable
 from dataclasses import dataclass
 
 import numpy as np
@@ -151,49 +151,118 @@ def find_decimal(
     {".", ","} or None
         None where both signs occur, or where a comma could as well mark thousands.
     """
-    commas: dict[str, int] = {}
-    points: dict[str, int] = {}
+    return decimal_signs(columns, line_of).decide(shown, findings)
+
+
+@dataclass(frozen=True, slots=True)
+class DecimalSigns:
+    """The signs in the columns of numbers of a file, or of a part of it.
+
+    Attributes
+    ----------
+    commas : dict of str to (int, str)
+        For each column with a comma, line and text of the first such cell.
+    points : dict of str to int
+        For each column with a point between digits, the line of the first such cell; may be empty
+        where there is no comma.
+    grouped : bool
+        Whether all commas may be thousands signs.
+    """
+
+    commas: dict[str, tuple[int, str]]
+    points: dict[str, int]
+    grouped: bool = True
+
+    def joined(self, below: DecimalSigns, order: Iterable[str]) -> DecimalSigns:
+        """The signs of this part and of the one below it; columns in their order."""
+        commas = {**below.commas, **self.commas}
+        points = {**below.points, **self.points}
+        return DecimalSigns(
+            {name: commas[name] for name in order if name in commas},
+            {name: points[name] for name in order if name in points},
+            self.grouped and below.grouped,
+        )
+
+    def decide(self, shown: str, findings: Findings) -> str | None:
+        """The decimal sign; see :func:`find_decimal`."""
+        if not self.commas:
+            return "."
+        name, (line, cell) = next(iter(self.commas.items()))
+        if self.points:
+            other, other_line = next(iter(self.points.items()))
+            findings.error(
+                "the numbers have commas and points, so the decimal sign cannot be told "
+                f'(a point in column "{other}", line {other_line})',
+                path=shown,
+                line=line,
+                where=f'column "{name}"',
+                found=cell,
+                expected="one decimal sign in the whole file",
+                fix='state decimal = "." or "," in [logs], and write numbers without thousands '
+                "signs",
+            )
+            return None
+        if self.grouped:
+            findings.error(
+                "the comma could be a decimal sign or a thousands sign",
+                path=shown,
+                line=line,
+                where=f'column "{name}"',
+                found=cell,
+                expected="numbers that can be read in one way only",
+                fix='state decimal = "," in [logs] if it is the decimal sign; otherwise write the '
+                "numbers without thousands signs",
+            )
+            return None
+        return ","
+
+
+def decimal_signs(
+    columns: dict[str, pa.Array], line_of: Callable[[int], int], *, points: bool = False
+) -> DecimalSigns:
+    """Look for decimal signs in columns of numbers.
+
+    Parameters
+    ----------
+    columns : dict of name to (n,) pa.Array of text
+        The columns that should hold numbers.
+    line_of : callable
+        Row index to line.
+    points : bool
+        Whether points matter even where there is no comma, as in a part of a file.
+
+    Returns
+    -------
+    DecimalSigns
+    """
+    found = DecimalSigns({}, {})
+    if not points and not any(_may_hold(column, b",") for column in columns.values()):
+        return found
     grouped = True
-    if not any(_may_hold(column, b",") for column in columns.values()):
-        return "."
     for name, column in columns.items():
-        with_comma = pc.match_substring(column, ",")
-        with_point = pc.match_substring_regex(column, r"[0-9]\.[0-9]")
-        if pc.any(with_comma).as_py():
-            commas[name] = pc.index(with_comma, value=True).as_py()
-            cells = pc.utf8_trim_whitespace(column.filter(with_comma))
-            grouped = grouped and pc.all(pc.match_substring_regex(cells, _GROUPED)).as_py()
-        if pc.any(with_point).as_py():
-            points[name] = pc.index(with_point, value=True).as_py()
-    if not commas:
-        return "."
-    name, row = next(iter(commas.items()))
-    if points:
-        other, other_row = next(iter(points.items()))
-        findings.error(
-            "the numbers have commas and points, so the decimal sign cannot be told "
-            f'(a point in column "{other}", line {line_of(other_row)})',
-            path=shown,
-            line=line_of(row),
-            where=f'column "{name}"',
-            found=columns[name][row].as_py(),
-            expected="one decimal sign in the whole file",
-            fix='state decimal = "." or "," in [logs], and write numbers without thousands signs',
-        )
-        return None
-    if grouped:
-        findings.error(
-            "the comma could be a decimal sign or a thousands sign",
-            path=shown,
-            line=line_of(row),
-            where=f'column "{name}"',
-            found=columns[name][row].as_py(),
-            expected="numbers that can be read in one way only",
-            fix='state decimal = "," in [logs] if it is the decimal sign; otherwise write the '
-            "numbers without thousands signs",
-        )
-        return None
-    return ","
+        if _may_hold(column, b","):
+            with_comma = pc.match_substring(column, ",")
+            if pc.any(with_comma).as_py():
+                row = pc.index(with_comma, value=True).as_py()
+                found.commas[name] = (line_of(row), column[row].as_py())
+                cells = pc.utf8_trim_whitespace(column.filter(with_comma))
+                grouped = grouped and pc.all(pc.match_substring_regex(cells, _GROUPED)).as_py()
+        row = _first_point(column)
+        if row >= 0:
+            found.points[name] = line_of(row)
+    return DecimalSigns(found.commas, found.points, grouped)
+
+
+def _first_point(column: pa.Array) -> int:
+    """The first row with a point between digits; -1 where there is none."""
+    if not _may_hold(column, b"."):
+        return -1
+    # Most often it is one of the first.
+    for part in (column.slice(0, 1000), column):
+        row = pc.index(pc.match_substring_regex(part, r"[0-9]\.[0-9]"), value=True).as_py()
+        if row >= 0:
+            return int(row)
+    return -1
 
 
 def _may_hold(column: pa.Array, sign: bytes) -> bool:

@@ -11,7 +11,7 @@ from pyarrow import csv as arrow_csv
 
 from etl.errors import Findings
 from etl.files.headers import Header
-from etl.files.rows import Rows, SetAside, tell_uneven
+from etl.files.rows import Rows, SetAside, Uneven, tell_uneven
 from etl.files.separators import BLANK, blanks, spelled, split_line
 
 #: The longest piece of text, in bytes, that pyarrow's reader is given; it takes 32-bit sizes.
@@ -40,6 +40,36 @@ def read_plain(
     -------
     Rows or None
         None where a problem was recorded.
+    """
+    rows = plain_rows(body, header, wanted)
+    if isinstance(rows, Rows):
+        return rows
+    if not tell_uneven(header, rows, shown, findings):
+        findings.error(
+            "the table cannot be split into rows and columns",
+            path=shown,
+            expected=f"rows of {len(header.names)} fields separated by {spelled(header.separator)}",
+            fix="open the file in a text editor and look for a damaged line",
+        )
+    return None
+
+
+def plain_rows(body: bytes, header: Header, wanted: tuple[str, ...]) -> Rows | Uneven:
+    """Split text without quote marks into rows.
+
+    Parameters
+    ----------
+    body : bytes
+        The lines below the header.
+    header : Header
+        The header.
+    wanted : tuple of str
+        The columns that are kept.
+
+    Returns
+    -------
+    Rows or Uneven
+        The rows that are not as wide as the header, where there are any.
     """
     body, lines, height, aside = _data_lines(body, header)
     if not len(lines):
@@ -76,19 +106,8 @@ def read_plain(
     width = len(header.names)
     texts = body.decode("utf-8").split("\n")[: len(lines)]
     widths = [len(split_line(line, header.separator)) for line in texts]
-    uneven = [
-        (line, fields)
-        for line, fields in zip(lines.tolist(), widths, strict=True)
-        if fields != width
-    ]
-    if not tell_uneven(header, uneven, len(widths), shown, findings):
-        findings.error(
-            "the table cannot be split into rows and columns",
-            path=shown,
-            expected=f"rows of {len(header.names)} fields separated by {spelled(header.separator)}",
-            fix="open the file in a text editor and look for a damaged line",
-        )
-    return None
+    told = zip(lines.tolist(), widths, strict=True)
+    return Uneven.of([(line, fields) for line, fields in told if fields != width], len(widths))
 
 
 def _data_lines(body: bytes, header: Header) -> tuple[bytes, NDArray[np.int32], int, SetAside]:

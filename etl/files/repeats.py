@@ -94,7 +94,7 @@ def tell_strange_marks(lines: Iterable[int], shown: str, findings: Findings) -> 
 
 
 def repeated_headers(
-    rows: Rows, header: Header, data: bytes, shown: str, findings: Findings
+    rows: Rows, header: Header, data: bytes, shown: str, findings: Findings, *, first: int = 1
 ) -> NDArray[np.int64] | None:
     """The rows that repeat the header, as where files were put together.
 
@@ -111,6 +111,8 @@ def repeated_headers(
     findings : Findings
         Where a row is recorded that is a header of another kind: two of its cells are names of
         columns, and none is a number.
+    first : int
+        The number of the first line of the text.
 
     Returns
     -------
@@ -127,7 +129,7 @@ def repeated_headers(
     for row in doubtful:
         number = int(rows.lines[row])
         # The names of a header may hold line breaks.
-        record = lines[number - 1 : number - 1 + header.height]
+        record = lines[number - first : number - first + header.height]
         cells = _cells(record, header.separator)
         if cells == list(header.names):
             same.append(row)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
@@ -9,7 +10,7 @@ import numpy as np
 import pyarrow as pa
 from numpy.typing import NDArray
 
-from etl.errors import Findings
+from etl.errors import SPELLED_OUT, Findings
 from etl.files.separators import blanks, fields_in, spelled
 from etl.files.tally import Tally
 
@@ -83,19 +84,49 @@ class Rows:
         return replace(self, table=self.table.filter(pa.array(kept)), lines=self.lines[kept])
 
 
-def tell_uneven(
-    header: Header, uneven: list[tuple[int, int]], count: int, shown: str, findings: Findings
-) -> bool:
+@dataclass(frozen=True, slots=True)
+class Uneven:
+    """Rows that are not as wide as the header.
+
+    Attributes
+    ----------
+    rows : list of (int, int)
+        Line and number of fields of each such row, or of as many as are spelled out.
+    number : dict of int to int
+        How many rows there are of each number of fields.
+    count : int
+        How many rows there are, the others included.
+    """
+
+    rows: list[tuple[int, int]]
+    number: Counter[int]
+    count: int
+
+    @classmethod
+    def of(cls, rows: list[tuple[int, int]], count: int) -> Uneven:
+        """All such rows of a text."""
+        return cls(rows, Counter(fields for _, fields in rows), count)
+
+    def joined(self, below: Uneven, width: int) -> Uneven:
+        """These rows and those of the text below, of which only the first few are kept."""
+        kept: list[tuple[int, int]] = []
+        of_kind: Counter[bool] = Counter()
+        for line, fields in (*self.rows, *below.rows):
+            of_kind[fields < width] += 1
+            if of_kind[fields < width] <= SPELLED_OUT:
+                kept.append((line, fields))
+        return Uneven(kept, self.number + below.number, self.count + below.count)
+
+
+def tell_uneven(header: Header, uneven: Uneven, shown: str, findings: Findings) -> bool:
     """Record the rows that are not as wide as the header.
 
     Parameters
     ----------
     header : Header
         The header.
-    uneven : list of (int, int)
-        Line and number of fields of each such row.
-    count : int
-        How many rows there are.
+    uneven : Uneven
+        Such rows.
     shown : str
         The file's name for messages.
     findings : Findings
@@ -107,19 +138,20 @@ def tell_uneven(
         Whether there is any.
     """
     width = len(header.names)
-    if count > 1 and len(uneven) == count and len({fields for _, fields in uneven}) == 1:
+    if uneven.count > 1 and [*uneven.number.values()] == [uneven.count]:
         findings.error(
             "the header has another number of fields than every row",
             path=shown,
             line=header.line,
-            found=f"{width} in the header, {uneven[0][1]} in each row",
+            found=f"{width} in the header, {uneven.rows[0][1]} in each row",
             expected=f"as many names, separated by {spelled(header.separator)}, as fields in a row",
             fix="complete the header, or remove the name that is too much",
         )
         return True
-    for line, fields in uneven:
+    few, many = "the row has too few fields", "the row has too many fields"
+    for line, fields in uneven.rows:
         findings.error(
-            "the row has too few fields" if fields < width else "the row has too many fields",
+            few if fields < width else many,
             path=shown,
             line=line,
             found=f"{fields} field{'' if fields == 1 else 's'}",
@@ -127,4 +159,8 @@ def tell_uneven(
             fix="complete the row, or remove what is too much; a cell that holds the separator "
             "must stand in quotes",
         )
-    return bool(uneven)
+    for problem, is_few in ((few, True), (many, False)):
+        count = sum(n for fields, n in uneven.number.items() if (fields < width) is is_few)
+        if count:
+            findings.more["error", shown, "", problem] = count
+    return bool(uneven.rows)

@@ -41,8 +41,27 @@ def sound_row(separator: str) -> re.Pattern[str]:
     return re.compile(rf"{field}(?:{mark}{field})*")
 
 
+def cells_open(text: str, separator: str) -> bool:
+    """Whether any cell begins with a quote mark; else marks may stand for inches.
+
+    Parameters
+    ----------
+    text : str
+        The lines below a header.
+    separator : str
+        What separates the cells.
+
+    Returns
+    -------
+    bool
+    """
+    return re.search(rf'(?m)(?:^|{re.escape(separator)})"', text) is not None
+
+
 def stray_marks(body: bytes, text: str, header: Header, split: Split) -> list[int]:
-    """The rows with quote marks in a cell without quotes, where other cells have quotes.
+    """The rows with quote marks in a cell without quotes.
+
+    They are of note only where other cells have quotes: see :func:`cells_open`.
 
     Parameters
     ----------
@@ -67,9 +86,6 @@ def stray_marks(body: bytes, text: str, header: Header, split: Split) -> list[in
     remarks = any('"' in lines[number - header.first] for number in split.aside.remarks)
     if not remarks and not _may_have_stray_marks(body, header.separator):
         return []
-    mark = re.escape(header.separator)
-    if re.search(rf'(?m)(?:^|{mark})"', text) is None:
-        return []  # marks mean nothing in this file, as in one that writes inches so
     sound = sound_row(header.separator)
     lines = lines or text.removesuffix("\n").split("\n")
     aside = {*split.aside.blank, *split.aside.remarks}
