@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from etl.errors import Findings
 from etl.files import number_of, truth_of
 
 
@@ -163,3 +164,30 @@ def touches(text: str) -> bool | None:
         return truth
     number = number_of(text.replace(",", "."))
     return None if number is None else number != 0
+
+
+def tell_blink(text: str, line: int, header: str, shown: str, findings: Findings) -> None:
+    """Record a cell that does not say whether a blink touches the fixation.
+
+    Parameters
+    ----------
+    text : str
+        The cell.
+    line : int
+        Where it is found first.
+    header : str
+        Its column.
+    shown : str
+        The log's name.
+    findings : Findings
+        Where it is recorded.
+    """
+    findings.error(
+        "this does not say whether a blink touches the fixation",
+        path=shown,
+        line=line,
+        where=f'column "{header}"',
+        found=text,
+        expected="a number (0 for no blink), or a word for yes or no",
+        fix="correct the cells, or take blink out of [logs.columns]",
+    )

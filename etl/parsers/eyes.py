@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from etl.errors import Finding, Findings
 from etl.files import Coded, marks_of
 from etl.parsers.canonical import LogNote
+from etl.parsers.parts import EyeRows, Part
 from etl.parsers.time_checks import WAY_OUT
 from etl.pseudonyms import Pseudonyms
 
@@ -134,6 +135,11 @@ class EyeChoice:
         """The eye that counts for a reader; empty where nothing says so."""
         return self.readers.get(participant) or self.use
 
+    def known(self, logs: Logs, header: str) -> set[str]:
+        """The eyes that the study names, where each row is of one eye."""
+        listed = [v for name, vs in logs.where.items() if name in ("eye", header) for v in vs]
+        return {self.use, *self.readers.values(), *listed}
+
     def headers(self, logs: Logs) -> list[str]:
         """The headers of the columns of both eyes, where a row holds both."""
         if logs.eye is None:
@@ -143,22 +149,20 @@ class EyeChoice:
 
     def choose(
         self,
-        cells: Mapping[str, pa.Array],
-        lines: NDArray[np.int32],
+        rows: tuple[Mapping[str, pa.Array], NDArray[np.int32]],
         headers: Mapping[str, str],
         ids: Mapping[str, Coded],
         logs: Logs,
         note: LogNote,
         findings: Findings,
+        part: Part | None = None,
     ) -> ChosenEye | None:
         """The rows and columns of the eye that counts.
 
         Parameters
         ----------
-        cells : mapping of str to (n,) pa.Array of text
-            The cells by header.
-        lines : (n,) int32 array
-            Line of each row.
+        rows : tuple of mapping of str to (n,) pa.Array of text, and (n,) int32 array
+            The cells by header, and the line of each row.
         headers : mapping of str to str
             The header of each column that is read, by canonical name.
         ids : mapping of str to Coded
@@ -169,22 +173,24 @@ class EyeChoice:
             The log.
         findings : Findings
             Where it is recorded for whom no eye is chosen, or whose chosen eye has no row.
+        part : Part, optional
+            The part of the log that the rows are. How many rows each eye has is put down there.
 
         Returns
         -------
         ChosenEye or None
             None where a problem was recorded.
         """
-        reader = ids["participant"]
+        (cells, lines), reader = rows, ids["participant"]
         wanted = [self.of_reader(name) for name in reader.values]
         before = findings.count("error")
         for code, eye in enumerate(wanted):
-            rows = np.flatnonzero(reader.codes == code)
-            if rows.size and not eye:
+            own = np.flatnonzero(reader.codes == code)
+            if own.size and not eye:
                 findings.error(
                     "nothing says which eye of this reader counts",
                     path=note.shown,
-                    line=int(lines[rows[0]]),
+                    line=int(lines[own[0]]),
                     where="logs.eye",
                     found=reader.values[code],
                     expected="an eye",
@@ -195,12 +201,17 @@ class EyeChoice:
         if logs.eye.columns:
             chosen = _of_columns(cells, (lines, reader, wanted), headers, logs, note, findings)
         else:
-            chosen = self._of_rows(cells, (lines, reader, wanted), headers, logs, note, findings)
+            chosen = self._of_rows(
+                cells, (lines, reader, wanted), headers, logs, note, findings, part
+            )
         if chosen is None:
             return None
         for code, eye in enumerate(wanted):
             own = reader.codes == code
-            if own.any() and not chosen.rows[own].any():
+            if part is not None:
+                if own.any():
+                    part.chosen[reader.values[code]] = bool(chosen.rows[own].any())
+            elif own.any() and not chosen.rows[own].any():
                 findings.error(
                     "the log has nothing of the eye that counts for this reader",
                     path=note.shown,
@@ -221,6 +232,7 @@ class EyeChoice:
         logs: Logs,
         note: LogNote,
         findings: Findings,
+        part: Part | None,
     ) -> ChosenEye | None:
         """The rows of the eye that counts, where each row is of one eye."""
         lines, reader, wanted = who
@@ -238,13 +250,18 @@ class EyeChoice:
                 expected="an eye",
                 fix=WAY_OUT,
             )
-        listed = [
-            v for name, values in logs.where.items() if name in ("eye", header) for v in values
-        ]
-        known = {self.use, *self.readers.values(), *listed}
+        known = self.known(logs, header)
         for code in range(len(reader.values)):
             own = np.flatnonzero(reader.codes == code)
-            for row in _doubtful(eye, own, known):
+            rows_of = _rows_of_eyes(eye, own)
+            if part is not None:
+                part.eyes[reader.values[code]] = {
+                    eye.values[which]: EyeRows(count, int(lines[row]))
+                    for which, (count, row) in rows_of.items()
+                }
+                continue
+            by_name = {eye.values[which]: found for which, found in rows_of.items()}
+            for row in doubtful(by_name, len(own), known):
                 sound = False
                 findings.error(
                     "few rows of this reader are of an eye that nothing names",
@@ -264,18 +281,40 @@ class EyeChoice:
 _Who = tuple[NDArray[np.int32], Coded, list[str]]
 
 
-def _doubtful(eye: Coded, own: NDArray[np.int64], known: Collection[str]) -> Iterator[int]:
-    """The first row of each eye of a reader that can hardly be the reader's other eye."""
+def _rows_of_eyes(eye: Coded, own: NDArray[np.int64]) -> dict[int, tuple[int, int]]:
+    """For each eye of a reader how many rows name it, and the first of them."""
     codes, first, counts = np.unique(eye.codes[own], return_index=True, return_counts=True)
-    strange = [
-        (int(count), int(own[place]))
+    return {
+        int(code): (int(count), int(own[place]))
         for code, place, count in zip(codes, first, counts, strict=True)
-        if code >= 0 and eye.values[code] not in known
-    ]
-    named = sum(code >= 0 and eye.values[code] in known for code in codes)
+        if code >= 0
+    }
+
+
+def doubtful(
+    eyes: Mapping[str, tuple[int, int]], rows: int, known: Collection[str]
+) -> Iterator[int]:
+    """The first row of each eye of a reader that can hardly be the reader's other eye.
+
+    Parameters
+    ----------
+    eyes : mapping of str to (int, int)
+        For each eye how many rows name it, and the first of them.
+    rows : int
+        How many rows the reader has.
+    known : collection of str
+        The eyes that the study names.
+
+    Yields
+    ------
+    int
+        A row.
+    """
+    strange = [found for name, found in eyes.items() if name not in known]
+    named = len(eyes) - len(strange)
     # A reader has two eyes: besides those that are named, the most frequent one may be the other.
     for count, row in sorted(strange, reverse=True)[: 2 - named if named < 2 else 0]:
-        if count < _FEW * len(own):
+        if count < _FEW * rows:
             yield row
     for _, row in sorted(strange, reverse=True)[max(2 - named, 0) :]:
         yield row

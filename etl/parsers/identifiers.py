@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import Coded
+from etl.parsers.parts import Part
 from etl.pseudonyms import Pseudonyms
 
 #: What identifies a fixation's trial.
@@ -85,6 +86,7 @@ def read_ids(
     missing: Collection[str],
     place: tuple[str, Pseudonyms | None],
     findings: Findings,
+    part: Part | None = None,
 ) -> dict[str, Coded]:
     """Reader, session, trial and item of every row; a missing one is an error.
 
@@ -103,6 +105,9 @@ def read_ids(
         study asks for them.
     findings : Findings
         Where missing identifiers, and those that contradict the file's name, are recorded.
+    part : Part, optional
+        The part of the log that the rows are. Identifiers that contradict the file's name are put
+        down there.
 
     Returns
     -------
@@ -134,16 +139,40 @@ def read_ids(
             )
         if name in named:
             for text in sorted(set(coded.values) - {named[name]}):
-                row = int(np.flatnonzero(coded.codes == coded.values.index(text))[0])
-                findings.error(
-                    f"the {name} is not the one in the file's name",
-                    path=shown,
-                    line=int(lines[row]),
-                    where=where,
-                    found=text,
-                    expected=named[name],
-                    fix="correct the log or its name, or remove logs.participant_from_name",
-                )
+                line = int(lines[np.flatnonzero(coded.codes == coded.values.index(text))[0]])
+                if part is not None:
+                    part.misnamed.setdefault(name, {})[text] = line
+                else:
+                    tell_misnamed(name, (text, named[name]), line, (shown, where), findings)
     if pseudonyms is not None and "participant" in ids:
         ids["participant"] = pseudonyms.readers_of(ids["participant"])
     return ids
+
+
+def tell_misnamed(
+    name: str, texts: tuple[str, str], line: int, place: tuple[str, str], findings: Findings
+) -> None:
+    """Record an identifier that contradicts the file's name.
+
+    Parameters
+    ----------
+    name : str
+        Its canonical name.
+    texts : tuple of str
+        What the row says, and what the file's name says.
+    line : int
+        Where it is found first.
+    place : tuple of str
+        The log's name, and the column in words.
+    findings : Findings
+        Where it is recorded.
+    """
+    findings.error(
+        f"the {name} is not the one in the file's name",
+        path=place[0],
+        line=line,
+        where=place[1],
+        found=texts[0],
+        expected=texts[1],
+        fix="correct the log or its name, or remove logs.participant_from_name",
+    )

@@ -13,12 +13,15 @@ from numpy.typing import NDArray
 
 from etl.errors import Findings
 from etl.files import Coded, NumberReading, find_decimal, marks_of, numbers_in
+from etl.files.numeric_cells import decimal_signs
+from etl.parsers.asked_rows import rows_asked_for
 from etl.parsers.canonical import CanonicalLog, LogNote
 from etl.parsers.coordinates import degrees_to_px, tell_far_positions, to_screen_px
 from etl.parsers.detection import SampleRows, log_of_samples
-from etl.parsers.event_blinks import touches
+from etl.parsers.event_blinks import tell_blink, touches
 from etl.parsers.eyes import ChosenEye, EyeChoice
 from etl.parsers.identifiers import IDS, ids_in_name, read_ids
+from etl.parsers.parts import Part, Step
 from etl.parsers.time_checks import DIFFERENCE_DIGITS, check_times, in_ms
 from etl.pseudonyms import Pseudonyms
 
@@ -28,8 +31,6 @@ if TYPE_CHECKING:
 _NUMBERS = ("onset", "end", "duration", "fixation", "x", "y")
 #: What a gaze sample has none of.
 _NOT_OF_SAMPLES = ("end", "duration", "fixation", "label")
-#: How many values of a column that [logs.where] does not ask for are remembered, to tell a slip.
-_MOST_OTHERS = 20
 
 
 @dataclass(frozen=True, slots=True)
@@ -134,7 +135,9 @@ class RowReading:
             findings,
         )
 
-    def asked_for(self, rows: LogRows, note: LogNote, findings: Findings) -> LogRows | None:
+    def asked_for(
+        self, rows: LogRows, note: LogNote, findings: Findings, part: Part | None = None
+    ) -> LogRows | None:
         """The rows that ``[logs.where]`` asks for.
 
         Parameters
@@ -145,6 +148,8 @@ class RowReading:
             Where it is counted how many there are of the others.
         findings : Findings
             Where it is recorded that no row has a value asked for.
+        part : Part, optional
+            The part of the log that the rows are.
 
         Returns
         -------
@@ -156,39 +161,23 @@ class RowReading:
         note.counts["rows not asked for"] = 0
         if not where:
             return rows
-        mask = np.ones(len(rows), dtype=bool)
-        before = findings.count("error")
-        for name, (header, values) in zip(self.logs.where, where, strict=True):
-            coded = Coded.of(rows.columns[header], ())
-            asked = coded.among(values)
-            others = [text for text in coded.values if text not in values][:_MOST_OTHERS]
-            there = (*(v for v in values if v in coded.values), *others)
-            note.asked[name] = self._hidden(header, Coded.of(pa.array(there), ())).values
-            if not asked.any():
-                findings.error(
-                    "no row has the value asked for",
-                    path=note.shown,
-                    where=f'column "{header}"',
-                    found=", ".join(coded.values[:5]),
-                    expected=" or ".join(values),
-                    fix="correct [logs.where] in the study file, or remove the log",
-                )
-            mask &= asked
-        if findings.count("error") > before:
+        asked = rows_asked_for(rows.columns, where, note.shown, findings, part)
+        if asked is None:
             return None
-        if not mask.any():
-            findings.error(
-                "no row is left by [logs.where]",
-                path=note.shown,
-                expected="a row that has "
-                + " and ".join(f"{header} {' or '.join(v)}" for header, v in where),
-                fix="correct [logs.where] in the study file, or remove the log",
-            )
-            return None
+        mask, occurring = asked
+        for name, (header, _), there in zip(self.logs.where, where, occurring, strict=True):
+            note.asked[name] = self._hidden(
+                header, Coded.of(pa.array(there, pa.string()), ())
+            ).values
         return _without(rows, ~mask, "rows not asked for", note)
 
     def canonical(
-        self, rows: LogRows, named: dict[str, str], note: LogNote, findings: Findings
+        self,
+        rows: LogRows,
+        named: dict[str, str],
+        note: LogNote,
+        findings: Findings,
+        part: Part | None = None,
     ) -> CanonicalLog | None:
         """Cells into canonical fixations; where the study has ``[logs.samples]``, those in samples.
 
@@ -203,25 +192,28 @@ class RowReading:
             Where it is told how the log was understood.
         findings : Findings
             Where every cell that cannot be used is recorded, with its line.
+        part : Part, optional
+            The part of the log that the rows are; what is found is recorded there by steps, and
+            what holds for the whole log is not judged.
 
         Returns
         -------
         CanonicalLog or None
-            None where a problem was recorded that hides others.
+            None where a problem was recorded that hides others, or no row of a part is asked for.
         """
-        asked = self.asked_for(rows, note, findings)
-        if asked is None:
+        asked = self.asked_for(rows, note, findings, part)
+        if asked is None or not len(asked):
             return None
         rows, columns, told = asked, self.headers(), Findings()
         chosen: ChosenEye | None = None
         place = (note.shown, self.pseudonyms)
-        ids = read_ids((rows.columns, rows.lines), columns, named, self.missing(), place, findings)
+        cells = (rows.columns, rows.lines)
+        own = findings if part is None else part.at(Step.IDS)
+        ids = read_ids(cells, columns, named, self.missing(), place, own, part)
         if self.logs.eye is not None and "participant" in ids:
-            if findings.failed:
+            if own.failed:
                 return None
-            chosen = self.eyes.choose(
-                rows.columns, rows.lines, columns, ids, self.logs, note, findings
-            )
+            chosen = self.eyes.choose(cells, columns, ids, self.logs, note, findings, part)
             if chosen is None:
                 return None
             left = np.flatnonzero(chosen.rows)
@@ -229,7 +221,14 @@ class RowReading:
             rows = replace(rows, columns={**rows.columns, **chosen.columns})
             rows = _without(rows, ~chosen.rows, "rows of the other eye", note)
             columns = chosen.headers
-        numbers = self._numbers(rows.columns, rows.lines, columns, note, told)
+        own = told if part is None else part.at(Step.NUMBERS)
+        numbers = self._numbers(rows.columns, rows.lines, columns, note, own, part)
+        if part is not None:
+            if numbers is None:
+                part.stopped = Step.NUMBERS
+                return None
+            own = part.at(Step.FIXATIONS)
+            return self._fixations(rows, columns, ids, numbers, note, own, part)
         log = None if numbers is None else self._fixations(rows, columns, ids, numbers, note, told)
         findings.extend(told if chosen is None else chosen.under_own_headers(told))
         return log
@@ -242,6 +241,7 @@ class RowReading:
         numbers: dict[str, NDArray[np.float64]],
         note: LogNote,
         findings: Findings,
+        part: Part | None = None,
     ) -> CanonicalLog | None:
         """Rows of fixations, or of samples, into canonical columns."""
         cells, lines, missing = rows.columns, rows.lines, self.missing()
@@ -261,7 +261,7 @@ class RowReading:
             findings,
         )
         facts = {name: self._hidden(name, Coded.of(cells[name], missing)) for name in self.facts}
-        blink = self._blinks(cells, lines, columns, note.shown, findings)
+        blink = self._blinks(cells, lines, columns, note.shown, findings, part)
         blink = blink if rows.blink is None else blink | rows.blink
         if self.logs.samples is not None:
             onset = (columns["onset"], cells[columns["onset"]])
@@ -299,6 +299,7 @@ class RowReading:
         columns: dict[str, str],
         shown: str,
         findings: Findings,
+        part: Part | None,
     ) -> NDArray[np.bool_]:
         """Whether a blink touches each fixation: a number that is not 0, or a word for yes."""
         if "blink" not in columns:
@@ -307,16 +308,11 @@ class RowReading:
         known = [touches(text) for text in coded.values]
         for code, said in enumerate(known):
             if said is None:
-                row = int(np.flatnonzero(coded.codes == code)[0])
-                findings.error(
-                    "this does not say whether a blink touches the fixation",
-                    path=shown,
-                    line=int(lines[row]),
-                    where=f'column "{columns["blink"]}"',
-                    found=coded.values[code],
-                    expected="a number (0 for no blink), or a word for yes or no",
-                    fix="correct the cells, or take blink out of [logs.columns]",
-                )
+                line = int(lines[np.flatnonzero(coded.codes == code)[0]])
+                if part is not None:
+                    part.blink_words[coded.values[code]] = line
+                else:
+                    tell_blink(coded.values[code], line, columns["blink"], shown, findings)
         return np.array([*(bool(said) for said in known), False])[coded.codes]
 
     def _hidden(self, header: str, column: Coded) -> Coded:
@@ -352,15 +348,17 @@ class RowReading:
         columns: dict[str, str],
         note: LogNote,
         findings: Findings,
+        part: Part | None = None,
     ) -> dict[str, NDArray[np.float64]] | None:
         """The columns of numbers, times in ms."""
         present = {name: columns[name] for name in _NUMBERS if name in columns}
-        decimal = self.logs.decimal or find_decimal(
-            {header: cells[header] for header in present.values()},
-            note.shown,
-            lambda row: int(lines[row]),
-            findings,
-        )
+        decimal: str | None = self.logs.decimal
+        texts = {header: cells[header] for header in present.values()}
+        if decimal is None and part is None:
+            decimal = find_decimal(texts, note.shown, lambda row: int(lines[row]), findings)
+        elif decimal is None and part is not None:
+            part.signs = decimal_signs(texts, lambda row: int(lines[row]), points=True)
+            decimal = part.decimal or part.signs.decide(note.shown, Findings()) or "."
         if decimal is None:
             return None
         note.decimal = decimal
