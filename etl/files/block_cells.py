@@ -76,6 +76,8 @@ class BlockCells:
         Rows that are not as wide as the header.
     crooked : bool
         Whether quote marks are not as the standard has them.
+    count : int
+        How many rows there are, repeated headers included.
     other_headers : Findings
         Headers that differ from the log's.
     """
@@ -92,6 +94,7 @@ class BlockCells:
     strange_marks: list[int] = field(default_factory=list)
     uneven: Uneven | None = None
     crooked: bool = False
+    count: int = 0
     other_headers: Findings = field(default_factory=Findings)
 
 
@@ -171,6 +174,7 @@ def cells_of_block(text: bytes, first: int, manner: Manner, *, below: bool) -> B
     rows = _rows(body, header, manner, cells)
     if rows is None:
         return cells
+    cells.count = len(rows.lines)
     own = cells.other_headers
     repeated = repeated_headers(rows, manner.header, body, manner.shown, own, first=header.first)
     if repeated is None:
