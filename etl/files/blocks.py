@@ -7,14 +7,17 @@ that what is digested is what is understood.
 
 from __future__ import annotations
 
+import gzip
 import hashlib
+import zlib
 from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Final
 
-from etl.files.pieces import HashedFile, decoded_wide, unpacked
+from etl.files.pieces import HashedFile, decoded_wide, first_of, unpacked
 from etl.files.steady import ChangedError, Sight, steady
+from etl.files.text_encodings import PROBE_BYTES
 from etl.files.text_faults import plain_name, with_plain_line_ends
 
 MARK: Final = b"\xef\xbb\xbf"
@@ -114,6 +117,34 @@ def texts(made: Survey) -> Iterator[tuple[Block, bytes]]:
         yield block, _text(made, block, raw)
 
 
+def beginning_of(path: Path, most: int = 2 * 1024 * 1024) -> bytes:
+    """The first bytes of a text file, unpacked where it is gzipped, up to a line end.
+
+    Parameters
+    ----------
+    path : Path
+        The file.
+    most : int
+        About how many bytes.
+
+    Returns
+    -------
+    bytes
+        Empty where it cannot be read, which is told by whoever reads it all.
+    """
+    try:
+        with path.open("rb") as file:
+            packed = file.read(2) == b"\x1f\x8b"
+            file.seek(0)
+            chunks = unpacked(HashedFile(file), packed=packed)
+            begun = b"".join(first_of(chunks, most))
+    except (OSError, EOFError, zlib.error):
+        return b""
+    if b"\x00" in begun[:PROBE_BYTES]:
+        return begun[: len(begun) // 4 * 4]  # letters of two or four bytes
+    return begun[: begun.rfind(b"\n") + 1] or begun
+
+
 def text_at(made: Survey, place: int) -> bytes:
     """The text of one block, without reading those before it.
 
@@ -154,7 +185,10 @@ def raw_blocks(made: Survey) -> Iterator[tuple[Block, bytes]]:
         for block in made.blocks:
             length = block.stop - block.start
             while len(held) < length:
-                chunk = next(chunks, b"")
+                try:
+                    chunk = next(chunks, b"")
+                except (EOFError, gzip.BadGzipFile, zlib.error):
+                    chunk = b""  # it could be unpacked when it was surveyed
                 if not chunk:
                     raise ChangedError
                 held += chunk

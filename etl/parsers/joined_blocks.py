@@ -35,13 +35,17 @@ _REPAIRS: Final = (
 )
 
 
-def to_read_again(log: BlockLog, answers: Sequence[BlockAnswer]) -> tuple[BlockLog, list[Reading]]:
+def to_read_again(
+    log: BlockLog, reading: RowReading, answers: Sequence[BlockAnswer]
+) -> tuple[BlockLog, list[Reading]]:
     """Which blocks were not read as the log as a whole shows that they must be.
 
     Parameters
     ----------
     log : BlockLog
         The log.
+    reading : RowReading
+        How the study's logs are read.
     answers : sequence of BlockAnswer
         What all its blocks tell, in order.
 
@@ -53,7 +57,7 @@ def to_read_again(log: BlockLog, answers: Sequence[BlockAnswer]) -> tuple[BlockL
     if any(answer.cells.crooked for answer in answers):
         again = [Reading(a.reading.place, a.reading.below) for a in answers]
         return log.loosely(), again
-    decimal = log.reading.logs.decimal or _signs(log, answers).decide("", Findings()) or ""
+    decimal = reading.logs.decimal or _signs(log, reading, answers).decide("", Findings()) or ""
     below, again = True, []
     for answer in answers:
         how, signs = answer.reading, answer.part.signs
@@ -67,13 +71,17 @@ def to_read_again(log: BlockLog, answers: Sequence[BlockAnswer]) -> tuple[BlockL
     return log, again
 
 
-def joined(log: BlockLog, answers: Sequence[BlockAnswer], findings: Findings) -> LogNote | None:
+def joined(
+    log: BlockLog, reading: RowReading, answers: Sequence[BlockAnswer], findings: Findings
+) -> LogNote | None:
     """What is found in a log, and what is told about it.
 
     Parameters
     ----------
     log : BlockLog
         The log.
+    reading : RowReading
+        How the study's logs are read.
     answers : sequence of BlockAnswer
         What all its blocks tell, in order.
     findings : Findings
@@ -90,18 +98,22 @@ def joined(log: BlockLog, answers: Sequence[BlockAnswer], findings: Findings) ->
         If something is the matter that is told from the whole log.
     """
     own = Findings()
-    decimal = _decimal(log, answers, own) if _lines_are_sound(log, answers, own) else ""
-    if log.reading.logs.eye is not None:
+    decimal = (
+        _decimal(log, reading, answers, own) if _lines_are_sound(log, reading, answers, own) else ""
+    )
+    if reading.logs.eye is not None:
         # Of two eyes, what is wrong is told by the header of each row's own eye.
         if own.failed:
             raise WholeNeededError
-        _hold_eyes(log, answers)
+        _hold_eyes(log, reading, answers)
     own.items.sort(key=lambda finding: finding.line or 0)
     findings.extend(own)
-    return None if own.failed else _note(log, answers, decimal)
+    return None if own.failed else _note(log, reading, answers, decimal)
 
 
-def _lines_are_sound(log: BlockLog, answers: Sequence[BlockAnswer], own: Findings) -> bool:
+def _lines_are_sound(
+    log: BlockLog, reading: RowReading, answers: Sequence[BlockAnswer], own: Findings
+) -> bool:
     """Whether lines are rows as the header has them; says what is wrong, step by step."""
     shown, header = log.manner.shown, log.manner.header
     within = [line for answer in answers for line in answer.cells.marks_within]
@@ -123,7 +135,7 @@ def _lines_are_sound(log: BlockLog, answers: Sequence[BlockAnswer], own: Finding
     alike = _tally(answer.cells.alike for answer in answers)
     if alike.count:
         tell_alike(alike.count, alike.first_line, header, shown, own)
-    own.extend(head_findings(log))
+    own.extend(head_findings(log, reading))
     _add(answers, Step.UNITS, own)
     rows = sum(answer.rows for answer in answers)
     if not rows:
@@ -136,15 +148,17 @@ def _lines_are_sound(log: BlockLog, answers: Sequence[BlockAnswer], own: Finding
     return rows > 0
 
 
-def _decimal(log: BlockLog, answers: Sequence[BlockAnswer], own: Findings) -> str:
+def _decimal(
+    log: BlockLog, reading: RowReading, answers: Sequence[BlockAnswer], own: Findings
+) -> str:
     """The decimal sign; says what is wrong with rows, step by step."""
     shown = log.manner.shown
-    reading = own_reading(log.reading, log.manner.header.names)
+    reading = own_reading(reading, log.manner.header.names)
     if not _asked(reading, answers, shown, own):
         return ""
     _add(answers, Step.IDS, own)
     _names(log, reading, answers, own)
-    decimal = reading.logs.decimal or _signs(log, answers).decide(shown, own)
+    decimal = reading.logs.decimal or _signs(log, reading, answers).decide(shown, own)
     if decimal is None:
         return ""
     _add(answers, Step.NUMBERS, own)
@@ -220,9 +234,9 @@ def _names(
             )
 
 
-def _signs(log: BlockLog, answers: Sequence[BlockAnswer]) -> DecimalSigns:
+def _signs(log: BlockLog, reading: RowReading, answers: Sequence[BlockAnswer]) -> DecimalSigns:
     """The decimal signs of all blocks."""
-    headers = list(own_reading(log.reading, log.manner.header.names).headers().values())
+    headers = list(own_reading(reading, log.manner.header.names).headers().values())
     whole = DecimalSigns({}, {})
     for answer in answers:
         if answer.part.signs is not None:
@@ -231,9 +245,9 @@ def _signs(log: BlockLog, answers: Sequence[BlockAnswer]) -> DecimalSigns:
     return whole
 
 
-def _hold_eyes(log: BlockLog, answers: Sequence[BlockAnswer]) -> None:
+def _hold_eyes(log: BlockLog, reading: RowReading, answers: Sequence[BlockAnswer]) -> None:
     """Hold the eyes of all blocks against each other."""
-    reading = own_reading(log.reading, log.manner.header.names)
+    reading = own_reading(reading, log.manner.header.names)
     rows: dict[str, dict[str, tuple[int, int]]] = {}
     has: dict[str, bool] = {}
     for answer in answers:
@@ -253,7 +267,9 @@ def _hold_eyes(log: BlockLog, answers: Sequence[BlockAnswer]) -> None:
             raise WholeNeededError
 
 
-def _note(log: BlockLog, answers: Sequence[BlockAnswer], decimal: str) -> LogNote:
+def _note(
+    log: BlockLog, reading: RowReading, answers: Sequence[BlockAnswer], decimal: str
+) -> LogNote:
     """What is told about a log that was read."""
     made, header = log.survey, log.manner.header
     note = LogNote(
@@ -276,9 +292,9 @@ def _note(log: BlockLog, answers: Sequence[BlockAnswer], decimal: str) -> LogNot
     fullest = max(answers, key=lambda answer: len(answer.note.counts))
     for what in fullest.note.counts:
         note.counts[what] = sum(answer.note.counts.get(what, 0) for answer in answers)
-    for name, (_, values) in zip(log.reading.logs.where, log.reading.where(), strict=True):
+    for name, (_, values) in zip(reading.logs.where, reading.where(), strict=True):
         there = dict.fromkeys(t for a in answers for t in a.note.asked.get(name, ()))
-        hidden = _hidden_values(log.reading, name, values)
+        hidden = _hidden_values(reading, name, values)
         asked = [text for text in hidden if text in there]
         others = [text for text in there if text not in hidden]
         note.asked[name] = (*asked, *others[:MOST_OTHERS])

@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 from pathlib import Path
-from typing import TYPE_CHECKING, Protocol
+from typing import TYPE_CHECKING, Final, Protocol
 
 from etl.errors import Findings
+from etl.files.surveying import BIG_BYTES, BLOCK_BYTES
 from etl.parsers.bids_log import BidsReader, is_recording, lines_of
 from etl.parsers.canonical import CanonicalLog, LogNote
 from etl.parsers.event_log import EventReader
@@ -16,6 +17,10 @@ from etl.pseudonyms import Pseudonyms
 
 if TYPE_CHECKING:
     from etl.study.models import Logs, Screen
+
+
+#: From which size on a table is read in blocks, and how long these are, in bytes of text.
+SIZES: Final = (BIG_BYTES, BLOCK_BYTES)
 
 
 class LogReader(Protocol):
@@ -68,7 +73,7 @@ def reader_for(
     reading = RowReading(logs, screen, facts, eyes, pseudonyms)
     if logs.kind == "bids":
         return BidsReader(reading)
-    return EventReader(reading) if logs.kind == "events" else TableReader(reading)
+    return EventReader(reading) if logs.kind == "events" else TableReader(reading, *SIZES)
 
 
 def is_log(kind: str, path: Path) -> bool:

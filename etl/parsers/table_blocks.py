@@ -41,8 +41,6 @@ class BlockLog:
         What is known of the file.
     manner : Manner
         How it is split into rows.
-    reading : RowReading
-        How all logs of the study are read.
     named : dict of str to str
         What the file's name says.
     head : FileAccount
@@ -51,7 +49,6 @@ class BlockLog:
 
     survey: Survey
     manner: Manner
-    reading: RowReading
     named: dict[str, str]
     head: FileAccount
 
@@ -161,7 +158,7 @@ def begin_blocks(
     )
     if found is None:
         return None
-    return BlockLog(made, found[0], reading, named, found[1])
+    return BlockLog(made, found[0], named, found[1])
 
 
 def texts_of(log: BlockLog, places: frozenset[int]) -> Iterator[tuple[int, bytes]]:
@@ -196,13 +193,15 @@ def texts_of(log: BlockLog, places: frozenset[int]) -> Iterator[tuple[int, bytes
             yield place, text
 
 
-def read_block(log: BlockLog, how: Reading, text: bytes) -> BlockAnswer:
+def read_block(log: BlockLog, reading: RowReading, how: Reading, text: bytes) -> BlockAnswer:
     """Read one block of a log.
 
     Parameters
     ----------
     log : BlockLog
         The log.
+    reading : RowReading
+        How the study's logs are read.
     how : Reading
         How the block is to be read.
     text : bytes
@@ -217,7 +216,7 @@ def read_block(log: BlockLog, how: Reading, text: bytes) -> BlockAnswer:
     WholeNeededError
         If something is the matter that is told from the whole log.
     """
-    block, manner, reading = log.survey.blocks[how.place], log.manner, log.reading
+    block, manner = log.survey.blocks[how.place], log.manner
     found = cells_of_block(text, block.first, manner, below=how.below)
     part = Part(how.decimal)
     note = LogNote(manner.shown, account=found.account)
@@ -261,13 +260,15 @@ def _ends_below(found: BlockCells, left: NDArray[np.int32]) -> bool:
     return start >= len(found.lines) or not bool((left >= found.lines[start]).any())
 
 
-def head_findings(log: BlockLog) -> Findings:
+def head_findings(log: BlockLog, reading: RowReading) -> Findings:
     """What is wrong with the units that a log's header names.
 
     Parameters
     ----------
     log : BlockLog
         The log.
+    reading : RowReading
+        How the study's logs are read.
 
     Returns
     -------
@@ -275,5 +276,5 @@ def head_findings(log: BlockLog) -> Findings:
     """
     findings = Findings()
     header = log.manner.header
-    check_units(log.reading, header.names, (log.manner.shown, header.line), findings)
+    check_units(reading, header.names, (log.manner.shown, header.line), findings)
     return findings

@@ -7,11 +7,15 @@ from pathlib import Path
 
 from etl.errors import Findings
 from etl.files import Cells, cells_of, header_of, read_text
+from etl.files.blocks import beginning_of
+from etl.files.decoding import text_of
+from etl.files.surveying import BIG_BYTES, BLOCK_BYTES, may_be_big
 from etl.files.units import own_names
 from etl.parsers.canonical import CanonicalLog, LogNote
 from etl.parsers.header_units import check_units, own_reading, without_unit_rows
 from etl.parsers.line_order import in_line_order
 from etl.parsers.log_rows import LogRows, RowReading
+from etl.parsers.table_blocks import BlockLog, begin_blocks
 
 
 @dataclass(frozen=True, slots=True)
@@ -22,9 +26,13 @@ class TableReader:
     ----------
     reading : RowReading
         How rows become fixations.
+    big_bytes, block_bytes : int
+        From which size on a log is read in blocks, and how long these are.
     """
 
     reading: RowReading
+    big_bytes: int = BIG_BYTES
+    block_bytes: int = BLOCK_BYTES
 
     #: Nothing but the log itself says what is in it.
     reads_one_file = True
@@ -32,7 +40,10 @@ class TableReader:
     def header(self, path: Path) -> tuple[str, ...]:
         """The columns of a log; empty where it cannot be read, which is told when it is read."""
         logs = self.reading.logs
-        text = read_text(path, path.name, Findings(), encoding=logs.encoding)
+        if may_be_big(path, self.big_bytes):
+            text = text_of(beginning_of(path), path.name, Findings(), encoding=logs.encoding)
+        else:
+            text = read_text(path, path.name, Findings(), encoding=logs.encoding)
         if text is None:
             return ()
         needed = self.reading.needed()
@@ -58,6 +69,47 @@ class TableReader:
             None where a problem was recorded.
         """
         return in_line_order(lambda own: self._read(path, shown, own), findings)
+
+    def is_big(self, path: Path) -> bool:
+        """Whether a log is to be read in blocks.
+
+        Parameters
+        ----------
+        path : Path
+            The log.
+
+        Returns
+        -------
+        bool
+            Never for gaze samples: those of a trial belong together, and all tell of the rate.
+        """
+        return self.reading.logs.samples is None and may_be_big(path, self.big_bytes)
+
+    def begin(self, path: Path, shown: str, findings: Findings) -> BlockLog | None:
+        """Find out what must be known of a big log before its blocks are read.
+
+        Parameters
+        ----------
+        path : Path
+            The file, plain or gzipped.
+        shown : str
+            Its name for messages.
+        findings : Findings
+            Where problems are recorded.
+
+        Returns
+        -------
+        BlockLog or None
+            None where a problem was recorded.
+
+        Raises
+        ------
+        WholeNeededError
+            If something is the matter that is told from the whole log.
+        ChangedError
+            If the log changes.
+        """
+        return begin_blocks(self.reading, path, shown, findings, self.block_bytes)
 
     def _read(
         self, path: Path, shown: str, findings: Findings

@@ -106,6 +106,9 @@ def read_logs(
             answer.trials = sharing.trials(answer.trials)
         answers.append(answer)
         progress("reading logs", len(answers), len(tasks))
+    for number, answer in enumerate(answers):
+        if answer.begun is not None:
+            answers[number] = share_log(tasks[number], answer, crew, arguments)
     return answers
 
 

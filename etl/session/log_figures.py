@@ -120,11 +120,27 @@ def figures_of(log: CanonicalLog, readers: int, trials: int) -> LogFigures:
 
 def _step_ratio(log: CanonicalLog) -> float:
     """How many durations it is from an onset to the next, in the middle over a log."""
+    steps = steps_of(log)
+    return float(np.median(steps)) if len(steps) >= FEWEST_STEPS else float("nan")
+
+
+def steps_of(log: CanonicalLog) -> NDArray[np.float64]:
+    """How many durations it is from an onset to the next.
+
+    Parameters
+    ----------
+    log : CanonicalLog
+        Fixations, at least one.
+
+    Returns
+    -------
+    (m,) float64 array
+        For each fixation of which the next is of the same trial and begins later.
+    """
     same = np.ones(max(len(log) - 1, 0), dtype=bool)
     for name, column in log.ids.items():
         if name != "item":
             same &= column.codes[1:] == column.codes[:-1]
     steps = np.diff(log.onset_ms) / log.duration_ms[:-1]
     # A step back is a row out of order, of which the ordering of fixations has its own to say.
-    steps = steps[same & (steps > 0)]
-    return float(np.median(steps)) if len(steps) >= FEWEST_STEPS else float("nan")
+    return np.asarray(steps[same & (steps > 0)], dtype=np.float64)

@@ -33,12 +33,28 @@ def seen_trials(log: CanonicalLog, shown: str, findings: Findings) -> SeenTrials
     SeenTrials
         In order of first appearance, all of log 0.
     """
+    return trial_runs(log).once((shown,), findings)
+
+
+def trial_runs(log: CanonicalLog) -> SeenTrials:
+    """The runs of rows of one trial, each with the facts that stand in its first row.
+
+    Parameters
+    ----------
+    log : CanonicalLog
+        The fixations of one log, or of a part of it.
+
+    Returns
+    -------
+    SeenTrials
+        In the order of the log; a trial that comes again is there again.
+    """
     changes = np.zeros(len(log), dtype=bool)
     changes[:1] = True
     for coded in (*log.ids.values(), *log.facts.values()):
         changes[1:] |= coded.codes[1:] != coded.codes[:-1]
     rows = np.flatnonzero(changes)
-    runs = SeenTrials(
+    return SeenTrials(
         {name: column.take(rows) for name, column in log.ids.items()},
         {name: column.take(rows) for name, column in log.facts.items()},
         np.zeros(len(rows), dtype=np.int32),

@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 
 from etl.errors import Findings
 from etl.export.publish import digest_of
 from etl.export.rows import TrialColumns
-from etl.parsers import LogReader
+from etl.files.pieces import WholeNeededError
+from etl.files.text_faults import tell_unreadable
+from etl.parsers import LogReader, TableReader
 from etl.parsers.canonical import LogNote
+from etl.parsers.table_blocks import BlockLog
 from etl.pseudonyms import Pseudonyms
 from etl.regions import RegionLibrary
 from etl.session.bench import Bench
@@ -40,6 +44,10 @@ class LogAnswer:
 
     note: LogNote
     batches: dict[str, int] = field(default_factory=dict)
+    #: The same for each block, where it was read in blocks.
+    blocks: tuple[dict[str, int], ...] = ()
+    #: What is known of it, where its blocks are left to others.
+    begun: BlockLog | None = None
     #: How many fixations each reader has.
     fixations: dict[str, int] = field(default_factory=dict)
     trials: SeenTrials | None = None
@@ -51,6 +59,13 @@ class LogAnswer:
     clashes: dict[str, tuple[str, str]] = field(default_factory=dict)
     #: The entry that has the fixations.
     kept: str = ""
+
+    def kept(self, path: Path) -> Iterator[tuple[Path, dict[str, int]]]:
+        """Where fixations were put aside, and the batch of each reader there."""
+        if self.batches:
+            yield path, self.batches
+        for place, batches in enumerate(self.blocks):
+            yield block_path(path, place), batches
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,0 +1,89 @@
+"""Big logs of which several workers read a block each."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from dataclasses import replace
+
+from etl.files.pieces import WholeNeededError
+from etl.parsers import LogReader, TableReader
+from etl.pseudonyms import Pseudonyms
+from etl.session.block_logs import BlockTask, KeptBlock, keep_blocks
+from etl.session.crew import Crew
+from etl.session.kept_logs import Shelf
+from etl.session.work import LogAnswer, LogTask, LogWork, answer_of
+
+Arguments = tuple[LogReader, Shelf, Pseudonyms | None]
+
+
+class BlockWork:
+    """Reads blocks.
+
+    Parameters
+    ----------
+    reader : TableReader
+        How the study's logs are read.
+    shelf : Shelf
+        Where fixations may be put aside.
+    pseudonyms : Pseudonyms or None
+        The very ones of the reader, which know afterwards whose they gave.
+    """
+
+    def __init__(self, reader: TableReader, shelf: Shelf, pseudonyms: Pseudonyms | None) -> None:
+        self._reader = reader
+        self._shelf = shelf
+        self._pseudonyms = pseudonyms
+
+    def __call__(self, task: BlockTask) -> list[KeptBlock] | Exception:
+        """Read some blocks; what stands against it is an answer, too."""
+        before = 0 if self._pseudonyms is None else len(self._pseudonyms.originals)
+        try:
+            kept = list(keep_blocks(task, self._reader, self._shelf))
+        except (WholeNeededError, OSError) as why:
+            return why
+        if self._pseudonyms is not None and kept:
+            kept[-1].originals = self._pseudonyms.learnt_since(before)
+            kept[-1].clashes = dict(self._pseudonyms.clashes)
+        return kept
+
+
+def share_log(task: LogTask, begun: LogAnswer, crew: Crew, arguments: Arguments) -> LogAnswer:
+    """Read a big log, a block a task.
+
+    Parameters
+    ----------
+    task : LogTask
+        The log.
+    begun : LogAnswer
+        What is known of it.
+    crew : Crew
+        Does the work.
+    arguments : tuple of LogReader, Shelf, and Pseudonyms or None
+        How logs are read and where they are put aside.
+
+    Returns
+    -------
+    LogAnswer
+        The same as if one worker had read it.
+    """
+    reader, shelf, _ = arguments
+    assert isinstance(reader, TableReader)  # noqa: S101
+    originals = dict(begun.originals)
+    clashes = dict(begun.clashes)
+
+    def do(tasks: Sequence[BlockTask]) -> Iterator[list[KeptBlock]]:
+        for some in crew.map(BlockWork, arguments, tasks):
+            if isinstance(some, Exception):
+                raise some
+            for kept in some:
+                originals.update(kept.originals)
+                clashes.update(kept.clashes)
+            yield some
+
+    try:
+        answer = answer_of(begun.begun, reader, (task, shelf), do, begun.findings)
+    except WholeNeededError:
+        (answer,) = crew.map(LogWork, arguments, [replace(task, whole=True)])
+        return answer
+    answer.originals, answer.clashes = originals, clashes
+    return answer
