@@ -179,7 +179,7 @@ def cells_of_block(text: bytes, first: int, manner: Manner, *, below: bool) -> B
     repeated = repeated_headers(rows, manner.header, body, manner.shown, own, first=header.first)
     if repeated is None:
         return cells
-    _count(rows, header, rows.lines[repeated], cells)
+    _count(rows, manner.header.height, rows.lines[repeated], cells)
     if marks.beginning:
         aside = {*rows.aside.blank, *rows.aside.remarks, *rows.lines[repeated].tolist()}
         numbers = [first - 1 + number for number in marks.beginning]
@@ -229,7 +229,7 @@ def _rows(body: bytes, header: Header, manner: Manner, cells: BlockCells) -> Row
     return None
 
 
-def _count(rows: Rows, header: Header, repeated: NDArray[np.int32], cells: BlockCells) -> None:
+def _count(rows: Rows, height: int, repeated: NDArray[np.int32], cells: BlockCells) -> None:
     """Count what became of the lines of a block below the log's header."""
     account = cells.account
     account.total = rows.height
@@ -237,7 +237,7 @@ def _count(rows: Rows, header: Header, repeated: NDArray[np.int32], cells: Block
     for fate, numbers in (("blank lines", aside.blank), ("remarks", aside.remarks)):
         account.line(fate, len(numbers), numbers[0] if numbers else None)
     if len(repeated):
-        account.line("repeated headers", len(repeated) * header.height, int(repeated[0]))
+        account.line("repeated headers", len(repeated) * height, int(repeated[0]))
     own = np.setdiff1d(rows.lines, repeated) if len(repeated) else rows.lines
     account.line("rows", len(own), int(own[0]) if len(own) else None)
     counted = sum(tally.count for tally in account.lines.values())

@@ -2,14 +2,17 @@
 
 from __future__ import annotations
 
-import json
-import shutil
 from pathlib import Path
+from random import Random
 
 import pytest
 
 import etl
-from etl.parsers import readers
+from tests.blocks.both_ways import WHOLE, told
+from tests.fuzz.cases import CORPUS, some_kinds
+from tests.fuzz.damage import DAMAGES
+from tests.fuzz.kinds import KINDS
+from tests.fuzz.oracle import put, sound_study
 from tests.simulator.dialects import RecordedStudy, recorded_study
 from tests.simulator.dialects.table_dialects import TABLE_DIALECTS
 from tests.simulator.dialects.tables import write_tables
@@ -25,50 +28,44 @@ def study() -> RecordedStudy:
     return recorded_study(3, 4)
 
 
-def built(study: Path, workers: int = 1) -> Built:
-    """What a build says, and all it writes; run records without the time it took."""
-    out = study.parent / "out"
-    shutil.rmtree(out, ignore_errors=True)
-    try:
-        findings = etl.build(etl.load_study(study), workers=workers).findings
-    except etl.errors.InputError as refused:
-        return refused.findings.text(), {}
-    files: dict[str, object] = {}
-    for path in sorted(out.rglob("*")):
-        if path.is_file():
-            files[path.relative_to(out).as_posix()] = path.read_bytes()
-    record = json.loads((out / "run.json").read_text(encoding="utf-8"))
-    for key in [key for key in record if "elapsed" in key]:
-        del record[key]
-    files["run.json"] = record
-    return findings.text(), files
-
-
-def hold(study: Path, length: int, monkeypatch: pytest.MonkeyPatch, workers: int = 1) -> Built:
-    """Build both ways, and hold what comes of it against each other."""
-    whole = built(study, workers)
-    with monkeypatch.context() as patched:
-        patched.setattr(readers, "SIZES", (1, length))
-        blocks = built(study, workers)
-    assert blocks[0] == whole[0]
-    assert blocks[1].keys() == whole[1].keys()
-    different = [name for name, content in whole[1].items() if blocks[1][name] != content]
-    for name in different:
-        if name == "run.json":
-            assert blocks[1][name] == whole[1][name]
-    assert different == []
-    return whole
-
-
-@pytest.mark.parametrize("length", LENGTHS)
 @pytest.mark.parametrize("dialect", TABLE_DIALECTS)
 def test_every_dialect(
-    dialect: str,
-    length: int,
-    study: RecordedStudy,
-    tmp_path: Path,
-    monkeypatch: pytest.MonkeyPatch,
+    dialect: str, study: RecordedStudy, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    """However tables are written: the same files, the same messages."""
-    says, files = hold(write_tables(study, tmp_path, TABLE_DIALECTS[dialect]), length, monkeypatch)
-    assert files, says
+    """However tables are written: the same fixations, trials, accounts, figures and messages."""
+    path = write_tables(study, tmp_path, TABLE_DIALECTS[dialect])
+    whole, none = told(path, WHOLE, monkeypatch)
+    assert none == 0
+    for length in LENGTHS:
+        blocks, some = told(path, length, monkeypatch)
+        assert blocks == whole
+        assert some == len(whole) > 0
+
+
+def damaged(kind: str, damage: str, folder: Path) -> Path | None:
+    """A damaged study; None where the damage does not apply, or the system has no such names."""
+    sound = sound_study(kind)
+    files = DAMAGES[damage].spoil(KINDS[kind], dict(sound.files), Random(f"{kind}/{damage}/1"))
+    if files is None or files == sound.files:
+        return None
+    try:
+        put(folder, files)
+    except OSError:
+        return None
+    return folder / "study.toml"
+
+
+@pytest.mark.parametrize("damage", CORPUS)
+def test_every_damage(damage: str, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """However logs are damaged: the same words, in the same order, and the same account."""
+    for kind in some_kinds(damage):
+        folder = tmp_path / kind
+        folder.mkdir()
+        path = damaged(kind, damage, folder)
+        try:
+            whole = None if path is None else told(path, WHOLE, monkeypatch)[0]
+        except etl.InputError:
+            continue
+        for length in LENGTHS:
+            if path is not None:
+                assert told(path, length, monkeypatch)[0] == whole
