@@ -50,7 +50,7 @@ class Manner:
 
 @dataclass(slots=True)
 class BlockCells:
-    """The rows of a block; only one of ``rows``, ``uneven`` and ``crooked`` holds.
+    """The rows of a block, unless they are ``refused``, or the block is ``crooked``.
 
     Attributes
     ----------
@@ -73,9 +73,13 @@ class BlockCells:
     strange_marks : list of int
         Lines that begin with one and are no headers.
     uneven : Uneven or None
-        Rows that are not as wide as the header.
+        Rows that are not as wide as the header, as the standard of quoted cells has it.
+    refused : bool
+        Whether they cannot be read otherwise, either.
     crooked : bool
-        Whether quote marks are not as the standard has them.
+        Whether quote marks are not as the standard has them, and the log is not split loosely.
+    bent : bool
+        Whether that is so, and the log is split loosely.
     count : int
         How many rows there are, repeated headers included.
     other_headers : Findings
@@ -93,7 +97,9 @@ class BlockCells:
     marks_within: list[int] = field(default_factory=list)
     strange_marks: list[int] = field(default_factory=list)
     uneven: Uneven | None = None
+    refused: bool = False
     crooked: bool = False
+    bent: bool = False
     count: int = 0
     other_headers: Findings = field(default_factory=Findings)
 
@@ -205,7 +211,7 @@ def _rows(body: bytes, header: Header, manner: Manner, cells: BlockCells) -> Row
             return plain
         if not plain.rows:
             raise WholeNeededError
-        cells.uneven = plain
+        cells.uneven, cells.refused = plain, True
         return None
     text = body.decode("utf-8")
     places = [header.names.index(name) for name in manner.wanted]
@@ -220,12 +226,16 @@ def _rows(body: bytes, header: Header, manner: Manner, cells: BlockCells) -> Row
     if not manner.loose:
         cells.crooked = True
         return None
+    # Should another block not do even so, what counts is how the standard splits this one.
+    cells.bent = split is None or not straight
+    if split is not None and split.uneven:
+        cells.uneven = Uneven.of(split.uneven, len(split.rows) + len(split.uneven))
     loose = split_loosely(text, header, places, wary=True)
     if loose is not None:
         return columns_of(loose, text, manner.wanted)
-    if split is None or not straight or not split.uneven:
+    if cells.bent or cells.uneven is None:
         raise WholeNeededError
-    cells.uneven = Uneven.of(split.uneven, len(split.rows) + len(split.uneven))
+    cells.refused = True
     return None
 
 

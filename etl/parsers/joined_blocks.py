@@ -190,6 +190,10 @@ def _tally(parts: Iterable[Tally]) -> Tally:
 
 def _uneven(answers: Sequence[BlockAnswer], width: int) -> Uneven | None:
     """The rows of all blocks that are not as wide as the header."""
+    if not any(answer.cells.refused for answer in answers):
+        return None
+    if any(answer.cells.bent for answer in answers):
+        raise WholeNeededError
     whole: Uneven | None = None
     for answer in answers:
         own = answer.cells.uneven

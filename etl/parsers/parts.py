@@ -79,6 +79,12 @@ class Part:
     eyes: dict[str, dict[str, EyeRows]] = field(default_factory=dict)
     chosen: dict[str, bool] = field(default_factory=dict)
 
+    @property
+    def sound(self) -> bool:
+        """Whether nothing is wrong in this part."""
+        wrong = any(findings.failed for findings in self.found.values())
+        return not (wrong or self.misnamed or self.blink_words)
+
     def at(self, step: Step) -> Findings:
         """Where that is recorded which is found at a step."""
         return self.found.setdefault(step, Findings())

@@ -127,7 +127,7 @@ def keep_blocks(task: BlockTask, reader: TableReader, shelf: Shelf) -> Iterator[
     for place, text in texts_of(task.log, frozenset(readings)):
         kept = KeptBlock(read_block(task.log, reader.reading, readings[place], text))
         log, kept.answer.log = kept.answer.log, None
-        if log is not None:
+        if log is not None and kept.answer.part.sound:
             kept.trials = distinct_runs(trial_runs(log))
             path = block_path(task.kept, place)
             kept.batches, kept.fixations = keep_log(log, path, shelf)
