@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+import json
+import shutil
 from pathlib import Path
 from random import Random
 
 import pytest
 
 import etl
+from etl.parsers import readers
 from tests.blocks.both_ways import WHOLE, told
 from tests.fuzz.cases import CORPUS, some_kinds
 from tests.fuzz.damage import DAMAGES
@@ -69,3 +72,44 @@ def test_every_damage(damage: str, tmp_path: Path, monkeypatch: pytest.MonkeyPat
         for length in LENGTHS:
             if path is not None:
                 assert told(path, length, monkeypatch)[0] == whole
+
+
+def built(study: Path, workers: int) -> Built:
+    """What a build says, and all it writes; run records without the time it took."""
+    out = study.parent / "out"
+    shutil.rmtree(out, ignore_errors=True)
+    findings = etl.build(etl.load_study(study), workers=workers).findings
+    files: dict[str, object] = {}
+    for path in sorted(out.rglob("*")):
+        if path.is_file():
+            files[path.relative_to(out).as_posix()] = path.read_bytes()
+            if path.name == "run.json":
+                record = json.loads(path.read_text(encoding="utf-8"))
+                del record["elapsed_s"]
+                files[path.relative_to(out).as_posix()] = record
+    return findings.text(), files
+
+
+@pytest.mark.parametrize(
+    ("dialect", "pseudonyms"),
+    [("plain", False), ("one log", False), ("one log", True), ("everything at once", False)],
+)
+def test_whole_build(
+    dialect: str,
+    pseudonyms: bool,
+    study: RecordedStudy,
+    tmp_path: Path,
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    """The same bytes in every file, by one worker or by two that share a log."""
+    path = write_tables(study, tmp_path, TABLE_DIALECTS[dialect])
+    if pseudonyms:
+        text = path.read_text(encoding="utf-8")
+        assert "[output]\n" in text
+        path.write_text(
+            text.replace("[output]\n", "[output]\npseudonyms = true\n"), encoding="utf-8"
+        )
+    whole = built(path, 1)
+    monkeypatch.setattr(readers, "SIZES", (1, 900))
+    assert built(path, 1) == whole
+    assert built(path, 2) == whole
