@@ -190,7 +190,9 @@ class _Surveyor:
         """Look at one block."""
         start = self.blocks[-1].stop if self.blocks else 0
         first = self.lines + 1
-        ends = raw.count(b"\n") + raw.count(b"\r") - raw.count(b"\r\n")
+        ends = raw.count(b"\n")
+        if b"\r" in raw:
+            ends += raw.count(b"\r") - raw.count(b"\r\n")
         self.ends_open = not raw.endswith((b"\n", b"\r"))
         height = ends + self.ends_open
         self.lines += height

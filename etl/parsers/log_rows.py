@@ -91,14 +91,20 @@ class RowReading:
     facts: tuple[str, ...]
     eyes: EyeChoice = field(default_factory=EyeChoice)
     pseudonyms: Pseudonyms | None = None
+    _columns: dict[str, Column] = field(init=False, repr=False, compare=False)
 
-    def columns(self) -> dict[str, Column]:
-        """The columns that are read, by canonical name."""
+    def __post_init__(self) -> None:
         described = self.logs.columns
         wanted = (*IDS, *_NUMBERS, "label", "eye", "blink")
         absent = () if self.logs.samples is None else _NOT_OF_SAMPLES
         found = {name: getattr(described, name) for name in wanted if name not in absent}
-        return {name: column for name, column in found.items() if column is not None}
+        present = {name: column for name, column in found.items() if column is not None}
+        # Asked for many times a log.
+        object.__setattr__(self, "_columns", present)
+
+    def columns(self) -> dict[str, Column]:
+        """The columns that are read, by canonical name."""
+        return self._columns
 
     def headers(self) -> dict[str, str]:
         """The header of each column that is read, by canonical name."""

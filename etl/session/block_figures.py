@@ -16,7 +16,7 @@ from etl.session.log_figures import FEWEST_STEPS, SPAN, LogFigures, Spread, step
 Floats = NDArray[np.float64]
 
 #: How many values of a block tell roughly where its values lie.
-_POINTS: Final = 2048
+POINTS: Final = 2048
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,10 +38,10 @@ class Sketch:
     points: Floats
 
     @classmethod
-    def of(cls, values: Floats) -> Sketch:
-        """The sketch of some values; those that are NaN are left aside."""
+    def of(cls, values: Floats, points: int = POINTS) -> Sketch:
+        """The sketch of some values, of about so many points; those that are NaN are left aside."""
         known = np.sort(values[~np.isnan(values)])
-        every = len(known) // _POINTS + 1
+        every = len(known) // points + 1
         return cls(len(known), every, known[::every].copy())
 
     def fewest(self, limits: Floats) -> NDArray[np.int64]:
@@ -85,13 +85,15 @@ class BlockFigures:
     last: Edge
 
 
-def block_figures(log: CanonicalLog) -> tuple[BlockFigures, Floats]:
+def block_figures(log: CanonicalLog, points: int = POINTS) -> tuple[BlockFigures, Floats]:
     """Count and measure one block.
 
     Parameters
     ----------
     log : CanonicalLog
         Its fixations, at least one.
+    points : int
+        Of how many points sketches are.
 
     Returns
     -------
@@ -103,7 +105,7 @@ def block_figures(log: CanonicalLog) -> tuple[BlockFigures, Floats]:
     figures = BlockFigures(
         len(log),
         int((~np.isnan(log.x_px)).sum()),
-        {name: Sketch.of(own) for name, own in values.items()},
+        {name: Sketch.of(own, points) for name, own in values.items()},
         _edge(log, 0),
         _edge(log, len(log) - 1),
     )
@@ -146,9 +148,7 @@ def joined_figures(
         count = sum(sketch.count for sketch in sketches)
         if not count:
             return []
-        return [
-            _at_rank(rank, sketches, lambda: _chained(values(name), more)) for rank in ranks(count)
-        ]
+        return _at_ranks(ranks(count), sketches, _chained(values(name), more))
 
     def spread(name: str) -> Spread:
         found = ranked(name, lambda n: [round(q * (n - 1)) for q in (SPAN[0], 0.5, SPAN[1])])
@@ -184,21 +184,25 @@ def _steps_between(blocks: Sequence[BlockFigures]) -> Iterator[float]:
                 yield step
 
 
-def _at_rank(
-    rank: int, sketches: Sequence[Sketch], values: Callable[[], Iterable[Floats]]
-) -> float:
-    """The value that has so many before it, in order of size."""
+def _at_ranks(
+    ranks: Sequence[int], sketches: Sequence[Sketch], values: Iterable[Floats]
+) -> list[float]:
+    """The values that have so many before them, in order of size."""
     points = np.unique(np.concatenate([sketch.points for sketch in sketches]))
     fewest = np.sum([sketch.fewest(points) for sketch in sketches], axis=0)
     most = np.sum([sketch.most(points) for sketch in sketches], axis=0)
-    # It is above every point that has at most so many values up to it, and not above the first
+    # Each is above every point that has at most so many values up to it, and not above the first
     # that has at least one more.
-    above = int(np.searchsorted(most, rank, side="right")) - 1
-    upto = int(np.searchsorted(fewest, rank + 1))
-    low = points[above] if above >= 0 else -np.inf
-    high = points[upto] if upto < len(points) else np.inf
-    below, between = 0, []
-    for own in values():
-        below += int((own <= low).sum())
-        between.append(own[(own > low) & (own <= high)])
-    return float(np.sort(np.concatenate(between))[rank - below])
+    ends = np.array([-np.inf, *points, np.inf])
+    lows = ends[np.searchsorted(most, ranks, side="right")]
+    highs = ends[np.searchsorted(fewest, np.asarray(ranks) + 1) + 1]
+    below = [0] * len(ranks)
+    between: list[list[Floats]] = [[] for _ in ranks]
+    for own in values:
+        for place, (low, high) in enumerate(zip(lows, highs, strict=True)):
+            below[place] += int((own <= low).sum())
+            between[place].append(own[(own > low) & (own <= high)])
+    return [
+        float(np.sort(np.concatenate(some))[rank - before])
+        for rank, some, before in zip(ranks, between, below, strict=True)
+    ]

@@ -172,9 +172,12 @@ def kept_columns(path: Path, count: int, name: str, shelf: Shelf) -> Iterator[pa
         One a reader.
     """
     if shelf.get(path, 0) is None:
-        with pa.OSFile(str(path), "rb") as source, pa.ipc.open_file(source) as reader:
+        with pa.OSFile(str(path), "rb") as source:
+            own = [pa.ipc.open_file(source).schema.get_field_index(name)]
+            only = pa.ipc.IpcReadOptions(included_fields=own)
+            reader = pa.ipc.open_file(source, options=only)
             for number in range(count):
-                yield reader.get_batch(number).column(name)
+                yield reader.get_batch(number).column(0)
         return
     for number in range(count):
         batch = shelf.get(path, number)
