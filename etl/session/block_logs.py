@@ -17,7 +17,8 @@ from etl.parsers.canonical import LogNote
 from etl.parsers.joined_blocks import joined, to_read_again
 from etl.parsers.table_blocks import BlockAnswer, BlockLog, Reading, read_block, texts_of
 from etl.session.block_figures import BlockFigures, block_figures, joined_figures
-from etl.session.kept_logs import Shelf, keep_log, kept_columns
+from etl.session.kept_logs import Aside, batches_of
+from etl.session.kept_store import LOG
 from etl.session.log_figures import LogFigures
 from etl.session.seen import distinct_runs, trial_runs
 from etl.trials import SeenTrials
@@ -33,13 +34,13 @@ class BlockTask:
         The log.
     readings : tuple of Reading
         Which blocks, in order, and how they are to be read.
-    kept : Path
-        Where the log's fixations are put aside; each block has a name of its own beside it.
+    kept : str
+        The entry of the log; each block has one of its own.
     """
 
     log: BlockLog
     readings: tuple[Reading, ...]
-    kept: Path
+    kept: str
 
 
 @dataclass(slots=True)
@@ -73,33 +74,21 @@ class KeptBlock:
 
 @dataclass(slots=True)
 class WholeLog:
-    """What the blocks of a log hold together; the first part of each is its answer."""
+    """What the blocks of a log hold together; of each block its entry, and each reader's batch."""
 
     note: LogNote
-    blocks: tuple[dict[str, int], ...]
+    blocks: tuple[tuple[str, dict[str, int]], ...]
     fixations: dict[str, int]
     trials: SeenTrials
     figures: LogFigures | None
 
 
-def block_path(kept: Path, place: int) -> Path:
-    """Where the fixations of a block are put aside.
-
-    Parameters
-    ----------
-    kept : Path
-        Where those of the log would be.
-    place : int
-        Which block.
-
-    Returns
-    -------
-    Path
-    """
-    return kept.with_name(f"{kept.stem}-{place}{kept.suffix}")
+def _entry(kept: str, place: int) -> str:
+    """The entry of a block."""
+    return f"{kept.removesuffix(LOG)}-{place}{LOG}"
 
 
-def keep_blocks(task: BlockTask, reader: TableReader, shelf: Shelf) -> Iterator[KeptBlock]:
+def keep_blocks(task: BlockTask, reader: TableReader, aside: Aside) -> Iterator[KeptBlock]:
     """Read blocks of a log, and put their fixations aside.
 
     Parameters
@@ -108,8 +97,8 @@ def keep_blocks(task: BlockTask, reader: TableReader, shelf: Shelf) -> Iterator[
         Which blocks.
     reader : TableReader
         How the study's logs are read.
-    shelf : Shelf
-        Where fixations may be put aside.
+    aside : Aside
+        Where fixations are put aside.
 
     Yields
     ------
@@ -129,23 +118,28 @@ def keep_blocks(task: BlockTask, reader: TableReader, shelf: Shelf) -> Iterator[
         log, kept.answer.log = kept.answer.log, None
         if log is not None and kept.answer.part.sound:
             kept.trials = distinct_runs(trial_runs(log))
-            path = block_path(task.kept, place)
-            kept.batches, kept.fixations = keep_log(log, path, shelf)
+            batches, readers = batches_of(log)
+            kept.batches = {name: number for number, name in enumerate(readers)}
+            kept.fixations = {
+                name: batch.num_rows for name, batch in zip(readers, batches, strict=True)
+            }
+            entry = _entry(task.kept, place)
+            aside.put(entry, None, batches)
             if len(log):
                 kept.figures, steps = block_figures(log)
-                np.save(_steps_path(path), steps)
+                np.save(_steps_path(aside, entry), steps)
         yield kept
 
 
-def _steps_path(path: Path) -> Path:
-    """Where the steps from onset to onset of a block are put aside."""
-    return path.with_suffix(".npy")
+def _steps_path(aside: Aside, entry: str) -> Path:
+    """Where the steps from onset to onset of a block are put aside for a while."""
+    return aside.store.fresh / f"{entry}.npy"
 
 
 def whole_log(
     log: BlockLog,
     reader: TableReader,
-    aside: tuple[Path, Shelf],
+    aside: tuple[str, Aside],
     do: Callable[[Sequence[BlockTask]], Iterable[Iterable[KeptBlock]]],
     findings: Findings,
 ) -> WholeLog | None:
@@ -157,8 +151,8 @@ def whole_log(
         The log.
     reader : TableReader
         How the study's logs are read.
-    aside : tuple of Path and Shelf
-        Where its fixations are put aside.
+    aside : tuple of str and Aside
+        Its entry, and where fixations are put aside.
     do : callable
         Does tasks, and gives what their blocks hold in the order of the tasks.
     findings : Findings
@@ -176,11 +170,11 @@ def whole_log(
     ChangedError
         If the log changes.
     """
-    kept_at, shelf = aside
+    name, store = aside
     readings = [Reading(place, below=place == 0) for place in range(len(log.survey.blocks))]
     blocks: dict[int, KeptBlock] = {}
     while readings:
-        tasks = [BlockTask(log, tuple(own), kept_at) for own in _shared(log, readings)]
+        tasks = [BlockTask(log, tuple(own), name) for own in _shared(log, readings)]
         for some in do(tasks):
             for kept in some:
                 blocks[kept.answer.reading.place] = kept
@@ -192,18 +186,20 @@ def whole_log(
         return None
     runs = [kept.trials for kept in every if kept.trials is not None]
     # A block with rows that nobody asked for tells no trial; the log has some, or was refused.
-    trials = SeenTrials.joined(runs).once((log.survey.shown,), findings)
+    trials = SeenTrials.joined(runs, [0] * len(runs)).once((log.survey.shown,), findings)
     fixations: Counter[str] = Counter()
     for kept in every:
         fixations.update(kept.fixations)
     measured = [kept.figures for kept in every if kept.figures is not None]
     figures = None
     if measured:
-        values = partial(_values, every, kept_at, shelf)
+        values = partial(_values, every, name, store)
         figures = joined_figures(measured, (len(fixations), len(trials)), values)
-    for kept in every:
-        _steps_path(block_path(kept_at, kept.answer.reading.place)).unlink(missing_ok=True)
-    return WholeLog(note, tuple(kept.batches for kept in every), dict(fixations), trials, figures)
+    entries = tuple((_entry(name, place), kept.batches) for place, kept in enumerate(every))
+    for entry, _ in entries:
+        _steps_path(store, entry).unlink(missing_ok=True)
+    used = tuple((entry, batches) for entry, batches in entries if batches)
+    return WholeLog(note, used, dict(fixations), trials, figures)
 
 
 def _shared(log: BlockLog, readings: Sequence[Reading]) -> Iterator[Sequence[Reading]]:
@@ -216,15 +212,16 @@ def _shared(log: BlockLog, readings: Sequence[Reading]) -> Iterator[Sequence[Rea
 
 
 def _values(
-    blocks: Sequence[KeptBlock], kept_at: Path, shelf: Shelf, name: str
+    blocks: Sequence[KeptBlock], kept_at: str, aside: Aside, name: str
 ) -> Iterator[NDArray[np.float64]]:
     """One column of all fixations that were put aside, block by block."""
     for kept in blocks:
         if kept.figures is None:
             continue
-        path = block_path(kept_at, kept.answer.reading.place)
+        entry = _entry(kept_at, kept.answer.reading.place)
         if name == "steps":
-            yield np.load(_steps_path(path))
+            yield np.load(_steps_path(aside, entry))
             continue
-        for column in kept_columns(path, len(kept.batches), name, shelf):
+        for number in range(len(kept.batches)):
+            column = aside.get(entry, number).column(name)
             yield np.asarray(column.to_numpy(zero_copy_only=False), dtype=np.float64)

@@ -41,6 +41,7 @@ from etl.session.pseudonym_guards import (
 from etl.session.reader import Options
 from etl.session.reader_tasks import Corrections, ReaderTasks, reader_tasks, texts_in
 from etl.session.seen import Sharing
+from etl.session.shared_logs import finished_logs
 from etl.session.trial_facts import trial_facts
 from etl.session.work import LogAnswer, LogTask, LogWork
 from etl.tables import CovariateColumn, IdColumn, TableDesign
@@ -98,17 +99,16 @@ def read_logs(
     pseudonyms: Pseudonyms | None = None,
 ) -> list[LogAnswer]:
     """Read all logs and put their fixations aside."""
-    tasks = [LogTask(path, shown, number) for number, (path, shown) in enumerate(logs)]
+    share = crew.workers > 1
+    tasks = [LogTask(path, shown, number, share) for number, (path, shown) in enumerate(logs)]
+    arguments = (reader, aside, pseudonyms)
     answers, sharing = [], Sharing()
-    for answer in crew.map(LogWork, (reader, aside, pseudonyms), tasks):
+    for answer in finished_logs(crew.map(LogWork, arguments, tasks), tasks, crew, arguments):
         answer.note = sharing.note(answer.note)
         if answer.trials is not None:
             answer.trials = sharing.trials(answer.trials)
         answers.append(answer)
         progress("reading logs", len(answers), len(tasks))
-    for number, answer in enumerate(answers):
-        if answer.begun is not None:
-            answers[number] = share_log(tasks[number], answer, crew, arguments)
     return answers
 
 
@@ -138,9 +138,9 @@ def gather(
     fixations: Counter[str] = Counter()
     for number, answer in enumerate(answers):
         fixations.update(answer.fixations)
-        for participant, batch in answer.batches.items():
-            part = (answer.kept, batch, plan.places[number])
-            parts.setdefault(participant, []).append(part)
+        for entry, batches in answer.parts():
+            for participant, batch in batches.items():
+                parts.setdefault(participant, []).append((entry, batch, plan.places[number]))
     every, places = [], []
     for number, answer in enumerate(answers):
         if answer.trials is not None:

@@ -44,8 +44,8 @@ class Shelf:
         self._held: dict[str, list[pa.RecordBatch]] = {}
 
     def put(self, name: str, batches: list[pa.RecordBatch]) -> bool:
-        """Hold the batches of a log, if there is room for them."""
-        self._room += sum(batch.nbytes for batch in self._held.pop(path, ()))
+        """Hold the batches of a log, if there is room for them, in place of those it had."""
+        self._room += sum(batch.nbytes for batch in self._held.pop(name, ()))
         size = sum(batch.nbytes for batch in batches)
         if size > self._room:
             return False
@@ -150,39 +150,6 @@ def arrays_of(log: CanonicalLog) -> dict[str, object]:
         For a digest of it.
     """
     return {"ids": log.ids, "label": log.label, **{name: getattr(log, name) for name in _PLAIN}}
-
-
-def kept_columns(path: Path, count: int, name: str, shelf: Shelf) -> Iterator[pa.Array]:
-    """One column of what was put aside of a log, batch by batch.
-
-    Parameters
-    ----------
-    path : Path
-        Where it was put.
-    count : int
-        How many batches there are.
-    name : str
-        The column.
-    shelf : Shelf
-        May hold them.
-
-    Yields
-    ------
-    pa.Array
-        One a reader.
-    """
-    if shelf.get(path, 0) is None:
-        with pa.OSFile(str(path), "rb") as source:
-            own = [pa.ipc.open_file(source).schema.get_field_index(name)]
-            only = pa.ipc.IpcReadOptions(included_fields=own)
-            reader = pa.ipc.open_file(source, options=only)
-            for number in range(count):
-                yield reader.get_batch(number).column(0)
-        return
-    for number in range(count):
-        batch = shelf.get(path, number)
-        if batch is not None:
-            yield batch.column(name)
 
 
 def kept_log(

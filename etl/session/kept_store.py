@@ -77,6 +77,24 @@ class KeptStore:
                     return head_of(folder / name)
         return None
 
+    def is_there(self, name: str) -> bool:
+        """Whether an entry is there and whole.
+
+        Parameters
+        ----------
+        name : str
+            Of the entry.
+
+        Returns
+        -------
+        bool
+        """
+        for folder in (self.fresh, self.earlier):
+            with contextlib.suppress(OSError):
+                if _is_whole(folder / name):
+                    return True
+        return False
+
     def where(self, name: str) -> Path:
         """Where an entry is that this build has found or made.
 

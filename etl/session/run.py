@@ -207,7 +207,8 @@ def build(
         if held is not None:
             save_key(held)
         if keep:
-            room.store.settle([answer.kept for answer in answers] + groups_kept)
+            logs_kept = [entry for answer in answers for entry in answer.entries()]
+            room.store.settle(logs_kept + groups_kept)
     key = None if held is None else held.path
     return Result(target, told, rows, findings, described.readiness, key)
 

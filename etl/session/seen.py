@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from etl.errors import Findings
-from etl.files import Coded
+from etl.files import Coded, group_rows
 from etl.parsers import CanonicalLog
 from etl.parsers.canonical import LogNote
 from etl.trials import IDS, SeenTrials
@@ -60,7 +60,25 @@ def trial_runs(log: CanonicalLog) -> SeenTrials:
         np.zeros(len(rows), dtype=np.int32),
         log.source_line[rows],
     )
-    return runs.once((shown,), findings)
+
+
+def distinct_runs(runs: SeenTrials) -> SeenTrials:
+    """The first of all runs that are alike in everything.
+
+    Parameters
+    ----------
+    runs : SeenTrials
+        From :func:`trial_runs`.
+
+    Returns
+    -------
+    SeenTrials
+        Enough to tell what varies within a trial, and where first.
+    """
+    if not len(runs):
+        return runs
+    first, _ = group_rows([*runs.ids.values(), *runs.facts.values()])
+    return runs.take(np.sort(first))
 
 
 class Sharing:

@@ -17,6 +17,7 @@ from etl.parsers.table_blocks import BlockLog
 from etl.pseudonyms import Pseudonyms
 from etl.regions import RegionLibrary
 from etl.session.bench import Bench
+from etl.session.block_logs import BlockTask, KeptBlock, keep_blocks, whole_log
 from etl.session.content_digest import content_digest, program_digest
 from etl.session.joined_readers import group_of
 from etl.session.kept_logs import Aside, arrays_of, batches_of
@@ -36,6 +37,9 @@ class LogTask:
     path: Path
     shown: str
     number: int
+    #: Whether its blocks may be left to others; and whether it is read as a whole, however big.
+    share: bool = False
+    whole: bool = False
 
 
 @dataclass(slots=True)
@@ -44,10 +48,6 @@ class LogAnswer:
 
     note: LogNote
     batches: dict[str, int] = field(default_factory=dict)
-    #: The same for each block, where it was read in blocks.
-    blocks: tuple[dict[str, int], ...] = ()
-    #: What is known of it, where its blocks are left to others.
-    begun: BlockLog | None = None
     #: How many fixations each reader has.
     fixations: dict[str, int] = field(default_factory=dict)
     trials: SeenTrials | None = None
@@ -59,13 +59,18 @@ class LogAnswer:
     clashes: dict[str, tuple[str, str]] = field(default_factory=dict)
     #: The entry that has the fixations.
     kept: str = ""
+    #: Of a log that was read in blocks, for each the entry and the batch of each reader.
+    blocks: tuple[tuple[str, dict[str, int]], ...] = ()
+    #: What is known of a log whose blocks are left to others.
+    begun: BlockLog | None = None
 
-    def kept(self, path: Path) -> Iterator[tuple[Path, dict[str, int]]]:
-        """Where fixations were put aside, and the batch of each reader there."""
-        if self.batches:
-            yield path, self.batches
-        for place, batches in enumerate(self.blocks):
-            yield block_path(path, place), batches
+    def parts(self) -> tuple[tuple[str, dict[str, int]], ...]:
+        """Where fixations were put aside: entries, and the batch of each reader there."""
+        return self.blocks or ((self.kept, self.batches),)
+
+    def entries(self) -> list[str]:
+        """All entries of the log."""
+        return [self.kept, *(entry for entry, _ in self.blocks)]
 
 
 @dataclass(frozen=True, slots=True)
@@ -105,10 +110,14 @@ class LogWork:
         name = self._name(task)
         if self._aside.keep and name:
             answer: LogAnswer | None = self._aside.store.head(name)
-            if answer is not None:
+            if answer is not None and self._has(answer.blocks):
                 answer.kept = name
                 return answer
-        return self._read(task, name)
+        return self._read_big(task) or self._read(task, name)
+
+    def _has(self, blocks: Sequence[tuple[str, object]]) -> bool:
+        """Whether the blocks of a log are all there and whole."""
+        return all(self._aside.store.is_there(entry) for entry, _ in blocks)
 
     def _name(self, task: LogTask) -> str:
         """The entry for a log; empty where that can be told by what was read only."""
@@ -117,9 +126,44 @@ class LogWork:
         if not self._reader.reads_one_file:
             return ""
         try:
-            return content_digest(digest_of(task.path), task.shown, self._key) + LOG
+            return self._name_of(digest_of(task.path), task)
         except OSError:  # told of when it is read
             return ""
+
+    def _name_of(self, sha256: str, task: LogTask) -> str:
+        """The entry for a log of some content."""
+        return content_digest(sha256, task.shown, self._key) + LOG
+
+    def _read_big(self, task: LogTask) -> LogAnswer | None:
+        """Read one log in blocks; None for one that is to be read as a whole."""
+        reader = self._reader
+        if task.whole or not isinstance(reader, TableReader) or not reader.is_big(task.path):
+            return None
+        before = 0 if self._pseudonyms is None else len(self._pseudonyms.originals)
+        answer = LogAnswer(LogNote(task.shown))
+
+        def do(tasks: Sequence[BlockTask]) -> Iterator[Iterator[KeptBlock]]:
+            return (keep_blocks(own, reader, self._aside) for own in tasks)
+
+        try:
+            answer.begun = reader.begin(task.path, task.shown, answer.findings)
+            if answer.begun is not None:
+                # Named by the very bytes that are read.
+                sha256 = answer.begun.survey.sha256
+                keep = self._aside.keep
+                answer.kept = self._name_of(sha256, task) if keep else f"{task.number}{LOG}"
+                if task.share and answer.begun.survey.alone:
+                    return answer
+            add_blocks(answer, reader, (task.path, self._aside), do)
+        except WholeNeededError:
+            return None
+        except OSError as why:
+            tell_unreadable(task.path, task.shown, why, answer.findings)
+        if self._pseudonyms is not None:
+            answer.originals = self._pseudonyms.learnt_since(before)
+            answer.clashes = dict(self._pseudonyms.clashes)
+        put_aside(answer, self._aside)
+        return answer
 
     def _read(self, task: LogTask, name: str) -> LogAnswer:
         """Read one log and put its fixations aside."""
@@ -141,10 +185,65 @@ class LogWork:
             answer.originals = self._pseudonyms.learnt_since(before)
             answer.clashes = dict(self._pseudonyms.clashes)
         if read is not None:
-            # By what was read, where that came from more files than one.
+            # By what was read, where that came from more files than one, or has just changed.
+            if name and self._aside.keep:
+                name = self._name_of(answer.note.sha256, task)
             answer.kept = name or content_digest(arrays_of(log), answer.note.shown, self._key) + LOG
             self._aside.put(answer.kept, answer, batches)
         return answer
+
+
+def add_blocks(
+    answer: LogAnswer,
+    reader: TableReader,
+    aside: tuple[Path, Aside],
+    do: Callable[[Sequence[BlockTask]], Iterable[Iterable[KeptBlock]]],
+) -> None:
+    """Read the blocks of a log.
+
+    Parameters
+    ----------
+    answer : LogAnswer
+        What is known of the log; what it holds is put down there.
+    reader : TableReader
+        How the study's logs are read.
+    aside : tuple of Path and Aside
+        The log, and where its fixations are put aside.
+    do : callable
+        Does the work on blocks.
+
+    Raises
+    ------
+    WholeNeededError
+        If something is the matter that is told from the whole log.
+    """
+    begun, answer.begun = answer.begun, None
+    path, store = aside
+    if begun is None:
+        answer.findings.items.sort(key=lambda finding: finding.line or 0)
+        return
+    try:
+        whole = whole_log(begun, reader, (answer.kept, store), do, answer.findings)
+    except OSError as why:
+        tell_unreadable(path, answer.note.shown, why, answer.findings)
+        return
+    if whole is not None:
+        answer.note, answer.blocks, answer.fixations = whole.note, whole.blocks, whole.fixations
+        answer.trials, answer.figures = whole.trials, whole.figures
+
+
+def put_aside(answer: LogAnswer, aside: Aside) -> None:
+    """Put aside what a log holds whose blocks are there, for later builds.
+
+    Parameters
+    ----------
+    answer : LogAnswer
+        What it holds.
+    aside : Aside
+        Where it is put.
+    """
+    if aside.keep and answer.trials is not None:
+        aside.put(answer.kept, answer, [])
 
 
 class ReaderWork:

@@ -13,7 +13,8 @@ from pathlib import Path
 import etl
 from etl.errors import Findings
 from etl.parsers import readers
-from etl.session.kept_logs import Shelf
+from etl.session.kept_logs import Aside, Shelf
+from etl.session.kept_store import KeptStore
 from etl.session.plan import make_plan
 from etl.session.work import LogTask, LogWork
 
@@ -39,7 +40,8 @@ def main(study: str, length: str) -> None:
     before = peak_mb()
     with tempfile.TemporaryDirectory() as folder:
         path, shown = logs[0]
-        answer = LogWork(plan.reader, Shelf(), None)(LogTask(path, shown, Path(folder) / "0.arrow"))
+        store = KeptStore(Path(folder) / "earlier", Path(folder))
+        answer = LogWork(plan.reader, Aside(store, False, Shelf()), None)(LogTask(path, shown, 0))
     assert answer.figures is not None, answer.findings.text()
     sys.stdout.write(f"{answer.figures.fixations} {len(answer.blocks)} {peak_mb() - before:.1f}\n")
 
