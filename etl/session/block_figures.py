@@ -201,8 +201,11 @@ def _at_ranks(
     for own in values:
         for place, (low, high) in enumerate(zip(lows, highs, strict=True)):
             below[place] += int((own <= low).sum())
-            between[place].append(own[(own > low) & (own <= high)])
-    return [
-        float(np.sort(np.concatenate(some))[rank - before])
-        for rank, some, before in zip(ranks, between, below, strict=True)
-    ]
+            # Many a value may be equal to the upper end; none of these need be kept.
+            between[place].append(own[(own > low) & (own < high)])
+    found = []
+    for rank, some, before, high in zip(ranks, between, below, highs, strict=True):
+        inner = np.sort(np.concatenate(some))
+        place = rank - before
+        found.append(float(inner[place]) if place < len(inner) else float(high))
+    return found

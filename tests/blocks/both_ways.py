@@ -12,7 +12,8 @@ import etl
 from etl.errors import Findings
 from etl.files import Coded
 from etl.parsers import readers
-from etl.session.kept_logs import Shelf, kept_log
+from etl.session.kept_logs import Aside, Shelf, kept_log
+from etl.session.kept_store import KeptStore
 from etl.session.plan import make_plan
 from etl.session.work import LogAnswer, LogTask, LogWork
 
@@ -43,24 +44,23 @@ def told(study: Path, length: int, monkeypatch: pytest.MonkeyPatch) -> tuple[lis
         plan, logs = make_plan(etl.load_study(study), Findings(), None)
         if plan is None:
             return [], 0
-        shelf = Shelf(2**30)
-        reading = LogWork(plan.reader, shelf, None)
+        aside = Aside(KeptStore(study.parent / "earlier", study.parent), False, Shelf(2**30))
+        reading = LogWork(plan.reader, aside, None)
         answers = []
         for number, (path, shown) in enumerate(logs):
-            kept = study.parent / f"{number}.arrow"
-            answers.append((reading(LogTask(path, shown, kept)), kept))
-    in_blocks = sum(len(answer.blocks) > 0 for answer, _ in answers)
-    return [plain(answer, kept, shelf) for answer, kept in answers], in_blocks
+            answers += reading([LogTask(path, shown, number)])
+    in_blocks = sum(len(answer.blocks) > 0 for answer in answers)
+    return [plain(answer, aside) for answer in answers], in_blocks
 
 
-def plain(answer: LogAnswer, kept: Path, shelf: Shelf) -> dict[str, Any]:
+def plain(answer: LogAnswer, aside: Aside) -> dict[str, Any]:
     """An answer in plain values."""
     note = answer.note
     trials = answer.trials
-    parts: dict[str, list[tuple[Path, int]]] = {}
-    for path, batches in answer.kept(kept):
+    parts: dict[str, list[tuple[str, int]]] = {}
+    for entry, batches in answer.entries():
         for reader, batch in batches.items():
-            parts.setdefault(reader, []).append((path, batch))
+            parts.setdefault(reader, []).append((entry, batch))
     return {
         "findings": (answer.findings.text(), sorted(answer.findings.more.items())),
         "note": repr(note),
@@ -71,7 +71,7 @@ def plain(answer: LogAnswer, kept: Path, shelf: Shelf) -> dict[str, Any]:
         else (texts(trials.ids), texts(trials.facts), trials.line.tolist(), trials.file.tolist()),
         "figures": repr(answer.figures),
         "fixations": answer.fixations,
-        "readers": {reader: fixations(own, shelf) for reader, own in parts.items()},
+        "readers": {reader: fixations(own, aside) for reader, own in parts.items()},
     }
 
 
@@ -80,9 +80,9 @@ def texts(columns: Mapping[str, Coded]) -> dict[str, list[str]]:
     return {name: [own.text(row) for row in range(len(own))] for name, own in columns.items()}
 
 
-def fixations(parts: list[tuple[Path, int]], shelf: Shelf) -> dict[str, Any]:
+def fixations(parts: list[tuple[str, int]], aside: Aside) -> dict[str, Any]:
     """One reader's fixations."""
-    log, _ = kept_log(parts, shelf)
+    log, _ = kept_log(parts, aside)
     return {
         "ids": texts(log.ids),
         "label": None if log.label is None else texts({"": log.label}),

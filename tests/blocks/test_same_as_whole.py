@@ -6,11 +6,13 @@ import json
 import shutil
 from pathlib import Path
 from random import Random
+from typing import Any
 
 import pytest
 
 import etl
 from etl.parsers import readers
+from etl.session import block_logs, work
 from tests.blocks.both_ways import WHOLE, told
 from tests.fuzz.cases import CORPUS, some_kinds
 from tests.fuzz.damage import DAMAGES
@@ -74,10 +76,12 @@ def test_every_damage(damage: str, tmp_path: Path, monkeypatch: pytest.MonkeyPat
                 assert told(path, length, monkeypatch)[0] == whole
 
 
-def built(study: Path, workers: int) -> Built:
+def built(study: Path, workers: int, *, afresh: bool = True) -> Built:
     """What a build says, and all it writes; run records without the time it took."""
     out = study.parent / "out"
     shutil.rmtree(out, ignore_errors=True)
+    for kept in study.parent.glob("*.kept") if afresh else ():
+        shutil.rmtree(kept)
     findings = etl.build(etl.load_study(study), workers=workers).findings
     files: dict[str, object] = {}
     for path in sorted(out.rglob("*")):
@@ -113,3 +117,28 @@ def test_whole_build(
     monkeypatch.setattr(readers, "SIZES", (1, 900))
     assert built(path, 1) == whole
     assert built(path, 2) == whole
+    # What the build before has kept of every block serves this one.
+    monkeypatch.setattr(work, "whole_log", None)
+    assert built(path, 1, afresh=False) == whole
+
+
+def test_log_that_changes_between_two_blocks(
+    study: RecordedStudy, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Nothing comes of it but a message."""
+    path = write_tables(study, tmp_path, TABLE_DIALECTS["plain"])
+    log = min((tmp_path / "logs").iterdir())
+    real = block_logs.read_block
+
+    def read_and_write(*arguments: Any) -> Any:
+        with log.open("ab") as file:
+            file.write(b"\n")
+        return real(*arguments)
+
+    monkeypatch.setattr(block_logs, "read_block", read_and_write)
+    read, _ = told(path, 500, monkeypatch)
+    assert read[0]["findings"][0].startswith(
+        f"logs/{log.name}: the file changed while it was read; expected a file that nobody writes"
+    )
+    assert read[0]["trials"] is None
+    assert read[0]["readers"] == {}
