@@ -6,7 +6,7 @@ from dataclasses import dataclass, field
 from pathlib import Path
 
 from etl.errors import Findings
-from etl.export.publish import digest_of
+from etl.export.earlier import digest_of
 from etl.export.rows import TrialColumns
 from etl.parsers import LogReader
 from etl.parsers.canonical import LogNote
