@@ -169,7 +169,9 @@ class Sharing:
 
     def _codes(self, name: str, codes: NDArray[np.int32]) -> NDArray[np.int32]:
         """One number for all trials takes no room; else the last codes where they are equal."""
-        if len(codes) and (codes == codes[0]).all():
+        if not len(codes):
+            return codes
+        if (codes == codes[0]).all():
             return np.broadcast_to(codes[0], len(codes))
         name = f"codes of {name}"
         if not np.array_equal(codes, self._last.get(name, ())):

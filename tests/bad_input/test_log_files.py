@@ -2,6 +2,7 @@
 
 import gzip
 from pathlib import Path
+from typing import Any
 
 import pytest
 
@@ -48,15 +49,15 @@ def test_folders_are_no_logs(study: SmallStudy) -> None:
 
 def test_unreadable_log(study: SmallStudy, monkeypatch: pytest.MonkeyPatch) -> None:
     """A log that the user may not read is named with the reason."""
-    read_bytes = Path.read_bytes
+    opened = Path.open
 
-    def refuse(path: Path) -> bytes:
+    def refuse(path: Path, *how: Any, **options: Any) -> Any:
         if path.name == "P01.tsv":
             raise PermissionError(13, "Permission denied", str(path))
-        return read_bytes(path)
+        return opened(path, *how, **options)
 
     before = study.content()
-    monkeypatch.setattr(Path, "read_bytes", refuse)
+    monkeypatch.setattr(Path, "open", refuse)
     result = study.run("build", "study.toml")
     monkeypatch.undo()
     assert (result.exit_code, result.stdout) == (2, "")
