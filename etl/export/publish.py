@@ -1,189 +1,70 @@
-"""The output folder: written beside its place, moved into place at the end, all or nothing."""
+"""The output folder: written beside its place, put in place in one step, all or nothing."""
 
 from __future__ import annotations
 
 import contextlib
-import glob
-import hashlib
-import json
-import shutil
+import errno
+import os
+import re
 import tempfile
-from collections.abc import Iterator, Mapping, Sequence, Set
-from dataclasses import dataclass
+from collections.abc import Iterator
+from dataclasses import dataclass, field
 from pathlib import Path
-from typing import Any
 
 from etl.errors import DataError, Findings
+from etl.export.claims import claim_of, claimed, refuse_within_claimed
+from etl.export.earlier import Keeper, is_ours
+from etl.export.swapping import clear, names_to_disk, replace_folder, to_disk
+from etl.export.unwritable import NAME_ANOTHER, cannot_write
 
-#: The file by which an output folder is known as one of ours.
-RECORD = "run.json"
-PROGRAM = "trialwright"
-#: The folder within the output folder that can be sent away whole.
-BUNDLE = "handoff"
-_ASIDE = "old"
-
-
-#: What programs leave by themselves in any folder that somebody looked into or ran a script in, and
-#: that holds nobody's work. What may hold some stays out of this: a workspace of R (.RData), plots
-#: (Rplots.pdf), what editors keep of texts that were not saved (.Rproj.user, .ipynb_checkpoints).
-_LITTER = frozenset({".DS_Store", "Thumbs.db", "desktop.ini", ".Rhistory"})
-#: Where Python keeps compiled scripts, and the ending of these.
-_COMPILED = ("__pycache__", ".pyc")
+_FRESH, _KEPT, _ASIDE = "new", "kept", "old"
+#: How often the folder that is to hold the output is made, where another build that fails may
+#: have just removed it.
+_TRIES = 3
 
 
-def record_of(folder: Path) -> dict[str, Any] | None:
-    """The run record of a folder; None where it is not one of ours."""
-    try:
-        record = json.loads((folder / RECORD).read_text(encoding="utf-8"))
-    except (OSError, ValueError):
-        return None
-    return record if isinstance(record, dict) and record.get("program") == PROGRAM else None
-
-
-def is_ours(folder: Path) -> bool:
-    """Whether a folder was written by this program."""
-    return record_of(folder) is not None
-
-
-def check_target(target: Path, shown: str) -> None:
-    """Refuse to replace anything that this program did not write.
-
-    Raises
-    ------
-    DataError
-        If the target is a file, or a folder that holds anything but an earlier build as it was
-        written, or one that cannot be read.
-    """
-    findings = Findings()
-    try:
-        _judge_target(target, shown, findings)
-    except OSError as why:
-        raise cannot_write(shown, why) from why
-    if findings.failed:
-        raise DataError(findings)
-
-
-def _judge_target(target: Path, shown: str, findings: Findings) -> None:
-    """Find what speaks against replacing a folder."""
-    if target.exists() and not target.is_dir():
-        findings.error(
-            "the output folder is a file",
-            path=shown,
-            fix="name a folder, by [output] folder or --into",
-        )
-    elif target.is_dir():
-        there = any(not _is_litter(path) for path in target.iterdir())
-        record = record_of(target)
-        if there and record is None:
-            findings.error(
-                "the output folder holds something else than an earlier build",
-                path=shown,
-                expected=f"a new or empty folder, or one that {PROGRAM} wrote (it has a {RECORD})",
-                fix="name another folder, by [output] folder or --into, or empty this one yourself",
-            )
-        elif record is not None:
-            _refuse_to_lose(target, shown, record, findings)
-
-
-def _refuse_to_lose(
-    target: Path, shown: str, record: Mapping[str, Any], findings: Findings
-) -> None:
-    """Find what people have put or changed in an earlier build, which would go with it."""
-    known = {RECORD, *_texts(record.get("files"))}
-    fix = "move {} elsewhere, or name another folder, by [output] folder or --into"
-    if strange := sorted(_strange(target, "", known)):
-        findings.error(
-            "the output folder holds files that no build wrote, and a build replaces the "
-            "folder as a whole",
-            path=shown,
-            found=_first_of(strange),
-            expected="nothing but an earlier build",
-            fix=fix.format("these files"),
-        )
-    # Every file, not scripts and pages only: a table that a spreadsheet saved again may have a day
-    # of coding by hand in it, or ids that lost their zeros by accident: neither may go, or stay,
-    # unseen. Size and time of a file prove nothing, and reading an earlier build takes seconds a
-    # gigabyte, far less than making it.
-    digests = record.get("sha256")
-    digests = digests if isinstance(digests, dict) else {}
-    if changed := sorted(
-        name
-        for name, digest in digests.items()
-        if (target / name).is_file() and digest_of(target / name) != digest
-    ):
-        findings.error(
-            "files of the output folder were changed since the build that wrote them, and a build "
-            "replaces the folder as a whole",
-            path=shown,
-            found=_first_of(changed),
-            expected="an earlier build as it was written",
-            fix="undo the changes or delete these files where they are nobody's work; else "
-            + fix.format("them"),
-        )
-
-
-def _texts(found: object) -> list[str]:
-    """The texts of a list, as far as it is one."""
-    return [name for name in found if isinstance(name, str)] if isinstance(found, list) else []
-
-
-def _strange(folder: Path, before: str, known: Set[str]) -> Iterator[str]:
-    """What no build wrote, by its path within the output folder; a folder only as a whole."""
-    for path in folder.iterdir():
-        name = f"{before}{path.name}"
-        if _is_litter(path) and name not in known:
-            continue
-        if path.is_dir() and not path.is_symlink():
-            if any(one.startswith(f"{name}/") for one in known):
-                yield from _strange(path, f"{name}/", known)
-            else:
-                yield name
-        elif name not in known:
-            yield name
-
-
-def _is_litter(path: Path) -> bool:
-    """Whether a program left it there, and it holds nobody's work."""
-    if path.is_symlink():
-        return False
-    folder, ending = _COMPILED
-    if path.is_dir():
-        return path.name == folder and all(
-            one.suffix == ending and one.is_file() for one in path.iterdir()
-        )
-    return path.name in _LITTER
-
-
-def _first_of(names: Sequence[str]) -> str:
-    """Some names, and how many more there are."""
-    return ", ".join(names[:5]) + (f" and {len(names) - 5} more" if len(names) > 5 else "")
-
-
-def digest_of(path: Path) -> str:
-    """The SHA-256 of a file, as it stands in the record."""
-    with path.open("rb") as file:
-        return hashlib.file_digest(file, "sha256").hexdigest()
-
-
-@dataclass(frozen=True, slots=True)
+@dataclass(slots=True)
 class Workshop:
     """Where a build works, beside the place where its output will appear.
 
     Attributes
     ----------
+    folder : Path
+        What holds the others; gone at the end.
     fresh : Path
         The folder that will be published.
     kept : Path
         A folder for what is put aside meanwhile.
     """
 
-    fresh: Path
-    kept: Path
+    folder: Path
+    fresh: Path = field(init=False)
+    kept: Path = field(init=False)
+    _settled: bool = field(init=False, default=False)
+
+    def __post_init__(self) -> None:
+        self.fresh, self.kept = self.folder / _FRESH, self.folder / _KEPT
+        self.fresh.mkdir()
+        self.kept.mkdir()
+
+    @property
+    def aside(self) -> Path:
+        """Where an earlier build goes if it cannot change places with the new one."""
+        return self.folder / _ASIDE
+
+    def settle(self) -> None:
+        """Bring all that was written to the disk; nothing may be written after that."""
+        if not self._settled:
+            to_disk(self.fresh)
+            self._settled = True
 
 
 @contextlib.contextmanager
 def published(target: Path, shown: str) -> Iterator[Workshop]:
     """Give folders to work in; when all went well, move the result to its place.
+
+    At every moment the place holds the earlier build or the new one. Where the system cannot let
+    two folders change places, there is a moment in which it holds none; the next build mends that.
 
     Parameters
     ----------
@@ -200,64 +81,159 @@ def published(target: Path, shown: str) -> Iterator[Workshop]:
     Raises
     ------
     DataError
-        If the target may not be replaced or its parent cannot be written.
+        If the target may not be replaced, another build writes into it, or it cannot be written.
+    KeyboardInterrupt
+        If the build is interrupted; a note says what is in the place then.
     """
-    # A link is followed, so that the tables land where it points.
-    target = target.resolve()
-    # Beside the target, so that the last step is a renaming on one file system.
-    beside = next(folder for folder in target.parents if folder.is_dir())
+    place = _place_of(target, shown)
+    work: list[Path] = []
+    mark: list[os.stat_result] = []
     try:
-        _bring_back(target, beside)
-        check_target(target, shown)
-        work = Path(tempfile.mkdtemp(prefix=f".{target.name}.", dir=beside))
+        with _held(place, shown):
+            keeper = Keeper(shown)
+            keeper.check(place)
+            work.append(Path(tempfile.mkdtemp(prefix=_prefix(place), dir=place.parent)))
+            shop = Workshop(work[0])
+            mark.append(shop.fresh.stat())
+            try:
+                yield shop
+                shop.settle()
+                keeper.check(place)
+                replace_folder(shop.fresh, place, shop.aside, keeper.check)
+                # It is done; whether the system can vouch for it changes nothing.
+                with contextlib.suppress(OSError):
+                    names_to_disk(place.parent)
+            finally:
+                # An earlier build that could not be put back is worth more than a tidy folder.
+                if place.exists() or not shop.aside.exists():
+                    clear(shop.folder)
     except OSError as why:
-        raise cannot_write(shown, why) from why
+        raise _told(why, shown, place, work) from why
+    except KeyboardInterrupt as stop:
+        stop.add_note(_left_by_interruption(place, mark))
+        raise
+
+
+def _place_of(target: Path, shown: str) -> Path:
+    """The place itself: a link is followed, so that the tables land where it points."""
     try:
-        shop = Workshop(work / "new", work / "kept")
-        shop.fresh.mkdir()
-        shop.kept.mkdir()
-        yield shop
-        check_target(target, shown)
-        target.parent.mkdir(parents=True, exist_ok=True)
-        _swap(shop.fresh, target, work / _ASIDE)
-    except OSError as why:
-        # Inputs that cannot be read are findings long before this; what is left is the output.
-        raise cannot_write(shown, why) from why
-    finally:
-        # An earlier build that could not be put back is worth more than a tidy folder.
-        if target.exists() or not (work / _ASIDE).exists():
-            shutil.rmtree(work, ignore_errors=True)
+        place = target.resolve()
+    except (OSError, RuntimeError) as why:  # a link that leads back to itself
+        loop = OSError(errno.ELOOP, os.strerror(errno.ELOOP))
+        raise cannot_write(shown, why if isinstance(why, OSError) else loop, target) from why
+    if os.path.ismount(place):
+        findings = Findings()
+        findings.error(
+            "the output folder is a disk or share of its own, which no build can replace as a "
+            "whole",
+            path=shown,
+            expected="a folder that can be moved",
+            fix="name a folder within it, by [output] folder or --into",
+        )
+        raise DataError(findings)
+    return place
 
 
-def _bring_back(target: Path, beside: Path) -> None:
-    """Put an earlier build back that a killed run had just moved aside."""
-    for aside in sorted(beside.glob(f".{glob.escape(target.name)}.*/{_ASIDE}")):
-        if not target.exists() and is_ours(aside):
-            target.parent.mkdir(parents=True, exist_ok=True)
-            aside.replace(target)
-            shutil.rmtree(aside.parent, ignore_errors=True)
+@contextlib.contextmanager
+def _held(place: Path, shown: str) -> Iterator[None]:
+    """Hold the place for this build alone, mend and tidy up what killed builds left of it."""
+    refuse_within_claimed(place, shown)
+    _refuse_within_build(place, shown)
+    made: list[Path] = []
+    with contextlib.ExitStack() as stack:
+        for last in range(1, _TRIES + 1):
+            try:
+                made += _make_folders(place.parent)
+                stack.callback(_remove_empty, made)
+                stack.enter_context(claimed(place, shown))
+                break
+            except FileNotFoundError:
+                if last == _TRIES:
+                    raise
+        _mend(place)
+        if place.is_dir() and not os.access(place, os.R_OK | os.W_OK | os.X_OK):
+            raise PermissionError(errno.EACCES, os.strerror(errno.EACCES), str(place))
+        yield
 
 
-def cannot_write(shown: str, why: OSError) -> DataError:
-    """What is said when the output cannot be put in its place."""
+def _refuse_within_build(place: Path, shown: str) -> None:
+    """Refuse a folder within an earlier build, which the next build there would stop at."""
+    for folder in place.parents:
+        if is_ours(folder):
+            findings = Findings()
+            findings.error(
+                f'the output folder lies within an earlier build, "{folder.name}"',
+                path=shown,
+                expected="a folder beside it: a build replaces its folder as a whole, and no build "
+                "wrote this one",
+                fix=NAME_ANOTHER,
+            )
+            raise DataError(findings)
+
+
+def _make_folders(folder: Path) -> list[Path]:
+    """Make a folder and those above that are missing; gives those made, outermost first."""
+    missing = [one for one in (folder, *folder.parents) if not one.is_dir()]
+    for one in reversed(missing):
+        one.mkdir(exist_ok=True)
+    return missing[::-1]
+
+
+def _remove_empty(folders: list[Path]) -> None:
+    """Remove folders made for a build that wrote nothing into them."""
+    for folder in reversed(folders):
+        with contextlib.suppress(OSError):
+            folder.rmdir()
+
+
+def _prefix(place: Path) -> str:
+    """How the names of the folders begin in which builds into a place work."""
+    return f".{place.name}.trialwright-"
+
+
+def _mend(place: Path) -> None:
+    """Put an earlier build back that a killed run had just moved aside; remove what it left.
+
+    Whoever has the claim is alone: every other folder of work beside the place is of a dead build.
+    """
+    pattern = re.compile(re.escape(_prefix(place)) + r"[a-z0-9_]{8}")
+    for left in sorted(place.parent.iterdir()):
+        if left == claim_of(place) or not pattern.fullmatch(left.name):
+            continue
+        if left.is_symlink() or not left.is_dir():
+            continue
+        aside = left / _ASIDE
+        if not place.exists() and is_ours(aside):
+            aside.replace(place)
+        if not aside.exists() or place.exists():
+            clear(left)
+
+
+def _told(why: OSError, shown: str, place: Path, work: list[Path]) -> DataError:
+    """An error of the system as a message: about the output, or about the file that it names."""
+    named = Path(os.fsdecode(why.filename)) if isinstance(why.filename, str | bytes) else None
+    ours = [place, claim_of(place), place.parent, *place.parent.parents]
+    if named is None or named in ours or any(named.is_relative_to(one) for one in (place, *work)):
+        return cannot_write(shown, why, place)
+    if named.parent == place.parent and named.name.startswith(_prefix(place)):
+        return cannot_write(shown, why, place)
     findings = Findings()
     findings.error(
-        f"the output folder cannot be written ({why.strerror or type(why).__name__})",
-        path=shown,
-        fix="close programs that have files of it open, or name another folder in which you may "
-        "write, by [output] folder or --into",
+        f"this file cannot be read or written ({why.strerror or type(why).__name__})",
+        path=str(named),
+        fix="see that it is there and that you may read it, and build again",
     )
     return DataError(findings)
 
 
-def _swap(fresh: Path, target: Path, aside: Path) -> None:
-    """Put the fresh folder in the target's place; put the old one back if that fails."""
-    there = target.exists()
-    if there:
-        target.replace(aside)
+def _left_by_interruption(place: Path, mark: list[os.stat_result]) -> str:
+    """What is in the place after an interruption, in words."""
     try:
-        fresh.replace(target)
-    except BaseException:  # an interruption too
-        if there and not target.exists():
-            aside.replace(target)
-        raise
+        now = place.stat()
+    except OSError:
+        return "nothing was written"
+    if mark and os.path.samestat(now, mark[0]):
+        return "the new build was in its place already, and is whole"
+    if not is_ours(place):
+        return "nothing was written"
+    return "nothing was written, the earlier build is as it was"

@@ -10,7 +10,7 @@ from importlib.metadata import version
 from pathlib import Path
 from typing import Any
 
-from etl.export.publish import BUNDLE, PROGRAM, RECORD, digest_of
+from etl.export.earlier import BUNDLE, PROGRAM, RECORD, digest_of
 
 #: Where the record says which key the pseudonyms are of.
 KEY_KNOWN_BY = "pseudonyms_of_key"

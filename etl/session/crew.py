@@ -8,9 +8,7 @@ one crew does every stage of a build, and its processes are started once.
 from __future__ import annotations
 
 import contextlib
-import multiprocessing
 import pickle
-import signal
 from collections import deque
 from collections.abc import Callable, Iterable, Iterator
 from concurrent.futures import Future, ProcessPoolExecutor
@@ -19,6 +17,7 @@ from types import TracebackType
 from typing import Any, Final, Protocol, TypeVar
 
 from etl.session.kept_store import KeptStore
+from etl.session.workers import WorkerContext, end_with_parent
 
 Task = TypeVar("Task")
 Answer = TypeVar("Answer")
@@ -28,6 +27,8 @@ Progress = Callable[[str, int, int], None]
 #: Tasks that are under way, or done and waiting to be taken, for each worker: enough for none to
 #: be idle, few enough for memory not to grow with the number of tasks.
 _UNDER_WAY: Final = 4
+#: How long an answer is awaited before interruptions are looked at.
+_STEP_S: Final = 0.25
 #: Stages that a process keeps ready.
 _STAGES_READY: Final = 2
 
@@ -90,9 +91,8 @@ class Processes:
     def __init__(self, workers: int, folder: Path) -> None:
         self.workers = workers
         self._stages = StageFiles(folder)
-        self._pool = ProcessPoolExecutor(
-            workers, multiprocessing.get_context("spawn"), initializer=_begin
-        )
+        self._context = WorkerContext()
+        self._pool = ProcessPoolExecutor(workers, self._context, initializer=end_with_parent)
 
     def map(
         self, make: Make[Task, Answer], arguments: tuple[Any, ...], tasks: Iterable[Task]
@@ -107,6 +107,11 @@ class Processes:
         """End the processes when they have done what they are at."""
         self._pool.shutdown(wait=True, cancel_futures=True)
 
+    def stop(self) -> None:
+        """End the processes at once, whatever they are at: nobody wants their answers any more."""
+        self._context.kill()
+        self.close()
+
     def __enter__(self) -> Processes:
         return self
 
@@ -116,7 +121,10 @@ class Processes:
         error: BaseException | None,
         trace: TracebackType | None,
     ) -> None:
-        self.close()
+        if kind is None:
+            self.close()
+        else:
+            self.stop()
 
 
 def in_order(
@@ -143,12 +151,20 @@ def in_order(
         for task in tasks:
             waiting.append(submit(task))
             if len(waiting) >= most:
-                yield waiting.popleft().result()
+                yield _answer(waiting.popleft())
         while waiting:
-            yield waiting.popleft().result()
+            yield _answer(waiting.popleft())
     finally:
         for future in waiting:
             future.cancel()
+
+
+def _answer(future: Future[Answer]) -> Answer:
+    """The answer to a task, awaited in steps: on Windows nothing interrupts a wait without end."""
+    while not future.done():
+        with contextlib.suppress(TimeoutError):  # the task's own is raised below
+            return future.result(timeout=_STEP_S)
+    return future.result()
 
 
 class StageFiles:
@@ -174,12 +190,6 @@ class StageFiles:
 
 
 _ready: dict[Path, Callable[[Any], Any]] = {}
-
-
-def _begin() -> None:
-    """Set up a worker process once."""
-    # An interruption from the keyboard reaches every process; the parent alone answers it.
-    signal.signal(signal.SIGINT, signal.SIG_IGN)
 
 
 def do_task(stage: Path, task: Any) -> Any:
@@ -249,7 +259,7 @@ class Room:
         error: BaseException | None,
         trace: TracebackType | None,
     ) -> None:
-        self._hired.close()
+        self._hired.__exit__(kind, error, trace)
 
 
 def silent(stage: str, done: int, total: int) -> None:

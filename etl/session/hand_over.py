@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
 
-from etl.export.publish import BUNDLE, RECORD
+from etl.export.earlier import BUNDLE, RECORD
 from etl.handoff import BundleFacts, StudyFacts, write_bundle, write_data_package
 from etl.readiness.facts import Readiness
 from etl.session.codebook_facts import write_described

@@ -8,7 +8,7 @@ import unicodedata
 from pathlib import Path
 
 from etl.errors import Findings
-from etl.export.publish import is_ours
+from etl.export.earlier import is_ours
 from etl.parsers import counted_file, is_log
 from etl.pseudonyms import FileKind, Pseudonyms
 from etl.session.datasets import (

@@ -16,7 +16,7 @@ from typing import TYPE_CHECKING
 
 from etl.cells import csv_text, plain
 from etl.errors import DataError, Findings
-from etl.export.publish import record_of
+from etl.export.earlier import record_of
 from etl.export.run_record import KEY_KNOWN_BY
 from etl.pseudonyms import FILE_KINDS, KEY_BYTES, Pseudonyms, is_reader, signs_of
 from etl.session.pseudonym_owner import keep_to_owner, write_for_owner

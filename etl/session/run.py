@@ -9,7 +9,7 @@ import tempfile
 import time
 from collections.abc import Iterable, Iterator
 from concurrent.futures.process import BrokenProcessPool
-from contextlib import closing, contextmanager, suppress
+from contextlib import closing, contextmanager, nullcontext, suppress
 from dataclasses import replace
 from pathlib import Path
 from typing import Any
@@ -17,7 +17,7 @@ from typing import Any
 from etl.errors import DataError, FaultError, Findings
 from etl.export.accounts import write_accounts
 from etl.export.log_accounts import write_log_accounts
-from etl.export.publish import check_target, published
+from etl.export.publish import published
 from etl.export.run_record import RunRecord
 from etl.export.writers import TableWriters
 from etl.files import file_and_sheet
@@ -152,14 +152,12 @@ def build(
     target = Path(into) if into is not None else study.folder / study.output.folder
     shown = shown_path(study, study.output.folder) if into is None else str(into)
     findings = Findings()
-    held = open_key(study, findings, target=target)
-    check_target(target, shown)
-    kept = kept_folder(target, held) if keep else None
     groups_kept: list[str] = []
     with (
         published(target, shown) as shop,
         own_faults(),
-        Room(shop.kept, workers, progress, kept) as room,
+        nullcontext(open_key(study, findings, target=target)) as held,
+        Room(shop.kept, workers, progress, kept_folder(target, held) if keep else None) as room,
     ):
         examined = examine(study, room, findings, held)
         if examined is None:
@@ -205,6 +203,8 @@ def build(
             time.perf_counter() - started,
             "" if held is None else known_by(held.pseudonyms.key),
         ).write(shop.fresh)
+        # The key is written when nothing is left to go wrong but moving a folder.
+        shop.settle()
         if held is not None:
             save_key(held)
         if keep:

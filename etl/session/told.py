@@ -8,7 +8,7 @@ from difflib import get_close_matches
 from pathlib import Path
 
 from etl.errors import Findings
-from etl.export.publish import BUNDLE
+from etl.export.earlier import BUNDLE
 from etl.measures import MEASURES, REASON_MEANINGS, TRIAL_MEASURES, Measure
 from etl.readiness.facts import Readiness
 from etl.report.readiness_words import gravest, region_of, summed_up

@@ -9,7 +9,7 @@ from pathlib import Path
 import pytest
 
 import etl
-from etl.export.publish import check_target
+from etl.export.earlier import check_target
 from tests.end_to_end.building import files_of, write
 from tests.handoff.bundles import bundle_of, small_study
 
@@ -98,7 +98,7 @@ def test_file_that_cannot_be_read_stops_a_build(
     def held(_: Path) -> str:
         raise PermissionError(13, "Permission denied")
 
-    monkeypatch.setattr("etl.export.publish.digest_of", held)
+    monkeypatch.setattr("etl.export.earlier.digest_of", held)
     with pytest.raises(etl.DataError, match="close programs that have files of it open"):
         etl.build(etl.load_study(study_file), into=bundle.parent)
 
