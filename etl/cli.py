@@ -3,10 +3,14 @@
 from __future__ import annotations
 
 import shutil
+import signal
 import sys
+import threading
+import time
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from pathlib import Path
+from types import FrameType
 from typing import Any, NoReturn
 
 import click
@@ -19,6 +23,13 @@ from etl.session import Wanted, explained, told, write_lines, write_picture
 
 INPUT_WRONG = 2
 FAULT = 1
+#: A command that a signal ended exits with this and the number of the signal.
+SIGNALLED = 128
+
+#: What asks a program to end: the keyboard, the system, the terminal that closes.
+_ASKING_TO_END = ("SIGINT", "SIGTERM", "SIGHUP", "SIGBREAK")
+#: For so long after the first, more of them do not disturb the tidying up.
+_TIDYING_S = 5.0
 
 _STUDY = click.argument("study", type=click.Path(path_type=Path))
 _WORKERS = click.option(
@@ -36,7 +47,12 @@ class _Command(click.Group):
     def invoke(self, ctx: click.Context) -> Any:
         """Run a command; wrong input exits with 2, a fault of the program with 1."""
         try:
-            return super().invoke(ctx)
+            with _answering_signals():
+                return super().invoke(ctx)
+        except KeyboardInterrupt as stop:
+            # What a build left is told where it was interrupted.
+            click.echo("; ".join(["interrupted", *getattr(stop, "__notes__", [])[:1]]), err=True)
+            ctx.exit(SIGNALLED + getattr(stop, "number", signal.SIGINT))
         except etl.InputError as wrong:
             click.echo(str(wrong), err=True)
             ctx.exit(INPUT_WRONG)
@@ -47,6 +63,39 @@ class _Command(click.Group):
         except Exception as fault:
             _tell_fault(fault)
             ctx.exit(FAULT)
+
+
+class _AskedToEndError(KeyboardInterrupt):
+    """A signal that asks the program to end, by its number."""
+
+    def __init__(self, number: int) -> None:
+        super().__init__()
+        self.number = number
+
+
+@contextmanager
+def _answering_signals() -> Iterator[None]:
+    """Turn every signal that asks the program to end into an interruption, which tidies up."""
+    if threading.current_thread() is not threading.main_thread():
+        yield
+        return
+    first: list[float] = []
+
+    def answer(number: int, _: FrameType | None) -> None:
+        now = time.monotonic()
+        if not first or now - first[-1] > _TIDYING_S:
+            first.append(now)
+            raise _AskedToEndError(number)
+
+    numbers = [getattr(signal, name) for name in _ASKING_TO_END if hasattr(signal, name)]
+    # Whoever started the program may have told it to ignore some, as nohup does.
+    taken = [number for number in numbers if signal.getsignal(number) is not signal.SIG_IGN]
+    before = {number: signal.signal(number, answer) for number in taken}
+    try:
+        yield
+    finally:
+        for number, handler in before.items():
+            signal.signal(number, signal.SIG_DFL if handler is None else handler)
 
 
 def _tell_fault(fault: Exception) -> None:

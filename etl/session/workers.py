@@ -15,6 +15,8 @@ from typing import Any
 
 #: How long a process that was killed may take to end.
 _PATIENCE_S = 5.0
+#: Ends a process that does not listen; on Windows every signal does.
+_AT_ONCE: signal.Signals = getattr(signal, "SIGKILL", signal.SIGTERM)
 
 
 class WorkerProcess(SpawnProcess):
@@ -67,7 +69,7 @@ def end_with_parent() -> None:
     def wait() -> None:
         connection.wait([sentinel])
         # Nobody waits for what this process does; its threads need not be asked.
-        os.kill(os.getpid(), signal.SIGTERM if os.name == "nt" else signal.SIGKILL)
+        os.kill(os.getpid(), _AT_ONCE)
 
     threading.Thread(target=wait, name="end with parent", daemon=True).start()
 
