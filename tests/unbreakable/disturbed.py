@@ -1,7 +1,8 @@
 """The command ``build`` in a process that says how far it is, and may die at a step.
 
 ``python -m tests.unbreakable.disturbed STUDY INTO --workers N`` prints ``begin`` when the command
-begins, ``settle`` when all is written and only publishing is left, and ``end``.
+begins, ``settle`` when all is written and only publishing is left, ``swap`` when the new folder is
+put in place, and ``end``, each with the number of steps on the disk so far.
 """
 
 from __future__ import annotations
@@ -13,6 +14,7 @@ import signal
 import sys
 from collections.abc import Callable
 from pathlib import Path
+from typing import Any
 
 from etl.cli import main
 from etl.export import publish, swapping
@@ -31,21 +33,28 @@ def run() -> None:
     asked = parser.parse_args()
     if asked.no_exchange:
         swapping.exchange = lambda *_: False
-    if asked.fault == "copied":
-        publish.replace_folder = copied
-    elif asked.fault == "emptied":
-        publish.replace_folder = emptied
-    settle = publish.to_disk
+    faults = {"copied": copied, "emptied": emptied}
+    settle, swap = publish.to_disk, faults.get(asked.fault, publish.replace_folder)
+    steps = [0]
 
-    def told(folder: Path) -> None:
+    def say(word: str) -> None:
+        sys.stdout.write(f"{word} {steps[0]}\n")
+        sys.stdout.flush()
+
+    def settling(folder: Path) -> None:
         say("settle")
         settle(folder)
 
-    publish.to_disk = told
+    def swapping_folders(*folders: Any) -> None:
+        say("swap")
+        swap(*folders)
+
+    publish.to_disk, publish.replace_folder = settling, swapping_folders
     command = ["build", str(asked.study), "--into", str(asked.into), "--quiet"]
     command += ["--workers", str(asked.workers)]
 
     def step(number: int, _: str) -> None:
+        steps[0] = number
         if number == asked.die_at:
             os.kill(os.getpid(), signal.SIGKILL)
 
@@ -54,12 +63,6 @@ def run() -> None:
         status = main(command, prog_name="trialwright", standalone_mode=False)
     say("end")
     sys.exit(status or 0)
-
-
-def say(word: str) -> None:
-    """Tell whoever started this process."""
-    sys.stdout.write(f"{word}\n")
-    sys.stdout.flush()
 
 
 def copied(fresh: Path, target: Path, aside: Path, keep: Callable[[Path], None]) -> None:

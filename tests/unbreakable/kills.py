@@ -27,7 +27,14 @@ from tests.end_to_end.running import environment
 from tests.unbreakable.studies import TwoWays, beside, built, content, two_ways
 
 #: The ways in which a build is killed, by how often.
-MANNERS = ("time", "publishing", "time", "publishing", "step")
+MANNERS = ("time", "step", "swap", "late step", "settle")
+#: Where a build was that said this last.
+WHERE = {
+    "begin": "at work",
+    "settle": "while it waited for the disk",
+    "swap": "while it put the folder in place or tidied up",
+    "end": "at its end",
+}
 PROJECT = Path(__file__).resolve().parents[2]
 
 
@@ -102,19 +109,27 @@ class Target:
 
 @dataclass(frozen=True)
 class Course:
-    """How long a build takes from its beginning, and from the moment when all is written."""
+    """When a build that nobody disturbs says something, and how many steps it has taken then."""
 
-    whole_s: float
-    publishing_s: float
+    at_s: dict[str, float]
+    steps: dict[str, int]
+
+    def left_s(self, word: str) -> float:
+        """How long it takes from there."""
+        return self.at_s["end"] - self.at_s[word]
 
 
 def course(target: Target, workers: int) -> Course:
     """Watch a build that nobody disturbs."""
+    at_s, steps = {}, {}
     with target.start(workers) as process:
-        heard = {word: time.monotonic() for word in words(process)}
+        for line in words(process):
+            word, _, number = line.partition(" ")
+            at_s[word], steps[word] = time.monotonic(), int(number)
         assert process.wait() == 0, process.stderr.read() if process.stderr else ""
-    assert target.build_next() == []
-    return Course(heard["end"] - heard["begin"], heard["end"] - heard["settle"])
+    assert target.after_kill() == target.coming.name or target.options
+    target.build_next()
+    return Course(at_s, steps)
 
 
 def words(process: subprocess.Popen[str]) -> Iterator[str]:
@@ -126,20 +141,19 @@ def words(process: subprocess.Popen[str]) -> Iterator[str]:
 
 def kill(target: Target, workers: int, manner: str, run: Course, draw: random.Random) -> str:
     """Kill one build; gives where it was."""
-    steps = draw.randint(1, 250) if manner == "step" else 0
+    first = run.steps["swap"] if manner == "late step" else 1
+    die_at = draw.randint(first, run.steps["end"]) if manner.endswith("step") else 0
+    until = manner if manner in run.at_s else "begin"
     last = ""
-    with target.start(workers, steps) as process:
-        until = "settle" if manner == "publishing" else "begin"
+    with target.start(workers, die_at) as process:
         for last in words(process):
-            if last == until:
+            if last.startswith(until):
                 break
-        if manner == "time":
-            time.sleep(draw.uniform(0.0, 1.05 * run.whole_s))
-        elif manner == "publishing":
-            time.sleep(draw.uniform(0.0, 1.2 * run.publishing_s))
+        if die_at:
+            # It dies by itself, or gets to its end.
+            last = ([last, *words(process)])[-1]
         else:
-            for last in words(process):
-                pass  # it dies by itself, or gets to its end
+            time.sleep(draw.uniform(0.0, 1.05 * run.left_s(until)))
         # All of its processes at once, or the first alone: then the others must see to themselves.
         with contextlib.suppress(ProcessLookupError):
             if draw.random() < 0.5:
@@ -148,21 +162,27 @@ def kill(target: Target, workers: int, manner: str, run: Course, draw: random.Ra
                 process.kill()
         # Workers hold its streams, too: when these end, all of them have ended.
         last = ([last, *words(process)])[-1]
-    return {"begin": "before all was written", "settle": "while publishing"}.get(last, "too late")
+    return WHERE[last.partition(" ")[0]]
 
 
-def kills(target: Target, workers: Sequence[int], count: int, seed: int) -> Tally:
+def kills(
+    target: Target,
+    workers: Sequence[int],
+    count: int,
+    seed: int,
+    manners: Sequence[str] = MANNERS,
+) -> Tally:
     """Kill so many builds."""
     draw = random.Random(seed)
     runs = {number: course(target, number) for number in set(workers)}
     tally = Tally()
     for number in range(count):
         own = workers[number % len(workers)]
-        manner = MANNERS[number % len(MANNERS)]
+        manner = manners[number // len(workers) % len(manners)]
         when = kill(target, own, manner, runs[own], draw)
         there = target.after_kill()
         which = {target.there.name: "old", target.coming.name: "new"}.get(there or "", "torn")
-        tally.found[f"{own} at work, killed {when}: {which}"] += 1
+        tally.found[f"with {own}, {when}: {which}"] += 1
         wrong = [] if there else ["the folder is neither build"]
         if there is None:
             shutil.rmtree(target.place, ignore_errors=True)

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import json
-import os
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -59,4 +58,4 @@ def built(study_file: Path, into: Path, *, workers: int = 1) -> dict[str, bytes]
 
 def beside(target: Path) -> list[str]:
     """What lies beside a folder, hidden files too."""
-    return sorted(name for name in os.listdir(target.parent) if name != target.name)
+    return sorted(path.name for path in target.parent.iterdir() if path != target)
