@@ -27,6 +27,7 @@ from etl.export.unwritable import NAME_ANOTHER
 #: How long a lock is tried for that another process may hold just to look.
 _PATIENCE_S = 0.3
 _PAUSE_S = 0.02
+_TRIES = 2
 #: What this process has claimed, for file systems without locks.
 _OURS: set[Path] = set()
 
@@ -72,8 +73,10 @@ class _Held:
         _OURS.discard(self.path)
         if os.name == "nt":
             os.close(self.descriptor)
-        with contextlib.suppress(OSError):
-            self.path.unlink()
+        for _ in range(_TRIES):
+            with contextlib.suppress(OSError):
+                self.path.unlink(missing_ok=True)
+                break
         if os.name != "nt":
             os.close(self.descriptor)
 

@@ -47,11 +47,6 @@ class Workshop:
         self.fresh.mkdir()
         self.kept.mkdir()
 
-    @property
-    def aside(self) -> Path:
-        """Where an earlier build goes if it cannot change places with the new one."""
-        return self.folder / _ASIDE
-
     def settle(self) -> None:
         """Bring all that was written to the disk; nothing may be written after that."""
         if not self._settled:
@@ -93,20 +88,21 @@ def published(target: Path, shown: str) -> Iterator[Workshop]:
             keeper = Keeper(shown)
             keeper.check(place)
             work.append(Path(tempfile.mkdtemp(prefix=_prefix(place), dir=place.parent)))
-            shop = Workshop(work[0])
-            mark.append(shop.fresh.stat())
+            aside = work[0] / _ASIDE
             try:
+                shop = Workshop(work[0])
+                mark.append(shop.fresh.stat())
                 yield shop
                 shop.settle()
                 keeper.check(place)
-                replace_folder(shop.fresh, place, shop.aside, keeper.check)
+                replace_folder(shop.fresh, place, aside, keeper.check)
                 # It is done; whether the system can vouch for it changes nothing.
                 with contextlib.suppress(OSError):
                     names_to_disk(place.parent)
             finally:
                 # An earlier build that could not be put back is worth more than a tidy folder.
-                if place.exists() or not shop.aside.exists():
-                    clear(shop.folder)
+                if place.exists() or not aside.exists():
+                    clear(work[0])
     except OSError as why:
         raise _told(why, shown, place, work) from why
     except KeyboardInterrupt as stop:

@@ -17,6 +17,7 @@ import signal
 import subprocess
 import sys
 import tempfile
+import threading
 import time
 from collections import Counter
 from collections.abc import Iterator, Sequence
@@ -139,6 +140,25 @@ def words(process: subprocess.Popen[str]) -> Iterator[str]:
         yield line.strip()
 
 
+def until_all_ended(process: subprocess.Popen[str]) -> list[str]:
+    """What it says until it and its workers have ended, which hold its streams, too."""
+    late: list[str] = []
+
+    def end() -> None:
+        late.append("its workers live on")
+        with contextlib.suppress(ProcessLookupError):
+            os.killpg(process.pid, signal.SIGKILL)
+
+    # Far longer than they need on the slowest machine: without an end of theirs it would be for
+    # ever.
+    timer = threading.Timer(60, end)
+    timer.start()
+    said = list(words(process))
+    timer.cancel()
+    assert late == []
+    return said
+
+
 def kill(target: Target, workers: int, manner: str, run: Course, draw: random.Random) -> str:
     """Kill one build; gives where it was."""
     first = run.steps["swap"] if manner == "late step" else 1
@@ -160,8 +180,7 @@ def kill(target: Target, workers: int, manner: str, run: Course, draw: random.Ra
                 os.killpg(process.pid, signal.SIGKILL)
             else:
                 process.kill()
-        # Workers hold its streams, too: when these end, all of them have ended.
-        last = ([last, *words(process)])[-1]
+        last = ([last, *until_all_ended(process)])[-1]
     return WHERE[last.partition(" ")[0]]
 
 

@@ -14,13 +14,13 @@ from pathlib import Path
 from typing import Any
 from unittest import mock
 
-from etl.export import claims, swapping
+from etl.export import swapping
 
 #: Audit events with the path that they are about first.
 _EVENTS = {"open", "os.mkdir", "os.rename", "os.remove", "os.rmdir", "os.listdir", "os.scandir"}
 _WRAPPED = (
     *((os, "fsync"), (os, "write"), (os, "ftruncate")),
-    *((swapping, "exchange"), (claims, "_lock")),
+    (swapping, "exchange"),
 )
 
 Step = Callable[[int, str], None]
