@@ -29,8 +29,17 @@ _COMPILED = ("__pycache__", ".pyc")
 def record_of(folder: Path) -> dict[str, Any] | None:
     """The run record of a folder; None where it is not one of ours."""
     try:
-        record = json.loads((folder / RECORD).read_text(encoding="utf-8"))
-    except (OSError, ValueError):
+        return _readable_record(folder)
+    except OSError:
+        return None
+
+
+def _readable_record(folder: Path) -> dict[str, Any] | None:
+    """The run record of a folder, if it has one; an error of the system where it cannot be read."""
+    path = folder / RECORD
+    try:
+        record = json.loads(path.read_text(encoding="utf-8")) if path.is_file() else None
+    except ValueError:
         return None
     return record if isinstance(record, dict) and record.get("program") == PROGRAM else None
 
@@ -89,7 +98,7 @@ class Keeper:
             )
         elif folder.is_dir():
             there = any(not _is_litter(path) for path in folder.iterdir())
-            record = record_of(folder)
+            record = _readable_record(folder)
             if there and record is None:
                 findings.error(
                     "the output folder holds something else than an earlier build",

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 from collections.abc import Collection, Mapping
 from pathlib import Path
 from types import TracebackType
@@ -52,10 +53,13 @@ class TableWriter:
 
     def abandon(self) -> None:
         """Close the files without finishing the table."""
-        if self._parquet is not None:
-            self._parquet.abandon()
-        if self._csv is not None:
-            self._csv.close()
+        # What cannot be written any more is of no use either.
+        for file in (self._parquet, self._csv):
+            with contextlib.suppress(OSError):
+                if isinstance(file, ParquetParts):
+                    file.abandon()
+                elif file is not None:
+                    file.close()
 
 
 class TableWriters:
@@ -82,15 +86,17 @@ class TableWriters:
     ) -> None:
         apart = csv_apart or {}
         empty = PartMaker(design, formats).parts([])
-        self._writers = {
-            name: TableWriter(
-                design.columns(name),
-                folder / f"{name}.parquet" if "parquet" in wanted else None,
-                folder / f"{name}.csv" if "csv" in wanted else apart.get(name),
-                empty[name],
-            )
-            for name, wanted in formats.items()
-        }
+        self._writers: dict[str, TableWriter] = {}
+        with contextlib.ExitStack() as stack:
+            stack.callback(self._abandon)
+            for name, wanted in formats.items():
+                self._writers[name] = TableWriter(
+                    design.columns(name),
+                    folder / f"{name}.parquet" if "parquet" in wanted else None,
+                    folder / f"{name}.csv" if "csv" in wanted else apart.get(name),
+                    empty[name],
+                )
+            stack.pop_all()
 
     def __enter__(self) -> TableWriters:
         return self
@@ -111,8 +117,15 @@ class TableWriters:
         error: BaseException | None,
         trace: TracebackType | None,
     ) -> None:
-        for writer in self._writers.values():
+        try:
             if kind is None:
-                writer.close()
-            else:
-                writer.abandon()
+                for writer in self._writers.values():
+                    writer.close()
+        finally:
+            # Of a file that is closed already, nothing more is asked.
+            self._abandon()
+
+    def _abandon(self) -> None:
+        """Close all files, however far they are."""
+        for writer in self._writers.values():
+            writer.abandon()

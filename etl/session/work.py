@@ -10,7 +10,7 @@ from pathlib import Path
 import pyarrow as pa
 
 from etl.errors import Findings
-from etl.export.publish import digest_of
+from etl.export.earlier import digest_of
 from etl.export.rows import TrialColumns
 from etl.files.pieces import WholeNeededError
 from etl.files.text_faults import tell_unreadable

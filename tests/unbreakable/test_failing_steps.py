@@ -6,6 +6,7 @@ import errno
 import os
 import random
 from collections.abc import Callable
+from functools import partial
 from pathlib import Path
 
 import pytest
@@ -71,7 +72,7 @@ def test_any_step_of_publishing_fails(
         target.parent.mkdir()
         write(target, there)
         with watched(tmp_path, failing(at, number)):
-            told = said_by(lambda: publish(target))
+            told = said_by(partial(publish, target))
         outcomes.append("old" if told else "new")
         assert not told or told.startswith("out: the output folder cannot be written (")
         name = steps[at - 1]
@@ -95,7 +96,7 @@ def test_any_step_of_a_build_fails(ways: TwoWays, tmp_path: Path) -> None:
     refused = 0
     for at in sorted(draw.sample(range(1, len(steps) + 1), 12)):
         with watched(tmp_path, failing(at, errno.ENOSPC)):
-            told = said_by(lambda: etl.build(study, into=target))
+            told = said_by(partial(etl.build, study, into=target))
         expected = old if told else new
         refused += bool(told)
         assert not told or "cannot be written (No space left on device)" in told
