@@ -22,6 +22,7 @@ from pathlib import Path
 from typing import Any
 
 from etl.errors import DataError, Findings
+from etl.export.tidying import despite_interruption
 from etl.export.unwritable import NAME_ANOTHER
 
 #: How long a lock is tried for that another process may hold just to look.
@@ -67,17 +68,23 @@ class _Held:
 
     path: Path
     descriptor: int
+    open: bool = True
 
     def release(self) -> None:
         """Remove the claim; on Windows a file can be removed only once it is closed."""
         _OURS.discard(self.path)
         if os.name == "nt":
-            os.close(self.descriptor)
+            self._close()
         for _ in range(_TRIES):
             with contextlib.suppress(OSError):
                 self.path.unlink(missing_ok=True)
                 break
-        if os.name != "nt":
+        self._close()
+
+    def _close(self) -> None:
+        """Close the file, once."""
+        if self.open:
+            self.open = False
             os.close(self.descriptor)
 
 
@@ -126,7 +133,7 @@ def claimed(target: Path, shown: str) -> Iterator[None]:
         refuse_within_claimed(target, shown)
         yield
     finally:
-        held.release()
+        despite_interruption(held.release)
 
 
 def refuse_within_claimed(target: Path, shown: str) -> None:

@@ -9,12 +9,14 @@ import re
 import tempfile
 from collections.abc import Iterator
 from dataclasses import dataclass, field
+from functools import partial
 from pathlib import Path
 
 from etl.errors import DataError, Findings
 from etl.export.claims import claim_of, claimed, refuse_within_claimed
 from etl.export.earlier import Keeper, is_ours
 from etl.export.swapping import clear, names_to_disk, replace_folder, to_disk
+from etl.export.tidying import despite_interruption
 from etl.export.unwritable import NAME_ANOTHER, cannot_write
 
 _FRESH, _KEPT, _ASIDE = "new", "kept", "old"
@@ -102,7 +104,7 @@ def published(target: Path, shown: str) -> Iterator[Workshop]:
             finally:
                 # An earlier build that could not be put back is worth more than a tidy folder.
                 if place.exists() or not aside.exists():
-                    clear(work[0])
+                    despite_interruption(partial(clear, work[0]))
     except OSError as why:
         raise _told(why, shown, place, work) from why
     except KeyboardInterrupt as stop:

@@ -144,19 +144,16 @@ def in_order(
     Yields
     ------
     answers
-        One a task. When the caller wants no more, what has not begun is called off.
+        One a task. What has not begun is called off when the crew is let go, and not before: an
+        executor whose processes are ended stumbles over what was called off one by one.
     """
     waiting: deque[Future[Answer]] = deque()
-    try:
-        for task in tasks:
-            waiting.append(submit(task))
-            if len(waiting) >= most:
-                yield _answer(waiting.popleft())
-        while waiting:
+    for task in tasks:
+        waiting.append(submit(task))
+        if len(waiting) >= most:
             yield _answer(waiting.popleft())
-    finally:
-        for future in waiting:
-            future.cancel()
+    while waiting:
+        yield _answer(waiting.popleft())
 
 
 def _answer(future: Future[Answer]) -> Answer:
