@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 import etl
+from etl.session.kept_store import GROUP, LOG
 from tests.end_to_end.building import files_of
 from tests.simulator.bulk import write_bulk_study
 
@@ -57,5 +58,16 @@ def built(study_file: Path, into: Path, *, workers: int = 1) -> dict[str, bytes]
 
 
 def beside(target: Path) -> list[str]:
-    """What lies beside a folder, hidden files too."""
-    return sorted(path.name for path in target.parent.iterdir() if path != target)
+    """What lies beside a folder, hidden files too, that no build may leave.
+
+    Beside it a build keeps what it has parsed; of that, what is no whole entry may not be left.
+    """
+    kept = target.with_name(f"{target.name}.kept")
+    left = sorted(path.name for path in target.parent.iterdir() if path not in (target, kept))
+    if kept.is_dir():
+        left += sorted(
+            f"{kept.name}/{path.name}"
+            for path in kept.iterdir()
+            if path.suffix not in (LOG, GROUP) and path.name not in ("README.txt", "CACHEDIR.TAG")
+        )
+    return left

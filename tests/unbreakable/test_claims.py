@@ -73,7 +73,8 @@ def test_builds_into_different_folders_go_side_by_side(ways: TwoWays, tmp_path: 
     second = Meanwhile(ways.new, tmp_path / "a" / "two")
     etl.build(etl.load_study(ways.old), into=tmp_path / "a" / "one", progress=second)
     assert second.error is None
-    assert sorted(path.name for path in (tmp_path / "a").iterdir()) == ["one", "two"]
+    assert content(tmp_path / "a" / "one") == built(ways.old, tmp_path / "one")
+    assert content(tmp_path / "a" / "two") == built(ways.new, tmp_path / "two")
 
 
 @pytest.mark.parametrize("there", [True, False], ids=["earlier build", "nothing"])

@@ -104,7 +104,8 @@ def test_any_step_of_a_build_fails(ways: TwoWays, tmp_path: Path) -> None:
         assert beside(target) == [], (at, steps[at - 1])
         if expected is new:
             built(ways.old, target)
-    assert refused > 5
+    # Steps after the swap, and those of what is kept for the next build, call no build off.
+    assert refused >= 3
 
 
 def test_folder_that_vanishes_meanwhile(ways: TwoWays, tmp_path: Path) -> None:

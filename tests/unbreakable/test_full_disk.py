@@ -42,7 +42,7 @@ def test_disk_full_at_any_write(ways: TwoWays, disk: SmallDisk, tmp_path: Path) 
         disk.leave_free(free)
         refused(ways.new, target)
         assert content(target) == old
-    disk.leave_free(2 * size)
+    disk.leave_free(8 * size)
     assert built(ways.new, target) == expected
     assert beside(target) == []
 
