@@ -2,7 +2,7 @@
 
 ``python -m tests.unbreakable.disturbed STUDY INTO --workers N`` prints ``begin`` when the command
 begins, ``settle`` when all is written and only publishing is left, ``swap`` when the new folder is
-put in place, and ``end``, each with the number of steps on the disk so far.
+put in place, and ``end`` if all went well, each with the number of steps on the disk so far.
 """
 
 from __future__ import annotations
@@ -61,7 +61,8 @@ def run() -> None:
     say("begin")
     with watched(asked.into.parent, step):
         status = main(command, prog_name="trialwright", standalone_mode=False)
-    say("end")
+    if not status:
+        say("end")
     sys.exit(status or 0)
 
 
