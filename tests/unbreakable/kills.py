@@ -206,6 +206,8 @@ def kills(
         if there is None:
             shutil.rmtree(target.place, ignore_errors=True)
         wrong += target.build_next()
+        if (number + 1) % 20 == 0:
+            print(f"{number + 1} of {count}", file=sys.stderr)
         tally.torn += [f"  kill {number} ({manner}, {when}): {what}" for what in wrong]
     return tally
 
