@@ -10,7 +10,7 @@ from pathlib import Path
 from etl.errors import DataError, Findings
 
 NAME_ANOTHER = "name another folder, by [output] folder or --into"
-_FULL = {errno.ENOSPC, errno.EDQUOT}
+_FULL = {errno.ENOSPC, getattr(errno, "EDQUOT", errno.ENOSPC)}
 _GONE = {errno.ENOENT, errno.ENOTDIR, errno.EEXIST}
 _NOT_MOVABLE = {errno.EBUSY, errno.EXDEV}
 
@@ -33,21 +33,49 @@ def cannot_write(shown: str, why: OSError, place: Path) -> DataError:
         To be raised.
     """
     findings = Findings()
-    # Some libraries put a sentence of their own in place of the system's.
-    reason = os.strerror(why.errno) if why.errno else why.strerror or type(why).__name__
     findings.error(
-        f"the output folder cannot be written ({reason})",
+        f"the output folder cannot be written ({reason_of(why)})",
         path=shown,
         fix=_way_out(why.errno, place),
     )
     return DataError(findings)
 
 
+def reason_of(why: OSError) -> str:
+    """What the system said, in its own words.
+
+    Parameters
+    ----------
+    why : OSError
+        Some libraries put a sentence of their own in place of the system's.
+
+    Returns
+    -------
+    str
+    """
+    return os.strerror(why.errno) if why.errno else why.strerror or type(why).__name__
+
+
+def is_full(why: OSError) -> bool:
+    """Whether there was no room on a disk, or no more than the user may take.
+
+    Parameters
+    ----------
+    why : OSError
+        What the system said.
+
+    Returns
+    -------
+    bool
+    """
+    return why.errno in _FULL
+
+
 def _way_out(number: int | None, place: Path) -> str:
     """What to do about an error of the system."""
     if number in _FULL:
         return (
-            f"make room on its disk, where {_free(place)}: a new build needs room beside the "
+            f"make room on its disk, where {room_at(place)}: a new build needs room beside the "
             f"earlier one, and for the fixations of all logs; or {NAME_ANOTHER}"
         )
     if number in _GONE:
@@ -67,8 +95,18 @@ def _way_out(number: int | None, place: Path) -> str:
     )
 
 
-def _free(place: Path) -> str:
-    """How much room there is where a folder is to lie."""
+def room_at(place: Path) -> str:
+    """How much room there is where a folder is to lie, in words.
+
+    Parameters
+    ----------
+    place : Path
+        It need not be there.
+
+    Returns
+    -------
+    str
+    """
     for folder in (place, *place.parents):
         try:
             free = shutil.disk_usage(folder).free

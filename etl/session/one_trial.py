@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-import tempfile
 from dataclasses import dataclass
 from difflib import get_close_matches
 from pathlib import Path
 
 from etl.errors import DataError, Findings
+from etl.export.scratch import scratch
 from etl.pseudonyms import Pseudonyms
 from etl.report.trace_input import TracedTrial
 from etl.report.trace_page import page
@@ -63,9 +63,9 @@ def trace(
     held = open_key(study, findings, needed=True)
     pseudonyms = None if held is None else held.pseudonyms
     with (
-        tempfile.TemporaryDirectory(prefix="trialwright-") as folder,
+        scratch() as folder,
         own_faults(),
-        Room(Path(folder), workers, progress) as room,
+        Room(folder, workers, progress) as room,
     ):
         examined = examine(study, room, findings, held)
         if examined is None or findings.failed:

@@ -5,7 +5,6 @@ from __future__ import annotations
 import gc
 import hashlib
 import os
-import tempfile
 import time
 from collections.abc import Iterable, Iterator
 from concurrent.futures.process import BrokenProcessPool
@@ -19,6 +18,7 @@ from etl.export.accounts import write_accounts
 from etl.export.log_accounts import write_log_accounts
 from etl.export.publish import published
 from etl.export.run_record import RunRecord
+from etl.export.scratch import scratch
 from etl.export.writers import TableWriters
 from etl.files import file_and_sheet
 from etl.handoff import READ_TABLES
@@ -85,9 +85,9 @@ def check(study: Study, *, workers: int | None = 1, progress: Progress = silent)
     findings = Findings()
     held = open_key(study, findings)
     with (
-        tempfile.TemporaryDirectory(prefix="trialwright-") as folder,
+        scratch() as folder,
         own_faults(),
-        Room(Path(folder), workers, progress) as room,
+        Room(folder, workers, progress) as room,
     ):
         examined = examine(study, room, findings, held)
         if examined is not None:

@@ -97,3 +97,19 @@ def test_folder_that_is_a_disk_of_its_own(ways: TwoWays, disk: SmallDisk) -> Non
     assert list(disk.folder.iterdir()) == []
     assert beside(disk.folder) == []
     assert built(ways.new, disk.folder / "out")
+
+
+@pytest.mark.parametrize("where", ["full", "missing"])
+def test_check_that_can_put_nothing_aside(
+    ways: TwoWays, disk: SmallDisk, monkeypatch: pytest.MonkeyPatch, where: str
+) -> None:
+    """A check needs room for temporary files: told, nothing is left of them."""
+    if where == "full":
+        disk.leave_free(4096)  # of an empty disk; a size of 0 would be without end
+    monkeypatch.setattr("tempfile.tempdir", str(disk.folder / ("" if where == "full" else "no")))
+    told = (
+        r"temporary files cannot be written \(No .*\)\n    fix: make room on the disk of .*TMPDIR"
+    )
+    with pytest.raises(etl.DataError, match=told):
+        etl.check(etl.load_study(ways.new), workers=2)
+    assert list(disk.folder.iterdir()) == []

@@ -149,14 +149,20 @@ def test_workers_end_with_a_parent_that_is_killed(tmp_path: Path) -> None:
     assert ran.returncode == -signal.SIGKILL
 
 
-def test_check_leaves_no_file_when_interrupted(ways: TwoWays, tmp_path: Path) -> None:
+def test_check_leaves_no_file_when_interrupted(
+    ways: TwoWays, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
     """What it had put aside goes, too."""
     before = files_of(ways.folder)
+    monkeypatch.setattr("tempfile.tempdir", str(tmp_path))
+    seen: list[str] = []
 
     def interrupt(*_: object) -> None:
+        seen.extend(path.name for path in tmp_path.iterdir())
         raise KeyboardInterrupt
 
     with pytest.raises(KeyboardInterrupt):
         etl.check(etl.load_study(ways.new), progress=interrupt)
+    assert len(seen) == 1
     assert files_of(ways.folder) == before
     assert list(tmp_path.iterdir()) == []
