@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -73,7 +74,8 @@ def read_definitions(
         overlap=regions.overlap,
     )
     by_labels = regions.kind == "labels"
-    return library_of(drafts, source.keys, tuple(source.supplied), None if by_labels else manner)
+    library = library_of(drafts, source.keys, tuple(source.supplied), None if by_labels else manner)
+    return replace(library, sha256=cells.text.sha256)
 
 
 def _drafts(source: Source, regions: Regions) -> list[Draft]:

@@ -62,6 +62,8 @@ class RegionLibrary:
         How points are taken to regions; None as above.
     labels : LabelTable or None
         What labels stand for; None where regions have places.
+    sha256 : str
+        Digest of the file of definitions as it was read, in hex; empty where there was none.
     """
 
     keys: tuple[str, ...]
@@ -75,6 +77,7 @@ class RegionLibrary:
     geometry: Geometry | None
     manner: Manner | None
     labels: LabelTable | None
+    sha256: str = ""
 
     def find(self, values: tuple[str, ...]) -> int:
         """The text that trials with these key values show; -1 where there is none.

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import gc
-import hashlib
 import os
 import time
 from collections.abc import Iterable, Iterator
@@ -20,7 +19,6 @@ from etl.export.publish import published
 from etl.export.run_record import RunRecord
 from etl.export.scratch import scratch
 from etl.export.writers import TableWriters
-from etl.files import file_and_sheet
 from etl.handoff import READ_TABLES
 from etl.measures import REASON_MEANINGS
 from etl.parsers import reader_for
@@ -362,12 +360,14 @@ def _csv_apart(study: Study, folder: Path) -> dict[str, Path]:
 def _inputs(plan: Plan, gathered: Gathered, answers: list[LogAnswer]) -> list[dict[str, Any]]:
     """Every file read, with its digest."""
     study = plan.study
-    files = [(study.path, study.path.name, "study file")]
-    regions, _ = file_and_sheet(study.folder / study.regions.file)
-    files.append((regions, shown_path(study, study.regions.file), "regions"))
+    # Digests of what was used, and not of what lies there by now.
     inputs: list[dict[str, Any]] = [
-        {"file": shown, "role": role, "sha256": hashlib.sha256(path.read_bytes()).hexdigest()}
-        for path, shown, role in files
+        {"file": study.path.name, "role": "study file", "sha256": study.sha256},
+        {
+            "file": shown_path(study, study.regions.file),
+            "role": "regions",
+            "sha256": plan.library.sha256,
+        },
     ]
     inputs += [
         {"file": table.shown, "role": "facts", "sha256": table.sha256}

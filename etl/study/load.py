@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import hashlib
 from collections.abc import Collection, Mapping
 from dataclasses import dataclass, field
 from pathlib import Path, PurePosixPath, PureWindowsPath
@@ -43,11 +44,14 @@ class Source:
         Its name in messages, as the user gave it.
     lines : mapping of tuple to int
         The line of each key, from 1.
+    sha256 : str
+        Digest of what was read, in hex; empty for a study made in memory.
     """
 
     path: Path
     shown: str
     lines: Mapping[KeyPath, int] = field(default_factory=dict)
+    sha256: str = ""
 
 
 class Study(StudyFile):
@@ -89,6 +93,11 @@ class Study(StudyFile):
     def shown(self) -> str:
         """The name of the study file in messages, as the user gave it."""
         return self._source.shown
+
+    @property
+    def sha256(self) -> str:
+        """Digest of the study file as it was read, in hex; empty for a study made in memory."""
+        return self._source.sha256
 
     def line_of(self, *path: str | int) -> int | None:
         """The line of a key in the study file.
@@ -172,10 +181,10 @@ def load_study(path: str | Path, *, known_outcomes: Collection[str] | None = Non
     raw = read_bytes(Path(path), shown, findings)
     text = None if raw is None else decode(raw, shown, findings)
     parsed = None if text is None else parse(text, shown, findings)
-    if parsed is None:
+    if raw is None or parsed is None:
         raise StudyError(findings)
     data, lines = parsed
-    source = Source(Path(path).absolute(), shown, lines)
+    source = Source(Path(path).absolute(), shown, lines, hashlib.sha256(raw).hexdigest())
     examined = examine(data, known_outcomes)
     if examined.problems:
         raise StudyError(_in_file_order(examined.problems, source))
