@@ -8,7 +8,6 @@ task of a worker that is lost is done again by another; nothing else is ever don
 from __future__ import annotations
 
 import contextlib
-import logging
 import pickle
 import threading
 import time
@@ -21,6 +20,7 @@ from types import TracebackType
 from typing import TYPE_CHECKING, Any, Final, NoReturn, TypeVar
 
 from etl.errors import ClusterError, Findings
+from etl.session.cluster_calls import silence, within
 from etl.session.cluster_work import MARK, Raised, Site, Unfit, looked, versions, work
 from etl.session.crew import Make, StageFiles, forget
 from etl.session.reader_groups import GroupTask
@@ -42,15 +42,15 @@ _LOOK_AFTER_S: Final = 2.0
 _NO_WORKER_S: Final = 60.0
 #: How long an answer may take on its way; each time that it does not come, twice as long.
 _FETCH_S: Final = 15.0
-#: How long saying goodbye may take.
+#: How long the scheduler and the workers may take to answer a question; they may be busy.
+_ANSWER_S: Final = 120.0
+#: How long each step of saying goodbye may take.
 _GOODBYE_S: Final = 1.0
 #: Tasks that are under way, or done and waiting to be taken, for each worker, as on one computer.
 _UNDER_WAY: Final = 4
 #: Of how many folders with files of the study workers are asked whether they see them.
 _FOLDERS_ASKED: Final = 20
 _NAMES_TOLD: Final = 5
-#: The libraries that write to the console unasked.
-_TALKING: Final = ("distributed", "tornado")
 
 
 class Cluster:
@@ -113,9 +113,9 @@ class Cluster:
     def close(self) -> None:
         """Leave the cluster as it was; what it is still at goes nowhere."""
         with contextlib.suppress(Exception):
-            self._client.run(forget, self._folder, on_error="ignore", callback_timeout=_GOODBYE_S)
+            within(_GOODBYE_S, lambda: self._client.run(forget, self._folder, on_error="ignore"))
         with contextlib.suppress(Exception):
-            self._client.close(timeout=_GOODBYE_S)
+            within(_GOODBYE_S, lambda: self._client.close(timeout=_GOODBYE_S))
         self._quiet.close()
         # A worker that nobody could stop may still be writing here. Under another name the folder
         # is out of its reach, and whoever removes it finds nothing new in it. On Windows an open
@@ -144,13 +144,16 @@ class Cluster:
                 fix='install it with: pip install "trialwright[cluster]"',
                 why=missing,
             )
-        self._quiet.enter_context(_silence())
+        self._quiet.enter_context(silence())
         try:
             with warnings.catch_warnings():
                 # Versions are compared below, and told once.
                 warnings.simplefilter("ignore")
-                return Client(
-                    self._address, timeout=_CONNECT_S, set_as_default=False, name="trialwright"
+                return within(
+                    2 * _CONNECT_S,
+                    lambda: Client(
+                        self._address, timeout=_CONNECT_S, set_as_default=False, name="trialwright"
+                    ),
                 )
         except Exception as why:
             self._refuse(
@@ -164,7 +167,7 @@ class Cluster:
     def _ask_all(self) -> None:
         """Ask the scheduler and every worker whether they can work for this build."""
         try:
-            self._client.run_on_scheduler(versions)
+            within(_ANSWER_S, lambda: self._client.run_on_scheduler(versions))
         except Exception as why:
             self._refuse(
                 f"the scheduler cannot load trialwright ({_short(why)})",
@@ -173,8 +176,10 @@ class Cluster:
                 why=why,
             )
         try:
-            self._client.wait_for_workers(1, timeout=_CONNECT_S)
-            answers = self._client.run(looked, self._site, on_error="return")
+            within(_ANSWER_S, lambda: self._client.wait_for_workers(1, timeout=_CONNECT_S))
+            answers: dict[str, object] = within(
+                _ANSWER_S, lambda: self._client.run(looked, self._site, on_error="return")
+            )
             there = self._there()
         except ClusterError:
             raise
@@ -209,7 +214,10 @@ class Cluster:
         finally:
             with contextlib.suppress(Exception):
                 if waiting:
-                    self._client.cancel([future for future, _ in waiting])
+                    within(
+                        _GOODBYE_S,
+                        lambda: self._client.cancel([future for future, _ in waiting]),
+                    )
 
     def _submit(self, stage: Path, task: object) -> Future[Any]:
         """Set the cluster to a task, under a key that no other build has."""
@@ -279,7 +287,7 @@ class Cluster:
     def _there(self) -> Mapping[str, int]:
         """The workers by address, with the threads of each."""
         try:
-            there: Mapping[str, int] = self._client.nthreads()
+            there: Mapping[str, int] = within(_ANSWER_S, self._client.nthreads)
         except Exception as why:
             self._lost(why)
         return there
@@ -364,19 +372,3 @@ def _short(why: object) -> str:
     """An error of others in a line."""
     text = " ".join(str(why).split()) or "without a message"
     return f"{type(why).__name__}: {text[:200]}"
-
-
-@contextlib.contextmanager
-def _silence() -> Iterator[None]:
-    """Have the libraries say nothing by themselves: what matters of it is in our messages."""
-    names = [name for name in logging.root.manager.loggerDict if name.split(".")[0] in _TALKING]
-    loggers = [logging.getLogger(name) for name in {*names, *_TALKING}]
-    # Those without a level of their own have that of the ones above.
-    before = [(one, one.level) for one in loggers if one.level or one.name in _TALKING]
-    for one, _ in before:
-        one.setLevel(logging.CRITICAL + 1)
-    try:
-        yield
-    finally:
-        for one, level in before:
-            one.setLevel(level)
