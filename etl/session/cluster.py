@@ -370,5 +370,7 @@ def _called(task: object) -> str:
 
 def _short(why: object) -> str:
     """An error of others in a line."""
-    text = " ".join(str(why).split()) or "without a message"
+    text = " ".join(str(why).split())
+    if isinstance(why, TimeoutError) and not text:
+        return "it did not answer in time"
     return f"{type(why).__name__}: {text[:200]}"
