@@ -43,7 +43,15 @@ __all__ = [
     "trace",
 ]
 
-_ERRORS = ("DataError", "FaultError", "Finding", "Findings", "InputError", "StudyError")
+_ERRORS = (
+    "ClusterError",
+    "DataError",
+    "FaultError",
+    "Finding",
+    "Findings",
+    "InputError",
+    "StudyError",
+)
 _HOMES = {
     **dict.fromkeys(("Draft", "draft"), "etl.drafting"),
     **dict.fromkeys(_ERRORS, "etl.errors"),
