@@ -20,6 +20,7 @@ from types import TracebackType
 from typing import TYPE_CHECKING, Any, Final, NoReturn, TypeVar
 
 from etl.errors import ClusterError, Findings
+from etl.session.block_logs import BlockTask
 from etl.session.cluster_calls import silence, within
 from etl.session.cluster_work import MARK, Raised, Site, Unfit, looked, versions, work
 from etl.session.crew import Make, StageFiles, forget
@@ -358,14 +359,21 @@ def _asked_for(files: Iterable[Path]) -> tuple[tuple[Path, int], ...]:
 
 def _called(task: object) -> str:
     """A task in words."""
-    if isinstance(task, LogTask):
-        return f"the log {task.shown}"
+    logs = [one for one in task if isinstance(one, LogTask)] if isinstance(task, tuple) else []
+    if logs:
+        return _listed("log", [log.shown for log in logs])
+    if isinstance(task, BlockTask):
+        return f"a part of the log {task.log.survey.path}"
     if isinstance(task, GroupTask):
-        names = [reader.participant for reader in task.readers]
-        more = len(names) - _NAMES_TOLD
-        told = ", ".join(names[:_NAMES_TOLD]) + (f" and {more} more" if more > 0 else "")
-        return f"reader {told}" if len(names) == 1 else f"readers {told}"
+        return _listed("reader", [reader.participant for reader in task.readers])
     return "a part of the finished tables"
+
+
+def _listed(kind: str, names: list[str]) -> str:
+    """Some of some names."""
+    more = len(names) - _NAMES_TOLD
+    told = ", ".join(names[:_NAMES_TOLD]) + (f" and {more} more" if more > 0 else "")
+    return f"the {kind}{'s' if len(names) > 1 else ''} {told}"
 
 
 def _short(why: object) -> str:
