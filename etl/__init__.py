@@ -13,11 +13,20 @@ from etl.lazily import loader
 
 if TYPE_CHECKING:
     from etl.drafting import Draft, draft
-    from etl.errors import DataError, FaultError, Finding, Findings, InputError, StudyError
+    from etl.errors import (
+        ClusterError,
+        DataError,
+        FaultError,
+        Finding,
+        Findings,
+        InputError,
+        StudyError,
+    )
     from etl.session import Result, build, check, load_study, trace
     from etl.study import Study
 
 __all__ = [
+    "ClusterError",
     "DataError",
     "Draft",
     "FaultError",
@@ -34,7 +43,15 @@ __all__ = [
     "trace",
 ]
 
-_ERRORS = ("DataError", "FaultError", "Finding", "Findings", "InputError", "StudyError")
+_ERRORS = (
+    "ClusterError",
+    "DataError",
+    "FaultError",
+    "Finding",
+    "Findings",
+    "InputError",
+    "StudyError",
+)
 _HOMES = {
     **dict.fromkeys(("Draft", "draft"), "etl.drafting"),
     **dict.fromkeys(_ERRORS, "etl.errors"),

@@ -174,17 +174,36 @@ def check(study: Path, workers: int | None, *, quiet: bool) -> None:
     help="The output folder, instead of the one that STUDY names.",
 )
 @_WORKERS
+@click.option(
+    "--scheduler",
+    metavar="ADDRESS",
+    help="Have a Dask cluster do the work, in place of processes of this computer: the address of "
+    "its scheduler, such as tcp://node1:8786. The tables are the same.",
+)
 @_QUIET
-def build(study: Path, into: Path | None, workers: int | None, *, quiet: bool) -> None:
+def build(
+    study: Path, into: Path | None, workers: int | None, scheduler: str | None, *, quiet: bool
+) -> None:
     """Build the tables of STUDY.
 
     They appear all at once in the output folder that STUDY names, beside the study file. An earlier
     build there is replaced as a whole; if anything is wrong, it stays as it was and every problem
     is listed.
     """
+    if scheduler is not None and workers is not None:
+        raise click.UsageError(
+            "--workers says how many processes this computer starts, and with --scheduler it "
+            "starts none: leave one of them out"
+        )
     loaded = etl.load_study(study)
     with _progress(quiet=quiet) as progress:
-        result = etl.build(loaded, into=into, workers=workers, progress=progress)
+        result = etl.build(
+            loaded,
+            into=into,
+            workers=1 if scheduler is not None else workers,
+            progress=progress,
+            scheduler=scheduler,
+        )
     if not quiet:
         click.echo("\n".join([*result.findings.lines(), told.built(result)]))
 

@@ -281,5 +281,9 @@ class DataError(InputError):
     """A log, a table or a region definition is wrong, or does not fit the others."""
 
 
+class ClusterError(InputError):
+    """The cluster that was to do the work cannot do it, or was lost in the middle."""
+
+
 class FaultError(TrialwrightError):
     """The program contradicts itself: a fault of ours, never of the input."""

@@ -67,6 +67,7 @@ USED_IN = {
     "jinja2": {"report", "handoff"},
     "markupsafe": {"report"},
     "pandas": {"session"},
+    "distributed": {"session"},
     "shapely": {"regions"},
     "pydantic": {"study"},
     "pydantic_core": {"study"},

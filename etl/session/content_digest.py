@@ -22,7 +22,7 @@ import numpy as np
 from etl.pseudonyms import Pseudonyms
 
 #: Libraries by which the same inputs could give other results or other bytes.
-_LIBRARIES: Final = ("numpy", "pandas", "pyarrow", "pydantic", "scipy", "shapely")
+LIBRARIES: Final = ("numpy", "pandas", "pyarrow", "pydantic", "scipy", "shapely")
 _PLAIN: Final = (str, bytes, int, float, bool, complex, type(None))
 
 
@@ -137,7 +137,7 @@ def program_digest() -> str:
         SHA-256 in hexadecimal signs.
     """
     digest = hashlib.sha256(sys.version.encode())
-    for name in _LIBRARIES:
+    for name in LIBRARIES:
         digest.update(f"{name} {metadata.version(name)};".encode())
     for path, data in sorted(_files(resources.files("etl"), "")):
         _mark(digest, path, len(data))

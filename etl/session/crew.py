@@ -10,7 +10,7 @@ from __future__ import annotations
 import contextlib
 import pickle
 from collections import deque
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable, Iterable, Iterator, Mapping
 from concurrent.futures import Future, ProcessPoolExecutor
 from pathlib import Path
 from types import TracebackType
@@ -214,6 +214,19 @@ def do_task(stage: Path, task: Any) -> Any:
     return _ready[stage](task)
 
 
+def forget(folder: Path) -> None:
+    """Hold no longer what was made ready from stages in a folder.
+
+    Parameters
+    ----------
+    folder : Path
+        Of :class:`StageFiles`.
+    """
+    for stage in list(_ready):
+        if stage.parent == folder:
+            _ready.pop(stage, None)
+
+
 class Room:
     """Where a build or check works, and with whom; what it hires is let go at the end.
 
@@ -227,10 +240,17 @@ class Room:
         Called with a stage's name, how much of it is done, and how much there is.
     kept : Path or None
         What earlier builds kept; None where nothing is kept.
+    scheduler : str or None
+        The address of the cluster that does the work, whatever ``workers`` says.
     """
 
     def __init__(
-        self, folder: Path, workers: int | None, progress: Progress, kept: Path | None = None
+        self,
+        folder: Path,
+        workers: int | None,
+        progress: Progress,
+        kept: Path | None = None,
+        scheduler: str | None = None,
     ) -> None:
         if workers is not None and workers < 1:
             raise ValueError(f"workers must be 1 or more, or None, not {workers}")
@@ -239,10 +259,36 @@ class Room:
         self.progress = progress
         self.keep = kept is not None
         self.store = KeptStore(kept or folder / "earlier", folder)
+        self._scheduler = scheduler
         self._hired = contextlib.ExitStack()
 
-    def hire(self, workers: int) -> Crew:
-        """A crew of so many; for 1 this process alone."""
+    def hire(
+        self, workers: int, files: Iterable[Path] = (), names: Mapping[str, str] | None = None
+    ) -> Crew:
+        """A crew of so many; for 1 this process alone, unless there is a cluster.
+
+        Parameters
+        ----------
+        workers : int
+            How many.
+        files : iterable of Path
+            What the workers of a cluster must be able to read.
+        names : mapping of str to str, optional
+            What names that stand for others are turned back into in messages.
+
+        Returns
+        -------
+        Crew
+            Let go with the room.
+        """
+        if self._scheduler is not None:
+            # Only a build that asks for a cluster loads what speaks to one.
+            from etl.session.cluster import Cluster  # noqa: PLC0415
+
+            seen = [*files, self.store.earlier]
+            return self._hired.enter_context(
+                Cluster(self._scheduler, self.folder, seen, names or {})
+            )
         if workers == 1:
             return Alone()
         return self._hired.enter_context(Processes(workers, self.folder))

@@ -114,6 +114,7 @@ def build(
     workers: int | None = 1,
     progress: Progress = silent,
     keep: bool = True,
+    scheduler: str | None = None,
 ) -> Result:
     """Build all tables of a study.
 
@@ -134,6 +135,10 @@ def build(
         Whether to use what the build before kept beside the output folder (or, where readers have
         pseudonyms, beside the file of these), and to keep parsed logs for the next one there. The
         tables are the same bytes either way.
+    scheduler : str, optional
+        The address of a Dask cluster that does the work in place of processes of this computer; it
+        needs the optional libraries of ``trialwright[cluster]`` and a file system that all its
+        workers share. The tables are the same bytes.
 
     Returns
     -------
@@ -145,7 +150,13 @@ def build(
     DataError
         If anything is wrong with an input, or the output folder may not be replaced. Nothing is
         written then.
+    ClusterError
+        If the cluster cannot do the work, or is lost in the middle. Nothing is written then.
     """
+    if scheduler is not None and workers not in (None, 1):
+        raise ValueError(
+            "workers says how many processes this computer starts; with a scheduler it starts none"
+        )
     started = time.perf_counter()
     target = Path(into) if into is not None else study.folder / study.output.folder
     shown = shown_path(study, study.output.folder) if into is None else str(into)
@@ -155,7 +166,8 @@ def build(
         published(target, shown) as shop,
         own_faults(),
         nullcontext(open_key(study, findings, target=target)) as held,
-        Room(shop.kept, workers, progress, kept_folder(target, held) if keep else None) as room,
+        nullcontext(kept_folder(target, held) if keep else None) as kept,
+        Room(shop.kept, workers, progress, kept, scheduler) as room,
     ):
         examined = examine(study, room, findings, held)
         if examined is None:
@@ -255,7 +267,11 @@ def examine(
         plan, logs = make_plan(study, findings, pseudonyms)
     by_consensus = plan is not None and plan.lines is not None and plan.lines.method == "consensus"
     worth = _WORTH_WORKERS_BY_CONSENSUS_BYTES if by_consensus else _WORTH_WORKERS_BYTES
-    crew = room.hire(_workers(room.workers, logs, worth))
+    crew = room.hire(
+        _workers(room.workers, logs, worth),
+        [study.path, *(path for path, _ in logs)],
+        findings.names,
+    )
     alone = reader_for(_logs_alone(study), study.screen, pseudonyms=pseudonyms)
     reader = plan.reader if plan is not None else alone
     # Processes of their own share nothing in memory: then everything goes to the disk.
