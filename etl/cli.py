@@ -180,9 +180,21 @@ def check(study: Path, workers: int | None, *, quiet: bool) -> None:
     help="Have a Dask cluster do the work, in place of processes of this computer: the address of "
     "its scheduler, such as tcp://node1:8786. The tables are the same.",
 )
+@click.option(
+    "--no-keep",
+    is_flag=True,
+    help="Do without what earlier builds kept beside the output folder, and keep nothing for the "
+    "next one. The tables are the same.",
+)
 @_QUIET
 def build(
-    study: Path, into: Path | None, workers: int | None, scheduler: str | None, *, quiet: bool
+    study: Path,
+    into: Path | None,
+    workers: int | None,
+    scheduler: str | None,
+    *,
+    no_keep: bool,
+    quiet: bool,
 ) -> None:
     """Build the tables of STUDY.
 
@@ -202,6 +214,7 @@ def build(
             into=into,
             workers=1 if scheduler is not None else workers,
             progress=progress,
+            keep=not no_keep,
             scheduler=scheduler,
         )
     if not quiet:

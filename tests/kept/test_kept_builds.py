@@ -14,6 +14,7 @@ from pathlib import Path
 import pytest
 
 import etl
+from etl.cli import main
 from etl.parsers.table_log import TableReader
 from etl.session import group_work, reader_groups
 from etl.session.bench import Bench
@@ -273,6 +274,9 @@ def test_build_that_fails_keeps_nothing_new(study_file: Path) -> None:
 def test_keep_can_be_refused(study_file: Path) -> None:
     """Nothing is kept, nothing that was is used."""
     build(study_file, keep=False)
+    assert not kept_of(study_file).exists()
+    ran = CliRunner().invoke(main, ["build", str(study_file), "--no-keep"])
+    assert ran.exit_code == 0, ran.output
     assert not kept_of(study_file).exists()
 
 
