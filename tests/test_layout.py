@@ -50,6 +50,7 @@ MAY_USE = {
         *("pseudonyms", "cells", "coding", "screening", "lines", "export", "report", "readiness"),
         *("handoff", "lazily"),
     },
+    "start": {"cli"},
     "cli": {"etl", "session"},
     "etl": {"drafting", "errors", "lazily", "session", "study"},
 }
