@@ -174,7 +174,7 @@ def test_only_the_command_prints_and_exits() -> None:
     speaking |= {"sys.stdout.write", "sys.stderr.write"}
     strays = []
     for path in MODULES:
-        if path == PACKAGE / "cli.py":
+        if path in (PACKAGE / "cli.py", PACKAGE / "start.py"):
             continue
         strays += [
             f"{path.name}:{node.lineno}: {ast.unparse(node.func)}"
@@ -252,7 +252,7 @@ def documented() -> list[str]:
 def exported() -> list[str]:
     """Full names of the functions that the package and its rooms offer to others."""
     names = set()
-    for room in MAY_USE.keys() - {"cli"}:
+    for room in MAY_USE.keys() - {"cli", "start"}:
         module = importlib.import_module("etl" if room == "etl" else f"etl.{room}")
         for name in getattr(module, "__all__", ()):
             offered = getattr(module, name)
