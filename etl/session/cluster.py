@@ -21,7 +21,7 @@ from typing import TYPE_CHECKING, Any, Final, NoReturn, TypeVar
 
 from etl.errors import ClusterError, Findings
 from etl.session.block_logs import BlockTask
-from etl.session.cluster_calls import silence, within
+from etl.session.cluster_calls import knock, silence, within
 from etl.session.cluster_work import MARK, Raised, Site, Unfit, looked, versions, work
 from etl.session.crew import Make, StageFiles, forget
 from etl.session.reader_groups import GroupTask
@@ -150,6 +150,8 @@ class Cluster:
             with warnings.catch_warnings():
                 # Versions are compared below, and told once.
                 warnings.simplefilter("ignore")
+                # A client that does not come about talks while it goes; so we knock first.
+                within(2 * _CONNECT_S, lambda: knock(self._address, _CONNECT_S))
                 return within(
                     2 * _CONNECT_S,
                     lambda: Client(

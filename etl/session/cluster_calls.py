@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import asyncio
 import concurrent.futures
 import contextlib
 import logging
@@ -56,6 +57,31 @@ def within(seconds: float, ask: Callable[[], Given]) -> Given:
     while not answer.done() and time.monotonic() < end:
         concurrent.futures.wait([answer], timeout=_STEP_S)
     return answer.result(timeout=0)
+
+
+def knock(address: str, seconds: float) -> None:
+    """See whether anything at an address speaks as the parts of a cluster do.
+
+    Parameters
+    ----------
+    address : str
+        Of a scheduler.
+    seconds : float
+        How long it may take to answer.
+
+    Raises
+    ------
+    Exception
+        Of many kinds, if there is no answer.
+    """
+    from distributed.comm.core import connect  # noqa: PLC0415  (few builds need it)
+    from distributed.security import Security  # noqa: PLC0415
+
+    async def knocking() -> None:
+        keys = Security().get_connection_args("client")
+        (await connect(address, timeout=seconds, **keys)).abort()
+
+    asyncio.run(knocking())
 
 
 @contextlib.contextmanager

@@ -306,6 +306,15 @@ def test_nothing_at_the_address(study_file: Path, monkeypatch: pytest.MonkeyPatc
             assert "expected the address of one that runs" in told
 
 
+def test_refused_address_leaves_no_word_of_others(study_file: Path) -> None:
+    """What the libraries say while they give up stays out of the message."""
+    ran = run("build", study_file, "--scheduler", "tls://127.0.0.1:1")
+    assert ran.status == 2
+    assert ran.err.startswith("tls://127.0.0.1:1: no Dask scheduler answers here (")
+    assert ran.err.endswith("1 problem; nothing was written\n")
+    assert len(ran.err.splitlines()) == 3
+
+
 def test_library_is_not_installed(study_file: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     """The message says what to install."""
     monkeypatch.setitem(sys.modules, "distributed", None)
