@@ -148,7 +148,7 @@ class Pseudonyms:
     """Gives pseudonyms, and remembers of whom.
 
     Can be pickled: a worker process has a copy, what that has learnt comes back by
-    :meth:`learnt_since` and :meth:`learn`.
+    ``noted`` and :meth:`learn`.
 
     Parameters
     ----------
@@ -174,6 +174,8 @@ class Pseudonyms:
         #: Pseudonyms that stand for two: the pseudonym, and both.
         self.clashes: dict[str, tuple[str, str]] = {}
         self._patterns: _Found | None = None
+        #: Where what is given is noted meanwhile.
+        self.noted: dict[str, str] | None = None
 
     def __getstate__(self) -> dict[str, Any]:
         """All but what can be made again."""
@@ -213,12 +215,10 @@ class Pseudonyms:
         """Take over what others have given."""
         for pseudonym, original in others.items():
             known = self.originals.setdefault(pseudonym, original)
+            if self.noted is not None:
+                self.noted[pseudonym] = known
             if known != original:
                 self.clashes.setdefault(pseudonym, (known, original))
-
-    def learnt_since(self, before: int) -> dict[str, str]:
-        """What was added since ``originals`` had so many entries."""
-        return dict(list(self.originals.items())[before:])
 
     def readers(self) -> dict[str, str]:
         """The readers by pseudonym."""

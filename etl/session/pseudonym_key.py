@@ -91,6 +91,28 @@ def is_key_file(study: Study, path: Path) -> bool:
     return study.output.pseudonyms or own.read_bytes()[: len(begins)] == begins
 
 
+def refuse_key_inside(study: Study, target: Path) -> None:
+    """Refuse an output folder that would hold the key to the study's pseudonyms.
+
+    Parameters
+    ----------
+    study : Study
+        As loaded.
+    target : Path
+        The output folder.
+
+    Raises
+    ------
+    DataError
+        If it would.
+    """
+    wrong = Findings()
+    if study.output.pseudonyms:
+        _refuse_inside(key_path(study), target, wrong)
+    if wrong.failed:
+        raise DataError(wrong)
+
+
 def open_key(
     study: Study, findings: Findings, *, target: Path | None = None, needed: bool = False
 ) -> KeyFile | None:
@@ -103,7 +125,7 @@ def open_key(
     findings : Findings
         Where it is recorded that others may read the file.
     target : Path, optional
-        The output folder of a build, which must not hold the file. Only for a build is a new key
+        The output folder of a build. Only for a build is a new key
         made, and a permission narrowed; without one, pseudonyms that nobody knows yet are such as
         nobody will see.
     needed : bool
@@ -117,14 +139,11 @@ def open_key(
     Raises
     ------
     DataError
-        If the file is damaged, cannot be read, or would lie in the output folder; or is needed and
-        not there.
+        If the file is damaged or cannot be read; or is needed and not there.
     """
     if not study.output.pseudonyms:
         return None
     path, wrong = key_path(study), Findings()
-    if target is not None:
-        _refuse_inside(path, target, wrong)
     stored = _stored(path, wrong)
     if stored is None and needed and not wrong.failed:
         wrong.error(

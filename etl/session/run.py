@@ -42,7 +42,7 @@ from etl.session.log_tellings import (
 from etl.session.notice_logs import notice_logs
 from etl.session.plan import Plan, make_plan
 from etl.session.pseudonym_guards import refuse_clashes
-from etl.session.pseudonym_key import KeyFile, known_by, open_key, save_key
+from etl.session.pseudonym_key import KeyFile, known_by, open_key, refuse_key_inside, save_key
 from etl.session.pseudonym_record import for_record, hidden_inputs, told_study, under_pseudonyms
 from etl.session.result import Result
 from etl.session.told import summary
@@ -160,6 +160,7 @@ def build(
     started = time.perf_counter()
     target = Path(into) if into is not None else study.folder / study.output.folder
     shown = shown_path(study, study.output.folder) if into is None else str(into)
+    refuse_key_inside(study, target)
     findings = Findings()
     groups_kept: list[str] = []
     with (

@@ -13,7 +13,7 @@ from etl.pseudonyms import Pseudonyms
 from etl.session.block_logs import BlockTask, KeptBlock, keep_blocks
 from etl.session.crew import Crew
 from etl.session.kept_logs import Aside
-from etl.session.work import LogAnswer, LogTask, LogWork, answer_of
+from etl.session.work import LogAnswer, LogTask, LogWork, answer_of, noted
 
 Arguments = tuple[LogReader, Aside, Pseudonyms | None]
 
@@ -38,14 +38,15 @@ class BlockWork:
 
     def __call__(self, task: BlockTask) -> list[KeptBlock] | Exception:
         """Read some blocks; what stands against it is an answer, too."""
-        before = 0 if self._pseudonyms is None else len(self._pseudonyms.originals)
+        hidden = self._pseudonyms
         try:
-            kept = list(keep_blocks(task, self._reader, self._aside))
+            with noted(hidden) as given:
+                kept = list(keep_blocks(task, self._reader, self._aside))
         except (WholeNeededError, OSError) as why:
             return why
-        if self._pseudonyms is not None and kept:
-            kept[-1].originals = self._pseudonyms.learnt_since(before)
-            kept[-1].clashes = dict(self._pseudonyms.clashes)
+        if hidden is not None and kept:
+            kept[-1].originals = given
+            kept[-1].clashes = dict(hidden.clashes)
         return kept
 
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Iterator, Sequence
-from contextlib import suppress
+from contextlib import contextmanager, suppress
 from dataclasses import dataclass, field
 from pathlib import Path
 
@@ -118,14 +118,15 @@ class LogWork:
                 answer = self._kept(self.name(task, digest_of(task.path)))
                 if answer is not None:
                     return answer
-        before = 0 if self._pseudonyms is None else len(self._pseudonyms.originals)
-        batches: list[pa.RecordBatch] = []
-        answer = self._read_big(task)
-        if answer is None:
-            answer, batches = self._read(task)
-        if self._pseudonyms is not None:
-            answer.originals = self._pseudonyms.learnt_since(before)
-            answer.clashes = dict(self._pseudonyms.clashes)
+        hidden = self._pseudonyms
+        with noted(hidden) as given:
+            batches: list[pa.RecordBatch] = []
+            answer = self._read_big(task)
+            if answer is None:
+                answer, batches = self._read(task)
+        if hidden is not None:
+            answer.originals = given
+            answer.clashes = dict(hidden.clashes)
         if answer.kept:
             self._aside.put(answer.kept, answer, batches)
         return answer
@@ -187,6 +188,32 @@ class LogWork:
         else:  # by what was read, which came from more files than one
             answer.kept = content_digest(arrays_of(log), task.shown, self._key) + LOG
         return answer, batches
+
+
+@contextmanager
+def noted(pseudonyms: Pseudonyms | None) -> Iterator[dict[str, str]]:
+    """Note the pseudonyms that are given meanwhile, those that were given before too.
+
+    Parameters
+    ----------
+    pseudonyms : Pseudonyms or None
+        What gives them.
+
+    Yields
+    ------
+    dict of str to str
+        What each stands for. All of them: an entry that is kept must tell of every reader of its
+        log, also where the log that told first is gone at the next build.
+    """
+    given: dict[str, str] = {}
+    if pseudonyms is None:
+        yield given
+        return
+    before, pseudonyms.noted = pseudonyms.noted, given
+    try:
+        yield given
+    finally:
+        pseudonyms.noted = before
 
 
 def answer_of(

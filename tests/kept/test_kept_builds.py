@@ -17,7 +17,7 @@ from click.testing import CliRunner
 import etl
 from etl.cli import main
 from etl.parsers.table_log import TableReader
-from etl.session import group_work, reader_groups
+from etl.session import group_work, reader_groups, work
 from etl.session.bench import Bench
 from etl.session.kept_store import GROUP, LOG, KeptStore, head_of
 from etl.session.reader import GroupTables, ReaderGroup
@@ -378,3 +378,33 @@ def test_groups_are_named_by_all_that_they_hang_on(study_file: Path) -> None:
         build(study_file)
     other = names_in(kept_of(study_file))
     assert not {name for name in names & other if name.endswith(GROUP)}
+
+
+def test_pseudonyms_are_known_from_whichever_log_is_left(study_file: Path, tmp_path: Path) -> None:
+    """A reader with two logs, of which the first goes: the entry of the other names the reader."""
+    edit(study_file, "[output]\n", "[output]\npseudonyms = true\n")
+    logs = study_file.parent / "logs"
+    whole = (logs / "R05.tsv").read_text(encoding="utf-8").splitlines(keepends=True)
+    half = next(row for row, line in enumerate(whole) if line.startswith("R05\t3\t"))
+    (logs / "R05.tsv").write_text("".join(whole[:half]), encoding="utf-8")
+    (logs / "R05b.tsv").write_text("".join([whole[0], *whole[half:]]), encoding="utf-8")
+    build(study_file)
+    key = study_file.with_name("study_pseudonyms.csv")
+    assert ",R05" in key.read_text(encoding="utf-8")
+    (logs / "R05.tsv").unlink()
+    trials = study_file.parent / "trial_list.csv"
+    lines = trials.read_text(encoding="utf-8").splitlines(keepends=True)
+    gone = ("R05,1,", "R05,2,")
+    trials.write_text("".join(x for x in lines if not x.startswith(gone)), encoding="utf-8")
+    answers: list[dict[str, str]] = []
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(
+            work.LogWork,
+            "__call__",
+            lambda self, tasks, real=work.LogWork.__call__: [
+                answers.append(answer.originals) or answer for answer in real(self, tasks)
+            ],
+        )
+        made = build(study_file)
+    assert made == fresh(study_file, tmp_path / "other")
+    assert sum("R05" in given.values() for given in answers) == 1
