@@ -6,6 +6,7 @@ import json
 import os
 import re
 import stat
+import types
 from collections.abc import Callable
 from pathlib import Path
 
@@ -13,6 +14,7 @@ import pytest
 
 import etl
 from etl.pseudonyms import signs_of
+from etl.session import pseudonym_owner
 from etl.session.pseudonym_key import KeyFile, open_key, save_key
 from tests.bad_input.small_study import SmallStudy
 from tests.end_to_end.building import build, tables_of
@@ -458,7 +460,9 @@ def test_key_file_that_cannot_be_written_is_refused(
     def full(_descriptor: int) -> None:
         raise OSError(28, "No space left on device")
 
-    monkeypatch.setattr(os, "fsync", full)
+    # For this file only: the output is brought to the disk before.
+    own = types.SimpleNamespace(**{**vars(os), "fsync": full})
+    monkeypatch.setattr(pseudonym_owner, "os", own)
     assert (
         f"{KEY}: the key to the pseudonyms cannot be written (No space left on device)"
     ) in study.refusal()
