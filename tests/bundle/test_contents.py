@@ -8,7 +8,7 @@ from pathlib import Path
 
 import pytest
 
-from etl.export import writers
+from etl.session import reader_groups
 from tests.end_to_end.building import TABLES, files_of
 from tests.handoff.bundles import bundle_of, small_study
 
@@ -72,7 +72,7 @@ def test_csv_made_from_several_row_groups_has_the_same_bytes(
     tmp_path: Path, with_csv: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     """A table that was written in parts is copied part by part, without a second header."""
-    monkeypatch.setattr(writers, "CELLS_A_GROUP", 100)
+    monkeypatch.setattr(reader_groups, "FIXATIONS_A_GROUP", 1)
     small = bundle_of(small_study(tmp_path / "s", FACTORS, formats='["parquet"]'))
     for table in ("outcomes_wide.csv", "trials.csv"):
         assert (small / table).read_bytes() == (with_csv / table).read_bytes()

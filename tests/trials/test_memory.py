@@ -12,8 +12,9 @@ import pytest
 
 import etl
 from etl.errors import Findings
+from etl.session.all_logs import read_logs
 from etl.session.crew import Alone
-from etl.session.gather import gather, read_logs
+from etl.session.gather import gather
 from etl.session.kept_logs import Aside, Shelf
 from etl.session.kept_store import KeptStore
 from etl.session.plan import Plan, make_plan
