@@ -73,6 +73,22 @@ class _AskedToEndError(KeyboardInterrupt):
         self.number = number
 
 
+#: The signals that came. A library may lose the interruption that one raises; so it is looked at
+#: again whenever something is done, and before anything is published.
+_asked: list[int] = []
+
+
+def _heeding(show: Callable[[str, int, int], None]) -> Callable[[str, int, int], None]:
+    """Progress that ends the command where a signal asked for it."""
+
+    def heed(stage: str, done: int, total: int) -> None:
+        if _asked:
+            raise _AskedToEndError(_asked[0])
+        show(stage, done, total)
+
+    return heed
+
+
 @contextmanager
 def _answering_signals() -> Iterator[None]:
     """Turn every signal that asks the program to end into an interruption, which tidies up."""
@@ -80,9 +96,11 @@ def _answering_signals() -> Iterator[None]:
         yield
         return
     first: list[float] = []
+    _asked.clear()
 
     def answer(number: int, _: FrameType | None) -> None:
         now = time.monotonic()
+        _asked.append(number)
         if not first or now - first[-1] > _TIDYING_S:
             first.append(now)
             raise _AskedToEndError(number)
@@ -301,7 +319,7 @@ def completion(shell: str) -> None:
 def _progress(*, quiet: bool) -> Iterator[Callable[[str, int, int], None]]:
     """A progress bar on stderr, only where that is a terminal."""
     if quiet or not sys.stderr.isatty():
-        yield lambda _stage, _done, _total: None
+        yield _heeding(lambda _stage, _done, _total: None)
         return
     columns = (
         TextColumn("{task.description}"),
@@ -317,7 +335,7 @@ def _progress(*, quiet: bool) -> Iterator[Callable[[str, int, int], None]]:
                 stages[stage] = bars.add_task(stage, total=total)
             bars.update(stages[stage], completed=done)
 
-        yield show
+        yield _heeding(show)
 
 
 def run() -> NoReturn:

@@ -25,12 +25,14 @@ _MAGIC: Final = b"trialwright kept 1\n"
 _DIGEST_BYTES: Final = 32
 _LENGTH_BYTES: Final = 8
 _BEFORE: Final = len(_MAGIC) + _DIGEST_BYTES + _LENGTH_BYTES
+_PIECE_BYTES: Final = 1 << 20
 #: Arrow reads without copying what begins at a multiple of so many bytes.
 _ALIGNED: Final = 64
 #: Entries of logs, and of groups of readers.
 LOG, GROUP = ".log", ".group"
 #: The mark by which programs that make copies know a folder that can be made again (Cache Directory
 #: Tagging Specification, https://bford.info/cachedir/).
+_TAG_NAME, _TOLD_NAME = "CACHEDIR.TAG", "README.txt"
 _TAG: Final = """\
 Signature: 8a477f597d28d172789f06886806bc55
 # Kept by trialwright so that the next build is quicker.
@@ -130,7 +132,9 @@ class KeptStore:
         path = self.fresh / name
         data = pickle.dumps(head, protocol=pickle.HIGHEST_PROTOCOL)
         data += bytes(-(len(data) + _BEFORE) % _ALIGNED)
-        digest = hashlib.sha256(data)
+        # Of the name too: an entry that lies under another's name is none.
+        digest = hashlib.sha256(name.encode("utf-8"))
+        digest.update(data)
         if body is not None:
             digest.update(body)
         # Two logs with the same content may be read at the same time.
@@ -156,7 +160,7 @@ class KeptStore:
         wanted = set(used)
         with contextlib.suppress(OSError):
             self.earlier.mkdir(mode=0o700, parents=True, exist_ok=True)
-            for name, text in (("CACHEDIR.TAG", _TAG), ("README.txt", _TOLD)):
+            for name, text in ((_TAG_NAME, _TAG), (_TOLD_NAME, _TOLD)):
                 if not (self.earlier / name).exists():
                     (self.earlier / name).write_text(text, encoding="utf-8", newline="\n")
             for path in list(self.earlier.iterdir()):
@@ -167,30 +171,31 @@ class KeptStore:
                     path.replace(self.earlier / path.name)
 
 
+def forget(folder: Path) -> None:
+    """Remove what builds kept in a folder, and the folder if nothing else is in it.
+
+    Parameters
+    ----------
+    folder : Path
+        Need not be there; where it cannot be written it stays.
+    """
+    with contextlib.suppress(OSError):
+        for path in list(folder.iterdir()):
+            if path.suffix in (LOG, GROUP) or path.name in (_TAG_NAME, _TOLD_NAME):
+                path.unlink()
+        folder.rmdir()
+
+
 def _is_whole(path: Path) -> bool:
-    """Whether an entry is what was written."""
+    """Whether an entry is what was written under that name."""
+    digest = hashlib.sha256(path.name.encode("utf-8"))
     with path.open("rb") as file:
         before = file.read(_BEFORE)
         if len(before) < _BEFORE or not before.startswith(_MAGIC):
             return False
-        digest = hashlib.file_digest(_Rest(file), "sha256").digest()
-    return digest == before[len(_MAGIC) : -_LENGTH_BYTES]
-
-
-class _Rest(io.RawIOBase):
-    """A file from where it stands on."""
-
-    def __init__(self, file: io.BufferedReader) -> None:
-        super().__init__()
-        self._file = file
-
-    def readable(self) -> bool:
-        """It is."""
-        return True
-
-    def readinto(self, buffer: Any) -> int:
-        """Read some."""
-        return self._file.readinto(buffer)
+        while piece := file.read(_PIECE_BYTES):
+            digest.update(piece)
+    return digest.digest() == before[len(_MAGIC) : -_LENGTH_BYTES]
 
 
 def head_of(path: Path) -> Any:

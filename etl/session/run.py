@@ -12,6 +12,8 @@ from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
+import pandas as pd  # noqa: F401  (pyarrow would load it in a call that loses an interruption)
+
 from etl.errors import DataError, FaultError, Findings
 from etl.export.accounts import write_accounts
 from etl.export.log_accounts import write_log_accounts
@@ -30,6 +32,7 @@ from etl.session.gallery import drawn
 from etl.session.gather import Gathered, gather
 from etl.session.hand_over import describe, hand_over
 from etl.session.kept_logs import ROOM_BYTES, Aside, Shelf
+from etl.session.kept_places import kept_folder, settle_kept
 from etl.session.log_tellings import (
     account_for_moved,
     check_nothing_lost,
@@ -214,13 +217,12 @@ def build(
             time.perf_counter() - started,
             "" if held is None else known_by(held.pseudonyms.key),
         ).write(shop.fresh)
+        progress("publishing", 1, 1)
         # The key is written when nothing is left to go wrong but moving a folder.
         shop.settle()
         if held is not None:
             save_key(held)
-        if keep:
-            logs_kept = [name for answer in answers for name, _ in answer.entries()]
-            room.store.settle([*logs_kept, *groups_kept])
+        settle_kept(room.store, target, held, used=_used(answers, groups_kept) if keep else ())
     key = None if held is None else held.path
     return Result(target, told, rows, findings, described.readiness, key)
 
@@ -297,24 +299,9 @@ def examine(
     return None if gathered is None else (plan, gathered, told, crew)
 
 
-def kept_folder(target: Path, held: KeyFile | None) -> Path:
-    """Where a build keeps parsed logs for the next one.
-
-    Parameters
-    ----------
-    target : Path
-        The output folder.
-    held : KeyFile or None
-        The pseudonyms of the study. What is kept names readers by id, too, where they have
-        pseudonyms; so it lies where these are kept, and not where the output is.
-
-    Returns
-    -------
-    Path
-    """
-    target = target.resolve()
-    beside = target if held is None else held.path.resolve().with_name(target.name)
-    return beside.with_name(f"{beside.name}.kept")
+def _used(answers: list[LogAnswer], groups: list[str]) -> list[str]:
+    """The kept entries that a build has used."""
+    return [name for answer in answers for name, _ in answer.entries()] + groups
 
 
 def _logs_alone(study: Study) -> Logs:

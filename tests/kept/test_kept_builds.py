@@ -228,6 +228,19 @@ def test_damaged_entries_count_as_none(study_file: Path, ending: str, how: str) 
     assert files_of(kept_of(study_file)) == sound
 
 
+def test_entries_under_each_others_names_count_as_none(study_file: Path, parsed: list[str]) -> None:
+    """As a careless copy may leave them: whole, but not what their names say."""
+    first = build(study_file)
+    for ending in (LOG, GROUP):
+        one, other, *_ = sorted(kept_of(study_file).glob(f"*{ending}"))
+        here, there = one.read_bytes(), other.read_bytes()
+        one.write_bytes(there)
+        other.write_bytes(here)
+    parsed.clear()
+    assert build(study_file) == first
+    assert len(parsed) == 2
+
+
 def test_kept_folder_may_be_deleted(study_file: Path, parsed: list[str]) -> None:
     """It says so itself."""
     first = build(study_file)
@@ -292,11 +305,13 @@ def test_where_readers_have_pseudonyms_kept_logs_lie_with_the_key(
     study_file: Path, tmp_path: Path, parsed: list[str]
 ) -> None:
     """What is kept names readers by id; the place of the output is for who must not know them."""
-    edit(study_file, "[output]\n", "[output]\npseudonyms = true\n")
     into = tmp_path / "sent"
+    etl.build(etl.load_study(study_file), into=into)
+    assert names_in(tmp_path) == {"lab", "sent", "sent.kept"}
+    edit(study_file, "[output]\n", "[output]\npseudonyms = true\n")
     study = etl.load_study(study_file)
     first = files_of(etl.build(study, into=into).folder)
-    assert names_in(tmp_path) == {"lab", "sent"}
+    assert names_in(tmp_path) == {"lab", "sent"}, "what was kept without pseudonyms is gone"
     assert (study_file.parent / "sent.kept").is_dir()
     parsed.clear()
     assert files_of(etl.build(study, into=into).folder) == first
