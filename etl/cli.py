@@ -19,7 +19,7 @@ from rich.console import Console
 from rich.progress import BarColumn, MofNCompleteColumn, Progress, TextColumn, TimeRemainingColumn
 
 import etl
-from etl.session import Wanted, explained, told, write_lines, write_picture
+from etl.session import PUBLISHED, Wanted, explained, told, write_lines, write_picture
 
 INPUT_WRONG = 2
 FAULT = 1
@@ -76,12 +76,18 @@ class _AskedToEndError(KeyboardInterrupt):
 #: The signals that came. A library may lose the interruption that one raises; so it is looked at
 #: again whenever something is done, and before anything is published.
 _asked: list[int] = []
+#: Whether a build is in its place.
+_published: list[bool] = []
 
 
 def _heeding(show: Callable[[str, int, int], None]) -> Callable[[str, int, int], None]:
     """Progress that ends the command where a signal asked for it."""
 
     def heed(stage: str, done: int, total: int) -> None:
+        if stage == PUBLISHED:
+            # Nothing is left but to say what was built: that is no time to be interrupted.
+            _published.append(True)
+            return
         if _asked:
             raise _AskedToEndError(_asked[0])
         show(stage, done, total)
@@ -97,8 +103,11 @@ def _answering_signals() -> Iterator[None]:
         return
     first: list[float] = []
     _asked.clear()
+    _published.clear()
 
     def answer(number: int, _: FrameType | None) -> None:
+        if _published:
+            return
         now = time.monotonic()
         _asked.append(number)
         if not first or now - first[-1] > _TIDYING_S:

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 from etl.lazily import loader
 
 if TYPE_CHECKING:
+    from etl.session.crew import PUBLISHED
     from etl.session.line_file import write_lines
     from etl.session.loading import load_study
     from etl.session.one_trial import Wanted, explained, trace, write_picture
@@ -14,6 +15,7 @@ if TYPE_CHECKING:
     from etl.session.run import build, check
 
 __all__ = [
+    "PUBLISHED",
     "Result",
     "Wanted",
     "build",
@@ -28,6 +30,7 @@ __all__ = [
 _HOMES = {
     **dict.fromkeys(("build", "check"), "etl.session.run"),
     **dict.fromkeys(("Wanted", "explained", "trace", "write_picture"), "etl.session.one_trial"),
+    "PUBLISHED": "etl.session.crew",
     "Result": "etl.session.result",
     "load_study": "etl.session.loading",
     "write_lines": "etl.session.line_file",

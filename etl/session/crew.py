@@ -23,6 +23,8 @@ Task = TypeVar("Task")
 Answer = TypeVar("Answer")
 Make = Callable[..., Callable[[Task], Answer]]
 Progress = Callable[[str, int, int], None]
+#: The last stage that a build tells of: it is in its place.
+PUBLISHED: Final = "published"
 
 #: Tasks that are under way, or done and waiting to be taken, for each worker: enough for none to
 #: be idle, few enough for memory not to grow with the number of tasks.

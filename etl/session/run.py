@@ -27,7 +27,7 @@ from etl.parsers import reader_for
 from etl.report import AuditInput, write_audit
 from etl.session.all_groups import finish_groups
 from etl.session.all_logs import read_logs
-from etl.session.crew import Crew, Progress, Room, silent
+from etl.session.crew import PUBLISHED, Crew, Progress, Room, silent
 from etl.session.gallery import drawn
 from etl.session.gather import Gathered, gather
 from etl.session.hand_over import describe, hand_over
@@ -223,6 +223,7 @@ def build(
         if held is not None:
             save_key(held)
         settle_kept(room.store, target, held, used=_used(answers, groups_kept) if keep else ())
+    progress(PUBLISHED, 1, 1)
     key = None if held is None else held.path
     return Result(target, told, rows, findings, described.readiness, key)
 

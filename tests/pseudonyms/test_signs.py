@@ -14,6 +14,7 @@ import pytest
 from etl import pseudonyms
 from etl.files import Coded
 from etl.pseudonyms import SIGNS, Pseudonyms, is_distinctive, is_reader, signs_of
+from etl.session.work import noted
 
 KEY = bytes(range(32))
 
@@ -105,8 +106,11 @@ def test_copy_of_a_worker_tells_what_it_learnt() -> None:
     held = Pseudonyms(KEY, Path("study"))
     held.of_reader("P01")
     copy = pickle.loads(pickle.dumps(held))  # noqa: S301  (our own bytes)
-    name = copy.of_reader("P02")
-    held.learn(copy.learnt_since(1))
+    with noted(copy) as given:
+        name = copy.of_reader("P02")
+        known = copy.of_reader("P01")
+    assert given == {name: "P02", known: "P01"}
+    held.learn(given)
     assert held.originals == {held.of_reader("P01"): "P01", name: "P02"}
 
 
