@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Collection, Mapping, Sequence
+from collections.abc import Collection, Mapping
 from dataclasses import dataclass
 from typing import Final
 
@@ -56,23 +56,20 @@ class PartMaker:
             name: _TableParts(design.columns(name), wanted) for name, wanted in formats.items()
         }
 
-    def parts(self, batches: Sequence[Mapping[str, pa.RecordBatch]]) -> dict[str, Part]:
-        """The rows of some readers, one after the other, as parts of every table.
+    def parts(self, batches: Mapping[str, pa.RecordBatch]) -> dict[str, Part]:
+        """The rows of some readers as parts of every table.
 
         Parameters
         ----------
-        batches : sequence of mapping of str to pa.RecordBatch
-            Rows by table.
+        batches : mapping of str to pa.RecordBatch
+            Rows by table; a table that is not there has none.
 
         Returns
         -------
         dict of str to Part
             By table.
         """
-        return {
-            name: table.part([own[name] for own in batches if name in own])
-            for name, table in self._tables.items()
-        }
+        return {name: table.part(batches.get(name)) for name, table in self._tables.items()}
 
 
 class _TableParts:
@@ -84,10 +81,10 @@ class _TableParts:
         self._parquet = "parquet" in formats
         self._csv_schema = csv_schema(columns) if "csv" in formats else None
 
-    def part(self, batches: Sequence[pa.RecordBatch]) -> Part:
-        """The rows of some batches."""
-        # Without batches that have no row: the CSV writer puts what lies in memory in their place.
-        some = [batch for batch in batches if batch.num_rows]
+    def part(self, batch: pa.RecordBatch | None) -> Part:
+        """The rows of a batch."""
+        # One without rows is left out: the CSV writer may put what lies in memory in its place.
+        some = [batch] if batch is not None and batch.num_rows else []
         table = pa.Table.from_batches(some, self._schema)
         return Part(
             len(table),
@@ -167,13 +164,8 @@ def _safe_column(column: pa.ChunkedArray) -> pa.ChunkedArray:
     """A column as it may stand in a CSV file."""
     if not pa.types.is_dictionary(column.type):
         return column
-    chunks, before, after = [], None, None
-    for chunk in column.chunks:
-        # Batches may share their texts: those of the one before are looked at once.
-        if before is None or not chunk.dictionary.equals(before):
-            before, after = chunk.dictionary, safe_array(chunk.dictionary)
-        same = after is before
-        chunks.append(
-            chunk if same else pa.DictionaryArray.from_arrays(chunk.indices, after, safe=False)
-        )
+    chunks = [
+        pa.DictionaryArray.from_arrays(chunk.indices, safe_array(chunk.dictionary), safe=False)
+        for chunk in column.chunks
+    ]
     return pa.chunked_array(chunks, column.type)

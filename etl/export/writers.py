@@ -85,7 +85,7 @@ class TableWriters:
         csv_apart: Mapping[str, Path] | None = None,
     ) -> None:
         apart = csv_apart or {}
-        empty = PartMaker(design, formats).parts([])
+        empty = PartMaker(design, formats).parts({})
         self._writers: dict[str, TableWriter] = {}
         with contextlib.ExitStack() as stack:
             stack.callback(self._abandon)

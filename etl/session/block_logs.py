@@ -135,11 +135,7 @@ def keep_blocks(task: BlockTask, reader: TableReader, aside: Aside) -> Iterator[
         log, kept.answer.log = kept.answer.log, None
         if log is not None and kept.answer.part.sound:
             kept.trials = distinct_runs(trial_runs(log))
-            batches, readers = batches_of(log)
-            kept.batches = {name: number for number, name in enumerate(readers)}
-            kept.fixations = {
-                name: batch.num_rows for name, batch in zip(readers, batches, strict=True)
-            }
+            batches, kept.batches, kept.fixations = batches_of(log)
             name = block_name(task.kept, place)
             aside.put(name, None, batches)
             if len(log):

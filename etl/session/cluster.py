@@ -16,7 +16,6 @@ import warnings
 from collections import deque
 from collections.abc import Iterable, Iterator, Mapping
 from pathlib import Path
-from types import TracebackType
 from typing import TYPE_CHECKING, Any, Final, NoReturn, TypeVar
 
 from etl.errors import ClusterError, Findings
@@ -123,17 +122,6 @@ class Cluster:
         # file keeps the name.
         with contextlib.suppress(OSError):
             self._folder.replace(self._folder.with_name(f"{self._folder.name}-over"))
-
-    def __enter__(self) -> Cluster:
-        return self
-
-    def __exit__(
-        self,
-        kind: type[BaseException] | None,
-        error: BaseException | None,
-        trace: TracebackType | None,
-    ) -> None:
-        self.close()
 
     def _connected(self) -> Client:
         """The connection to the scheduler."""

@@ -288,9 +288,8 @@ class Room:
             from etl.session.cluster import Cluster  # noqa: PLC0415
 
             seen = [*files, self.store.earlier]
-            return self._hired.enter_context(
-                Cluster(self._scheduler, self.folder, seen, names or {})
-            )
+            cluster = Cluster(self._scheduler, self.folder, seen, names or {})
+            return self._hired.enter_context(contextlib.closing(cluster))
         if workers == 1:
             return Alone()
         return self._hired.enter_context(Processes(workers, self.folder))

@@ -92,5 +92,5 @@ class GroupWork:
         bench = Bench(task.own.design(self._design), self._library, self._options)
         tables = bench.tables(group_of(task.readers, self._aside), page=self._write)
         wrong = any(reader.findings.failed for reader in tables.readers)
-        parts = self._parts.parts([tables.batches]) if self._write and not wrong else {}
+        parts = self._parts.parts(tables.batches) if self._write and not wrong else {}
         return GroupAnswer(tables.readers, parts)

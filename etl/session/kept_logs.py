@@ -9,7 +9,7 @@ memory takes what fits on it; only the rest goes to the disk.
 from __future__ import annotations
 
 import json
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -53,9 +53,9 @@ class Shelf:
         self._held[name] = batches
         return True
 
-    def get(self, name: str, number: int) -> pa.RecordBatch | None:
-        """A batch that is held; None for one on the disk."""
-        return self._held[name][number] if name in self._held else None
+    def get(self, name: str) -> list[pa.RecordBatch] | None:
+        """The batches of a log that is held; None for one on the disk."""
+        return self._held.get(name)
 
 
 @dataclass(frozen=True, slots=True)
@@ -92,12 +92,8 @@ class Aside:
 
     def get(self, name: str, number: int) -> pa.RecordBatch:
         """A batch that was put aside."""
-        held = self.shelf.get(name, number)
-        if held is not None:
-            return held
-        with pa.ipc.open_file(body_of(self.store.where(name))) as reader:
-            batch, texts = reader.get_batch_with_custom_metadata(number)
-            return batch.replace_schema_metadata(texts)
+        (batch,) = self._batches(name, (number,))
+        return batch
 
     def column(self, name: str, count: int, of: str) -> Iterator[pa.Array]:
         """One column of what was put aside, batch by batch.
@@ -116,11 +112,24 @@ class Aside:
         pa.Array
             One a reader.
         """
-        for number in range(count):
-            yield self.get(name, number).column(of)
+        for batch in self._batches(name, range(count)):
+            yield batch.column(of)
+
+    def _batches(self, name: str, numbers: Iterable[int]) -> Iterator[pa.RecordBatch]:
+        """Batches of one entry, which is opened once."""
+        held = self.shelf.get(name)
+        if held is not None:
+            yield from (held[number] for number in numbers)
+            return
+        with pa.ipc.open_file(body_of(self.store.where(name))) as reader:
+            for number in numbers:
+                batch, texts = reader.get_batch_with_custom_metadata(number)
+                yield batch.replace_schema_metadata(texts)
 
 
-def batches_of(log: CanonicalLog) -> tuple[list[pa.RecordBatch], list[str]]:
+def batches_of(
+    log: CanonicalLog,
+) -> tuple[list[pa.RecordBatch], dict[str, int], dict[str, int]]:
     """A log's fixations, one batch a reader.
 
     Parameters
@@ -130,12 +139,12 @@ def batches_of(log: CanonicalLog) -> tuple[list[pa.RecordBatch], list[str]]:
 
     Returns
     -------
-    list of pa.RecordBatch and list of str
-        The batches, and the reader of each.
+    list of pa.RecordBatch and two dicts of str to int
+        The batches; for each reader the number of the batch, and how many fixations it has.
     """
     if not len(log):
         # A recording of the eye that does not count: nobody will ask for it.
-        return [], []
+        return [], {}, {}
     participant = log.ids["participant"]
     # What is known about trials is gathered apart; only which trial it is must stay with each row.
     coded = {n: own for n, own in log.ids.items() if n not in ("item", "participant")}
@@ -146,7 +155,8 @@ def batches_of(log: CanonicalLog) -> tuple[list[pa.RecordBatch], list[str]]:
     batch = pa.RecordBatch.from_pydict(columns)
     if len(participant.values) == 1:
         texts = json.dumps({name: own.values for name, own in coded.items()})
-        return [batch.replace_schema_metadata({"values": texts})], [participant.values[0]]
+        reader = participant.values[0]
+        return [batch.replace_schema_metadata({"values": texts})], {reader: 0}, {reader: len(log)}
     order = np.argsort(participant.codes, kind="stable")
     batch = batch.take(pa.array(order))
     present, starts = np.unique(participant.codes[order], return_index=True)
@@ -155,7 +165,9 @@ def batches_of(log: CanonicalLog) -> tuple[list[pa.RecordBatch], list[str]]:
         _own_texts(batch.slice(start, stop - start), coded)
         for start, stop in zip(starts.tolist(), stops.tolist(), strict=True)
     ]
-    return batches, [participant.values[code] for code in present.tolist()]
+    readers = [participant.values[code] for code in present.tolist()]
+    numbers = {reader: number for number, reader in enumerate(readers)}
+    return batches, numbers, dict(zip(readers, (stops - starts).tolist(), strict=True))
 
 
 def _own_texts(batch: pa.RecordBatch, coded: Mapping[str, Coded]) -> pa.RecordBatch:

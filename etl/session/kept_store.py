@@ -72,11 +72,10 @@ class KeptStore:
         object or None
             As it was put; None where there is no such entry, or not one that this program wrote.
         """
-        for folder in (self.fresh, self.earlier):
-            # Whatever is wrong with an entry, it can be made again.
-            with contextlib.suppress(OSError, pickle.UnpicklingError, AttributeError, ImportError):
-                if _is_whole(folder / name):
-                    return head_of(folder / name)
+        path = self._found(name)
+        # Whatever is wrong with an entry, it can be made again.
+        with contextlib.suppress(OSError, pickle.UnpicklingError, AttributeError, ImportError):
+            return None if path is None else head_of(path)
         return None
 
     def has(self, name: str) -> bool:
@@ -91,11 +90,15 @@ class KeptStore:
         -------
         bool
         """
+        return self._found(name) is not None
+
+    def _found(self, name: str) -> Path | None:
+        """The file of an entry that is there and whole."""
         for folder in (self.fresh, self.earlier):
             with contextlib.suppress(OSError):
                 if _is_whole(folder / name):
-                    return True
-        return False
+                    return folder / name
+        return None
 
     def where(self, name: str) -> Path:
         """Where an entry is that this build has found or made.
@@ -137,7 +140,7 @@ class KeptStore:
         digest.update(data)
         if body is not None:
             digest.update(body)
-        # Two logs with the same content may be read at the same time.
+        # A cluster may have two workers at the same task, one of which it takes for lost.
         draft = self.fresh / f"{name}.{socket.gethostname()}.{os.getpid()}"
         with draft.open("wb") as file:
             file.write(_MAGIC + digest.digest() + len(data).to_bytes(_LENGTH_BYTES, "little"))

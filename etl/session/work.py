@@ -175,11 +175,7 @@ class LogWork:
             return answer, []
         log, answer.note = read
         answer.trials = seen_trials(log, task.shown, answer.findings)
-        batches, readers = batches_of(log)
-        answer.batches = {reader: number for number, reader in enumerate(readers)}
-        answer.fixations = {
-            reader: batch.num_rows for reader, batch in zip(readers, batches, strict=True)
-        }
+        batches, answer.batches, answer.fixations = batches_of(log)
         # A recording of the eye that does not count holds no fixation to compare with others.
         if len(log):
             answer.figures = figures_of(log, len(batches), len(answer.trials))

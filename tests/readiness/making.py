@@ -180,4 +180,4 @@ def write_study(study: MadeStudy, folder: Path, patch: pytest.MonkeyPatch | None
                 schema = written_schema(study.design.columns(name))
                 own = [row for row in rows if row["participant"] == reader]
                 batches[name] = pa.RecordBatch.from_pylist(own, schema=schema)
-            out.add(maker.parts([batches]))
+            out.add(maker.parts(batches))
