@@ -4,7 +4,7 @@ Examples
 --------
 >>> import etl
 >>> sorted(name for name in etl.__all__ if name[0].islower())
-['build', 'check', 'draft', 'load_study', 'trace']
+['build', 'check', 'draft', 'load_study', 'trace', 'vary']
 """
 
 from typing import TYPE_CHECKING
@@ -22,7 +22,7 @@ if TYPE_CHECKING:
         InputError,
         StudyError,
     )
-    from etl.session import Result, build, check, load_study, trace
+    from etl.session import Result, Varied, build, check, load_study, trace, vary
     from etl.study import Study
 
 __all__ = [
@@ -36,11 +36,13 @@ __all__ = [
     "Result",
     "Study",
     "StudyError",
+    "Varied",
     "build",
     "check",
     "draft",
     "load_study",
     "trace",
+    "vary",
 ]
 
 _ERRORS = (
@@ -55,7 +57,9 @@ _ERRORS = (
 _HOMES = {
     **dict.fromkeys(("Draft", "draft"), "etl.drafting"),
     **dict.fromkeys(_ERRORS, "etl.errors"),
-    **dict.fromkeys(("Result", "build", "check", "load_study", "trace"), "etl.session"),
+    **dict.fromkeys(
+        ("Result", "Varied", "build", "check", "load_study", "trace", "vary"), "etl.session"
+    ),
     "Study": "etl.study",
 }
 __getattr__ = loader(__name__, _HOMES)

@@ -299,6 +299,32 @@ def trace(study: Path, participant: str, trial: str, *, quiet: bool, **wanted: A
 
 
 @main.command()
+@_STUDY
+@click.argument("variants", type=click.Path(path_type=Path))
+@click.option(
+    "--into",
+    type=click.Path(path_type=Path),
+    help="The output folder, instead of one beside VARIANTS with its name without the ending.",
+)
+@_WORKERS
+@_QUIET
+def vary(
+    study: Path, variants: Path, into: Path | None, workers: int | None, *, quiet: bool
+) -> None:
+    """Compute the outcomes of STUDY under other decisions, side by side.
+
+    VARIANTS is a small file that names alternatives for settings of STUDY: what is left out, how
+    near a fixation must be to a region, and so on. All combinations are computed from the same
+    fixations. Tables and a page say how far the binary outcomes hang on these decisions.
+    """
+    loaded = etl.load_study(study)
+    with _progress(quiet=quiet) as progress:
+        varied = etl.vary(loaded, variants, into=into, workers=workers, progress=progress)
+    if not quiet:
+        click.echo("\n".join([*varied.findings.lines(("warning",)), varied.told()]))
+
+
+@main.command()
 @click.argument(
     "name",
     required=False,

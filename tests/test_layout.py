@@ -31,7 +31,7 @@ MAY_USE = {
     "cells": set(),
     "measures": {"errors"},
     "files": {"errors", "tables"},
-    "study": {"errors", "tables", "coding"},
+    "study": {"errors", "tables", "coding", "variants"},
     "pseudonyms": {"files"},
     "parsers": {"errors", "tables", "files", "pseudonyms"},
     "trials": {"errors", "tables", "files", "pseudonyms"},
@@ -41,14 +41,15 @@ MAY_USE = {
     "screening": {"errors"},
     "lines": {"errors"},
     "readiness": {"errors", "coding"},
+    "variants": {"errors", "readiness"},
     # The ledger and the accounts are handed over as plain rows.
-    "export": {"errors", "tables", "cells", "screening", "readiness"},
-    "report": {"errors", "lazily", "tables", "readiness"},
+    "export": {"errors", "tables", "cells", "screening", "readiness", "variants"},
+    "report": {"errors", "lazily", "tables", "readiness", "variants"},
     "handoff": {"errors", "tables", "cells", "coding", "readiness"},
     "session": {
         *("errors", "tables", "files", "study", "parsers", "trials", "regions", "measures"),
         *("pseudonyms", "cells", "coding", "screening", "lines", "export", "report", "readiness"),
-        *("handoff", "lazily"),
+        *("handoff", "lazily", "variants"),
     },
     "start": {"cli"},
     "cli": {"etl", "session"},
@@ -60,7 +61,7 @@ MAY_NAME_THE_STUDY = {"parsers", "trials", "regions"}
 USED_IN = {
     "numpy": {
         *("files", "parsers", "trials", "regions", "measures", "screening", "export", "report"),
-        *("session", "drafting", "lines", "pseudonyms", "coding", "readiness"),
+        *("session", "drafting", "lines", "pseudonyms", "coding", "readiness", "variants"),
     },
     "pyarrow": {"files", "parsers", "export", "report", "session", "tables", "cells", "drafting"},
     "openpyxl": {"files"},

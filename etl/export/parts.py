@@ -53,7 +53,7 @@ class PartMaker:
 
     def __init__(self, design: TableDesign, formats: Mapping[str, Collection[str]]) -> None:
         self._tables = {
-            name: _TableParts(design.columns(name), wanted) for name, wanted in formats.items()
+            name: TableParts(design.columns(name), wanted) for name, wanted in formats.items()
         }
 
     def parts(self, batches: Mapping[str, pa.RecordBatch]) -> dict[str, Part]:
@@ -72,8 +72,16 @@ class PartMaker:
         return {name: table.part(batches.get(name)) for name, table in self._tables.items()}
 
 
-class _TableParts:
-    """Makes parts of one table."""
+class TableParts:
+    """Makes parts of one table.
+
+    Parameters
+    ----------
+    columns : tuple of Column
+        Of the table.
+    formats : collection of str
+        In which it is wanted: ``parquet``, ``csv``.
+    """
 
     def __init__(self, columns: tuple[Column, ...], formats: Collection[str]) -> None:
         self._schema = written_schema(columns)
@@ -82,7 +90,17 @@ class _TableParts:
         self._csv_schema = csv_schema(columns) if "csv" in formats else None
 
     def part(self, batch: pa.RecordBatch | None) -> Part:
-        """The rows of a batch."""
+        """The rows of a batch, if there is one, as a part.
+
+        Parameters
+        ----------
+        batch : pa.RecordBatch or None
+            With the schema of the table as it is written.
+
+        Returns
+        -------
+        Part
+        """
         # One without rows is left out: the CSV writer may put what lies in memory in its place.
         some = [batch] if batch is not None and batch.num_rows else []
         table = pa.Table.from_batches(some, self._schema)

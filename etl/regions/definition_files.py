@@ -64,8 +64,30 @@ def read_definitions(
         _only_one_line_each(drafts, findings)
     if findings.count("error") > before:
         return None
+    manner = manner_of(regions, lines)
+    library = library_of(drafts, source.keys, tuple(source.supplied), manner)
+    return replace(library, sha256=cells.text.sha256)
+
+
+def manner_of(regions: Regions, lines: Lines | None) -> Manner | None:
+    """How points are taken to regions.
+
+    Parameters
+    ----------
+    regions : Regions
+        ``[regions]`` of the study file.
+    lines : Lines or None
+        ``[lines]`` of the study file, None where it does not say.
+
+    Returns
+    -------
+    Manner or None
+        None where the labels of the logs say which region it is.
+    """
+    if regions.kind == "labels":
+        return None
     layout = regions.layout
-    manner = Manner(
+    return Manner(
         only_x=regions.vertical == "any",
         nearest_line=lines is not None and lines.method not in ("consensus", "none"),
         laid_out=regions.kind in LAID_OUT,
@@ -73,9 +95,6 @@ def read_definitions(
         tolerance_px=float(regions.tolerance_px),
         overlap=regions.overlap,
     )
-    by_labels = regions.kind == "labels"
-    library = library_of(drafts, source.keys, tuple(source.supplied), None if by_labels else manner)
-    return replace(library, sha256=cells.text.sha256)
 
 
 def _drafts(source: Source, regions: Regions) -> list[Draft]:

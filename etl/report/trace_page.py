@@ -38,7 +38,7 @@ _STYLE: Final = (
 )
 
 
-def page(traced: TracedTrial, explanation: Explanation | None = None) -> str:
+def page(traced: TracedTrial, explanation: Explanation | None = None, *, remark: str = "") -> str:
     """Show a trial on a page of its own.
 
     Parameters
@@ -47,6 +47,8 @@ def page(traced: TracedTrial, explanation: Explanation | None = None) -> str:
         The trial.
     explanation : Explanation, optional
         The part to be shown under the picture; the whole where absent.
+    remark : str
+        What stands under the heading, such as the decisions under which the trial is shown.
 
     Returns
     -------
@@ -64,6 +66,7 @@ def page(traced: TracedTrial, explanation: Explanation | None = None) -> str:
     own = identity(traced)
     parts = [
         wrapped("h1", {}, [text(said.heading)]),
+        *([wrapped("p", {}, [text(remark)])] if remark else []),
         wrapped("div", {"class": "scroll", "tabindex": "0"}, [draw(traced)]),
     ]
     if said.left_out:

@@ -13,16 +13,19 @@ if TYPE_CHECKING:
     from etl.session.one_trial import Wanted, explained, trace, write_picture
     from etl.session.result import Result
     from etl.session.run import build, check
+    from etl.session.vary import Varied, vary
 
 __all__ = [
     "PUBLISHED",
     "Result",
+    "Varied",
     "Wanted",
     "build",
     "check",
     "explained",
     "load_study",
     "trace",
+    "vary",
     "write_lines",
     "write_picture",
 ]
@@ -30,6 +33,7 @@ __all__ = [
 _HOMES = {
     **dict.fromkeys(("build", "check"), "etl.session.run"),
     **dict.fromkeys(("Wanted", "explained", "trace", "write_picture"), "etl.session.one_trial"),
+    **dict.fromkeys(("Varied", "vary"), "etl.session.vary"),
     "PUBLISHED": "etl.session.crew",
     "Result": "etl.session.result",
     "load_study": "etl.session.loading",

@@ -21,19 +21,18 @@ from etl.export.rows import (
     RegressionColumns,
     RowMaker,
 )
-from etl.measures import Outcomes, Sequences, compute
+from etl.measures import Outcomes
 from etl.parsers import CanonicalLog
 from etl.regions import RegionLibrary
-from etl.screening import LEFT_OUT_BY, outlying
+from etl.screening import LEFT_OUT_BY
 from etl.screening.entries import Entry, Screened
 from etl.screening.ledger import FarValue, entries_of, with_values
-from etl.screening.rules import OUTLIER
 from etl.session.line_ledger import with_lines
 from etl.session.lines import LineWork, ReaderLines
 from etl.session.ordered import OrderedFixations
+from etl.session.outcome_work import cells_of, compute_outcomes, set_far_values_missing
 from etl.session.placing import Placed, place_fixations
 from etl.session.reader import GroupTables, Options, ReaderGroup, ReaderTables, starts_of
-from etl.session.screening import Unscreened, screen
 from etl.session.sound_readers import sound_readers
 from etl.session.telling import Worked, told_of
 from etl.tables import LEDGER, TableDesign
@@ -124,30 +123,10 @@ class Bench:
         texts = group.trials.text.astype(np.int64)
         placed = place_fixations(group, log, ordered, (self.library, self._lines))
         order = placed.order
-        screened = screen(
-            Unscreened(
-                *(group.trials, group.reader_of_trial, log, ordered, order),
-                group.notes,
-                placed.lines,
-            ),
-            self.library,
-            self.options,
-        )
-        trial_codes, gone = screened.trial_codes(), screened.fixation_codes()
-        kept = np.flatnonzero(gone < 0)
-        in_study = np.flatnonzero(trial_codes < 0)
-        place = np.zeros(len(texts), dtype=np.int64)
-        place[in_study] = np.arange(len(in_study))
-        outcomes = compute(
-            Sequences(
-                place[ordered.trial[kept]],
-                order[kept],
-                screened.fixations.duration_ms[kept],
-                self.library.region_count[texts[in_study]].astype(np.int32),
-            ),
-            outside=self.options.outside,
-            no_opportunity=self.options.no_opportunity,
-        )
+        done = compute_outcomes(group, log, ordered, placed, (self.library, self.options))
+        screened, trial_codes, gone = done.screened, done.trial_codes, done.gone
+        kept, in_study, outcomes = done.kept, done.in_study, done.outcomes
+        place = done.place
         every = len(in_study) == len(texts)
         own = self.rows.facts(group.trials if every else group.trials.take(in_study))
         code = self._region_codes(texts[ordered.trial], order)
@@ -256,18 +235,20 @@ class Bench:
     ) -> tuple[dict[str, pa.RecordBatch], list[FarValue]]:
         """Rows of the three tables of outcomes, and the values that were set missing."""
         every_text, in_study, reader = trials
-        counts = np.diff(outcomes.cell_offsets)
-        cell = np.arange(outcomes.cell_offsets[-1])
-        within = cell - np.repeat(outcomes.cell_offsets[:-1], counts)
-        first = self.library.region_offsets[every_text[in_study]]
-        code = self.library.region_code[np.repeat(first, counts) + within]
-        cells = (counts, (within + 1).astype(np.int32), code)
+        own = cells_of(every_text, in_study, self.library)
+        cells = (own.counts, own.order, own.code)
         values = {m.name: outcomes.regions[m.name].values for m in self.design.measures}
         reasons = {m.name: outcomes.regions[m.name].reasons for m in self.design.measures}
         far: list[FarValue] = []
         if self.options.limits.on("outlier_sd"):
-            trial = np.repeat(in_study, counts)
-            far = self._set_missing((trial, reader[trial], code), values, reasons)
+            far = set_far_values_missing(
+                own,
+                reader,
+                self.design.measures,
+                self.design.reasons,
+                (self.options.limits.outlier_sd, len(self.library.region_names)),
+                (values, reasons),
+            )
         regions = CellMeasures(values, reasons)
         of_trials = CellMeasures(
             {m.name: outcomes.trials[m.name].values for m in self.design.trial_measures},
@@ -281,33 +262,6 @@ class Bench:
             ),
         }
         return batches, far
-
-    def _set_missing(
-        self,
-        cells: tuple[NDArray[np.int64], NDArray[np.int64], NDArray[np.int32]],
-        values: dict[str, NDArray[np.float64]],
-        reasons: dict[str, NDArray[np.uint8]],
-    ) -> list[FarValue]:
-        """Set durations missing that are far from the others of their reader and region."""
-        trial, reader, code = cells
-        group = reader * len(self.library.region_names) + code
-        outlier = self.design.reasons.index(OUTLIER)
-        far: list[FarValue] = []
-        for name in (m.name for m in self.design.measures if m.kind == "duration"):
-            own = values[name]
-            away = outlying(own, group, self.options.limits.outlier_sd)
-            rows = np.flatnonzero(away)
-            far += [
-                FarValue(own_trial, own_code, name, value, own_reader)
-                for own_trial, own_code, value, own_reader in zip(
-                    *(trial[rows].tolist(), code[rows].tolist(), own[rows].tolist()),
-                    reader[rows].tolist(),
-                    strict=True,
-                )
-            ]
-            values[name] = np.where(away, np.nan, own)
-            reasons[name] = np.where(away, outlier, reasons[name]).astype(np.uint8)
-        return far
 
     def _regression_rows(
         self,

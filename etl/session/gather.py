@@ -14,11 +14,11 @@ from numpy.typing import NDArray
 from etl.errors import Findings
 from etl.files import Coded, group_rows, number_of
 from etl.files.packed import Packed
-from etl.measures import MEASURES, REASONS, TRIAL_MEASURES, select
+from etl.measures import MEASURES, TRIAL_MEASURES, select
 from etl.regions import RegionLibrary
-from etl.report import LineGrid, NotRecorded
+from etl.report import NotRecorded
 from etl.screening.ledger import columns_of_accounts
-from etl.screening.rules import OUTLIER
+from etl.session.decisions import options_of, reasons_of
 from etl.session.kept_logs import Aside
 from etl.session.model_columns import (
     centred_means,
@@ -159,19 +159,8 @@ def gather(
     corrections = Corrections(plan.corrections, findings, complete)
     tasks = reader_tasks(design, trials, (text, good), facts, parts, corrections)
     plan.facts.release()
-    study = plan.study
-    options = Options(
-        study.trials.repeated,
-        study.measures.outside,
-        study.measures.no_opportunity,
-        plan.limits,
-        None
-        if study.regions.layout is None
-        else LineGrid(study.regions.layout.top_px, study.regions.layout.line_height_px),
-        plan.lines,
-    )
     return Gathered(
-        design, options, plan.library, aside, tasks, facts.inputs, unrecorded, fixations
+        design, options_of(plan), plan.library, aside, tasks, facts.inputs, unrecorded, fixations
     )
 
 
@@ -328,7 +317,7 @@ def _design(
         plan.library.region_names,
         tuple(measure_column(plan, m) for m in chosen),
         tuple(measure_column(plan, m) for m in TRIAL_MEASURES.values()),
-        (*REASONS, OUTLIER) if plan.limits.on("outlier_sd") else REASONS,
+        reasons_of(plan.limits),
         columns_of_accounts(plan.limits),
         plan.log_names,
         plan.lines is not None,

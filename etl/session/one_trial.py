@@ -15,11 +15,11 @@ from etl.report.trace_picture import draw
 from etl.report.trace_text import as_text
 from etl.report.trace_words import Explanation, explain
 from etl.session.crew import Progress, Room, silent
+from etl.session.examining import examine, own_faults
 from etl.session.gather import Gathered
 from etl.session.plan import Plan
 from etl.session.pseudonym_key import open_key
 from etl.session.pseudonym_record import told_study
-from etl.session.run import examine, own_faults
 from etl.session.tracing import Tracer, TrialKey
 from etl.session.work import ReaderTask, make_reader_work
 from etl.study import Study

@@ -66,7 +66,7 @@ def summary(counts: Mapping[str, int]) -> str:
 
 def built(result: Result) -> str:
     """The summary of a build: what was read, what was left out, what was written."""
-    lines = [summary(result.counts), f"Written to {_near(result.folder)}:"]
+    lines = [summary(result.counts), f"Written to {near(result.folder)}:"]
     width = max(len(name) for name in result.rows)
     lines += [f"  {name:<{width}}  {rows:>11,} rows" for name, rows in result.rows.items()]
     lines += [f"  {line}" for line in _BESIDES]
@@ -78,7 +78,7 @@ def built(result: Result) -> str:
             alone = (
                 "others may read it, too" if is_open(result.key) else "its owner alone may read it"
             )
-        lines.append(f"Whose the pseudonyms are stands in {_near(result.key)}; {alone}.")
+        lines.append(f"Whose the pseudonyms are stands in {near(result.key)}; {alone}.")
         lines.append("Keep it apart from the tables.")
     return "\n".join(lines)
 
@@ -108,8 +108,18 @@ def readiness_lines(readiness: Readiness) -> list[str]:
     return lines
 
 
-def _near(folder: Path) -> Path:
-    """A folder as seen from where the command was called, if it lies below."""
+def near(folder: Path) -> Path:
+    """A folder as seen from where the command was called, if it lies below.
+
+    Parameters
+    ----------
+    folder : Path
+        Any folder or file.
+
+    Returns
+    -------
+    Path
+    """
     try:
         return folder.absolute().relative_to(Path.cwd())
     except ValueError:

@@ -16,10 +16,10 @@ import etl
 from etl.errors import Findings
 from etl.session.bench import Bench
 from etl.session.crew import Room, silent
+from etl.session.examining import examine
 from etl.session.joined_readers import group_of
 from etl.session.kept_logs import Aside
 from etl.session.reader import ReaderTables
-from etl.session.run import examine
 from etl.session.work import ReaderTask
 
 

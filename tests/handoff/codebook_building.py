@@ -15,10 +15,10 @@ from etl.errors import Findings
 from etl.handoff import DATA_PACKAGE, StudyFacts, write_data_package
 from etl.session.codebook_facts import codebook_facts, write_described
 from etl.session.crew import Room, silent
+from etl.session.examining import examine
 from etl.session.plan import Plan
 from etl.session.readiness import readiness_of, write_readiness
 from etl.session.region_rows import region_rows
-from etl.session.run import examine
 from etl.tables import TableDesign
 
 #: What a spreadsheet would run, what looks like a mark for no value, what Markdown takes for signs.

@@ -1,0 +1,154 @@
+"""Rows of ``rates``: every binary outcome in every condition, variant by variant."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Final
+
+import numpy as np
+import pyarrow as pa
+from etl.variants.differences import compare, rates
+from numpy.typing import NDArray
+
+from etl.export.arrays import array_of, coded_of, numbers_of
+from etl.export.parts import TableParts
+from etl.export.writers import TableWriter
+from etl.tables import written_schema
+from etl.tables.variants import RATES, rate_columns
+from etl.variants.conditions import ConditionGroups
+
+#: About so many rows are made at once.
+_ROWS_AT_ONCE: Final = 200_000
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class RateCounts:
+    """Counts of all binary outcomes. V variants, O outcomes, G conditions.
+
+    Attributes
+    ----------
+    outcomes : tuple of (str, str), length O
+        Measure and region; the region is empty for an outcome of trials.
+    counts : (V, O, G, 3) int64 array
+        Zeros, ones and rows.
+    read : (O, G) int64 array
+        Rows that there would be if nothing were left out.
+    """
+
+    outcomes: tuple[tuple[str, str], ...]
+    counts: NDArray[np.int64]
+    read: NDArray[np.int64]
+
+
+def write_rates(
+    folder: Path,
+    factors: Mapping[str, Sequence[str]],
+    groups: ConditionGroups,
+    counted: RateCounts,
+    formats: Sequence[str],
+) -> int:
+    """Write ``rates`` into a folder.
+
+    Parameters
+    ----------
+    folder : Path
+        Where it goes.
+    factors : mapping of str to sequence of str
+        The levels of each factor in order.
+    groups : ConditionGroups
+        The conditions.
+    counted : RateCounts
+        All counts.
+    formats : sequence of str
+        ``parquet``, ``csv``.
+
+    Returns
+    -------
+    int
+        How many rows it has.
+    """
+    columns = rate_columns(factors)
+    parts = TableParts(columns, formats)
+    writer = TableWriter(
+        columns,
+        folder / f"{RATES}.parquet" if "parquet" in formats else None,
+        folder / f"{RATES}.csv" if "csv" in formats else None,
+        parts.part(None),
+    )
+    try:
+        schema = written_schema(columns)
+        for arrays in _batches(factors, groups, counted):
+            writer.add(parts.part(pa.RecordBatch.from_arrays(arrays, schema=schema)))
+        writer.close()
+    finally:
+        writer.abandon()
+    return writer.rows
+
+
+def _batches(
+    factors: Mapping[str, Sequence[str]], groups: ConditionGroups, counted: RateCounts
+) -> Iterator[list[pa.Array]]:
+    """The columns of some variants at a time."""
+    variants, outcomes, conditions, _ = counted.counts.shape
+    at_once = max(1, _ROWS_AT_ONCE // max(1, outcomes * conditions))
+    measures = pa.array([measure for measure, _ in counted.outcomes], pa.string())
+    regions = pa.array([region for _, region in counted.outcomes], pa.string())
+    named = np.array(
+        [place if region else -1 for place, (_, region) in enumerate(counted.outcomes)]
+    )
+    against = pa.array([_spelled(label) for label in groups.labels], pa.string())
+    for start in range(0, variants, at_once):
+        counts = counted.counts[start : start + at_once]
+        some = len(counts)
+        shape = (some, outcomes, conditions)
+        zeros, ones, rows = (counts[..., slot].ravel() for slot in range(3))
+        n = zeros + ones
+        rate, low, high = rates(np.stack([zeros, ones], axis=-1))
+        reference = np.maximum(groups.reference, 0)
+        pairs = np.stack([counts[:, :, reference, :2], counts[..., :2]], axis=-2)
+        difference, lower, upper, corrected = (own.ravel() for own in compare(pairs))
+        compared = np.broadcast_to(groups.reference >= 0, shape).ravel()
+        outcome = np.broadcast_to(np.arange(outcomes)[:, None], shape).ravel()
+        group = np.broadcast_to(np.arange(conditions), shape).ravel()
+        variant = np.repeat(np.arange(start + 1, start + some + 1), outcomes * conditions)
+
+        def where_compared(values: NDArray[np.float64], own: NDArray[np.bool_]) -> pa.Array:
+            return numbers_of(np.where(own, values, np.nan))
+
+        yield [
+            array_of(variant),
+            coded_of(outcome.astype(np.int32), measures, whole=True),
+            coded_of(named[outcome].astype(np.int32), regions),
+            *(
+                coded_of(codes[group], pa.array(list(levels), pa.string()))
+                for codes, levels in _levels(factors, groups)
+            ),
+            array_of(rows.copy()),
+            array_of(np.broadcast_to(counted.read, shape).ravel() - rows),
+            array_of(rows - n),
+            array_of(n),
+            array_of(ones.copy()),
+            *(numbers_of(values) for values in (rate, low, high)),
+            coded_of(np.where(compared, groups.reference[group], -1).astype(np.int32), against),
+            *(where_compared(values, compared) for values in (difference, lower, upper)),
+            array_of(corrected.astype(np.int8), compared & ~np.isnan(difference)),
+        ]
+
+
+def _levels(
+    factors: Mapping[str, Sequence[str]], groups: ConditionGroups
+) -> Iterator[tuple[NDArray[np.int32], Sequence[str]]]:
+    """For each factor the code of the level of each condition, -1 where it holds all."""
+    for place, levels in enumerate(factors.values()):
+        code = {level: number for number, level in enumerate(levels)}
+        yield (
+            np.array([code.get(label[place], -1) for label in groups.labels], dtype=np.int32),
+            levels,
+        )
+
+
+def _spelled(label: Sequence[str]) -> str:
+    """A condition in words."""
+    return ", ".join(level for level in label if level)

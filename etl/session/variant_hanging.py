@@ -1,0 +1,210 @@
+"""Readers and trials whose binary outcomes hang on a setting, and what changes there."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from etl.session.reader import ReaderGroup
+from etl.session.variant_states import Changed, Universe
+from etl.variants.facts import Crossing
+
+#: So many trials of a group are offered, besides the one of each reader that hangs most.
+MOST_OFFERED: Final = 12
+
+
+@dataclass(frozen=True, slots=True)
+class Hangs:
+    """How much some binary cells hang on each setting.
+
+    Attributes
+    ----------
+    pairs : tuple of int
+        By setting: pairs of variants that differ in it only and in which a cell differs, over all
+        cells; 0 where not every combination is there.
+    differing : int
+        Cells that are not as in the study as it stands, over all variants.
+    cells : int
+        Cells that are not the same in all variants.
+    of : int
+        Cells in all.
+    """
+
+    pairs: tuple[int, ...]
+    differing: int
+    cells: int
+    of: int
+
+
+@dataclass(frozen=True, slots=True)
+class ReaderHangs:
+    """A reader, and the trial of this reader that hangs most; None where none does."""
+
+    participant: str
+    hangs: Hangs
+    most: HangingTrial | None
+
+
+@dataclass(frozen=True, slots=True)
+class HangingTrial:
+    """A trial whose outcomes hang on a setting.
+
+    Attributes
+    ----------
+    participant : str
+        The reader.
+    row : int
+        Its place among the reader's trials.
+    hangs : Hangs
+        How much.
+    setting : int
+        On which it hangs most; -1 where that cannot be told.
+    variant : int
+        The variant to be shown beside the study as it stands: one that differs from it in that
+        setting only, in which most of the cells change; or the one in which most do.
+    changes : tuple of (str, int, int, int)
+        What changes there: measure, code of the region, states in the study and in the variant.
+    """
+
+    participant: str
+    row: int
+    hangs: Hangs
+    setting: int
+    variant: int
+    changes: tuple[tuple[str, int, int, int], ...]
+
+
+def score_of(hangs: Hangs, pairs: tuple[int, ...]) -> tuple[float, int]:
+    """How much something hangs on the setting it hangs most on, and which that is.
+
+    Parameters
+    ----------
+    hangs : Hangs
+        Of a reader or trial.
+    pairs : tuple of int
+        By setting, how many pairs of variants differ in it only.
+
+    Returns
+    -------
+    float and int
+        From 0 to 1; where not every combination is there the mean number of cells that differ, and
+        -1.
+    """
+    if not any(hangs.pairs):
+        return hangs.differing / max(hangs.of, 1), -1
+    shares = [own / (hangs.of * all_) for own, all_ in zip(hangs.pairs, pairs, strict=True)]
+    setting = int(np.argmax(shares))
+    return shares[setting], setting
+
+
+def readers_hanging(
+    group: ReaderGroup,
+    universe: Universe,
+    changed: Mapping[str, Changed],
+    using: tuple[Crossing, tuple[int, ...]],
+) -> tuple[list[ReaderHangs], list[HangingTrial]]:
+    """How much readers hang on settings, and the trials that do most.
+
+    Parameters
+    ----------
+    group : ReaderGroup
+        The readers.
+    universe : Universe
+        Their cells.
+    changed : mapping of str to Changed
+        The binary outcomes by name.
+    using : tuple
+        The variants, and by setting how many pairs of them differ in it only.
+
+    Returns
+    -------
+    list of ReaderHangs and list of HangingTrial
+        All readers; and the trials of all that hang most, most first.
+    """
+    crossing, pairs = using
+    width, settings = len(group.trials), len(crossing.settings)
+    by_trial = np.zeros((width, settings), dtype=np.int64)
+    differing = np.zeros(width, dtype=np.int64)
+    cells = np.zeros(width, dtype=np.int64)
+    for own in changed.values():
+        trial = universe.cells.trial[own.rows]
+        np.add.at(by_trial, trial, own.pairs)
+        np.add.at(differing, trial, (own.states != own.states[crossing.base]).sum(axis=0))
+        cells += np.bincount(trial, minlength=width)
+    of = np.bincount(universe.cells.trial, minlength=width) * len(changed)
+
+    def hangs(trials: NDArray[np.int64]) -> Hangs:
+        return Hangs(
+            tuple(by_trial[trials].sum(axis=0).tolist()),
+            *(int(own[trials].sum()) for own in (differing, cells, of)),
+        )
+
+    scores = np.zeros(width)
+    some = of > 0
+    if crossing.full:
+        scores[some] = (by_trial[some] / (of[some, None] * np.maximum(pairs, 1))).max(
+            axis=1, initial=0.0
+        )
+    else:
+        scores[some] = differing[some] / of[some]
+    made: dict[int, HangingTrial] = {}
+
+    def offered(trial: int) -> HangingTrial:
+        if trial not in made:
+            reader = int(group.reader_of_trial[trial])
+            told = hangs(np.array([trial]))
+            setting = score_of(told, pairs)[1]
+            states = _states_of(trial, universe, changed)
+            variant = _telling(states, setting, crossing)
+            made[trial] = HangingTrial(
+                group.participants[reader],
+                trial - int(group.trial_starts[reader]),
+                told,
+                setting,
+                variant,
+                tuple(
+                    (name, code, int(own[crossing.base]), int(own[variant]))
+                    for name, code, own in states
+                    if own[crossing.base] != own[variant]
+                ),
+            )
+        return made[trial]
+
+    readers = []
+    for reader, participant in enumerate(group.participants):
+        own_trials = np.arange(*group.trial_starts[reader : reader + 2].tolist())
+        best = int(own_trials[np.argmax(scores[own_trials])]) if len(own_trials) else -1
+        most = offered(best) if best >= 0 and scores[best] > 0 else None
+        readers.append(ReaderHangs(participant, hangs(own_trials), most))
+    order = np.argsort(-scores, kind="stable")[:MOST_OFFERED]
+    return readers, [offered(int(trial)) for trial in order if scores[trial] > 0]
+
+
+def _states_of(
+    trial: int, universe: Universe, changed: Mapping[str, Changed]
+) -> list[tuple[str, int, NDArray[np.int8]]]:
+    """The cells of a trial that change: measure, region, states by variant."""
+    found = []
+    for name, own in changed.items():
+        for at in np.flatnonzero(universe.cells.trial[own.rows] == trial).tolist():
+            found.append((name, int(universe.cells.code[own.rows[at]]), own.states[:, at]))
+    return found
+
+
+def _telling(
+    states: list[tuple[str, int, NDArray[np.int8]]], setting: int, crossing: Crossing
+) -> int:
+    """The variant to be shown beside the study."""
+    differs = sum((own != own[crossing.base]).astype(np.int64) for _, _, own in states) + np.zeros(
+        len(crossing), dtype=np.int64
+    )
+    if setting >= 0:
+        others = np.delete(crossing.choices, setting, axis=1)
+        near = (others == others[crossing.base]).all(axis=1)
+        if differs[near].any():
+            differs = np.where(near, differs, 0)
+    return int(np.argmax(differs))

@@ -1,0 +1,131 @@
+"""From the studies of all variants to what the work on readers needs of each."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+
+from etl.errors import DataError, Findings
+from etl.regions import RegionLibrary
+from etl.regions.assign import Manner
+from etl.regions.definition_files import manner_of
+from etl.session.decisions import facts_needed, options_of
+from etl.session.examining import LogsRead
+from etl.session.gather import Gathered
+from etl.session.limits import check_rules, limits_of
+from etl.session.lines import NO_READING
+from etl.session.plan import Plan
+from etl.session.reader import Options
+from etl.study import Study
+
+
+@dataclass(frozen=True, slots=True)
+class VariantOptions:
+    """The decisions of one variant.
+
+    Attributes
+    ----------
+    options : Options
+        For the work on readers.
+    manner : Manner or None
+        How points are taken to regions.
+    facts : int
+        Which of the gatherings has the facts that its rules look at.
+    place : int
+        The same number for variants in which every fixation is in the same place.
+    """
+
+    options: Options
+    manner: Manner | None
+    facts: int
+    place: int
+
+    def library(self, library: RegionLibrary) -> RegionLibrary:
+        """The texts of the study, with points taken to regions as this variant does."""
+        return replace(library, manner=self.manner)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class VariantPlans:
+    """All variants of a study made ready.
+
+    Attributes
+    ----------
+    plans : tuple of Plan
+        One a variant.
+    options : tuple of VariantOptions
+        One a variant.
+    gathered : tuple of Gathered
+        Facts and texts joined to trials, once for all variants whose rules look at the same facts.
+        The readers, and their trials, are the same in all.
+    """
+
+    plans: tuple[Plan, ...]
+    options: tuple[VariantOptions, ...]
+    gathered: tuple[Gathered, ...]
+
+
+def plan_variants(read: LogsRead, studies: Sequence[Study], findings: Findings) -> VariantPlans:
+    """Make all variants of a study ready for the work on readers.
+
+    Parameters
+    ----------
+    read : LogsRead
+        The study as it stands, with its logs.
+    studies : sequence of Study
+        The variants.
+    findings : Findings
+        Where problems are recorded; what one variant has said already is not said again.
+
+    Returns
+    -------
+    VariantPlans
+
+    Raises
+    ------
+    DataError
+        If no reader is left to work on, or anything is wrong.
+    """
+    plans = [_plan(read.plan, study) for study in studies]
+    needs = [facts_needed(plan) for plan in plans]
+    gathered: dict[tuple[object, ...], Gathered] = {}
+    for plan, need in zip(plans, needs, strict=True):
+        new = Findings(names=findings.names)
+        check_rules(plan.study, plan.library.region_names, new)
+        if need not in gathered:
+            own = replace(read, plan=plan, answers=[replace(one) for one in read.answers])
+            found = own.gathered(new)
+            if found is not None:
+                gathered[need] = found
+        _add_new(findings, new)
+        if need not in gathered:
+            raise DataError(findings)
+    if findings.failed:
+        raise DataError(findings)
+    numbers = {need: number for number, need in enumerate(gathered)}
+    places: dict[str, int] = {}
+    options = []
+    for plan, need in zip(plans, needs, strict=True):
+        manner = plan.library.manner
+        reading = [rule for rule in NO_READING if plan.lines is not None and plan.limits.on(rule)]
+        key = repr((numbers[need] if reading else 0, manner, plan.lines, reading))
+        options.append(
+            VariantOptions(
+                options_of(plan), manner, numbers[need], places.setdefault(key, len(places))
+            )
+        )
+    return VariantPlans(tuple(plans), tuple(options), tuple(gathered.values()))
+
+
+def _plan(plan: Plan, study: Study) -> Plan:
+    """The plan of a variant: what the study file says anew, and the rest as it is."""
+    library = replace(plan.library, manner=manner_of(study.regions, study.lines))
+    return replace(plan, study=study, library=library, limits=limits_of(study))
+
+
+def _add_new(findings: Findings, new: Findings) -> None:
+    """Add what has not been found before: variants have most in common."""
+    for kind in [kind for kind in new.more if kind in findings.more]:
+        del new.more[kind]
+        new.items = [finding for finding in new.items if finding.kind != kind]
+    findings.extend(new)
