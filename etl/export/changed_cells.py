@@ -126,7 +126,7 @@ class ChangedCells:
 def _told(
     states: NDArray[Any], base: int
 ) -> tuple[NDArray[np.float64], NDArray[np.int8], NDArray[np.int64]]:
-    """Value and state in the study, and in how many variants it is the same, other, missing, gone."""
+    """Value and state in the study, and how many variants have it so, otherwise, or not at all."""
     own = states[base]
     same = states == own
     state = np.select([own == LEFT_OUT, own == NO_VALUE], [2, 1], 0).astype(np.int8)

@@ -188,11 +188,11 @@ def _states_of(
     trial: int, universe: Universe, changed: Mapping[str, Changed]
 ) -> list[tuple[str, int, NDArray[np.int8]]]:
     """The cells of a trial that change: measure, region, states by variant."""
-    found = []
-    for name, own in changed.items():
-        for at in np.flatnonzero(universe.cells.trial[own.rows] == trial).tolist():
-            found.append((name, int(universe.cells.code[own.rows[at]]), own.states[:, at]))
-    return found
+    return [
+        (name, int(universe.cells.code[own.rows[at]]), own.states[:, at])
+        for name, own in changed.items()
+        for at in np.flatnonzero(universe.cells.trial[own.rows] == trial).tolist()
+    ]
 
 
 def _telling(

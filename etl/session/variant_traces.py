@@ -28,7 +28,7 @@ MOST_SHOWN: Final = 12
 _MOST_CHANGES: Final = 4
 
 
-@dataclass(slots=True, eq=False)
+@dataclass(eq=False)
 class VariantTraces:
     """Draws trials under chosen variants.
 

@@ -43,7 +43,7 @@ from etl.session.variant_work import VariantAnswer, VariantShape, VariantTask, V
 from etl.study import Study, StudyVariants, load_variants
 from etl.tables.variants import CHANGED_CELLS, RATES, VARIANT_ROWS
 from etl.variants.facts import Crossing, Summary
-from etl.variants.sentences import for_paper, short_keys
+from etl.variants.sentences import for_paper, in_short, short_keys
 from etl.variants.summaries import LEADING_RULE, leading
 
 _MOST_LEADING: Final = 4
@@ -115,18 +115,16 @@ class Varied:
         crossing = self.crossing
         settings = ", ".join(setting.key for setting in crossing.settings)
         every = "all combinations of alternatives for" if crossing.full else "which differ in"
-        lines = [
-            f"{counted(len(crossing), 'variant')}, {every} {settings}; "
-            f"variant {crossing.base + 1} is the study as it stands"
-        ]
+        number = crossing.base + 1
+        head = f"{counted(len(crossing), 'variant')}, {every} {settings}"
+        lines = [f"{head}; variant {number} is the study as it stands"]
         for place in self.leading:
             lines += in_short(self.summaries[place], crossing).split("\n")
         turning = sum(not own.holds for own in self.summaries)
-        lines += [
-            f"Of {counted(len(self.summaries), 'comparison')}, {turning:,} "
-            f"{'does' if turning == 1 else 'do'} not have the same sign in all variants.",
-            f"Written to {near(self.folder)}:",
-        ]
+        whole = counted(len(self.summaries), "comparison")
+        do = "does" if turning == 1 else "do"
+        lines.append(f"Of {whole}, {turning:,} {do} not have the same sign in all variants.")
+        lines.append(f"Written to {near(self.folder)}:")
         width = max(len(name) for name in self.rows)
         lines += [f"  {name:<{width}}  {rows:>11,} rows" for name, rows in self.rows.items()]
         lines.append("  codebook.csv, for_paper.txt, run.json, and variants.html to look at")

@@ -97,8 +97,8 @@ def comparisons_of(factors: Mapping[str, Sequence[str]]) -> list[tuple[str, int,
     Returns
     -------
     list of (str, int, int)
-        By the groups of :func:`groups_of`: factor, group of the level, group of the reference level. In a study without factors one
-        entry without a name, for all trials.
+        Factor, and by the groups of :func:`groups_of` those of the level and of the reference
+        level. In a study without factors one entry without a name, for all trials.
 
     Examples
     --------
