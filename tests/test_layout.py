@@ -41,6 +41,8 @@ MAY_USE = {
     "screening": {"errors"},
     "lines": {"errors"},
     "readiness": {"errors", "coding"},
+    # Rates have the intervals that they have before fitting.
+    "variants": {"errors", "readiness"},
     # The ledger and the accounts are handed over as plain rows.
     "export": {"errors", "tables", "cells", "screening", "readiness"},
     "report": {"errors", "lazily", "tables", "readiness"},
@@ -60,7 +62,7 @@ MAY_NAME_THE_STUDY = {"parsers", "trials", "regions"}
 USED_IN = {
     "numpy": {
         *("files", "parsers", "trials", "regions", "measures", "screening", "export", "report"),
-        *("session", "drafting", "lines", "pseudonyms", "coding", "readiness"),
+        *("session", "drafting", "lines", "pseudonyms", "coding", "readiness", "variants"),
     },
     "pyarrow": {"files", "parsers", "export", "report", "session", "tables", "cells", "drafting"},
     "openpyxl": {"files"},
