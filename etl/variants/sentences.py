@@ -1,0 +1,366 @@
+"""What is said of a comparison over all variants, in plain sentences."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Iterator, Sequence
+
+import numpy as np
+
+from etl.variants.facts import Comparison, Crossing, Flags, Setting, SettingShare, Summary
+from etl.variants.shares import turning
+from etl.variants.words import all_of, any_of, listed, many, number, percent
+
+#: What signs are called.
+_SIGNS = {-1.0: "below 0", 0.0: "exactly 0", 1.0: "above 0"}
+
+
+def short_keys(settings: Sequence[Setting]) -> tuple[str, ...]:
+    """What settings are called where there is little room.
+
+    Parameters
+    ----------
+    settings : sequence of Setting
+        All of them.
+
+    Returns
+    -------
+    tuple of str
+        For each the last part of its key, with as many parts before as tell it from the others.
+
+    Examples
+    --------
+    >>> keys = ["regions.tolerance_px", "screening.fixations.under_ms",
+    ...         "screening.fixations.merge.under_ms"]
+    >>> short_keys([Setting(key, ("1", "2"), 0) for key in keys])
+    ('tolerance_px', 'fixations.under_ms', 'merge.under_ms')
+    """
+    ends = [_ends(own.key) for own in settings]
+    shared = Counter(end for own in ends for end in own)
+    return tuple(next((e for e in own if shared[e] == 1), own[-1]) for own in ends)
+
+
+def setting_words(key: str, alternative: str) -> str:
+    """A setting with one of its alternatives.
+
+    Parameters
+    ----------
+    key : str
+        What the setting is called.
+    alternative : str
+        The value as TOML writes it.
+
+    Returns
+    -------
+    str
+        As in the study file; ``false`` is off.
+
+    Examples
+    --------
+    >>> setting_words("under_ms", "80"), setting_words("merge", "false")
+    ('under_ms = 80', 'merge off')
+    """
+    return f"{key} off" if alternative == "false" else f"{key} = {alternative}"
+
+
+def comparison_words(comparison: Comparison) -> str:
+    """What is compared, where, and with what.
+
+    Parameters
+    ----------
+    comparison : Comparison
+        A comparison, or a rate.
+
+    Returns
+    -------
+    str
+        Outcome, region and levels, as far as there are any.
+
+    Examples
+    --------
+    >>> comparison_words(Comparison("skip", "verb", "fit", "odd", "fitting"))
+    'skip at verb, fit odd against fitting'
+    """
+    text = comparison.outcome
+    if comparison.region:
+        text += f" at {comparison.region}"
+    if comparison.factor:
+        text += f", {comparison.factor} {comparison.level} against {comparison.reference}"
+    return text
+
+
+def for_paper(summary: Summary, crossing: Crossing) -> str:
+    """A passage for a paper: what was varied, and what became of the result.
+
+    Parameters
+    ----------
+    summary : Summary
+        What is known of the comparison.
+    crossing : Crossing
+        The variants.
+
+    Returns
+    -------
+    str
+        Whole sentences, in one paragraph.
+    """
+    return " ".join(_passage(summary, crossing))
+
+
+def in_short(summary: Summary, crossing: Crossing) -> str:
+    """The same for the console.
+
+    Parameters
+    ----------
+    summary : Summary
+        What is known of the comparison.
+    crossing : Crossing
+        The variants.
+
+    Returns
+    -------
+    str
+        One line; a second one where the sign turns or a setting matters most, which says with
+        which.
+    """
+    compared, total, base = summary.compared, len(crossing), crossing.base
+    head = f"{comparison_words(compared.comparison)}: "
+    if summary.without == total:
+        return f"{head}no value in {any_of(total)}"
+    if np.isnan(compared.difference[base]):
+        head += "no value in the study"
+    else:
+        what = "" if compared.comparison.factor else "rate "
+        head += f"{what}{number(compared.difference[base])} ({_limits(summary, base)}) in the study"
+    if total == 1:
+        return head
+    head += f", {_span(summary)} over {many(total, 'variant')}"
+    if compared.comparison.factor:
+        head += f"; {_signs_in_short(summary, crossing)}"
+    if summary.without:
+        head += f"; no value in {summary.without:,}"
+    more = _turns_in_short(summary, crossing) or _decides_in_short(summary, crossing)
+    return f"{head}\n{more}" if more else head
+
+
+def _passage(summary: Summary, crossing: Crossing) -> Iterator[str]:
+    """One sentence of the passage after the other."""
+    compared, total, base = summary.compared, len(crossing), crossing.base
+    factor = compared.comparison.factor
+    measure = "the difference in log-odds" if factor else "the rate"
+    yield f"{comparison_words(compared.comparison)}: {measure} was computed in {_varied(crossing)}."
+    lacking = "since one of the two conditions has none" if factor else "since there are no data"
+    if summary.without == total:
+        yield f"It has no value in {any_of(total)}, {lacking}."
+        return
+    if summary.without:
+        yield f"It has no value in {summary.without:,} of {total:,} variants, {lacking}."
+    if _one_text(summary):
+        if total > 1:
+            where = f"the other {total - summary.without:,}" if summary.without else all_of(total)
+            yield f"It is {_span(summary)} in {where}."
+    else:
+        yield f"It ranges from {_span(summary)}."
+    if np.isnan(compared.difference[base]):
+        yield "In the study as it stands it has no value."
+    else:
+        value = number(compared.difference[base])
+        yield f"In the study as it stands it is {value} (95% interval {_limits(summary, base)})."
+    if factor:
+        yield from _signs(summary, crossing)
+    yield from _decides(summary, crossing)
+    corrected = int(compared.corrected.sum())
+    if corrected:
+        where = f"in {corrected:,} of {total:,} variants" if total > 1 else "here"
+        yield (
+            f"Where one of the four counts is 0 ({where}), 0.5 was added to each (Haldane, 1956; "
+            "Anscombe, 1956)."
+        )
+    source = "Woolf, 1955" if factor else "Wilson, 1927"
+    yield f"Intervals ({source}) take trials as independent, though readers and items recur."
+
+
+def _varied(crossing: Crossing) -> str:
+    """How many variants there are, and of what."""
+    total = len(crossing)
+    if total == 1:
+        return "one variant only, the study as it stands"
+    if any(crossing.names):
+        return f"{total:,} named variants of the data, the study as it stands among them"
+    keys = short_keys(crossing.settings)
+    if len(keys) == 1:
+        return f"{total:,} variants of the data, by one decision ({keys[0]})"
+    which = "all combinations" if crossing.full else "combinations"
+    return f"{total:,} variants of the data, {which} of {len(keys):,} decisions ({listed(keys)})"
+
+
+def _signs(summary: Summary, crossing: Crossing) -> Iterator[str]:
+    """In how many variants the sign holds, and in how many of these and others it is clear."""
+    compared, total, base = summary.compared, len(crossing), crossing.base
+    signs, clear = np.sign(compared.difference), _clear(summary)
+    # An interval around 0 holds 0: nothing is to be said of it.
+    counts = {
+        word: f"{word} in {int((signs == sign).sum()):,}"
+        + (_left_out(signs == sign, clear) if sign else "")
+        for sign, word in _SIGNS.items()
+        if (signs == sign).any()
+    }
+    if total == 1:
+        if signs[base]:
+            yield f"Its interval {'leaves out' if summary.clear else 'includes'} 0."
+        return
+    own = _SIGNS.get(signs[base], "")
+    if not abs(signs[base]) > 0:
+        yield f"So there is no sign that could hold; the value is {listed([*counts.values()])}."
+    elif summary.holds:
+        yield f"It is {own} in {all_of(total)}{_left_out(signs == signs[base], clear)}."
+    else:
+        of = f"{summary.same_sign:,} of {total:,} variants"
+        yield f"It is {own}, as in the study, in {of}{_left_out(signs == signs[base], clear)}."
+        others = [text for word, text in counts.items() if word != own]
+        if others:
+            yield f"It is {listed(others)}."
+
+
+def _left_out(among: Flags, clear: Flags) -> str:
+    """In brackets, in how many of some variants the interval leaves out 0."""
+    total, number = int(among.sum()), int((among & clear).sum())
+    if total == 1:
+        return f" (its interval {'leaves out' if number else 'includes'} 0)"
+    which = f"{number:,} of these"
+    if number in (0, total):
+        none, every = ("neither", "both") if total == 2 else ("none", "all")
+        which = f"{every if number else none} of these"
+    return f" (in {which} the interval leaves out 0)"
+
+
+def _decides(summary: Summary, crossing: Crossing) -> Iterator[str]:
+    """Which decision explains most of the variance; nothing where there is one decision only."""
+    first, keys = _foremost(summary), short_keys(crossing.settings)
+    if not first or len(keys) == 1:
+        return
+    together, alone = percent(first[0].together), percent(first[0].alone)
+    who = listed([keys[own.setting] for own in first])
+    if len(first) == len(keys):
+        yield (
+            f"All {len(keys):,} decisions explain equally much of the variance between variants "
+            f"({together} each, with interactions)."
+        )
+    elif len(first) > 1:
+        yield (
+            "The decisions that explain the largest shares of the variance between variants are "
+            f"{who}, equally much ({together} each, with interactions)."
+        )
+    else:
+        share = together
+        if alone != together:
+            share += f" with its interactions, {alone} by itself"
+        yield (
+            "The decision that explains the largest share of the variance between variants is "
+            f"{who} ({share})."
+        )
+
+
+def _decides_in_short(summary: Summary, crossing: Crossing) -> str:
+    """Which setting matters most, or which equally much; empty where that goes without saying."""
+    first, total = _foremost(summary), len(crossing.settings)
+    if not first or total == 1:
+        return ""
+    share = f"{percent(first[0].together)} of the variance between variants"
+    who = listed([crossing.settings[own.setting].key for own in first])
+    if len(first) == total:
+        return f"all {total:,} settings matter equally ({share} each)"
+    if len(first) > 1:
+        return f"{who} matter most, and equally ({share} each)"
+    return f"{who} matters most ({share})"
+
+
+def _signs_in_short(summary: Summary, crossing: Crossing) -> str:
+    """In how many variants the sign holds."""
+    total, base = len(crossing), summary.compared.difference[crossing.base]
+    if not abs(base) > 0:
+        numbers = (summary.negative, summary.zero, summary.positive)
+        counts = zip(_SIGNS.values(), numbers, strict=True)
+        return listed([f"{word} in {number:,}" for word, number in counts if number])
+    word = _SIGNS[np.sign(base)]
+    of = all_of(total) if summary.holds else f"{summary.same_sign:,} of {total:,} variants"
+    return f"{word} in {of}, with an interval that leaves out 0 in {summary.clear:,}"
+
+
+def _turns_in_short(summary: Summary, crossing: Crossing) -> str:
+    """Which setting turns the sign, with which of its alternatives; empty where none does."""
+    signs = np.sign(summary.compared.difference)
+    if summary.turns is None:
+        several = (summary.positive > 0) + (summary.negative > 0) + (summary.zero > 0) > 1
+        alone = "the sign turns, but not between variants that differ in one setting only"
+        return alone if several else ""
+    turned = turning(summary.compared.difference, crossing)
+    keys = [own.key for own in crossing.settings]
+    most = np.flatnonzero(turned == turned.max()).tolist()
+    if len(most) > 1:
+        how = (
+            "equally often" if len(most) == np.count_nonzero(turned) else "most, and equally often,"
+        )
+        return f"the sign turns {how} with {listed([keys[place] for place in most])}"
+    how = "most often with" if np.count_nonzero(turned) > 1 else "with"
+    parts = []
+    for place, alternative in enumerate(crossing.settings[summary.turns].alternatives):
+        chosen = signs[crossing.choices[:, summary.turns] == place]
+        parts.append(_mostly(alternative, [int((chosen == sign).sum()) for sign in _SIGNS]))
+    return f"the sign turns {how} {keys[summary.turns]}: {', '.join(parts)}"
+
+
+def _mostly(alternative: str, counts: Sequence[int]) -> str:
+    """The sign that an alternative has most often, from how often it has each."""
+    total, most = sum(counts), max(counts)
+    if not total:
+        return f"no value with {alternative}"
+    words = [w for w, number in zip(_SIGNS.values(), counts, strict=True) if number == most]
+    of = f"{most:,} of {many(total, 'variant')}" + (" each" if len(words) > 1 else "")
+    return f"{' or '.join(words)} with {alternative} ({of})"
+
+
+def _foremost(summary: Summary) -> list[SettingShare]:
+    """The settings with the largest share, as far as whole percents tell them apart."""
+    if not summary.shares:
+        return []
+    most = max(own.together for own in summary.shares)
+    return [own for own in summary.shares if percent(own.together) == percent(most)]
+
+
+def _clear(summary: Summary) -> Flags:
+    """Where the interval leaves out 0."""
+    clear: Flags = (summary.compared.low > 0) | (summary.compared.high < 0)
+    return clear
+
+
+def _ends(key: str) -> list[str]:
+    """The ends of a key, from its last part to the whole."""
+    parts = key.split(".")
+    return [".".join(parts[start:]) for start in reversed(range(len(parts)))]
+
+
+def _limits(summary: Summary, variant: int) -> str:
+    """The interval in one variant."""
+    compared = summary.compared
+    return f"{number(compared.low[variant])} to {number(compared.high[variant])}"
+
+
+def _span(summary: Summary) -> str:
+    """The lowest and the highest value; one, where two decimals do not tell them apart."""
+    low, high = _lowest_and_highest(summary)
+    if not _one_text(summary):
+        return f"{number(low)} to {number(high)}"
+    return number(low) if low == high else f"{number(low)} (to two decimals)"
+
+
+def _one_text(summary: Summary) -> bool:
+    """Whether all values are written alike."""
+    low, high = _lowest_and_highest(summary)
+    return number(low) == number(high)
+
+
+def _lowest_and_highest(summary: Summary) -> tuple[float, float]:
+    """The ends of the values, of which there is at least one."""
+    ordered = summary.compared.difference[summary.order]
+    return float(ordered[0]), float(ordered[-1 - summary.without])
