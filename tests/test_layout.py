@@ -31,7 +31,8 @@ MAY_USE = {
     "cells": set(),
     "measures": {"errors"},
     "files": {"errors", "tables"},
-    "study": {"errors", "tables", "coding"},
+    "study": {"errors", "tables", "coding", "variants"},
+    "variants": set(),
     "pseudonyms": {"files"},
     "parsers": {"errors", "tables", "files", "pseudonyms"},
     "trials": {"errors", "tables", "files", "pseudonyms"},
@@ -60,7 +61,8 @@ MAY_NAME_THE_STUDY = {"parsers", "trials", "regions"}
 USED_IN = {
     "numpy": {
         *("files", "parsers", "trials", "regions", "measures", "screening", "export", "report"),
-        *("session", "drafting", "lines", "pseudonyms", "coding", "readiness"),
+        *("session", "drafting", "lines", "pseudonyms", "coding", "readiness", "study"),
+        "variants",
     },
     "pyarrow": {"files", "parsers", "export", "report", "session", "tables", "cells", "drafting"},
     "openpyxl": {"files"},
