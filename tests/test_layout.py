@@ -43,7 +43,7 @@ MAY_USE = {
     "readiness": {"errors", "coding"},
     # The ledger and the accounts are handed over as plain rows.
     "export": {"errors", "tables", "cells", "screening", "readiness"},
-    "report": {"errors", "lazily", "tables", "readiness"},
+    "report": {"errors", "lazily", "tables", "readiness", "variants"},
     "handoff": {"errors", "tables", "cells", "coding", "readiness"},
     "session": {
         *("errors", "tables", "files", "study", "parsers", "trials", "regions", "measures"),
