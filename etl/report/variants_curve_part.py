@@ -1,0 +1,418 @@
+"""What the page shows of each leading comparison: its curve, its decisions, its numbers."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+from markupsafe import Markup
+
+from etl.report.variants_curve import (
+    COLUMNS,
+    Curve,
+    curve_of,
+    cut_off,
+    leaves_out,
+    plot,
+    row,
+    scale_of,
+    shares_bar,
+    ticks,
+)
+from etl.report.variants_input import VariantsInput
+from etl.report.variants_words import (
+    alternative,
+    code,
+    comparison_text,
+    comparison_words,
+    headline,
+    interval,
+    is_rate,
+    more_in,
+    share_words,
+    value,
+    variant_name,
+    why_no_shares,
+)
+from etl.report.wording import count, counted, name
+from etl.variants.facts import Summary
+
+#: Of so many variants at each end of a curve the numbers are in the page.
+MOST_AT_ENDS = 50
+
+
+@dataclass(frozen=True, slots=True)
+class Strip:
+    """A row beneath the curve.
+
+    Attributes
+    ----------
+    label : Markup
+        The alternative.
+    own : bool
+        Whether it is the study's.
+    svg : Markup
+        Where it is taken.
+    """
+
+    label: Markup
+    own: bool
+    svg: Markup
+
+
+@dataclass(frozen=True, slots=True)
+class StripGroup:
+    """A decision beneath the curve.
+
+    Attributes
+    ----------
+    heading : Markup
+        Its short name.
+    share : str
+        How much it decides; empty where that is not known.
+    strips : tuple of Strip
+        One an alternative.
+    """
+
+    heading: Markup
+    share: str
+    strips: tuple[Strip, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Drawn:
+    """A curve ready to be shown.
+
+    Attributes
+    ----------
+    density : str
+        How close its columns stand.
+    above, below : Markup
+        What it means to lie above and below 0; empty for rates.
+    ticks, plot : Markup
+        Numbers of the axis, and the values.
+    across : str
+        Where the study is; empty where it has no value.
+    clear : Markup
+        The row of intervals that leave out 0; empty for rates.
+    groups : tuple of StripGroup
+        The decisions, the one that decides most first.
+    remarks : tuple of str
+        What must be known to read it.
+    """
+
+    density: str
+    above: Markup
+    below: Markup
+    ticks: Markup
+    plot: Markup
+    across: str
+    clear: Markup
+    groups: tuple[StripGroup, ...]
+    remarks: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Mean:
+    """The mean over the variants with an alternative.
+
+    Attributes
+    ----------
+    label : Markup
+        The alternative.
+    own : bool
+        Whether it is the study's.
+    text : str
+        The mean; empty where it is not told.
+    """
+
+    label: Markup
+    own: bool
+    text: str
+
+
+@dataclass(frozen=True, slots=True)
+class DecisionRow:
+    """How much a decision matters for a comparison.
+
+    Attributes
+    ----------
+    key : Markup
+        The setting in full.
+    alone, together, flips : str
+        In words; empty without shares.
+    bar : Markup
+        Alone and together, drawn.
+    means : tuple of Mean
+        One an alternative.
+    """
+
+    key: Markup
+    alone: str
+    together: str
+    flips: str
+    bar: Markup
+    means: tuple[Mean, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class NumbersRow:
+    """A variant with its numbers.
+
+    Attributes
+    ----------
+    place : int
+        Along the curve, from 1.
+    label : Markup
+        Number and name of the variant.
+    own : bool
+        Whether it is the study.
+    choices : tuple of (str, bool)
+        Each alternative, and whether it is the study's.
+    figure, bounds : str
+        Value and interval.
+    counts : tuple of str
+        Ones of values, of the reference and of the level; of all without factors.
+    corrected : bool
+        Whether 0.5 was added to each count.
+    """
+
+    place: int
+    label: Markup
+    own: bool
+    choices: tuple[tuple[str, bool], ...]
+    figure: str
+    bounds: str
+    counts: tuple[str, ...]
+    corrected: bool
+
+
+@dataclass(frozen=True, slots=True)
+class CurvePart:
+    """All that the page shows of a leading comparison.
+
+    Attributes
+    ----------
+    place : int
+        Its number, from 1.
+    title : Markup
+        Outcome, region, levels.
+    spoken : str
+        The same, for programs that read aloud.
+    says : Markup
+        It summed up.
+    rate : bool
+        Whether it is of a rate.
+    drawn : Drawn or None
+        None where no variant has a value.
+    decisions : tuple of DecisionRow
+        One a setting.
+    no_shares : str
+        Why there are no shares; empty where there are.
+    passage : str
+        For a paper.
+    rows : tuple of NumbersRow
+        Variants along the curve; of many the two ends.
+    rows_left : Markup
+        What is said of those that are not shown.
+    heads : tuple of Markup
+        What ``counts`` are of.
+    """
+
+    place: int
+    title: Markup
+    spoken: str
+    says: Markup
+    rate: bool
+    drawn: Drawn | None
+    decisions: tuple[DecisionRow, ...]
+    no_shares: str
+    passage: str
+    rows: tuple[NumbersRow, ...]
+    rows_left: Markup
+    heads: tuple[Markup, ...]
+
+
+def collect_curve(facts: VariantsInput, place: int) -> CurvePart:
+    """Gather what is shown of a leading comparison.
+
+    Parameters
+    ----------
+    facts : VariantsInput
+        What the page is made from.
+    place : int
+        Its place among those that lead, from 0.
+
+    Returns
+    -------
+    CurvePart
+        Ready to be shown.
+    """
+    summary = facts.summaries[facts.leading[place]]
+    comparison = summary.compared.comparison
+    rate = is_rate(comparison)
+    curve = curve_of(summary.order, summary.compared.difference, facts.crossing.base)
+    rows, left = _numbers(facts, summary)
+    heads = (name(comparison.reference), name(comparison.level))
+    return CurvePart(
+        place + 1,
+        comparison_words(comparison),
+        comparison_text(comparison),
+        headline(summary, facts),
+        rate,
+        _drawn(facts, summary, curve) if curve.columns else None,
+        _decisions(facts, summary),
+        why_no_shares(summary, facts.crossing),
+        facts.passages[place],
+        rows,
+        more_in(facts, "differences", left),
+        (Markup("all"),) if rate else heads,
+    )
+
+
+def _label(facts: VariantsInput, setting: int, place: int) -> tuple[Markup, bool]:
+    """An alternative, and whether it is the study's."""
+    own = facts.crossing.settings[setting]
+    return code(alternative(own.alternatives[place])), place == own.base
+
+
+def _by_weight(summary: Summary, settings: int) -> list[int]:
+    """The settings, the one that decides most first; as they come without shares."""
+    weight = {share.setting: share.together for share in summary.shares}
+    return sorted(range(settings), key=lambda setting: -weight.get(setting, 0.0))
+
+
+def _drawn(facts: VariantsInput, summary: Summary, curve: Curve) -> Drawn:
+    """The curve with its rows."""
+    compared, crossing = summary.compared, facts.crossing
+    rate = is_rate(compared.comparison)
+    scale = scale_of(curve, compared, rate=rate)
+    together = {share.setting: share.together for share in summary.shares}
+    groups = []
+    for setting in _by_weight(summary, len(crossing.settings)):
+        strips = []
+        for place in range(len(crossing.settings[setting].alternatives)):
+            label, own = _label(facts, setting, place)
+            strips.append(Strip(label, own, row(curve, crossing.choices[:, setting] == place)))
+        decides = share_words(together[setting]) if setting in together else ""
+        groups.append(StripGroup(code(facts.short_keys[setting]), decides, tuple(strips)))
+    what = "rate" if rate else "difference"
+    remarks = []
+    if not curve.single:
+        fewest = int(np.diff(curve.bounds).min())
+        most = int(np.diff(curve.bounds).max())
+        each = count(most) if fewest == most else f"{count(fewest)} or {count(most)}"
+        remarks.append(
+            f"Each of the {COLUMNS} columns stands for {each} variants that follow one another: "
+            "the thick mark spans their values, the thin one their intervals, and a bar beneath is "
+            "as high as the share of them that take the alternative."
+        )
+    if cut := cut_off(curve, compared, scale, rate=rate):
+        reach = "reaches" if cut == 1 else "reach"
+        remarks.append(
+            f"{counted(cut, 'interval')} {reach} beyond the drawing and end at its edge."
+        )
+    if summary.without:
+        verb = "has" if summary.without == 1 else "have"
+        remarks.append(
+            f"{counted(summary.without, 'variant')} {verb} no {what} and "
+            f"{'is' if summary.without == 1 else 'are'} not drawn."
+        )
+    if curve.base is None:
+        remarks.append(f"The study as it stands has no {what}, so it is not marked.")
+    level, reference = compared.comparison.level, compared.comparison.reference
+    return Drawn(
+        curve.density,
+        Markup() if rate else Markup("↑ more ones with {}").format(name(level)),
+        Markup() if rate else Markup("↓ more ones with {}").format(name(reference)),
+        ticks(scale, rate=rate),
+        plot(curve, compared, scale, rate=rate),
+        "" if curve.base is None else f"{100 * curve.across(curve.base):.4g}%",
+        Markup() if rate else row(curve, leaves_out(compared)),
+        tuple(groups),
+        tuple(remarks),
+    )
+
+
+def _decisions(facts: VariantsInput, summary: Summary) -> tuple[DecisionRow, ...]:
+    """One row a setting, with shares where there are any."""
+    shares = {share.setting: share for share in summary.shares}
+    rate = is_rate(summary.compared.comparison)
+    out = []
+    for setting in _by_weight(summary, len(facts.crossing.settings)):
+        own, share = facts.crossing.settings[setting], shares.get(setting)
+        figures = (math.nan,) * 3
+        if share is not None:
+            figures = (share.alone, share.together, math.nan if rate else share.flips)
+        means = tuple(
+            Mean(
+                *_label(facts, setting, place),
+                value(share.means[place], rate=rate) if share is not None else "",
+            )
+            for place in range(len(own.alternatives))
+        )
+        out.append(
+            DecisionRow(
+                code(own.key),
+                share_words(figures[0]),
+                share_words(figures[1]),
+                share_words(figures[2]),
+                Markup() if share is None else shares_bar(share.alone, share.together),
+                means,
+            )
+        )
+    return tuple(out)
+
+
+def _numbers(facts: VariantsInput, summary: Summary) -> tuple[tuple[NumbersRow, ...], int]:
+    """The variants along the curve, of many the two ends and the study; how many are left."""
+    whole = len(summary.order)
+    places = list(range(whole))
+    if whole > 2 * MOST_AT_ENDS:
+        own = int(np.flatnonzero(summary.order == facts.crossing.base)[0])
+        ends = {*places[:MOST_AT_ENDS], *places[-MOST_AT_ENDS:], own}
+        places = sorted(ends)
+    return tuple(_numbers_row(facts, summary, place) for place in places), whole - len(places)
+
+
+def _numbers_row(facts: VariantsInput, summary: Summary, place: int) -> NumbersRow:
+    """One variant."""
+    compared, crossing = summary.compared, facts.crossing
+    rate = is_rate(compared.comparison)
+    variant = int(summary.order[place])
+    counts = [
+        f"{count(int(ones))} of {count(int(zeros + ones))}"
+        for zeros, ones in compared.counts[variant]
+    ]
+    return NumbersRow(
+        place + 1,
+        name(variant_name(crossing, variant)),
+        variant == crossing.base,
+        choices_of(facts, variant),
+        value(float(compared.difference[variant]), rate=rate),
+        interval(float(compared.low[variant]), float(compared.high[variant]), rate=rate),
+        tuple(counts[:1] if rate else counts),
+        bool(compared.corrected[variant]),
+    )
+
+
+def choices_of(facts: VariantsInput, variant: int) -> tuple[tuple[str, bool], ...]:
+    """What a variant takes of each setting, and whether that is as in the study.
+
+    Parameters
+    ----------
+    facts : VariantsInput
+        With the crossing.
+    variant : int
+        Its place, from 0.
+
+    Returns
+    -------
+    tuple of (str, bool)
+        By setting.
+    """
+    return tuple(
+        (alternative(own.alternatives[int(place)]), int(place) == own.base)
+        for own, place in zip(facts.crossing.settings, facts.crossing.choices[variant], strict=True)
+    )
