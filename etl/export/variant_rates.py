@@ -9,7 +9,6 @@ from typing import Final
 
 import numpy as np
 import pyarrow as pa
-from etl.variants.differences import compare, rates
 from numpy.typing import NDArray
 
 from etl.export.arrays import array_of, coded_of, numbers_of
@@ -18,6 +17,7 @@ from etl.export.writers import TableWriter
 from etl.tables import written_schema
 from etl.tables.variants import RATES, rate_columns
 from etl.variants.conditions import ConditionGroups
+from etl.variants.differences import compare, rates
 
 #: About so many rows are made at once.
 _ROWS_AT_ONCE: Final = 200_000
@@ -108,14 +108,11 @@ def _batches(
         rate, low, high = rates(np.stack([zeros, ones], axis=-1))
         reference = np.maximum(groups.reference, 0)
         pairs = np.stack([counts[:, :, reference, :2], counts[..., :2]], axis=-2)
-        difference, lower, upper, corrected = (own.ravel() for own in compare(pairs))
+        difference, lower, upper, corrected = compare(pairs)
         compared = np.broadcast_to(groups.reference >= 0, shape).ravel()
         outcome = np.broadcast_to(np.arange(outcomes)[:, None], shape).ravel()
         group = np.broadcast_to(np.arange(conditions), shape).ravel()
         variant = np.repeat(np.arange(start + 1, start + some + 1), outcomes * conditions)
-
-        def where_compared(values: NDArray[np.float64], own: NDArray[np.bool_]) -> pa.Array:
-            return numbers_of(np.where(own, values, np.nan))
 
         yield [
             array_of(variant),
@@ -132,8 +129,11 @@ def _batches(
             array_of(ones.copy()),
             *(numbers_of(values) for values in (rate, low, high)),
             coded_of(np.where(compared, groups.reference[group], -1).astype(np.int32), against),
-            *(where_compared(values, compared) for values in (difference, lower, upper)),
-            array_of(corrected.astype(np.int8), compared & ~np.isnan(difference)),
+            *(
+                numbers_of(np.where(compared, values.ravel(), np.nan))
+                for values in (difference, lower, upper)
+            ),
+            array_of(corrected.ravel().astype(np.int8), compared & ~np.isnan(difference.ravel())),
         ]
 
 

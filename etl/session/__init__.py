@@ -13,7 +13,7 @@ if TYPE_CHECKING:
     from etl.session.one_trial import Wanted, explained, trace, write_picture
     from etl.session.result import Result
     from etl.session.run import build, check
-    from etl.session.vary import Varied, vary
+    from etl.session.varying import Varied, vary
 
 __all__ = [
     "PUBLISHED",
@@ -33,7 +33,7 @@ __all__ = [
 _HOMES = {
     **dict.fromkeys(("build", "check"), "etl.session.run"),
     **dict.fromkeys(("Wanted", "explained", "trace", "write_picture"), "etl.session.one_trial"),
-    **dict.fromkeys(("Varied", "vary"), "etl.session.vary"),
+    **dict.fromkeys(("Varied", "vary"), "etl.session.varying"),
     "PUBLISHED": "etl.session.crew",
     "Result": "etl.session.result",
     "load_study": "etl.session.loading",

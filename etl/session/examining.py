@@ -163,6 +163,8 @@ def examine(
     gathered = None if read is None else read.gathered(findings)
     if read is None or gathered is None:
         return None
+    # All that the tables say of trials has been joined.
+    read.plan.facts.release()
     return read.plan, gathered, read.told, read.crew
 
 

@@ -158,7 +158,6 @@ def gather(
     facts = trial_facts(plan, trials, shown, findings, complete=complete)
     corrections = Corrections(plan.corrections, findings, complete)
     tasks = reader_tasks(design, trials, (text, good), facts, parts, corrections)
-    plan.facts.release()
     return Gathered(
         design, options_of(plan), plan.library, aside, tasks, facts.inputs, unrecorded, fixations
     )

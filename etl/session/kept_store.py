@@ -13,6 +13,7 @@ import importlib
 import io
 import os
 import pickle
+import shutil
 import socket
 from collections.abc import Iterable
 from dataclasses import dataclass, is_dataclass
@@ -149,6 +150,27 @@ class KeptStore:
                 file.write(body)
         draft.replace(path)
         return path
+
+    def hold(self, names: Iterable[str]) -> None:
+        """Take entries of earlier builds to the fresh ones, where no other build removes them.
+
+        Parameters
+        ----------
+        names : iterable of str
+            Entries that are there.
+
+        Raises
+        ------
+        OSError
+            If one is not there any more.
+        """
+        for name in names:
+            if (self.fresh / name).exists():
+                continue
+            try:
+                os.link(self.earlier / name, self.fresh / name)
+            except OSError:  # another disk, or a file system without links
+                shutil.copyfile(self.earlier / name, self.fresh / name)
 
     def settle(self, used: Iterable[str]) -> None:
         """Keep what a build has used, and nothing else.

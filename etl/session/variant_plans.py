@@ -102,6 +102,7 @@ def plan_variants(read: LogsRead, studies: Sequence[Study], findings: Findings) 
             raise DataError(findings)
     if findings.failed:
         raise DataError(findings)
+    read.plan.facts.release()
     numbers = {need: number for number, need in enumerate(gathered)}
     places: dict[str, int] = {}
     options = []

@@ -172,14 +172,11 @@ def _losses(counts: VariantCounts) -> tuple[VariantLoss, ...]:
         trials, fixations = (
             _fates(own[variant].tolist()) for own in (counts.trials, counts.fixations)
         )
+        readers, readers_lost = counts.readers[variant].tolist()
+        cells, trials_changed = counts.changed[variant].tolist()
+        far = int(counts.far[variant])
         found.append(
-            VariantLoss(
-                *counts.readers[variant].tolist(),
-                *trials,
-                *fixations,
-                int(counts.far[variant]),
-                *counts.changed[variant].tolist(),
-            )
+            VariantLoss(readers, readers_lost, *trials, *fixations, far, cells, trials_changed)
         )
     return tuple(found)
 

@@ -40,7 +40,8 @@ class ConditionGroups:
         -------
         (..., G, k) int64 array
         """
-        return np.einsum("gc,...ck->...gk", self.members.astype(np.int64), counts)
+        counted: Ints = np.einsum("gc,...ck->...gk", self.members.astype(np.int64), counts)
+        return counted
 
 
 def groups_of(factors: Mapping[str, Sequence[str]], combinations: Ints) -> ConditionGroups:

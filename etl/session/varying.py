@@ -189,6 +189,7 @@ def vary(
         read = read_study(study, room, findings, held, turns=len(chosen.crossing))
         if read is None or findings.failed:
             raise DataError(findings)
+        _hold_kept(room, read)
         run = _Run(chosen, read, findings, shop.fresh, progress)
         varied = run.done(target)
         told = for_record(findings, read.plan).lines(("warning", "note"))
@@ -209,6 +210,21 @@ def vary(
             save_key(held)
     progress(PUBLISHED, 1, 1)
     return varied
+
+
+def _hold_kept(room: Room, read: LogsRead) -> None:
+    """Keep what a build of the study has kept from going while it is used."""
+    names = [name for answer in read.answers for name, _ in answer.entries()]
+    try:
+        room.store.hold(names)
+    except OSError as gone:
+        findings = Findings()
+        findings.error(
+            "what the study's build has kept is being removed by another build",
+            path=room.store.earlier.name,
+            fix="wait until the build of the study is done, and try again",
+        )
+        raise DataError(findings) from gone
 
 
 def _loaded(variants: str | os.PathLike[str], study: Study) -> StudyVariants:
@@ -424,9 +440,21 @@ class _Run:
         write_variants_page(
             self.folder,
             VariantsInput(
-                *(study.title, self.chosen.title, study.path.name, self.chosen.path.name),
-                *(self.crossing, results.summaries, chosen, bool(self.leading), LEADING_RULE),
-                *(passages, self.keys, results.losses, results.changes, readers, trials),
+                study.title,
+                self.chosen.title,
+                study.path.name,
+                self.chosen.path.name,
+                self.crossing,
+                results.summaries,
+                chosen,
+                bool(self.leading),
+                LEADING_RULE,
+                passages,
+                self.keys,
+                results.losses,
+                results.changes,
+                readers,
+                trials,
                 tuple(for_record(self.findings, self.read.plan).lines(("warning",))),
                 tuple(tables),
             ),
