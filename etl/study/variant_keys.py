@@ -81,10 +81,11 @@ def short(key: KeyPath, others: Collection[KeyPath]) -> str:
     Examples
     --------
     >>> under, merged = ("screening", "fixations", "under_ms"), (*MERGE, "under_ms")
-    >>> short(under, [under]), short(under, [under, merged])
-    ('under_ms', 'fixations.under_ms')
+    >>> short(under, [under]), short(under, [under, merged]), short(merged, [merged])
+    ('under_ms', 'fixations.under_ms', 'merge.under_ms')
     """
-    for length in range(1, len(key)):
+    # Settings of a line method, and of merging, say little without the name of their table.
+    for length in range(2 if key[-2] in WITH_SETTINGS else 1, len(key)):
         end = key[-length:]
         if all(other == key or other[-length:] != end for other in others):
             return dotted(end)

@@ -47,7 +47,7 @@ def settings(written: str, text: str = STUDY) -> dict[str, tuple[tuple[str, ...]
     return {one.key: (one.alternatives, one.base) for one in crossing.settings}
 
 
-def as_if_written(study: Study, text: str, values: dict[str, Any]) -> Study:
+def as_if_written(text: str, values: dict[str, Any]) -> Study:
     """The study as it would be read with these keys in its own file."""
     data = tomllib.loads(text)
     for key, value in values.items():
@@ -101,12 +101,9 @@ def test_every_variant_is_the_study_that_its_values_would_make() -> None:
             for setting, place in zip(read.crossing.settings, chosen, strict=True)
             if place != setting.base
         }
-        written = as_if_written(study, STUDY, own)
+        written = as_if_written(STUDY, own)
         assert made.model_dump() == written.model_dump()
-        named, expected = (
-            one.model_dump(exclude_unset=True, exclude_none=True) for one in (made, written)
-        )
-        assert named == expected
+        assert made.model_dump(exclude_unset=True) == written.model_dump(exclude_unset=True)
         assert list(broken_rules(made, ())) == []
 
 
@@ -124,30 +121,26 @@ def test_a_variant_knows_where_the_study_was_read_from() -> None:
 
 
 @pytest.mark.parametrize(
-    ("written", "expected"),
+    ("written", "expected", "base"),
     [
-        ("[screening.trials]\nfewest_fixations = [3]", ("false", "3")),
-        ("[screening.trials]\nanswer_wrong = [true, false]", ("true", "false")),
-        ("[measures]\nno_opportunity = ['zero']", ('"missing"', '"zero"')),
-        ("[lines]\nmethod = ['warp']", ('"consensus"', '"warp"')),
-        ("[lines.chain]\nx_px = [150, 192.0]", ("150", "192")),
-        ("[lines.stretch]\nscale = [[0.90, 1.10], [0.8, 1.2]]", ("[0.9, 1.1]", "[0.8, 1.2]")),
-        ("[screening.values]\noutlier_sd = [2.5]", ("false", "2.5")),
-        ("[screening.trials]\noutside_share_over = [0, false]", ("0", "false")),
-        ("[screening.trials]\nnotes = ['more notes.csv']", ("false", '"more notes.csv"')),
+        ("[screening.trials]\nfewest_fixations = [3]", ("false", "3"), 0),
+        ("[screening.trials]\nanswer_wrong = [true, false]", ("true", "false"), 1),
+        ("[measures]\nno_opportunity = ['zero']", ('"missing"', '"zero"'), 0),
+        ("[lines]\nmethod = ['warp']", ('"consensus"', '"warp"'), 0),
+        ("[lines.chain]\nx_px = [150, 192.0]", ("150", "192"), 1),
+        ("[lines.stretch]\nscale = [[0.8, 1.2], [0.90, 1.10]]", ("[0.8, 1.2]", "[0.9, 1.1]"), 1),
+        ("[screening.values]\noutlier_sd = [2.5]", ("false", "2.5"), 0),
+        ("[screening.trials]\noutside_share_over = [0, false]", ("0", "false"), 1),
+        ("[screening.trials]\nnotes = ['more notes.csv']", ("false", '"more notes.csv"'), 0),
     ],
 )
 @pytest.mark.parametrize("text", [SOUND, ALL_OFF], ids=["absent", "switched off"])
-def test_absent_keys_have_their_default(text: str, written: str, expected: tuple[str, ...]) -> None:
+def test_absent_keys_have_their_default(
+    text: str, written: str, expected: tuple[str, ...], base: int
+) -> None:
     """A rule that is absent or false is false, and a key with a default is its default."""
     text += '[trials]\nanswer_correct = "ok"\n'
-    ((alternatives, base),) = settings(written, text).values()
-    assert alternatives == expected
-    assert base == expected.index(
-        next(one for one in expected if one in ("false", '"missing"', '"consensus"', "192"))
-        if "scale" not in written
-        else "[0.9, 1.1]"
-    )
+    assert list(settings(written, text).values()) == [(expected, base)]
 
 
 @pytest.mark.parametrize(
