@@ -8,15 +8,18 @@ from typing import Any
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from etl.errors import StudyError
 from etl.study import Study, StudyVariants
 from etl.study.rules import broken_rules
+from etl.study.shape import known_keys
 from etl.study.variant_keys import VARYING
 from etl.study.variant_values import meaning, spelled, value_at, with_value
 from etl.study.wording import toml_text
+from tests.study.test_any_input import VALUES as ANY_VALUE
+from tests.study.test_any_input import words
 from tests.study.variants_written import study_of, variants_of
 
 #: For some keys values of which any may go with any other, but for limits of durations.
@@ -128,3 +131,63 @@ def test_value_is_put_in_its_place_only(study: Study, data: st.DataObject) -> No
     assert value_at(other, path) == "a value"
     assert value_at(study, path) == own
     assert with_value(other, path, own).model_dump() == study.model_dump()
+
+
+#: Any key that a variants file or a study file may have, and some that neither has.
+PATHS = [
+    *VARYING,
+    *(path for path, _ in known_keys()),
+    *(("comparisons",), ("variants",), ("title",), ("zzz",), ("screening", "zzz")),
+]
+IN_A_COMPARISON = st.sampled_from(["outcome", "region", "factor", "level", "facter", "zz"])
+IN_A_VARIANT = st.sampled_from(["name", "regions", "screening", "measures", "lines", "zz"])
+NESTED = st.recursive(
+    ANY_VALUE | st.sampled_from(["skipped", "cue", "late", "off", "consensus", "interrupt", "?"]),
+    lambda inner: st.one_of(
+        st.lists(inner, max_size=3),
+        st.dictionaries(
+            st.sampled_from(["under_ms", "within_px", "fixations", "tolerance_px", "[key]", ""]),
+            inner,
+            max_size=3,
+        ),
+    ),
+    max_leaves=5,
+)
+
+
+@settings(max_examples=100, deadline=None)
+@given(
+    st.lists(st.tuples(st.sampled_from(PATHS), st.lists(NESTED, max_size=4) | NESTED), max_size=4),
+    st.lists(st.dictionaries(IN_A_COMPARISON, NESTED, max_size=4), max_size=2),
+    st.lists(st.dictionaries(IN_A_VARIANT, NESTED, max_size=4), max_size=3),
+)
+def test_any_file_is_read_or_refused_in_plain_words(
+    study: Study,
+    changes: list[tuple[tuple[str, ...], Any]],
+    compared: list[dict[str, Any]],
+    named: list[dict[str, Any]],
+) -> None:
+    """Whatever stands in the file: variants that are sound studies, or problems with a fix each."""
+    data: dict[str, Any] = {}
+    if compared:
+        data["comparisons"] = compared
+    if named:
+        data["variants"] = named
+    for path, value in changes:
+        inner = data
+        for key in path[:-1]:
+            if not isinstance(inner.get(key), dict):
+                inner[key] = {}
+            inner = inner[key]
+        inner[path[-1]] = value
+    found = read(data, study)
+    if not isinstance(found, str):
+        assert len(found.studies) == len(found.crossing) > 1
+        assert all(not list(broken_rules(made, ())) for made in found.studies)
+        return
+    *told, count = found.split("\n")
+    problems = [line for line in told if not line.startswith("    ")]
+    fixes = [line for line in told if line.startswith("    fix: ")]
+    assert len(problems) == len(fixes) >= 1, found
+    assert count.endswith("nothing was written")
+    assert not {*words(found)} & {"pydantic", "dict", "tuple", "str", "none"}, found

@@ -206,6 +206,12 @@ def test_keys_that_do_not_belong(study: Study, written: str, expected: str) -> N
             id="no choice",
         ),
         pytest.param(
+            'merge = [{ under_ms = "60", within_px = 3 }]',
+            'merge.under_ms: this is text; found "60", expected a number\n'
+            "    fix: write under_ms = 60",
+            id="a number in quotes within a table",
+        ),
+        pytest.param(
             "merge = [{ under_ms = 80, within_pix = 3 }]",
             'merge.within_pix: unknown key\n    fix: did you mean "within_px"?',
             id="a slip within a table",
@@ -264,6 +270,20 @@ def test_alternatives_of_a_rule(study: Study, written: str, expected: str) -> No
 def test_alternatives_of_other_keys(study: Study, written: str, expected: str) -> None:
     """Values that are lists, choices and keys of a table are refused in their own ways."""
     assert said_of(written, study) == f"variants.toml:1: {expected}"
+
+
+def test_value_may_contradict_another_key_of_the_study(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """The message names the other key, since that stands in another file."""
+    monkeypatch.chdir(tmp_path)
+    text = f"{STUDY}line_confidence_under = 0.9\n"
+    assert said_of('lines.method = ["consensus", "warp"]', study_of(text)) == (
+        'variants.toml:1: lines.method: "warp" does not go with '
+        'screening.trials.line_confidence_under of the study: lines.method = "warp" does not tell '
+        'how sure the lines are; expected method = "consensus"\n'
+        '    fix: write method = "consensus" in [lines], or remove this rule'
+    )
 
 
 def test_keys_of_merge_need_a_study_that_merges(
