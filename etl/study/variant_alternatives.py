@@ -259,12 +259,13 @@ def _sound(entry: Entry, study: StudyFile, known: Collection[Problem], told: Tol
     problems = [problem for problem in examined.problems if problem not in known]
     for problem in problems:
         inside = problem.path[len(key) :] if problem.path[: len(key)] == key else ()
-        told.add((*entry.at, *inside), _in_a_list(elsewhere(problem, key, spelled(given))))
+        told.add((*entry.at, *inside), elsewhere(_in_a_list(problem, key), key, spelled(given)))
     return _NOT_SOUND if problems else value_at(examined.draft, key)
 
 
-def _in_a_list(problem: Problem) -> Problem:
+def _in_a_list(problem: Problem, key: KeyPath) -> Problem:
     """A problem whose fix writes a key, as it is for one of several values of that key."""
-    return replace(
-        problem, fix=re.sub(r"^(write (?:for example )?)[A-Za-z_]+ = ", r"\1", problem.fix)
-    )
+    if problem.path[: len(key)] != key:
+        return problem
+    written = rf"^(write (?:for example )?){re.escape(str(key[-1]))} = "
+    return replace(problem, fix=re.sub(written, r"\1", problem.fix))

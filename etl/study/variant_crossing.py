@@ -173,9 +173,10 @@ def _contradictions(
 
 def _tell(one: _Contradiction, varied: Sequence[Varied], number: int, told: Told) -> None:
     """Record a contradiction at the last alternative that has a part in it."""
+    keys = [own.key for own in varied]
     named = [
         " and ".join(
-            f"{short(varied[n].key)} = {spelled(varied[n].values[place])}"
+            f"{short(varied[n].key, keys)} = {spelled(varied[n].values[place])}"
             for n, place in sorted(by)
         )
         for by in one.by
@@ -187,9 +188,8 @@ def _tell(one: _Contradiction, varied: Sequence[Varied], number: int, told: Told
         Problem(
             one.problem.path,
             f"{one.problem.problem}, in {one.variants:,} of {number:,} variants: those with "
-            + "; with ".join(named)
-            + ("; and others" if one.more else ""),
-            expected="combinations that are sound",
+            + ", or with ".join(named)
+            + (", or with others" if one.more else ""),
             fix="leave one of them out, or name variants one by one with [[variants]]",
         ),
     )

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import difflib
-from collections.abc import Iterator, Mapping
+from collections.abc import Collection, Iterator, Mapping
 from dataclasses import dataclass
 from typing import Any, Final
 
@@ -64,13 +64,15 @@ class Entry:
     value: Any
 
 
-def short(key: KeyPath) -> str:
-    """A key by as few of its parts as tell it from the others that may vary.
+def short(key: KeyPath, others: Collection[KeyPath]) -> str:
+    """A key by as few of its parts as tell it from others.
 
     Parameters
     ----------
     key : tuple of str
-        One of ``VARYING``.
+        The key.
+    others : collection of tuple
+        All keys that are spoken of; the key itself may be among them.
 
     Returns
     -------
@@ -78,12 +80,14 @@ def short(key: KeyPath) -> str:
 
     Examples
     --------
-    >>> short(("screening", "trials", "duration_ms")), short(("screening", "trials", "notes"))
-    ('duration_ms', 'trials.notes')
+    >>> under, merged = ("screening", "fixations", "under_ms"), (*MERGE, "under_ms")
+    >>> short(under, [under]), short(under, [under, merged]), short(merged, [merged])
+    ('under_ms', 'fixations.under_ms', 'merge.under_ms')
     """
-    for length in range(1, len(key)):
+    # Settings of a line method, and of merging, say little without the name of their table.
+    for length in range(2 if key[-2] in WITH_SETTINGS else 1, len(key)):
         end = key[-length:]
-        if sum(other[-length:] == end for other in VARYING) == 1:
+        if all(other == key or other[-length:] != end for other in others):
             return dotted(end)
     return dotted(key)
 
@@ -153,19 +157,22 @@ def _refused(key: KeyPath, table: Mapping[str, Any], *, beside: tuple[str, ...])
         str(other[len(path)]) for other in VARYING if other[: len(path)] == path != other
     )
     choices = [*here, *(() if path else beside)]
-    homes = dict.fromkeys(
-        f"[{dotted(other[:place])}]"
-        for other in VARYING
-        for place in range(1, len(other))
-        if other[place] == name and other[:place] != path
+    homes = " or ".join(
+        dict.fromkeys(
+            f"[{dotted(other[:place])}]"
+            for other in VARYING
+            for place in range(1, len(other))
+            if other[place] == name and other[:place] != path
+        )
     )
-    belongs = f"it belongs in {' or '.join(homes)}" if homes else ""
     if field_at(key) is not None:
         return Problem(
             key,
             "this key may not vary",
             expected=WHAT_VARIES,
-            fix=belongs or "remove it; it is the same in all variants",
+            fix=f"remove it, or move it to {homes} if that is meant"
+            if homes
+            else "remove it; it is the same in all variants",
         )
     near = difflib.get_close_matches(name.lower(), [own for own in choices if own not in table], 1)
     if near:
@@ -174,5 +181,5 @@ def _refused(key: KeyPath, table: Mapping[str, Any], *, beside: tuple[str, ...])
         key,
         "unknown key",
         expected=" or ".join(part for part in (", ".join(choices[:-1]), choices[-1]) if part),
-        fix=belongs or "remove it",
+        fix=f"it belongs in {homes}" if homes else "remove it",
     )

@@ -197,7 +197,8 @@ def _told_apart(
                 at,
                 Problem(
                     at,
-                    f"this variant has the same settings as {quoted(other.name)}",
+                    "this variant has the same settings as "
+                    + (quoted(other.name) if other.name else "an earlier one"),
                     expected="settings of its own",
                     fix="keep one of the two",
                 ),

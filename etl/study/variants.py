@@ -119,11 +119,13 @@ def load_variants(
     Examples
     --------
     >>> study = Study.model_validate(
-    ...     {"logs": {"files": ["*.tsv"]}, "regions": {"file": "boxes.csv", "kind": "boxes"}}
+    ...     {
+    ...         "logs": {"files": ["*.tsv"], "columns": {"onset": "t_start"}},
+    ...         "regions": {"file": "boxes.csv", "kind": "boxes"},
+    ...     }
     ... )
-    >>> none: list[str] = []
     >>> load_variants(
-    ...     "none.toml", study, region_outcomes=none, trial_outcomes=none, known_outcomes=none
+    ...     "none.toml", study, region_outcomes=(), trial_outcomes=(), known_outcomes=()
     ... )
     Traceback (most recent call last):
         ...
