@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from typing import Any
 
 from etl.session.log_tellings import log_inputs
@@ -14,7 +14,10 @@ from etl.trials.notes import Notes
 
 
 def inputs_read(
-    plan: Plan, notes: Sequence[Notes], answers: Sequence[LogAnswer]
+    plan: Plan,
+    notes: Sequence[Notes],
+    answers: Sequence[LogAnswer],
+    more: Sequence[Mapping[str, Any]] = (),
 ) -> list[dict[str, Any]]:
     """Every file read, with its digest.
 
@@ -26,6 +29,8 @@ def inputs_read(
         The experimenter's notes that were read.
     answers : sequence of LogAnswer
         What the logs hold.
+    more : sequence of mapping
+        Other files, in the same way.
 
     Returns
     -------
@@ -50,4 +55,4 @@ def inputs_read(
     if plan.corrections is not None:
         made = plan.corrections
         inputs.append({"file": made.shown, "role": "line corrections", "sha256": made.sha256})
-    return hidden_inputs(inputs + log_inputs(answers), plan)
+    return hidden_inputs([*inputs, *more, *log_inputs(answers)], plan)

@@ -12,6 +12,7 @@ from typing import TYPE_CHECKING, Any
 
 from etl.errors import Finding, Findings, Kind
 from etl.pseudonyms import Pseudonyms
+from etl.screening import Limits
 from etl.session.pseudonym_key import key_path
 from etl.session.pseudonym_study import FILE_KEYS
 from etl.trials import FactTable
@@ -87,18 +88,39 @@ def under_pseudonyms(plan: Plan) -> Plan:
         )
         text_of = {by_pseudonym(values): text for values, text in library.text_of.items()}
         library = replace(library, texts=texts, text_of=text_of)
-    notes = set(_files_of(plan.study))
-    limits = {
-        rule: pseudonyms.shown_file(limit) if limit in notes else limit
-        for rule, limit in plan.limits.shown.items()
-    }
     return replace(
         plan,
         facts=book,
         corrections=made,
         library=library,
-        limits=replace(plan.limits, shown=limits),
+        limits=hidden_limits(plan.limits, plan.study, pseudonyms),
     )
+
+
+def hidden_limits(limits: Limits, study: Study, pseudonyms: Pseudonyms | None) -> Limits:
+    """Limits as the ledger may show them: files of notes have names that may be told.
+
+    Parameters
+    ----------
+    limits : Limits
+        Those of the study.
+    study : Study
+        As loaded.
+    pseudonyms : Pseudonyms or None
+        Those of the study.
+
+    Returns
+    -------
+    Limits
+    """
+    if pseudonyms is None:
+        return limits
+    notes = set(_files_of(study))
+    shown = {
+        rule: pseudonyms.shown_file(limit) if limit in notes else limit
+        for rule, limit in limits.shown.items()
+    }
+    return replace(limits, shown=shown)
 
 
 def told_study(study: Study, pseudonyms: Pseudonyms | None) -> Study:

@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+import json
 from collections.abc import Callable, Iterator, Mapping, Sequence
+from dataclasses import replace
 from functools import cache
 from typing import Any
 
 from etl.pseudonyms import WITHHELD, Pseudonyms, is_distinctive
 from etl.study.models import StudyFile
+from etl.variants.facts import Crossing
 
 #: Where a study names a file or a folder: the tables around the key, and the key.
 FILE_KEYS = (
@@ -64,6 +67,34 @@ def hidden_study(understood: Mapping[str, Any], pseudonyms: Pseudonyms) -> dict[
                 named[name] = [pseudonyms.hidden_in_free_text(value) for value in values]
         whole[table][key] = {_key(name, pseudonyms.hidden): own for name, own in named.items()}
     return whole
+
+
+def hidden_crossing(crossing: Crossing, pseudonyms: Pseudonyms) -> Crossing:
+    """Variants with no id in what they are called, nor in the alternatives of their settings.
+
+    Parameters
+    ----------
+    crossing : Crossing
+        As the variants file has them.
+    pseudonyms : Pseudonyms
+        Those of the study, when all readers are known.
+
+    Returns
+    -------
+    Crossing
+    """
+
+    def spelled(key: str, alternative: str) -> str:
+        if key.endswith(".notes") and alternative.startswith('"'):
+            return json.dumps(pseudonyms.shown_file(json.loads(alternative)), ensure_ascii=False)
+        return alternative
+
+    settings = tuple(
+        replace(own, alternatives=tuple(spelled(own.key, one) for one in own.alternatives))
+        for own in crossing.settings
+    )
+    names = tuple(map(pseudonyms.hidden_in_free_text, crossing.names))
+    return replace(crossing, settings=settings, names=names)
 
 
 def _marks(marks: Sequence[str], pseudonyms: Pseudonyms) -> list[str]:

@@ -15,6 +15,7 @@ from etl.session.gather import Gathered
 from etl.session.limits import check_rules, limits_of
 from etl.session.lines import NO_READING
 from etl.session.plan import Plan
+from etl.session.pseudonym_record import hidden_limits
 from etl.session.reader import Options
 from etl.study import Study
 
@@ -121,7 +122,8 @@ def plan_variants(read: LogsRead, studies: Sequence[Study], findings: Findings) 
 def _plan(plan: Plan, study: Study) -> Plan:
     """The plan of a variant: what the study file says anew, and the rest as it is."""
     library = replace(plan.library, manner=manner_of(study.regions, study.lines))
-    return replace(plan, study=study, library=library, limits=limits_of(study))
+    limits = hidden_limits(limits_of(study), study, plan.pseudonyms)
+    return replace(plan, study=study, library=library, limits=limits)
 
 
 def _add_new(findings: Findings, new: Findings) -> None:

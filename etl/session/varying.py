@@ -30,6 +30,7 @@ from etl.session.kept_places import kept_folder
 from etl.session.log_tellings import log_counts
 from etl.session.pseudonym_key import known_by, open_key, refuse_key_inside, save_key
 from etl.session.pseudonym_record import for_record
+from etl.session.pseudonym_study import hidden_crossing
 from etl.session.reader_groups import group_tasks, without_values
 from etl.session.readiness import MOST_REGIONS
 from etl.session.told import counted, near
@@ -42,6 +43,7 @@ from etl.session.variant_traces import VariantTraces
 from etl.session.variant_work import VariantAnswer, VariantShape, VariantTask, VariantWork
 from etl.study import Study, StudyVariants, load_variants
 from etl.tables.variants import CHANGED_CELLS, RATES, VARIANT_ROWS
+from etl.trials.notes import Notes
 from etl.variants.facts import Crossing, Summary
 from etl.variants.sentences import for_paper, in_short, short_keys
 from etl.variants.summaries import LEADING_RULE, leading
@@ -193,10 +195,10 @@ def vary(
         run = _Run(chosen, read, findings, shop.fresh, progress)
         varied = run.done(target)
         told = for_record(findings, read.plan).lines(("warning", "note"))
-        inputs = inputs_read(read.plan, run.plans.gathered[0].notes, read.told)
+        own = {"file": run.shown, "role": "variants file", "sha256": chosen.sha256}
         RunRecord(
             read.plan.understood(),
-            [*inputs, {"file": path.name, "role": "variants file", "sha256": chosen.sha256}],
+            inputs_read(read.plan, run.notes(), read.told, [own]),
             {**log_counts(read.told), "variants": len(chosen.crossing)},
             varied.rows,
             told,
@@ -257,6 +259,12 @@ class _Run:
         self.progress = progress
         self.crossing = chosen.crossing
         self.plans: VariantPlans = plan_variants(read, chosen.studies, findings)
+        pseudonyms = read.plan.pseudonyms
+        self.shown, self.about = chosen.path.name, chosen.title
+        if pseudonyms is not None:
+            self.crossing = hidden_crossing(chosen.crossing, pseudonyms)
+            self.shown = pseudonyms.shown_file(self.shown)
+            self.about = pseudonyms.hidden_in_free_text(self.about)
         self.design = self.plans.gathered[self.plans.options[self.crossing.base].facts].design
         self.leading = self._leading_named()
         self.keys = short_keys(self.crossing.settings)
@@ -267,6 +275,11 @@ class _Run:
         self.pairs = tuple(len(self.crossing) * (size - 1) // 2 * full for size in sizes)
         self.readers: list[ReaderHangs] = []
         self.trials: list[HangingTrial] = []
+
+    def notes(self) -> list[Notes]:
+        """The experimenter's notes that any variant looks at."""
+        every = [notes for own in self.plans.gathered for notes in own.notes]
+        return list({notes.shown: notes for notes in every}.values())
 
     def done(self, target: Path) -> Varied:
         """Work on all readers, and write everything but the record."""
@@ -431,7 +444,6 @@ class _Run:
         """Write the page, and the traces that it leads to."""
         traces = VariantTraces(self.folder, self.plans, self.crossing, self.keys, self.pairs)
         readers, trials = traces.shown(self.readers, self.trials)
-        study = self.read.plan.study
         csv = "csv" in self.formats
         tables = [
             (f"{name}.csv" if csv or name not in (RATES, CHANGED_CELLS) else f"{name}.parquet", row)
@@ -440,10 +452,10 @@ class _Run:
         write_variants_page(
             self.folder,
             VariantsInput(
-                study.title,
-                self.chosen.title,
-                study.path.name,
-                self.chosen.path.name,
+                self.read.plan.understood()["title"],
+                self.about,
+                self.read.plan.study.path.name,
+                self.shown,
                 self.crossing,
                 results.summaries,
                 chosen,
