@@ -17,7 +17,7 @@ from etl.variants.sentences import (
     setting_words,
     short_keys,
 )
-from etl.variants.words import percent
+from etl.variants.words import number, percent
 from tests.variants.making import RATE, chosen, summary_of
 from tests.variants.test_summaries import summarised
 
@@ -341,3 +341,9 @@ def test_settings_are_named_with_their_alternatives() -> None:
 def test_share_that_is_not_quite_all_or_nothing_is_not_called_so(share: float, text: str) -> None:
     """Whole percents, but for both ends."""
     assert percent(share) == text
+
+
+def test_numbers_have_two_decimals_and_a_true_minus() -> None:
+    """And no sign where nothing but 0 is left."""
+    values = (-0.004, 0.0, -0.006, 0.125001, -1234.5)
+    assert [number(value) for value in values] == ["0.00", "0.00", "−0.01", "0.13", "−1,234.50"]

@@ -102,6 +102,18 @@ def test_shares_keep_their_laws(made: tuple[Crossing, Floats]) -> None:
     assert sum(own.together for own in shares) >= 1 - 1e-9
 
 
+@given(st.integers(0, 2**32 - 1))
+def test_settings_that_only_add_have_the_same_share_both_ways(seed: int) -> None:
+    """Without interactions nothing comes to the share alone, and rounding takes nothing away."""
+    source = np.random.default_rng(seed)
+    effects = [source.normal(size=size) for size in (2, 3, 4)]
+    crossing = crossed([2, 3, 4])
+    values = sum(effect[own] for effect, own in zip(effects, crossing.choices.T, strict=True))
+    shares = setting_shares(np.asarray(values), crossing)
+    assert all(own.alone <= own.together == pytest.approx(own.alone) for own in shares)
+    assert sum(own.alone for own in shares) == pytest.approx(1)
+
+
 @given(valued(), st.randoms())
 def test_shares_do_not_hang_on_names_and_orders(
     made: tuple[Crossing, Floats], source: Random
