@@ -7,7 +7,7 @@ from collections.abc import Iterator, Sequence
 
 import numpy as np
 
-from etl.variants.facts import Comparison, Crossing, Flags, Setting, SettingShare, Summary
+from etl.variants.facts import Comparison, Crossing, Flags, Floats, Setting, SettingShare, Summary
 from etl.variants.shares import turning
 from etl.variants.words import all_of, any_of, listed, many, number, percent
 
@@ -126,7 +126,7 @@ def in_short(summary: Summary, crossing: Crossing) -> str:
     compared, total, base = summary.compared, len(crossing), crossing.base
     head = f"{comparison_words(compared.comparison)}: "
     if summary.without == total:
-        return f"{head}no value in {any_of(total)}"
+        return f"{head}no value" + (f" in {any_of(total)}" if total > 1 else "")
     if np.isnan(compared.difference[base]):
         head += "no value in the study"
     else:
@@ -151,21 +151,24 @@ def _passage(summary: Summary, crossing: Crossing) -> Iterator[str]:
     yield f"{comparison_words(compared.comparison)}: {measure} was computed in {_varied(crossing)}."
     lacking = "since one of the two conditions has none" if factor else "since there are no data"
     if summary.without == total:
-        yield f"It has no value in {any_of(total)}, {lacking}."
+        yield f"It has no value{f' in {any_of(total)}' if total > 1 else ''}, {lacking}."
         return
     if summary.without:
         yield f"It has no value in {summary.without:,} of {total:,} variants, {lacking}."
     if _one_text(summary):
         if total > 1:
-            where = f"the other {total - summary.without:,}" if summary.without else all_of(total)
+            others = total - summary.without
+            rest = "the other one" if others == 1 else f"the other {others:,}"
+            where = rest if summary.without else all_of(total)
             yield f"It is {_span(summary)} in {where}."
     else:
         yield f"It ranges from {_span(summary)}."
     if np.isnan(compared.difference[base]):
         yield "In the study as it stands it has no value."
     else:
+        where = "In the study as it stands it" if total > 1 else "It"
         value = number(compared.difference[base])
-        yield f"In the study as it stands it is {value} (95% interval {_limits(summary, base)})."
+        yield f"{where} is {value} (95% interval {_limits(summary, base)})."
     if factor:
         yield from _signs(summary, crossing)
     yield from _decides(summary, crossing)
@@ -177,7 +180,7 @@ def _passage(summary: Summary, crossing: Crossing) -> Iterator[str]:
             "Anscombe, 1956)."
         )
     source = "Woolf, 1955" if factor else "Wilson, 1927"
-    yield f"Intervals ({source}) take trials as independent, though readers and items recur."
+    yield f"Intervals ({source}) take trials as independent, though they share readers and items."
 
 
 def _varied(crossing: Crossing) -> str:
@@ -198,40 +201,41 @@ def _signs(summary: Summary, crossing: Crossing) -> Iterator[str]:
     """In how many variants the sign holds, and in how many of these and others it is clear."""
     compared, total, base = summary.compared, len(crossing), crossing.base
     signs, clear = np.sign(compared.difference), _clear(summary)
-    # An interval around 0 holds 0: nothing is to be said of it.
-    counts = {
-        word: f"{word} in {int((signs == sign).sum()):,}"
-        + (_left_out(signs == sign, clear) if sign else "")
-        for sign, word in _SIGNS.items()
-        if (signs == sign).any()
-    }
     if total == 1:
         if signs[base]:
             yield f"Its interval {'leaves out' if summary.clear else 'includes'} 0."
         return
-    own = _SIGNS.get(signs[base], "")
+    # An interval around 0 includes 0: nothing is to be said of it.
+    counts = {
+        sign: f"{word} in {int((signs == sign).sum()):,}"
+        + (f" ({_left_out(signs == sign, clear)})" if sign else "")
+        for sign, word in _SIGNS.items()
+        if (signs == sign).any()
+    }
     if not abs(signs[base]) > 0:
         yield f"So there is no sign that could hold; the value is {listed([*counts.values()])}."
-    elif summary.holds:
-        yield f"It is {own} in {all_of(total)}{_left_out(signs == signs[base], clear)}."
-    else:
-        of = f"{summary.same_sign:,} of {total:,} variants"
-        yield f"It is {own}, as in the study, in {of}{_left_out(signs == signs[base], clear)}."
-        others = [text for word, text in counts.items() if word != own]
-        if others:
-            yield f"It is {listed(others)}."
+        return
+    same, own = signs == signs[base], _SIGNS[signs[base]]
+    if summary.holds:
+        yield f"It is {own} in {all_of(total)} ({_left_out(same, clear)})."
+        return
+    of = f"{summary.same_sign:,} of {total:,} variants"
+    yield f"It is {own}, as in the study, in {of} ({_left_out(same, clear)})."
+    others = [text for sign, text in counts.items() if sign != signs[base]]
+    if others:
+        yield f"It is {listed(others)}."
 
 
 def _left_out(among: Flags, clear: Flags) -> str:
-    """In brackets, in how many of some variants the interval leaves out 0."""
-    total, number = int(among.sum()), int((among & clear).sum())
+    """In how many of some variants the interval leaves out 0."""
+    total, some = int(among.sum()), int((among & clear).sum())
     if total == 1:
-        return f" (its interval {'leaves out' if number else 'includes'} 0)"
-    which = f"{number:,} of these"
-    if number in (0, total):
+        return f"its interval {'leaves out' if some else 'includes'} 0"
+    which = f"{some:,}"
+    if some in (0, total):
         none, every = ("neither", "both") if total == 2 else ("none", "all")
-        which = f"{every if number else none} of these"
-    return f" (in {which} the interval leaves out 0)"
+        which = every if some else none
+    return f"the interval leaves out 0 in {which} of these"
 
 
 def _decides(summary: Summary, crossing: Crossing) -> Iterator[str]:
@@ -243,8 +247,8 @@ def _decides(summary: Summary, crossing: Crossing) -> Iterator[str]:
     who = listed([keys[own.setting] for own in first])
     if len(first) == len(keys):
         yield (
-            f"All {len(keys):,} decisions explain equally much of the variance between variants "
-            f"({together} each, with interactions)."
+            f"{_all(len(keys)).capitalize()} decisions explain equally much of the variance "
+            f"between variants ({together} each, with interactions)."
         )
     elif len(first) > 1:
         yield (
@@ -269,7 +273,7 @@ def _decides_in_short(summary: Summary, crossing: Crossing) -> str:
     share = f"{percent(first[0].together)} of the variance between variants"
     who = listed([crossing.settings[own.setting].key for own in first])
     if len(first) == total:
-        return f"all {total:,} settings matter equally ({share} each)"
+        return f"{_all(total)} settings matter equally ({share} each)"
     if len(first) > 1:
         return f"{who} matter most, and equally ({share} each)"
     return f"{who} matters most ({share})"
@@ -277,23 +281,23 @@ def _decides_in_short(summary: Summary, crossing: Crossing) -> str:
 
 def _signs_in_short(summary: Summary, crossing: Crossing) -> str:
     """In how many variants the sign holds."""
-    total, base = len(crossing), summary.compared.difference[crossing.base]
-    if not abs(base) > 0:
-        numbers = (summary.negative, summary.zero, summary.positive)
-        counts = zip(_SIGNS.values(), numbers, strict=True)
-        return listed([f"{word} in {number:,}" for word, number in counts if number])
-    word = _SIGNS[np.sign(base)]
+    signs = np.sign(summary.compared.difference)
+    own = signs[crossing.base]
+    if not abs(own) > 0:
+        counts = zip(_SIGNS.values(), _numbers(signs), strict=True)
+        return listed([f"{word} in {some:,}" for word, some in counts if some])
+    total = len(crossing)
     of = all_of(total) if summary.holds else f"{summary.same_sign:,} of {total:,} variants"
-    return f"{word} in {of}, with an interval that leaves out 0 in {summary.clear:,}"
+    return f"{_SIGNS[own]} in {of} ({_left_out(signs == own, _clear(summary))})"
 
 
 def _turns_in_short(summary: Summary, crossing: Crossing) -> str:
     """Which setting turns the sign, with which of its alternatives; empty where none does."""
     signs = np.sign(summary.compared.difference)
     if summary.turns is None:
-        several = (summary.positive > 0) + (summary.negative > 0) + (summary.zero > 0) > 1
-        alone = "the sign turns, but not between variants that differ in one setting only"
-        return alone if several else ""
+        several = np.count_nonzero(_numbers(signs)) > 1
+        apart = "the sign turns, but not between variants that differ in one setting only"
+        return apart if several else ""
     turned = turning(summary.compared.difference, crossing)
     keys = [own.key for own in crossing.settings]
     most = np.flatnonzero(turned == turned.max()).tolist()
@@ -306,18 +310,28 @@ def _turns_in_short(summary: Summary, crossing: Crossing) -> str:
     parts = []
     for place, alternative in enumerate(crossing.settings[summary.turns].alternatives):
         chosen = signs[crossing.choices[:, summary.turns] == place]
-        parts.append(_mostly(alternative, [int((chosen == sign).sum()) for sign in _SIGNS]))
+        parts.append(_mostly(alternative, _numbers(chosen), first=not place))
     return f"the sign turns {how} {keys[summary.turns]}: {', '.join(parts)}"
 
 
-def _mostly(alternative: str, counts: Sequence[int]) -> str:
+def _mostly(alternative: str, counts: Sequence[int], *, first: bool) -> str:
     """The sign that an alternative has most often, from how often it has each."""
     total, most = sum(counts), max(counts)
     if not total:
         return f"no value with {alternative}"
-    words = [w for w, number in zip(_SIGNS.values(), counts, strict=True) if number == most]
-    of = f"{most:,} of {many(total, 'variant')}" + (" each" if len(words) > 1 else "")
-    return f"{' or '.join(words)} with {alternative} ({of})"
+    words = [word for word, some in zip(_SIGNS.values(), counts, strict=True) if some == most]
+    of = f"{most:,} of {many(total, 'variant') if first else f'{total:,}'}"
+    return f"{' or '.join(words)} with {alternative} ({of}{' each' if len(words) > 1 else ''})"
+
+
+def _numbers(signs: Floats) -> list[int]:
+    """How many signs there are of each."""
+    return [int((signs == sign).sum()) for sign in _SIGNS]
+
+
+def _all(number_of: int) -> str:
+    """All of so many."""
+    return "both" if number_of == 2 else f"all {number_of:,}"
 
 
 def _foremost(summary: Summary) -> list[SettingShare]:

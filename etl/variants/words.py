@@ -31,9 +31,7 @@ def all_of(variants: int) -> str:
 
 def any_of(variants: int) -> str:
     """None of the variants, after a word that says no."""
-    if variants == 1:
-        return "it"
-    return "either variant" if variants == 2 else f"any of {variants:,} variants"
+    return "either variant" if variants == 2 else f"any of the {variants:,} variants"
 
 
 def many(count: int, word: str) -> str:
