@@ -61,7 +61,8 @@ MAY_NAME_THE_STUDY = {"parsers", "trials", "regions"}
 USED_IN = {
     "numpy": {
         *("files", "parsers", "trials", "regions", "measures", "screening", "export", "report"),
-        *("session", "drafting", "lines", "pseudonyms", "coding", "readiness", "variants"),
+        *("session", "drafting", "lines", "pseudonyms", "coding", "readiness", "study"),
+        "variants",
     },
     "pyarrow": {"files", "parsers", "export", "report", "session", "tables", "cells", "drafting"},
     "openpyxl": {"files"},

@@ -13,7 +13,8 @@ if TYPE_CHECKING:
     from etl.session.one_trial import Wanted, explained, trace, write_picture
     from etl.session.result import Result
     from etl.session.run import build, check
-    from etl.session.varying import Varied, vary
+    from etl.session.varied import Varied
+    from etl.session.varying import vary
 
 __all__ = [
     "PUBLISHED",
@@ -33,7 +34,8 @@ __all__ = [
 _HOMES = {
     **dict.fromkeys(("build", "check"), "etl.session.run"),
     **dict.fromkeys(("Wanted", "explained", "trace", "write_picture"), "etl.session.one_trial"),
-    **dict.fromkeys(("Varied", "vary"), "etl.session.varying"),
+    "Varied": "etl.session.varied",
+    "vary": "etl.session.varying",
     "PUBLISHED": "etl.session.crew",
     "Result": "etl.session.result",
     "load_study": "etl.session.loading",

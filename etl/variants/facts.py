@@ -70,7 +70,7 @@ class Comparison:
     Attributes
     ----------
     outcome, region : str
-        Names; the region is empty for an outcome of trials, and ``(all)`` where regions are
+        Names; the region is empty for an outcome of trials, and ``(all regions)`` where they are
         counted together.
     factor, level, reference : str
         The level that is compared with the reference level. All three are empty in a study without

@@ -12,7 +12,7 @@ import pandas as pd
 import pytest
 
 import etl
-from etl.session.varying import Varied
+from etl.session.varied import Varied
 from tests.vary.otherwise import (
     Alternatives,
     Built,
