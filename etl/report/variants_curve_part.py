@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -14,6 +13,8 @@ from etl.report.variants_curve import (
     curve_of,
     cut_off,
     leaves_out,
+    numbers_row,
+    passing,
     plot,
     row,
     scale_of,
@@ -92,8 +93,10 @@ class Drawn:
         What it means to lie above and below 0; empty for rates.
     ticks, plot : Markup
         Numbers of the axis, and the values.
-    across : str
-        Where the study is; empty where it has no value.
+    between : Markup
+        The line of the study where it passes a heading.
+    numbers : Markup
+        The numbers of the variants; empty where they would stand too close.
     clear : Markup
         The row of intervals that leave out 0; empty for rates.
     groups : tuple of StripGroup
@@ -107,7 +110,8 @@ class Drawn:
     below: Markup
     ticks: Markup
     plot: Markup
-    across: str
+    between: Markup
+    numbers: Markup
     clear: Markup
     groups: tuple[StripGroup, ...]
     remarks: tuple[str, ...]
@@ -124,7 +128,7 @@ class Mean:
     own : bool
         Whether it is the study's.
     text : str
-        The mean; empty where it is not told.
+        The mean.
     """
 
     label: Markup
@@ -141,7 +145,7 @@ class DecisionRow:
     key : Markup
         The setting in full.
     alone, together, flips : str
-        In words; empty without shares.
+        In percent.
     bar : Markup
         Alone and together, drawn.
     means : tuple of Mean
@@ -207,7 +211,7 @@ class CurvePart:
     drawn : Drawn or None
         None where no variant has a value.
     decisions : tuple of DecisionRow
-        One a setting.
+        One a setting; none without shares.
     no_shares : str
         Why there are no shares; empty where there are.
     passage : str
@@ -328,7 +332,8 @@ def _drawn(facts: VariantsInput, summary: Summary, curve: Curve) -> Drawn:
         Markup() if rate else Markup("↓ more ones with {}").format(name(reference)),
         ticks(scale, rate=rate),
         plot(curve, compared, scale, rate=rate),
-        "" if curve.base is None else f"{100 * curve.across(curve.base):.4g}%",
+        passing(curve),
+        numbers_row(curve),
         Markup() if rate else row(curve, leaves_out(compared)),
         tuple(groups),
         tuple(remarks),
@@ -336,33 +341,22 @@ def _drawn(facts: VariantsInput, summary: Summary, curve: Curve) -> Drawn:
 
 
 def _decisions(facts: VariantsInput, summary: Summary) -> tuple[DecisionRow, ...]:
-    """One row a setting, with shares where there are any."""
-    shares = {share.setting: share for share in summary.shares}
+    """One row a setting, the one that decides most first; none without shares."""
     rate = is_rate(summary.compared.comparison)
-    out = []
-    for setting in _by_weight(summary, len(facts.crossing.settings)):
-        own, share = facts.crossing.settings[setting], shares.get(setting)
-        figures = (math.nan,) * 3
-        if share is not None:
-            figures = (share.alone, share.together, math.nan if rate else share.flips)
-        means = tuple(
-            Mean(
-                *_label(facts, setting, place),
-                value(share.means[place], rate=rate) if share is not None else "",
-            )
-            for place in range(len(own.alternatives))
+    return tuple(
+        DecisionRow(
+            code(facts.crossing.settings[share.setting].key),
+            share_words(share.alone),
+            share_words(share.together),
+            share_words(share.flips),
+            shares_bar(share.alone, share.together),
+            tuple(
+                Mean(*_label(facts, share.setting, place), value(mean, rate=rate))
+                for place, mean in enumerate(share.means)
+            ),
         )
-        out.append(
-            DecisionRow(
-                code(own.key),
-                share_words(figures[0]),
-                share_words(figures[1]),
-                share_words(figures[2]),
-                Markup() if share is None else shares_bar(share.alone, share.together),
-                means,
-            )
-        )
-    return tuple(out)
+        for share in sorted(summary.shares, key=lambda one: -one.together)
+    )
 
 
 def _numbers(facts: VariantsInput, summary: Summary) -> tuple[tuple[NumbersRow, ...], int]:

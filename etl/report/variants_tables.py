@@ -250,6 +250,10 @@ def _comparison(facts: VariantsInput, summary: Summary, curve: int, scale: Scale
     numbers = (own, low, high, math.nan if rate else summary.same_sign, share)
     factor = 100.0 if rate else 1.0
     holds = "" if rate else f"{count(summary.same_sign)} of {count(len(summary.order))}"
+    if not rate and not own:
+        holds = "the study has none"
+    elif not rate and math.isnan(own):
+        holds = "the study has no value"
     return ComparisonRow(
         code(compared.comparison.outcome),
         place_words(compared.comparison),
