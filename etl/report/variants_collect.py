@@ -14,14 +14,10 @@ from etl.report.variants_changes import (
     collect_changes,
     collect_hanging,
 )
+from etl.report.variants_comparisons import Comparisons, collect_comparisons
 from etl.report.variants_curve_part import CurvePart, collect_curve
 from etl.report.variants_input import VariantsInput
-from etl.report.variants_tables import (
-    Comparisons,
-    Losses,
-    collect_comparisons,
-    collect_losses,
-)
+from etl.report.variants_losses import Losses, collect_losses
 from etl.report.variants_words import alternative, code, comparison_words, headline, is_rate
 from etl.report.wording import count, counted
 

@@ -25,7 +25,10 @@ COLUMNS = 100
 MOST_DOTS = 24
 PLOT_PX = 250
 TOP_PX = 26
-ROW_PX = 18
+ROW_PX = 20
+HEAD_PX = 24
+#: Numbers from here on have too many figures to stand beneath their columns on a phone.
+MOST_NUMBER = 99
 #: An interval that reaches farther than so many typical widths beyond all values is cut.
 _FARTHEST = 2.0
 
@@ -218,7 +221,7 @@ def plot(curve: Curve, compared: Compared, scale: Scale, *, rate: bool) -> Marku
         body += _points(curve, compared, scale, clear, factor)
     else:
         body.append(_bins(curve, compared, scale, clear, factor))
-    body.append(_own_mark(curve, compared, scale, factor))
+    body.append(_own_mark(curve, compared, scale, clear, factor))
     return drawing([part for part in body if part], PLOT_PX, f"curve-plot {curve.density}")
 
 
@@ -275,15 +278,16 @@ def _own_line(curve: Curve, top: float, bottom: float) -> str:
     return f'<line class="own-line" x1="{x}" x2="{x}" y1="{top:g}" y2="{bottom:g}"/>'
 
 
-def _own_mark(curve: Curve, compared: Compared, scale: Scale, factor: float) -> str:
-    """The diamond of the study, with its word."""
+def _own_mark(curve: Curve, compared: Compared, scale: Scale, clear: Flags, factor: float) -> str:
+    """The diamond of the study, with its word; hollow where the interval includes 0."""
     if curve.base is None:
         return ""
     own = curve.across(curve.base)
     y = _down(scale, float(compared.difference[curve.study]) * factor)
     anchor = "start" if own < 0.12 else "end" if own > 0.88 else "middle"
+    kind = "" if clear[curve.study] else " open"
     return (
-        f'<use href="#own" class="own-mark" x="{_percent(own)}" y="{y:.1f}"/>'
+        f'<use href="#own" class="own-mark{kind}" x="{_percent(own)}" y="{y:.1f}"/>'
         f'<text class="label" x="{_percent(own)}" y="12" text-anchor="{anchor}">the study</text>'
     )
 
@@ -318,6 +322,23 @@ def row(curve: Curve, takes: Flags) -> Markup:
     base = f'<line class="grid" x1="0" x2="100%" y1="{ROW_PX - 2}" y2="{ROW_PX - 2}"/>'
     filled = _stretched(curve.columns, ROW_PX, [f'<path class="bars" d="{path}"/>'])
     return drawing([base, filled, *filter(None, body)], ROW_PX, "curve-strip")
+
+
+def passing(curve: Curve) -> Markup:
+    """The line of the study where it passes a heading between rows."""
+    return drawing([_own_line(curve, 0, HEAD_PX)], HEAD_PX, "curve-strip")
+
+
+def numbers_row(curve: Curve) -> Markup:
+    """The numbers of the variants, from 1; empty where they would stand too close."""
+    if not curve.single or curve.columns > MOST_DOTS or max(curve.order, default=0) >= MOST_NUMBER:
+        return Markup()
+    body = [
+        f'<text class="tick" x="{_percent(curve.across(column))}" y="13" text-anchor="middle">'
+        f"{variant + 1}</text>"
+        for column, variant in enumerate(curve.order)
+    ]
+    return drawing(body, ROW_PX, "curve-strip")
 
 
 def shares_bar(alone: float, together: float) -> Markup:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -14,6 +13,8 @@ from etl.report.variants_curve import (
     curve_of,
     cut_off,
     leaves_out,
+    numbers_row,
+    passing,
     plot,
     row,
     scale_of,
@@ -21,25 +22,21 @@ from etl.report.variants_curve import (
     ticks,
 )
 from etl.report.variants_input import VariantsInput
+from etl.report.variants_numbers import NumbersRow, collect_numbers
 from etl.report.variants_words import (
     alternative,
     code,
     comparison_text,
     comparison_words,
     headline,
-    interval,
     is_rate,
     more_in,
     share_words,
     value,
-    variant_name,
     why_no_shares,
 )
 from etl.report.wording import count, counted, name
 from etl.variants.facts import Summary
-
-#: Of so many variants at each end of a curve the numbers are in the page.
-MOST_AT_ENDS = 50
 
 
 @dataclass(frozen=True, slots=True)
@@ -92,8 +89,10 @@ class Drawn:
         What it means to lie above and below 0; empty for rates.
     ticks, plot : Markup
         Numbers of the axis, and the values.
-    across : str
-        Where the study is; empty where it has no value.
+    between : Markup
+        The line of the study where it passes a heading.
+    numbers : Markup
+        The numbers of the variants; empty where they would stand too close.
     clear : Markup
         The row of intervals that leave out 0; empty for rates.
     groups : tuple of StripGroup
@@ -107,7 +106,8 @@ class Drawn:
     below: Markup
     ticks: Markup
     plot: Markup
-    across: str
+    between: Markup
+    numbers: Markup
     clear: Markup
     groups: tuple[StripGroup, ...]
     remarks: tuple[str, ...]
@@ -124,7 +124,7 @@ class Mean:
     own : bool
         Whether it is the study's.
     text : str
-        The mean; empty where it is not told.
+        The mean.
     """
 
     label: Markup
@@ -141,7 +141,7 @@ class DecisionRow:
     key : Markup
         The setting in full.
     alone, together, flips : str
-        In words; empty without shares.
+        In percent.
     bar : Markup
         Alone and together, drawn.
     means : tuple of Mean
@@ -154,38 +154,6 @@ class DecisionRow:
     flips: str
     bar: Markup
     means: tuple[Mean, ...]
-
-
-@dataclass(frozen=True, slots=True)
-class NumbersRow:
-    """A variant with its numbers.
-
-    Attributes
-    ----------
-    place : int
-        Along the curve, from 1.
-    label : Markup
-        Number and name of the variant.
-    own : bool
-        Whether it is the study.
-    choices : tuple of (str, bool)
-        Each alternative, and whether it is the study's.
-    figure, bounds : str
-        Value and interval.
-    counts : tuple of str
-        Ones of values, of the reference and of the level; of all without factors.
-    corrected : bool
-        Whether 0.5 was added to each count.
-    """
-
-    place: int
-    label: Markup
-    own: bool
-    choices: tuple[tuple[str, bool], ...]
-    figure: str
-    bounds: str
-    counts: tuple[str, ...]
-    corrected: bool
 
 
 @dataclass(frozen=True, slots=True)
@@ -207,7 +175,7 @@ class CurvePart:
     drawn : Drawn or None
         None where no variant has a value.
     decisions : tuple of DecisionRow
-        One a setting.
+        One a setting; none without shares.
     no_shares : str
         Why there are no shares; empty where there are.
     passage : str
@@ -253,7 +221,7 @@ def collect_curve(facts: VariantsInput, place: int) -> CurvePart:
     comparison = summary.compared.comparison
     rate = is_rate(comparison)
     curve = curve_of(summary.order, summary.compared.difference, facts.crossing.base)
-    rows, left = _numbers(facts, summary)
+    rows, left = collect_numbers(facts, summary)
     heads = (name(comparison.reference), name(comparison.level))
     return CurvePart(
         place + 1,
@@ -328,7 +296,8 @@ def _drawn(facts: VariantsInput, summary: Summary, curve: Curve) -> Drawn:
         Markup() if rate else Markup("↓ more ones with {}").format(name(reference)),
         ticks(scale, rate=rate),
         plot(curve, compared, scale, rate=rate),
-        "" if curve.base is None else f"{100 * curve.across(curve.base):.4g}%",
+        passing(curve),
+        numbers_row(curve),
         Markup() if rate else row(curve, leaves_out(compared)),
         tuple(groups),
         tuple(remarks),
@@ -336,83 +305,19 @@ def _drawn(facts: VariantsInput, summary: Summary, curve: Curve) -> Drawn:
 
 
 def _decisions(facts: VariantsInput, summary: Summary) -> tuple[DecisionRow, ...]:
-    """One row a setting, with shares where there are any."""
-    shares = {share.setting: share for share in summary.shares}
+    """One row a setting, the one that decides most first; none without shares."""
     rate = is_rate(summary.compared.comparison)
-    out = []
-    for setting in _by_weight(summary, len(facts.crossing.settings)):
-        own, share = facts.crossing.settings[setting], shares.get(setting)
-        figures = (math.nan,) * 3
-        if share is not None:
-            figures = (share.alone, share.together, math.nan if rate else share.flips)
-        means = tuple(
-            Mean(
-                *_label(facts, setting, place),
-                value(share.means[place], rate=rate) if share is not None else "",
-            )
-            for place in range(len(own.alternatives))
-        )
-        out.append(
-            DecisionRow(
-                code(own.key),
-                share_words(figures[0]),
-                share_words(figures[1]),
-                share_words(figures[2]),
-                Markup() if share is None else shares_bar(share.alone, share.together),
-                means,
-            )
-        )
-    return tuple(out)
-
-
-def _numbers(facts: VariantsInput, summary: Summary) -> tuple[tuple[NumbersRow, ...], int]:
-    """The variants along the curve, of many the two ends and the study; how many are left."""
-    whole = len(summary.order)
-    places = list(range(whole))
-    if whole > 2 * MOST_AT_ENDS:
-        own = int(np.flatnonzero(summary.order == facts.crossing.base)[0])
-        ends = {*places[:MOST_AT_ENDS], *places[-MOST_AT_ENDS:], own}
-        places = sorted(ends)
-    return tuple(_numbers_row(facts, summary, place) for place in places), whole - len(places)
-
-
-def _numbers_row(facts: VariantsInput, summary: Summary, place: int) -> NumbersRow:
-    """One variant."""
-    compared, crossing = summary.compared, facts.crossing
-    rate = is_rate(compared.comparison)
-    variant = int(summary.order[place])
-    counts = [
-        f"{count(int(ones))} of {count(int(zeros + ones))}"
-        for zeros, ones in compared.counts[variant]
-    ]
-    return NumbersRow(
-        place + 1,
-        name(variant_name(crossing, variant)),
-        variant == crossing.base,
-        choices_of(facts, variant),
-        value(float(compared.difference[variant]), rate=rate),
-        interval(float(compared.low[variant]), float(compared.high[variant]), rate=rate),
-        tuple(counts[:1] if rate else counts),
-        bool(compared.corrected[variant]),
-    )
-
-
-def choices_of(facts: VariantsInput, variant: int) -> tuple[tuple[str, bool], ...]:
-    """What a variant takes of each setting, and whether that is as in the study.
-
-    Parameters
-    ----------
-    facts : VariantsInput
-        With the crossing.
-    variant : int
-        Its place, from 0.
-
-    Returns
-    -------
-    tuple of (str, bool)
-        By setting.
-    """
     return tuple(
-        (alternative(own.alternatives[int(place)]), int(place) == own.base)
-        for own, place in zip(facts.crossing.settings, facts.crossing.choices[variant], strict=True)
+        DecisionRow(
+            code(facts.crossing.settings[share.setting].key),
+            share_words(share.alone),
+            share_words(share.together),
+            share_words(share.flips),
+            shares_bar(share.alone, share.together),
+            tuple(
+                Mean(*_label(facts, share.setting, place), value(mean, rate=rate))
+                for place, mean in enumerate(share.means)
+            ),
+        )
+        for share in sorted(summary.shares, key=lambda one: -one.together)
     )

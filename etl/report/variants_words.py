@@ -106,12 +106,15 @@ def value(amount: float, *, rate: bool) -> str:
 
     Examples
     --------
-    >>> value(-0.412, rate=False), value(0.125, rate=True), value(float("nan"), rate=False)
-    ('−0.41', '12.5%', '–')
+    >>> value(-0.412, rate=False), value(0.0, rate=False), value(0.125, rate=True)
+    ('−0.41', '0.00', '12.5%')
     """
     if math.isnan(amount):
         return NOTHING
-    return percent(amount) if rate else number(amount, 2, signed=True)
+    if rate:
+        return percent(amount)
+    text = number(amount, 2, signed=True)
+    return "0.00" if text == "+0.00" else text
 
 
 def interval(low: float, high: float, *, rate: bool) -> str:
@@ -226,7 +229,8 @@ def sign_words(summary: Summary) -> str:
     if summary.same_sign == 0:
         parts = _split(summary)
         return f"the study as it stands has no sign; over the variants {parts}"
-    clear = f"the interval leaves out 0 in {count(summary.clear)} of these"
+    every = summary.clear == summary.same_sign
+    clear = f"the interval leaves out 0 in {'all' if every else count(summary.clear)} of these"
     if summary.holds:
         each = "the one variant" if whole == 1 else f"all {count(whole)} variants"
         return f"the sign holds in {each}; {clear}"
