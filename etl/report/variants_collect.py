@@ -14,7 +14,7 @@ from etl.report.variants_changes import (
     collect_changes,
     collect_hanging,
 )
-from etl.report.variants_comparisons import Comparisons, collect_comparisons
+from etl.report.variants_comparisons import Comparisons, collect_comparisons, comparisons_say
 from etl.report.variants_curve_part import CurvePart, collect_curve
 from etl.report.variants_input import VariantsInput
 from etl.report.variants_losses import Losses, collect_losses
@@ -195,17 +195,13 @@ def _headlines(
     for place, at in enumerate(facts.leading[:MOST_HEADLINES], start=1):
         one = facts.summaries[at]
         label = comparison_words(one.compared.comparison)
-        kind = "fine" if one.holds else "loss"
+        kind = "fine" if one.standing == "held" else "loss"
         out.append(Headline(kind, f"#curve-{place}", label, headline(one, facts)))
     left = _others(facts, facts.leading[:MOST_HEADLINES])
     if left and not comparisons.rate:
-        turned = sum(not facts.summaries[at].holds for at in left)
-        if turned:
-            text = f"{count(turned)} of {count(len(left))} other comparisons "
-            text += f"{'does' if turned == 1 else 'do'} not keep the sign in all variants."
-        else:
-            text = f"{_all_others(len(left))} the sign in all variants."
-        kind = "loss" if turned else "fine"
+        own = [facts.summaries[at] for at in left]
+        text = comparisons_say(own, rate=False, others=bool(facts.leading))
+        kind = "loss" if any(one.standing == "decided" for one in own) else "fine"
         out.append(
             Headline(kind, "#comparisons", Markup("All comparisons"), Markup("{}").format(text))
         )
@@ -218,8 +214,3 @@ def _headlines(
 def _others(facts: VariantsInput, leading: Sequence[int]) -> list[int]:
     """Comparisons that have no headline of their own."""
     return [at for at in range(len(facts.summaries)) if at not in set(leading)]
-
-
-def _all_others(number: int) -> str:
-    """All others, as the subject of a sentence."""
-    return "The one other comparison keeps" if number == 1 else f"All {count(number)} others keep"

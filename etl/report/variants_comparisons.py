@@ -3,7 +3,10 @@
 from __future__ import annotations
 
 import math
+from collections import Counter
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from typing import Final
 
 import numpy as np
 from markupsafe import Markup
@@ -23,9 +26,34 @@ from etl.report.variants_words import (
     value,
 )
 from etl.report.wording import count
-from etl.variants.facts import Summary
+from etl.variants.facts import Standing, Summary
 
-#: So many comparisons are shown at most; of those that hold, so many before they are folded.
+#: What is said of comparisons by what the decisions do to them.
+_PARTS: Final[Mapping[Standing, tuple[str, str]]] = {
+    "decided": (
+        "The decisions decide",
+        (
+            "In some variants the interval leaves out 0, in others it does not or lies on the "
+            "other side."
+        ),
+    ),
+    "held": (
+        "The decisions do not decide",
+        "The sign holds in all variants, and the interval leaves out 0 in all of them or in none.",
+    ),
+    "around 0": (
+        "Around 0 in all variants",
+        (
+            "The sign does not hold, but no variant has an interval that leaves out 0: a "
+            "difference that small, or from so few values, has no sign to hold."
+        ),
+    ),
+    "none": (
+        "Cannot be made",
+        "One of the two conditions has no value in any variant.",
+    ),
+}
+#: So many comparisons are shown at most; of those not decided, so many before they are folded.
 MOST_COMPARISONS = 500
 MOST_OPEN = 15
 
@@ -41,16 +69,16 @@ class ComparisonRow:
     curve : int
         Number of its curve; 0 where it has none.
     turned : bool
-        Whether the sign does not hold in all variants.
+        Whether the decisions decide on which side of 0 the interval lies, or whether it does.
     own, bounds, low, high : str
         The study's value with its interval; the lowest and the highest.
     values : tuple of str
-        The study's value, the lowest, the highest, the variants in which the sign holds, and the
-        share of the decision, as numbers for sorting.
+        The study's value, the lowest, the highest, the variants in which the sign holds, the share
+        of the decision, and the variants whose interval leaves out 0, as numbers for sorting.
     reach : Markup
         From the lowest to the highest, drawn.
-    holds : str
-        In how many variants the sign holds; empty for rates.
+    holds, apart : str
+        In how many variants the sign holds, and the interval leaves out 0; empty for rates.
     matters : Markup
         The decision that matters most; a dash where that is not known.
     share : str
@@ -69,8 +97,29 @@ class ComparisonRow:
     values: tuple[str, ...]
     reach: Markup
     holds: str
+    apart: str
     matters: Markup
     share: str
+
+
+@dataclass(frozen=True, slots=True)
+class ComparisonPart:
+    """Comparisons to which the decisions do the same.
+
+    Attributes
+    ----------
+    title, how : str
+        Which these are, and in a sentence what that means.
+    rows : tuple of ComparisonRow
+        The comparisons.
+    folded : bool
+        Whether they are folded.
+    """
+
+    title: str
+    how: str
+    rows: tuple[ComparisonRow, ...]
+    folded: bool
 
 
 @dataclass(frozen=True, slots=True)
@@ -83,19 +132,15 @@ class Comparisons:
         Whether they are of rates.
     says : str
         How many hold, in a sentence.
-    turned, held : tuple of ComparisonRow
-        Those whose sign does not hold, and the others.
-    folded : bool
-        Whether the others are folded.
+    parts : tuple of ComparisonPart
+        The comparisons by what the decisions do to them.
     left : Markup
         What is said of those that are not shown.
     """
 
     rate: bool
     says: str
-    turned: tuple[ComparisonRow, ...]
-    held: tuple[ComparisonRow, ...]
-    folded: bool
+    parts: tuple[ComparisonPart, ...]
     left: Markup
 
 
@@ -110,7 +155,7 @@ def collect_comparisons(facts: VariantsInput) -> Comparisons:
     Returns
     -------
     Comparisons
-        Those whose sign does not hold first.
+        Those on which the decisions decide first.
     """
     rate = all(is_rate(one.compared.comparison) for one in facts.summaries)
     lead = {at: place for place, at in enumerate(facts.leading, start=1)}
@@ -118,39 +163,62 @@ def collect_comparisons(facts: VariantsInput) -> Comparisons:
     factor = 100.0 if rate else 1.0
     known = found[np.isfinite(found).all(axis=1)] * factor
     scale = round_scale(min(known.min(), 0.0), known.max()) if len(known) else round_scale(0, 1)
-    turned = [at for at, one in enumerate(facts.summaries) if not one.holds]
-    held = [at for at, one in enumerate(facts.summaries) if one.holds]
-    shown = turned[:MOST_COMPARISONS], held[: max(0, MOST_COMPARISONS - len(turned))]
-    rows = [
-        tuple(_comparison(facts, facts.summaries[at], lead.get(at, 0), scale) for at in places)
-        for places in shown
-    ]
-    left = len(facts.summaries) - sum(map(len, shown))
+    parts, left = [], MOST_COMPARISONS
+    for standing, (title, how) in _PARTS.items():
+        places = [at for at, one in enumerate(facts.summaries) if one.standing == standing]
+        shown = places[: max(0, left)]
+        left -= len(places)
+        if shown:
+            title = "All rates" if rate else title
+            rows = [_comparison(facts, facts.summaries[at], lead.get(at, 0), scale) for at in shown]
+            folded = standing != "decided" and len(rows) > MOST_OPEN
+            parts.append(ComparisonPart(title, "" if rate else how, tuple(rows), folded))
     return Comparisons(
         rate,
-        _comparisons_say(len(turned), len(facts.summaries), rate=rate),
-        rows[0],
-        rows[1],
-        len(held) > MOST_OPEN,
-        more_in(facts, "comparisons", left),
+        comparisons_say(facts.summaries, rate=rate),
+        tuple(parts),
+        more_in(facts, "comparisons", max(0, -left)),
     )
 
 
-def _comparisons_say(turned: int, whole: int, *, rate: bool) -> str:
-    """How many hold."""
-    if not whole:
+def comparisons_say(summaries: Sequence[Summary], *, rate: bool, others: bool = False) -> str:
+    """To how many comparisons decisions do what.
+
+    Parameters
+    ----------
+    summaries : sequence of Summary
+        The comparisons.
+    rate : bool
+        Whether they are of rates.
+    others : bool
+        Whether some have been told of before.
+
+    Returns
+    -------
+    str
+        Sentences.
+    """
+    if not summaries:
         return "The study has no binary outcome to compare."
     if rate:
         return (
             "The study names no factors, so there is nothing to compare and no sign that could "
             "turn: these are rates."
         )
-    if not turned:
-        if whole == 1:
-            return "The sign of the one comparison holds in all variants."
-        return f"The signs of all {count(whole)} comparisons hold in all variants."
-    verb = "does" if turned == 1 else "do"
-    return f"{count(turned)} of {count(whole)} {verb} not keep the sign in all variants."
+    counted = Counter(one.standing for one in summaries)
+    whole = f"{count(len(summaries))}{' other' * others} comparison" + "s" * (len(summaries) > 1)
+    decided, around, none = (counted[key] for key in ("decided", "around 0", "none"))
+    if decided:
+        text = (
+            f"In {count(decided)} of {whole} the decisions decide whether the interval leaves out 0"
+        )
+    else:
+        text = f"In none of {whole} the decisions decide whether the interval leaves out 0"
+    if around:
+        text += f"; in {count(around)} the sign does not hold, but no interval leaves out 0"
+    if none:
+        text += f"; {count(none)} cannot be made"
+    return f"{text}."
 
 
 def _comparison(facts: VariantsInput, summary: Summary, curve: int, scale: Scale) -> ComparisonRow:
@@ -163,7 +231,7 @@ def _comparison(facts: VariantsInput, summary: Summary, curve: int, scale: Scale
     if summary.matters is not None and summary.shares:
         matters = code(facts.short_keys[summary.matters])
         share = summary.shares[summary.matters].together
-    numbers = (own, low, high, math.nan if rate else summary.same_sign, share)
+    numbers = (own, low, high, math.nan if rate else summary.same_sign, share, summary.apart)
     factor = 100.0 if rate else 1.0
     holds = "" if rate else f"{count(summary.same_sign)} of {count(len(summary.order))}"
     if not rate and not own:
@@ -175,7 +243,7 @@ def _comparison(facts: VariantsInput, summary: Summary, curve: int, scale: Scale
         place_words(compared.comparison),
         Markup() if rate else levels_words(compared.comparison),
         curve,
-        not summary.holds,
+        summary.standing == "decided",
         value(own, rate=rate),
         interval(float(compared.low[base]), float(compared.high[base]), rate=rate),
         value(low, rate=rate),
@@ -183,6 +251,7 @@ def _comparison(facts: VariantsInput, summary: Summary, curve: int, scale: Scale
         tuple("" if math.isnan(one) else f"{one:.6g}" for one in numbers),
         reach_bar(low * factor, high * factor, own * factor, scale, rate=rate),
         holds,
+        "" if rate else f"{count(summary.apart)} of {count(len(summary.order))}",
         matters,
         "" if math.isnan(share) else share_words(share),
     )

@@ -11,11 +11,11 @@ from etl.variants.facts import Change, Crossing, Summary
 #: among the tables of the page.
 FILES = {
     "variants": "variants.csv",
-    "differences": "differences.csv",
+    "differences": "rates.csv",
     "comparisons": "comparisons.csv",
     "changes": "changes.csv",
     "readers": "readers.csv",
-    "trials": "trials.csv",
+    "trials": "changed_cells.csv",
 }
 
 

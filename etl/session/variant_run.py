@@ -239,7 +239,12 @@ class VariantRun:
                 results.changes,
                 readers,
                 trials,
-                tuple(for_record(self.findings, self.read.plan).lines(("warning",))),
+                tuple(self._notices()),
                 tuple(tables),
             ),
         )
+
+    def _notices(self) -> list[str]:
+        """Warnings, without the word."""
+        lines = for_record(self.findings, self.read.plan).lines(("warning",))
+        return [line.removeprefix("warning: ") for line in lines]

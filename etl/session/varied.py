@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 import pyarrow.parquet as pq
 
 from etl.errors import Findings
+from etl.report.variants_comparisons import comparisons_say
 from etl.session.told import counted, near
 from etl.tables.variants import CHANGED_CELLS, RATES, VARIANT_ROWS
 from etl.variants.facts import Crossing, Summary
@@ -87,10 +88,8 @@ class Varied:
         lines = [f"{head}; variant {number} is the study as it stands"]
         for place in self.leading:
             lines += in_short(self.summaries[place], crossing).split("\n")
-        turning = sum(not own.holds for own in self.summaries)
-        whole = counted(len(self.summaries), "comparison")
-        do = "does" if turning == 1 else "do"
-        lines.append(f"Of {whole}, {turning:,} {do} not have the same sign in all variants.")
+        rate = all(not own.compared.comparison.factor for own in self.summaries)
+        lines.append(comparisons_say(self.summaries, rate=rate))
         lines.append(f"Written to {near(self.folder)}:")
         width = max(len(name) for name in self.rows)
         lines += [f"  {name:<{width}}  {rows:>11,} rows" for name, rows in self.rows.items()]

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from functools import cached_property
 from math import prod
+from typing import Literal
 
 import numpy as np
 from numpy.typing import NDArray
@@ -12,6 +13,7 @@ from numpy.typing import NDArray
 Ints = NDArray[np.int64]
 Floats = NDArray[np.float64]
 Flags = NDArray[np.bool_]
+Standing = Literal["decided", "around 0", "held", "none"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -179,6 +181,28 @@ class Summary:
     def holds(self) -> bool:
         """Whether all variants have the sign of the study as it stands."""
         return self.same_sign == len(self.order)
+
+    @cached_property
+    def apart(self) -> int:
+        """How many variants have an interval that leaves out 0, on whichever side."""
+        return int(((self.compared.low > 0) | (self.compared.high < 0)).sum())
+
+    @property
+    def standing(self) -> Standing:
+        """What the decisions do to the comparison.
+
+        ``decided``: whether the interval leaves out 0 hangs on them, or on which side it lies.
+        ``around 0``: no interval leaves out 0, and the sign does not hold. ``none``: no variant has
+        a difference. ``held``: everything else, and all rates.
+        """
+        variants = len(self.order)
+        if self.without == variants:
+            return "none"
+        if not self.compared.comparison.factor:
+            return "held"
+        if 0 < self.apart < variants or (self.apart and not self.holds):
+            return "decided"
+        return "held" if self.holds else "around 0"
 
 
 @dataclass(frozen=True, eq=False)

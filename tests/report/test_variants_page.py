@@ -166,16 +166,17 @@ def test_points_lie_where_their_values_are() -> None:
     assert [x for x, _ in dots] == sorted(x for x, _ in dots)
 
 
-def test_comparisons_that_turn_stand_first_and_are_marked() -> None:
+def test_decided_comparisons_stand_first_and_are_marked() -> None:
     """With a sign and in a table of their own, not by colour alone."""
     facts = facts_of(crossing_of([3, 3, 2]))
     part = page_of(facts).one("section", id="comparisons")
-    turned = [one for one in facts.summaries if not one.holds]
+    turned = [one for one in facts.summaries if one.standing == "decided"]
     rows = by_class(part, "turned", "tr")
     assert 0 < len(rows) == len(turned) < len(facts.summaries)
     for row, one in zip(rows, turned, strict=True):
         assert len(by_class(row, "turned-sign")) == 1
         assert f"{one.same_sign} of {len(facts.crossing)}" in row.text or "none" in row.text
+        assert f"{one.apart} of {len(facts.crossing)}" in row.text
         known = one.compared.difference
         assert value(float(known.min()), rate=False) in row.cells()
         assert value(float(known.max()), rate=False) in row.cells()
@@ -196,7 +197,7 @@ def test_long_lists_are_cut_and_the_table_that_has_all_is_named() -> None:
     assert "and 300 more: variants.csv has all." in losses.text
     numbers = by_class(page, "numbers")[0]
     assert len(list(numbers.one("tbody").all("tr"))) == 101
-    assert "and 399 more: differences.csv has all." in page.text
+    assert "and 399 more: rates.csv has all." in page.text
     assert "and 5 more: changes.csv has all." in page.text
     bare = page_of(replace(facts, tables=()))
     assert "and 300 more: the tables beside this page have all" in bare.text
