@@ -93,12 +93,11 @@ def _batches(
     """The columns of some variants at a time."""
     variants, outcomes, conditions, _ = counted.counts.shape
     at_once = max(1, _ROWS_AT_ONCE // max(1, outcomes * conditions))
-    measures = pa.array([measure for measure, _ in counted.outcomes], pa.string())
-    regions = pa.array([region for _, region in counted.outcomes], pa.string())
-    named = np.array(
-        [place if region else -1 for place, (_, region) in enumerate(counted.outcomes)]
-    )
-    against = pa.array([_spelled(label) for label in groups.labels], pa.string())
+    measures = _Texts([measure for measure, _ in counted.outcomes])
+    regions = _Texts([region for _, region in counted.outcomes])
+    # What has no condition to be compared with has the text that is empty.
+    labels = [_spelled(label) for label in groups.labels]
+    against = _Texts([labels[place] if place >= 0 else "" for place in groups.reference.tolist()])
     for start in range(0, variants, at_once):
         counts = counted.counts[start : start + at_once]
         some = len(counts)
@@ -116,8 +115,8 @@ def _batches(
 
         yield [
             array_of(variant),
-            coded_of(outcome.astype(np.int32), measures, whole=True),
-            coded_of(named[outcome].astype(np.int32), regions),
+            measures.taken(outcome),
+            regions.taken(outcome),
             *(
                 coded_of(codes[group], pa.array(list(levels), pa.string()))
                 for codes, levels in _levels(factors, groups)
@@ -128,13 +127,31 @@ def _batches(
             array_of(n),
             array_of(ones.copy()),
             *(numbers_of(values) for values in (rate, low, high)),
-            coded_of(np.where(compared, groups.reference[group], -1).astype(np.int32), against),
+            against.taken(group),
             *(
                 numbers_of(np.where(compared, values.ravel(), np.nan))
                 for values in (difference, lower, upper)
             ),
             array_of(corrected.ravel().astype(np.int8), compared & ~np.isnan(difference.ravel())),
         ]
+
+
+class _Texts:
+    """Texts of which many are the same; an empty one is missing.
+
+    Each stands in the list of values once: a file whose list has one twice is not always written in
+    the same bytes.
+    """
+
+    def __init__(self, texts: Sequence[str]) -> None:
+        values = list(dict.fromkeys(text for text in texts if text))
+        places = {text: place for place, text in enumerate(values)}
+        self._codes = np.array([places.get(text, -1) for text in texts], dtype=np.int32)
+        self._values = pa.array(values, pa.string())
+
+    def taken(self, places: NDArray[np.integer]) -> pa.Array:
+        """The texts at some places."""
+        return coded_of(self._codes[places], self._values)
 
 
 def _levels(

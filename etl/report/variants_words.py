@@ -288,6 +288,10 @@ def headline(summary: Summary, facts: VariantsInput) -> Markup:
         out += Markup(" Choosing {} anew turns the sign most often{}.").format(
             code(facts.short_keys[summary.turns]), often
         )
+    if summary.turns is None and summary.clears is not None:
+        out += Markup(" Choosing {} anew most often decides whether the interval does.").format(
+            code(facts.short_keys[summary.clears])
+        )
     if summary.matters is not None and summary.shares:
         out += Markup(" {} decides most: {} of the variance between variants.").format(
             code(facts.short_keys[summary.matters]),

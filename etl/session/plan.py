@@ -57,6 +57,9 @@ class Plan:
         Lines that were set by hand.
     pseudonyms : Pseudonyms or None
         By which readers and logs go, where the study asks for them.
+    notes_elsewhere : frozenset of (str, str)
+        Level (``trials``, ``participants``) and file of notes for which other variants of the study
+        ask: of these rows nobody need be told that the study does not.
     """
 
     study: Study
@@ -67,6 +70,7 @@ class Plan:
     limits: Limits
     corrections: LineCorrections | None = None
     pseudonyms: Pseudonyms | None = None
+    notes_elsewhere: frozenset[tuple[str, str]] = frozenset()
 
     @cached_property
     def lines(self) -> LineChoice | None:

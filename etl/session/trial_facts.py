@@ -148,7 +148,8 @@ def _add_notes(plan: Plan, trials: KnownTrials, facts: TrialFacts, findings: Fin
             (of_trials, on_trials, "a trial", "trials"),
             (of_readers, ~on_trials, "a reader", "participants"),
         ):
-            if given != used and rows.any():
+            elsewhere = (key, given) in plan.notes_elsewhere
+            if given != used and rows.any() and not elsewhere:
                 findings.error(
                     f"the note is on {what}, which the study file does not ask this file for",
                     path=notes.shown,

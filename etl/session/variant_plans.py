@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+import itertools
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 
 from etl.errors import DataError, Findings
@@ -87,7 +88,8 @@ def plan_variants(read: LogsRead, studies: Sequence[Study], findings: Findings) 
     DataError
         If no reader is left to work on, or anything is wrong.
     """
-    plans = [_plan(read.plan, study) for study in studies]
+    asked = frozenset(itertools.chain.from_iterable(map(_notes, studies)))
+    plans = [_plan(read.plan, study, asked) for study in studies]
     needs = [facts_needed(plan) for plan in plans]
     gathered: dict[tuple[object, ...], Gathered] = {}
     for plan, need in zip(plans, needs, strict=True):
@@ -119,11 +121,21 @@ def plan_variants(read: LogsRead, studies: Sequence[Study], findings: Findings) 
     return VariantPlans(tuple(plans), tuple(options), tuple(gathered.values()))
 
 
-def _plan(plan: Plan, study: Study) -> Plan:
+def _notes(study: Study) -> Iterator[tuple[str, str]]:
+    """The files of notes that a variant asks for, by level."""
+    screening = study.screening
+    if screening is None:
+        return
+    for level, rules in (("trials", screening.trials), ("participants", screening.participants)):
+        if rules is not None and rules.notes is not None:
+            yield level, rules.notes
+
+
+def _plan(plan: Plan, study: Study, asked: frozenset[tuple[str, str]]) -> Plan:
     """The plan of a variant: what the study file says anew, and the rest as it is."""
     library = replace(plan.library, manner=manner_of(study.regions, study.lines))
     limits = hidden_limits(limits_of(study), study, plan.pseudonyms)
-    return replace(plan, study=study, library=library, limits=limits)
+    return replace(plan, study=study, library=library, limits=limits, notes_elsewhere=asked)
 
 
 def _add_new(findings: Findings, new: Findings) -> None:

@@ -184,7 +184,10 @@ class VariantTables:
             summary.clear,
             None if most is None else self._keys[most],
             None if most is None else summary.shares[most].together,
-            None if summary.turns is None else self._keys[summary.turns],
+            *(
+                None if place is None else self._keys[place]
+                for place in (summary.turns, summary.clears)
+            ),
         ]
 
     def _decisions(self) -> Iterable[list[Cell]]:

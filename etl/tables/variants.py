@@ -170,6 +170,12 @@ def comparison_columns() -> tuple[Column, ...]:
             nullable=True,
         ),
         Column("turns_with", "text", "the setting that turns its sign most often", nullable=True),
+        Column(
+            "clears_with",
+            "text",
+            "the setting that most often decides whether the interval leaves out 0",
+            nullable=True,
+        ),
     )
 
 

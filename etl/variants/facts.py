@@ -163,6 +163,9 @@ class Summary:
         The setting that decides most about the difference (by ``together``); None without shares.
     turns : int or None
         The setting whose choice turns the sign most often; None where no pair differs in sign.
+    clears : int or None
+        The setting whose choice most often decides whether the interval leaves out 0, or on which
+        side it lies; None where no pair differs in that.
     """
 
     compared: Compared
@@ -176,6 +179,7 @@ class Summary:
     shares: tuple[SettingShare, ...]
     matters: int | None
     turns: int | None
+    clears: int | None = None
 
     @property
     def holds(self) -> bool:
@@ -183,9 +187,19 @@ class Summary:
         return self.same_sign == len(self.order)
 
     @cached_property
+    def side(self) -> Floats:
+        """(V,) float64 array: 1 and -1 where the interval lies above or below 0, 0 around it.
+
+        NaN where there is no difference.
+        """
+        own = self.compared
+        side: Floats = np.where(own.low > 0, 1.0, 0.0) - np.where(own.high < 0, 1.0, 0.0)
+        return np.where(np.isnan(own.difference), np.nan, side)
+
+    @cached_property
     def apart(self) -> int:
         """How many variants have an interval that leaves out 0, on whichever side."""
-        return int(((self.compared.low > 0) | (self.compared.high < 0)).sum())
+        return int((np.abs(self.side) > 0).sum())
 
     @property
     def standing(self) -> Standing:

@@ -139,7 +139,11 @@ def in_short(summary: Summary, crossing: Crossing) -> str:
         head += f"; {_signs_in_short(summary, crossing)}"
     if summary.without:
         head += f"; no value in {summary.without:,}"
-    more = _turns_in_short(summary, crossing) or _decides_in_short(summary, crossing)
+    more = (
+        _turns_in_short(summary, crossing)
+        or _clears_in_short(summary, crossing)
+        or _decides_in_short(summary, crossing)
+    )
     return f"{head}\n{more}" if more else head
 
 
@@ -312,6 +316,27 @@ def _turns_in_short(summary: Summary, crossing: Crossing) -> str:
         chosen = signs[crossing.choices[:, summary.turns] == place]
         parts.append(_mostly(alternative, _numbers(chosen), first=not place))
     return f"the sign turns {how} {keys[summary.turns]}: {', '.join(parts)}"
+
+
+def _clears_in_short(summary: Summary, crossing: Crossing) -> str:
+    """Which setting decides whether the interval leaves out 0; empty where none does."""
+    if summary.clears is None:
+        return ""
+    cleared = turning(summary.side, crossing)
+    keys = [own.key for own in crossing.settings]
+    most = np.flatnonzero(cleared == cleared.max()).tolist()
+    what = "whether the interval leaves out 0 hangs"
+    if len(most) > 1:
+        return f"{what} equally on {listed([keys[place] for place in most])}"
+    how = "most on" if np.count_nonzero(cleared) > 1 else "on"
+    parts = []
+    for place, alternative in enumerate(crossing.settings[summary.clears].alternatives):
+        chosen = summary.side[crossing.choices[:, summary.clears] == place]
+        some, of = int((np.abs(chosen) > 0).sum()), many(len(chosen), "variant")
+        parts.append(
+            f"it does in {some:,} of {of if not place else len(chosen)} with {alternative}"
+        )
+    return f"{what} {how} {keys[summary.clears]}: {', '.join(parts)}"
 
 
 def _mostly(alternative: str, counts: Sequence[int], *, first: bool) -> str:

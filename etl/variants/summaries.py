@@ -12,9 +12,9 @@ from etl.variants.shares import setting_shares, turning
 
 #: By which rule :func:`leading` chooses, for users.
 LEADING_RULE = (
-    "Comparisons whose sign does not hold in all variants come first, then those whose values "
-    "spread widest over the variants, measured by the width of the study's own interval; "
-    "comparisons without a value in some variant come last."
+    "Comparisons in which the decisions decide whether the interval leaves out 0 come first; of "
+    "these and the others, those whose values spread widest over the variants, measured by the "
+    "width of the study's own interval; comparisons without a value in some variant come last."
 )
 
 
@@ -32,8 +32,8 @@ def summarise(compared: Compared, crossing: Crossing) -> Summary:
     -------
     Summary
         For rates, which have no sign to speak of, ``positive``, ``negative``, ``zero`` and
-        ``clear`` are 0, ``same_sign`` counts every variant, ``turns`` is None, and no share has
-        ``flips``. Of settings that decide equally much the first is named.
+        ``clear`` are 0, ``same_sign`` counts every variant, ``turns`` and ``clears`` are None, and
+        no share has ``flips``. Of settings that decide equally much the first is named.
 
     Raises
     ------
@@ -53,7 +53,7 @@ def summarise(compared: Compared, crossing: Crossing) -> Summary:
     same = above if above[base] else below if below[base] else np.zeros_like(above)
     clear = same & ((compared.low > 0) | (compared.high < 0))
     turned = turning(values, crossing)
-    return Summary(
+    summary = Summary(
         compared=compared,
         order=order,
         positive=int(above.sum()),
@@ -66,6 +66,8 @@ def summarise(compared: Compared, crossing: Crossing) -> Summary:
         matters=_most(shares),
         turns=int(turned.argmax()) if turned.any() else None,
     )
+    cleared = turning(summary.side, crossing)
+    return replace(summary, clears=int(cleared.argmax()) if cleared.any() else None)
 
 
 def leading(summaries: Sequence[Summary], most: int, base: int = 0) -> tuple[int, ...]:
@@ -88,7 +90,7 @@ def leading(summaries: Sequence[Summary], most: int, base: int = 0) -> tuple[int
 
     def rank(place: int) -> tuple[bool, bool, float]:
         own = summaries[place]
-        return own.without > 0, own.holds, -_spread(own.compared, base)
+        return own.without > 0, own.standing != "decided", -_spread(own.compared, base)
 
     return tuple(sorted(range(len(summaries)), key=rank)[: max(most, 0)])
 
