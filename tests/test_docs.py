@@ -300,3 +300,30 @@ def test_readme_shows_what_build_prints(tmp_path: Path) -> None:
     assert [line for line in printed if not line.startswith("Written")] == [
         line for line in shown[1:] if not line.startswith("Written")
     ]
+
+
+def test_readme_shows_what_vary_prints(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """The variants of the sample study say what the README says."""
+    monkeypatch.chdir(PROJECT)
+    command = "vary sample_logs/orchard/study.toml sample_logs/orchard/variants.toml"
+    into = ["--into", str(tmp_path / "variants")]
+    done = CliRunner().invoke(main, [*command.split(), *into])
+    shown = printed_after(f"trialwright {command}").splitlines()
+    printed = done.output.splitlines()
+    assert [line for line in printed if not line.startswith("Written")] == [
+        line for line in shown if not line.startswith("Written")
+    ]
+
+
+def test_variants_file_of_the_readme_is_sound(tmp_path: Path) -> None:
+    """Both examples, tried on the sample study: what is shown can be copied."""
+    text = README.read_text(encoding="utf-8")
+    part = text[text.index("## How much do your exclusions decide?") :]
+    examples = re.findall(r"```toml\n(.*?)```", part, re.DOTALL)[:2]
+    assert len(examples) == 2
+    study = PROJECT / "sample_logs" / "orchard" / "study.toml"
+    for number, example in enumerate(examples):
+        path = tmp_path / f"variants {number}.toml"
+        path.write_text(example, encoding="utf-8")
+        done = CliRunner().invoke(main, ["vary", str(study), str(path), "--quiet"])
+        assert (done.exit_code, done.output) == (0, "")

@@ -87,11 +87,13 @@ class Varied:
         head = f"{counted(len(crossing), 'variant')}, {every} {settings}"
         lines = [f"{head}; variant {number} is the study as it stands"]
         for place in self.leading:
-            lines += in_short(self.summaries[place], crossing).split("\n")
+            first, *more = in_short(self.summaries[place], crossing).split("\n")
+            lines += [first, *(f"  {line}" for line in more)]
         rate = all(not own.compared.comparison.factor for own in self.summaries)
         lines.append(comparisons_say(self.summaries, rate=rate))
         lines.append(f"Written to {near(self.folder)}:")
         width = max(len(name) for name in self.rows)
         lines += [f"  {name:<{width}}  {rows:>11,} rows" for name, rows in self.rows.items()]
         lines.append("  codebook.csv, for_paper.txt, run.json, and variants.html to look at")
-        return "\n".join(lines)
+        # Not every pipe takes a minus sign.
+        return "\n".join(lines).replace("\N{MINUS SIGN}", "-")

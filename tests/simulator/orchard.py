@@ -199,6 +199,7 @@ def write_orchard(
     readers = {reader.plan.participant for reader in study.readers}
     documents = {
         "study.toml": study_file,
+        "variants.toml": VARIANTS_FILE,
         "trial_list.csv": trial_table(study),
         "participants.csv": table(
             ["participant", "group", "age"],
@@ -356,4 +357,36 @@ no_opportunity = "missing"        # no chance, no zero: such a cell stays empty,
 [output]
 folder = "out"
 formats = ["parquet", "csv"]
+"""
+
+VARIANTS_FILE = """\
+# Decisions about the orchard study that could be taken otherwise. Keys are those of study.toml, and
+# each holds a list of alternatives, in which false is "off"; the study's own value is one of them.
+title = "Five decisions that laboratories take differently"
+
+[screening.fixations]
+blink = ["drop", false]
+under_ms = [false, 80, 100]
+
+[screening.trials]
+outside_share_over = [0.20, 0.30, false]
+
+[regions]
+tolerance_px = [0, 14, 28]        # nothing, one character, two
+
+[measures]
+no_opportunity = ["missing", "zero"]
+
+# What the study is about: the page begins with these.
+[[comparisons]]
+outcome = "first_pass_regression_out"
+region = "verb"
+factor = "fit"
+level = "odd"
+
+[[comparisons]]
+outcome = "first_pass_regression_out"
+region = "verb"
+factor = "cue"
+level = "late"
 """
