@@ -68,8 +68,9 @@ class ComparisonRow:
         What is compared.
     curve : int
         Number of its curve; 0 where it has none.
-    turned : bool
-        Whether the decisions decide on which side of 0 the interval lies, or whether it does.
+    turned, sign_turns : bool
+        Whether the decisions decide on which side of 0 the interval lies, or whether it does; and
+        whether the sign does not hold.
     own, bounds, low, high : str
         The study's value with its interval; the lowest and the highest.
     values : tuple of str
@@ -90,6 +91,7 @@ class ComparisonRow:
     levels: Markup
     curve: int
     turned: bool
+    sign_turns: bool
     own: str
     bounds: str
     low: str
@@ -244,6 +246,7 @@ def _comparison(facts: VariantsInput, summary: Summary, curve: int, scale: Scale
         Markup() if rate else levels_words(compared.comparison),
         curve,
         summary.standing == "decided",
+        summary.standing == "decided" and not summary.holds,
         value(own, rate=rate),
         interval(float(compared.low[base]), float(compared.high[base]), rate=rate),
         value(low, rate=rate),

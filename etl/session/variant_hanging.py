@@ -42,7 +42,7 @@ class Hangs:
 
 @dataclass(frozen=True, slots=True)
 class ReaderHangs:
-    """A reader, and the trial of this reader that hangs most; None where none does."""
+    """A reader, and the trial that hangs most on the same setting; None where none does."""
 
     participant: str
     hangs: Hangs
@@ -151,35 +151,36 @@ def readers_hanging(
         )
     else:
         scores[some] = differing[some] / of[some]
-    made: dict[int, HangingTrial] = {}
 
-    def offered(trial: int) -> HangingTrial:
-        if trial not in made:
-            reader = int(group.reader_of_trial[trial])
-            told = hangs(np.array([trial]))
-            setting = score_of(told, pairs)[1]
-            states = _states_of(trial, universe, changed)
-            variant = _telling(states, setting, crossing)
-            made[trial] = HangingTrial(
-                group.participants[reader],
-                trial - int(group.trial_starts[reader]),
-                told,
-                setting,
-                variant,
-                tuple(
-                    (name, code, int(own[crossing.base]), int(own[variant]))
-                    for name, code, own in states
-                    if own[crossing.base] != own[variant]
-                ),
-            )
-        return made[trial]
+    def offered(trial: int, setting: int | None = None) -> HangingTrial:
+        reader = int(group.reader_of_trial[trial])
+        told = hangs(np.array([trial]))
+        setting = score_of(told, pairs)[1] if setting is None else setting
+        states = _states_of(trial, universe, changed)
+        variant = _telling(states, setting, crossing)
+        return HangingTrial(
+            group.participants[reader],
+            trial - int(group.trial_starts[reader]),
+            told,
+            setting,
+            variant,
+            tuple(
+                (name, code, int(own[crossing.base]), int(own[variant]))
+                for name, code, own in states
+                if own[crossing.base] != own[variant]
+            ),
+        )
 
     readers = []
     for reader, participant in enumerate(group.participants):
         own_trials = np.arange(*group.trial_starts[reader : reader + 2].tolist())
-        best = int(own_trials[np.argmax(scores[own_trials])]) if len(own_trials) else -1
-        most = offered(best) if best >= 0 and scores[best] > 0 else None
-        readers.append(ReaderHangs(participant, hangs(own_trials), most))
+        told = hangs(own_trials)
+        setting = score_of(told, pairs)[1]
+        # The trial to be shown of a reader is the one that hangs most on what the reader hangs on.
+        weights = scores if setting < 0 else by_trial[:, setting] / np.maximum(of, 1)
+        best = int(own_trials[np.argmax(weights[own_trials])]) if told.cells else -1
+        most = offered(best, setting) if best >= 0 else None
+        readers.append(ReaderHangs(participant, told, most))
     order = np.argsort(-scores, kind="stable")[:MOST_OFFERED]
     return readers, [offered(int(trial)) for trial in order if scores[trial] > 0]
 
