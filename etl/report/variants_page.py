@@ -2,15 +2,9 @@
 
 from __future__ import annotations
 
-import base64
-import hashlib
-from functools import cache
 from pathlib import Path
 
-from jinja2 import Environment, PackageLoader, StrictUndefined
-from markupsafe import Markup
-
-from etl.report.charts import HATCHINGS, SHAPES
+from etl.report.pages import rendered
 from etl.report.variants_collect import collect_variants
 from etl.report.variants_input import VariantsInput
 
@@ -44,28 +38,4 @@ def variants_page(facts: VariantsInput) -> str:
     str
         HTML; everything that comes from data is escaped.
     """
-    environment = _environment()
-    # Template text itself is not escaped, so the script goes in as it is.
-    script = environment.get_template("variants.js").render()
-    digest = base64.b64encode(hashlib.sha256(script.encode("utf-8")).digest()).decode("ascii")
-    page = environment.get_template("variants.html").render(
-        page=collect_variants(facts),
-        script=Markup(script),  # noqa: S704 - a file of this package
-        script_digest=digest,
-        hatchings=range(HATCHINGS),
-        shapes=range(SHAPES),
-    )
-    # A lone surrogate cannot come from a file that was read as UTF-8, but may come from Python.
-    return page.encode("utf-8", "replace").decode("utf-8")
-
-
-@cache
-def _environment() -> Environment:
-    """The templates, compiled once for all pages of a process."""
-    return Environment(
-        loader=PackageLoader("etl.report"),
-        autoescape=True,
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-    )
+    return rendered("variants.html", ("variants.js",), collect_variants(facts))

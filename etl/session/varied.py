@@ -13,7 +13,7 @@ from etl.report.variants_comparisons import comparisons_say
 from etl.session.told import counted, near
 from etl.tables.variants import CHANGED_CELLS, RATES, VARIANT_ROWS
 from etl.variants.facts import Crossing, Summary
-from etl.variants.sentences import in_short
+from etl.variants.in_short import in_short
 
 if TYPE_CHECKING:
     import pandas as pd

@@ -7,12 +7,11 @@ from collections.abc import Iterator, Sequence
 
 import numpy as np
 
-from etl.variants.facts import Comparison, Crossing, Flags, Floats, Setting, SettingShare, Summary
-from etl.variants.shares import turning
-from etl.variants.words import all_of, any_of, listed, many, number, percent
+from etl.variants.facts import Comparison, Crossing, Flags, Setting, SettingShare, Summary
+from etl.variants.words import all_of, any_of, listed, number, percent
 
 #: What signs are called.
-_SIGNS = {-1.0: "below 0", 0.0: "exactly 0", 1.0: "above 0"}
+SIGNS = {-1.0: "below 0", 0.0: "exactly 0", 1.0: "above 0"}
 
 
 def short_keys(settings: Sequence[Setting]) -> tuple[str, ...]:
@@ -107,46 +106,6 @@ def for_paper(summary: Summary, crossing: Crossing) -> str:
     return " ".join(_passage(summary, crossing))
 
 
-def in_short(summary: Summary, crossing: Crossing) -> str:
-    """The same for the console.
-
-    Parameters
-    ----------
-    summary : Summary
-        What is known of the comparison.
-    crossing : Crossing
-        The variants.
-
-    Returns
-    -------
-    str
-        One line; a second one where the sign turns or a setting matters most, which says with
-        which.
-    """
-    compared, total, base = summary.compared, len(crossing), crossing.base
-    head = f"{comparison_words(compared.comparison)}: "
-    if summary.without == total:
-        return f"{head}no value" + (f" in {any_of(total)}" if total > 1 else "")
-    if np.isnan(compared.difference[base]):
-        head += "no value in the study"
-    else:
-        what = "" if compared.comparison.factor else "rate "
-        head += f"{what}{number(compared.difference[base])} ({_limits(summary, base)}) in the study"
-    if total == 1:
-        return head
-    head += f", {_span(summary)} over {many(total, 'variant')}"
-    if compared.comparison.factor:
-        head += f"; {_signs_in_short(summary, crossing)}"
-    if summary.without:
-        head += f"; no value in {summary.without:,}"
-    more = (
-        _turns_in_short(summary, crossing)
-        or _clears_in_short(summary, crossing)
-        or _decides_in_short(summary, crossing)
-    )
-    return f"{head}\n{more}" if more else head
-
-
 def _passage(summary: Summary, crossing: Crossing) -> Iterator[str]:
     """One sentence of the passage after the other."""
     compared, total, base = summary.compared, len(crossing), crossing.base
@@ -164,15 +123,15 @@ def _passage(summary: Summary, crossing: Crossing) -> Iterator[str]:
             others = total - summary.without
             rest = "the other one" if others == 1 else f"the other {others:,}"
             where = rest if summary.without else all_of(total)
-            yield f"It is {_span(summary)} in {where}."
+            yield f"It is {span(summary)} in {where}."
     else:
-        yield f"It ranges from {_span(summary)}."
+        yield f"It ranges from {span(summary)}."
     if np.isnan(compared.difference[base]):
         yield "In the study as it stands it has no value."
     else:
         where = "In the study as it stands it" if total > 1 else "It"
         value = number(compared.difference[base])
-        yield f"{where} is {value} (95% interval {_limits(summary, base)})."
+        yield f"{where} is {value} (95% interval {limits(summary, base)})."
     if factor:
         yield from _signs(summary, crossing)
     yield from _decides(summary, crossing)
@@ -204,7 +163,7 @@ def _varied(crossing: Crossing) -> str:
 def _signs(summary: Summary, crossing: Crossing) -> Iterator[str]:
     """In how many variants the sign holds, and in how many of these and others it is clear."""
     compared, total, base = summary.compared, len(crossing), crossing.base
-    signs, clear = np.sign(compared.difference), _clear(summary)
+    signs, clear = np.sign(compared.difference), clear_variants(summary)
     if total == 1:
         if signs[base]:
             yield f"Its interval {'leaves out' if summary.clear else 'includes'} 0."
@@ -212,26 +171,36 @@ def _signs(summary: Summary, crossing: Crossing) -> Iterator[str]:
     # An interval around 0 includes 0: nothing is to be said of it.
     counts = {
         sign: f"{word} in {int((signs == sign).sum()):,}"
-        + (f" ({_left_out(signs == sign, clear)})" if sign else "")
-        for sign, word in _SIGNS.items()
+        + (f" ({left_out(signs == sign, clear)})" if sign else "")
+        for sign, word in SIGNS.items()
         if (signs == sign).any()
     }
     if not abs(signs[base]) > 0:
         yield f"So there is no sign that could hold; the value is {listed([*counts.values()])}."
         return
-    same, own = signs == signs[base], _SIGNS[signs[base]]
+    same, own = signs == signs[base], SIGNS[signs[base]]
     if summary.holds:
-        yield f"It is {own} in {all_of(total)} ({_left_out(same, clear)})."
+        yield f"It is {own} in {all_of(total)} ({left_out(same, clear)})."
         return
     of = f"{summary.same_sign:,} of {total:,} variants"
-    yield f"It is {own}, as in the study, in {of} ({_left_out(same, clear)})."
+    yield f"It is {own}, as in the study, in {of} ({left_out(same, clear)})."
     others = [text for sign, text in counts.items() if sign != signs[base]]
     if others:
         yield f"It is {listed(others)}."
 
 
-def _left_out(among: Flags, clear: Flags) -> str:
-    """In how many of some variants the interval leaves out 0."""
+def left_out(among: Flags, clear: Flags) -> str:
+    """In how many of some variants the interval leaves out 0.
+
+    Parameters
+    ----------
+    among, clear : (V,) bool arrays
+        Some variants; and those whose interval leaves out 0.
+
+    Returns
+    -------
+    str
+    """
     total, some = int(among.sum()), int((among & clear).sum())
     if total == 1:
         return f"its interval {'leaves out' if some else 'includes'} 0"
@@ -244,14 +213,14 @@ def _left_out(among: Flags, clear: Flags) -> str:
 
 def _decides(summary: Summary, crossing: Crossing) -> Iterator[str]:
     """Which decision explains most of the variance; nothing where there is one decision only."""
-    first, keys = _foremost(summary), short_keys(crossing.settings)
+    first, keys = foremost(summary), short_keys(crossing.settings)
     if not first or len(keys) == 1:
         return
     together, alone = percent(first[0].together), percent(first[0].alone)
     who = listed([keys[own.setting] for own in first])
     if len(first) == len(keys):
         yield (
-            f"{_all(len(keys)).capitalize()} decisions explain equally much of the variance "
+            f"{all_the(len(keys)).capitalize()} decisions explain equally much of the variance "
             f"between variants ({together} each, with interactions)."
         )
     elif len(first) > 1:
@@ -269,106 +238,51 @@ def _decides(summary: Summary, crossing: Crossing) -> Iterator[str]:
         )
 
 
-def _decides_in_short(summary: Summary, crossing: Crossing) -> str:
-    """Which setting matters most, or which equally much; empty where that goes without saying."""
-    first, total = _foremost(summary), len(crossing.settings)
-    if not first or total == 1:
-        return ""
-    share = f"{percent(first[0].together)} of the variance between variants"
-    who = listed([crossing.settings[own.setting].key for own in first])
-    if len(first) == total:
-        return f"{_all(total)} settings matter equally ({share} each)"
-    if len(first) > 1:
-        return f"{who} matter most, and equally ({share} each)"
-    return f"{who} matters most ({share})"
+def all_the(number_of: int) -> str:
+    """All of so many.
 
+    Parameters
+    ----------
+    number_of : int
+        How many there are.
 
-def _signs_in_short(summary: Summary, crossing: Crossing) -> str:
-    """In how many variants the sign holds."""
-    signs = np.sign(summary.compared.difference)
-    own = signs[crossing.base]
-    if not abs(own) > 0:
-        counts = zip(_SIGNS.values(), _numbers(signs), strict=True)
-        return listed([f"{word} in {some:,}" for word, some in counts if some])
-    total = len(crossing)
-    of = all_of(total) if summary.holds else f"{summary.same_sign:,} of {total:,} variants"
-    return f"{_SIGNS[own]} in {of} ({_left_out(signs == own, _clear(summary))})"
-
-
-def _turns_in_short(summary: Summary, crossing: Crossing) -> str:
-    """Which setting turns the sign, with which of its alternatives; empty where none does."""
-    signs = np.sign(summary.compared.difference)
-    if summary.turns is None:
-        several = np.count_nonzero(_numbers(signs)) > 1
-        apart = "the sign turns, but not between variants that differ in one setting only"
-        return apart if several else ""
-    turned = turning(summary.compared.difference, crossing)
-    keys = [own.key for own in crossing.settings]
-    most = np.flatnonzero(turned == turned.max()).tolist()
-    if len(most) > 1:
-        how = (
-            "equally often" if len(most) == np.count_nonzero(turned) else "most, and equally often,"
-        )
-        return f"the sign turns {how} with {listed([keys[place] for place in most])}"
-    how = "most often with" if np.count_nonzero(turned) > 1 else "with"
-    parts = []
-    for place, alternative in enumerate(crossing.settings[summary.turns].alternatives):
-        chosen = signs[crossing.choices[:, summary.turns] == place]
-        parts.append(_mostly(alternative, _numbers(chosen), first=not place))
-    return f"the sign turns {how} {keys[summary.turns]}: {', '.join(parts)}"
-
-
-def _clears_in_short(summary: Summary, crossing: Crossing) -> str:
-    """Which setting decides whether the interval leaves out 0; empty where none does."""
-    if summary.clears is None:
-        return ""
-    cleared = turning(summary.side, crossing)
-    keys = [own.key for own in crossing.settings]
-    most = np.flatnonzero(cleared == cleared.max()).tolist()
-    what = "whether the interval leaves out 0 hangs"
-    if len(most) > 1:
-        return f"{what} equally on {listed([keys[place] for place in most])}"
-    how = "most on" if np.count_nonzero(cleared) > 1 else "on"
-    parts = []
-    for place, alternative in enumerate(crossing.settings[summary.clears].alternatives):
-        chosen = summary.side[crossing.choices[:, summary.clears] == place]
-        some, of = int((np.abs(chosen) > 0).sum()), many(len(chosen), "variant")
-        parts.append(
-            f"it does in {some:,} of {of if not place else len(chosen)} with {alternative}"
-        )
-    return f"{what} {how} {keys[summary.clears]}: {', '.join(parts)}"
-
-
-def _mostly(alternative: str, counts: Sequence[int], *, first: bool) -> str:
-    """The sign that an alternative has most often, from how often it has each."""
-    total, most = sum(counts), max(counts)
-    if not total:
-        return f"no value with {alternative}"
-    words = [word for word, some in zip(_SIGNS.values(), counts, strict=True) if some == most]
-    of = f"{most:,} of {many(total, 'variant') if first else f'{total:,}'}"
-    return f"{' or '.join(words)} with {alternative} ({of}{' each' if len(words) > 1 else ''})"
-
-
-def _numbers(signs: Floats) -> list[int]:
-    """How many signs there are of each."""
-    return [int((signs == sign).sum()) for sign in _SIGNS]
-
-
-def _all(number_of: int) -> str:
-    """All of so many."""
+    Returns
+    -------
+    str
+    """
     return "both" if number_of == 2 else f"all {number_of:,}"
 
 
-def _foremost(summary: Summary) -> list[SettingShare]:
-    """The settings with the largest share, as far as whole percents tell them apart."""
+def foremost(summary: Summary) -> list[SettingShare]:
+    """The settings with the largest share, as far as whole percents tell them apart.
+
+    Parameters
+    ----------
+    summary : Summary
+        Of a comparison.
+
+    Returns
+    -------
+    list of SettingShare
+    """
     if not summary.shares:
         return []
     most = max(own.together for own in summary.shares)
     return [own for own in summary.shares if percent(own.together) == percent(most)]
 
 
-def _clear(summary: Summary) -> Flags:
-    """Where the interval leaves out 0."""
+def clear_variants(summary: Summary) -> Flags:
+    """Where the interval leaves out 0.
+
+    Parameters
+    ----------
+    summary : Summary
+        Of a comparison.
+
+    Returns
+    -------
+    (V,) bool array
+    """
     clear: Flags = (summary.compared.low > 0) | (summary.compared.high < 0)
     return clear
 
@@ -379,14 +293,36 @@ def _ends(key: str) -> list[str]:
     return [".".join(parts[start:]) for start in reversed(range(len(parts)))]
 
 
-def _limits(summary: Summary, variant: int) -> str:
-    """The interval in one variant."""
+def limits(summary: Summary, variant: int) -> str:
+    """The interval in one variant.
+
+    Parameters
+    ----------
+    summary : Summary
+        Of a comparison.
+    variant : int
+        Which variant.
+
+    Returns
+    -------
+    str
+    """
     compared = summary.compared
     return f"{number(compared.low[variant])} to {number(compared.high[variant])}"
 
 
-def _span(summary: Summary) -> str:
-    """The lowest and the highest value; one, where two decimals do not tell them apart."""
+def span(summary: Summary) -> str:
+    """The lowest and the highest value; one, where two decimals do not tell them apart.
+
+    Parameters
+    ----------
+    summary : Summary
+        Of a comparison.
+
+    Returns
+    -------
+    str
+    """
     low, high = _lowest_and_highest(summary)
     if not _one_text(summary):
         return f"{number(low)} to {number(high)}"
