@@ -9,7 +9,7 @@ import numpy as np
 
 from etl.variants.facts import Comparison, Crossing, Flags, Floats, Setting, SettingShare, Summary
 from etl.variants.shares import turning
-from etl.variants.words import all_of, any_of, listed, many, number, percent
+from etl.variants.words import all_of, all_so_many, any_of, ends_of, listed, many, number, percent
 
 #: What signs are called.
 _SIGNS = {-1.0: "below 0", 0.0: "exactly 0", 1.0: "above 0"}
@@ -35,7 +35,7 @@ def short_keys(settings: Sequence[Setting]) -> tuple[str, ...]:
     >>> short_keys([Setting(key, ("1", "2"), 0) for key in keys])
     ('tolerance_px', 'fixations.under_ms', 'merge.under_ms')
     """
-    ends = [_ends(own.key) for own in settings]
+    ends = [ends_of(own.key) for own in settings]
     shared = Counter(end for own in ends for end in own)
     return tuple(next((e for e in own if shared[e] == 1), own[-1]) for own in ends)
 
@@ -251,7 +251,7 @@ def _decides(summary: Summary, crossing: Crossing) -> Iterator[str]:
     who = listed([keys[own.setting] for own in first])
     if len(first) == len(keys):
         yield (
-            f"{_all(len(keys)).capitalize()} decisions explain equally much of the variance "
+            f"{all_so_many(len(keys)).capitalize()} decisions explain equally much of the variance "
             f"between variants ({together} each, with interactions)."
         )
     elif len(first) > 1:
@@ -277,7 +277,7 @@ def _decides_in_short(summary: Summary, crossing: Crossing) -> str:
     share = f"{percent(first[0].together)} of the variance between variants"
     who = listed([crossing.settings[own.setting].key for own in first])
     if len(first) == total:
-        return f"{_all(total)} settings matter equally ({share} each)"
+        return f"{all_so_many(total)} settings matter equally ({share} each)"
     if len(first) > 1:
         return f"{who} matter most, and equally ({share} each)"
     return f"{who} matters most ({share})"
@@ -331,11 +331,11 @@ def _clears_in_short(summary: Summary, crossing: Crossing) -> str:
     how = "most on" if np.count_nonzero(cleared) > 1 else "on"
     parts = []
     for place, alternative in enumerate(crossing.settings[summary.clears].alternatives):
-        chosen = summary.side[crossing.choices[:, summary.clears] == place]
-        some, of = int((np.abs(chosen) > 0).sum()), many(len(chosen), "variant")
-        parts.append(
-            f"it does in {some:,} of {of if not place else len(chosen)} with {alternative}"
-        )
+        below, around, above = _numbers(summary.side[crossing.choices[:, summary.clears] == place])
+        total = below + around + above
+        of = f"{total:,}" if place else many(total, "variant")
+        does = f"it does in {below + above:,} of {of}" if total else "no value"
+        parts.append(f"{does} with {alternative}")
     return f"{what} {how} {keys[summary.clears]}: {', '.join(parts)}"
 
 
@@ -354,11 +354,6 @@ def _numbers(signs: Floats) -> list[int]:
     return [int((signs == sign).sum()) for sign in _SIGNS]
 
 
-def _all(number_of: int) -> str:
-    """All of so many."""
-    return "both" if number_of == 2 else f"all {number_of:,}"
-
-
 def _foremost(summary: Summary) -> list[SettingShare]:
     """The settings with the largest share, as far as whole percents tell them apart."""
     if not summary.shares:
@@ -371,12 +366,6 @@ def _clear(summary: Summary) -> Flags:
     """Where the interval leaves out 0."""
     clear: Flags = (summary.compared.low > 0) | (summary.compared.high < 0)
     return clear
-
-
-def _ends(key: str) -> list[str]:
-    """The ends of a key, from its last part to the whole."""
-    parts = key.split(".")
-    return [".".join(parts[start:]) for start in reversed(range(len(parts)))]
 
 
 def _limits(summary: Summary, variant: int) -> str:
