@@ -198,7 +198,7 @@ def test_missing_values_and_counts_of_0_are_told() -> None:
         "−0.85 (−1.43 to −0.27) in the study, −3.04 to −0.85 over 4 variants; below 0 in 3 of 4 "
         "variants (the interval leaves out 0 in 2 of these); no value in 1\n"
         "whether the interval leaves out 0 hangs on screening.fixations.over_ms: it does in 2 of 2 "
-        "variants with 0, it does in 0 of 2 with 1"
+        "variants with 0, it does in 0 of 1 with 1"
     )
 
 

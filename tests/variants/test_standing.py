@@ -64,7 +64,7 @@ def test_sides_are_those_of_a_loop(made: tuple[Crossing, list[str]]) -> None:
     own = summary_of(kinds, crossing)
     for kind, side in zip(kinds, own.side.tolist(), strict=True):
         expected = SIDES.get(kind, 0.0)
-        assert side == expected or math.isnan(side) and math.isnan(expected)
+        assert side == expected or (math.isnan(side) and math.isnan(expected))
     above, below = kinds.count("above"), kinds.count("below")
     assert own.apart == above + below
     signs = [np.sign(KINDS[kind][0]) for kind in kinds]
@@ -179,20 +179,26 @@ def line_of(kinds: list[str], sizes: list[int]) -> str:
         (
             [3],
             ["above", "up", "above"],
-            "hangs on screening.fixations.over_ms: it does in 1 of 1 variant with 0, it does in "
-            "0 of 1 with 1, it does in 1 of 1 with 2",
+            (
+                "hangs on screening.fixations.over_ms: it does in 1 of 1 variant with 0, it does "
+                "in 0 of 1 with 1, it does in 1 of 1 with 2"
+            ),
         ),
         (
             [2, 2],
             ["below", "below", "down", "down"],
-            "hangs on screening.fixations.over_ms: it does in 2 of 2 variants with 0, it does in "
-            "0 of 2 with 1",
+            (
+                "hangs on screening.fixations.over_ms: it does in 2 of 2 variants with 0, it does "
+                "in 0 of 2 with 1"
+            ),
         ),
         (
             [2, 3],
             ["above", "above", "up", "up", "up", "up"],
-            "hangs most on screening.fixations.over_ms: it does in 2 of 3 variants with 0, it "
-            "does in 0 of 3 with 1",
+            (
+                "hangs most on screening.fixations.over_ms: it does in 2 of 3 variants with 0, it "
+                "does in 0 of 3 with 1"
+            ),
         ),
         (
             [2, 2],
@@ -207,8 +213,10 @@ def line_of(kinds: list[str], sizes: list[int]) -> str:
         (
             [2, 2, 2],
             ["up", "above", "up", "up", "up", "up", "up", "up"],
-            "hangs equally on screening.fixations.over_ms, screening.fixations.merge and "
-            "measures.outside",
+            (
+                "hangs equally on screening.fixations.over_ms, screening.fixations.merge and "
+                "measures.outside"
+            ),
         ),
     ],
 )
@@ -228,6 +236,18 @@ def test_line_on_the_sign_comes_before_that_on_the_interval() -> None:
     assert line_of(["above", "nothing"], [2]) == ""
 
 
+def test_alternatives_are_told_by_the_variants_that_have_an_interval() -> None:
+    """What has no value includes no 0, so it is not among those that are counted."""
+    assert line_of(["above", "up", "nothing"], [3]) == (
+        "whether the interval leaves out 0 hangs on screening.fixations.over_ms: it does in 1 of 1 "
+        "variant with 0, it does in 0 of 1 with 1, no value with 2"
+    )
+    assert line_of(["above", "above", "up", "nothing"], [2, 2]) == (
+        "whether the interval leaves out 0 hangs on screening.fixations.over_ms: it does in 2 of 2 "
+        "variants with 0, it does in 0 of 1 with 1"
+    )
+
+
 def test_pairs_that_differ_in_more_than_one_setting_tell_of_none() -> None:
     """Two named variants: the interval hangs on both decisions together, so nothing is named."""
     apart = chosen([(0, 0), (1, 1)], [2, 2], keys=KEYS, named=True)
@@ -242,10 +262,7 @@ def test_numbers_in_the_line_are_counted(made: tuple[Crossing, list[str]]) -> No
     crossing, kinds = made
     own = summary_of(kinds, crossing)
     line = in_short(own, crossing).partition("\n")[2]
-    told = [
-        (int(some), int(of))
-        for some, of in re.findall(r"it does in (\d+) of (\d+)", line)
-    ]
+    told = [(int(some), int(of)) for some, of in re.findall(r"it does in (\d+) of (\d+)", line)]
     if not told:
         return
     assert own.clears is not None
