@@ -84,7 +84,16 @@ def named_comparisons(
                 found=own.region,
                 fix="leave out the comparison, or name another region",
             )
-        if own.factor and level not in levels[1:]:
+        if own.factor and len(levels) < 2:
+            wrong.error(
+                f"{own.factor} has one level only, so there is nothing to compare",
+                path=chosen.shown,
+                line=own.line,
+                where="comparisons.factor",
+                found=own.factor,
+                fix="leave out the comparison, or name another factor",
+            )
+        elif own.factor and level not in levels[1:]:
             problem = f"{own.factor} has no level of this name that could be compared"
             if not level:
                 problem = f"{own.factor} has {len(levels)} levels: say which one is compared"
