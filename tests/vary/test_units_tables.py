@@ -15,12 +15,22 @@ import pytest
 import etl
 from etl.screening.rules import READER_RULES
 from etl.session.varied import Varied
-from tests.vary.otherwise import Alternatives, Choice, as_toml, changed, few_readers, variants_file
+from tests.vary.otherwise import (
+    Alternatives,
+    Built,
+    Choice,
+    as_toml,
+    changed,
+    few_readers,
+    variants_file,
+)
+from tests.vary.test_against_builds import assert_as_built
 
 #: Decisions at all levels; the study's own value stands second where it can. The limits are such
 #: that readers are lost, and that values are far from others.
 SOME: Alternatives = {
-    "screening.fixations.under_ms": [False, 80, 120],
+    "screening.fixations.under_ms": [False, 80],
+    "regions.tolerance_px": [0, 25],
     "screening.participants.correct_share_under": [0.75, 0.93],
     "screening.values.outlier_sd": [False, 1.5],
 }
@@ -35,7 +45,7 @@ def orchard(tmp_path_factory: pytest.TempPathFactory) -> Path:
 
 @pytest.fixture(scope="module")
 def varied(orchard: Path) -> Varied:
-    """Twelve variants of them."""
+    """Sixteen variants of them."""
     return etl.vary(
         etl.load_study(orchard), variants_file(orchard.with_name("variants.toml"), SOME)
     )
@@ -197,8 +207,8 @@ def test_readers_are_those_of_changed_cells(varied: Varied) -> None:
     assert len(seen) > len(settings)
 
 
-@pytest.mark.parametrize("number", [0, 7, 11])
-def test_readers_and_far_values_are_those_of_a_build(
+@pytest.mark.parametrize("number", [0, 6, 15])
+def test_variant_is_as_built_to_its_readers_and_far_values(
     number: int, orchard: Path, varied: Varied, tmp_path: Path
 ) -> None:
     """Readers of whom a trial is kept, those whom rules leave out, and values set missing."""
@@ -213,6 +223,9 @@ def test_readers_and_far_values_are_those_of_a_build(
     other.write_text(as_toml(changed(data, choice)), encoding="utf-8", newline="\n")
     result = etl.build(etl.load_study(other), into=tmp_path / "out", keep=False)
     accounts = pd.read_csv(tmp_path / "out" / "accounts.csv")
+    factors = ("cue", "fit", "group")
+    built = Built(result.outcomes, result.trials, accounts, factors)
+    assert_as_built(varied, number + 1, built)
     trials = accounts[(accounts.unit == "trials") & (accounts.participant != "(all)")]
     rules = [rule for rule in READER_RULES if rule in trials]
     row = varied.table("variants").iloc[number]
