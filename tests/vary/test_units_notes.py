@@ -41,3 +41,11 @@ def test_each_variant_looks_at_its_own_notes(tmp_path: Path) -> None:
     assert {*zip(gone.participant, gone.trial, strict=True)} == {("R1", 1), ("R1", 2), ("R2", 4)}
     # Of six variants two leave out each of these trials.
     assert {*gone.variants_left_out} == {2}
+    # Traces are drawn with the notes of their own variant.
+    told_of = {}
+    for path in (varied.folder / "traces").iterdir():
+        text = path.read_text(encoding="utf-8")
+        named = next((name for name in ("some.csv", "more.csv") if f'"{name}"' in text), "")
+        assert f"This trial is left out by notes = {named} (found sneezed)" in text or not named
+        told_of[named] = "sneezed" in text
+    assert told_of == {"": False, "some.csv": True, "more.csv": True}
