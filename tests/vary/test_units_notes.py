@@ -36,6 +36,19 @@ def test_each_variant_looks_at_its_own_notes(tmp_path: Path) -> None:
         trials = {"false": 0, '"some.csv"': 1, '"more.csv"': 2}[lost[row["variant"]]]
         fixations = {0: 0, 1: 3, 2: 6 - row["under_ms"] // 2}[trials]
         assert row["notes"] == (trials if row["unit"] == "trials" else fixations)
+    # Without the rule on short fixations a trial of each reader changes: R1's second, R2's third.
+    assert told.trials_changed.tolist() == [
+        len(trials)
+        for notes, under in zip(told.notes, told.under_ms, strict=True)
+        for trials in [
+            {
+                *{"false": (), '"some.csv"': ("R1 1",), '"more.csv"': ("R1 2", "R2 4")}[notes],
+                *(("R1 2", "R2 3") if under == "false" else ()),
+            }
+        ]
+    ]
+    by_variant = varied.table("changes_by_variant").groupby("variant").cells_changed.sum()
+    assert told.cells_changed.tolist() == by_variant.tolist()
     cells = varied.table("changed_cells")
     gone = cells[cells.variants_left_out > 0]
     assert {*zip(gone.participant, gone.trial, strict=True)} == {("R1", 1), ("R1", 2), ("R2", 4)}
