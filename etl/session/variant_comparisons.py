@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 from difflib import get_close_matches
 from typing import Final
 
@@ -20,7 +20,7 @@ _MOST_LISTED: Final = 12
 
 
 def named_comparisons(
-    chosen: StudyVariants, design: TableDesign
+    chosen: StudyVariants, design: TableDesign, read: Collection[str]
 ) -> list[tuple[str, str, str, str]]:
     """The comparisons that the variants file names, whose names must be those of the study.
 
@@ -30,6 +30,8 @@ def named_comparisons(
         The variants file.
     design : TableDesign
         The tables of the study.
+    read : collection of str
+        The regions that any trial has: some texts may have been read by nobody.
 
     Returns
     -------
@@ -39,7 +41,8 @@ def named_comparisons(
     Raises
     ------
     DataError
-        If there is no region or level of a name, or it is not said which level is meant.
+        If there is no region or level of a name, no trial has the region, or it is not said which
+        level is meant.
     """
     wanted = []
     wrong = Findings()
@@ -72,7 +75,25 @@ def named_comparisons(
         elif own.region and own.region not in design.regions:
             problem = "no text has a region of this name"
             tell(own.line, "region", problem, own.region, design.regions)
-        if own.factor and level not in levels[1:]:
+        elif own.region and own.region not in read:
+            wrong.error(
+                "no trial has read a text with this region",
+                path=chosen.shown,
+                line=own.line,
+                where="comparisons.region",
+                found=own.region,
+                fix="leave out the comparison, or name another region",
+            )
+        if own.factor and len(levels) < 2:
+            wrong.error(
+                f"{own.factor} has one level only, so there is nothing to compare",
+                path=chosen.shown,
+                line=own.line,
+                where="comparisons.factor",
+                found=own.factor,
+                fix="leave out the comparison, or name another factor",
+            )
+        elif own.factor and level not in levels[1:]:
             problem = f"{own.factor} has no level of this name that could be compared"
             if not level:
                 problem = f"{own.factor} has {len(levels)} levels: say which one is compared"

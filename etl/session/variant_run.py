@@ -15,6 +15,7 @@ from etl.report.variants_input import VariantsInput
 from etl.report.variants_page import write_variants_page
 from etl.session.crew import Progress
 from etl.session.examining import LogsRead
+from etl.session.outcome_work import cells_of
 from etl.session.pseudonym_record import for_record
 from etl.session.pseudonym_study import hidden_crossing
 from etl.session.reader_groups import group_tasks, without_values
@@ -84,7 +85,7 @@ class VariantRun:
             self.shown = pseudonyms.shown_file(self.shown)
             self.about = pseudonyms.hidden_in_free_text(self.about)
         self.design = self.plans.gathered[self.plans.options[self.crossing.base].facts].design
-        self.leading = named_comparisons(chosen, self.design)
+        self.leading = named_comparisons(chosen, self.design, self._regions_read())
         self.keys = short_keys(self.crossing.settings)
         self.names = tuple(key.replace(".", "_") for key in self.keys)
         self.formats = tuple(dict.fromkeys(("parquet", *chosen.studies[0].output.formats)))
@@ -158,6 +159,13 @@ class VariantRun:
         if not self.design.factors:
             return np.zeros((1, 0), dtype=np.int64)
         return np.unique(np.concatenate(found), axis=0)
+
+    def _regions_read(self) -> set[str]:
+        """The regions that trials of the study have."""
+        library = self.plans.plans[0].library
+        texts = np.concatenate([task.trials.text for task in self.plans.gathered[0].tasks])
+        codes = cells_of(texts, np.flatnonzero(texts >= 0), library).code
+        return {library.region_names[code] for code in np.unique(codes).tolist()}
 
     def _counted(self, shape: VariantShape) -> tuple[VariantCounts, int]:
         """Work on all readers; what was counted, and how many cells change."""

@@ -9,7 +9,6 @@ import numpy as np
 from etl.variants.facts import Crossing, Floats, Summary
 from etl.variants.sentences import (
     SIGNS,
-    all_the,
     clear_variants,
     comparison_words,
     foremost,
@@ -18,7 +17,7 @@ from etl.variants.sentences import (
     span,
 )
 from etl.variants.shares import turning
-from etl.variants.words import all_of, any_of, listed, many, number, percent
+from etl.variants.words import all_of, all_so_many, any_of, listed, many, number, percent
 
 
 def in_short(summary: Summary, crossing: Crossing) -> str:
@@ -69,7 +68,7 @@ def _decides_in_short(summary: Summary, crossing: Crossing) -> str:
     share = f"{percent(first[0].together)} of the variance between variants"
     who = listed([crossing.settings[own.setting].key for own in first])
     if len(first) == total:
-        return f"{all_the(total)} settings matter equally ({share} each)"
+        return f"{all_so_many(total)} settings matter equally ({share} each)"
     if len(first) > 1:
         return f"{who} matter most, and equally ({share} each)"
     return f"{who} matters most ({share})"
@@ -123,11 +122,11 @@ def _clears_in_short(summary: Summary, crossing: Crossing) -> str:
     how = "most on" if np.count_nonzero(cleared) > 1 else "on"
     parts = []
     for place, alternative in enumerate(crossing.settings[summary.clears].alternatives):
-        chosen = summary.side[crossing.choices[:, summary.clears] == place]
-        some, of = int((np.abs(chosen) > 0).sum()), many(len(chosen), "variant")
-        parts.append(
-            f"it does in {some:,} of {of if not place else len(chosen)} with {alternative}"
-        )
+        below, around, above = _numbers(summary.side[crossing.choices[:, summary.clears] == place])
+        total = below + around + above
+        of = f"{total:,}" if place else many(total, "variant")
+        does = f"it does in {below + above:,} of {of}" if total else "no value"
+        parts.append(f"{does} with {alternative}")
     return f"{what} {how} {keys[summary.clears]}: {', '.join(parts)}"
 
 

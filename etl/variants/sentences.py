@@ -8,7 +8,7 @@ from collections.abc import Iterator, Sequence
 import numpy as np
 
 from etl.variants.facts import Comparison, Crossing, Flags, Setting, SettingShare, Summary
-from etl.variants.words import all_of, any_of, listed, number, percent
+from etl.variants.words import all_of, all_so_many, any_of, ends_of, listed, number, percent
 
 #: What signs are called.
 SIGNS = {-1.0: "below 0", 0.0: "exactly 0", 1.0: "above 0"}
@@ -34,7 +34,7 @@ def short_keys(settings: Sequence[Setting]) -> tuple[str, ...]:
     >>> short_keys([Setting(key, ("1", "2"), 0) for key in keys])
     ('tolerance_px', 'fixations.under_ms', 'merge.under_ms')
     """
-    ends = [_ends(own.key) for own in settings]
+    ends = [ends_of(own.key) for own in settings]
     shared = Counter(end for own in ends for end in own)
     return tuple(next((e for e in own if shared[e] == 1), own[-1]) for own in ends)
 
@@ -220,7 +220,7 @@ def _decides(summary: Summary, crossing: Crossing) -> Iterator[str]:
     who = listed([keys[own.setting] for own in first])
     if len(first) == len(keys):
         yield (
-            f"{all_the(len(keys)).capitalize()} decisions explain equally much of the variance "
+            f"{all_so_many(len(keys)).capitalize()} decisions explain equally much of the variance "
             f"between variants ({together} each, with interactions)."
         )
     elif len(first) > 1:
@@ -236,21 +236,6 @@ def _decides(summary: Summary, crossing: Crossing) -> Iterator[str]:
             "The decision that explains the largest share of the variance between variants is "
             f"{who} ({share})."
         )
-
-
-def all_the(number_of: int) -> str:
-    """All of so many.
-
-    Parameters
-    ----------
-    number_of : int
-        How many there are.
-
-    Returns
-    -------
-    str
-    """
-    return "both" if number_of == 2 else f"all {number_of:,}"
 
 
 def foremost(summary: Summary) -> list[SettingShare]:
@@ -285,12 +270,6 @@ def clear_variants(summary: Summary) -> Flags:
     """
     clear: Flags = (summary.compared.low > 0) | (summary.compared.high < 0)
     return clear
-
-
-def _ends(key: str) -> list[str]:
-    """The ends of a key, from its last part to the whole."""
-    parts = key.split(".")
-    return [".".join(parts[start:]) for start in reversed(range(len(parts)))]
 
 
 def limits(summary: Summary, variant: int) -> str:

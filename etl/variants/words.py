@@ -29,6 +29,11 @@ def all_of(variants: int) -> str:
     return "both variants" if variants == 2 else f"all {variants:,} variants"
 
 
+def all_so_many(total: int) -> str:
+    """All of so many."""
+    return "both" if total == 2 else f"all {total:,}"
+
+
 def any_of(variants: int) -> str:
     """None of the variants, after a word that says no."""
     return "either variant" if variants == 2 else f"any of the {variants:,} variants"
@@ -42,3 +47,9 @@ def many(count: int, word: str) -> str:
 def listed(names: Sequence[str]) -> str:
     """Names with commas, and an "and" before the last."""
     return names[0] if len(names) == 1 else f"{', '.join(names[:-1])} and {names[-1]}"
+
+
+def ends_of(key: str) -> list[str]:
+    """The ends of a key, from its last part to the whole."""
+    parts = key.split(".")
+    return [".".join(parts[start:]) for start in reversed(range(len(parts)))]

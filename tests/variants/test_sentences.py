@@ -86,7 +86,17 @@ def test_sign_that_holds_is_told_with_what_matters() -> None:
     assert lines == (
         "0.41 (−0.15 to 0.97) in the study, 0.41 to 1.79 over 8 variants; above 0 in all 8 "
         "variants (the interval leaves out 0 in 4 of these)\n"
-        "screening.fixations.over_ms matters most (84% of the variance between variants)"
+        "whether the interval leaves out 0 hangs on screening.fixations.over_ms: it does in 0 of 4 "
+        "variants with 0, it does in 4 of 4 with 1"
+    )
+
+
+def test_what_matters_is_told_where_neither_sign_nor_interval_hangs_on_it() -> None:
+    """Much the same from few trials: every interval includes 0."""
+    crossing = by_keys(2, 2, 2)
+    tables = [(10, 10, 8 - 2 * a * (1 + b), 12) for a, b, _ in crossing.choices.tolist()]
+    assert last(in_short(summary_of(tables, crossing), crossing)) == (
+        "screening.fixations.over_ms matters most (87% of the variance between variants)"
     )
 
 
@@ -116,6 +126,11 @@ def test_two_of_three_that_matter_equally() -> None:
         "over_ms and merge, equally much (100% each, with interactions)."
     ) in passage
     assert last(lines) == (
+        "whether the interval leaves out 0 hangs equally on screening.fixations.over_ms and "
+        "screening.fixations.merge"
+    )
+    unsure = [(10, 10, 8 - 2 * (a != b), 12) for a, b, _ in crossing.choices.tolist()]
+    assert last(in_short(summary_of(unsure, crossing), crossing)) == (
         "screening.fixations.over_ms and screening.fixations.merge matter most, and equally (100% "
         "of the variance between variants each)"
     )
@@ -137,8 +152,13 @@ def test_three_that_matter_equally() -> None:
     assert (
         "All 3 decisions explain equally much of the variance between variants (100% e" in passage
     )
-    assert (
-        last(lines) == "all 3 settings matter equally (100% of the variance between variants each)"
+    assert last(lines) == (
+        "whether the interval leaves out 0 hangs equally on screening.fixations.over_ms, "
+        "screening.fixations.merge and measures.outside"
+    )
+    unsure = [(10, 10, 8 - 2 * (sum(row) % 2), 12) for row in crossing.choices.tolist()]
+    assert last(in_short(summary_of(unsure, crossing), crossing)) == (
+        "all 3 settings matter equally (100% of the variance between variants each)"
     )
 
 
@@ -176,7 +196,9 @@ def test_missing_values_and_counts_of_0_are_told() -> None:
     )
     assert lines == (
         "−0.85 (−1.43 to −0.27) in the study, −3.04 to −0.85 over 4 variants; below 0 in 3 of 4 "
-        "variants (the interval leaves out 0 in 2 of these); no value in 1"
+        "variants (the interval leaves out 0 in 2 of these); no value in 1\n"
+        "whether the interval leaves out 0 hangs on screening.fixations.over_ms: it does in 2 of 2 "
+        "variants with 0, it does in 0 of 1 with 1"
     )
 
 

@@ -90,26 +90,34 @@ WAYS = {
     "steady": [(50, 50, 40, 60), (50, 50, 39, 61)],
     "wide": [(50, 50, 40, 60), (50, 50, 10, 90)],
     "wide, unsure": [(5, 5, 4, 6), (5, 5, 1, 9)],
-    "turns": [(50, 50, 49, 51), (50, 50, 51, 49)],
+    "narrow, but over the edge": [(500, 500, 440, 560), (500, 500, 460, 540)],
+    "turns around 0": [(50, 50, 49, 51), (50, 50, 51, 49)],
     "lacking": [(50, 50, 40, 60), (0, 0, 40, 60)],
+    "lacking, sure": [(50, 50, 10, 90), (0, 0, 40, 60)],
     "lacking throughout": [(0, 0, 40, 60), (0, 0, 40, 60)],
 }
 
 
 @pytest.mark.parametrize("backwards", [False, True])
-def test_comparisons_that_turn_come_first_and_those_that_lack_values_last(backwards: bool) -> None:
+def test_decided_comparisons_come_first_and_those_that_lack_values_last(backwards: bool) -> None:
     """By the rule that users are told, whatever the order in which they come.
 
     The differences of "wide" and "wide, unsure" go over much the same range, but the interval of
-    the latter is some three times as wide, since it has a tenth of the trials.
+    the latter is some three times as wide, since it has a tenth of the trials, and includes 0 in
+    both variants. That of "narrow, but over the edge" is 0.24 ± 0.18, then 0.16 ± 0.18. The sign of
+    "turns around 0" turns, but from -0.04 to 0.04 only, with intervals of ± 0.55.
     """
     names = sorted(WAYS, reverse=backwards)
     summaries = [summary_of(WAYS[name], crossed([2])) for name in names]
-    chosen_first = [names[place] for place in leading(summaries, 4)]
-    assert chosen_first == ["turns", "wide", "wide, unsure", "steady"]
+    chosen_first = [names[place] for place in leading(summaries, 5)]
+    assert chosen_first == [
+        *("wide", "narrow, but over the edge"),
+        *("wide, unsure", "turns around 0", "steady"),
+    ]
     everything = [names[place] for place in leading(summaries, 99)]
-    assert everything[:4] == chosen_first
-    assert {*everything[4:]} == {"lacking", "lacking throughout"}
+    assert everything[:5] == chosen_first
+    assert everything[5] == "lacking, sure"
+    assert {*everything[6:]} == {"lacking", "lacking throughout"}
     assert leading(summaries, 0) == leading(summaries, -1) == leading([], 3) == ()
 
 
@@ -121,8 +129,9 @@ def test_equal_comparisons_stay_in_their_order() -> None:
 
 def test_width_is_that_of_the_study_as_it_stands() -> None:
     """Its own interval is the measure, wherever the study stands among the variants."""
-    # 100 trials, then 10; 10 trials, then 100: the same differences, about 0.41 and 2.2.
-    first = summary_of([(50, 50, 40, 60), (5, 5, 1, 9)], crossed([2]))
-    second = summary_of([(5, 5, 4, 6), (50, 50, 10, 90)], crossed([2]))
+    # Differences of 0.04 and 0.41 around which all intervals include 0: from 100 trials and 10, or
+    # the other way round.
+    first = summary_of([(50, 50, 49, 51), (5, 5, 4, 6)], crossed([2]))
+    second = summary_of([(5, 5, 4, 6), (50, 50, 49, 51)], crossed([2]))
     assert leading([second, first], 1) == (1,)
     assert leading([second, first], 1, base=1) == (0,)
