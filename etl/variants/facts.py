@@ -205,18 +205,20 @@ class Summary:
     def standing(self) -> Standing:
         """What the decisions do to the comparison.
 
-        ``decided``: whether the interval leaves out 0 hangs on them, or on which side it lies.
-        ``around 0``: no interval leaves out 0, and the sign does not hold. ``none``: no variant has
-        a difference. ``held``: everything else, and all rates.
+        Looked at are the variants that have a difference. ``decided``: whether the interval leaves
+        out 0 hangs on them, or on which side it lies. ``around 0``: no interval leaves out 0, and
+        the sign is not the same in all. ``none``: no variant has a difference. ``held``: everything
+        else, and all rates.
         """
-        variants = len(self.order)
-        if self.without == variants:
+        there = len(self.order) - self.without
+        if not there:
             return "none"
         if not self.compared.comparison.factor:
             return "held"
-        if 0 < self.apart < variants or (self.apart and not self.holds):
+        one_sign = there in (self.positive, self.negative, self.zero)
+        if 0 < self.apart < there or (self.apart and not one_sign):
             return "decided"
-        return "held" if self.holds else "around 0"
+        return "held" if one_sign else "around 0"
 
 
 @dataclass(frozen=True, eq=False)

@@ -10,10 +10,10 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from etl.variants.facts import Comparison, Crossing, Setting, Summary
+from etl.variants.in_short import in_short
 from etl.variants.sentences import (
     comparison_words,
     for_paper,
-    in_short,
     setting_words,
     short_keys,
 )
