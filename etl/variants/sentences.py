@@ -110,28 +110,24 @@ def _passage(summary: Summary, crossing: Crossing) -> Iterator[str]:
     """One sentence of the passage after the other."""
     compared, total, base = summary.compared, len(crossing), crossing.base
     factor = compared.comparison.factor
-    measure = "the difference in log-odds" if factor else "the rate"
-    yield f"{comparison_words(compared.comparison)}: {measure} was computed in {_varied(crossing)}."
+    yield f"{_compared(compared.comparison)} in {_varied(crossing)}."
     lacking = "since one of the two conditions has none" if factor else "since there are no data"
     if summary.without == total:
-        yield f"It has no value{f' in {any_of(total)}' if total > 1 else ''}, {lacking}."
+        where = f" in {any_of(total)}" if total > 1 else ""
+        yield f"The {_what(summary)} has no value{where}, {lacking}."
         return
     if summary.without:
-        yield f"It has no value in {summary.without:,} of {total:,} variants, {lacking}."
+        where = f"in {summary.without:,} of {total:,} variants"
+        yield f"The {_what(summary)} has no value {where}, {lacking}."
+    yield from _own(summary, crossing)
     if _one_text(summary):
         if total > 1:
             others = total - summary.without
             rest = "the other one" if others == 1 else f"the other {others:,}"
             where = rest if summary.without else all_of(total)
-            yield f"It is {span(summary)} in {where}."
+            yield f"The {_what(summary)} is {span(summary)} in {where}."
     else:
-        yield f"It ranges from {span(summary)}."
-    if np.isnan(compared.difference[base]):
-        yield "In the study as it stands it has no value."
-    else:
-        where = "In the study as it stands it" if total > 1 else "It"
-        value = number(compared.difference[base])
-        yield f"{where} is {value} (95% interval {limits(summary, base)})."
+        yield f"Over the variants the {_what(summary)} ranges from {span(summary)}."
     if factor:
         yield from _signs(summary, crossing)
     yield from _decides(summary, crossing)
@@ -146,18 +142,93 @@ def _passage(summary: Summary, crossing: Crossing) -> Iterator[str]:
     yield f"Intervals ({source}) take trials as independent, though they share readers and items."
 
 
+def _compared(comparison: Comparison) -> str:
+    """What was compared with what, as the beginning of a sentence."""
+    where = comparison.outcome + (f" at {comparison.region}" if comparison.region else "")
+    if not comparison.factor:
+        return f"The rate of {where} was computed"
+    return (
+        f"The rates of {where} with {comparison.factor} {comparison.level} and with "
+        f"{comparison.reference} were compared"
+    )
+
+
+def _what(summary: Summary) -> str:
+    """What a comparison gives a number for."""
+    return "difference in log-odds" if summary.compared.comparison.factor else "rate"
+
+
+def _own(summary: Summary, crossing: Crossing) -> Iterator[str]:
+    """What the study as it stands has."""
+    compared, base = summary.compared, crossing.base
+    head = "In the study as it stands" if len(crossing) > 1 else "Here"
+    if np.isnan(compared.difference[base]):
+        yield f"{head} it has no value."
+        return
+    (reference, level), comparison = compared.counts[base].tolist(), compared.comparison
+    interval = f"95% interval {limits(summary, base)}"
+    if not comparison.factor:
+        value = number(compared.difference[base])
+        yield f"{head} {_ones(level)} of the values are 1: a rate of {value} ({interval})."
+        return
+    yield (
+        f"{head} {_ones(level)} of the values are 1 with {comparison.level} and {_ones(reference)} "
+        f"with {comparison.reference}: a difference of {number(compared.difference[base])} in "
+        f"log-odds ({interval})."
+    )
+
+
+def _ones(counts: Sequence[int]) -> str:
+    """How many of some values are 1, with the rate."""
+    zeros, ones = counts
+    return f"{ones:,} of {zeros + ones:,} ({100 * ones / (zeros + ones):.1f}%)"
+
+
 def _varied(crossing: Crossing) -> str:
     """How many variants there are, and of what."""
     total = len(crossing)
     if total == 1:
         return "one variant only, the study as it stands"
+    source = "a multiverse analysis; Steegen, Tuerlinckx, Gelman, & Vanpaemel, 2016"
     if any(crossing.names):
-        return f"{total:,} named variants of the data, the study as it stands among them"
+        return f"{total:,} named variants of the data, the study as it stands among them ({source})"
     keys = short_keys(crossing.settings)
-    if len(keys) == 1:
-        return f"{total:,} variants of the data, by one decision ({keys[0]})"
+    decisions = listed(
+        [
+            f"{key} ({', '.join(map(_alternative, own.alternatives))})"
+            for key, own in zip(keys, crossing.settings, strict=True)
+        ]
+    )
     which = "all combinations" if crossing.full else "combinations"
-    return f"{total:,} variants of the data, {which} of {len(keys):,} decisions ({listed(keys)})"
+    of = f"{which} of {decisions}" if len(keys) > 1 else f"by {decisions}"
+    return f"{total:,} variants of the data ({source}), {of}"
+
+
+def variant_words(crossing: Crossing, variant: int) -> str:
+    """A variant in words: what it is called, and how it differs from the study as it stands.
+
+    Parameters
+    ----------
+    crossing : Crossing
+        The variants.
+    variant : int
+        Which.
+
+    Returns
+    -------
+    str
+    """
+    if variant == crossing.base:
+        return "the study as it stands"
+    keys = short_keys(crossing.settings)
+    own, base = crossing.choices[variant].tolist(), crossing.choices[crossing.base].tolist()
+    differs = ", ".join(
+        setting_words(key, setting.alternatives[choice])
+        for key, setting, choice, usual in zip(keys, crossing.settings, own, base, strict=True)
+        if choice != usual
+    )
+    name = crossing.names[variant]
+    return f"{name} ({differs})" if name else differs
 
 
 def _signs(summary: Summary, crossing: Crossing) -> Iterator[str]:
