@@ -64,6 +64,10 @@ def _collector_at_rest() -> Iterator[None]:
         gc.enable()
 
 
+#: A study whose facts are gathered: its plan, its readers, its logs, and who works.
+Examined = tuple[Plan, Gathered, list[LogAnswer], Crew]
+
+
 @dataclass(frozen=True, slots=True)
 class LogsRead:
     """A study whose logs were read.
@@ -157,7 +161,7 @@ def examine(
     room: Room,
     findings: Findings,
     held: KeyFile | None = None,
-) -> tuple[Plan, Gathered, list[LogAnswer], Crew] | None:
+) -> Examined | None:
     """Everything up to the work on readers; None where that makes no sense."""
     read = read_study(study, room, findings, held)
     gathered = None if read is None else read.gathered(findings)

@@ -27,9 +27,9 @@ from etl.session.gallery import drawn
 from etl.session.gather import Gathered
 from etl.session.hand_over import describe, hand_over
 from etl.session.inputs_read import inputs_read
+from etl.session.judging import judged, notice_readers
 from etl.session.kept_places import kept_folder, settle_kept
 from etl.session.log_tellings import (
-    account_for_moved,
     check_nothing_lost,
     log_accounts,
     log_counts,
@@ -76,19 +76,7 @@ def check(study: Study, *, workers: int | None = 1, progress: Progress = silent)
     ):
         examined = examine(study, room, findings, held)
         if examined is not None:
-            plan, gathered, answers, crew = examined
-            totals = Totals(plan.limits)
-            with closing(finish_groups(gathered, crew, progress, {})) as groups:
-                for answer in groups:
-                    for tables in answer.readers:
-                        findings.extend(tables.findings)
-                        totals.add(tables)
-            labels = plan.library.labels
-            known = () if labels is None else labels.codes
-            totals.notice_places(study, known, gathered.design.files, findings)
-            account_for_moved(answers, totals.moved, findings)
-            if not findings.failed:
-                totals.notice(study, findings)
+            totals = judged(examined, progress, findings)
             if not findings.failed:
                 findings.note(summary(totals.counts))
     return findings
@@ -174,12 +162,7 @@ def build(
                         totals.add(tables)
                     if not findings.failed:
                         writers.add(group.parts)
-            labels = plan.library.labels
-            known = () if labels is None else labels.codes
-            totals.notice_places(study, known, gathered.design.files, findings)
-            account_for_moved(answers, totals.moved, findings)
-            if not findings.failed:
-                totals.notice(study, findings)
+            notice_readers(examined, totals, findings)
             if findings.failed:
                 raise DataError(findings)
         check_nothing_lost(answers, totals.counts["fixations read"])

@@ -60,26 +60,30 @@ def named_comparisons(
             fix=f'did you mean "{near[0]}"?' if near else f"correct {key}",
         )
 
-    for own in chosen.comparisons:
+    for number, own in enumerate(chosen.comparisons):
+
+        def line(key: str, number: int = number) -> int | None:
+            return chosen.line_of("comparisons", number, key)
+
         levels = design.factors.get(own.factor, ())
         level = own.level or (levels[1] if len(levels) == 2 else "")
         if own.region and len(design.regions) > MOST_REGIONS:
             wrong.error(
                 f"with more than {MOST_REGIONS} regions all are counted together",
                 path=chosen.shown,
-                line=own.line,
+                line=line("region"),
                 where="comparisons.region",
                 found=own.region,
                 fix="leave out the comparison",
             )
         elif own.region and own.region not in design.regions:
             problem = "no text has a region of this name"
-            tell(own.line, "region", problem, own.region, design.regions)
+            tell(line("region"), "region", problem, own.region, design.regions)
         elif own.region and own.region not in read:
             wrong.error(
                 "no trial has read a text with this region",
                 path=chosen.shown,
-                line=own.line,
+                line=line("region"),
                 where="comparisons.region",
                 found=own.region,
                 fix="leave out the comparison, or name another region",
@@ -88,7 +92,7 @@ def named_comparisons(
             wrong.error(
                 f"{own.factor} has one level only, so there is nothing to compare",
                 path=chosen.shown,
-                line=own.line,
+                line=line("factor"),
                 where="comparisons.factor",
                 found=own.factor,
                 fix="leave out the comparison, or name another factor",
@@ -97,7 +101,7 @@ def named_comparisons(
             problem = f"{own.factor} has no level of this name that could be compared"
             if not level:
                 problem = f"{own.factor} has {len(levels)} levels: say which one is compared"
-            tell(own.line, "level", problem, level, levels[1:])
+            tell(line("level"), "level", problem, level, levels[1:])
         wanted.append((own.outcome, own.region, own.factor, level))
     if wrong.failed:
         raise DataError(wrong)

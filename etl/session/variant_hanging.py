@@ -13,8 +13,10 @@ from etl.session.reader import ReaderGroup
 from etl.session.variant_states import Changed, Universe
 from etl.variants.facts import Crossing
 
-#: So many trials of a group are offered, besides the one of each reader that hangs most.
-MOST_OFFERED: Final = 12
+#: So many trials of a group are offered for each setting, besides one of each reader; and so many
+#: where it cannot be told on which setting they hang.
+MOST_OFFERED: Final = 4
+MOST_UNTOLD: Final = 12
 
 
 @dataclass(frozen=True, slots=True)
@@ -31,7 +33,7 @@ class Hangs:
     cells : int
         Cells that are not the same in all variants.
     of : int
-        Cells in all.
+        Cells in all that are there in any variant.
     """
 
     pairs: tuple[int, ...]
@@ -62,7 +64,7 @@ class HangingTrial:
     hangs : Hangs
         How much.
     setting : int
-        On which it hangs most; -1 where that cannot be told.
+        For which it is offered; -1 where it cannot be told on which it hangs.
     variant : int
         The variant to be shown beside the study as it stands: one that differs from it in that
         setting only, in which most of the cells change; or the one in which most do.
@@ -105,6 +107,7 @@ def readers_hanging(
     group: ReaderGroup,
     universe: Universe,
     changed: Mapping[str, Changed],
+    there: NDArray[np.bool_],
     using: tuple[Crossing, tuple[int, ...]],
 ) -> tuple[list[ReaderHangs], list[HangingTrial]]:
     """How much readers hang on settings, and the trials that do most.
@@ -117,13 +120,15 @@ def readers_hanging(
         Their cells.
     changed : mapping of str to Changed
         The binary outcomes by name.
+    there : (cells,) bool array
+        Whether each cell is there in any variant.
     using : tuple
         The variants, and by setting how many pairs of them differ in it only.
 
     Returns
     -------
     list of ReaderHangs and list of HangingTrial
-        All readers; and the trials of all that hang most, most first.
+        All readers; and for each setting in turn the trials that hang most on it, most first.
     """
     crossing, pairs = using
     width, settings = len(group.trials), len(crossing.settings)
@@ -135,7 +140,7 @@ def readers_hanging(
         np.add.at(by_trial, trial, own.pairs)
         np.add.at(differing, trial, (own.states != own.states[crossing.base]).sum(axis=0))
         cells += np.bincount(trial, minlength=width)
-    of = np.bincount(universe.cells.trial, minlength=width) * len(changed)
+    of = np.bincount(universe.cells.trial[there], minlength=width) * len(changed)
 
     def hangs(trials: NDArray[np.int64]) -> Hangs:
         return Hangs(
@@ -143,19 +148,9 @@ def readers_hanging(
             *(int(own[trials].sum()) for own in (differing, cells, of)),
         )
 
-    scores = np.zeros(width)
-    some = of > 0
-    if crossing.full:
-        scores[some] = (by_trial[some] / (of[some, None] * np.maximum(pairs, 1))).max(
-            axis=1, initial=0.0
-        )
-    else:
-        scores[some] = differing[some] / of[some]
-
-    def offered(trial: int, setting: int | None = None) -> HangingTrial:
+    def offered(trial: int, setting: int) -> HangingTrial:
         reader = int(group.reader_of_trial[trial])
         told = hangs(np.array([trial]))
-        setting = score_of(told, pairs)[1] if setting is None else setting
         states = _states_of(trial, universe, changed)
         variant = _telling(states, setting, crossing)
         return HangingTrial(
@@ -177,12 +172,30 @@ def readers_hanging(
         told = hangs(own_trials)
         setting = score_of(told, pairs)[1]
         # The trial to be shown of a reader is the one that hangs most on what the reader hangs on.
-        weights = scores if setting < 0 else by_trial[:, setting] / np.maximum(of, 1)
-        best = int(own_trials[np.argmax(weights[own_trials])]) if told.cells else -1
-        most = offered(best, setting) if best >= 0 else None
-        readers.append(ReaderHangs(participant, told, most))
-    order = np.argsort(-scores, kind="stable")[:MOST_OFFERED]
-    return readers, [offered(int(trial)) for trial in order if scores[trial] > 0]
+        chances = _chances(setting, by_trial, differing, of)
+        best = int(own_trials[np.argmax(chances[own_trials])]) if told.cells else -1
+        readers.append(
+            ReaderHangs(participant, told, offered(best, setting) if told.cells else None)
+        )
+    trials = []
+    for setting in range(settings) if crossing.full else (-1,):
+        chances = _chances(setting, by_trial, differing, of)
+        most = MOST_UNTOLD if setting < 0 else MOST_OFFERED
+        order = np.argsort(-chances, kind="stable")[:most].tolist()
+        trials += [offered(trial, setting) for trial in order if chances[trial] > 0]
+    return readers, trials
+
+
+def _chances(
+    setting: int,
+    by_trial: NDArray[np.int64],
+    differing: NDArray[np.int64],
+    of: NDArray[np.int64],
+) -> NDArray[np.float64]:
+    """How much each trial hangs on a setting, or on all for -1, up to a factor."""
+    counted = differing if setting < 0 else by_trial[:, setting]
+    chances: NDArray[np.float64] = counted / np.maximum(of, 1)
+    return chances
 
 
 def _states_of(

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import itertools
-from collections.abc import Iterator, Sequence
+import json
+from collections.abc import Iterator
 from dataclasses import dataclass, replace
 
 from etl.errors import DataError, Findings
@@ -18,7 +19,7 @@ from etl.session.lines import NO_READING
 from etl.session.plan import Plan
 from etl.session.pseudonym_record import hidden_limits
 from etl.session.reader import Options
-from etl.study import Study
+from etl.study import Study, StudyVariants
 
 
 @dataclass(frozen=True, slots=True)
@@ -67,14 +68,14 @@ class VariantPlans:
     gathered: tuple[Gathered, ...]
 
 
-def plan_variants(read: LogsRead, studies: Sequence[Study], findings: Findings) -> VariantPlans:
+def plan_variants(read: LogsRead, chosen: StudyVariants, findings: Findings) -> VariantPlans:
     """Make all variants of a study ready for the work on readers.
 
     Parameters
     ----------
     read : LogsRead
         The study as it stands, with its logs.
-    studies : sequence of Study
+    chosen : StudyVariants
         The variants.
     findings : Findings
         Where problems are recorded; what one variant has said already is not said again.
@@ -88,11 +89,11 @@ def plan_variants(read: LogsRead, studies: Sequence[Study], findings: Findings) 
     DataError
         If no reader is left to work on, or anything is wrong.
     """
-    asked = frozenset(itertools.chain.from_iterable(map(_notes, studies)))
-    plans = [_plan(read.plan, study, asked) for study in studies]
+    asked = frozenset(itertools.chain.from_iterable(map(_notes, chosen.studies)))
+    plans = [_plan(read.plan, study, asked) for study in chosen.studies]
     needs = [facts_needed(plan) for plan in plans]
     gathered: dict[tuple[object, ...], Gathered] = {}
-    for plan, need in zip(plans, needs, strict=True):
+    for variant, (plan, need) in enumerate(zip(plans, needs, strict=True)):
         new = Findings(names=findings.names)
         check_rules(plan.study, plan.library.region_names, new)
         if need not in gathered:
@@ -100,7 +101,7 @@ def plan_variants(read: LogsRead, studies: Sequence[Study], findings: Findings) 
             found = own.gathered(new)
             if found is not None:
                 gathered[need] = found
-        _add_new(findings, new)
+        _add_new(findings, new, chosen, variant)
         if need not in gathered:
             raise DataError(findings)
     if findings.failed:
@@ -138,9 +139,47 @@ def _plan(plan: Plan, study: Study, asked: frozenset[tuple[str, str]]) -> Plan:
     return replace(plan, study=study, library=library, limits=limits, notes_elsewhere=asked)
 
 
-def _add_new(findings: Findings, new: Findings) -> None:
-    """Add what has not been found before: variants have most in common."""
-    for kind in [kind for kind in new.more if kind in findings.more]:
-        del new.more[kind]
-        new.items = [finding for finding in new.items if finding.kind != kind]
-    findings.extend(new)
+def _add_new(findings: Findings, new: Findings, chosen: StudyVariants, variant: int) -> None:
+    """Add what has not been found before: variants have most in common.
+
+    What is said of the study file is said of the variants file where a variant has it from there.
+    """
+    crossing = chosen.crossing
+    own = {
+        setting.key: setting.alternatives[choice]
+        for setting, choice in zip(
+            crossing.settings, crossing.choices[variant].tolist(), strict=True
+        )
+        if choice != setting.base
+    }
+    files = {json.loads(value): key for key, value in own.items() if key.endswith(".notes")}
+    placed = Findings(names=new.names)
+    for finding in new:
+        key = finding.where if finding.path == chosen.studies[0].shown else ""
+        if key in own:
+            placed.add(replace(finding, path=chosen.shown, line=_line(chosen, variant, key)))
+        elif finding.path in files and finding.line is None:
+            key = files[finding.path]
+            placed.add(
+                replace(
+                    finding,
+                    path=chosen.shown,
+                    line=_line(chosen, variant, key),
+                    where=key,
+                    found=finding.path,
+                    fix=finding.fix.replace("study file", "variants file"),
+                )
+            )
+        else:
+            placed.add(finding)
+    for kind in [kind for kind in placed.more if kind in findings.more]:
+        del placed.more[kind]
+        placed.items = [finding for finding in placed.items if finding.kind != kind]
+    findings.extend(placed)
+
+
+def _line(chosen: StudyVariants, variant: int, key: str) -> int | None:
+    """Where a variant has the value of a key from."""
+    named = any(chosen.crossing.names)
+    above: tuple[str | int, ...] = ("variants", variant - 1) if named else ()
+    return chosen.line_of(*above, *key.split("."))

@@ -2,24 +2,27 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from pathlib import Path
 from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
 
-from etl.errors import DataError, FaultError, Findings
+from etl.errors import DataError, FaultError, Findings, Severity
 from etl.export.changed_cells import changed_cell_writer
 from etl.report.variants_input import VariantsInput
 from etl.report.variants_page import write_variants_page
 from etl.session.crew import Progress
 from etl.session.examining import LogsRead
+from etl.session.judging import judged
+from etl.session.log_tellings import check_nothing_lost
 from etl.session.outcome_work import cells_of
 from etl.session.pseudonym_record import for_record
 from etl.session.pseudonym_study import hidden_crossing
 from etl.session.reader_groups import group_tasks, without_values
 from etl.session.readiness import MOST_REGIONS
+from etl.session.told import counted
 from etl.session.variant_comparisons import leading_ones, named_comparisons
 from etl.session.variant_counts import VariantCounts
 from etl.session.variant_hanging import HangingTrial, ReaderHangs
@@ -30,9 +33,10 @@ from etl.session.variant_traces import VariantTraces
 from etl.session.variant_work import VariantAnswer, VariantShape, VariantTask, VariantWork
 from etl.session.varied import Varied
 from etl.study import StudyVariants
-from etl.tables.variants import CHANGED_CELLS, RATES, VARIANT_ROWS
+from etl.tables.variants import CHANGED_CELLS, RATES, VARIANT_ROWS, rate_columns
 from etl.trials.notes import Notes
-from etl.variants.sentences import for_paper, short_keys
+from etl.variants.passages import for_paper
+from etl.variants.sentences import short_keys, variant_words
 from etl.variants.summaries import LEADING_RULE
 
 #: Readers are worked on together until they have so many fixations, in all variants together: the
@@ -77,7 +81,7 @@ class VariantRun:
         self.folder = folder
         self.progress = progress
         self.crossing = chosen.crossing
-        self.plans: VariantPlans = plan_variants(read, chosen.studies, findings)
+        self.plans: VariantPlans = plan_variants(read, chosen, findings)
         pseudonyms = read.plan.pseudonyms
         self.shown, self.about = chosen.path.name, chosen.title
         if pseudonyms is not None:
@@ -85,6 +89,7 @@ class VariantRun:
             self.shown = pseudonyms.shown_file(self.shown)
             self.about = pseudonyms.hidden_in_free_text(self.about)
         self.design = self.plans.gathered[self.plans.options[self.crossing.base].facts].design
+        self._refuse_names()
         self.leading = named_comparisons(chosen, self.design, self._regions_read())
         self.keys = short_keys(self.crossing.settings)
         self.names = tuple(key.replace(".", "_") for key in self.keys)
@@ -94,6 +99,60 @@ class VariantRun:
         self.pairs = tuple(len(self.crossing) * (size - 1) // 2 * full for size in sizes)
         self.readers: list[ReaderHangs] = []
         self.trials: list[HangingTrial] = []
+
+    def _refuse_names(self) -> None:
+        """Refuse factors that are called like a column of ``rates``, which has one for each."""
+        taken = {column.name for column in rate_columns({})} & set(self.design.factors)
+        study = self.read.plan.study
+        for name in sorted(taken):
+            self.findings.error(
+                "the tables about variants have a column of this name already",
+                path=study.shown,
+                line=study.line_of("trials", "factors"),
+                where="trials.factors",
+                found=name,
+                fix="rename the column in its table, and in the study file",
+            )
+        if taken:
+            raise DataError(self.findings)
+
+    def _judge_study(self) -> None:
+        """Refuse what a build would refuse, and tell what it would tell, of the study itself."""
+        base = self.crossing.base
+        gathered = self.plans.gathered[self.plans.options[base].facts]
+        examined = (self.plans.plans[base], gathered, self.read.told, self.read.crew)
+        totals = judged(examined, self.progress, self.findings)
+        if self.findings.failed:
+            raise DataError(self.findings)
+        check_nothing_lost(self.read.told, totals.counts["fixations read"])
+
+    def _warn(self, results: VariantResults) -> None:
+        """Tell of variants that leave nothing, and of settings that do nothing."""
+        for what, kept in (
+            ("trial", [own.trials_kept for own in results.losses]),
+            ("fixation", [own.fixations_kept for own in results.losses]),
+        ):
+            empty = [variant for variant, count in enumerate(kept) if not count]
+            if empty:
+                first = variant_words(self.crossing, empty[0])
+                self.findings.warning(
+                    f"{counted(len(empty), 'variant')} of {len(kept):,} "
+                    f"{'leaves' if len(empty) == 1 else 'leave'} no {what} of any reader",
+                    path=self.chosen.shown,
+                    found=f"variant {empty[0] + 1}: {first}",
+                    fix="leave out the alternative that takes everything",
+                )
+                break
+        if not self.crossing.full:
+            return
+        for place, setting in enumerate(self.crossing.settings):
+            if not any(own.hangs[place] for own in results.changes):
+                self.findings.warning(
+                    "this changes nothing: every cell is the same with each alternative",
+                    path=self.chosen.shown,
+                    line=self.chosen.line_of(*setting.key.split(".")),
+                    where=setting.key,
+                )
 
     def notes(self) -> list[Notes]:
         """The experimenter's notes that any variant looks at."""
@@ -117,6 +176,7 @@ class VariantRun:
         DataError
             If anything is wrong with the fixations of a reader.
         """
+        self._judge_study()
         hangs_on = {
             f"hangs_on_{name}": setting.key
             for name, setting in zip(self.names, self.crossing.settings, strict=True)
@@ -132,6 +192,7 @@ class VariantRun:
         )
         counts, changed = self._counted(shape)
         results = results_of(counts, self.crossing, self.design, conditions, self.pairs)
+        self._warn(results)
         chosen = leading_ones(self.leading, results.summaries, self.crossing.base)
         passages = tuple(for_paper(results.summaries[place], self.crossing) for place in chosen)
         tables = VariantTables(self.folder, results, self.design, self.names, self.pairs)
@@ -222,7 +283,7 @@ class VariantRun:
         self, results: VariantResults, chosen: tuple[int, ...], passages: tuple[str, ...]
     ) -> None:
         """Write the page, and the traces that it leads to."""
-        traces = VariantTraces(self.folder, self.plans, self.crossing, self.keys, self.pairs)
+        traces = VariantTraces(self.folder, self.plans, self.crossing, self.pairs)
         readers, trials = traces.shown(self.readers, self.trials)
         csv = "csv" in self.formats
         tables = [
@@ -247,12 +308,26 @@ class VariantRun:
                 results.changes,
                 readers,
                 trials,
-                tuple(self._notices()),
+                self._notices(),
                 tuple(tables),
             ),
         )
 
-    def _notices(self) -> list[str]:
+    def _notices(self) -> tuple[str, ...]:
         """Warnings, without the word."""
-        lines = for_record(self.findings, self.read.plan).lines(("warning",))
-        return [line.removeprefix("warning: ") for line in lines]
+        return tuple(line.removeprefix("warning: ") for line in self.recorded(("warning",)))
+
+    def recorded(self, severities: Sequence[Severity]) -> list[str]:
+        """Findings as they may stand in the output.
+
+        Parameters
+        ----------
+        severities : sequence of str
+            Which.
+
+        Returns
+        -------
+        list of str
+        """
+        own = self.findings.with_path(self.chosen.shown, self.shown)
+        return for_record(own, self.read.plan).lines(severities)

@@ -8,6 +8,8 @@ from dataclasses import astuple
 from pathlib import Path
 from typing import Final
 
+import numpy as np
+
 from etl.cells import Cell, write_csv
 from etl.export.variant_rates import write_rates
 from etl.screening import LEFT_OUT_BY
@@ -36,6 +38,7 @@ from etl.tables.variants import (
     variant_columns,
 )
 from etl.variants.facts import Summary
+from etl.variants.shares import turning
 
 CODEBOOK: Final = "codebook"
 _CODEBOOK_COLUMNS: Final = (
@@ -176,12 +179,7 @@ class VariantTables:
             *astuple(compared.comparison),
             *(_or_none(own[base]) for own in (compared.difference, compared.low, compared.high)),
             *ends,
-            summary.positive,
-            summary.negative,
-            summary.zero,
-            summary.without,
-            summary.same_sign,
-            summary.clear,
+            *self._signs(summary),
             None if most is None else self._keys[most],
             None if most is None else summary.shares[most].together,
             *(
@@ -190,22 +188,48 @@ class VariantTables:
             ),
         ]
 
+    def _signs(self, summary: Summary) -> list[Cell]:
+        """How many variants have which sign; rates have none."""
+        if not summary.compared.comparison.factor:
+            return [None, None, None, summary.without, None, None, None]
+        return [
+            summary.positive,
+            summary.negative,
+            summary.zero,
+            summary.without,
+            summary.same_sign,
+            summary.clear,
+            summary.apart,
+        ]
+
     def _decisions(self) -> Iterable[list[Cell]]:
+        crossing = self._results.crossing
         for summary in self._results.summaries:
-            for share in summary.shares:
-                setting = self._results.crossing.settings[share.setting]
-                for place, (alternative, mean) in enumerate(
-                    zip(setting.alternatives, share.means, strict=True)
-                ):
+            compared = summary.compared
+            turns = turning(compared.difference, crossing).tolist()
+            clears = turning(summary.side, crossing).tolist()
+            shares = {own.setting: own for own in summary.shares}
+            for number, setting in enumerate(crossing.settings):
+                share = shares.get(number)
+                for place, alternative in enumerate(setting.alternatives):
+                    own = crossing.choices[:, number] == place
+                    values = compared.difference[own]
+                    values = values[~np.isnan(values)]
+                    signed: list[Cell] = [None, None, None]
+                    if compared.comparison.factor:
+                        apart = int((np.abs(summary.side[own]) > 0).sum())
+                        signed = [turns[number], apart, clears[number]]
                     yield [
-                        *astuple(summary.compared.comparison),
+                        *astuple(compared.comparison),
                         setting.key,
                         alternative,
                         int(place == setting.base),
-                        mean,
-                        share.alone,
-                        share.together,
-                        share.flips,
+                        int(own.sum()),
+                        int(own.sum()) - len(values),
+                        float(values.mean()) if len(values) else None,
+                        None if share is None else share.alone,
+                        None if share is None else share.together,
+                        *signed,
                     ]
 
     def _changes(self) -> Iterable[list[Cell]]:

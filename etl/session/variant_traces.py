@@ -15,14 +15,21 @@ from etl.session.decisions import under_limits
 from etl.session.pseudonym_record import told_study
 from etl.session.reader import ReaderTables
 from etl.session.tracing import Tracer, TrialKey
-from etl.session.variant_hanging import HangingTrial, Hangs, ReaderHangs, score_of
+from etl.session.variant_hanging import (
+    MOST_OFFERED,
+    MOST_UNTOLD,
+    HangingTrial,
+    Hangs,
+    ReaderHangs,
+    score_of,
+)
 from etl.session.variant_plans import VariantPlans
 from etl.session.work import ReaderTask, make_reader_work
 from etl.variants.facts import Crossing
-from etl.variants.sentences import setting_words
+from etl.variants.sentences import variant_words
 
 TRACES: Final = "traces"
-#: How many readers, and how many trials, are shown.
+#: How many readers are shown.
 MOST_SHOWN: Final = 12
 #: How many changes of a trial are spelled out.
 _MOST_CHANGES: Final = 4
@@ -40,8 +47,6 @@ class VariantTraces:
         The variants.
     crossing : Crossing
         The same as numbers.
-    keys : tuple of str
-        Short names of the settings.
     pairs : tuple of int
         By setting, how many pairs of variants differ in it only.
     """
@@ -49,7 +54,6 @@ class VariantTraces:
     folder: Path
     plans: VariantPlans
     crossing: Crossing
-    keys: tuple[str, ...]
     pairs: tuple[int, ...]
 
     def __post_init__(self) -> None:
@@ -76,7 +80,6 @@ class VariantTraces:
         """
         best = sorted(readers, key=lambda own: -score_of(own.hangs, self.pairs)[0])
         some = [own for own in best if own.most is not None][:MOST_SHOWN]
-        order = sorted(trials, key=lambda own: -score_of(own.hangs, self.pairs)[0])[:MOST_SHOWN]
         of_readers = []
         for reader in some:
             assert reader.most is not None  # noqa: S101 - chosen so
@@ -86,9 +89,27 @@ class VariantTraces:
             )
         of_trials = [
             self._told(one.participant, self._key(one), one.hangs, one.setting, one)
-            for one in order
+            for one in self._chosen(trials)
         ]
         return tuple(of_readers), tuple(of_trials)
+
+    def _chosen(self, trials: Sequence[HangingTrial]) -> list[HangingTrial]:
+        """For each setting the trials that hang most on it, the settings with the most first."""
+        by_setting: dict[int, list[HangingTrial]] = {}
+        for one in trials:
+            by_setting.setdefault(one.setting, []).append(one)
+
+        def chance(one: HangingTrial) -> float:
+            counted = one.hangs.differing if one.setting < 0 else one.hangs.pairs[one.setting]
+            every = 1 if one.setting < 0 else max(self.pairs[one.setting], 1)
+            return counted / (max(one.hangs.of, 1) * every)
+
+        best = []
+        for setting, own in by_setting.items():
+            most = MOST_UNTOLD if setting < 0 else MOST_OFFERED
+            best.append(sorted(own, key=lambda one: -chance(one))[:most])
+        best.sort(key=lambda own: -chance(own[0]))
+        return [one for own in best for one in own]
 
     def _told(
         self,
@@ -108,16 +129,12 @@ class VariantTraces:
             self._page(trial, self.crossing.base),
             self._page(trial, trial.variant),
         )
-        return Hanging(
-            participant,
-            *named,
-            chances,
-            hangs.cells,
-            hangs.of,
-            setting,
-            pages,
-            self._changes(trial),
-        )
+        changes = self._changes(trial)
+        if key is None:
+            of_trial = self._key(trial)
+            visit = f"session {of_trial.session}, " if of_trial.session else ""
+            changes = (f"{visit}trial {of_trial.trial}: {changes[0]}", *changes[1:])
+        return Hanging(participant, *named, chances, hangs.cells, hangs.of, setting, pages, changes)
 
     def _key(self, trial: HangingTrial) -> TrialKey:
         """What the trial is called."""
@@ -134,26 +151,10 @@ class VariantTraces:
         code = int(self._tasks[trial.participant].trials.ids["item"][trial.row])
         return design.ids["item"].values[code] if code >= 0 else ""
 
-    def words(self, variant: int) -> str:
-        """A variant in words: its name, or how it differs from the study as it stands."""
-        crossing = self.crossing
-        if variant == crossing.base:
-            return "the study as it stands"
-        own, base = crossing.choices[variant].tolist(), crossing.choices[crossing.base].tolist()
-        differs = ", ".join(
-            setting_words(key, setting.alternatives[choice])
-            for key, setting, choice, usual in zip(
-                self.keys, crossing.settings, own, base, strict=True
-            )
-            if choice != usual
-        )
-        name = crossing.names[variant]
-        return f"{name} ({differs})" if name else differs
-
     def _changes(self, trial: HangingTrial) -> tuple[str, ...]:
         """What changes in the trial, in words."""
         library = self.plans.plans[0].library
-        words = self.words(trial.variant)
+        words = variant_words(self.crossing, trial.variant)
         if all(after == LEFT_OUT for *_, after in trial.changes):
             return (f"left out with {words}",)
         if all(before == LEFT_OUT for *_, before, _ in trial.changes):
@@ -171,7 +172,7 @@ class VariantTraces:
         key = (trial.participant, trial.row, variant)
         if key not in self._pages:
             name = f"{TRACES}/{len(self._pages) + 1:02d}_variant_{variant + 1}.html"
-            words = self.words(variant)
+            words = variant_words(self.crossing, variant)
             base = variant == self.crossing.base
             says = f"Under {words}." if base else f"Variant {variant + 1}, with {words}."
             (self.folder / TRACES).mkdir(exist_ok=True)

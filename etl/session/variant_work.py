@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from etl.errors import Findings
-from etl.export.changed_cells import ChangedCells, ChangedRows
+from etl.export.changed_cells import LEFT_OUT, ChangedCells, ChangedRows
 from etl.export.parts import Part
 from etl.parsers import CanonicalLog
 from etl.regions import RegionLibrary
@@ -182,7 +182,10 @@ class VariantWork:
         answer.counts = counts
         binary = {name: changed[name] for name in self._binary()}
         using = (self._shape.crossing, self._shape.pairs)
-        answer.hangs, answer.hanging = readers_hanging(first, universe, binary, using)
+        there = np.zeros(len(universe), dtype=bool)
+        for name in binary:
+            there |= (table.states[name] != LEFT_OUT).any(axis=0)
+        answer.hangs, answer.hanging = readers_hanging(first, universe, binary, there, using)
         cells = universe.cells
         rows = {
             name: ChangedRows(

@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 import time
 from contextlib import nullcontext
+from dataclasses import replace
 from pathlib import Path
 
 from etl.errors import DataError, Findings
@@ -18,7 +19,6 @@ from etl.session.inputs_read import inputs_read
 from etl.session.kept_places import kept_folder
 from etl.session.log_tellings import log_counts
 from etl.session.pseudonym_key import known_by, open_key, refuse_key_inside, save_key
-from etl.session.pseudonym_record import for_record
 from etl.session.variant_run import VariantRun
 from etl.session.varied import Varied
 from etl.study import Study, StudyVariants, load_variants
@@ -72,6 +72,21 @@ def vary(
     target = Path(into) if into is not None else path.with_name(path.stem)
     refuse_key_inside(study, target)
     _refuse_build(target)
+    try:
+        return _varied(study, chosen, target, workers, progress, started)
+    except DataError as wrong:
+        raise DataError(_for_variants(wrong.findings)) from wrong
+
+
+def _varied(
+    study: Study,
+    chosen: StudyVariants,
+    target: Path,
+    workers: int | None,
+    progress: Progress,
+    started: float,
+) -> Varied:
+    """Work on all variants and publish what they say."""
     findings = Findings()
     built = study.folder / study.output.folder
     with (
@@ -86,7 +101,7 @@ def vary(
         _hold_kept(room, read)
         run = VariantRun(chosen, read, findings, shop.fresh, progress)
         varied = run.done(target)
-        told = for_record(findings, read.plan).lines(("warning", "note"))
+        told = run.recorded(("warning", "note"))
         own = {"file": run.shown, "role": "variants file", "sha256": chosen.sha256}
         RunRecord(
             read.plan.understood(),
@@ -119,6 +134,21 @@ def _refuse_build(target: Path) -> None:
         fix="name another folder by --into",
     )
     raise DataError(findings)
+
+
+def _for_variants(findings: Findings) -> Findings:
+    """What is said of a build, said of variants: they have no key in the study file."""
+    said = Findings(names=findings.names)
+    for one in findings:
+        fix = one.fix
+        for words, others in (
+            ("by [output] folder or --into", "by --into"),
+            ("and build again", "and try again"),
+        ):
+            fix = fix.replace(words, others)
+        said.items.append(replace(one, fix=fix))
+    said.more = findings.more
+    return said
 
 
 def _hold_kept(room: Room, read: LogsRead) -> None:

@@ -184,6 +184,7 @@ def load_study(path: str | Path, *, known_outcomes: Collection[str] | None = Non
     if raw is None or parsed is None:
         raise StudyError(findings)
     data, lines = parsed
+    _refuse_variants(data, lines, shown)
     source = Source(Path(path).absolute(), shown, lines, hashlib.sha256(raw).hexdigest())
     examined = examine(data, known_outcomes)
     if examined.problems:
@@ -192,6 +193,23 @@ def load_study(path: str | Path, *, known_outcomes: Collection[str] | None = Non
         # Absent means the centre where positions are angles; the record should say so.
         data["screen"].setdefault("origin", "centre")
     return Study.model_validate(data, context=source)
+
+
+def _refuse_variants(data: Mapping[str, Any], lines: Mapping[KeyPath, int], shown: str) -> None:
+    """Refuse a variants file in the place of a study file."""
+    of_variants = [key for key in ("variants", "comparisons") if key in data]
+    if "logs" in data or not of_variants:
+        return
+    findings = Findings()
+    findings.error(
+        "this is a variants file",
+        path=shown,
+        line=nearest_line(lines, of_variants[:1]),
+        where=of_variants[0],
+        expected="a study file",
+        fix="name the study file first, then the variants file",
+    )
+    raise StudyError(findings)
 
 
 def _in_file_order(problems: list[Problem], source: Source) -> Findings:

@@ -135,6 +135,11 @@ def _found(
                 yield from _found(value, key, above, told, crossed=crossed)
             else:
                 told.add((*above, *key), _no_table(key, value))
+        elif not path and isinstance(value, Mapping) and value and field_at(key) is not None:
+            # A table of the study file that holds nothing that may vary: its keys are named.
+            for inner in value:
+                place = (*key, inner)
+                told.add((*above, *place), _refused(place, value, beside=()))
         else:
             told.add((*above, *key), _refused(key, table, beside=BESIDE if not above else ()))
 
@@ -175,6 +180,9 @@ def _refused(key: KeyPath, table: Mapping[str, Any], *, beside: tuple[str, ...])
             else "remove it; it is the same in all variants",
         )
     near = difflib.get_close_matches(name.lower(), [own for own in choices if own not in table], 1)
+    if not choices:
+        fix = f"it belongs in {homes}" if homes else "remove it"
+        return Problem(key, "unknown key", expected=WHAT_VARIES, fix=fix)
     if near:
         return Problem(key, "unknown key", fix=f"did you mean {quoted(near[0])}?")
     return Problem(

@@ -141,6 +141,8 @@ def load_variants(
     if raw is None or parsed is None:
         raise StudyError(_of_variants(findings, text or ""))
     data, lines = parsed
+    if "logs" in data:
+        raise StudyError(_swapped(shown, lines))
     told = Told(shown, lines)
     title = _title(data, told)
     outcomes = Outcomes(region_outcomes, trial_outcomes, known_outcomes)
@@ -159,6 +161,20 @@ def load_variants(
         leading,
         lines,
     )
+
+
+def _swapped(shown: str, lines: Mapping[KeyPath, int]) -> Findings:
+    """What is said of a study file in the place of a variants file."""
+    findings = Findings()
+    findings.error(
+        "this is a study file",
+        path=shown,
+        line=nearest_line(lines, ("logs",)),
+        where="logs",
+        expected="a variants file, which says nothing of logs",
+        fix="name the study file first, then the variants file",
+    )
+    return findings
 
 
 def _of_variants(findings: Findings, text: str) -> Findings:

@@ -83,7 +83,7 @@ def rate_columns(factors: Mapping[str, Sequence[str]]) -> tuple[Column, ...]:
             "difference",
             "number",
             "log-odds here less those of the condition it is compared with; empty where one of "
-            "them has no value",
+            "them has no value, or all values of both are the same",
             nullable=True,
         ),
         Column(
@@ -156,12 +156,28 @@ def comparison_columns() -> tuple[Column, ...]:
         Column("lowest_variant", "integer", "the variant that has it", nullable=True),
         Column("highest", "number", "the highest of all variants", nullable=True),
         Column("highest_variant", "integer", "the variant that has it", nullable=True),
-        Column("positive", "integer", sign.format("above 0")),
-        Column("negative", "integer", sign.format("below 0")),
-        Column("zero", "integer", sign.format("exactly 0")),
+        Column("positive", "integer", sign.format("above 0"), nullable=True),
+        Column("negative", "integer", sign.format("below 0"), nullable=True),
+        Column("zero", "integer", sign.format("exactly 0"), nullable=True),
         Column("without", "integer", "variants in which there is none"),
-        Column("same_sign", "integer", "variants that have the sign of the study as it stands"),
-        Column("clear", "integer", "those of them with an interval that leaves out 0"),
+        Column(
+            "same_sign",
+            "integer",
+            "variants that have the sign of the study as it stands; empty for rates",
+            nullable=True,
+        ),
+        Column(
+            "clear",
+            "integer",
+            "those of them with an interval that leaves out 0",
+            nullable=True,
+        ),
+        Column(
+            "leaves_out_0",
+            "integer",
+            "variants with an interval that leaves out 0, on whichever side",
+            nullable=True,
+        ),
         Column("decides_most", "text", "the setting that decides most about it", nullable=True),
         Column(
             "decides_share",
@@ -186,17 +202,37 @@ def decision_columns() -> tuple[Column, ...]:
         _SETTING,
         Column("alternative", "text", "its value, as TOML has it"),
         Column("in_study", "flag", "1 for the value of the study as it stands"),
-        Column("mean", "number", "mean difference over the variants with it", nullable=True),
+        Column("variants", "integer", "variants with it"),
+        Column("without", "integer", "those of them in which there is no difference"),
+        Column("mean", "number", "mean difference over the others", nullable=True),
         Column(
             "alone",
             "number",
-            "share of the variance over all variants that the setting explains by itself; the same "
-            "for all its alternatives",
+            "share of the variance over all variants that the setting explains by itself, the same "
+            "for all its alternatives; empty where not every combination is among the variants, "
+            "one has no difference, or all have the same",
             nullable=True,
         ),
         Column("together", "number", "the same with its interactions", nullable=True),
         Column(
-            "turns", "number", f"how often the sign is not the same, {_PER_PAIR}", nullable=True
+            "turns",
+            "number",
+            "how often the sign is not the same (0 has a sign of its own), over all pairs of "
+            "variants that differ in this setting only; empty for rates",
+            nullable=True,
+        ),
+        Column(
+            "leaves_out_0",
+            "integer",
+            "variants with it whose interval leaves out 0",
+            nullable=True,
+        ),
+        Column(
+            "clears",
+            "number",
+            "how often the side of 0 on which the interval lies, or that it includes 0, is not the "
+            "same, over such pairs",
+            nullable=True,
         ),
     )
 

@@ -25,7 +25,9 @@ def compare(counts: Ints) -> tuple[Floats, Floats, Floats, Flags]:
     Returns
     -------
     difference, low, high : (...) float64 arrays
-        In log-odds; NaN where one of the two conditions has no value.
+        In log-odds; NaN where one of the two conditions has no value, or all values of both are the
+        same: then nothing is known of a ratio of odds, and 0.5 added to each count would give it a
+        sign that only tells which condition has more values.
     corrected : (...) bool array
         Where one of the counts is 0, though both conditions have values: there 0.5 was added to
         all four.
@@ -55,7 +57,7 @@ def compare(counts: Ints) -> tuple[Floats, Floats, Floats, Flags]:
     1.0986: -0.2403 to 2.4375
     """
     whole = _sound(counts, 2)
-    there = (whole.sum(axis=-1) > 0).all(axis=-1)
+    there = (whole.sum(axis=-1) > 0).all(axis=-1) & (whole.sum(axis=-2) > 0).all(axis=-1)
     corrected: Flags = there & (whole == 0).any(axis=(-2, -1))
     own = whole + ADDED * corrected[..., np.newaxis, np.newaxis]
     # Any counts will do where there is no difference: what comes out is not looked at.
