@@ -227,7 +227,8 @@ def test_numbers_left_out_are_named_where_they_are_missing(without: int) -> None
             continue
         text = row.cells()[1]
         found = re.fullmatch(
-            r"Places? (\d+)(?: to (\d+))?: (\d+) variants?( without a difference)? (is|are) not shown.",
+            r"Places? (\d+)(?: to (\d+))?: (\d+) variants?( without a difference)? (?:is|are) not "
+            r"shown\.",
             text,
         )
         assert found, text
