@@ -171,7 +171,7 @@ def sign_words(summary: Summary, base: int) -> str:
     if same == 1:
         text += f", and its interval {'leaves out' if clear else 'includes'} 0"
     else:
-        text += f", and the interval leaves out 0 in {so_many(clear, same)} of these {count(same)}"
+        text += f", and the interval leaves out 0 in {_of_these(clear, same)}"
     text += f"; over all, {_split(summary)}."
     if other := summary.apart - clear:
         text += (
@@ -184,7 +184,12 @@ def _interval(apart: int, there: int) -> str:
     """In how many variants the interval leaves out 0, where there is no sign to hold."""
     if there == 1:
         return f"Its interval {'leaves out' if apart else 'includes'} 0"
-    return f"The interval leaves out 0 in {so_many(apart, there)} of these {count(there)}"
+    return f"The interval leaves out 0 in {_of_these(apart, there)}"
+
+
+def _of_these(some: int, of: int) -> str:
+    """Some of variants of which others were told of too, hence with their number."""
+    return f"{so_many(some, of)} of these{f' {count(of)}' if 0 < some < of else ''}"
 
 
 def _all_there(there: int, without: int) -> str:
@@ -257,11 +262,13 @@ def _clears_words(summary: Summary, facts: VariantsInput) -> Markup:
 
 def _with_each(summary: Summary, facts: VariantsInput, setting: int) -> Markup:
     """In how many variants with each alternative the interval leaves out 0."""
-    found = [own for own in sides_with(summary, facts.crossing, setting) if own[1].of]
+    sides = sides_with(summary, facts.crossing, setting)
+    found = [own for own in sides if own[1].of]
+    texts = facts.crossing.settings[setting].alternatives
+    none = [code(alternative(texts[place])) for place, own in sides if not own.of]
     if len(found) > MOST_ALTERNATIVES:
         found.sort(key=lambda own: (own[1].apart / own[1].of, own[0]))
         found = [found[0], found[-1]]
-    texts = facts.crossing.settings[setting].alternatives
 
     def said(at: int, place: int, sides: Sides) -> Markup:
         of = count(sides.of) if at else counted(sides.of, "variant")
@@ -270,7 +277,10 @@ def _with_each(summary: Summary, facts: VariantsInput, setting: int) -> Markup:
             count(sides.apart), of, code(alternative(texts[place])), split
         )
 
-    return Markup(", in ").join(said(at, *own) for at, own in enumerate(found))
+    text = Markup(", in ").join(said(at, *own) for at, own in enumerate(found))
+    if none:
+        text += Markup("; with {} no variant has a difference").format(listed(none))
+    return text
 
 
 def _turns_words(summary: Summary, facts: VariantsInput) -> Markup:

@@ -161,6 +161,13 @@ def test_odds_are_the_exponential_to_two_figures(difference: float) -> None:
             ),
         ),
         (
+            [(1, 0.5, 2)] * 2 + [(-1, -2, 1)] * 4,
+            (
+                "The sign holds in 2 of 6 variants, and the interval leaves out 0 in both of "
+                "these; over all, 2 are above 0 and 4 are below 0."
+            ),
+        ),
+        (
             [(-1, -2, 1), (1, -1, 2), (1, -1, 2), NOTHING, NOTHING, NOTHING],
             (
                 "The sign holds in 1 of 3 variants that have a difference, and its interval "
@@ -332,6 +339,10 @@ def test_variants_without_a_difference_count_for_no_alternative() -> None:
     rows = {row.key.striptags(): row for row in collect_decisions(facts, facts.summaries[0]).rows}
     over = rows["screening.fixations.over_ms"]
     assert [own.apart for own in over.alternatives] == ["2 of 2", "0 of 1", "–"]
+    assert (
+        "hangs on over_ms: it does in 2 of 2 variants with 800, in 0 of 1 with 600; with 1000 no "
+        "variant has a difference." in said(facts)
+    )
 
 
 def test_odds_are_explained_with_the_first_curve_that_has_a_difference() -> None:
