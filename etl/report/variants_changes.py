@@ -11,13 +11,13 @@ from markupsafe import Markup
 
 from etl.report.variants_curve import chance_bar
 from etl.report.variants_input import Hanging, VariantsInput
-from etl.report.variants_words import code, more_in, share_words
-from etl.report.wording import count, counted, name, percent
+from etl.report.variants_words import code, fine_share_words, more_in, share_words
+from etl.report.wording import count, counted, name
 from etl.variants.facts import Change, Floats
 
 #: Regions of a measure, readers and trials that are shown at most.
 MOST_REGIONS = 15
-MOST_HANGING = 30
+MOST_HANGING = 60
 #: The kinds of measures in the order of the page, with what they are called there.
 _KINDS = {"binary": "0 or 1", "count": "count", "duration": "duration"}
 
@@ -225,23 +225,17 @@ def _changes_say(changed: int, cells: int, binary: Sequence[Change]) -> str:
     if not changed:
         return f"All {count(cells)} cells of outcomes are the same in all variants."
     said = (
-        f"{count(changed)} of {count(cells)} cells ({_portion(changed, cells)}) are not the same "
+        f"{count(changed)} of {count(cells)} cells ({fine_share_words(changed / cells)}) are not "
+        "the same in all variants"
     )
-    said += "in all variants"
     zeros_and_ones = sum(one.cells for one in binary)
     if zeros_and_ones:
         own = sum(one.changed for one in binary)
         said += (
             f"; of the cells of 0/1 outcomes {count(own)} of {count(zeros_and_ones)} "
-            f"({_portion(own, zeros_and_ones)})"
+            f"({fine_share_words(own / zeros_and_ones)})"
         )
     return f"{said}."
-
-
-def _portion(part: int, whole: int) -> str:
-    """A share in percent; what is more than none is never said to be none."""
-    share = part / whole
-    return "<0.1%" if 0 < share < 0.0005 else percent(share)
 
 
 def _hint(facts: VariantsInput, binary: Sequence[Change]) -> Markup:
@@ -266,9 +260,9 @@ def _together(changes: Sequence[Change], settings: int) -> Floats:
 
 def _chance(chance: float) -> str:
     """A chance in percent, to one place where it is small."""
-    if math.isnan(chance) or chance == 0 or chance >= 0.0995:
-        return share_words(chance)
-    return "<0.1%" if chance < 0.0005 else f"{chance:.1%}"
+    if 0 < chance < 0.0995:
+        return fine_share_words(chance)
+    return share_words(chance)
 
 
 def _chances(hangs: Sequence[float], widest: float) -> tuple[Chance, ...]:
@@ -298,7 +292,7 @@ def _measure(
         code(measure),
         _KINDS.get(kind, kind),
         count(cells),
-        f"{count(changed)} ({_portion(changed, cells)})",
+        f"{count(changed)} ({fine_share_words(changed / cells)})",
         count(trials),
         (cells, changed / cells, trials),
         _chances([float(one) for one in _together(changes, settings)], widest),
@@ -316,7 +310,7 @@ def _region(change: Change, widest: float) -> ChangeRow:
         name(change.region) if change.region else Markup("whole trials"),
         "",
         count(change.cells),
-        f"{count(change.changed)} ({_portion(change.changed, max(change.cells, 1))})",
+        f"{count(change.changed)} ({fine_share_words(share)})",
         count(change.trials),
         (change.cells, share, change.trials),
         _chances([float(one) for one in change.hangs], widest),

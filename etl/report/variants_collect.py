@@ -18,7 +18,8 @@ from etl.report.variants_comparisons import Comparisons, collect_comparisons, co
 from etl.report.variants_curve_part import CurvePart, collect_curve
 from etl.report.variants_input import VariantsInput
 from etl.report.variants_losses import Losses, collect_losses
-from etl.report.variants_words import alternative, code, comparison_words, headline, is_rate
+from etl.report.variants_said import headline, odds_words
+from etl.report.variants_words import alternative, code, comparison_words, is_rate, value
 from etl.report.wording import count, counted
 
 #: Comparisons of which the page has a headline.
@@ -85,7 +86,9 @@ class VariantsPage:
     rate : bool
         Whether the study has no factors, so that rates are looked at.
     chosen : str
-        By which rule the comparisons that lead were chosen.
+        Who or which rule chose the comparisons that lead; empty for rates that nobody named.
+    odds : Markup
+        What the difference of the first of them means in odds; empty where it has none.
     curves : tuple of CurvePart
         One a leading comparison.
     comparisons : Comparisons
@@ -111,6 +114,7 @@ class VariantsPage:
     decisions: tuple[Decision, ...]
     rate: bool
     chosen: str
+    odds: Markup
     curves: tuple[CurvePart, ...]
     comparisons: Comparisons
     losses: Losses
@@ -135,6 +139,7 @@ def collect_variants(facts: VariantsInput) -> VariantsPage:
         Ready for the templates.
     """
     comparisons, changes = collect_comparisons(facts), collect_changes(facts)
+    rate = bool(facts.summaries) and comparisons.rate
     return VariantsPage(
         facts.title,
         facts.about,
@@ -153,8 +158,9 @@ def collect_variants(facts: VariantsInput) -> VariantsPage:
             )
             for short, own in zip(facts.short_keys, facts.crossing.settings, strict=True)
         ),
-        bool(facts.summaries) and all(is_rate(one.compared.comparison) for one in facts.summaries),
-        "The variants file names these comparisons." if facts.named else facts.rule,
+        rate,
+        _chosen(facts, rate=rate),
+        _odds(facts),
         tuple(collect_curve(facts, place) for place in range(len(facts.leading))),
         comparisons,
         collect_losses(facts),
@@ -166,21 +172,41 @@ def collect_variants(facts: VariantsInput) -> VariantsPage:
     )
 
 
+def _chosen(facts: VariantsInput, *, rate: bool) -> str:
+    """Who or what chose the comparisons that lead."""
+    if facts.named:
+        return f"The variants file names these {'rates' if rate else 'comparisons'}."
+    # The rule speaks of intervals around 0, which rates have not.
+    return "" if rate else facts.rule
+
+
+def _odds(facts: VariantsInput) -> Markup:
+    """An example of what a difference means in odds: that of the first curve that has one."""
+    for at in facts.leading:
+        compared = facts.summaries[at].compared
+        own = float(compared.difference[facts.crossing.base])
+        if not is_rate(compared.comparison) and math.isfinite(own):
+            return Markup("The study’s difference of {} for {} means {}.").format(
+                value(own, rate=False), comparison_words(compared.comparison), odds_words(own)
+            )
+    return Markup()
+
+
 def _lead(facts: VariantsInput) -> str:
     """What was computed, in two sentences."""
     crossing = facts.crossing
     settings = len(crossing.settings)
     decisions = counted(settings, "decision")
-    if crossing.full:
+    named = any(crossing.names)
+    if crossing.full and not named:
         numbers = [len(own.alternatives) for own in crossing.settings]
         product = f" ({' × '.join(map(str, numbers))})" if settings > 1 else ""
         which = f"{counted(len(crossing), 'variant')}: all combinations of {decisions}{product}."
     else:
         whole = math.prod(len(own.alternatives) for own in crossing.settings)
-        which = (
-            f"{counted(len(crossing), 'variant')} that differ in {decisions}, out of "
-            f"{count(whole)} combinations."
-        )
+        kind = "named variant" if named else "variant"
+        out_of = "" if crossing.full else f", out of {count(whole)} combinations"
+        which = f"{counted(len(crossing), kind)} that differ in {decisions}{out_of}."
     return (
         f"{which} Each was computed from the same fixations as the study as it stands, which is "
         "one of them, before any model was fitted."

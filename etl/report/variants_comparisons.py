@@ -25,7 +25,7 @@ from etl.report.variants_words import (
     share_words,
     value,
 )
-from etl.report.wording import count
+from etl.report.wording import NOTHING, count
 from etl.variants.facts import Standing, Summary
 
 #: What is said of comparisons by what the decisions do to them.
@@ -33,25 +33,34 @@ _PARTS: Final[Mapping[Standing, tuple[str, str]]] = {
     "decided": (
         "The decisions decide",
         (
-            "In some variants the interval leaves out 0, in others it does not or lies on the "
-            "other side."
+            "Of the variants that have a difference, the interval leaves out 0 in some, and in "
+            "others it does not or lies on the other side."
         ),
     ),
     "held": (
         "The decisions do not decide",
-        "The sign holds in all variants, and the interval leaves out 0 in all of them or in none.",
+        (
+            "Of the variants that have a difference, all have the same sign, and the interval "
+            "leaves out 0 in all of them or in none."
+        ),
     ),
     "around 0": (
         "Around 0 in all variants",
         (
-            "The sign does not hold, but no variant has an interval that leaves out 0: a "
-            "difference that small, or from so few values, has no sign to hold."
+            "Of the variants that have a difference, not all have the same sign, but none has an "
+            "interval that leaves out 0: a difference that small, or from so few values, has no "
+            "sign to hold."
         ),
     ),
     "none": (
         "Cannot be made",
-        "One of the two conditions has no value in any variant.",
+        "There is no variant in which both conditions have a value.",
     ),
+}
+#: The same of rates.
+_PARTS_OF_RATES: Final[Mapping[Standing, tuple[str, str]]] = {
+    "held": ("All rates", ""),
+    "none": ("No rate", "There is no value in any variant."),
 }
 #: So many comparisons are shown at most; of those not decided, so many before they are folded.
 MOST_COMPARISONS = 500
@@ -79,7 +88,10 @@ class ComparisonRow:
     reach : Markup
         From the lowest to the highest, drawn.
     holds, apart : str
-        In how many variants the sign holds, and the interval leaves out 0; empty for rates.
+        In how many of the variants that have a difference the sign holds, and the interval leaves
+        out 0, on either side; empty for rates.
+    without : str
+        In how many variants there is no value; empty where there is one in all or in none.
     matters : Markup
         The decision that matters most; a dash where that is not known.
     share : str
@@ -100,6 +112,7 @@ class ComparisonRow:
     reach: Markup
     holds: str
     apart: str
+    without: str
     matters: Markup
     share: str
 
@@ -166,15 +179,14 @@ def collect_comparisons(facts: VariantsInput) -> Comparisons:
     known = found[np.isfinite(found).all(axis=1)] * factor
     scale = round_scale(min(known.min(), 0.0), known.max()) if len(known) else round_scale(0, 1)
     parts, left = [], MOST_COMPARISONS
-    for standing, (title, how) in _PARTS.items():
+    for standing, (title, how) in (_PARTS_OF_RATES if rate else _PARTS).items():
         places = [at for at, one in enumerate(facts.summaries) if one.standing == standing]
         shown = places[: max(0, left)]
         left -= len(places)
         if shown:
-            title = "All rates" if rate else title
             rows = [_comparison(facts, facts.summaries[at], lead.get(at, 0), scale) for at in shown]
             folded = standing != "decided" and len(rows) > MOST_OPEN
-            parts.append(ComparisonPart(title, "" if rate else how, tuple(rows), folded))
+            parts.append(ComparisonPart(title, how, tuple(rows), folded))
     return Comparisons(
         rate,
         comparisons_say(facts.summaries, rate=rate),
@@ -218,9 +230,18 @@ def comparisons_say(summaries: Sequence[Summary], *, rate: bool, others: bool = 
         text = f"In none of {whole} the decisions decide whether the interval leaves out 0"
     if around:
         text += f"; in {count(around)} the sign does not hold, but no interval leaves out 0"
+    if without := sum(one.without > 0 and one.standing != "none" for one in summaries):
+        text += f"; in {count(without)} some variants have no value"
     if none:
         text += f"; {count(none)} cannot be made"
     return f"{text}."
+
+
+def _apart(summary: Summary, there: int) -> str:
+    """In how many of the variants that have a difference the interval leaves out 0."""
+    if is_rate(summary.compared.comparison):
+        return ""
+    return f"{count(summary.apart)} of {count(there)}" if there else NOTHING
 
 
 def _comparison(facts: VariantsInput, summary: Summary, curve: int, scale: Scale) -> ComparisonRow:
@@ -235,7 +256,8 @@ def _comparison(facts: VariantsInput, summary: Summary, curve: int, scale: Scale
         share = summary.shares[summary.matters].together
     numbers = (own, low, high, math.nan if rate else summary.same_sign, share, summary.apart)
     factor = 100.0 if rate else 1.0
-    holds = "" if rate else f"{count(summary.same_sign)} of {count(len(summary.order))}"
+    there = len(summary.order) - summary.without
+    holds = "" if rate else f"{count(summary.same_sign)} of {count(there)}"
     if not rate and not own:
         holds = "the study has none"
     elif not rate and math.isnan(own):
@@ -246,7 +268,8 @@ def _comparison(facts: VariantsInput, summary: Summary, curve: int, scale: Scale
         Markup() if rate else levels_words(compared.comparison),
         curve,
         summary.standing == "decided",
-        summary.standing == "decided" and not summary.holds,
+        summary.standing == "decided"
+        and there not in (summary.positive, summary.negative, summary.zero),
         value(own, rate=rate),
         interval(float(compared.low[base]), float(compared.high[base]), rate=rate),
         value(low, rate=rate),
@@ -254,7 +277,8 @@ def _comparison(facts: VariantsInput, summary: Summary, curve: int, scale: Scale
         tuple("" if math.isnan(one) else f"{one:.6g}" for one in numbers),
         reach_bar(low * factor, high * factor, own * factor, scale, rate=rate),
         holds,
-        "" if rate else f"{count(summary.apart)} of {count(len(summary.order))}",
+        _apart(summary, there),
+        f"no value in {count(summary.without)}" if summary.without and there else "",
         matters,
         "" if math.isnan(share) else share_words(share),
     )

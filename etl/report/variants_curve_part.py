@@ -18,21 +18,19 @@ from etl.report.variants_curve import (
     plot,
     row,
     scale_of,
-    shares_bar,
     ticks,
 )
+from etl.report.variants_decisions import Decisions, by_weight, collect_decisions, labelled
 from etl.report.variants_input import VariantsInput
-from etl.report.variants_numbers import NumbersRow, collect_numbers
+from etl.report.variants_numbers import Gap, NumbersRow, collect_numbers
+from etl.report.variants_said import headline
 from etl.report.variants_words import (
-    alternative,
     code,
     comparison_text,
     comparison_words,
-    headline,
     is_rate,
     more_in,
     share_words,
-    value,
     why_no_shares,
 )
 from etl.report.wording import count, counted, name
@@ -114,49 +112,6 @@ class Drawn:
 
 
 @dataclass(frozen=True, slots=True)
-class Mean:
-    """The mean over the variants with an alternative.
-
-    Attributes
-    ----------
-    label : Markup
-        The alternative.
-    own : bool
-        Whether it is the study's.
-    text : str
-        The mean.
-    """
-
-    label: Markup
-    own: bool
-    text: str
-
-
-@dataclass(frozen=True, slots=True)
-class DecisionRow:
-    """How much a decision matters for a comparison.
-
-    Attributes
-    ----------
-    key : Markup
-        The setting in full.
-    alone, together, flips : str
-        In percent.
-    bar : Markup
-        Alone and together, drawn.
-    means : tuple of Mean
-        One an alternative.
-    """
-
-    key: Markup
-    alone: str
-    together: str
-    flips: str
-    bar: Markup
-    means: tuple[Mean, ...]
-
-
-@dataclass(frozen=True, slots=True)
 class CurvePart:
     """All that the page shows of a leading comparison.
 
@@ -174,14 +129,14 @@ class CurvePart:
         Whether it is of a rate.
     drawn : Drawn or None
         None where no variant has a value.
-    decisions : tuple of DecisionRow
-        One a setting; none without shares.
+    decisions : Decisions
+        What each of them does.
     no_shares : str
         Why there are no shares; empty where there are.
     passage : str
         For a paper.
-    rows : tuple of NumbersRow
-        Variants along the curve; of many the two ends.
+    rows : tuple of NumbersRow or Gap
+        Variants along the curve; of many the two ends, with what is left out between.
     rows_left : Markup
         What is said of those that are not shown.
     heads : tuple of Markup
@@ -194,10 +149,10 @@ class CurvePart:
     says: Markup
     rate: bool
     drawn: Drawn | None
-    decisions: tuple[DecisionRow, ...]
+    decisions: Decisions
     no_shares: str
     passage: str
-    rows: tuple[NumbersRow, ...]
+    rows: tuple[NumbersRow | Gap, ...]
     rows_left: Markup
     heads: tuple[Markup, ...]
 
@@ -230,25 +185,13 @@ def collect_curve(facts: VariantsInput, place: int) -> CurvePart:
         headline(summary, facts),
         rate,
         _drawn(facts, summary, curve) if curve.columns else None,
-        _decisions(facts, summary),
+        collect_decisions(facts, summary),
         why_no_shares(summary, facts.crossing),
         facts.passages[place],
         rows,
         more_in(facts, "differences", left),
         (Markup("all"),) if rate else heads,
     )
-
-
-def _label(facts: VariantsInput, setting: int, place: int) -> tuple[Markup, bool]:
-    """An alternative, and whether it is the study's."""
-    own = facts.crossing.settings[setting]
-    return code(alternative(own.alternatives[place])), place == own.base
-
-
-def _by_weight(summary: Summary, settings: int) -> list[int]:
-    """The settings, the one that decides most first; as they come without shares."""
-    weight = {share.setting: share.together for share in summary.shares}
-    return sorted(range(settings), key=lambda setting: -weight.get(setting, 0.0))
 
 
 def _drawn(facts: VariantsInput, summary: Summary, curve: Curve) -> Drawn:
@@ -258,10 +201,10 @@ def _drawn(facts: VariantsInput, summary: Summary, curve: Curve) -> Drawn:
     scale = scale_of(curve, compared, rate=rate)
     together = {share.setting: share.together for share in summary.shares}
     groups = []
-    for setting in _by_weight(summary, len(crossing.settings)):
+    for setting in by_weight(summary, crossing):
         strips = []
         for place in range(len(crossing.settings[setting].alternatives)):
-            label, own = _label(facts, setting, place)
+            label, own = labelled(facts, setting, place)
             strips.append(Strip(label, own, row(curve, crossing.choices[:, setting] == place)))
         decides = share_words(together[setting]) if setting in together else ""
         groups.append(StripGroup(code(facts.short_keys[setting]), decides, tuple(strips)))
@@ -301,23 +244,4 @@ def _drawn(facts: VariantsInput, summary: Summary, curve: Curve) -> Drawn:
         Markup() if rate else row(curve, leaves_out(compared)),
         tuple(groups),
         tuple(remarks),
-    )
-
-
-def _decisions(facts: VariantsInput, summary: Summary) -> tuple[DecisionRow, ...]:
-    """One row a setting, the one that decides most first; none without shares."""
-    rate = is_rate(summary.compared.comparison)
-    return tuple(
-        DecisionRow(
-            code(facts.crossing.settings[share.setting].key),
-            share_words(share.alone),
-            share_words(share.together),
-            share_words(share.flips),
-            shares_bar(share.alone, share.together),
-            tuple(
-                Mean(*_label(facts, share.setting, place), value(mean, rate=rate))
-                for place, mean in enumerate(share.means)
-            ),
-        )
-        for share in sorted(summary.shares, key=lambda one: -one.together)
     )

@@ -11,8 +11,8 @@ from markupsafe import Markup
 
 from etl.report.variants_input import VariantLoss, VariantsInput
 from etl.report.variants_numbers import choices_of
-from etl.report.variants_words import alternative, code, more_in, variant_name
-from etl.report.wording import count, name, percent
+from etl.report.variants_words import alternative, code, fine_share_words, more_in, variant_name
+from etl.report.wording import count, name
 
 #: So many variants have a row at most.
 MOST_VARIANTS = 200
@@ -205,7 +205,7 @@ def _loss(facts: VariantsInput, at: int) -> LossRow:
 
 def _kept(kept: int, read: int) -> str:
     """How many, and what share of those read."""
-    return f"{count(kept)} ({percent(kept / read)})" if read else count(kept)
+    return f"{count(kept)} ({fine_share_words(kept / read)})" if read else count(kept)
 
 
 def by_rule(loss: VariantLoss) -> tuple[str, str]:

@@ -9,10 +9,11 @@ from markupsafe import Markup
 
 from etl.report.variants_input import VariantsInput
 from etl.report.variants_words import alternative, interval, is_rate, value, variant_name
-from etl.report.wording import count, name
+from etl.report.wording import count, counted, name
 from etl.variants.facts import Summary
 
-#: Of so many variants at each end of a curve the numbers are in the page.
+#: Up to so many variants all have their numbers in the page; of more, so many at each end.
+MOST_ROWS = 300
 MOST_AT_ENDS = 50
 
 
@@ -48,7 +49,25 @@ class NumbersRow:
     corrected: bool
 
 
-def collect_numbers(facts: VariantsInput, summary: Summary) -> tuple[tuple[NumbersRow, ...], int]:
+@dataclass(frozen=True, slots=True)
+class Gap:
+    """Variants along the curve that are not shown.
+
+    Attributes
+    ----------
+    place : float
+        Before the first of them, for sorting.
+    text : str
+        Where they are, and how many.
+    """
+
+    place: float
+    text: str
+
+
+def collect_numbers(
+    facts: VariantsInput, summary: Summary
+) -> tuple[tuple[NumbersRow | Gap, ...], int]:
     """Gather the variants along a curve, of many the two ends and the study.
 
     Parameters
@@ -60,16 +79,42 @@ def collect_numbers(facts: VariantsInput, summary: Summary) -> tuple[tuple[Numbe
 
     Returns
     -------
-    tuple of (tuple of NumbersRow, int)
+    tuple of (tuple of NumbersRow or Gap, int)
         The rows, and how many variants have none.
     """
     whole = len(summary.order)
-    places = list(range(whole))
-    if whole > 2 * MOST_AT_ENDS:
-        own = int(np.flatnonzero(summary.order == facts.crossing.base)[0])
-        ends = {*places[:MOST_AT_ENDS], *places[-MOST_AT_ENDS:], own}
-        places = sorted(ends)
-    return tuple(_numbers_row(facts, summary, place) for place in places), whole - len(places)
+    if whole <= MOST_ROWS:
+        return tuple(_numbers_row(facts, summary, place) for place in range(whole)), 0
+    # The end of the curve is where values end: variants without one come after it.
+    there = whole - summary.without
+    own = int(np.flatnonzero(summary.order == facts.crossing.base)[0])
+    ends = {*range(min(MOST_AT_ENDS, there)), *range(max(0, there - MOST_AT_ENDS), there), own}
+    rows: list[NumbersRow | Gap] = []
+    done = 0
+    for place in (*sorted(ends), whole):
+        # No gap is of both kinds.
+        if done < there < place:
+            rows += _gap(summary, done, there)
+            done = there
+        rows += _gap(summary, done, place)
+        if place < whole:
+            rows.append(_numbers_row(facts, summary, place))
+        done = place + 1
+    return tuple(rows), whole - len(ends)
+
+
+def _gap(summary: Summary, first: int, after: int) -> list[Gap]:
+    """What is said of variants that are not shown; nothing where there are none."""
+    if first >= after:
+        return []
+    left = after - first
+    which = f"Place {count(first + 1)}"
+    if left > 1:
+        which = f"Places {count(first + 1)} to {count(after)}"
+    what = "rate" if is_rate(summary.compared.comparison) else "difference"
+    without = f" without a {what}" if first >= len(summary.order) - summary.without else ""
+    verb = "is" if left == 1 else "are"
+    return [Gap(first + 0.5, f"{which}: {counted(left, 'variant')}{without} {verb} not shown.")]
 
 
 def _numbers_row(facts: VariantsInput, summary: Summary, place: int) -> NumbersRow:

@@ -1,4 +1,4 @@
-"""How the page about variants names comparisons, decisions and numbers, and sums a curve up."""
+"""How the page about variants names comparisons, decisions and numbers."""
 
 from __future__ import annotations
 
@@ -10,6 +10,8 @@ from markupsafe import Markup, escape
 from etl.report.variants_input import FILES, VariantsInput
 from etl.report.wording import NOTHING, count, counted, name, number, percent
 from etl.variants.facts import Comparison, Crossing, Summary
+from etl.variants.words import ROUNDING
+from etl.variants.words import percent as whole_percent
 
 #: Regions counted together, as the comparisons write it.
 TOGETHER = "(all)"
@@ -131,18 +133,45 @@ def interval(low: float, high: float, *, rate: bool) -> str:
 
 
 def share_words(share: float) -> str:
-    """A share in whole percent; what is more than none is never said to be none.
+    """A share in whole percent, as the sentences for the console and for papers write it.
 
     Examples
     --------
-    >>> share_words(0.624), share_words(0.0004), share_words(0.0), share_words(float("nan"))
-    ('62%', '<1%', '0%', '–')
+    >>> share_words(0.624), share_words(0.0004), share_words(0.9996), share_words(float("nan"))
+    ('62%', 'less than 1%', 'more than 99%', '–')
     """
-    if math.isnan(share):
-        return NOTHING
-    if 0 < share < 0.005:
-        return "<1%"
-    return f"{max(0.0, share):.0%}"
+    return NOTHING if math.isnan(share) else whole_percent(share)
+
+
+def fine_share_words(share: float) -> str:
+    """A share to one place; what is not quite none or all is not called so.
+
+    Examples
+    --------
+    >>> fine_share_words(0.0984), fine_share_words(0.0004), fine_share_words(0.99996)
+    ('9.8%', 'less than 0.1%', 'more than 99.9%')
+    """
+    text = percent(share)
+    if text == "0.0%":
+        return "less than 0.1%" if share > ROUNDING else "0%"
+    if text == "100.0%":
+        return "more than 99.9%" if share < 1 - ROUNDING else "100%"
+    return text
+
+
+def so_many(some: int, of: int) -> str:
+    """A number out of so many, in the words that none and all have.
+
+    Examples
+    --------
+    >>> so_many(0, 8), so_many(3, 8), so_many(8, 8), so_many(0, 2), so_many(2, 2)
+    ('none', '3', 'all', 'neither', 'both')
+    """
+    if some == 0:
+        return "neither" if of == 2 else "none"
+    if some == of:
+        return "both" if of == 2 else "all"
+    return count(some)
 
 
 def ends(summary: Summary) -> tuple[float, float]:
@@ -207,102 +236,3 @@ def why_no_shares(summary: Summary, crossing: Crossing) -> str:
             "shares need one in every combination."
         )
     return f"There are no shares: the {what} is the same in all variants."
-
-
-def sign_words(summary: Summary) -> str:
-    """In how many variants the sign holds, in a clause without a full stop.
-
-    Parameters
-    ----------
-    summary : Summary
-        Of a comparison of two levels.
-
-    Returns
-    -------
-    str
-        With what becomes of the others.
-    """
-    whole = len(summary.order)
-    has = summary.positive + summary.negative + summary.zero
-    if not has:
-        return "no variant has a difference"
-    if summary.same_sign == 0:
-        parts = _split(summary)
-        return f"the study as it stands has no sign; over the variants {parts}"
-    every = summary.clear == summary.same_sign
-    clear = f"the interval leaves out 0 in {'all' if every else count(summary.clear)} of these"
-    if summary.holds:
-        each = "the one variant" if whole == 1 else f"all {count(whole)} variants"
-        return f"the sign holds in {each}; {clear}"
-    return (
-        f"the sign holds in {count(summary.same_sign)} of {count(whole)} variants; {clear}; "
-        f"over all, {_split(summary)}"
-    )
-
-
-def _split(summary: Summary) -> str:
-    """How many variants lie on each side of 0."""
-    parts = [
-        (summary.positive, "above 0"),
-        (summary.negative, "below 0"),
-        (summary.zero, "exactly 0"),
-        (summary.without, "without a difference"),
-    ]
-    said = [f"{count(n)} {'is' if n == 1 else 'are'} {words}" for n, words in parts if n]
-    return " and ".join([", ".join(said[:-1]), said[-1]] if len(said) > 1 else said)
-
-
-def headline(summary: Summary, facts: VariantsInput) -> Markup:
-    """A comparison summed up: its sign or range, and the decision that matters most.
-
-    Parameters
-    ----------
-    summary : Summary
-        Of the comparison.
-    facts : VariantsInput
-        Names the settings.
-
-    Returns
-    -------
-    Markup
-        Sentences with a full stop, escaped.
-    """
-    rate = is_rate(summary.compared.comparison)
-    low, high = ends(summary)
-    base = float(summary.compared.difference[facts.crossing.base])
-    if rate and math.isnan(low):
-        said = "no variant has a rate"
-    elif rate:
-        said = f"{value(base, rate=True)} in the study, {_range(low, high, rate=True)}"
-    else:
-        said = sign_words(summary)
-        if summary.positive + summary.negative + summary.zero:
-            said += f"; log-odds {value(base, rate=False)} in the study, "
-            said += _range(low, high, rate=False)
-    out = Markup("{}.").format(f"{said[:1].upper()}{said[1:]}")
-    if rate and summary.without and not math.isnan(low):
-        out += Markup(" {} without a rate.").format(counted(summary.without, "variant"))
-    if summary.turns is not None:
-        flips = summary.shares[summary.turns].flips if summary.shares else math.nan
-        often = "" if math.isnan(flips) else f" ({share_words(flips)} of such pairs)"
-        out += Markup(" Choosing {} anew turns the sign most often{}.").format(
-            code(facts.short_keys[summary.turns]), often
-        )
-    if summary.turns is None and summary.clears is not None:
-        out += Markup(" Choosing {} anew most often decides whether the interval does.").format(
-            code(facts.short_keys[summary.clears])
-        )
-    if summary.matters is not None and summary.shares:
-        out += Markup(" {} decides most: {} of the variance between variants.").format(
-            code(facts.short_keys[summary.matters]),
-            share_words(summary.shares[summary.matters].together),
-        )
-    return out
-
-
-def _range(low: float, high: float, *, rate: bool) -> str:
-    """From the lowest to the highest."""
-    texts = value(low, rate=rate), value(high, rate=rate)
-    if texts[0] == texts[1]:
-        return f"{texts[0]} throughout"
-    return f"from {texts[0]} to {texts[1]} over the variants"

@@ -42,17 +42,16 @@ def seen(
     """What the browser saw of a page."""
     folder = tmp_path_factory.mktemp("page")
     facts = CASES[request.param]()
+    return {**answer_of("variants.mjs", folder, facts, packages), "facts": facts}
+
+
+def answer_of(script: str, folder: Path, facts: VariantsInput, packages: Path) -> dict[str, Any]:
+    """What a script of the browser says of the page of these facts."""
     write_variants_page(folder, facts)
     node, browser = browsing.needed("node"), browsing.needed(*browsing.BROWSERS)
-    script = Path(__file__).with_name("variants.mjs")
+    files = Path(__file__).with_name(script), folder / "variants.html", packages
     done = subprocess.run(
-        [
-            node,
-            os.fspath(script),
-            browser,
-            os.fspath(folder / "variants.html"),
-            os.fspath(packages),
-        ],
+        [node, os.fspath(files[0]), browser, *map(os.fspath, files[1:])],
         capture_output=True,
         timeout=240,
         check=False,
@@ -60,7 +59,7 @@ def seen(
     )
     assert done.returncode == 0, done.stderr
     answer: dict[str, Any] = json.loads(done.stdout)
-    return {**answer, "facts": facts}
+    return answer
 
 
 def test_page_is_sound_and_silent(seen: dict[str, Any]) -> None:
@@ -101,3 +100,19 @@ def test_page_prints_on_white_and_a_click_selects_the_passage(seen: dict[str, An
     assert not seen["print"]["nav"]
     assert seen["print"]["bytes"] > 30_000
     assert seen["selected"] == "all"
+
+
+def test_rows_for_variants_not_shown_sort_with_places_only(packages: Path, tmp_path: Path) -> None:
+    """By place they stand in their gaps; by a decision, which they have not, at the end."""
+    facts = facts_of(crossing_of([5, 5, 2, 2, 5]), without=120)
+    seen = answer_of("variants_sorting.mjs", tmp_path, facts, packages)
+    assert seen["errors"] == []
+    written = seen["asWritten"]
+    gaps = [row[1] for row in written if row[0]]
+    assert len(gaps) >= 2
+    assert seen["byPlace"] == written
+    by_decision = seen["byDecision"]
+    assert [row[1] for row in by_decision[-len(gaps) :]] == gaps
+    taken = [row[2] for row in by_decision[: -len(gaps)]]
+    assert taken == sorted(taken, key=int)
+    assert not any(row[0] for row in by_decision[: -len(gaps)])

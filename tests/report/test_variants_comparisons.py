@@ -28,7 +28,8 @@ ROWS = {
     "held": ((-0.2, -0.6, 0.2), (-0.1, -0.5, 0.3)),
     "around 0": ((0.1, -0.3, 0.5), (-0.1, -0.5, 0.3)),
     "around 0 from 0": ((0.0, -0.4, 0.4), (0.1, -0.3, 0.5)),
-    "around 0 from nothing": ((NAN, NAN, NAN), (0.1, -0.3, 0.5)),
+    "held from nothing": ((NAN, NAN, NAN), (0.1, -0.3, 0.5)),
+    "held but for one": ((0.5, 0.1, 0.9), (NAN, NAN, NAN)),
     "none": ((NAN, NAN, NAN), (NAN, NAN, NAN)),
 }
 TITLES = {
@@ -146,6 +147,13 @@ def test_too_many_comparisons_are_cut_from_the_last_parts(monkeypatch: pytest.Mo
             ),
         ),
         (
+            ["held", "held from nothing", "held but for one", "none"],
+            (
+                "In none of 4 comparisons the decisions decide whether the interval leaves out 0; "
+                "in 2 some variants have no value; 1 cannot be made."
+            ),
+        ),
+        (
             ["decided"],
             "In 1 of 1 comparison the decisions decide whether the interval leaves out 0.",
         ),
@@ -180,9 +188,12 @@ def test_rows_say_in_how_many_variants_sign_and_interval_hold() -> None:
         "held": ("2 of 2", "0 of 2"),
         "around 0": ("1 of 2", "0 of 2"),
         "around 0 from 0": ("the study has none", "0 of 2"),
-        "around 0 from nothing": ("the study has no value", "0 of 2"),
-        "none": ("the study has no value", "0 of 2"),
+        "held from nothing": ("the study has no value", "0 of 1"),
+        "held but for one": ("1 of 1", "1 of 1"),
+        "none": ("the study has no value", "–"),
     }
+    told = {name: row.without for name, row in rows.items() if row.without}
+    assert told == {"held from nothing": "no value in 1", "held but for one": "no value in 1"}
     for name, row in rows.items():
         own = summary_of(name)
         numbers = [float(text) if text else None for text in row.values]
@@ -190,6 +201,45 @@ def test_rows_say_in_how_many_variants_sign_and_interval_hold() -> None:
         assert numbers[3] == own.same_sign
         assert (numbers[0] is None) == math.isnan(own.compared.difference[0])
     assert (rows["around 0"].low, rows["around 0"].high) == ("−0.10", "+0.10")
+
+
+def test_what_is_said_of_a_part_is_true_of_variants_that_have_a_difference() -> None:
+    """A sign of which there is nothing is not said to hold, and the page counts the others."""
+    section = part_of(facts_with(["held but for one", "held"]))
+    (caption,) = [n.text for n in section.all("caption")]
+    assert caption.startswith("Of the variants that have a difference, all have the same sign")
+    assert [n.text for n in by_class(section, "without")] == ["no value in 1"]
+    assert "the row says in how many, and counts are out of the others" in section.text
+
+
+def test_lost_values_turn_no_sign() -> None:
+    """Where the interval is decided, only signs that differ are marked beside it."""
+    values = ((0.5, 0.1, 0.9), (0.3, -0.1, 0.7), (NAN, NAN, NAN))
+    difference, low, high = np.array(values).T
+    own = Comparison("went_back", "verb", "fit", "odd", "fitting")
+    compared = Compared(
+        own, np.ones((3, 2, 2), np.int64), difference, low, high, np.zeros(3, dtype=bool)
+    )
+    facts = replace(
+        facts_of(crossing_of([3])),
+        summaries=(summarise(compared, crossing_of([3])),),
+        leading=(),
+        passages=(),
+    )
+    (part,) = collect_comparisons(facts).parts
+    (row,) = part.rows
+    assert (row.turned, row.sign_turns) == (True, False)
+    assert (row.holds, row.apart, row.without) == ("2 of 2", "1 of 2", "no value in 1")
+
+
+def test_rates_without_any_value_stand_apart() -> None:
+    """With a heading each, since there are two tables then."""
+    facts = facts_with(["held", "none", "held"], rate=True)
+    assert [(one.title, len(one.rows)) for one in collect_comparisons(facts).parts] == [
+        ("All rates", 2),
+        ("No rate", 1),
+    ]
+    assert [n.text for n in part_of(facts).all("h3")] == ["All rates", "No rate"]
 
 
 def test_rates_are_in_one_part_without_a_word_on_signs() -> None:

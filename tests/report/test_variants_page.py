@@ -184,7 +184,7 @@ def test_decided_comparisons_stand_first_and_are_marked() -> None:
 
 
 def test_long_lists_are_cut_and_the_table_that_has_all_is_named() -> None:
-    """Two hundred variants, the study first, then those that change most; fifty at both ends."""
+    """Two hundred variants, the study first, then those that change most."""
     facts = facts_of(crossing_of([5, 5, 2, 2, 5]), regions=20)
     page = page_of(facts)
     losses = page.one("section", id="losses")
@@ -195,12 +195,93 @@ def test_long_lists_are_cut_and_the_table_that_has_all_is_named() -> None:
     shown = [int(next(row.all("th")).attributes["data-value"]) for row in rows[1:]]
     assert min(changed[n - 1] for n in shown) >= sorted(changed)[-199]
     assert "and 300 more: variants.csv has all." in losses.text
-    numbers = by_class(page, "numbers")[0]
-    assert len(list(numbers.one("tbody").all("tr"))) == 101
-    assert "and 399 more: rates.csv has all." in page.text
     assert "and 5 more: changes.csv has all." in page.text
     bare = page_of(replace(facts, tables=()))
     assert "and 300 more: the tables beside this page have all" in bare.text
+
+
+@pytest.mark.parametrize(("alternatives", "whole"), [([5, 5, 2, 3, 2], 300), ([2, 2, 2], 8)])
+def test_up_to_three_hundred_variants_all_have_their_numbers(
+    alternatives: list[int], whole: int
+) -> None:
+    """In the order of the curve, and nothing is said of others."""
+    facts = facts_of(crossing_of(alternatives))
+    table = by_class(page_of(facts), "numbers")[0]
+    rows = list(table.one("tbody").all("tr"))
+    assert [row.cells()[0] for row in rows] == [f"{n + 1}" for n in range(whole)]
+    assert by_class(table, "gap", "tr") == []
+    assert "both ends and the study" not in page_of(facts).text
+
+
+@pytest.mark.parametrize("without", [0, 1, 120])
+def test_numbers_left_out_are_named_where_they_are_missing(without: int) -> None:
+    """Places of rows and gaps add up to all; the end shown is that of the values."""
+    whole = 500
+    facts = facts_of(crossing_of([5, 5, 2, 2, 5]), without=without)
+    first = by_class(page_of(facts), "one-curve")[0]
+    rows = list(by_class(first, "numbers")[0].one("tbody").all("tr"))
+    places: list[int] = []
+    for row in rows:
+        if "data-gap" not in row.attributes:
+            places.append(int(row.cells()[0]))
+            continue
+        text = row.cells()[1]
+        found = re.fullmatch(
+            r"Places? (\d+)(?: to (\d+))?: (\d+) variants?( without a difference)? (?:is|are) not "
+            r"shown\.",
+            text,
+        )
+        assert found, text
+        start = int(found[1])
+        stop = int(found[2] or start)
+        assert stop - start + 1 == int(found[3])
+        assert bool(found[4]) is (start > whole - without)
+        assert float(next(iter(row.all("td"))).attributes["data-value"]) == start - 0.5
+        assert places == [] or start == places[-1] + 1
+        places += range(start, stop + 1)
+    assert places == [*range(1, whole + 1)]
+    shown = [int(row.cells()[0]) for row in rows if "data-gap" not in row.attributes]
+    there = whole - without
+    own = int(np.flatnonzero(facts.summaries[0].order == facts.crossing.base)[0]) + 1
+    assert shown == sorted({*range(1, 51), *range(there - 49, there + 1), own})
+    assert f"and {whole - len(shown)} more: rates.csv has all." in first.text
+
+
+def test_notices_keep_their_lines() -> None:
+    """A notice of several lines is one entry, and the page says what it is."""
+    facts = replace(facts_of(crossing_of([2])), notices=("first line\n    second line", "other"))
+    text = variants_page(facts)
+    assert "<strong>Warning</strong> first line\n    second line</li>" in text
+    assert len(by_class(read(text), "message", "li")) == 2
+
+
+def test_shares_that_are_not_quite_all_are_not_called_so() -> None:
+    """The page writes a share as the console and the passage do."""
+    facts = facts_of(crossing_of([2, 2]))
+    one = facts.summaries[0]
+    shares = (
+        replace(one.shares[0], alone=0.9996, together=0.9998),
+        replace(one.shares[1], alone=0.0, together=0.0004),
+    )
+    summaries = (replace(one, shares=shares, matters=0), *facts.summaries[1:])
+    change = replace(facts.changes[0], cells=20_000, changed=19_999)
+    page = page_of(replace(facts, summaries=summaries, changes=(change,)))
+    table = by_class(page, "weights")[0]
+    firsts = [next(iter(body.all("tr"))).cells() for body in table.all("tbody")]
+    assert [row[1:3] for row in firsts] == [
+        ["more than 99%", "more than 99%"],
+        ["0%", "less than 1%"],
+    ]
+    assert "moves most with under_ms: more than 99% of the variance" in page.text
+    assert "more than 99%" in by_class(page, "comparisons")[0].text
+    assert "19,999 of 20,000 cells (more than 99.9%)" in page.text
+
+
+def test_trials_say_how_they_were_chosen() -> None:
+    """Where chances are known only."""
+    told = "For each decision those that hang most on it; of equal ones the first."
+    assert told in page_of(facts_of(crossing_of([2, 2]))).one("section", id="hanging").text
+    assert told not in page_of(facts_of(named_crossing())).text
 
 
 def test_variants_without_a_difference_are_counted_in_words() -> None:
@@ -232,7 +313,6 @@ def test_named_variants_have_names_and_no_shares() -> None:
     """Why there are no shares and no chances is said; hangs are dashes."""
     facts = facts_of(named_crossing())
     page = page_of(facts)
-    assert "4 variants that differ in 3 decisions, out of 18 combinations." in page.text
     assert "not every combination of the alternatives is among the variants" in page.text
     assert "it cannot be told on which decision a cell hangs" in page.text
     assert "2 as the other lab does" in page.one("section", id="losses").text

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from itertools import product
+from itertools import combinations, product
 
 import numpy as np
 
@@ -135,7 +135,25 @@ def summary_of(comparison: Comparison, counts: np.ndarray, crossing: Crossing) -
     most = max(shares, key=lambda one: one.flips, default=None)
     turns = most.setting if most and most.flips else None
     signs = [int((sign == one).sum()) for one in (1, -1, 0)]
-    return Summary(compared, order, *signs, without, int(same.sum()), clear, shares, matters, turns)
+    same_sign = int(same.sum())
+    side = np.where(np.isnan(difference), np.nan, (low > 0) * 1.0 - (high < 0) * 1.0)
+    cleared = [changes_of_pairs(side, crossing, at) for at in range(len(crossing.settings))]
+    clears = int(np.argmax(cleared)) if any(cleared) else None
+    return Summary(
+        compared, order, *signs, without, same_sign, clear, shares, matters, turns, clears
+    )
+
+
+def changes_of_pairs(values: np.ndarray, crossing: Crossing, setting: int) -> float:
+    """Of the pairs of variants that differ in one setting only, the share that is not the same."""
+    weights = 10 ** np.arange(len(crossing.settings), dtype=np.int64)
+    weights[setting] = 0
+    groups: dict[int, list[float]] = {}
+    for alike, own in zip((crossing.choices @ weights).tolist(), values.tolist(), strict=True):
+        if own == own:
+            groups.setdefault(alike, []).append(own)
+    pairs = [one != other for own in groups.values() for one, other in combinations(own, 2)]
+    return sum(pairs) / len(pairs) if pairs else 0.0
 
 
 def counts_of(crossing: Crossing, seed: int, base: float, weights: Sequence[float]) -> np.ndarray:

@@ -3,6 +3,8 @@
   var words = new Intl.Collator(undefined, { numeric: true });
 
   function value(row, column, kind) {
+    // A row that stands for variants not shown has a place in the order of the page only.
+    if (row.hasAttribute("data-gap") && column > 0) return null;
     var cell = row.cells[column];
     if (kind === "text") return cell.textContent.trim();
     return cell.dataset.value === "" ? null : Number(cell.dataset.value);
