@@ -314,8 +314,14 @@ class VariantRun:
         )
 
     def _notices(self) -> tuple[str, ...]:
-        """Warnings, without the word."""
-        return tuple(line.removeprefix("warning: ") for line in self.recorded(("warning",)))
+        """Warnings, without the word; how many more there are stands with the last of them."""
+        notices: list[str] = []
+        for line in self.recorded(("warning",)):
+            if line.startswith(" ") and notices:
+                notices[-1] += f"\n{line}"
+            else:
+                notices.append(line.removeprefix("warning: "))
+        return tuple(notices)
 
     def recorded(self, severities: Sequence[Severity]) -> list[str]:
         """Findings as they may stand in the output.

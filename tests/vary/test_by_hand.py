@@ -163,7 +163,7 @@ def test_decision_that_turns_the_sign_is_found_and_named(tmp_path: Path) -> None
     assert told.exit_code == 0
     assert "the sign turns with screening.fixations.under_ms" in told.output
     page = (varied.folder / "variants.html").read_text(encoding="utf-8")
-    assert "under_<wbr>ms</code> anew turns the sign" in page
+    assert "The sign changes with <code>under_<wbr>ms</code>" in page
     with (varied.folder / "comparisons.csv").open(encoding="utf-8", newline="") as file:
         rows = [
             row
