@@ -279,18 +279,27 @@ def test_variants_are_replaced_by_variants(bulk: tuple[Path, Path]) -> None:
     [
         (
             '[screening.trials]\nnotes = [false, "nowhere.csv"]\n',
-            ["nowhere.csv: there is no such file"],
+            [
+                "variants.toml:2: screening.trials.notes: there is no such file",
+                'found "nowhere.csv"',
+                "correct the name in the variants file, or put the file there",
+            ],
         ),
         (
             '[screening.trials]\nno_first_pass_on = [false, ["midle"]]\n',
-            ["no text has a region of this name", 'found "midle"', 'did you mean "middle"?'],
+            [
+                "variants.toml:2: screening.trials.no_first_pass_on",
+                "no text has a region of this name",
+                'found "midle"',
+                'did you mean "middle"?',
+            ],
         ),
         (
             (
                 "[screening.fixations]\nunder_ms = [80, 90]\n[[comparisons]]\n"
                 'outcome = "reread"\nregion = "midle"\nfactor = "cue"\n'
             ),
-            ["comparisons.region: no text has a region of this name", "variants.toml:3"],
+            ["variants.toml:5: comparisons.region: no text has a region of this name"],
         ),
         (
             "[screening.fixations]\nunder_ms = [80, 90]\nunder_mss = [80, 90]\n",
