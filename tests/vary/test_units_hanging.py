@@ -88,22 +88,22 @@ def scores_of(own: Made, trials: Sequence[int]) -> dict[int, float]:
 
 
 def variant_to_show(own: Made, trial: int, setting: int) -> int:
-    """The first of those in which most cells change, by one setting only where any does."""
+    """The first of those in which most cells change.
+
+    Of those that differ in the setting only, where a cell changes in any; else of those that differ
+    in it and others; else of all.
+    """
     cells, base = cells_in(own, [trial]), own.crossing.base
     rows = own.crossing.choices.tolist()
     differing = [sum(cell[v] != cell[base] for cell in cells) for v in range(len(rows))]
-    near = [
-        v
-        for v in range(len(rows))
-        if differing[v]
-        and setting >= 0
-        and all(
-            a == b
-            for at, (a, b) in enumerate(zip(rows[v], rows[base], strict=True))
-            if at != setting
-        )
+    apart = [
+        {at for at, (a, b) in enumerate(zip(row, rows[base], strict=True)) if a != b}
+        for row in rows
     ]
-    return max(near or range(len(rows)), key=lambda v: (differing[v], -v))
+    changing = [v for v in range(len(rows)) if differing[v]]
+    anew = [v for v in changing if setting in apart[v]]
+    alone = [v for v in anew if len(apart[v]) == 1]
+    return max(alone or anew or changing, key=lambda v: (differing[v], -v))
 
 
 @settings(deadline=None)
@@ -192,11 +192,15 @@ def test_variant_that_is_shown_differs_in_the_setting_only() -> None:
     (reader,), offered = found_in(own)
     assert [(one.row, one.setting, one.variant) for one in offered] == [
         *((0, 0, 2), (1, 0, 3)),
-        # The second setting alone changes nothing in the study: no variant beside it shows that.
-        *((0, 1, 2), (1, 1, 3)),
+        # The second setting alone changes nothing in the study, but with the first it does.
+        *((0, 1, 3), (1, 1, 3)),
     ]
     assert offered[0].changes == (("went_back", 0, 0, 1),)
     assert reader.most == offered[0]
+    # One variant alone is not as the study: the other settings, chosen anew, take it back.
+    alone = of_states(crossed([2, 2, 2]), [[0, 0, 0, 0, 1, 0, 0, 0]])
+    _, offered = found_in(alone)
+    assert [(one.setting, one.variant) for one in offered] == [(0, 4), (1, 4), (2, 4)]
 
 
 def test_equal_trials_are_offered_in_their_order_and_so_many_only() -> None:
