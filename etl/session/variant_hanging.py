@@ -67,7 +67,8 @@ class HangingTrial:
         For which it is offered; -1 where it cannot be told on which it hangs.
     variant : int
         The variant to be shown beside the study as it stands: one that differs from it in that
-        setting only, in which most of the cells change; or the one in which most do.
+        setting only, in which most of the cells change; else one that differs in others too; or
+        the one in which most do.
     changes : tuple of (str, int, int, int)
         What changes there: measure, code of the region, states in the study and in the variant.
     """
@@ -217,8 +218,12 @@ def _telling(
         len(crossing), dtype=np.int64
     )
     if setting >= 0:
-        others = np.delete(crossing.choices, setting, axis=1)
-        near = (others == others[crossing.base]).all(axis=1)
-        if differs[near].any():
-            differs = np.where(near, differs, 0)
+        same = crossing.choices == crossing.choices[crossing.base]
+        chosen_anew = ~same[:, setting]
+        alone = chosen_anew & np.delete(same, setting, axis=1).all(axis=1)
+        # What the setting does may show only where others are chosen anew too.
+        for among in (alone, chosen_anew):
+            if differs[among].any():
+                differs = np.where(among, differs, 0)
+                break
     return int(np.argmax(differs))

@@ -7,7 +7,7 @@ import json
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
 
-from etl.errors import DataError, Findings
+from etl.errors import DataError, Finding, Findings
 from etl.regions import RegionLibrary
 from etl.regions.assign import Manner
 from etl.regions.definition_files import manner_of
@@ -93,6 +93,7 @@ def plan_variants(read: LogsRead, chosen: StudyVariants, findings: Findings) -> 
     plans = [_plan(read.plan, study, asked) for study in chosen.studies]
     needs = [facts_needed(plan) for plan in plans]
     gathered: dict[tuple[object, ...], Gathered] = {}
+    told = set(findings)
     for variant, (plan, need) in enumerate(zip(plans, needs, strict=True)):
         new = Findings(names=findings.names)
         check_rules(plan.study, plan.library.region_names, new)
@@ -101,7 +102,7 @@ def plan_variants(read: LogsRead, chosen: StudyVariants, findings: Findings) -> 
             found = own.gathered(new)
             if found is not None:
                 gathered[need] = found
-        _add_new(findings, new, chosen, variant)
+        _add_new(findings, new, chosen, variant, told)
         if need not in gathered:
             raise DataError(findings)
     if findings.failed:
@@ -139,11 +140,27 @@ def _plan(plan: Plan, study: Study, asked: frozenset[tuple[str, str]]) -> Plan:
     return replace(plan, study=study, library=library, limits=limits, notes_elsewhere=asked)
 
 
-def _add_new(findings: Findings, new: Findings, chosen: StudyVariants, variant: int) -> None:
-    """Add what has not been found before: variants have most in common.
+def _add_new(
+    findings: Findings, new: Findings, chosen: StudyVariants, variant: int, told: set[Finding]
+) -> None:
+    """Add what has not been told before: variants have most in common."""
+    placed = Findings(names=new.names)
+    kinds = {}
+    for finding in new:
+        own = _placed(finding, chosen, variant)
+        kinds[finding.kind] = own.kind
+        if own not in told:
+            told.add(own)
+            placed.add(own)
+    for kind, own_kind in kinds.items():
+        # What was not spelled out is counted once: by the first variant that has any of its kind.
+        if own_kind not in findings.more:
+            placed.more[own_kind] += new.more[kind] - sum(one.kind == kind for one in new)
+    findings.extend(placed)
 
-    What is said of the study file is said of the variants file where a variant has it from there.
-    """
+
+def _placed(finding: Finding, chosen: StudyVariants, variant: int) -> Finding:
+    """What is said of the study file, said of the variants file where the variant has it there."""
     crossing = chosen.crossing
     own = {
         setting.key: setting.alternatives[choice]
@@ -152,30 +169,21 @@ def _add_new(findings: Findings, new: Findings, chosen: StudyVariants, variant: 
         )
         if choice != setting.base
     }
+    key = finding.where if finding.path == chosen.studies[0].shown else ""
+    if key in own:
+        return replace(finding, path=chosen.shown, line=_line(chosen, variant, key))
     files = {json.loads(value): key for key, value in own.items() if key.endswith(".notes")}
-    placed = Findings(names=new.names)
-    for finding in new:
-        key = finding.where if finding.path == chosen.studies[0].shown else ""
-        if key in own:
-            placed.add(replace(finding, path=chosen.shown, line=_line(chosen, variant, key)))
-        elif finding.path in files and finding.line is None:
-            key = files[finding.path]
-            placed.add(
-                replace(
-                    finding,
-                    path=chosen.shown,
-                    line=_line(chosen, variant, key),
-                    where=key,
-                    found=finding.path,
-                    fix=finding.fix.replace("study file", "variants file"),
-                )
-            )
-        else:
-            placed.add(finding)
-    for kind in [kind for kind in placed.more if kind in findings.more]:
-        del placed.more[kind]
-        placed.items = [finding for finding in placed.items if finding.kind != kind]
-    findings.extend(placed)
+    if finding.path not in files or finding.line is not None:
+        return finding
+    key = files[finding.path]
+    return replace(
+        finding,
+        path=chosen.shown,
+        line=_line(chosen, variant, key),
+        where=key,
+        found=finding.path,
+        fix=finding.fix.replace("study file", "variants file"),
+    )
 
 
 def _line(chosen: StudyVariants, variant: int, key: str) -> int | None:

@@ -128,21 +128,22 @@ class VariantRun:
 
     def _warn(self, results: VariantResults) -> None:
         """Tell of variants that leave nothing, and of settings that do nothing."""
-        for what, kept in (
-            ("trial", [own.trials_kept for own in results.losses]),
-            ("fixation", [own.fixations_kept for own in results.losses]),
+        losses = results.losses
+        without = [variant for variant, own in enumerate(losses) if not own.trials_kept]
+        bare = [variant for variant, own in enumerate(losses) if not own.fixations_kept]
+        for what, empty in (
+            ("trial", without),
+            ("fixation", [variant for variant in bare if variant not in without]),
         ):
-            empty = [variant for variant, count in enumerate(kept) if not count]
             if empty:
                 first = variant_words(self.crossing, empty[0])
                 self.findings.warning(
-                    f"{counted(len(empty), 'variant')} of {len(kept):,} "
+                    f"{counted(len(empty), 'variant')} of {len(losses):,} "
                     f"{'leaves' if len(empty) == 1 else 'leave'} no {what} of any reader",
                     path=self.chosen.shown,
                     found=f"variant {empty[0] + 1}: {first}",
                     fix="leave out the alternative that takes everything",
                 )
-                break
         if not self.crossing.full:
             return
         for place, setting in enumerate(self.crossing.settings):

@@ -70,9 +70,9 @@ def vary(
     chosen = _loaded(variants, study)
     path = Path(variants)
     target = Path(into) if into is not None else path.with_name(path.stem)
-    refuse_key_inside(study, target)
-    _refuse_build(target)
     try:
+        refuse_key_inside(study, target)
+        _refuse_build(target)
         return _varied(study, chosen, target, workers, progress, started)
     except DataError as wrong:
         raise DataError(_for_variants(wrong.findings)) from wrong

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Collection, Mapping
+from collections.abc import Collection, Iterator, Mapping
 from dataclasses import dataclass, field
 from pathlib import Path, PurePosixPath, PureWindowsPath
 from typing import Any
@@ -197,19 +197,31 @@ def load_study(path: str | Path, *, known_outcomes: Collection[str] | None = Non
 
 def _refuse_variants(data: Mapping[str, Any], lines: Mapping[KeyPath, int], shown: str) -> None:
     """Refuse a variants file in the place of a study file."""
-    of_variants = [key for key in ("variants", "comparisons") if key in data]
+    tables = ("screening", "regions", "measures", "lines")
+    named = [(key,) for key in ("variants", "comparisons") if key in data]
+    listed = [path for key in tables for path in _alternatives(data.get(key), (key,))]
+    of_variants = [*named, *listed]
     if "logs" in data or not of_variants:
         return
     findings = Findings()
     findings.error(
         "this is a variants file",
         path=shown,
-        line=nearest_line(lines, of_variants[:1]),
-        where=of_variants[0],
+        line=nearest_line(lines, of_variants[0]),
+        where=dotted(of_variants[0]),
         expected="a study file",
         fix="name the study file first, then the variants file",
     )
     raise StudyError(findings)
+
+
+def _alternatives(value: Any, path: KeyPath) -> Iterator[KeyPath]:
+    """Keys with lists that are not all of texts: no decision of a study has such a value."""
+    if isinstance(value, Mapping):
+        for key, inner in value.items():
+            yield from _alternatives(inner, (*path, key))
+    elif isinstance(value, list) and not all(isinstance(one, str) for one in value):
+        yield path
 
 
 def _in_file_order(problems: list[Problem], source: Source) -> Findings:

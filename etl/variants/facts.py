@@ -99,7 +99,8 @@ class Compared:
         both of the middle axis are the same.
     difference, low, high : (V,) float64 arrays
         Log-odds of the level less those of the reference, with a 95 % interval; NaN where one of
-        the two has no value. Without factors the rate, from 0 to 1, with its interval.
+        the two has no value, or all values of both are the same. Without factors the rate, from 0
+        to 1, with its interval; NaN where there is no value.
     corrected : (V,) bool array
         Where 0.5 was added to each of the four counts, since one was 0.
     """

@@ -45,7 +45,7 @@ def _passage(summary: Summary, crossing: Crossing) -> Iterator[str]:
     compared, total = summary.compared, len(crossing)
     factor = compared.comparison.factor
     yield f"{_compared(compared.comparison)} in {_varied(crossing)}."
-    lacking = "since one of the two conditions has none" if factor else "since there are no data"
+    lacking = f"since {_lacking(summary)}"
     if summary.without == total:
         where = f" in {any_of(total)}" if total > 1 else ""
         yield f"The {_what(summary)} has no value{where}, {lacking}."
@@ -86,6 +86,20 @@ def _compared(comparison: Comparison) -> str:
         f"The rates of {where} with {comparison.factor} {comparison.level} and with "
         f"{comparison.reference} were compared"
     )
+
+
+def _lacking(summary: Summary) -> str:
+    """Why there is no number in those variants that have none."""
+    compared = summary.compared
+    if not compared.comparison.factor:
+        return "there are no data"
+    values = compared.counts[np.isnan(compared.difference)].sum(axis=-1)
+    empty = (values == 0).any(axis=-1)
+    if empty.all():
+        return "one of the two conditions has none"
+    if empty.any():
+        return "one of the two conditions has none, or all values of both are the same"
+    return "all values of both conditions are the same"
 
 
 def _what(summary: Summary) -> str:
@@ -169,26 +183,39 @@ def _signs(summary: Summary, crossing: Crossing) -> Iterator[str]:
 
 
 def _clears(summary: Summary, crossing: Crossing) -> Iterator[str]:
-    """On which decision it hangs whether the interval leaves out 0, where it hangs on any."""
+    """On which decision it hangs where the interval lies, where it hangs on any."""
     if summary.clears is None:
         return
-    cleared = turning(summary.side, crossing)
+    cleared, sides = turning(summary.side, crossing), summary.side
+    # Where intervals lie on both sides of 0, not only whether they leave it out hangs on something.
+    around, both = bool((sides == 0).any()), {-1.0, 1.0} <= {*sides.tolist()}
+    what = "Whether the interval leaves out 0"
+    if both and around:
+        what += ", and on which side it lies,"
+    elif both:
+        what = "On which side of 0 the interval lies"
     keys = short_keys(crossing.settings)
     most = np.flatnonzero(cleared == cleared.max()).tolist()
     if len(most) > 1:
-        who = listed([keys[place] for place in most])
-        yield f"Whether the interval leaves out 0 hangs equally on {who}."
+        yield f"{what} hangs equally on {listed([keys[place] for place in most])}."
         return
     parts = []
     for place, alternative in enumerate(crossing.settings[summary.clears].alternatives):
-        own = summary.side[crossing.choices[:, summary.clears] == place]
-        there = int((~np.isnan(own)).sum())
-        some = int((np.abs(own) > 0).sum())
-        if there:
-            parts.append(f"in {some:,} of {there:,} with {alternative_words(alternative)}")
+        own = sides[crossing.choices[:, summary.clears] == place]
+        below, inside, above = (int((own == side).sum()) for side in SIGNS)
+        total = below + inside + above
+        some = f"{above:,}" if both else f"{below + above:,}"
+        if both and around:
+            some = f"above 0 in {above:,} and below 0 in {below:,}"
+        if total:
+            parts.append(f"{some} of {total:,} with {alternative_words(alternative)}")
     how = "most on" if np.count_nonzero(cleared) > 1 else "on"
-    who = keys[summary.clears]
-    yield f"Whether the interval leaves out 0 hangs {how} {who}: it does {listed(parts)}."
+    told = f"it does {listed([f'in {part}' for part in parts])}"
+    if both and around:
+        told = f"it lies {'; '.join(parts)}"
+    elif both:
+        told = f"it lies above 0 {listed([f'in {part}' for part in parts])}"
+    yield f"{what} hangs {how} {keys[summary.clears]}: {told}."
 
 
 def _decides(summary: Summary, crossing: Crossing) -> Iterator[str]:

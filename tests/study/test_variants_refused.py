@@ -42,9 +42,35 @@ def study(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Study:
         ),
         pytest.param(
             "[trials]\nfewest_fixations = [3]",
-            f"variants.toml:1: trials: this key may not vary; expected {MAY_VARY}\n"
-            "    fix: remove it, or move it to [screening] if that is meant",
-            id="a table that is another one's namesake",
+            f"variants.toml:2: trials.fewest_fixations: unknown key; expected {MAY_VARY}\n"
+            "    fix: it belongs in [screening.trials]",
+            id="a key in a table that is another one's namesake",
+        ),
+        pytest.param(
+            '[trials]\nfactors = ["cue"]\nfewest_fixations = [3]\nnotes = ["a.csv"]\n\nfile = "t"',
+            f"variants.toml:2: trials.factors: this key may not vary; expected {MAY_VARY}\n"
+            "    fix: remove it; it is the same in all variants\n"
+            f"variants.toml:3: trials.fewest_fixations: unknown key; expected {MAY_VARY}\n"
+            "    fix: it belongs in [screening.trials]\n"
+            f"variants.toml:4: trials.notes: unknown key; expected {MAY_VARY}\n"
+            "    fix: it belongs in [screening.trials] or [screening.participants]\n"
+            f"variants.toml:6: trials.file: unknown key; expected {MAY_VARY}\n"
+            "    fix: remove it",
+            id="a table of the study repeated: each key at its line",
+        ),
+        pytest.param(
+            '[[variants]]\nname = "a"\n[variants.output]\nfolder = "b"\nformats = ["csv"]',
+            f"variants.toml:4: output.folder: this key may not vary; expected {MAY_VARY}\n"
+            "    fix: remove it; it is the same in all variants\n"
+            f"variants.toml:5: output.formats: this key may not vary; expected {MAY_VARY}\n"
+            "    fix: remove it; it is the same in all variants",
+            id="a table of the study in a named variant",
+        ),
+        pytest.param(
+            "[output]\n",
+            f"variants.toml:1: output: this key may not vary; expected {MAY_VARY}\n"
+            "    fix: remove it; it is the same in all variants",
+            id="a table of the study without keys",
         ),
         pytest.param(
             "[screening.fixations]\nunder_m = [60]",
@@ -709,6 +735,55 @@ def test_folder_is_no_variants_file(study: Study, tmp_path: Path) -> None:
         "    fix: name the variants file in it, for example variants.toml\n"
         "1 problem; nothing was written"
     )
+
+
+def test_study_file_is_no_variants_file(study: Study) -> None:
+    """The two files in the wrong order: one finding, and nothing of the keys in them."""
+    assert said_of(STUDY, study) == (
+        f"variants.toml:{STUDY.split('[logs]')[0].count(chr(10)) + 1}: logs: this is a study file; "
+        "expected a variants file, which says nothing of logs\n"
+        "    fix: name the study file first, then the variants file"
+    )
+
+
+@pytest.mark.parametrize(
+    ("written", "line", "key"),
+    [
+        ('title = "v"\n[[variants]]\nname = "a"\nmeasures.outside = "ignore"', 2, "variants"),
+        ('[measures]\noutside = ["ignore"]\n[[comparisons]]\noutcome = "x"', 3, "comparisons"),
+        (
+            (
+                '[screening.trials]\nno_first_pass_on = ["x"]\n[screening.fixations]\n'
+                "over_ms = 800\nunder_ms = [false, 80]"
+            ),
+            5,
+            "screening.fixations.under_ms",
+        ),
+    ],
+)
+def test_variants_file_is_no_study_file(
+    written: str, line: int, key: str, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Told as soon as it is loaded, in place of all keys that a study lacks."""
+    monkeypatch.chdir(tmp_path)
+    with pytest.raises(StudyError) as caught:
+        study_of(written)
+    assert str(caught.value) == (
+        f"study.toml:{line}: {key}: this is a variants file; expected a study file\n"
+        "    fix: name the study file first, then the variants file\n"
+        "1 problem; nothing was written"
+    )
+
+
+def test_study_file_that_lacks_its_logs_is_taken_for_one(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """A list of texts is the value of a rule; what is missing is told."""
+    monkeypatch.chdir(tmp_path)
+    with pytest.raises(StudyError) as caught:
+        study_of('[screening.trials]\nno_first_pass_on = ["verb", "noun"]\n')
+    assert "logs: this table is missing" in str(caught.value)
+    assert "variants" not in str(caught.value)
 
 
 def test_all_is_told_at_once(study: Study) -> None:

@@ -15,12 +15,13 @@ COUNTS = st.integers(0, 5) | st.integers(0, 100_000)
 TABLES = st.tuples(COUNTS, COUNTS, COUNTS, COUNTS)
 
 
-def has_values(table: tuple[int, int, int, int]) -> bool:
-    """Whether both conditions have any value."""
-    return sum(table[:2]) > 0 and sum(table[2:]) > 0
+def has_difference(table: tuple[int, int, int, int]) -> bool:
+    """Whether both conditions have any value, and there are zeros and ones."""
+    a, b, c, d = table
+    return a + b > 0 and c + d > 0 and a + c > 0 and b + d > 0
 
 
-@given(st.lists(TABLES.filter(has_values), min_size=1, max_size=20))
+@given(st.lists(TABLES.filter(has_difference), min_size=1, max_size=20))
 def test_difference_is_that_of_another_implementation(tables: list[tuple[int, ...]]) -> None:
     """Value and interval equal those of statsmodels, given 0.5 more where a count is 0."""
     theirs = pytest.importorskip("statsmodels.stats.contingency_tables")
@@ -67,7 +68,7 @@ def test_equal_odds_have_no_sign(table: tuple[int, ...], first: int, second: int
     assert compare(counts)[0] == 0.0
 
 
-@given(TABLES.filter(has_values))
+@given(TABLES.filter(has_difference))
 def test_sign_is_that_of_the_odds(table: tuple[int, int, int, int]) -> None:
     """Which odds are larger is settled in whole numbers, so the sign must agree with that."""
     a, b, c, d = (2 * count + (0 in table) for count in table)
@@ -86,12 +87,31 @@ def test_turning_conditions_or_values_round_turns_the_sign(table: tuple[int, ...
         assert other[3] == corrected
 
 
-@pytest.mark.parametrize("table", [(0, 0, 3, 4), (3, 4, 0, 0), (0, 0, 0, 0)])
-def test_condition_without_values_has_no_difference(table: tuple[int, ...]) -> None:
-    """Nothing is added where a condition has no value at all."""
+@pytest.mark.parametrize(
+    "table",
+    [
+        *((0, 0, 3, 4), (3, 4, 0, 0), (0, 0, 0, 0)),
+        *((3, 0, 40, 0), (40, 0, 3, 0), (7, 0, 7, 0), (0, 3, 0, 40), (0, 1, 0, 1)),
+    ],
+)
+def test_where_nothing_is_known_there_is_no_difference(table: tuple[int, ...]) -> None:
+    """Nothing is added where a condition has no value, or all values of both are the same.
+
+    With 0.5 more in each count, 3 zeros against 40 would differ by log(3.5 x 0.5 / (0.5 x 40.5)) =
+    -2.45: a sign that only tells which condition has more trials.
+    """
     difference, low, high, corrected = compare(np.reshape(table, (2, 2)))
     assert np.isnan([difference, low, high]).all()
     assert not corrected
+
+
+@given(TABLES)
+def test_every_other_table_has_a_difference(table: tuple[int, int, int, int]) -> None:
+    """A number and both ends of its interval, or none of the three."""
+    own = compare(np.reshape(table, (2, 2)))
+    expected = [has_difference(table)] * 3
+    assert np.isfinite(own[:3]).tolist() == expected
+    assert own[3] == (has_difference(table) and 0 in table)
 
 
 @given(st.lists(TABLES, min_size=6, max_size=6))
@@ -129,14 +149,16 @@ def test_rates_are_those_of_another_implementation(zeros: int, ones: int) -> Non
 
 def test_comparison_without_factor_is_a_rate() -> None:
     """Without levels to compare the rate itself is looked at, and nothing is added to counts."""
-    counts = np.array([[[5, 5], [5, 5]], [[4, 0], [4, 0]]])
+    counts = np.array([[[5, 5], [5, 5]], [[4, 0], [4, 0]], [[4, 0], [2, 2]]])
     own = compared(RATE, counts)
-    assert own.difference.tolist() == [0.5, 0.0]
+    assert own.difference.tolist() == [0.5, 0.0, 0.0]
     assert (own.low[0], own.high[0]) == wilson_interval(5, 10)
-    assert own.corrected.tolist() == [False, False]
+    assert own.corrected.tolist() == [False, False, False]
     both = compared(FIT, counts)
-    assert both.difference.tolist() == [0.0, 0.0]
-    assert both.corrected.tolist() == [False, True]
+    # 4.5 zeros and 0.5 ones against 2.5 of each: log 9.
+    expected = [0.0, np.nan, np.log(9)]
+    assert both.difference == pytest.approx(expected, abs=1e-12, nan_ok=True)
+    assert both.corrected.tolist() == [False, False, True]
 
 
 def test_what_are_no_counts_is_refused() -> None:

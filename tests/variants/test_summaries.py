@@ -74,6 +74,14 @@ def test_study_without_a_sign_has_none_that_holds() -> None:
     assert own.turns == 0
 
 
+def test_study_whose_values_are_all_the_same_has_no_sign() -> None:
+    """No one in either condition, though in one of them many more trials."""
+    own = summary_of([(50, 0, 3, 0), (50, 1, 3, 1), (50, 2, 3, 1)], crossed([3]))
+    assert (own.without, own.same_sign, own.clear, own.positive, own.holds) == (1, 0, 0, 2, False)
+    assert (own.shares, own.matters, own.turns) == ((), None, None)
+    assert own.order.tolist()[-1] == 0
+
+
 def test_rates_have_no_sign() -> None:
     """Shares are there, but nothing is said of signs, not even where a rate is 0."""
     tables = [(5, 5, 5, 5), (9, 1, 9, 1), (4, 6, 4, 6), (10, 0, 10, 0)]
@@ -93,7 +101,9 @@ WAYS = {
     "narrow, but over the edge": [(500, 500, 440, 560), (500, 500, 460, 540)],
     "turns around 0": [(50, 50, 49, 51), (50, 50, 51, 49)],
     "lacking": [(50, 50, 40, 60), (0, 0, 40, 60)],
+    "lacking, decided": [(50, 50, 10, 90), (50, 50, 49, 51), (0, 0, 40, 60)],
     "lacking, sure": [(50, 50, 10, 90), (0, 0, 40, 60)],
+    "all the same": [(50, 50, 40, 60), (50, 0, 20, 0)],
     "lacking throughout": [(0, 0, 40, 60), (0, 0, 40, 60)],
 }
 
@@ -105,10 +115,11 @@ def test_decided_comparisons_come_first_and_those_that_lack_values_last(backward
     The differences of "wide" and "wide, unsure" go over much the same range, but the interval of
     the latter is some three times as wide, since it has a tenth of the trials, and includes 0 in
     both variants. That of "narrow, but over the edge" is 0.24 ± 0.18, then 0.16 ± 0.18. The sign of
-    "turns around 0" turns, but from -0.04 to 0.04 only, with intervals of ± 0.55.
+    "turns around 0" turns, but from -0.04 to 0.04 only, with intervals of ± 0.55. One variant with
+    a difference decides nothing, whether its interval leaves out 0 or not.
     """
     names = sorted(WAYS, reverse=backwards)
-    summaries = [summary_of(WAYS[name], crossed([2])) for name in names]
+    summaries = [summary_of(WAYS[name], crossed([len(WAYS[name])])) for name in names]
     chosen_first = [names[place] for place in leading(summaries, 5)]
     assert chosen_first == [
         *("wide", "narrow, but over the edge"),
@@ -116,8 +127,9 @@ def test_decided_comparisons_come_first_and_those_that_lack_values_last(backward
     ]
     everything = [names[place] for place in leading(summaries, 99)]
     assert everything[:5] == chosen_first
-    assert everything[5] == "lacking, sure"
-    assert {*everything[6:]} == {"lacking", "lacking throughout"}
+    assert everything[5] == "lacking, decided"
+    rest = ("lacking", "lacking, sure", "all the same", "lacking throughout")
+    assert everything[6:] == [name for name in names if name in rest]
     assert leading(summaries, 0) == leading(summaries, -1) == leading([], 3) == ()
 
 

@@ -21,6 +21,16 @@ from tests.vary.otherwise import few_readers
 FACTORS = {"cue": ["early", "late"], "frame": ["plain", "odd", "rare"], "task": ["reading"]}
 
 
+#: How far below the first line of a comparison each key of it stands.
+BELOW = {"region": 20, "factor": 30, "level": 40}
+
+
+def line_of(table: str, number: int, key: str) -> int:
+    """The line of a key of a comparison, the first of which stands in line 7."""
+    assert table == "comparisons"
+    return 7 + number + BELOW[key]
+
+
 def named(
     *wanted: tuple[str, str, str], regions: tuple[str, ...] = ("verb", "noun"), read: str = "verb"
 ) -> list[tuple[str, str, str, str]]:
@@ -29,7 +39,7 @@ def named(
         NamedComparison("went_back", region, factor, level, line)
         for line, (region, factor, level) in enumerate(wanted, start=7)
     )
-    chosen: Any = SimpleNamespace(shown="variants.toml", comparisons=own)
+    chosen: Any = SimpleNamespace(shown="variants.toml", comparisons=own, line_of=line_of)
     return named_comparisons(chosen, design_of({}, FACTORS, regions), read.split())
 
 
@@ -49,7 +59,7 @@ def test_level_may_be_left_out_where_there_are_two() -> None:
     ]
     assert named(("verb", "", "")) == [("went_back", "verb", "", "")]
     assert (
-        "variants.toml:7: comparisons.level: frame has 3 levels: say which one is compared; "
+        "variants.toml:47: comparisons.level: frame has 3 levels: say which one is compared; "
         "expected one of odd, rare\n    fix: correct level"
     ) in told(("verb", "frame", ""))
 
@@ -63,14 +73,14 @@ def test_all_that_is_wrong_is_told_at_once() -> None:
         ("x", "cue", "lat"),
     )
     for line in (
-        "variants.toml:7: comparisons.region: no text has a region of this name",
+        "variants.toml:27: comparisons.region: no text has a region of this name",
         'found "vreb", expected one of verb, noun',
         'did you mean "verb"?',
-        "variants.toml:8: comparisons.level: frame has no level of this name that could be",
+        "variants.toml:48: comparisons.level: frame has no level of this name that could be",
         'found "plain", expected one of odd, rare',
-        "variants.toml:9: comparisons.factor: task has one level only, so there is nothing to",
-        "variants.toml:10: comparisons.region: no text has a region of this name",
-        "variants.toml:10: comparisons.level: cue has no level of this name that could be compared",
+        "variants.toml:39: comparisons.factor: task has one level only, so there is nothing to",
+        "variants.toml:30: comparisons.region: no text has a region of this name",
+        "variants.toml:50: comparisons.level: cue has no level of this name that could be compared",
         'found "lat", expected one of late',
         'did you mean "late"?',
     ):
@@ -81,7 +91,7 @@ def test_all_that_is_wrong_is_told_at_once() -> None:
 def test_region_that_nobody_read_is_told() -> None:
     """The texts have it, but no trial does."""
     text = told(("noun", "cue", "late"))
-    assert "variants.toml:7: comparisons.region: no trial has read a text with this region" in text
+    assert "variants.toml:27: comparisons.region: no trial has read a text with this region" in text
     assert 'found "noun"' in text
     assert named(("noun", "cue", "late"), read="noun verb")
 
@@ -90,7 +100,7 @@ def test_regions_that_are_counted_together_cannot_be_named() -> None:
     """From 21 on; outcomes of trials can."""
     many = tuple(f"word {n}" for n in range(21))
     text = told(("word 1", "cue", "late"), regions=many)
-    assert "with more than 20 regions all are counted together" in text
+    assert "variants.toml:27: comparisons.region: with more than 20 regions all are count" in text
     assert 'found "word 1"' in text
     assert named(("", "cue", "late"), regions=many) == [("went_back", "", "cue", "late")]
     few = tuple(f"w{n}" for n in range(20))
@@ -141,6 +151,7 @@ def test_command_tells_of_a_region_that_nobody_read(tmp_path: Path) -> None:
     )
     result = CliRunner().invoke(main, ["vary", str(study), str(variants)], catch_exceptions=False)
     assert result.exit_code == 2
-    assert "variants.toml:3" in result.output
+    # The line of the region, not that of its comparison.
+    assert "variants.toml:5: comparisons.region: " in result.output
     assert "no trial has read a text with this region" in result.output
     assert not study.with_name("variants").exists()

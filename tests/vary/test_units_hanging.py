@@ -12,6 +12,7 @@ from etl.export.changed_cells import LEFT_OUT, NO_VALUE
 from etl.session.outcome_work import Cells
 from etl.session.variant_hanging import (
     MOST_OFFERED,
+    MOST_UNTOLD,
     HangingTrial,
     Hangs,
     ReaderHangs,
@@ -42,16 +43,23 @@ def found_in(own: Made) -> tuple[list[ReaderHangs], list[HangingTrial]]:
     """What is found of the readers."""
     changed = {name: changes_of(own.table, name, own.crossing)[0] for name in BINARY}
     using = own.crossing, pairs_in_all(own.crossing)
-    return readers_hanging(own.readers, own.table.universe, changed, using)  # type: ignore[arg-type]
+    universe = own.table.universe
+    there = np.array([is_there(own, at) for at in range(len(universe))], dtype=bool)
+    return readers_hanging(own.readers, universe, changed, there, using)  # type: ignore[arg-type]
+
+
+def is_there(own: Made, at: int) -> bool:
+    """Whether any variant keeps the trial of a cell."""
+    return any(row[at] != LEFT_OUT for name in BINARY for row in own.states[name])
 
 
 def cells_in(own: Made, trials: Sequence[int]) -> list[list[float]]:
-    """All states of each binary cell of some trials."""
+    """All states of each binary cell of some trials that is there in any variant."""
     return [
         [row[at] for row in own.states[name]]
         for name in BINARY
         for at in range(len(own.table.universe))
-        if own.table.universe.cells.trial[at] in trials
+        if own.table.universe.cells.trial[at] in trials and is_there(own, at)
     ]
 
 
@@ -70,34 +78,32 @@ def hangs_of(own: Made, trials: Sequence[int]) -> Hangs:
     )
 
 
-def score(own: Made, trials: Sequence[int]) -> float:
-    """The largest chance that a cell changes when a setting is chosen anew, or a mean count."""
+def scores_of(own: Made, trials: Sequence[int]) -> dict[int, float]:
+    """By setting the chance that a cell changes when it is chosen anew; or a mean count, for -1."""
     hangs = hangs_of(own, trials)
-    if not hangs.of:
-        return 0.0
     if not own.crossing.full:
-        return hangs.differing / hangs.of
+        return {-1: hangs.differing / max(hangs.of, 1)}
     every = zip(hangs.pairs, pairs_in_all(own.crossing), strict=True)
-    return max(pairs / (hangs.of * whole) for pairs, whole in every)
+    return {at: pairs / (max(hangs.of, 1) * whole) for at, (pairs, whole) in enumerate(every)}
 
 
 def variant_to_show(own: Made, trial: int, setting: int) -> int:
-    """The first of those in which most cells change, by one setting only where any does."""
+    """The first of those in which most cells change.
+
+    Of those that differ in the setting only, where a cell changes in any; else of those that differ
+    in it and others; else of all.
+    """
     cells, base = cells_in(own, [trial]), own.crossing.base
     rows = own.crossing.choices.tolist()
     differing = [sum(cell[v] != cell[base] for cell in cells) for v in range(len(rows))]
-    near = [
-        v
-        for v in range(len(rows))
-        if differing[v]
-        and setting >= 0
-        and all(
-            a == b
-            for at, (a, b) in enumerate(zip(rows[v], rows[base], strict=True))
-            if at != setting
-        )
+    apart = [
+        {at for at, (a, b) in enumerate(zip(row, rows[base], strict=True)) if a != b}
+        for row in rows
     ]
-    return max(near or range(len(rows)), key=lambda v: (differing[v], -v))
+    changing = [v for v in range(len(rows)) if differing[v]]
+    anew = [v for v in changing if setting in apart[v]]
+    alone = [v for v in anew if len(apart[v]) == 1]
+    return max(alone or anew or changing, key=lambda v: (differing[v], -v))
 
 
 @settings(deadline=None)
@@ -107,39 +113,43 @@ def variant_to_show(own: Made, trial: int, setting: int) -> int:
 @example(SOME[2])
 @example(SOME[3])
 def test_hanging_is_that_of_a_loop(own: Made) -> None:
-    """Every reader in order, the trial of each that hangs most, and those that are offered."""
+    """Every reader in order, the trial of each, and those that are offered for each setting.
+
+    The trial of a reader hangs most on the setting that the reader hangs most on.
+    """
     readers, offered = found_in(own)
     starts = own.readers.trial_starts.tolist()
-    scores = [score(own, [trial]) for trial in own.readers.trials]
+    scores = [scores_of(own, [trial]) for trial in own.readers.trials]
     assert [reader.participant for reader in readers] == [*own.readers.participants]
     for number, reader in enumerate(readers):
         trials = range(starts[number], starts[number + 1])
         assert reader.hangs == hangs_of(own, trials)
-        if any(scores[trial] > 0 for trial in trials):
-            best = max(trials, key=lambda trial: (scores[trial], -trial))
+        of_reader = scores_of(own, trials)
+        setting = max(of_reader, key=lambda at: (of_reader[at], -at))
+        if of_reader[setting] > 0:
+            best = max(trials, key=lambda trial: (scores[trial][setting], -trial))
             assert reader.most is not None
-            assert_told(own, best, reader.most)
+            assert_told(own, best, setting, reader.most)
         else:
             assert reader.most is None
-    best_first = sorted(own.readers.trials, key=lambda trial: -scores[trial])
-    expected = [trial for trial in best_first if scores[trial] > 0][:MOST_OFFERED]
+    expected = []
+    for setting in range(len(own.crossing.settings)) if own.crossing.full else (-1,):
+        best_first = sorted(own.readers.trials, key=lambda trial: -scores[trial][setting])
+        hanging = [trial for trial in best_first if scores[trial][setting] > 0]
+        most = MOST_OFFERED if own.crossing.full else MOST_UNTOLD
+        expected += [(trial, setting) for trial in hanging[:most]]
     assert len(offered) == len(expected)
-    for trial, told in zip(expected, offered, strict=True):
-        assert_told(own, trial, told)
+    for (trial, setting), told in zip(expected, offered, strict=True):
+        assert_told(own, trial, setting, told)
 
 
-def assert_told(own: Made, trial: int, told: HangingTrial) -> None:
+def assert_told(own: Made, trial: int, setting: int, told: HangingTrial) -> None:
     """One trial: whose, how much, on what, and what changes in the variant that is shown."""
     universe, base = own.table.universe, own.crossing.base
     reader = int(own.readers.reader_of_trial[trial])
     assert told.participant == own.readers.participants[reader]
     assert told.row == trial - own.readers.trial_starts[reader]
     assert told.hangs == hangs_of(own, [trial])
-    setting = -1
-    if own.crossing.full:
-        every = zip(told.hangs.pairs, pairs_in_all(own.crossing), strict=True)
-        shares = [pairs / whole for pairs, whole in every]
-        setting = shares.index(max(shares))
     assert told.setting == setting
     assert told.variant == variant_to_show(own, trial, setting)
     assert [*told.changes] == [
@@ -180,37 +190,85 @@ def test_variant_that_is_shown_differs_in_the_setting_only() -> None:
     """
     own = of_states(crossed([2, 2]), [[0, 0, 1, NO_VALUE], [0, 0, 0, 1]])
     (reader,), offered = found_in(own)
-    assert [one.row for one in offered] == [0, 1]
-    assert (offered[0].setting, offered[0].variant) == (0, 2)
+    assert [(one.row, one.setting, one.variant) for one in offered] == [
+        *((0, 0, 2), (1, 0, 3)),
+        # The second setting alone changes nothing in the study, but with the first it does.
+        *((0, 1, 3), (1, 1, 3)),
+    ]
     assert offered[0].changes == (("went_back", 0, 0, 1),)
-    # Only both together change the second trial: no variant beside the study shows it.
-    assert (offered[1].setting, offered[1].variant) == (0, 3)
     assert reader.most == offered[0]
+    # One variant alone is not as the study: the other settings, chosen anew, take it back.
+    alone = of_states(crossed([2, 2, 2]), [[0, 0, 0, 0, 1, 0, 0, 0]])
+    _, offered = found_in(alone)
+    assert [(one.setting, one.variant) for one in offered] == [(0, 4), (1, 4), (2, 4)]
 
 
 def test_equal_trials_are_offered_in_their_order_and_so_many_only() -> None:
-    """More hang than are offered; the first are taken, and of the reader the very first."""
+    """More hang than are offered; the first are taken, and of the reader the very first.
+
+    The last two trials hang on the second setting only, and twice as much as the others.
+    """
     own = of_states(crossed([2]), [[0, 0], *[[0, 1]] * (MOST_OFFERED + 3)])
     (reader,), offered = found_in(own)
     assert [one.row for one in offered] == [*range(1, MOST_OFFERED + 1)]
     assert reader.most == offered[0]
     later = of_states(crossed([2, 2]), [*[[0, 0, 0, 1]] * MOST_OFFERED, [0, 1, 0, 1], [0, 1, 0, 1]])
     (reader,), offered = found_in(later)
-    expected = [MOST_OFFERED, MOST_OFFERED + 1, *range(MOST_OFFERED - 2)]
-    assert [one.row for one in offered] == expected
-    assert reader.most is not None
-    assert reader.most.row == MOST_OFFERED
+    assert [(one.setting, one.row) for one in offered] == [
+        *((0, row) for row in range(MOST_OFFERED)),
+        *((1, row) for row in (MOST_OFFERED, MOST_OFFERED + 1, *range(MOST_OFFERED - 2))),
+    ]
+    # The reader hangs most on the second.
+    assert reader.most == offered[MOST_OFFERED]
+    assert (reader.most.row, reader.most.setting) == (MOST_OFFERED, 1)
+
+
+def test_trial_of_a_reader_is_of_the_setting_that_the_reader_hangs_on() -> None:
+    """Though another trial hangs more on the other setting.
+
+    The first trial changes in both pairs for the second setting; the two others in both for the
+    first.
+    """
+    own = of_states(crossed([2, 2]), [[0, 1, 0, 1], [0, 0, 1, 1], [0, 0, 1, 1]])
+    (reader,), offered = found_in(own)
+    assert [(one.setting, one.row, one.variant) for one in offered] == [
+        *((0, 1, 2), (0, 2, 2), (1, 0, 1)),
+    ]
+    assert reader.most == offered[0]
+
+
+def test_cells_that_no_variant_has_do_not_count() -> None:
+    """Of three trials of one region one is left out in all variants, and one in half of them."""
+    gone = [LEFT_OUT] * 4
+    own = of_states(crossed([2, 2]), [gone, [0, LEFT_OUT, 0, LEFT_OUT], [0, 0, 0, 0]])
+    for name in BINARY:
+        for variant in range(4):
+            own.table.states[name][variant, 0] = LEFT_OUT
+            own.states[name][variant][0] = LEFT_OUT
+    (reader,), offered = found_in(own)
+    # Two trials of one region and two outcomes; one cell changes in two pairs of variants.
+    assert reader.hangs == Hangs((0, 2), 2, 1, 4)
+    assert score_of(reader.hangs, (2, 2)) == (2 / (4 * 2), 1)
+    assert [(one.row, one.setting, one.hangs.of) for one in offered] == [(1, 1, 2)]
+    nothing = of_states(crossed([2, 2]), [gone])
+    for name in BINARY:
+        nothing.table.states[name][:] = LEFT_OUT
+        nothing.states[name][:] = [[float(LEFT_OUT)] for _ in range(4)]
+    assert found_in(nothing) == ([ReaderHangs("R1", Hangs((0, 0), 0, 0, 0), None)], [])
 
 
 def test_best_trial_of_each_reader_is_there_though_it_is_not_offered() -> None:
-    """Twelve trials of others hang more; the reader's own is told all the same."""
+    """As many of others hang more as are offered; the reader's own is told all the same."""
     own = of_states(crossed([2, 2]), [[0, 0, 0, 1], [0, 0, 0, 0], *[[0, 1, 0, 1]] * MOST_OFFERED])
     readers = Readers(("R1", "R2"), np.array([0, 2, MOST_OFFERED + 2]), own.readers.trials)
     (first, second), offered = found_in(Made(own.crossing, readers, own.table, own.states))
-    assert {one.participant for one in offered} == {"R2"}
+    # The others' trials hang on the second setting only: for the first one R1's own is offered.
+    assert [(one.setting, one.participant) for one in offered] == [
+        *((0, "R1"), *[(1, "R2")] * MOST_OFFERED),
+    ]
     assert first.most is not None
     assert (first.most.participant, first.most.row, first.most.variant) == ("R1", 0, 3)
-    assert second.most == offered[0]
+    assert second.most == offered[1]
     assert second.most.row == 0
 
 
@@ -222,6 +280,9 @@ def test_named_variants_tell_of_no_setting() -> None:
     assert [(one.row, one.setting, one.variant) for one in offered] == [(0, -1, 1), (1, -1, 2)]
     assert reader.hangs == Hangs((0, 0), 3, 2, 4)
     assert score_of(reader.hangs, (0, 0)) == (3 / 4, -1)
+    many = of_states(crossing, [[0, 1, 1], *[[0, 1, 0]] * (MOST_UNTOLD + 2)])
+    _, offered = found_in(many)
+    assert [one.row for one in offered] == [*range(MOST_UNTOLD)]
 
 
 @pytest.mark.parametrize(

@@ -49,7 +49,8 @@ def rows_of(folder: Path) -> list[dict[str, Any]]:
 def difference_of(table: np.ndarray) -> tuple[float, float, float, int] | None:
     """Level against reference: difference, interval, and whether 0.5 was added."""
     (a, b), (c, d) = table.tolist()
-    if not a + b or not c + d:
+    # Where all values are the same nothing is known either.
+    if not (a + b and c + d and a + c and b + d):
         return None
     added = 0.5 * (0 in (a, b, c, d))
     a, b, c, d = (own + added for own in (a, b, c, d))
@@ -102,12 +103,14 @@ def test_rows_are_those_of_a_loop(
         against = ", ".join(own for own in groups.labels[reference] if own)
         assert row["against"] == (against if reference >= 0 else None)
         assert compared == ([None] * 4 if found is None else pytest.approx(found, abs=1e-12))
+        both = own[[max(reference, 0), group], :2]
         seen.add(
             "nothing to compare with" * (reference < 0)
-            or "no value" * (found is None)
+            or "no value" * (not both.sum(axis=1).all())
+            or "all the same" * (found is None)
             or ("added" if found and found[3] else "plain")
         )
-    assert len(seen) == (4 if factors else 1)
+    assert len(seen) == (5 if factors else 1)
 
 
 @pytest.mark.parametrize("at_once", [1, 100, 250])

@@ -15,6 +15,7 @@ import pytest
 import etl
 from etl.screening.rules import READER_RULES
 from etl.session.varied import Varied
+from tests.vary.labelled import BY_HAND, STUDY, labelled_study
 from tests.vary.otherwise import (
     Alternatives,
     Built,
@@ -81,27 +82,33 @@ def apart(low: float | None, high: float | None) -> int | None:
     return int(low > 0) - int(high < 0)
 
 
-def most_often(values: list[Any], varied: Varied) -> str | None:
-    """The setting whose choice changes these most often, of pairs that have them both."""
+def changing(values: list[Any], at: int, varied: Varied) -> float:
+    """How often choosing a setting anew changes these, of pairs that have them both."""
     choices = varied.crossing.choices.tolist()
-    shares = []
-    for at in range(len(varied.crossing.settings)):
-        pairs = [
-            values[one] != values[other]
-            for one, other in combinations(range(len(choices)), 2)
-            if [n for n in range(len(choices[0])) if choices[one][n] != choices[other][n]] == [at]
-            and None not in (values[one], values[other])
-        ]
-        shares.append(sum(pairs) / max(len(pairs), 1))
+    pairs = [
+        values[one] != values[other]
+        for one, other in combinations(range(len(choices)), 2)
+        if [n for n in range(len(choices[0])) if choices[one][n] != choices[other][n]] == [at]
+        and None not in (values[one], values[other])
+    ]
+    return sum(pairs) / max(len(pairs), 1)
+
+
+def most_often(values: list[Any], varied: Varied) -> str | None:
+    """The setting whose choice changes these most often."""
+    settings = varied.crossing.settings
+    shares = [changing(values, at, varied) for at in range(len(settings))]
     most = shares.index(max(shares))
-    return varied.crossing.settings[most].key if shares[most] > 0 else None
+    return settings[most].key if shares[most] > 0 else None
 
 
 def test_comparisons_are_those_of_rates(varied: Varied) -> None:
     """Ends with their variants, signs, intervals apart from 0, and what hangs on what."""
     rates = rates_of(varied)
     variants = range(1, len(varied.crossing) + 1)
-    told: dict[str, set[Any]] = {"turns_with": set(), "clears_with": set(), "without": set()}
+    told: dict[str, set[Any]] = {
+        name: set() for name in ("turns_with", "clears_with", "without", "leaves_out_0")
+    }
     for row in plain(varied.table("comparisons")):
         own = [
             rates[v, row["measure"], row["region"], row["factor"], row["level"]] for v in variants
@@ -128,6 +135,7 @@ def test_comparisons_are_those_of_rates(varied: Varied) -> None:
         assert row["clear"] == sum(
             bool(s) for s, is_same in zip(sides, same, strict=True) if is_same
         )
+        assert row["leaves_out_0"] == sum(map(bool, sides))
         assert row["clears_with"] == most_often(sides, varied)
         assert row["turns_with"] == most_often(
             [None if v is None else np.sign(v) for v in values], varied
@@ -142,32 +150,119 @@ def test_comparisons_are_those_of_rates(varied: Varied) -> None:
 
 
 def test_decisions_are_those_of_rates(varied: Varied) -> None:
-    """The mean with each alternative, which is the study's own, and the share that decides most."""
+    """A row for each comparison, setting and alternative, also where there are no shares."""
     rates = rates_of(varied)
-    decided = {
-        tuple(row[key] for key in KEYS): (row["decides_most"], row["decides_share"])
-        for row in plain(varied.table("comparisons"))
-    }
+    comparisons = plain(varied.table("comparisons"))
     rows = plain(varied.table("decisions"))
-    settings = varied.crossing.settings
-    most: dict[tuple[Any, ...], list[tuple[float, str]]] = {}
+    settings, choices = varied.crossing.settings, varied.crossing.choices
+    expected = [
+        (*(own[key] for key in KEYS), setting.key, alternative)
+        for own in comparisons
+        for setting in settings
+        for alternative in setting.alternatives
+    ]
+    assert expected == [
+        (*(row[key] for key in KEYS), row["setting"], str(row["alternative"])) for row in rows
+    ]
+    assert {own.base for own in settings} == {0, 1}
+    decided = {tuple(own[key] for key in KEYS): own for own in comparisons}
+    seen: dict[str, set[Any]] = {"without": set(), "leaves_out_0": set(), "clears": set()}
     for row in rows:
         at = [own.key for own in settings].index(row["setting"])
         place = settings[at].alternatives.index(str(row["alternative"]))
         assert row["in_study"] == (place == settings[at].base)
-        chosen = [
-            rates[v + 1, row["measure"], row["region"], row["factor"], row["level"]]["difference"]
-            for v in np.flatnonzero(varied.crossing.choices[:, at] == place).tolist()
+        own = [
+            rates[v, row["measure"], row["region"], row["factor"], row["level"]]
+            for v in range(1, len(varied.crossing) + 1)
         ]
-        assert row["mean"] == pytest.approx(np.mean(chosen), abs=1e-12)
-        most.setdefault(tuple(row[key] for key in KEYS), []).append(
-            (row["together"], row["setting"])
-        )
-    assert {own.base for own in settings} == {0, 1}
-    for key, shares in most.items():
-        largest = max(share for share, _ in shares)
-        assert decided[key] == next((name, share) for share, name in shares if share == largest)
-    assert all((decided[key][0] is not None) == (key in most) for key in decided)
+        values = [one["difference"] for one in own]
+        sides = [apart(one["difference_low"], one["difference_high"]) for one in own]
+        chosen = np.flatnonzero(choices[:, at] == place).tolist()
+        known = [values[v] for v in chosen if values[v] is not None]
+        assert row["variants"] == len(chosen) == len(choices) // 2
+        assert row["without"] == len(chosen) - len(known)
+        assert row["mean"] == (pytest.approx(np.mean(known), abs=1e-12) if known else None)
+        assert row["leaves_out_0"] == sum(bool(sides[v]) for v in chosen)
+        signs = [None if value is None else np.sign(value) for value in values]
+        assert row["turns"] == pytest.approx(changing(signs, at, varied), abs=1e-12)
+        assert row["clears"] == pytest.approx(changing(sides, at, varied), abs=1e-12)
+        shares = (None, None) if None in values else shares_of(np.array(values), at, choices)
+        assert (row["alone"], row["together"]) == (*map(close, shares),)
+        whole = decided[tuple(row[key] for key in KEYS)]
+        if whole["decides_most"] == row["setting"]:
+            assert row["together"] == close(whole["decides_share"])
+        for name, values_of in seen.items():
+            values_of.add(row[name])
+    # There are rows of every sort, so that nothing above goes without saying.
+    assert all(len(values) > 1 for values in seen.values())
+    assert {row["together"] is None for row in rows} == {True, False}
+
+
+def test_setting_named_is_the_one_with_the_largest_share(varied: Varied) -> None:
+    """The first of equal ones; none where there are no shares."""
+    rows = plain(varied.table("decisions"))
+    for own in plain(varied.table("comparisons")):
+        shares = {
+            row["setting"]: row["together"]
+            for row in rows
+            if all(row[key] == own[key] for key in KEYS)
+        }
+        assert len(shares) == len(varied.crossing.settings)
+        if None in shares.values():
+            assert {*shares.values()} == {None}
+            assert own["decides_most"] is own["decides_share"] is None
+        else:
+            assert own["decides_most"] == max(shares, key=lambda key: shares[key])
+
+
+def shares_of(
+    values: np.ndarray, at: int, choices: np.ndarray
+) -> tuple[float, float] | tuple[None, None]:
+    """What a setting of two alternatives explains alone, and together with all others."""
+    if (values == values[0]).all():
+        return None, None
+    alone = np.var([values[choices[:, at] == place].mean() for place in range(2)])
+    others = np.delete(choices, at, axis=1)
+    left = [values[(others == row).all(axis=1)].var() for row in np.unique(others, axis=0)]
+    return float(alone / values.var()), float(np.mean(left) / values.var())
+
+
+def test_rates_have_no_signs(tmp_path: Path) -> None:
+    """In a study without factors the columns on signs are empty, and the others are of the rate."""
+    study = STUDY.replace('factors = ["cue"]\nlevels = { cue = ["early", "late"] }\n', "")
+    text = "[screening.fixations]\nunder_ms = [80, false]\n"
+    study_file, variants = labelled_study(tmp_path, BY_HAND, text, study)
+    varied = etl.vary(etl.load_study(study_file), variants)
+    rates = {
+        (row["variant"], row["measure"], row["region"]): row["rate"]
+        for row in plain(varied.table("rates"))
+    }
+    signs = ("positive", "negative", "zero", "same_sign", "clear", "leaves_out_0")
+    comparisons = plain(varied.table("comparisons"))
+    for row in comparisons:
+        own = [rates[v, row["measure"], row["region"]] for v in (1, 2)]
+        known = [rate for rate in own if rate is not None]
+        assert {row[name] for name in signs} == {None}
+        assert row["turns_with"] is row["clears_with"] is None
+        assert row["without"] == own.count(None)
+        assert row["in_study"] == close(own[0])
+        ends = (min(known), max(known)) if known else (None, None)
+        assert (row["lowest"], row["highest"]) == (*map(close, ends),)
+    decisions = plain(varied.table("decisions"))
+    assert len(decisions) == 2 * len(comparisons)
+    for number, row in enumerate(decisions):
+        assert row["turns"] is row["leaves_out_0"] is row["clears"] is None
+        variant = number % 2 + 1
+        assert row["mean"] == close(rates[variant, row["measure"], row["region"]])
+        assert (row["variants"], row["without"]) == (1, int(row["mean"] is None))
+    # 3 of 7 values without the short glances, 5 of 8 with them.
+    (own,) = (
+        row
+        for row in comparisons
+        if (row["measure"], row["region"]) == ("first_pass_regression_out", "middle")
+    )
+    assert (own["lowest"], own["highest"]) == (close(3 / 7), close(5 / 8))
+    assert (own["decides_most"], own["decides_share"]) == ("screening.fixations.under_ms", 1)
 
 
 def test_what_screening_leaves_out_and_what_is_there_are_all_there_is(varied: Varied) -> None:
@@ -182,7 +277,17 @@ def test_what_screening_leaves_out_and_what_is_there_are_all_there_is(varied: Va
     assert rates["all"].min() >= 0
 
 
-def test_readers_are_those_of_changed_cells(varied: Varied) -> None:
+def cells_kept(orchard: Path, varied: Varied, folder: Path, measures: set[str]) -> int:
+    """Binary cells that are among the rows of the loosest variant, built by itself."""
+    loose = {key: values[0] for key, values in SOME.items()}
+    built = Built.of(orchard, loose, folder / "loose")
+    outcomes = built.outcomes[built.outcomes.measure.isin(measures)]
+    kept = varied.table("variants").trials_kept.max()
+    assert len(outcomes.drop_duplicates(["participant", "trial"])) == kept
+    return len(outcomes)
+
+
+def test_readers_are_those_of_changed_cells(orchard: Path, varied: Varied, tmp_path: Path) -> None:
     """Cells of binary outcomes, how many change, and how often with each setting."""
     kinds = varied.table("changes").drop_duplicates("measure").set_index("measure").kind
     cells = varied.table("changed_cells")
@@ -190,12 +295,13 @@ def test_readers_are_those_of_changed_cells(varied: Varied) -> None:
     readers = plain(varied.table("readers"))
     settings = [own.key for own in varied.crossing.settings]
     assert [row["setting"] for row in readers] == settings * (len(readers) // len(settings))
-    # Also cells of trials that no variant keeps.
+    # Cells of trials that a variant keeps; some trials are left out in every variant.
     rates = varied.table("rates")
-    rates = rates[(rates.variant == 1) & rates.region.notna()]
-    whole = rates[rates[["cue", "fit", "group"]].isna().all(axis=1)]
-    every = int((whole.rows + whole.rows_lost).sum())
-    assert sum(row["cells"] for row in readers) == every * len(settings)
+    rates = rates[rates.region.notna() & rates[["cue", "fit", "group"]].isna().all(axis=1)]
+    in_study = rates[rates.variant == 1]
+    told = sum(row["cells"] for row in readers) // len(settings)
+    assert told == cells_kept(orchard, varied, tmp_path, {*in_study.measure})
+    assert told < int((in_study.rows + in_study.rows_lost).sum())
     columns = [name for name in cells.columns if name.startswith("hangs_on_")]
     seen = set()
     for row in readers:

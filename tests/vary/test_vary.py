@@ -261,6 +261,61 @@ def test_build_is_not_replaced_by_variants(bulk: tuple[Path, Path]) -> None:
     assert files_of(study.with_name("out")) == before
 
 
+def test_folder_that_cannot_be_taken_is_told_by_the_option_only(
+    bulk: tuple[Path, Path], tmp_path: Path
+) -> None:
+    """A variants file names no output folder, so that nobody is sent to the study file for it."""
+    study, variants = bulk
+    taken = tmp_path / "taken"
+    taken.write_text("mine", encoding="utf-8")
+    full = tmp_path / "full"
+    full.mkdir()
+    (full / "mine.txt").write_text("mine", encoding="utf-8")
+    for folder, problem, fix in (
+        (taken, "the output folder is a file", "name a folder, by --into"),
+        (
+            full,
+            "the output folder holds something else than an earlier build",
+            "name another folder, by --into, or empty this one yourself",
+        ),
+    ):
+        status, told = run("vary", study, variants, "--into", folder)
+        assert status == 2
+        assert f"{folder}: {problem}" in told
+        assert f"fix: {fix}\n" in told
+        assert "[output]" not in told
+    assert taken.read_text(encoding="utf-8") == "mine"
+    assert [path.name for path in full.iterdir()] == ["mine.txt"]
+
+
+def test_key_to_pseudonyms_is_kept_out_of_the_output_folder(tmp_path: Path) -> None:
+    """As a build does it, with advice on the option only."""
+    study = write_study(tmp_path)
+    variants = study.with_name("variants.toml")
+    variants.write_text("[screening.fixations]\nunder_ms = [80, false]\n", encoding="utf-8")
+    before = files_of(study.parent)
+    status, told = run("vary", study, variants, "--into", study.parent)
+    assert status == 2
+    assert "the key to the pseudonyms would lie in the output folder" in told
+    assert "fix: name another folder, by --into\n" in told
+    assert files_of(study.parent) == before
+
+
+def test_files_in_the_wrong_order_are_told_in_one_finding(bulk: tuple[Path, Path]) -> None:
+    """The variants file in place of the study file, and the study file in place of the other."""
+    study, variants = bulk
+    for first, second, problem in (
+        (variants, variants, "this is a variants file"),
+        (variants, study, "this is a variants file"),
+        (study, study, "this is a study file"),
+    ):
+        status, told = run("vary", first, second)
+        assert status == 2
+        assert problem in told
+        assert "name the study file first, then the variants file" in told
+        assert "1 problem; nothing was written" in told
+
+
 def test_variants_are_replaced_by_variants(bulk: tuple[Path, Path]) -> None:
     """A second run takes the place of the first, unless somebody has changed it."""
     study, variants = bulk
@@ -279,18 +334,27 @@ def test_variants_are_replaced_by_variants(bulk: tuple[Path, Path]) -> None:
     [
         (
             '[screening.trials]\nnotes = [false, "nowhere.csv"]\n',
-            ["nowhere.csv: there is no such file"],
+            [
+                "variants.toml:2: screening.trials.notes: there is no such file",
+                'found "nowhere.csv"',
+                "correct the name in the variants file, or put the file there",
+            ],
         ),
         (
             '[screening.trials]\nno_first_pass_on = [false, ["midle"]]\n',
-            ["no text has a region of this name", 'found "midle"', 'did you mean "middle"?'],
+            [
+                "variants.toml:2: screening.trials.no_first_pass_on",
+                "no text has a region of this name",
+                'found "midle"',
+                'did you mean "middle"?',
+            ],
         ),
         (
             (
                 "[screening.fixations]\nunder_ms = [80, 90]\n[[comparisons]]\n"
                 'outcome = "reread"\nregion = "midle"\nfactor = "cue"\n'
             ),
-            ["comparisons.region: no text has a region of this name", "variants.toml:3"],
+            ["variants.toml:5: comparisons.region: no text has a region of this name"],
         ),
         (
             "[screening.fixations]\nunder_ms = [80, 90]\nunder_mss = [80, 90]\n",
