@@ -227,13 +227,13 @@ def comparisons_say(summaries: Sequence[Summary], *, rate: bool, others: bool = 
             f"In {count(decided)} of {whole} the decisions decide whether the interval leaves out 0"
         )
     else:
-        text = f"In none of {whole} the decisions decide whether the interval leaves out 0"
+        text = f"In none of {whole} do the decisions decide whether the interval leaves out 0"
     if around:
         text += f"; in {count(around)} the sign does not hold, but no interval leaves out 0"
-    if without := sum(one.without > 0 and one.standing != "none" for one in summaries):
-        text += f"; in {count(without)} some variants have no value"
     if none:
         text += f"; {count(none)} cannot be made"
+    if without := sum(one.without > 0 and one.standing != "none" for one in summaries):
+        text += f". Of all these, {count(without)} have no value in some variants"
     return f"{text}."
 
 

@@ -10,7 +10,7 @@ from markupsafe import Markup, escape
 from etl.report.variants_input import FILES, VariantsInput
 from etl.report.wording import NOTHING, count, counted, name, number, percent
 from etl.variants.facts import Comparison, Crossing, Summary
-from etl.variants.words import ROUNDING
+from etl.variants.words import ROUNDING, SMALL, SMALLEST
 from etl.variants.words import percent as whole_percent
 
 #: Regions counted together, as the comparisons write it.
@@ -115,8 +115,9 @@ def value(amount: float, *, rate: bool) -> str:
         return NOTHING
     if rate:
         return percent(amount)
-    text = number(amount, 2, signed=True)
-    return "0.00" if text == "+0.00" else text
+    # With two decimals a small one would look like 0, on neither side of which it lies.
+    text = number(amount, 3 if SMALLEST <= abs(amount) < SMALL else 2, signed=True)
+    return "0.00" if text in ("+0.00", "−0.00") else text
 
 
 def interval(low: float, high: float, *, rate: bool) -> str:

@@ -64,7 +64,8 @@ class HangingTrial:
     hangs : Hangs
         How much.
     setting : int
-        For which it is offered; -1 where it cannot be told on which it hangs.
+        On which it hangs most; -1 where that cannot be told. Of a reader's trial, the setting on
+        which the reader hangs most.
     variant : int
         The variant to be shown beside the study as it stands: one that differs from it in that
         setting only, in which most of the cells change; else one that differs in others too; or
@@ -129,7 +130,8 @@ def readers_hanging(
     Returns
     -------
     list of ReaderHangs and list of HangingTrial
-        All readers; and for each setting in turn the trials that hang most on it, most first.
+        All readers; and for each setting in turn, of the trials that hang on it more than on any
+        other, those that do most, most first.
     """
     crossing, pairs = using
     width, settings = len(group.trials), len(crossing.settings)
@@ -179,8 +181,12 @@ def readers_hanging(
             ReaderHangs(participant, told, offered(best, setting) if told.cells else None)
         )
     trials = []
+    # Each trial once, for the setting it hangs most on: the first of equal ones.
+    mainly = np.argmax(by_trial / np.maximum(pairs, 1), axis=1)
     for setting in range(settings) if crossing.full else (-1,):
         chances = _chances(setting, by_trial, differing, of)
+        if setting >= 0:
+            chances = np.where(mainly == setting, chances, 0.0)
         most = MOST_UNTOLD if setting < 0 else MOST_OFFERED
         order = np.argsort(-chances, kind="stable")[:most].tolist()
         trials += [offered(trial, setting) for trial in order if chances[trial] > 0]

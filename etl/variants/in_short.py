@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-
 import numpy as np
 
 from etl.variants.facts import Crossing, Floats, Summary
@@ -102,11 +100,15 @@ def _turns_in_short(summary: Summary, crossing: Crossing) -> str:
         )
         return f"the sign turns {how} with {listed([keys[place] for place in most])}"
     how = "most often with" if np.count_nonzero(turned) > 1 else "with"
-    parts = []
+    parts: list[str] = []
     for place, alternative in enumerate(crossing.settings[summary.turns].alternatives):
-        chosen = signs[crossing.choices[:, summary.turns] == place]
-        parts.append(_mostly(alternative, _numbers(chosen), first=not place))
-    return f"the sign turns {how} {keys[summary.turns]}: {', '.join(parts)}"
+        below, zero, above = _numbers(signs[crossing.choices[:, summary.turns] == place])
+        total = below + zero + above
+        of = f"{total:,}" if parts else many(total, "variant")
+        parts.append(
+            f"in {above:,} of {of} with {alternative}" if total else f"no value with {alternative}"
+        )
+    return f"the sign turns {how} {keys[summary.turns]}: above 0 {', '.join(parts)}"
 
 
 def _clears_in_short(summary: Summary, crossing: Crossing) -> str:
@@ -128,16 +130,6 @@ def _clears_in_short(summary: Summary, crossing: Crossing) -> str:
         does = f"it does in {below + above:,} of {of}" if total else "no value"
         parts.append(f"{does} with {alternative}")
     return f"{what} {how} {keys[summary.clears]}: {', '.join(parts)}"
-
-
-def _mostly(alternative: str, counts: Sequence[int], *, first: bool) -> str:
-    """The sign that an alternative has most often, from how often it has each."""
-    total, most = sum(counts), max(counts)
-    if not total:
-        return f"no value with {alternative}"
-    words = [word for word, some in zip(SIGNS.values(), counts, strict=True) if some == most]
-    of = f"{most:,} of {many(total, 'variant') if first else f'{total:,}'}"
-    return f"{' or '.join(words)} with {alternative} ({of}{' each' if len(words) > 1 else ''})"
 
 
 def _numbers(signs: Floats) -> list[int]:

@@ -64,6 +64,7 @@ def _passage(summary: Summary, crossing: Crossing) -> Iterator[str]:
         yield f"Over the variants the {_what(summary)} ranges from {span(summary)}."
     if factor:
         yield from _signs(summary, crossing)
+        yield from _turns(summary, crossing)
         yield from _clears(summary, crossing)
     yield from _decides(summary, crossing)
     corrected = int(compared.corrected.sum())
@@ -96,9 +97,9 @@ def _lacking(summary: Summary) -> str:
     values = compared.counts[np.isnan(compared.difference)].sum(axis=-1)
     empty = (values == 0).any(axis=-1)
     if empty.all():
-        return "one of the two conditions has none"
+        return "at least one of the two conditions has none"
     if empty.any():
-        return "one of the two conditions has none, or all values of both are the same"
+        return "at least one of the two conditions has none, or all values of both are the same"
     return "all values of both conditions are the same"
 
 
@@ -180,6 +181,27 @@ def _signs(summary: Summary, crossing: Crossing) -> Iterator[str]:
     others = [text for sign, text in counts.items() if sign != signs[base]]
     if others:
         yield f"It is {listed(others)}."
+
+
+def _turns(summary: Summary, crossing: Crossing) -> Iterator[str]:
+    """On which decision the sign hangs, where it hangs on any."""
+    if summary.turns is None:
+        return
+    turned = turning(summary.compared.difference, crossing)
+    keys = short_keys(crossing.settings)
+    most = np.flatnonzero(turned == turned.max()).tolist()
+    if len(most) > 1:
+        yield f"The sign hangs equally on {listed([keys[place] for place in most])}."
+        return
+    parts = []
+    for place, alternative in enumerate(crossing.settings[summary.turns].alternatives):
+        own = summary.compared.difference[crossing.choices[:, summary.turns] == place]
+        there = int((~np.isnan(own)).sum())
+        if there:
+            above = int((own > 0).sum())
+            parts.append(f"in {above:,} of {there:,} with {alternative_words(alternative)}")
+    how = "most on" if np.count_nonzero(turned) > 1 else "on"
+    yield f"The sign hangs {how} {keys[summary.turns]}: it is above 0 {listed(parts)}."
 
 
 def _clears(summary: Summary, crossing: Crossing) -> Iterator[str]:

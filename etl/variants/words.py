@@ -6,12 +6,21 @@ from collections.abc import Sequence
 
 #: Shares nearer to 0 or 1 than this differ from them by rounding only.
 ROUNDING = 1e-9
+#: What is smaller rounds to 0 with two decimals, or with three.
+SMALL, SMALLEST = 0.005, 0.0005
 
 
 def number(value: float) -> str:
-    """A number with two decimals."""
+    """A number with two decimals; with three where two would make it look like 0.
+
+    Examples
+    --------
+    >>> number(-1.234), number(0.0046), number(0.0), number(0.00004)
+    ('−1.23', '0.005', '0.00', '0.00')
+    """
+    digits = 3 if SMALLEST <= abs(value) < SMALL else 2
     # Adding 0 turns -0.0, as rounding leaves it, into 0.0.
-    return f"{round(float(value), 2) + 0.0:,.2f}".replace("-", "−")
+    return f"{round(float(value), digits) + 0.0:,.{digits}f}".replace("-", "−")
 
 
 def percent(share: float) -> str:

@@ -137,20 +137,20 @@ def test_too_many_comparisons_are_cut_from_the_last_parts(monkeypatch: pytest.Mo
         ),
         (
             ["held", "held apart"],
-            "In none of 2 comparisons the decisions decide whether the interval leaves out 0.",
+            "In none of 2 comparisons do the decisions decide whether the interval leaves out 0.",
         ),
         (
             ["held", "none", "none"],
             (
-                "In none of 3 comparisons the decisions decide whether the interval leaves out 0; "
-                "2 cannot be made."
+                "In none of 3 comparisons do the decisions decide whether the interval leaves out "
+                "0; 2 cannot be made."
             ),
         ),
         (
             ["held", "held from nothing", "held but for one", "none"],
             (
-                "In none of 4 comparisons the decisions decide whether the interval leaves out 0; "
-                "in 2 some variants have no value; 1 cannot be made."
+                "In none of 4 comparisons do the decisions decide whether the interval leaves out "
+                "0; 1 cannot be made. Of all these, 2 have no value in some variants."
             ),
         ),
         (

@@ -71,15 +71,16 @@ def test_sign_that_turns_is_told_with_what_turns_it() -> None:
         f"6 variants of the data {SOURCE}, all combinations of over_ms (0, 1, 2) and merge (0, 1). "
         f"{OWN}Over the variants the difference in log-odds ranges from −0.03 to 0.41. It is above "
         "0, as in the study, in 4 of 6 variants (the interval leaves out 0 in none of these). It "
-        "is below 0 in 1 (its interval includes 0) and exactly 0 in 1. The decision that explains "
-        "the largest share of the variance between variants is over_ms (99%). Intervals"
-        + INDEPENDENT
+        "is below 0 in 1 (its interval includes 0) and exactly 0 in 1. The sign hangs most on "
+        "over_ms: it is above 0 in 2 of 2 with 0, in 2 of 2 with 1 and in 0 of 2 with 2. The "
+        "decision that explains the largest share of the variance between variants is over_ms "
+        "(99%). Intervals" + INDEPENDENT
     )
     assert lines == (
         "0.41 (−0.15 to 0.97) in the study, −0.03 to 0.41 over 6 variants; above 0 in 4 of 6 "
         "variants (the interval leaves out 0 in none of these)\n"
-        "the sign turns most often with screening.fixations.over_ms: above 0 with 0 (2 of 2 "
-        "variants), above 0 with 1 (2 of 2), below 0 or exactly 0 with 2 (1 of 2 each)"
+        "the sign turns most often with screening.fixations.over_ms: above 0 in 2 of 2 "
+        "variants with 0, in 2 of 2 with 1, in 0 of 2 with 2"
     )
 
 
@@ -125,8 +126,9 @@ def test_settings_that_matter_equally_are_told_as_equal() -> None:
     passage, lines = told(summary_of([one, other, other, one], crossing), crossing)
     assert (
         "It is above 0, as in the study, in 2 of 4 variants (the interval leaves out 0 in both of "
-        "these). It is below 0 in 2 (the interval leaves out 0 in both of these). On which side of "
-        "0 the interval lies hangs equally on over_ms and merge. Both decisions explain equally "
+        "these). It is below 0 in 2 (the interval leaves out 0 in both of these). The sign hangs "
+        "equally on over_ms and merge. On which side of 0 the interval lies hangs "
+        "equally on over_ms and merge. Both decisions explain equally "
         "much of the variance between variants (100% each, with interactions)."
     ) in passage
     assert last(lines) == (
@@ -211,7 +213,7 @@ def test_missing_values_and_counts_of_0_are_told() -> None:
     passage, lines = told(summary_of(tables, crossing), crossing)
     assert passage == (
         f"4 variants of the data {SOURCE}, all combinations of over_ms (0, 1) and merge (0, 1). "
-        "The difference in log-odds has no value in 1 of 4 variants, since one of the two "
+        "The difference in log-odds has no value in 1 of 4 variants, since at least one of the two "
         "conditions has none. In the study as it stands 30 of 100 values (30.0%) are 1 with fit "
         "odd and 50 of 100 values (50.0%) with fitting: a difference of −0.85 in log-odds (95% "
         "interval −1.43 to −0.27). Over the variants the difference in log-odds ranges from −3.04 "
@@ -231,11 +233,11 @@ def test_missing_values_and_counts_of_0_are_told() -> None:
 @pytest.mark.parametrize(
     ("lacking", "why"),
     [
-        ([(0, 0, 3, 4), (3, 4, 0, 0)], "one of the two conditions has none"),
+        ([(0, 0, 3, 4), (3, 4, 0, 0)], "at least one of the two conditions has none"),
         ([(9, 0, 99, 0), (0, 7, 0, 8)], "all values of both conditions are the same"),
         (
             [(0, 0, 3, 4), (9, 0, 99, 0)],
-            "one of the two conditions has none, or all values of both are the same",
+            "at least one of the two conditions has none, or all values of both are the same",
         ),
     ],
 )
@@ -316,8 +318,8 @@ def test_alternative_without_any_value_is_told_where_the_sign_turns() -> None:
     crossing = by_keys(3)
     tables = [(50, 50, 40, 60), (50, 50, 60, 40), (0, 0, 1, 1)]
     assert last(in_short(summary_of(tables, crossing), crossing)) == (
-        "the sign turns with screening.fixations.over_ms: above 0 with 0 (1 of 1 variant), below 0 "
-        "with 1 (1 of 1), no value with 2"
+        "the sign turns with screening.fixations.over_ms: above 0 in 1 of 1 variant with 0, "
+        "in 0 of 1 with 1, no value with 2"
     )
 
 
@@ -348,7 +350,7 @@ def test_study_without_a_sign_is_told_so(
     assert (
         f"In the study as it stands {value}. Over the variants the difference in log-odds ranges "
         "from −0.04 to 0.85. So there is no sign that could hold; the value is below 0 in 1 (its "
-        f"interval includes 0){zero} and above 0 in 1 (its interval leaves out 0). Whether"
+        f"interval includes 0){zero} and above 0 in 1 (its interval leaves out 0). The sign"
     ) in passage
     assert first(lines) == (
         f"{short} in the study, −0.04 to 0.85 over 3 variants; below 0 in 1{zero} and above 0 in 1"
@@ -362,7 +364,7 @@ def test_no_value_anywhere_is_told_at_once() -> None:
     passage, lines = told(summary_of([nothing] * 3, by_keys(3)), by_keys(3))
     assert passage == (
         f"3 variants of the data {SOURCE}, by over_ms (0, 1, 2). The difference in log-odds has no "
-        "value in any of the 3 variants, since one of the two conditions has none."
+        "value in any of the 3 variants, since at least one of the two conditions has none."
     )
     assert lines == ("no value in any of the 3 variants")
     passage, lines = told(summary_of([nothing] * 2, by_keys(2), RATE), by_keys(2))
@@ -374,7 +376,7 @@ def test_no_value_anywhere_is_told_at_once() -> None:
     passage, lines = told(summary_of([nothing], by_keys(1)), by_keys(1))
     assert passage == (
         "one variant only, the study as it stands. The difference in log-odds has no value, since "
-        "one of the two conditions has none."
+        "at least one of the two conditions has none."
     )
     assert lines == ("no value")
 
@@ -444,7 +446,7 @@ def test_named_variants_are_told_as_such() -> None:
     assert last(lines) == "the sign turns, but not between variants that differ in one setting only"
     beside = chosen([(0, 0), (1, 0)], [2, 2], keys=KEYS, named=True)
     assert last(in_short(summary_of(tables, beside), beside)).startswith(
-        "the sign turns with screening.fixations.over_ms: above 0 with 0 (1 of 1 variant)"
+        "the sign turns with screening.fixations.over_ms: above 0 in 1 of 1 variant with 0"
     )
 
 
@@ -552,6 +554,7 @@ def test_share_that_is_not_quite_all_or_nothing_is_not_called_so(share: float, t
 
 
 def test_numbers_have_two_decimals_and_a_true_minus() -> None:
-    """And no sign where nothing but 0 is left."""
-    values = (-0.004, 0.0, -0.006, 0.125001, -1234.5)
-    assert [number(value) for value in values] == ["0.00", "0.00", "−0.01", "0.13", "−1,234.50"]
+    """A third one where 0 would be left of what is not 0; no sign where nothing else is."""
+    values = (-0.004, 0.0, -0.0001, -0.006, 0.125001, -1234.5)
+    expected = ["−0.004", "0.00", "0.00", "−0.01", "0.13", "−1,234.50"]
+    assert [number(value) for value in values] == expected
