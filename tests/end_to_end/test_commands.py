@@ -18,7 +18,7 @@ from tests.end_to_end.building import BESIDES, PROJECT, TABLES, files_of, write
 from tests.end_to_end.odd_study import STUDY, odd_study
 from tests.end_to_end.running import ESCAPE, Ran, environment, on_terminal, run
 
-COMMANDS = ("build", "check", "completion", "draft", "measures", "trace")
+COMMANDS = ("build", "check", "completion", "draft", "measures", "trace", "vary")
 ORCHARD = PROJECT / "sample_logs" / "orchard" / "study.toml"
 PTY = pytest.mark.skipif(sys.platform == "win32", reason="pseudo-terminals are of POSIX systems")
 
