@@ -12,7 +12,7 @@ from etl.report.variants_input import VariantsInput
 from etl.report.variants_words import alternative, code, is_rate, share_words, value
 from etl.report.wording import NOTHING, count
 from etl.variants.facts import Crossing, Flags, Summary
-from etl.variants.shares import turning
+from etl.variants.shares import signs_with, turning
 
 
 @dataclass(frozen=True, slots=True)
@@ -165,12 +165,10 @@ def sides_with(summary: Summary, crossing: Crossing, setting: int) -> list[tuple
     """
     side = summary.side
     both = bool((side > 0).any() and (side < 0).any())
-    found = []
-    for place in range(len(crossing.settings[setting].alternatives)):
-        own = side[crossing.choices[:, setting] == place]
-        of = int((~np.isnan(own)).sum())
-        found.append((place, Sides(of, int((own > 0).sum()), int((own < 0).sum()), both)))
-    return found
+    return [
+        (place, Sides(below + around + above, above, below, both))
+        for place, (below, around, above) in enumerate(signs_with(side, crossing, setting))
+    ]
 
 
 def collect_decisions(facts: VariantsInput, summary: Summary) -> Decisions:

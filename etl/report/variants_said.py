@@ -20,9 +20,9 @@ from etl.report.variants_words import (
     value,
 )
 from etl.report.wording import count, counted, listed, number
-from etl.variants.facts import Floats, Summary
+from etl.variants.facts import Summary
 from etl.variants.sentences import foremost
-from etl.variants.shares import turning
+from etl.variants.shares import most_often, turning
 
 #: Of a decision with more alternatives than this the two that are farthest apart are named.
 MOST_ALTERNATIVES: Final = 4
@@ -227,12 +227,6 @@ def _against(share: float) -> str:
     return f"{number(share, 1 if share < 9.95 else 0)} times the width"
 
 
-def _foremost(shares: Floats) -> tuple[list[int], bool]:
-    """The settings with the greatest share, and whether any other has one."""
-    most = np.flatnonzero(shares == shares.max()).tolist()
-    return most, int(np.count_nonzero(shares)) > len(most)
-
-
 def _keys(facts: VariantsInput, settings: list[int]) -> Markup:
     """Settings by their short names."""
     return listed([code(facts.short_keys[setting]) for setting in settings])
@@ -248,7 +242,7 @@ def _clears_words(summary: Summary, facts: VariantsInput) -> Markup:
             "On which decision it hangs whether the interval leaves out 0 cannot be told: no two "
             "variants that differ in one decision only differ in that."
         )
-    most, others = _foremost(changed)
+    most, others = most_often(changed)
     both = (summary.side > 0).any() and (summary.side < 0).any()
     what = "Whether the interval leaves out 0" + ", and on which side," * bool(both)
     if len(most) > 1:
@@ -288,7 +282,7 @@ def _turns_words(summary: Summary, facts: VariantsInput) -> Markup:
     if summary.turns is None:
         return Markup()
     turned = turning(summary.compared.difference, facts.crossing)
-    most, others = _foremost(turned)
+    most, others = most_often(turned)
     often = "" if not others else " most often" if len(most) == 1 else " most often, and equally,"
     which = "in this decision" if len(most) == 1 else "in one of these"
     return Markup(

@@ -36,6 +36,8 @@ class Computed:
         The fixations that are kept.
     in_study : (m,) int64 array
         The trials that are kept.
+    place : (trials,) int64 array
+        The place of each trial among those that are kept; others 0.
     outcomes : Outcomes
         The measures of the kept trials.
     """
@@ -45,14 +47,8 @@ class Computed:
     gone: NDArray[np.int8]
     kept: NDArray[np.int64]
     in_study: NDArray[np.int64]
+    place: NDArray[np.int64]
     outcomes: Outcomes
-
-    @property
-    def place(self) -> NDArray[np.int64]:
-        """(trials,) int64 array: the place of each trial among those that are kept; others 0."""
-        place = np.zeros(len(self.trial_codes), dtype=np.int64)
-        place[self.in_study] = np.arange(len(self.in_study))
-        return place
 
 
 def compute_outcomes(
@@ -107,7 +103,7 @@ def compute_outcomes(
         outside=options.outside,
         no_opportunity=options.no_opportunity,
     )
-    return Computed(screened, trial_codes, gone, kept, in_study, outcomes)
+    return Computed(screened, trial_codes, gone, kept, in_study, place, outcomes)
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+import math
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Final
 
@@ -40,6 +41,24 @@ class Hangs:
     differing: int
     cells: int
     of: int
+
+    def chances(self, pairs: Sequence[int]) -> tuple[float, ...]:
+        """How often a cell changes when only one setting is chosen anew, by setting.
+
+        Parameters
+        ----------
+        pairs : sequence of int
+            By setting, how many pairs of variants differ in it only.
+
+        Returns
+        -------
+        tuple of float
+            From 0 to 1; NaN where there are no such pairs, or no cells.
+        """
+        return tuple(
+            own / (self.of * all_) if self.of * all_ else math.nan
+            for own, all_ in zip(self.pairs, pairs, strict=True)
+        )
 
 
 @dataclass(frozen=True, slots=True)
@@ -100,9 +119,9 @@ def score_of(hangs: Hangs, pairs: tuple[int, ...]) -> tuple[float, int]:
     """
     if not any(hangs.pairs):
         return hangs.differing / max(hangs.of, 1), -1
-    shares = [own / (hangs.of * all_) for own, all_ in zip(hangs.pairs, pairs, strict=True)]
-    setting = int(np.argmax(shares))
-    return shares[setting], setting
+    chances = hangs.chances(pairs)
+    setting = int(np.argmax(chances))
+    return chances[setting], setting
 
 
 def readers_hanging(

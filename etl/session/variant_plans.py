@@ -8,7 +8,6 @@ from collections.abc import Iterator
 from dataclasses import dataclass, replace
 
 from etl.errors import DataError, Finding, Findings
-from etl.regions import RegionLibrary
 from etl.regions.assign import Manner
 from etl.regions.definition_files import manner_of
 from etl.session.decisions import facts_needed, options_of
@@ -42,10 +41,6 @@ class VariantOptions:
     manner: Manner | None
     facts: int
     place: int
-
-    def library(self, library: RegionLibrary) -> RegionLibrary:
-        """The texts of the study, with points taken to regions as this variant does."""
-        return replace(library, manner=self.manner)
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -263,9 +263,8 @@ class VariantTables:
     def _readers(self, readers: Sequence[ReaderHangs]) -> Iterable[list[Cell]]:
         for reader in readers:
             own = reader.hangs
-            for key, pairs, all_ in zip(self._keys, own.pairs, self._pairs, strict=True):
-                chance = pairs / (own.of * all_) if own.of and all_ else None
-                yield [reader.participant, own.of, own.cells, key, chance]
+            for key, chance in zip(self._keys, own.chances(self._pairs), strict=True):
+                yield [reader.participant, own.of, own.cells, key, _or_none(chance)]
 
     def _codebook(self) -> Iterable[list[Cell]]:
         tables: Mapping[str, str] = {

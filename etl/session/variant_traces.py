@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
@@ -59,7 +58,7 @@ class VariantTraces:
     def __post_init__(self) -> None:
         self._done: dict[tuple[str, int], ReaderTables] = {}
         self._pages: dict[tuple[str, int, int], tuple[str, str]] = {}
-        self._tasks = self.plans.gathered[0].tasks.by_name()
+        self._tasks = [own.tasks.by_name() for own in self.plans.gathered]
 
     def shown(
         self, readers: Sequence[ReaderHangs], trials: Sequence[HangingTrial]
@@ -100,9 +99,9 @@ class VariantTraces:
             by_setting.setdefault(one.setting, []).append(one)
 
         def chance(one: HangingTrial) -> float:
-            counted = one.hangs.differing if one.setting < 0 else one.hangs.pairs[one.setting]
-            every = 1 if one.setting < 0 else max(self.pairs[one.setting], 1)
-            return counted / (max(one.hangs.of, 1) * every)
+            if one.setting < 0:
+                return one.hangs.differing / max(one.hangs.of, 1)
+            return one.hangs.chances(self.pairs)[one.setting]
 
         best = []
         for setting, own in by_setting.items():
@@ -120,10 +119,7 @@ class VariantTraces:
         trial: HangingTrial,
     ) -> Hanging:
         """A reader, or a trial where there is a key, with pages of a trial."""
-        chances = tuple(
-            own / (hangs.of * all_) if all_ else math.nan
-            for own, all_ in zip(hangs.pairs, self.pairs, strict=True)
-        )
+        chances = hangs.chances(self.pairs)
         named = ("", "", "") if key is None else (key.session, key.trial, self._item(trial))
         pages = (
             self._page(trial, self.crossing.base),
@@ -138,17 +134,14 @@ class VariantTraces:
 
     def _key(self, trial: HangingTrial) -> TrialKey:
         """What the trial is called."""
-        tracer = Tracer(
-            self.plans.plans[0].study,
-            self.plans.plans[0].library,
-            self.plans.gathered[0].design,
-        )
-        return tracer.key(self._tasks[trial.participant].trials, trial.row)
+        plan = self.plans.plans[0]
+        tracer = Tracer(plan.study, plan.library, self.plans.gathered[0].design)
+        return tracer.key(self._tasks[0][trial.participant].trials, trial.row)
 
     def _item(self, trial: HangingTrial) -> str:
         """The text of the trial; empty where the study knows no items."""
         design = self.plans.gathered[0].design
-        code = int(self._tasks[trial.participant].trials.ids["item"][trial.row])
+        code = int(self._tasks[0][trial.participant].trials.ids["item"][trial.row])
         return design.ids["item"].values[code] if code >= 0 else ""
 
     def _changes(self, trial: HangingTrial) -> tuple[str, ...]:
@@ -187,7 +180,7 @@ class VariantTraces:
         plan, options = self.plans.plans[variant], self.plans.options[variant]
         gathered = self.plans.gathered[options.facts]
         design = under_limits(gathered.design, options.options.limits)
-        task: ReaderTask = gathered.tasks.by_name()[trial.participant]
+        task: ReaderTask = self._tasks[options.facts][trial.participant]
         own = (trial.participant, variant)
         if own not in self._done:
             work = make_reader_work(design, plan.library, options.options, gathered.aside)

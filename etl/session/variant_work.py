@@ -175,10 +175,11 @@ class VariantWork:
             found_counts.append(own)
         counts.changes = tuple(found_counts)
         counts.changed = self._changed(universe, changed)
+        keys, width = universe.keys, int(np.prod(universe.sizes))
         for place, name in enumerate(self._binary()):
-            counts.regions[place] = counts_of(
-                table.states[name], universe.keys, int(np.prod(universe.sizes))
-            ).reshape(len(self._options), *universe.sizes, 3)
+            counts.regions[place] = counts_of(table.states[name], keys, width).reshape(
+                len(self._options), *universe.sizes, 3
+            )
         answer.counts = counts
         binary = {name: changed[name] for name in self._binary()}
         using = (self._shape.crossing, self._shape.pairs)

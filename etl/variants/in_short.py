@@ -14,7 +14,7 @@ from etl.variants.sentences import (
     limits,
     span,
 )
-from etl.variants.shares import turning
+from etl.variants.shares import most_often, signs_with, turning
 from etl.variants.words import all_of, all_so_many, any_of, listed, many, number, percent
 
 
@@ -91,18 +91,18 @@ def _turns_in_short(summary: Summary, crossing: Crossing) -> str:
         several = np.count_nonzero(_numbers(signs)) > 1
         apart = "the sign turns, but not between variants that differ in one setting only"
         return apart if several else ""
-    turned = turning(summary.compared.difference, crossing)
+    most, others = most_often(turning(summary.compared.difference, crossing))
     keys = [own.key for own in crossing.settings]
-    most = np.flatnonzero(turned == turned.max()).tolist()
     if len(most) > 1:
-        how = (
-            "equally often" if len(most) == np.count_nonzero(turned) else "most, and equally often,"
-        )
+        how = "most, and equally often," if others else "equally often"
         return f"the sign turns {how} with {listed([keys[place] for place in most])}"
-    how = "most often with" if np.count_nonzero(turned) > 1 else "with"
+    how = "most often with" if others else "with"
     parts: list[str] = []
-    for place, alternative in enumerate(crossing.settings[summary.turns].alternatives):
-        below, zero, above = _numbers(signs[crossing.choices[:, summary.turns] == place])
+    for alternative, (below, zero, above) in zip(
+        crossing.settings[summary.turns].alternatives,
+        signs_with(signs, crossing, summary.turns),
+        strict=True,
+    ):
         total = below + zero + above
         of = f"{total:,}" if parts else many(total, "variant")
         parts.append(
@@ -115,18 +115,20 @@ def _clears_in_short(summary: Summary, crossing: Crossing) -> str:
     """Which setting decides whether the interval leaves out 0; empty where none does."""
     if summary.clears is None:
         return ""
-    cleared = turning(summary.side, crossing)
+    most, others = most_often(turning(summary.side, crossing))
     keys = [own.key for own in crossing.settings]
-    most = np.flatnonzero(cleared == cleared.max()).tolist()
     what = "whether the interval leaves out 0 hangs"
     if len(most) > 1:
         return f"{what} equally on {listed([keys[place] for place in most])}"
-    how = "most on" if np.count_nonzero(cleared) > 1 else "on"
-    parts = []
-    for place, alternative in enumerate(crossing.settings[summary.clears].alternatives):
-        below, around, above = _numbers(summary.side[crossing.choices[:, summary.clears] == place])
+    how = "most on" if others else "on"
+    parts: list[str] = []
+    for alternative, (below, around, above) in zip(
+        crossing.settings[summary.clears].alternatives,
+        signs_with(summary.side, crossing, summary.clears),
+        strict=True,
+    ):
         total = below + around + above
-        of = f"{total:,}" if place else many(total, "variant")
+        of = f"{total:,}" if parts else many(total, "variant")
         does = f"it does in {below + above:,} of {of}" if total else "no value"
         parts.append(f"{does} with {alternative}")
     return f"{what} {how} {keys[summary.clears]}: {', '.join(parts)}"

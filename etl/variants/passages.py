@@ -18,7 +18,7 @@ from etl.variants.sentences import (
     short_keys,
     span,
 )
-from etl.variants.shares import turning
+from etl.variants.shares import most_often, signs_with, turning
 from etl.variants.words import all_of, all_so_many, any_of, listed, number, percent
 
 
@@ -187,20 +187,21 @@ def _turns(summary: Summary, crossing: Crossing) -> Iterator[str]:
     """On which decision the sign hangs, where it hangs on any."""
     if summary.turns is None:
         return
-    turned = turning(summary.compared.difference, crossing)
-    keys = short_keys(crossing.settings)
-    most = np.flatnonzero(turned == turned.max()).tolist()
+    values, keys = summary.compared.difference, short_keys(crossing.settings)
+    most, others = most_often(turning(values, crossing))
     if len(most) > 1:
         yield f"The sign hangs equally on {listed([keys[place] for place in most])}."
         return
     parts = []
-    for place, alternative in enumerate(crossing.settings[summary.turns].alternatives):
-        own = summary.compared.difference[crossing.choices[:, summary.turns] == place]
-        there = int((~np.isnan(own)).sum())
-        if there:
-            above = int((own > 0).sum())
-            parts.append(f"in {above:,} of {there:,} with {alternative_words(alternative)}")
-    how = "most on" if np.count_nonzero(turned) > 1 else "on"
+    for alternative, signs in zip(
+        crossing.settings[summary.turns].alternatives,
+        signs_with(values, crossing, summary.turns),
+        strict=True,
+    ):
+        if any(signs):
+            of = f"{signs[-1]:,} of {sum(signs):,}"
+            parts.append(f"in {of} with {alternative_words(alternative)}")
+    how = "most on" if others else "on"
     yield f"The sign hangs {how} {keys[summary.turns]}: it is above 0 {listed(parts)}."
 
 
@@ -208,7 +209,7 @@ def _clears(summary: Summary, crossing: Crossing) -> Iterator[str]:
     """On which decision it hangs where the interval lies, where it hangs on any."""
     if summary.clears is None:
         return
-    cleared, sides = turning(summary.side, crossing), summary.side
+    sides = summary.side
     # Where intervals lie on both sides of 0, not only whether they leave it out hangs on something.
     around, both = bool((sides == 0).any()), {-1.0, 1.0} <= {*sides.tolist()}
     what = "Whether the interval leaves out 0"
@@ -217,21 +218,23 @@ def _clears(summary: Summary, crossing: Crossing) -> Iterator[str]:
     elif both:
         what = "On which side of 0 the interval lies"
     keys = short_keys(crossing.settings)
-    most = np.flatnonzero(cleared == cleared.max()).tolist()
+    most, others = most_often(turning(sides, crossing))
     if len(most) > 1:
         yield f"{what} hangs equally on {listed([keys[place] for place in most])}."
         return
     parts = []
-    for place, alternative in enumerate(crossing.settings[summary.clears].alternatives):
-        own = sides[crossing.choices[:, summary.clears] == place]
-        below, inside, above = (int((own == side).sum()) for side in SIGNS)
+    for alternative, (below, inside, above) in zip(
+        crossing.settings[summary.clears].alternatives,
+        signs_with(sides, crossing, summary.clears),
+        strict=True,
+    ):
         total = below + inside + above
         some = f"{above:,}" if both else f"{below + above:,}"
         if both and around:
             some = f"above 0 in {above:,} and below 0 in {below:,}"
         if total:
             parts.append(f"{some} of {total:,} with {alternative_words(alternative)}")
-    how = "most on" if np.count_nonzero(cleared) > 1 else "on"
+    how = "most on" if others else "on"
     told = f"it does {listed([f'in {part}' for part in parts])}"
     if both and around:
         told = f"it lies {'; '.join(parts)}"

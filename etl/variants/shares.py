@@ -109,6 +109,47 @@ def turning(values: Floats, crossing: Crossing) -> Floats:
     return shares
 
 
+def most_often(shares: Floats) -> tuple[list[int], bool]:
+    """The settings with the greatest share.
+
+    Parameters
+    ----------
+    shares : (S,) float64 array
+        Such as from :func:`turning`.
+
+    Returns
+    -------
+    list of int and bool
+        Several where they are equal; and whether any other setting has a share at all.
+    """
+    most = np.flatnonzero(shares == shares.max()).tolist()
+    return most, int(np.count_nonzero(shares)) > len(most)
+
+
+def signs_with(values: Floats, crossing: Crossing, setting: int) -> list[tuple[int, int, int]]:
+    """How many variants have a number below, at and above 0 with each alternative of a setting.
+
+    Parameters
+    ----------
+    values : (V,) float64 array
+        A number for each variant; NaN where there is none.
+    crossing : Crossing
+        The variants.
+    setting : int
+        Which setting.
+
+    Returns
+    -------
+    list of (int, int, int)
+        In the order of the alternatives.
+    """
+    found = []
+    for place in range(len(crossing.settings[setting].alternatives)):
+        own = values[crossing.choices[:, setting] == place]
+        found.append((int((own < 0).sum()), int((own == 0).sum()), int((own > 0).sum())))
+    return found
+
+
 def changing_pairs(states: NDArray[np.generic], crossing: Crossing) -> tuple[Ints, Ints]:
     """How often choosing a setting anew changes a cell.
 
